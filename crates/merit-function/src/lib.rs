@@ -1,0 +1,3 @@
+//! merit-function
+
+pub mod block;

@@ -1,0 +1,1 @@
+//! The program run as a user runs it.

@@ -1,0 +1,1 @@
+//! Checks against published values; each names its source.
