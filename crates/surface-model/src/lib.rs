@@ -1,1 +1,11 @@
 //! surface-model
+
+pub mod bundle;
+pub mod fault;
+pub mod quadrature;
+pub mod real;
+pub mod reverse;
+pub mod skew;
+pub mod surface;
+pub mod trace;
+pub mod train;

@@ -1,0 +1,337 @@
+//! The reverse sweep: from one traced ray, the exact derivative of its optical path (and, where
+//! asked, of its exit point and direction or of an angle of incidence) by every quantity of the
+//! train, at the cost of a few traces however many there are.
+//!
+//! It walks the surfaces from last to first and carries *adjoints*: x̄ is the derivative of the
+//! result by x, all later steps included. For each step of the [trace](crate::trace), with X the
+//! point, d the direction, N the unit normal, s the path from the previous point:
+//!
+//! *Refract*, d′ = μd + γN, γ = cos I′ − μ cos I, cos I = N·d:
+//!
+//! ```text
+//! γ̄ = N·d̄′        Ī = −μγ/cos I′ · γ̄          (since ∂γ/∂cos I = μ² cos I/cos I′ − μ)
+//! d̄ = μd̄′ + ĪN    N̄ = γd̄′ + Īd
+//! μ̄ = d·d̄′ − γ̄(μ sin²I/cos I′ + cos I)
+//! ```
+//!
+//! *Normal of a sphere*, N = e_z − cX: X̄ −= cN̄, c̄ −= N̄·X. *Of any other surface*, with
+//! u = g(q)·(x, y), E = √(1 + u·u), N = (−u, 1)/E:
+//!
+//! ```text
+//! ū = −N̄⊥/E + (N̄⊥·u − N̄_z)u/E³     ȳ += gū + 2g′(ū·y)y     ḡ = ū·y
+//! ```
+//!
+//! *Meet.* Whatever the closed form or the iteration that found it, the point stays on the
+//! surface: N·dX = dν, the displacement of the surface along its normal. With
+//! dX = dX₀ + s dd + d ds this gives ds = (dν − N·(dX₀ + s dd))/cos I, hence, with
+//! σ = n·W̄ + d·X̄ the coefficient of ds (the path s counts n in the optical path W):
+//!
+//! ```text
+//! ν̄ = σ/cos I      X̄₀ = X̄ − ν̄N      d̄ += sX̄₀      t̄ = −X̄₀_z − nW̄
+//! ```
+//!
+//! where t is the gap before the surface (−nW̄: the axial ray's path is subtracted) and
+//! ∂ν/∂c = ½(q + z²) for a sphere, N_z ∂(sag)/∂(parameter) otherwise.
+//!
+//! This is reverse accumulation (A. Griewank and A. Walther, *Evaluating Derivatives*, 2nd ed.,
+//! SIAM 2008, ch. 3) applied to Snell's law by hand.
+
+use multiversion::multiversion;
+
+use crate::real::{Lanes, Real};
+use crate::surface::{ASPHERE_TERMS, Surface};
+use crate::trace::{Crossing, Exit, Ray, along, dot, normal};
+use crate::train::Train;
+
+/// Where each quantity of a train stands in a row of derivatives: curvatures first, then gaps,
+/// then indices, then, if kept, conic constants and asphere coefficients.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub struct Quantities {
+    surfaces: usize,
+    shapes: bool,
+}
+
+impl Quantities {
+    /// For a train of `surfaces` surfaces; `shapes` says whether derivatives by conic constants
+    /// and asphere coefficients are kept.
+    #[must_use]
+    pub fn new(surfaces: usize, shapes: bool) -> Self {
+        Self { surfaces, shapes }
+    }
+
+    /// Place of the curvature of a surface.
+    #[must_use]
+    #[inline]
+    pub fn curvature(&self, surface: usize) -> usize {
+        surface
+    }
+
+    /// Place of the gap behind a surface.
+    #[must_use]
+    #[inline]
+    pub fn gap(&self, surface: usize) -> usize {
+        self.surfaces + surface
+    }
+
+    /// Place of a refractive index; medium `i` stands before surface `i`.
+    #[must_use]
+    #[inline]
+    pub fn index(&self, medium: usize) -> usize {
+        2 * self.surfaces - 1 + medium
+    }
+
+    /// Place of the conic constant of a surface, where kept.
+    #[must_use]
+    #[inline]
+    pub fn conic(&self, surface: usize) -> usize {
+        3 * self.surfaces + surface
+    }
+
+    /// Place of an asphere coefficient (r⁴ is term 0), where kept.
+    #[must_use]
+    #[inline]
+    pub fn asphere(&self, surface: usize, term: usize) -> usize {
+        4 * self.surfaces + ASPHERE_TERMS * surface + term
+    }
+
+    /// Number of derivatives in a row.
+    #[must_use]
+    #[inline]
+    pub fn count(&self) -> usize {
+        if self.shapes { (4 + ASPHERE_TERMS) * self.surfaces } else { 3 * self.surfaces }
+    }
+}
+
+/// What is to be differentiated: a weighted sum of the quantities a ray ends with.
+#[derive(Debug, Clone, Copy)]
+pub(crate) struct Seed<N, const D: usize> {
+    /// Weight of the optical path.
+    pub(crate) path: N,
+    /// Weights of the position in the exit plane.
+    pub(crate) position: [N; D],
+    /// Weights of the exit direction cosines.
+    pub(crate) direction: [N; D],
+    /// Weight of cos I at one surface.
+    pub(crate) cos_in: Option<(usize, N)>,
+}
+
+impl<N: Real, const D: usize> Seed<N, D> {
+    /// The optical path alone.
+    #[inline(always)]
+    pub(crate) fn path() -> Self {
+        let zero = N::splat(0.0);
+        Self { path: N::splat(1.0), position: [zero; D], direction: [zero; D], cos_in: None }
+    }
+
+    /// The cosine of the angle of incidence at one surface alone.
+    #[inline(always)]
+    pub(crate) fn cos_in(surface: usize) -> Self {
+        Self { path: N::splat(0.0), cos_in: Some((surface, N::splat(1.0))), ..Self::path() }
+    }
+}
+
+/// Adjoint of the point and of the direction of a ray: the same shape as a ray.
+type Adjoint<N, const D: usize> = Ray<N, D>;
+
+/// Adjoint of the ray behind the last surface, from the seeds in the exit plane.
+#[inline(always)]
+fn leave<N: Real, const D: usize>(
+    exit: &Exit<N, D>,
+    index: f64,
+    seed: &Seed<N, D>,
+) -> Adjoint<N, D> {
+    let spread = (N::splat(index) * seed.path + dot(&exit.d, &seed.position)) / exit.dz;
+    Adjoint {
+        y: seed.position,
+        z: -spread,
+        d: along(&seed.direction, exit.path_to_plane, &seed.position),
+        dz: -(exit.path_to_plane * spread),
+    }
+}
+
+/// Adds what the normal's adjoint says to the point's adjoint, and gives the derivatives by the
+/// surface's own numbers.
+#[inline(always)]
+fn bend<N: Real, const D: usize>(
+    surface: &Surface,
+    closed_form: bool,
+    at: &Ray<N, D>,
+    (n_bar, nz_bar): (&[N; D], N),
+    point: &mut Adjoint<N, D>,
+    mut put: impl FnMut(Shape, N),
+) {
+    let c = N::splat(surface.curvature);
+    if closed_form {
+        point.y = along(&point.y, -c, n_bar);
+        point.z = point.z - c * nz_bar;
+        put(Shape::Curvature, -(dot(n_bar, &at.y) + nz_bar * at.z));
+        return;
+    }
+    let one = N::splat(1.0);
+    let q = dot(&at.y, &at.y);
+    let profile = surface.profile(q);
+    let g = profile.slope;
+    let e = one / (one + g * g * q).sqrt();
+    let toward = g * dot(n_bar, &at.y) - nz_bar;
+    let across = toward * g * e * e * e;
+    let mut u_bar = *n_bar;
+    for axis in 0..D {
+        u_bar[axis] = across * at.y[axis] - e * n_bar[axis];
+    }
+    let g_bar = dot(&u_bar, &at.y);
+    point.y = along(&point.y, g, &u_bar);
+    point.y = along(&point.y, N::splat(2.0) * profile.slope_by_q * g_bar, &at.y);
+    let cube = one / (profile.w * profile.w * profile.w);
+    put(Shape::Curvature, g_bar * cube);
+    put(Shape::Conic, g_bar * N::splat(0.5) * c * c * c * q * cube);
+    let mut power = q;
+    for term in 0..ASPHERE_TERMS {
+        put(Shape::Term(term), g_bar * N::splat(asphere_order(term) * 2.0) * power);
+        power = power * q;
+    }
+}
+
+/// Power of q = r² that coefficient `term` stands for.
+#[inline(always)]
+fn asphere_order(term: usize) -> f64 {
+    (term + 2) as f64
+}
+
+/// One of the numbers that make a surface's shape.
+#[derive(Clone, Copy)]
+enum Shape {
+    Curvature,
+    Conic,
+    Term(usize),
+}
+
+/// Derivatives of the surface's displacement along its normal by the surface's own numbers, each
+/// times `nu_bar`.
+#[inline(always)]
+fn displace<N: Real, const D: usize>(
+    surface: &Surface,
+    closed_form: bool,
+    at: &Ray<N, D>,
+    nz: N,
+    nu_bar: N,
+    mut put: impl FnMut(Shape, N),
+) {
+    let half = N::splat(0.5);
+    let q = dot(&at.y, &at.y);
+    if closed_form {
+        put(Shape::Curvature, nu_bar * half * (q + at.z * at.z));
+        return;
+    }
+    let profile = surface.profile(q);
+    let z2 = profile.conic_sag * profile.conic_sag;
+    let axial = nu_bar * nz;
+    let over_w = axial * half / profile.w;
+    put(Shape::Curvature, over_w * (q + N::splat(1.0 + surface.conic) * z2));
+    put(Shape::Conic, over_w * N::splat(surface.curvature) * z2);
+    let mut power = q * q;
+    for term in 0..ASPHERE_TERMS {
+        put(Shape::Term(term), axial * power);
+        power = power * q;
+    }
+}
+
+/// The sweep itself. `row` (length [`Quantities::count`]) receives the derivatives.
+#[inline(always)]
+fn backward<N: Real, const D: usize>(
+    train: &Train,
+    crossings: &[Crossing<N, D>],
+    exit: &Exit<N, D>,
+    seed: &Seed<N, D>,
+    quantities: Quantities,
+    row: &mut [N],
+) {
+    let indices = train.indices();
+    let surfaces = train.len();
+    row.fill(N::splat(0.0));
+    let mut behind = leave(exit, indices[surfaces], seed);
+    row[quantities.index(surfaces)] = seed.path * exit.path_to_plane;
+
+    for (i, (surface, crossing)) in train.surfaces().iter().zip(crossings).enumerate().rev() {
+        let (n_in, n_out) = (N::splat(indices[i]), indices[i + 1]);
+        let mu = N::splat(indices[i] / n_out);
+        let Crossing { ray: at, path, cos_in, cos_out } = crossing;
+        let (n, nz) = normal(surface, at);
+
+        // Refract.
+        let over_cos_out = N::splat(1.0) / *cos_out;
+        let gamma = *cos_out - mu * *cos_in;
+        let gamma_bar = dot(&n, &behind.d) + nz * behind.dz;
+        let mut cos_bar = -(mu * gamma * over_cos_out * gamma_bar);
+        if let Some((surface, weight)) = seed.cos_in
+            && surface == i
+        {
+            cos_bar = cos_bar + weight;
+        }
+        let sin2 = N::splat(1.0) - *cos_in * *cos_in;
+        let mu_bar = dot(&at.d, &behind.d) + at.dz * behind.dz
+            - gamma_bar * (mu * sin2 * over_cos_out + *cos_in);
+        let mut n_bar = behind.d;
+        let mut before = behind;
+        for axis in 0..D {
+            n_bar[axis] = gamma * behind.d[axis] + cos_bar * at.d[axis];
+            before.d[axis] = mu * behind.d[axis] + cos_bar * n[axis];
+        }
+        let nz_bar = gamma * behind.dz + cos_bar * at.dz;
+        before.dz = mu * behind.dz + cos_bar * nz;
+
+        let gap = if i == 0 { 0.0 } else { train.gaps()[i - 1] };
+        let over_n_out = N::splat(1.0 / n_out);
+        row[quantities.index(i)] =
+            row[quantities.index(i)] + mu_bar * over_n_out + seed.path * (*path - N::splat(gap));
+        row[quantities.index(i + 1)] = row[quantities.index(i + 1)] - mu_bar * mu * over_n_out;
+
+        // Bend, then meet. Where derivatives by the conic are kept, spheres are conics too.
+        let closed_form = surface.is_sphere() && !quantities.shapes;
+        let mut put = |shape: Shape, value: N| {
+            let place = match shape {
+                Shape::Curvature => quantities.curvature(i),
+                Shape::Conic if quantities.shapes => quantities.conic(i),
+                Shape::Term(term) if quantities.shapes => quantities.asphere(i, term),
+                Shape::Conic | Shape::Term(_) => return,
+            };
+            row[place] = row[place] + value;
+        };
+        bend(surface, closed_form, at, (&n_bar, nz_bar), &mut before, &mut put);
+        let spread = n_in * seed.path + dot(&at.d, &before.y) + at.dz * before.z;
+        let nu_bar = spread / *cos_in;
+        displace(surface, closed_form, at, nz, nu_bar, &mut put);
+        before.y = along(&before.y, -nu_bar, &n);
+        before.z = before.z - nu_bar * nz;
+        before.d = along(&before.d, *path, &before.y);
+        before.dz = before.dz + *path * before.z;
+        if i > 0 {
+            row[quantities.gap(i - 1)] = -(before.z + n_in * seed.path);
+        }
+        behind = before;
+    }
+}
+
+/// [`backward`] for eight meridional rays, in the widest vectors the processor has.
+#[multiversion(targets("x86_64+avx512f+avx512dq+avx512vl+avx2", "x86_64+avx2", "aarch64+neon"))]
+pub(crate) fn backward_meridional(
+    train: &Train,
+    crossings: &[Crossing<Lanes, 1>],
+    exit: &Exit<Lanes, 1>,
+    seed: &Seed<Lanes, 1>,
+    quantities: Quantities,
+    row: &mut [Lanes],
+) {
+    backward(train, crossings, exit, seed, quantities, row);
+}
+
+/// [`backward`] for one skew ray.
+pub(crate) fn backward_skew(
+    train: &Train,
+    crossings: &[Crossing<f64, 2>],
+    exit: &Exit<f64, 2>,
+    seed: &Seed<f64, 2>,
+    quantities: Quantities,
+    row: &mut [f64],
+) {
+    backward(train, crossings, exit, seed, quantities, row);
+}

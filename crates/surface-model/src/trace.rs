@@ -1,0 +1,259 @@
+//! The exact trace: rays through a [`Train`], by vector refraction, everything else is taken from it.
+//!
+//! One body of code traces meridional rays (`D = 1` transverse coordinate, all that is needed on
+//! axis) and skew rays (`D = 2`), one at a time or [`LANES`](crate::real::LANES) side by side.
+//!
+//! At each surface, in coordinates whose origin is its vertex:
+//!
+//! 1. *Approach.* The ray is carried to a point near the vertex plane; any point of the ray would
+//!    do, but one near the surface loses no digits.
+//! 2. *Meet.* With q = x² + y², the sphere or conic c(q + (1+κ)z²) = 2z is met after the further
+//!    path s = F/(G + √(G² − AF)), F = c(q + (1+κ)z²) − 2z, G = d_z − c(xd_x + yd_y + (1+κ)zd_z),
+//!    A = c(1 + κd_z²): W. T. Welford, *Aberrations of Optical Systems* (1986), ch. 4, written for
+//!    an arbitrary starting point. Aspheres go on from there by Newton's method.
+//! 3. *Refract.* With unit normal N and cos I = N·d, Snell's law is d′ = μd + (cos I′ − μ cos I)N,
+//!    μ = n/n′, cos²I′ = 1 − μ²(1 − cos²I).
+//!
+//! A square root of a negative number is a ray that misses (2) or is totally reflected (3). It is
+//! let run on as NaN, which costs nothing, and is found and told as a [`RayFault`] at the end; no
+//! NaN leaves this module.
+
+use multiversion::multiversion;
+
+use crate::fault::{FaultReason, RayFault};
+use crate::real::{Lanes, Real};
+use crate::surface::Surface;
+use crate::train::Train;
+
+/// How far a ray may be off an aspheric surface when Newton's last step is taken, mm. The step
+/// itself squares the error.
+const NEWTON_REACH_MM: f64 = 1e-9;
+/// Newton steps before an aspheric surface counts as missed.
+const NEWTON_STEPS: usize = 30;
+
+/// A point and a unit direction. `D` transverse coordinates, the axial one apart.
+#[derive(Debug, Clone, Copy)]
+pub(crate) struct Ray<N, const D: usize> {
+    /// Transverse position, mm.
+    pub(crate) y: [N; D],
+    /// Axial position from the current vertex, mm.
+    pub(crate) z: N,
+    /// Transverse direction cosines.
+    pub(crate) d: [N; D],
+    /// Axial direction cosine.
+    pub(crate) dz: N,
+}
+
+/// What the reverse sweep needs to know of one ray at one surface.
+#[derive(Debug, Clone, Copy)]
+pub(crate) struct Crossing<N, const D: usize> {
+    /// Where the ray meets the surface, with its *incoming* direction.
+    pub(crate) ray: Ray<N, D>,
+    /// Path from the previous surface (or from the entrance plane), mm.
+    pub(crate) path: N,
+    /// Cosine of the angle of incidence.
+    pub(crate) cos_in: N,
+    /// Cosine of the angle of refraction.
+    pub(crate) cos_out: N,
+}
+
+/// A ray carried to the plane through the last vertex.
+#[derive(Debug, Clone, Copy)]
+pub(crate) struct Exit<N, const D: usize> {
+    /// Transverse position in that plane, mm.
+    pub(crate) y: [N; D],
+    /// Transverse direction cosines behind the last surface.
+    pub(crate) d: [N; D],
+    /// Axial direction cosine behind the last surface.
+    pub(crate) dz: N,
+    /// Geometric path from the last surface to that plane (negative where the sag is positive), mm.
+    pub(crate) path_to_plane: N,
+    /// Optical path from the plane through the first vertex, less that of the axial ray, mm.
+    pub(crate) path_excess: N,
+}
+
+#[inline(always)]
+pub(crate) fn dot<N: Real, const D: usize>(a: &[N; D], b: &[N; D]) -> N {
+    let mut sum = a[0] * b[0];
+    for axis in 1..D {
+        sum = sum + a[axis] * b[axis];
+    }
+    sum
+}
+
+/// a + s·b, axis by axis.
+#[inline(always)]
+pub(crate) fn along<N: Real, const D: usize>(a: &[N; D], s: N, b: &[N; D]) -> [N; D] {
+    let mut out = *a;
+    for axis in 0..D {
+        out[axis] = out[axis] + s * b[axis];
+    }
+    out
+}
+
+impl<N: Real, const D: usize> Ray<N, D> {
+    #[inline(always)]
+    fn advanced(&self, path: N) -> Self {
+        Self { y: along(&self.y, path, &self.d), z: self.z + path * self.dz, ..*self }
+    }
+}
+
+/// Unit normal of a surface at a point on it, pointing towards +z.
+#[inline(always)]
+pub(crate) fn normal<N: Real, const D: usize>(surface: &Surface, at: &Ray<N, D>) -> ([N; D], N) {
+    let one = N::splat(1.0);
+    if surface.is_sphere() {
+        let c = N::splat(surface.curvature);
+        return (at.y.map(|y| -(c * y)), one - c * at.z);
+    }
+    let q = dot(&at.y, &at.y);
+    let slope = surface.profile(q).slope;
+    let nz = one / (one + slope * slope * q).sqrt();
+    (at.y.map(|y| -(slope * nz * y)), nz)
+}
+
+/// Steps 1 and 2: carries a ray over `gap` to the surface. Returns the ray there and the path.
+#[inline(always)]
+fn meet<N: Real, const D: usize>(surface: &Surface, gap: f64, ray: &Ray<N, D>) -> (Ray<N, D>, N) {
+    let two = N::splat(2.0);
+    let ahead = N::splat(gap) - ray.z;
+    // 2 − d_z is 1/d_z to first order: near enough to the vertex plane, and no division.
+    let approach = ahead * (two - ray.dz);
+    let near = Ray { y: along(&ray.y, approach, &ray.d), z: approach * ray.dz - ahead, ..*ray };
+
+    let c = N::splat(surface.curvature);
+    let q = dot(&near.y, &near.y);
+    let yd = dot(&near.y, &near.d);
+    if surface.is_sphere() {
+        let f = c * (q + near.z * near.z) - two * near.z;
+        let g = near.dz - c * (yd + near.z * near.dz);
+        let rest = f / (g + (g * g - c * f).sqrt());
+        return (near.advanced(rest), approach + rest);
+    }
+    let k1 = N::splat(1.0 + surface.conic);
+    let f = c * (q + k1 * near.z * near.z) - two * near.z;
+    let g = near.dz - c * (yd + k1 * near.z * near.dz);
+    let a = c * (N::splat(1.0) + N::splat(surface.conic) * near.dz * near.dz);
+    let rest = f / (g + (g * g - a * f).sqrt());
+    let (at, last) = polished(surface, near.advanced(rest));
+    (at, approach + rest + last)
+}
+
+/// Newton's method along the ray onto a surface given by its sag. A lane that does not settle
+/// ends as NaN.
+#[inline(always)]
+fn polished<N: Real, const D: usize>(surface: &Surface, start: Ray<N, D>) -> (Ray<N, D>, N) {
+    let (mut at, mut path) = (start, N::splat(0.0));
+    let mut off = N::splat(0.0);
+    for _ in 0..NEWTON_STEPS {
+        let profile = surface.profile(dot(&at.y, &at.y));
+        off = at.z - profile.sag;
+        let step = -off / (at.dz - profile.slope * dot(&at.y, &at.d));
+        at = at.advanced(step);
+        path = path + step;
+        if off.settled_within(NEWTON_REACH_MM) {
+            return (at, path);
+        }
+    }
+    let unsettled_is_nan =
+        N::splat(0.0) * (N::splat(NEWTON_REACH_MM * NEWTON_REACH_MM) - off * off).sqrt();
+    (at.advanced(unsettled_is_nan), path + unsettled_is_nan)
+}
+
+/// Step 3: the crossing and the ray behind it.
+#[inline(always)]
+fn cross<N: Real, const D: usize>(
+    surface: &Surface,
+    gap: f64,
+    index_ratio: f64,
+    ray: &Ray<N, D>,
+) -> (Crossing<N, D>, Ray<N, D>) {
+    let (one, mu) = (N::splat(1.0), N::splat(index_ratio));
+    let (at, path) = meet(surface, gap, ray);
+    let (n, nz) = normal(surface, &at);
+    let cos_in = dot(&n, &at.d) + nz * at.dz;
+    let cos_out = (one - mu * mu * (one - cos_in * cos_in)).sqrt();
+    let gamma = cos_out - mu * cos_in;
+    let behind =
+        Ray { d: along(&at.d.map(|d| mu * d), gamma, &n), dz: mu * at.dz + gamma * nz, ..at };
+    (Crossing { ray: at, path, cos_in, cos_out }, behind)
+}
+
+/// Traces a ray that starts in the plane through the first vertex; `crossings` (one a surface)
+/// receives what the reverse sweep needs.
+#[inline(always)]
+fn forward<N: Real, const D: usize>(
+    train: &Train,
+    start: &Ray<N, D>,
+    crossings: &mut [Crossing<N, D>],
+) -> Exit<N, D> {
+    let indices = train.indices();
+    let mut ray = *start;
+    let mut excess = N::splat(0.0);
+    let mut gap = 0.0;
+    for (i, (surface, kept)) in train.surfaces().iter().zip(crossings).enumerate() {
+        let (crossing, behind) = cross(surface, gap, indices[i] / indices[i + 1], &ray);
+        excess = excess + N::splat(indices[i]) * (crossing.path - N::splat(gap));
+        *kept = crossing;
+        ray = behind;
+        gap = train.gaps().get(i).copied().unwrap_or(0.0);
+    }
+    let path_to_plane = -ray.z / ray.dz;
+    let last_index = indices[train.len()];
+    Exit {
+        y: along(&ray.y, path_to_plane, &ray.d),
+        d: ray.d,
+        dz: ray.dz,
+        path_to_plane,
+        path_excess: excess + N::splat(last_index) * path_to_plane,
+    }
+}
+
+/// [`forward`] for eight meridional rays, in the widest vectors the processor has.
+#[multiversion(targets("x86_64+avx512f+avx512dq+avx512vl+avx2", "x86_64+avx2", "aarch64+neon"))]
+pub(crate) fn forward_meridional(
+    train: &Train,
+    start: &Ray<Lanes, 1>,
+    crossings: &mut [Crossing<Lanes, 1>],
+) -> Exit<Lanes, 1> {
+    forward(train, start, crossings)
+}
+
+/// [`forward`] for one skew ray.
+pub(crate) fn forward_skew(
+    train: &Train,
+    start: &Ray<f64, 2>,
+    crossings: &mut [Crossing<f64, 2>],
+) -> Exit<f64, 2> {
+    forward(train, start, crossings)
+}
+
+/// Looks through the crossings of one ray for the first that failed. `lane` reads one ray's
+/// number out of the kernel's number type.
+pub(crate) fn find_fault<N: Real, const D: usize>(
+    crossings: &[Crossing<N, D>],
+    exit: &Exit<N, D>,
+    lane: impl Fn(N) -> f64,
+) -> Option<RayFault> {
+    let reason = |crossing: &Crossing<N, D>| {
+        if !lane(crossing.cos_in).is_finite() || !lane(crossing.path).is_finite() {
+            Some(FaultReason::Miss)
+        } else if lane(crossing.cos_in) <= 0.0 {
+            Some(FaultReason::FarSide)
+        } else if !lane(crossing.cos_out).is_finite() {
+            Some(FaultReason::TotalReflection)
+        } else {
+            None
+        }
+    };
+    for (surface, crossing) in crossings.iter().enumerate() {
+        if let Some(reason) = reason(crossing) {
+            return Some(RayFault { surface, reason });
+        }
+    }
+    let sound = lane(exit.path_excess).is_finite() && lane(exit.dz) > 0.0;
+    (!sound).then_some(RayFault {
+        surface: crossings.len().saturating_sub(1),
+        reason: FaultReason::TurnedBack,
+    })
+}
