@@ -1,1 +1,3 @@
 //! Checks against published values; each names its source.
+
+mod glass;

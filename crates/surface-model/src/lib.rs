@@ -2,6 +2,7 @@
 
 pub mod bundle;
 pub mod fault;
+pub mod glass;
 pub mod quadrature;
 pub mod real;
 pub mod reverse;
