@@ -1,1 +1,3 @@
 //! surface-model
+
+pub mod document;
