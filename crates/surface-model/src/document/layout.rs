@@ -155,13 +155,88 @@ mod tests {
     #[test]
     fn a_design_reads_well() {
         let value = parse(SAMPLE).unwrap();
-        insta::assert_snapshot!(layout(&value), @"");
+        insta::assert_snapshot!(layout(&value), @r#"
+        {
+          "format": "drawtube/1",
+          "title": "River-survey lidar transmitter, 2x to 6x",
+          "beam": { "wavelengths_nm": [532.0], "diameter_mm": 2.4, "traced_to": 1.5 },
+          "glasses": {
+            "melt-4471": { "from": "N-BK7", "index_shift": 0.00021 },
+            "bench-medium": { "index": 1.62 }
+          },
+          "groups": [
+            {
+              "name": "entry",
+              "elements": [
+                {
+                  "radii_mm": [74.76, -20.16],
+                  "glasses": ["fused-silica"],
+                  "thicknesses_mm": [3.0],
+                  "diameter_mm": 8.0
+                }
+              ]
+            },
+            {
+              "name": "runner",
+              "elements": [
+                {
+                  "radii_mm": [-23.63, 8.94],
+                  "glasses": ["fused-silica"],
+                  "thicknesses_mm": [2.0],
+                  "diameter_mm": 8.0
+                }
+              ]
+            },
+            {
+              "name": "exit",
+              "elements": [
+                {
+                  "name": "pair",
+                  "radii_mm": [426.0, -60.0, -85.6],
+                  "glasses": ["N-BK7", "N-SF6"],
+                  "thicknesses_mm": [5.0, 2.0],
+                  "diameter_mm": 26.0
+                },
+                {
+                  "radii_mm": ["flat", -300.0],
+                  "glasses": ["fused-silica"],
+                  "thicknesses_mm": [4.0],
+                  "diameter_mm": 26.0,
+                  "shapes": [null, { "conic": -1.2, "asphere": { "4": 1.1e-7 } }]
+                }
+              ],
+              "airs_mm": [1.0]
+            }
+          ],
+          "housing": { "track_mm": 150.0, "fixed": ["exit"] },
+          "states": [
+            { "name": "2x", "ratio": 2.0, "spacings_mm": [13.39, 107.22] },
+            { "name": "6x", "ratio": 6.0, "spacings_mm": [1.0, 127.88], "weight": 1.0 }
+          ],
+          "free": [
+            "radii",
+            "spacings",
+            { "at": "/groups/exit/elements/pair/thicknesses_mm/0", "min": 3.0, "max": 8.0 }
+          ],
+          "held": ["/groups/entry/elements/0/radii_mm/1"]
+        }
+        "#);
     }
 
     #[test]
     fn long_lists_of_numbers_fill_their_lines() {
         let numbers: Vec<f64> = (0..40).map(|n| f64::from(n) * 1.25).collect();
-        insta::assert_snapshot!(layout(&json!({ "radii_mm": numbers, "e": [], "o": {} })), @"");
+        insta::assert_snapshot!(layout(&json!({ "radii_mm": numbers, "e": [], "o": {} })), @r#"
+        {
+          "radii_mm": [
+            0.0, 1.25, 2.5, 3.75, 5.0, 6.25, 7.5, 8.75, 10.0, 11.25, 12.5, 13.75, 15.0, 16.25, 17.5, 18.75,
+            20.0, 21.25, 22.5, 23.75, 25.0, 26.25, 27.5, 28.75, 30.0, 31.25, 32.5, 33.75, 35.0, 36.25, 37.5,
+            38.75, 40.0, 41.25, 42.5, 43.75, 45.0, 46.25, 47.5, 48.75
+          ],
+          "e": [],
+          "o": {}
+        }
+        "#);
     }
 
     #[test]

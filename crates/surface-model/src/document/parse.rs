@@ -301,7 +301,42 @@ mod tests {
             .iter()
             .map(|slip| format!("{}  =>  {}", slip.escape_debug(), told(slip)))
             .collect();
-        insta::assert_snapshot!(all.join("\n"), @"");
+        insta::assert_snapshot!(all.join("\n"), @r#"
+        {\"a\": NaN}  =>  1:7: JSON has no NaN | a finite number
+        {\"a\": -Infinity}  =>  1:7: JSON has no -Infinity | a finite number
+        [1, inf]  =>  1:5: JSON has no inf | a finite number
+        [1,\n 1e999]  =>  2:2: the number 1e999 is beyond ±1.8e308 | a finite number
+        [-1e999]  =>  1:2: the number -1e999 is beyond ±1.8e308 | a finite number
+        [01]  =>  1:2: 01 is not how JSON writes a number | write it as 0.5, 1.0 or 1e-7: no plus sign in front, no leading zero, digits on both sides of the point
+        [+1]  =>  1:2: +1 is not how JSON writes a number | write it as 0.5, 1.0 or 1e-7: no plus sign in front, no leading zero, digits on both sides of the point
+        [.5]  =>  1:2: .5 is not how JSON writes a number | write it as 0.5, 1.0 or 1e-7: no plus sign in front, no leading zero, digits on both sides of the point
+        [1.]  =>  1:2: 1. is not how JSON writes a number | write it as 0.5, 1.0 or 1e-7: no plus sign in front, no leading zero, digits on both sides of the point
+        [1.5.2]  =>  1:2: 1.5.2 is not how JSON writes a number | write it as 0.5, 1.0 or 1e-7: no plus sign in front, no leading zero, digits on both sides of the point
+        [1,]  =>  1:4: there is a comma before a closing bracket | take the comma away
+        {\"a\": 1,}  =>  1:9: there is a comma before a closing bracket | take the comma away
+        {a: 1}  =>  1:2: a is not in quotes | a number, true, false, null or a text in quotes | did you mean "a"?
+        {\'a\': 1}  =>  1:2: JSON has double quotes only | write " instead of '
+        [True]  =>  1:2: True is not in quotes | a number, true, false, null or a text in quotes | did you mean true?
+        [tru]  =>  1:2: tru is not in quotes | a number, true, false, null or a text in quotes | did you mean true?
+        [flat]  =>  1:2: flat is not in quotes | a number, true, false, null or a text in quotes | did you mean "flat"?
+        // hello\n{}  =>  1:1: JSON has no comments | write a remark under the key "note"
+        {\"a\": 1 // one\n}  =>  1:9: JSON has no comments | write a remark under the key "note"
+        {\"a\" 1}  =>  1:6: "1" is not expected here | a colon
+        {\"a\": 1\n \"b\": 2}  =>  2:2: a text in quotes is not expected here | a comma or "}"
+        [1 2]  =>  1:4: "2" is not expected here | a comma or "]"
+        {} x  =>  1:4: "x" follows after the end of the document | the end of the file
+        [\"a\nb\"]  =>  1:4: a text in quotes holds a line break, a tab or another control character | close the quotes on the same line; a line break is written \n
+        [\"\\q\"]  =>  1:4: a backslash is followed by what it cannot be followed by | a backslash itself is written \\
+        [\"\\ud800\"]  =>  1:9: a backslash is followed by what it cannot be followed by | a backslash itself is written \\
+        {\"\\ud800\": 1}  =>  1:9: a backslash is followed by what it cannot be followed by | a backslash itself is written \\
+        [\"abc  =>  1:6: the file ends in the middle of a text in quotes
+        [1,   =>  1:5: the file ends in the middle of a value
+        {\"a\":  =>  1:6: the file ends in the middle of a value
+        {  =>  1:2: the file ends in the middle of an object
+        ]  =>  1:1: "]" is not expected here | a value
+        [é]  =>  1:2: é is not in quotes | a number, true, false, null or a text in quotes | did you mean "é"?
+        {\"é\": é}  =>  1:7: é is not in quotes | a number, true, false, null or a text in quotes | did you mean "é"?
+        "#);
     }
 
     #[test]

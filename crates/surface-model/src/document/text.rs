@@ -111,8 +111,8 @@ fn other_encoding(bytes: &[u8]) -> Option<&'static str> {
     match bytes {
         [0xFF, 0xFE, 0, 0, ..] | [0, 0, 0xFE, 0xFF, ..] => Some("UTF-32"),
         [0xFF, 0xFE, ..] | [0xFE, 0xFF, ..] => Some("UTF-16"),
-        [0, 0, 0, 1.., ..] | [1.., 0, 0, 0, ..] => Some("UTF-32"),
-        [0, 1.., ..] | [1.., 0, ..] => Some("UTF-16"),
+        [0, 0, 0, 1..=255, ..] | [1..=255, 0, 0, 0, ..] => Some("UTF-32"),
+        [0, 1..=255, ..] | [1..=255, 0, ..] => Some("UTF-16"),
         _ => None,
     }
 }
