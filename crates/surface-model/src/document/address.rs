@@ -6,7 +6,8 @@ use std::str::FromStr;
 use serde::{Serialize, Serializer};
 use thiserror::Error;
 
-use super::wording::quoted;
+use super::complaint::{Complaint, Place};
+use super::wording::{did_you_mean, quoted};
 
 /// The step that means every entry.
 pub(super) const EVERY: &str = "*";
@@ -88,6 +89,21 @@ impl Serialize for Address {
     }
 }
 
+impl AddressSyntaxError {
+    /// The complaint about an address that is itself written at `place` of a document.
+    pub fn complaint(&self, place: Place) -> Complaint {
+        let advice = match self {
+            Self::NoSlash(text) => Some(did_you_mean(&format!("/{text}"))),
+            Self::Escape(_) => {
+                Some("\"~\" itself is written \"~0\", \"/\" is written \"~1\"".into())
+            }
+        };
+        let expected =
+            Some("steps with a slash in front of each, such as \"/states/0/name\"".into());
+        Complaint { place, found: self.to_string(), expected, advice }
+    }
+}
+
 /// Why a text is not an address.
 #[derive(Debug, Clone, PartialEq, Eq, Error)]
 #[non_exhaustive]
@@ -158,6 +174,8 @@ mod tests {
         let told = |text: &str| text.parse::<Address>().unwrap_err().to_string();
         insta::assert_snapshot!(told("groups/0"), @r#"the address "groups/0" does not begin with "/""#);
         insta::assert_snapshot!(told("/a~2"), @r#"in the address "/a~2" a "~" is not followed by 0 or 1"#);
+        let complaint = "groups/0".parse::<Address>().unwrap_err().complaint(Place::File);
+        assert_eq!(complaint.advice.as_deref(), Some("did you mean \"/groups/0\"?"));
         assert_eq!(told("/a~"), "in the address \"/a~\" a \"~\" is not followed by 0 or 1");
     }
 

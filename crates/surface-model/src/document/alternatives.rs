@@ -18,31 +18,34 @@ pub(super) fn check_alternatives(value: &Value, shape: Shape, at: Trail, problem
         return;
     }
     if let Some(choices) = fitting.iter().map(|s| s.choices()).collect::<Option<Vec<_>>>() {
-        check_choice(value, &choices.concat(), at, problems);
+        check_choice(value, &choices.concat(), shape, at, problems);
         return;
     }
-    problems.append(nearest_alternative(value, &fitting, at));
+    let nearest = nearest_alternative(value, &fitting, at, problems.none_alike());
+    problems.append(nearest);
 }
 
 /// The problems with the alternative that fits best; none if one is fulfilled.
-fn nearest_alternative(value: &Value, fitting: &[Shape], at: Trail) -> Problems {
+fn nearest_alternative(value: &Value, fitting: &[Shape], at: Trail, none: Problems) -> Problems {
     let misfits: Vec<usize> = fitting.iter().map(|shape| misfit(value, *shape, at)).collect();
     let least = misfits.iter().copied().min().unwrap_or_default();
-    let mut best: Option<Problems> = None;
-    for (shape, misfit) in fitting.iter().zip(misfits) {
-        if misfit > least {
-            continue;
-        }
-        let mut problems = Problems::default();
+    let mut likely = fitting.iter().zip(misfits).filter(|(_, misfit)| *misfit == least);
+    let problems_with = |shape: &Shape| {
+        let mut problems = none.none_alike();
         check_node(value, *shape, at, &mut problems);
-        if best.as_ref().is_none_or(|best| problems.count() < best.count()) {
-            best = Some(problems);
-        }
-        if least > 0 || best.as_ref().is_some_and(|best| best.count() == 0) {
-            break;
+        problems
+    };
+    let Some((first, _)) = likely.next() else { return none };
+    let mut best = problems_with(first);
+    // An alternative that does not fit at first sight is not fulfilled: the first is told.
+    while least == 0 && best.count() > 0 {
+        let Some((shape, _)) = likely.next() else { break };
+        let problems = problems_with(shape);
+        if problems.count() < best.count() {
+            best = problems;
         }
     }
-    best.unwrap_or_default()
+    best
 }
 
 /// How far a value is from an alternative at first sight. Not 0 means that it does not fulfil it.

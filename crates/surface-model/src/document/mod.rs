@@ -27,9 +27,9 @@
 //! assert!(complaints.is_err_and(|told| told.contains("did you mean \"diameter_mm\"?")));
 //! ```
 //!
-//! The way of a document: [`text`] makes text of bytes, [`parse`] values of text, [`structure`]
-//! holds the values against the schema. An [`Address`] names a place ([`resolve`] finds it in the
-//! values, [`locate`] in the text); a [`Complaint`] is about such a place. [`layout`] writes.
+//! The way of a document: `text` makes text of bytes, `parse` values of text, `structure` holds the
+//! values against the schema. An [`Address`] names a place (`resolve` finds it in the values,
+//! `locate` in the text); a [`Complaint`] is about such a place. [`fn@layout`] writes.
 
 mod address;
 mod alternatives;
@@ -157,12 +157,13 @@ impl Document {
         }
         drop_notes(&mut value);
         serde_path_to_error::deserialize(value).map_err(|error| {
-            let complaint = Complaint {
-                place: Place::Value(address_of(error.path(), &self.value)),
-                found: error.inner().to_string(),
-                expected: None,
-                advice: None,
+            let told = error.inner().to_string();
+            let (found, expected) = match told.rsplit_once(", expected ") {
+                Some((found, expected)) => (found.to_owned(), Some(expected.to_owned())),
+                None => (told, None),
             };
+            let place = Place::Value(address_of(error.path(), &self.value));
+            let complaint = Complaint { place, found, expected, advice: None };
             Complaints::about(self, vec![complaint], 0)
         })
     }

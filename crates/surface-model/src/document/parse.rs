@@ -314,7 +314,7 @@ mod tests {
         [1.5.2]  =>  1:2: 1.5.2 is not how JSON writes a number | write it as 0.5, 1.0 or 1e-7: no plus sign in front, no leading zero, digits on both sides of the point
         [1,]  =>  1:4: there is a comma before a closing bracket | take the comma away
         {\"a\": 1,}  =>  1:9: there is a comma before a closing bracket | take the comma away
-        {a: 1}  =>  1:2: a is not in quotes | a number, true, false, null or a text in quotes | did you mean "a"?
+        {a: 1}  =>  1:2: the key a is not in quotes | a key in double quotes | did you mean "a"?
         {\'a\': 1}  =>  1:2: JSON has double quotes only | write " instead of '
         [True]  =>  1:2: True is not in quotes | a number, true, false, null or a text in quotes | did you mean true?
         [tru]  =>  1:2: tru is not in quotes | a number, true, false, null or a text in quotes | did you mean true?

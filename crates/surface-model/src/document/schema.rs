@@ -169,6 +169,16 @@ fn close(schema: &mut Value) {
             close(inner);
         }
     }
+    // serde keeps whole numbers of 32 bits to their range; schemars writes it for shorter ones only.
+    let range = match map.get("format").and_then(Value::as_str) {
+        Some("uint32") => Some((0, i64::from(u32::MAX))),
+        Some("int32") => Some((i64::from(i32::MIN), i64::from(i32::MAX))),
+        _ => None,
+    };
+    if let Some((least, most)) = range {
+        map.entry("minimum").or_insert(least.into());
+        map.entry("maximum").or_insert(most.into());
+    }
     // What is read as anyOf is printed as anyOf.
     if let (Some(alternatives), false) = (map.get("oneOf").cloned(), map.contains_key("anyOf")) {
         map.shift_remove("oneOf");

@@ -202,25 +202,31 @@ impl<'s> Shape<'s> {
             "null" => "null".into(),
             "boolean" => "true or false".into(),
             "string" => "a text in quotes".into(),
-            "number" => format!("a number{}", self.range()),
-            "integer" => format!("a whole number{}", self.range()),
+            "number" | "integer" => self.number_in_words(),
             "array" => self.list_in_words(depth),
             _ => self.object_in_words(),
         }))
     }
 
+    /// The numbers that are allowed, in plain words.
+    pub(super) fn number_in_words(self) -> String {
+        let kind = if self.is_whole() { "a whole number" } else { "a number" };
+        format!("{kind}{}", self.range())
+    }
+
     /// The range of a number: ` from 0 to 1`, ` above 0`, or nothing.
     fn range(self) -> String {
-        let bound = |word: &str, keyword| self.get(keyword).map(|limit| format!("{word} {limit}"));
-        let low = bound("of at least", "minimum").or_else(|| bound("above", "exclusiveMinimum"));
-        let high = bound("at most", "maximum").or_else(|| bound("below", "exclusiveMaximum"));
-        match (low, high) {
-            (Some(low), Some(high)) => format!(" {low} and {high}"),
-            (Some(one), None) => format!(" {one}"),
-            (None, Some(one)) if one.starts_with("at most") => format!(" of {one}"),
-            (None, Some(one)) => format!(" {one}"),
-            (None, None) => String::new(),
+        let bound = |keyword| self.number(keyword).map(plainly);
+        let (least, most) = (bound("minimum"), bound("maximum"));
+        if let (Some(least), Some(most)) = (&least, &most) {
+            return format!(" from {least} to {most}");
         }
+        let low = least.map(|least| format!("of at least {least}"));
+        let low = low.or_else(|| bound("exclusiveMinimum").map(|limit| format!("above {limit}")));
+        let high = most.map(|most| format!("of at most {most}"));
+        let high = high.or_else(|| bound("exclusiveMaximum").map(|limit| format!("below {limit}")));
+        let both: Vec<String> = low.into_iter().chain(high).collect();
+        if both.is_empty() { String::new() } else { format!(" {}", both.join(" and ")) }
     }
 
     fn list_in_words(self, depth: usize) -> String {
@@ -270,8 +276,13 @@ impl<'s> Shape<'s> {
     }
 }
 
+/// A limit without a needless point.
+fn plainly(limit: f64) -> String {
+    if limit.abs() < 1e15 { limit.to_string() } else { format!("{limit:e}") }
+}
+
 /// Words for allowed values.
-pub(super) fn choices_in_words(choices: &[Value]) -> String {
+fn choices_in_words(choices: &[Value]) -> String {
     let words: Vec<String> = choices
         .iter()
         .map(|choice| choice.as_str().map_or_else(|| choice.to_string(), quoted))

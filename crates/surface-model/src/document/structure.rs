@@ -14,7 +14,7 @@ use thiserror::Error;
 use super::address::Address;
 use super::alternatives::check_alternatives;
 use super::complaint::{Complain, MOST_COMPLAINTS, Place};
-use super::shape::{KeyShape, Shape, choices_in_words};
+use super::shape::{KeyShape, Shape};
 use super::suggest::nearest;
 use super::wording::{counted, did_you_mean, in_words, one_of, quoted};
 
@@ -65,8 +65,8 @@ pub enum StructureError {
         found: String,
         /// What it may be.
         expected: String,
-        /// The allowed word that is nearest to it.
-        nearest: Option<String>,
+        /// What was probably meant.
+        advice: Option<String>,
     },
     /// A number beyond its range.
     #[error("{} is {found}", subject(.at))]
@@ -115,10 +115,8 @@ impl Complain for StructureError {
 
     fn advice(&self) -> Option<String> {
         match self {
-            Self::WrongType { advice, .. } => advice.clone(),
-            Self::UnknownKey { nearest, .. } | Self::NotAChoice { nearest, .. } => {
-                nearest.as_deref().map(did_you_mean)
-            }
+            Self::WrongType { advice, .. } | Self::NotAChoice { advice, .. } => advice.clone(),
+            Self::UnknownKey { nearest, .. } => nearest.as_deref().map(did_you_mean),
             _ => None,
         }
     }
@@ -137,18 +135,30 @@ fn subject(at: &Address) -> String {
 }
 
 /// All that is wrong, the first of it in full.
-#[derive(Debug, Default, PartialEq, Eq)]
+#[derive(Debug)]
 pub(super) struct Problems {
     /// The first, in the order of the document.
     pub(super) told: Vec<StructureError>,
     /// How many more there are.
     pub(super) untold: usize,
+    /// How many are told.
+    most_told: usize,
 }
 
 impl Problems {
+    /// None yet; only the first `most_told` will be put into words.
+    fn none(most_told: usize) -> Self {
+        Self { told: Vec::new(), untold: 0, most_told }
+    }
+
+    /// None yet, to be kept like these.
+    pub(super) fn none_alike(&self) -> Self {
+        Self::none(self.most_told)
+    }
+
     /// Adds a problem; it is put into words only if it will be told.
     pub(super) fn add(&mut self, problem: impl FnOnce() -> StructureError) {
-        if self.told.len() < MOST_COMPLAINTS {
+        if self.told.len() < self.most_told {
             self.told.push(problem());
         } else {
             self.untold += 1;
@@ -191,7 +201,7 @@ impl Trail<'_> {
 
 /// Everything in `value` that `schema` does not allow.
 pub(super) fn check(value: &Value, schema: &Schema) -> Problems {
-    let mut problems = Problems::default();
+    let mut problems = Problems::none(MOST_COMPLAINTS);
     check_node(value, Shape::of(schema.as_value()), Trail::Root, &mut problems);
     problems
 }
@@ -203,7 +213,7 @@ pub(super) fn check_node(value: &Value, shape: Shape, at: Trail, problems: &mut 
         return;
     }
     if let Some(choices) = shape.choices() {
-        check_choice(value, choices, at, problems);
+        check_choice(value, choices, shape, at, problems);
         return;
     }
     shape.all_of().for_each(|part| check_node(value, part, at, problems));
@@ -228,36 +238,42 @@ pub(super) fn check_node(value: &Value, shape: Shape, at: Trail, problems: &mut 
 
 /// The problem of a value that is of none of the types allowed.
 pub(super) fn wrong_type(value: &Value, shape: Shape, at: Trail) -> StructureError {
-    let advice = match value {
-        Value::String(text) => unquoted(text, shape),
-        _ if value.is_object() || value.is_array() || value.is_null() => None,
-        bare if shape.takes_type_of(&Value::String(String::new())) => {
-            Some(format!("put it in quotes: \"{bare}\""))
-        }
-        bare => {
-            let list = Value::Array(vec![bare.clone()]);
-            let alone =
-                shape.takes_type_of(&list) && shape.entry(0).is_some_and(|e| e.takes_type_of(bare));
-            alone.then(|| format!("a list stands in brackets: [{bare}]"))
-        }
-    };
     StructureError::WrongType {
         at: at.address(),
         found: in_words(value),
         expected: shape.in_words(),
-        advice,
+        advice: differently_written(value, shape),
     }
 }
 
-/// The number, truth or null that was put in quotes by mistake.
-fn unquoted(text: &str, shape: Shape) -> Option<String> {
-    let value: Value = serde_json::from_str(text.trim()).ok()?;
-    let plain = value.is_number() || value.is_boolean() || value.is_null();
-    (plain && shape.takes_type_of(&value)).then(|| format!("write it without quotes: {value}"))
+/// How to write the value so that it is allowed: with or without quotes, or in brackets.
+fn differently_written(value: &Value, shape: Shape) -> Option<String> {
+    let allowed = |value: &Value| {
+        let mut problems = Problems::none(0);
+        check_node(value, shape, Trail::Root, &mut problems);
+        problems.count() == 0
+    };
+    if let Value::String(text) = value {
+        let bare: Value = serde_json::from_str(text.trim()).ok()?;
+        let scalar = bare.is_number() || bare.is_boolean();
+        return (scalar && allowed(&bare)).then(|| format!("write it without quotes: {bare}"));
+    }
+    let scalar = value.is_number() || value.is_boolean();
+    if scalar && allowed(&Value::String(value.to_string())) {
+        return Some(format!("put it in quotes: \"{value}\""));
+    }
+    (scalar && allowed(&Value::Array(vec![value.clone()])))
+        .then(|| format!("a list stands in brackets: [{value}]"))
 }
 
-/// Checks a value that may only be one of `choices`.
-pub(super) fn check_choice(value: &Value, choices: &[Value], at: Trail, problems: &mut Problems) {
+/// Checks a value that may only be one of `choices`, of all that `shape` allows.
+pub(super) fn check_choice(
+    value: &Value,
+    choices: &[Value],
+    shape: Shape,
+    at: Trail,
+    problems: &mut Problems,
+) {
     if choices.contains(value) {
         return;
     }
@@ -267,8 +283,8 @@ pub(super) fn check_choice(value: &Value, choices: &[Value], at: Trail, problems
         StructureError::NotAChoice {
             at: at.address(),
             found: in_words(value),
-            expected: choices_in_words(choices),
-            nearest: near.map(str::to_owned),
+            expected: shape.in_words(),
+            advice: near.map(did_you_mean).or_else(|| differently_written(value, shape)),
         }
     });
 }
@@ -278,7 +294,7 @@ fn check_number(value: &Value, shape: Shape, at: Trail, problems: &mut Problems)
         problems.add(|| StructureError::WrongType {
             at: at.address(),
             found: in_words(value),
-            expected: shape.in_words(),
+            expected: shape.number_in_words(),
             advice: whole(value).map(|whole| format!("write it without a point: {whole}")),
         });
         return;
@@ -292,7 +308,7 @@ fn check_number(value: &Value, shape: Shape, at: Trail, problems: &mut Problems)
         problems.add(|| StructureError::OutOfRange {
             at: at.address(),
             found: value.to_string(),
-            expected: shape.in_words(),
+            expected: shape.number_in_words(),
         });
     }
 }
@@ -317,7 +333,7 @@ fn check_length(
     }
     problems.add(|| StructureError::WrongLength {
         at: at.address(),
-        found: if length == 0 { format!("no {noun}") } else { counted(length, noun) },
+        found: counted(length, noun),
         expected: match (least, most) {
             (Some(least), Some(most)) if least == most => counted(least, noun),
             (Some(least), Some(most)) => format!("{least} to {}", counted(most, noun)),

@@ -45,6 +45,9 @@ pub enum SyntaxFault {
     /// A word without quotes.
     #[error("{} is not in quotes", .0)]
     Bare(String),
+    /// A key without quotes.
+    #[error("the key {} is not in quotes", .0)]
+    BareKey(String),
     /// Single quotes.
     #[error("JSON has double quotes only")]
     SingleQuote,
@@ -72,6 +75,7 @@ impl SyntaxFault {
             Self::TooDeep | Self::TooMany => Some("a document of a few kB, as a design is".into()),
             Self::Trailing(_) => Some("the end of the file".into()),
             Self::Bare(_) => Some("a number, true, false, null or a text in quotes".into()),
+            Self::BareKey(_) => Some("a key in double quotes".into()),
             Self::Other { expected, .. } => Some(expected.clone()),
             _ => None,
         }
@@ -86,6 +90,7 @@ impl SyntaxFault {
             Self::Comment => "write a remark under the key \"note\"".into(),
             Self::TrailingComma => "take the comma away".into(),
             Self::Bare(word) => did_you_mean_word(word),
+            Self::BareKey(word) => did_you_mean(word),
             Self::SingleQuote => "write \" instead of '".into(),
             Self::ControlCharacter => {
                 "close the quotes on the same line; a line break is written \\n".into()
@@ -157,9 +162,8 @@ fn by_the_text(text: &str, offset: usize, message: &str) -> (usize, SyntaxFault)
     }
     match message {
         "trailing characters" => (start, SyntaxFault::Trailing(word)),
-        "expected value" | "expected ident" | "key must be a string" if is_name => {
-            (start, SyntaxFault::Bare(word))
-        }
+        "expected value" | "expected ident" if is_name => (start, SyntaxFault::Bare(word)),
+        "key must be a string" if is_name => (start, SyntaxFault::BareKey(word)),
         "invalid number" => (start, SyntaxFault::Number(word)),
         "expected value" if unsigned.starts_with(|c: char| c == '.' || c.is_ascii_digit()) => {
             (start, SyntaxFault::Number(word))

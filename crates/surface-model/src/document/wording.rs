@@ -64,10 +64,11 @@ fn list_in_words(entries: &[Value]) -> String {
     format!("a list of {}", counted(entries.len(), kind))
 }
 
-/// `1 number`, `2 entries`.
+/// `no texts`, `1 number`, `2 entries`.
 pub(super) fn counted(count: usize, noun: &str) -> String {
-    match (count, noun.strip_suffix('y')) {
-        (1, _) => format!("1 {noun}"),
+    let count = if count == 0 { "no".into() } else { count.to_string() };
+    match (count.as_str(), noun.strip_suffix('y')) {
+        ("1", _) => format!("1 {noun}"),
         (_, Some(stem)) => format!("{count} {stem}ies"),
         _ => format!("{count} {noun}s"),
     }
