@@ -1,6 +1,7 @@
 //! surface-model
 
 pub mod bundle;
+pub mod document;
 pub mod fault;
 pub mod glass;
 pub mod quadrature;

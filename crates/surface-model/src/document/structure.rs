@@ -1,0 +1,426 @@
+//! Holding values against a JSON Schema (draft 2020-12, as far as schemars writes it): everything
+//! that is wrong, in words.
+//!
+//! Two rules go beyond the standard, and [`super::union`] writes them into the schema that is
+//! published: an object whose schema lists `properties` is closed unless the schema says otherwise,
+//! and the key `note` is allowed in every object, `$schema` at the root. `oneOf` is read as
+//! `anyOf`. Schemas are the program's own: those that refer to themselves through several
+//! alternatives at once would make the check slow.
+
+use schemars::Schema;
+use serde_json::{Map, Value};
+use thiserror::Error;
+
+use super::address::Address;
+use super::alternatives::check_alternatives;
+use super::complaint::{Complain, MOST_COMPLAINTS, Place};
+use super::shape::{KeyShape, Shape};
+use super::suggest::nearest;
+use super::wording::{counted, did_you_mean, in_words, one_of, quoted};
+
+/// Something in a document that its schema does not allow.
+#[derive(Debug, Clone, PartialEq, Eq, Error)]
+#[non_exhaustive]
+pub enum StructureError {
+    /// A value of another type.
+    #[error("{} is {found}", subject(.at))]
+    WrongType {
+        /// The value.
+        at: Address,
+        /// What it is.
+        found: String,
+        /// What it may be.
+        expected: String,
+        /// What was probably meant.
+        advice: Option<String>,
+    },
+    /// A key that has to be there is not.
+    #[error("the key {} is missing", quoted(.key))]
+    MissingKey {
+        /// The object.
+        at: Address,
+        /// The key.
+        key: String,
+        /// What it may hold.
+        expected: String,
+    },
+    /// A key that is not known in its object.
+    #[error("the key {} is not known here", quoted(.key))]
+    UnknownKey {
+        /// The entry with this key.
+        at: Address,
+        /// The key.
+        key: String,
+        /// What it may be.
+        expected: String,
+        /// The known key that is nearest to it.
+        nearest: Option<String>,
+    },
+    /// A value of the right type that is not one of those allowed.
+    #[error("{} is {found}", subject(.at))]
+    NotAChoice {
+        /// The value.
+        at: Address,
+        /// What it is.
+        found: String,
+        /// What it may be.
+        expected: String,
+        /// What was probably meant.
+        advice: Option<String>,
+    },
+    /// A number beyond its range.
+    #[error("{} is {found}", subject(.at))]
+    OutOfRange {
+        /// The number.
+        at: Address,
+        /// What it is.
+        found: String,
+        /// The range.
+        expected: String,
+    },
+    /// A list or text that is too short or too long.
+    #[error("{} has {found}", subject(.at))]
+    WrongLength {
+        /// The list or text.
+        at: Address,
+        /// Its length.
+        found: String,
+        /// The length it may have.
+        expected: String,
+    },
+}
+
+impl Complain for StructureError {
+    fn place(&self) -> Place {
+        match self {
+            Self::UnknownKey { at, .. } => Place::Key(at.clone()),
+            Self::WrongType { at, .. }
+            | Self::MissingKey { at, .. }
+            | Self::NotAChoice { at, .. }
+            | Self::OutOfRange { at, .. }
+            | Self::WrongLength { at, .. } => Place::Value(at.clone()),
+        }
+    }
+
+    fn expected(&self) -> Option<String> {
+        match self {
+            Self::WrongType { expected, .. }
+            | Self::MissingKey { expected, .. }
+            | Self::UnknownKey { expected, .. }
+            | Self::NotAChoice { expected, .. }
+            | Self::OutOfRange { expected, .. }
+            | Self::WrongLength { expected, .. } => Some(expected.clone()),
+        }
+    }
+
+    fn advice(&self) -> Option<String> {
+        match self {
+            Self::WrongType { advice, .. } | Self::NotAChoice { advice, .. } => advice.clone(),
+            Self::UnknownKey { nearest, .. } => nearest.as_deref().map(did_you_mean),
+            _ => None,
+        }
+    }
+}
+
+/// How a sentence calls the value at an address.
+fn subject(at: &Address) -> String {
+    let parent = at.parent().unwrap_or_default();
+    match (at.last(), parent.last()) {
+        (None, _) => "the document".into(),
+        (Some(index), Some(list)) if super::address::as_index(index).is_some() => {
+            format!("entry {index} of {}", quoted(list))
+        }
+        (Some(key), _) => quoted(key),
+    }
+}
+
+/// All that is wrong, the first of it in full.
+#[derive(Debug)]
+pub(super) struct Problems {
+    /// The first, in the order of the document.
+    pub(super) told: Vec<StructureError>,
+    /// How many more there are.
+    pub(super) untold: usize,
+    /// How many are told.
+    most_told: usize,
+}
+
+impl Problems {
+    /// None yet; only the first `most_told` will be put into words.
+    fn none(most_told: usize) -> Self {
+        Self { told: Vec::new(), untold: 0, most_told }
+    }
+
+    /// None yet, to be kept like these.
+    pub(super) fn none_alike(&self) -> Self {
+        Self::none(self.most_told)
+    }
+
+    /// Adds a problem; it is put into words only if it will be told.
+    pub(super) fn add(&mut self, problem: impl FnOnce() -> StructureError) {
+        if self.told.len() < self.most_told {
+            self.told.push(problem());
+        } else {
+            self.untold += 1;
+        }
+    }
+
+    /// Adds all of `others`.
+    pub(super) fn append(&mut self, others: Self) {
+        self.untold += others.untold;
+        others.told.into_iter().for_each(|problem| self.add(|| problem));
+    }
+
+    /// How many there are.
+    pub(super) fn count(&self) -> usize {
+        self.told.len() + self.untold
+    }
+}
+
+/// Where the walk is: made into an address only when something is wrong there.
+#[derive(Clone, Copy)]
+pub(super) enum Trail<'a> {
+    Root,
+    Key(&'a Trail<'a>, &'a str),
+    Index(&'a Trail<'a>, usize),
+}
+
+impl Trail<'_> {
+    pub(super) fn address(&self) -> Address {
+        match self {
+            Self::Root => Address::root(),
+            Self::Key(before, key) => before.address().key(*key),
+            Self::Index(before, index) => before.address().index(*index),
+        }
+    }
+
+    pub(super) fn is_root(&self) -> bool {
+        matches!(self, Self::Root)
+    }
+}
+
+/// Everything in `value` that `schema` does not allow.
+pub(super) fn check(value: &Value, schema: &Schema) -> Problems {
+    let mut problems = Problems::none(MOST_COMPLAINTS);
+    check_node(value, Shape::of(schema.as_value()), Trail::Root, &mut problems);
+    problems
+}
+
+/// Checks a value and all within it.
+pub(super) fn check_node(value: &Value, shape: Shape, at: Trail, problems: &mut Problems) {
+    if !shape.takes_type_of(value) {
+        problems.add(|| wrong_type(value, shape, at));
+        return;
+    }
+    if let Some(choices) = shape.choices() {
+        check_choice(value, choices, shape, at, problems);
+        return;
+    }
+    shape.all_of().for_each(|part| check_node(value, part, at, problems));
+    check_alternatives(value, shape, at, problems);
+    match value {
+        Value::Number(_) => check_number(value, shape, at, problems),
+        Value::String(text) => {
+            check_length(
+                text.chars().count(),
+                ["minLength", "maxLength"],
+                "character",
+                shape,
+                at,
+                problems,
+            );
+        }
+        Value::Array(list) => check_list(list, shape, at, problems),
+        Value::Object(map) => check_object(map, shape, at, problems),
+        Value::Null | Value::Bool(_) => {}
+    }
+}
+
+/// The problem of a value that is of none of the types allowed.
+pub(super) fn wrong_type(value: &Value, shape: Shape, at: Trail) -> StructureError {
+    StructureError::WrongType {
+        at: at.address(),
+        found: in_words(value),
+        expected: shape.in_words(),
+        advice: differently_written(value, shape),
+    }
+}
+
+/// How to write the value so that it is allowed: with or without quotes, or in brackets.
+fn differently_written(value: &Value, shape: Shape) -> Option<String> {
+    let allowed = |value: &Value| {
+        let mut problems = Problems::none(0);
+        check_node(value, shape, Trail::Root, &mut problems);
+        problems.count() == 0
+    };
+    if let Value::String(text) = value {
+        let bare: Value = serde_json::from_str(text.trim()).ok()?;
+        let scalar = bare.is_number() || bare.is_boolean();
+        return (scalar && allowed(&bare)).then(|| format!("write it without quotes: {bare}"));
+    }
+    let scalar = value.is_number() || value.is_boolean();
+    if scalar && allowed(&Value::String(value.to_string())) {
+        return Some(format!("put it in quotes: \"{value}\""));
+    }
+    (scalar && allowed(&Value::Array(vec![value.clone()])))
+        .then(|| format!("a list stands in brackets: [{value}]"))
+}
+
+/// Checks a value that may only be one of `choices`, of all that `shape` allows.
+pub(super) fn check_choice(
+    value: &Value,
+    choices: &[Value],
+    shape: Shape,
+    at: Trail,
+    problems: &mut Problems,
+) {
+    if choices.contains(value) {
+        return;
+    }
+    problems.add(|| {
+        let words = choices.iter().filter_map(Value::as_str);
+        let near = value.as_str().and_then(|word| nearest(word, words));
+        StructureError::NotAChoice {
+            at: at.address(),
+            found: in_words(value),
+            expected: shape.in_words(),
+            advice: near.map(did_you_mean).or_else(|| differently_written(value, shape)),
+        }
+    });
+}
+
+fn check_number(value: &Value, shape: Shape, at: Trail, problems: &mut Problems) {
+    if shape.is_whole() && value.is_f64() {
+        problems.add(|| StructureError::WrongType {
+            at: at.address(),
+            found: in_words(value),
+            expected: shape.number_in_words(),
+            advice: whole(value).map(|whole| format!("write it without a point: {whole}")),
+        });
+        return;
+    }
+    let Some(number) = value.as_f64() else { return };
+    let fits = shape.number("minimum").is_none_or(|least| number >= least)
+        && shape.number("maximum").is_none_or(|most| number <= most)
+        && shape.number("exclusiveMinimum").is_none_or(|limit| number > limit)
+        && shape.number("exclusiveMaximum").is_none_or(|limit| number < limit);
+    if !fits {
+        problems.add(|| StructureError::OutOfRange {
+            at: at.address(),
+            found: value.to_string(),
+            expected: shape.number_in_words(),
+        });
+    }
+}
+
+/// The whole number that is written with a point.
+fn whole(value: &Value) -> Option<String> {
+    let number = value.as_f64().filter(|n| n.fract() == 0.0 && n.abs() < 1e15)?;
+    Some(format!("{number:.0}"))
+}
+
+fn check_length(
+    length: usize,
+    [least, most]: [&str; 2],
+    noun: &str,
+    shape: Shape,
+    at: Trail,
+    problems: &mut Problems,
+) {
+    let (least, most) = (shape.count(least), shape.count(most));
+    if least.is_none_or(|least| length >= least) && most.is_none_or(|most| length <= most) {
+        return;
+    }
+    problems.add(|| StructureError::WrongLength {
+        at: at.address(),
+        found: counted(length, noun),
+        expected: match (least, most) {
+            (Some(least), Some(most)) if least == most => counted(least, noun),
+            (Some(least), Some(most)) => format!("{least} to {}", counted(most, noun)),
+            (Some(least), None) => format!("at least {}", counted(least, noun)),
+            (None, most) => format!("at most {}", counted(most.unwrap_or_default(), noun)),
+        },
+    });
+}
+
+fn check_list(list: &[Value], shape: Shape, at: Trail, problems: &mut Problems) {
+    check_length(list.len(), ["minItems", "maxItems"], "entry", shape, at, problems);
+    for (index, entry) in list.iter().enumerate() {
+        match shape.entry(index) {
+            Some(expected) => check_node(entry, expected, Trail::Index(&at, index), problems),
+            None => {
+                // One problem is enough for all the entries that are too many.
+                if shape.count("maxItems").is_none() {
+                    problems.add(|| StructureError::WrongLength {
+                        at: at.address(),
+                        found: counted(list.len(), "entry"),
+                        expected: format!("at most {}", counted(index, "entry")),
+                    });
+                }
+                break;
+            }
+        }
+    }
+}
+
+fn check_object(map: &Map<String, Value>, shape: Shape, at: Trail, problems: &mut Problems) {
+    let missing: Vec<&str> = shape.required().filter(|key| !map.contains_key(*key)).collect();
+    let unused = || shape.keys().map(|(key, _)| key).filter(|key| !map.contains_key(*key));
+    // A misspelt key is one mistake, not one unknown and one missing.
+    let meant: Vec<Option<&str>> = map
+        .keys()
+        .filter(|key| matches!(shape.key(key, at.is_root()), KeyShape::Unknown))
+        .take(MOST_COMPLAINTS)
+        .map(|key| nearest(key, unused().collect::<Vec<_>>()))
+        .collect();
+    for key in missing.into_iter().filter(|key| !meant.contains(&Some(key))) {
+        problems.add(|| StructureError::MissingKey {
+            at: at.address(),
+            key: key.to_owned(),
+            expected: missing_in_words(key, shape),
+        });
+    }
+    for (key, entry) in map {
+        let here = Trail::Key(&at, key);
+        match shape.key(key, at.is_root()) {
+            KeyShape::Known(expected) => check_node(entry, expected, here, problems),
+            KeyShape::Remark if entry.is_string() => {}
+            KeyShape::Remark => problems.add(|| StructureError::WrongType {
+                at: here.address(),
+                found: in_words(entry),
+                expected: "a text in quotes".into(),
+                advice: None,
+            }),
+            KeyShape::Unknown => problems.add(|| unknown_key(key, map, shape, here)),
+        }
+    }
+}
+
+fn missing_in_words(key: &str, shape: Shape) -> String {
+    let found = shape.keys().find(|(known, _)| *known == key);
+    let Some((_, expected)) = found else { return format!("the key {}", quoted(key)) };
+    match expected.remark() {
+        Some(remark) => format!("{}: {} ({remark})", quoted(key), expected.in_words()),
+        None => format!("{}: {}", quoted(key), expected.in_words()),
+    }
+}
+
+fn unknown_key(key: &str, map: &Map<String, Value>, shape: Shape, at: Trail) -> StructureError {
+    let known: Vec<&str> =
+        shape.keys().map(|(known, _)| known).filter(|k| !super::is_remark(k)).collect();
+    let unused: Vec<&str> = known.iter().copied().filter(|key| !map.contains_key(*key)).collect();
+    let near = nearest(key, unused.iter().copied()).or_else(|| nearest(key, known.iter().copied()));
+    let expected = if !known.is_empty() {
+        one_of(known)
+    } else if shape.get("patternProperties").is_some() {
+        "a whole number, in quotes since it is a key".into()
+    } else {
+        "no key but \"note\"".into()
+    };
+    StructureError::UnknownKey {
+        at: at.address(),
+        key: key.to_owned(),
+        expected,
+        nearest: near.map(str::to_owned),
+    }
+}
