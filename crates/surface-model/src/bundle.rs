@@ -74,7 +74,7 @@ impl Bundle {
 
     /// Sweeps back along every ray of the last [`Self::trace`] of this train. `shapes` asks for
     /// derivatives by conic constants and asphere coefficients too. Read the result with
-    /// [`Self::path_derivative`].
+    /// [`Self::path_derivatives`].
     pub fn differentiate(&mut self, train: &Train, shapes: bool) -> Quantities {
         let quantities = Quantities::new(self.surfaces, shapes);
         self.rows.resize(self.exits.len() * quantities.count(), Lanes::ZERO);

@@ -1,12 +1,19 @@
 //! surface-model
 
 pub mod bundle;
+pub mod design;
+pub mod design_error;
 pub mod document;
 pub mod fault;
 pub mod glass;
+pub mod housing;
+pub mod optics_document;
+pub mod place;
 pub mod quadrature;
 pub mod real;
+mod resolve;
 pub mod reverse;
+pub mod sequence;
 pub mod skew;
 pub mod surface;
 pub mod trace;

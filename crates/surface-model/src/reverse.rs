@@ -51,6 +51,21 @@ pub struct Quantities {
     shapes: bool,
 }
 
+/// One quantity of a train.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum Quantity {
+    /// Curvature of a surface.
+    Curvature(usize),
+    /// Gap behind a surface.
+    Gap(usize),
+    /// Index of a medium.
+    Index(usize),
+    /// Conic constant of a surface.
+    Conic(usize),
+    /// Asphere coefficient of a surface; term 0 is that of r⁴.
+    Asphere(usize, usize),
+}
+
 impl Quantities {
     /// For a train of `surfaces` surfaces; `shapes` says whether derivatives by conic constants
     /// and asphere coefficients are kept.
@@ -92,6 +107,25 @@ impl Quantities {
     #[inline]
     pub fn asphere(&self, surface: usize, term: usize) -> usize {
         4 * self.surfaces + ASPHERE_TERMS * surface + term
+    }
+
+    /// Which quantity stands at `place`.
+    #[must_use]
+    #[inline]
+    pub fn at(&self, place: usize) -> Quantity {
+        let n = self.surfaces;
+        if place < n {
+            Quantity::Curvature(place)
+        } else if place < 2 * n - 1 {
+            Quantity::Gap(place - n)
+        } else if place < 3 * n {
+            Quantity::Index(place + 1 - 2 * n)
+        } else if place < 4 * n {
+            Quantity::Conic(place - 3 * n)
+        } else {
+            let past = place - 4 * n;
+            Quantity::Asphere(past / ASPHERE_TERMS, past % ASPHERE_TERMS)
+        }
     }
 
     /// Number of derivatives in a row.

@@ -4,6 +4,7 @@
 //! names. Surface `i` stands between the media `indices[i]` and `indices[i + 1]`; gap `i` is the
 //! axial distance from surface `i` to surface `i + 1`.
 
+use crate::reverse::{Quantities, Quantity};
 use crate::surface::Surface;
 
 /// A row of surfaces with the gaps and refractive indices between them.
@@ -88,6 +89,12 @@ impl Train {
         Ok(Self { surfaces, gaps, indices })
     }
 
+    /// A train of numbers that a resolved design has already vouched for.
+    pub(crate) fn of_design(surfaces: Vec<Surface>, gaps: Vec<f64>, indices: Vec<f64>) -> Self {
+        debug_assert!(gaps.len() + 1 == surfaces.len() && indices.len() == surfaces.len() + 1);
+        Self { surfaces, gaps, indices }
+    }
+
     /// Number of surfaces, at least one.
     #[must_use]
     #[inline]
@@ -132,6 +139,18 @@ impl Train {
     #[inline]
     pub fn indices(&self) -> &[f64] {
         &self.indices
+    }
+
+    /// Sets the quantity at `place` (see [`Quantities`]).
+    #[inline]
+    pub fn set_quantity(&mut self, quantities: Quantities, place: usize, value: f64) {
+        match quantities.at(place) {
+            Quantity::Curvature(surface) => self.surfaces[surface].curvature = value,
+            Quantity::Gap(gap) => self.gaps[gap] = value,
+            Quantity::Index(medium) => self.indices[medium] = value,
+            Quantity::Conic(surface) => self.surfaces[surface].conic = value,
+            Quantity::Asphere(surface, term) => self.surfaces[surface].asphere[term] = value,
+        }
     }
 
     /// Axial distance from the first vertex to the last, mm.

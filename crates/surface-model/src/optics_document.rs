@@ -1,0 +1,150 @@
+//! The optics part of a design file, as it is written: `format` … `states`.
+//!
+//! The structs are what the file may hold; the JSON Schema is generated from them and the file is
+//! checked against it before it is read, so that reading is a formality. What a schema cannot
+//! say (counts that must fit, names that must exist) is checked by [`OpticsDocument::resolve`].
+
+use std::collections::BTreeMap;
+
+use schemars::JsonSchema;
+use serde::{Deserialize, Serialize};
+
+use crate::glass::GlassDocument;
+
+/// The optics of a zoom beam expander: beam, glass, groups, housing and zoom states.
+#[derive(Debug, Clone, PartialEq, Deserialize, Serialize, JsonSchema)]
+pub struct OpticsDocument {
+    /// Which version of the file format this is.
+    pub format: DesignFormat,
+    /// What the design is for.
+    #[serde(default)]
+    pub title: String,
+    /// The laser beam that enters, collimated.
+    pub beam: BeamDocument,
+    /// Glasses of this design's own: melts, measured or constant indices.
+    #[serde(default)]
+    pub glasses: BTreeMap<String, GlassDocument>,
+    /// Lens groups from left to right; light travels left to right.
+    #[schemars(length(min = 1))]
+    pub groups: Vec<GroupDocument>,
+    /// The tube, and the groups that do not move in it.
+    pub housing: HousingDocument,
+    /// Zoom states, one a ratio.
+    #[schemars(length(min = 1))]
+    pub states: Vec<StateDocument>,
+}
+
+/// The version of the design format.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, Deserialize, Serialize, JsonSchema)]
+pub enum DesignFormat {
+    /// The first version.
+    #[serde(rename = "drawtube/1")]
+    V1,
+}
+
+/// The laser beam that enters.
+#[derive(Debug, Clone, PartialEq, Deserialize, Serialize, JsonSchema)]
+pub struct BeamDocument {
+    /// Wavelengths in nm, in air. Ratio and exit slope are told at the first.
+    #[schemars(length(min = 1))]
+    pub wavelengths_nm: Vec<f64>,
+    /// 1/e² diameter in mm.
+    pub diameter_mm: f64,
+    /// How far out rays are traced, in 1/e² radii; 1.5 holds 98.9 % of a Gaussian beam's power.
+    #[serde(default = "default_reach")]
+    pub traced_to: f64,
+}
+
+fn default_reach() -> f64 {
+    1.5
+}
+
+/// Elements that move together.
+#[derive(Debug, Clone, PartialEq, Deserialize, Serialize, JsonSchema)]
+pub struct GroupDocument {
+    /// Its name, unique among the groups.
+    pub name: String,
+    /// Elements from left to right.
+    #[schemars(length(min = 1))]
+    pub elements: Vec<ElementDocument>,
+    /// Air between neighbouring elements, vertex to vertex, mm; one fewer than elements.
+    #[serde(default, skip_serializing_if = "Vec::is_empty")]
+    pub airs_mm: Vec<f64>,
+}
+
+/// One piece of glass, or a cemented stack.
+#[derive(Debug, Clone, PartialEq, Deserialize, Serialize, JsonSchema)]
+pub struct ElementDocument {
+    /// Its name, unique in the group.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub name: Option<String>,
+    /// Radii of curvature from left to right in mm, positive with the centre to the right, or
+    /// "flat"; one more than glasses.
+    #[schemars(length(min = 2))]
+    pub radii_mm: Vec<RadiusDocument>,
+    /// Glass names: from the catalogue ("N-BK7", "Schott:F2") or from `glasses`.
+    #[schemars(length(min = 1))]
+    pub glasses: Vec<String>,
+    /// Centre thicknesses, mm; one a glass.
+    #[schemars(length(min = 1))]
+    pub thicknesses_mm: Vec<f64>,
+    /// Clear diameter, mm.
+    pub diameter_mm: f64,
+    /// Per surface its conic constant and even asphere coefficients, or null for a sphere.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub shapes: Option<Vec<Option<ShapeDocument>>>,
+}
+
+/// A radius in mm, or the word "flat".
+#[derive(Debug, Clone, Copy, PartialEq, Deserialize, Serialize, JsonSchema)]
+#[serde(untagged)]
+pub enum RadiusDocument {
+    /// Radius of curvature in mm, positive when the centre is to the right.
+    Mm(f64),
+    /// A plane.
+    Flat(FlatWord),
+}
+
+/// The word for a plane.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, Deserialize, Serialize, JsonSchema)]
+pub enum FlatWord {
+    /// A plane surface.
+    #[serde(rename = "flat")]
+    Flat,
+}
+
+/// What makes a surface differ from a sphere.
+#[derive(Debug, Clone, Default, PartialEq, Deserialize, Serialize, JsonSchema)]
+pub struct ShapeDocument {
+    /// Conic constant: 0 sphere, −1 paraboloid, below −1 hyperboloid.
+    #[serde(default)]
+    pub conic: f64,
+    /// Even asphere coefficients by power of r, "4" to "20": sag in mm, r in mm.
+    #[serde(default, skip_serializing_if = "BTreeMap::is_empty")]
+    pub asphere: BTreeMap<String, f64>,
+}
+
+/// The tube.
+#[derive(Debug, Clone, PartialEq, Deserialize, Serialize, JsonSchema)]
+pub struct HousingDocument {
+    /// From the front datum, z = 0, to the last vertex at most, mm.
+    pub track_mm: f64,
+    /// Names of the groups that do not move.
+    #[serde(default)]
+    pub fixed: Vec<String>,
+}
+
+/// One ratio with its spacings.
+#[derive(Debug, Clone, PartialEq, Deserialize, Serialize, JsonSchema)]
+pub struct StateDocument {
+    /// Its name, unique among the states.
+    pub name: String,
+    /// Beam diameter out over in; negative is an inverted beam with an internal focus.
+    pub ratio: f64,
+    /// Air between neighbouring groups, vertex to vertex, mm; one fewer than groups.
+    pub spacings_mm: Vec<f64>,
+    /// Wavelengths of this state in nm, where they differ from the beam's.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    #[schemars(length(min = 1))]
+    pub wavelengths_nm: Option<Vec<f64>>,
+}
