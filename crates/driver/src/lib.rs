@@ -1,1 +1,3 @@
 //! driver
+
+pub mod solve;
