@@ -22,7 +22,7 @@ fn dense_jacobian(shape: &BlockShape, linearisation: &Linearisation) -> DMatrix<
 
 prop_compose! {
     fn blocks()(
-        shared in 0_usize..5,
+        shared in 1_usize..5,
         own in prop::collection::vec(0_usize..4, 1..5),
     )(
         entries in prop::collection::vec(
@@ -100,7 +100,8 @@ fn a_fixed_variable_is_not_moved_and_moves_nothing() {
     normal.eliminate(1.0, &[1.0, 4.0]).unwrap();
     let mut step = normal.gradient().to_vec();
     normal.solve(&mut step);
-    assert_eq!(step, [0.0, 0.5]);
+    assert_eq!(step[0], 0.0);
+    assert!((step[1] - 0.5).abs() < 1e-15);
 }
 
 #[test]

@@ -51,6 +51,7 @@ impl WorkingSet {
     /// Holds nothing.
     pub(crate) fn clear(&mut self) {
         self.members.clear();
+        self.factor = DMatrix::zeros(0, 0);
     }
 
     /// Forgets the solved columns: the factors of `H` or the gradients of the limits changed.
@@ -63,6 +64,7 @@ impl WorkingSet {
     /// first, until what is left is a point the dual method may start from.
     pub(crate) fn resume(&mut self, program: &Program<'_>) {
         let earlier = std::mem::take(&mut self.members);
+        self.refactor(program);
         for member in earlier {
             let still_there = match member.constraint {
                 Constraint::Low(j) => program.low[j].is_finite(),
