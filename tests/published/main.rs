@@ -1,4 +1,5 @@
 //! Checks against published values; each names its source.
 
+mod certified_regression;
 mod least_squares;
 mod smooth;

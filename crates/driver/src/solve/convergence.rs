@@ -16,6 +16,11 @@ pub(crate) struct Reduction {
 }
 
 impl Reduction {
+    /// Gain ratio: what came of what was promised.
+    pub(crate) fn gain(self) -> f64 {
+        self.actual / self.predicted
+    }
+
     /// A step is taken when it brings a ten-thousandth of what it promised (Moré 1978).
     pub(crate) fn is_acceptable(self) -> bool {
         self.actual > 0.0 && self.actual >= 1e-4 * self.predicted

@@ -55,7 +55,7 @@ impl<'a> DampedLeastSquares<'a> {
         self.stepper
     }
 
-    /// Accepts the trial and lowers the damping, or stays and raises it.
+    /// Accepts the trial and adapts the damping to it, or stays and raises it.
     fn judge(&mut self, trial: Result<Trial, Rejected>) -> bool {
         match trial {
             Ok(trial) => {
@@ -64,7 +64,7 @@ impl<'a> DampedLeastSquares<'a> {
                 let accepted = reduction.is_acceptable();
                 if accepted {
                     self.stepper.accept(trial);
-                    self.damping.lower();
+                    self.damping.adapt(reduction.gain());
                 } else {
                     self.stepper.reject();
                     self.damping.raise();
@@ -151,7 +151,7 @@ impl<P: BlockProblem> Solver<Evaluator<'_, P>, SolverState> for DampedLeastSquar
         let trial = self
             .stepper
             .solve_shared(self.settings.gradient())
-            .and_then(|()| self.stepper.accelerate(evaluator, self.settings.acceleration()))
+            .map(|()| self.stepper.accelerate(evaluator, self.settings.acceleration()))
             .and_then(|()| self.stepper.keep_limits(evaluator))
             .and_then(|()| self.stepper.try_step(evaluator));
         let length = trial.as_ref().map_or(0.0, |trial| trial.length);

@@ -132,9 +132,9 @@ impl Settings {
         Ok(self)
     }
 
-    /// Geodesic acceleration `a` of a step `v` is kept to `2|a|/|v| ≤ ratio`, else the step is
-    /// rejected (Transtrum and Sethna, arXiv:1201.5885, who recommend 0.75, the default).
-    /// `None` switches acceleration off.
+    /// Geodesic acceleration `a` of a step `v` is kept to `2|a|/|v| ≤ ratio`, else the straight
+    /// step is tried (Transtrum and Sethna, arXiv:1201.5885, who recommend 0.75, the default).
+    /// `None` switches acceleration off, which takes several times the steps on beam expanders.
     ///
     /// # Errors
     /// The ratio is not positive or not finite.

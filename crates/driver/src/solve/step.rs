@@ -47,8 +47,6 @@ pub(crate) enum Rejected {
     Stationary,
     /// No step satisfies the linearised limits, not even the one that only stops their decline.
     Inconsistent,
-    /// The path bends too sharply for a step this long.
-    TooCurved,
     /// The trial point cannot be evaluated.
     Unusable,
 }
@@ -318,17 +316,17 @@ impl Stepper {
         &mut self,
         evaluator: &mut Evaluator<'_, P>,
         ratio: Option<f64>,
-    ) -> Result<(), Rejected> {
-        let Some(ratio) = ratio else { return Ok(()) };
+    ) {
+        let Some(ratio) = ratio else { return };
         if self.predicted <= WORTHWHILE * self.point.sum_of_squares {
-            return Ok(());
+            return;
         }
         self.place_trial(PROBE);
         let probed = evaluator
             .residuals(&self.trial.variables, &mut self.residuals)
             .and_then(|_| evaluator.limits(&self.trial.variables, &mut self.trial.limits));
         if probed.is_err() {
-            return Ok(());
+            return;
         }
         jacobian_times(&self.here, &self.shape, &self.step, &mut self.along);
         let here = self.here.states.iter().flat_map(|block| block.residuals.iter());
@@ -351,12 +349,14 @@ impl Stepper {
         self.solve_free();
         if self.solve_program().is_err() {
             self.step.copy_from_slice(&self.bent);
-            return Ok(());
+            return;
         }
         let straight = self.scaling.length_squared(&self.bent);
         self.bent.iter_mut().zip(&self.step).for_each(|(straight, bent)| *straight -= bent);
         let bend = self.scaling.length_squared(&self.bent);
-        if is_moderate(bend, straight, ratio) { Ok(()) } else { Err(Rejected::TooCurved) }
+        if !is_moderate(bend, straight, ratio) {
+            self.step.iter_mut().zip(&self.bent).for_each(|(bent, undo)| *bent += undo);
+        }
     }
 
     /// Places the trial point and, where it crosses a limit by its curvature, corrects the step
@@ -404,19 +404,20 @@ impl Stepper {
     }
 
     /// Puts the trial point a share of the step away, within the bounds to the last bit.
+    ///
+    /// A step that ends on a bound up to rounding ends on the bound.
     fn place_trial(&mut self, share: f64) {
+        let near = |end: f64, bound: f64, p: f64| (end - bound).abs() <= 1e-10 * p.abs();
         self.trial.variables.clear();
         for ((range, x), p) in self.bounds.iter().zip(&self.point.variables).zip(&self.step) {
-            self.trial.variables.push(range.clamp(x + share * p));
-        }
-        if share == 1.0 {
-            for (constraint, _) in self.working.multipliers() {
-                match constraint {
-                    Constraint::Low(j) => self.trial.variables[j] = self.bounds[j].low,
-                    Constraint::High(j) => self.trial.variables[j] = self.bounds[j].high,
-                    Constraint::Limit(_) => {}
-                }
-            }
+            let end = range.clamp(x + share * p);
+            self.trial.variables.push(if near(end, range.low, *p) {
+                range.low
+            } else if near(end, range.high, *p) {
+                range.high
+            } else {
+                end
+            });
         }
     }
 
