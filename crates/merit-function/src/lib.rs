@@ -1,3 +1,16 @@
 //! merit-function
 
+pub mod assessment;
 pub mod block;
+mod bounds;
+mod edge;
+pub mod fault;
+pub mod goals;
+mod limit_item;
+mod limit_rows;
+pub mod limits;
+pub mod problem;
+mod row_evaluation;
+pub mod variables;
+mod warnings;
+pub mod wishes;

@@ -168,6 +168,12 @@ impl Document {
         })
     }
 
+    /// Complaints about this document, placed in its text.
+    #[must_use]
+    pub fn refuse<E: Into<Complaint>>(&self, errors: impl IntoIterator<Item = E>) -> Complaints {
+        Complaints::about(self, errors.into_iter().map(E::into).collect(), 0)
+    }
+
     /// Nothing if `errors` is empty, otherwise all of them, placed in the text.
     ///
     /// # Errors

@@ -1,0 +1,155 @@
+//! A design file: the document as it was written, and what its three owners make of it.
+
+use merit_function::variables::FreePlace;
+use merit_function::wishes::{Wishes, WishesDocument};
+use schemars::generate::SchemaSettings;
+use schemars::{JsonSchema, Schema};
+use serde_json::Value;
+use surface_model::design::Design;
+use surface_model::document::{
+    Address, Complaint, Complaints, Document, Place as PlaceInFile, layout, quoted, union,
+};
+use surface_model::optics_document::OpticsDocument;
+use surface_model::place::Place;
+
+use crate::freedom::{self, FreedomDocument};
+
+/// The newest format of design files this program reads and writes.
+pub const DESIGN_FORMAT: &str = "drawtube/1";
+
+/// A design file, read and checked.
+#[derive(Debug, Clone)]
+pub struct DesignFile {
+    document: Document,
+    /// The optics: `beam` … `states`.
+    pub design: Design,
+    /// What is wanted: `goals` and `limits`.
+    pub wishes: Wishes,
+    /// What may change: `free` less `held`.
+    pub free: Vec<FreePlace>,
+}
+
+impl DesignFile {
+    /// Reads a design file.
+    ///
+    /// # Errors
+    /// Everything that is wrong with it, placed in its text.
+    pub fn read(document: Document) -> Result<Self, Complaints> {
+        refuse_other_formats(&document)?;
+        document.check(&design_schema())?;
+        let optics: OpticsDocument = document.read()?;
+        let wanted: WishesDocument = document.read()?;
+        let freedom: FreedomDocument = document.read()?;
+
+        let (design, wishes) = match (optics.resolve(), wanted.resolve()) {
+            (Ok(design), Ok(wishes)) => (design, wishes),
+            (design, wishes) => {
+                let optics = design.err().into_iter().flatten().map(Complaint::from);
+                let wanted = wishes.err().into_iter().flatten().map(Complaint::from);
+                return Err(document.refuse(optics.chain(wanted)));
+            }
+        };
+        match freedom::resolve(&freedom, &design, document.value()) {
+            Ok(free) => Ok(Self { document, design, wishes, free }),
+            Err(complaints) => Err(document.refuse(complaints)),
+        }
+    }
+
+    /// What messages call the file.
+    #[must_use]
+    pub fn label(&self) -> &str {
+        self.document.label()
+    }
+
+    /// The document as it was written.
+    #[must_use]
+    pub fn document(&self) -> &Document {
+        &self.document
+    }
+
+    /// The same file with the free numbers of `design` in place of its own; remarks, order and
+    /// everything else stay.
+    ///
+    /// # Errors
+    /// The numbers do not make a design (a surface no longer reaches its clear diameter).
+    pub fn with_numbers_of(&self, design: &Design) -> Result<Self, Complaints> {
+        let mut value = self.document.value().clone();
+        let mut places: Vec<Place> = self.free.iter().map(|free| free.place).collect();
+        // Spacings that follow from the housing may move without being free themselves.
+        let spacings = Place::all(design).into_iter();
+        places.extend(spacings.filter(|place| matches!(place, Place::Spacing { .. })));
+        for place in places {
+            let now = place.value(design);
+            if now.to_bits() != place.value(&self.design).to_bits() {
+                put(&mut value, place, now);
+            }
+        }
+        Self::read(Document::from_value(self.label(), value))
+    }
+
+    /// The text of the file.
+    #[must_use]
+    pub fn text(&self) -> String {
+        layout(self.document.value())
+    }
+}
+
+/// Writes one number into a document, in the file's own unit. A place that the document lacks (a
+/// conic constant left out) is made.
+fn put(value: &mut Value, place: Place, number: f64) {
+    let written = match place {
+        Place::Radius(_) if number == 0.0 => Value::from("flat"),
+        Place::Radius(_) => Value::from(1.0 / number),
+        _ => Value::from(number),
+    };
+    let at = place.address();
+    if let Some(slot) = at.get_mut(value) {
+        *slot = written;
+    } else if let Some(parent) = at.parent()
+        && let (Some(Value::Object(map)), Some(key)) = (parent.get_mut(value), at.last())
+    {
+        map.insert(key.to_owned(), written);
+    }
+}
+
+/// A document of a newer format, or of another kind, is refused by name before anything else is
+/// held against it.
+fn refuse_other_formats(document: &Document) -> Result<(), Complaints> {
+    let Some(Value::String(format)) = document.value().get("format") else { return Ok(()) };
+    if format == DESIGN_FORMAT {
+        return Ok(());
+    }
+    let newer = format
+        .strip_prefix("drawtube/")
+        .and_then(|version| version.parse::<u32>().ok())
+        .is_some_and(|version| version > 1);
+    let advice = if newer {
+        Some("this file was written for a newer drawtube".to_owned())
+    } else if format.starts_with("drawtube-brief/") {
+        Some("this is a brief, not a design".to_owned())
+    } else {
+        None
+    };
+    let at = Address::root().key("format");
+    Err(document.refuse([Complaint {
+        place: PlaceInFile::Value(at),
+        found: format!("the format is {}", quoted(format)),
+        expected: Some(format!("\"{DESIGN_FORMAT}\"")),
+        advice,
+    }]))
+}
+
+/// The schema of a type without references, so that a document can be held against it step by
+/// step.
+fn part<T: JsonSchema>() -> Schema {
+    let settings =
+        SchemaSettings::draft2020_12().with(|settings| settings.inline_subschemas = true);
+    settings.into_generator().into_root_schema_for::<T>()
+}
+
+/// JSON Schema of design files: the union of what the three owners read.
+#[must_use]
+pub fn design_schema() -> Schema {
+    let parts = [part::<OpticsDocument>(), part::<WishesDocument>(), part::<FreedomDocument>()];
+    union("A drawtube design", &parts)
+}

@@ -1,0 +1,219 @@
+//! One local optimisation: from a design file to a better one.
+//!
+//! The solver does the work; what stands here is what surrounds it: the merit function of the
+//! file, bringing in a start whose outer rays fail, and telling what became of it.
+
+use merit_function::assessment::{Assessment, assess};
+use merit_function::block::BlockProblem;
+use merit_function::fault::EvaluationFault;
+use merit_function::problem::{MeritFunction, RAYS};
+use merit_function::variables::{Variables, VariablesError};
+use serde::Serialize;
+use surface_model::document::Complaints;
+use surface_model::glass::GlassError;
+
+use crate::design_file::DesignFile;
+use crate::solve::{self, Observer, Outcome, Settings, SolveError, Stopped};
+
+/// Smallest part of the beam that is tried when the rays of a start fail.
+const NARROWEST: f64 = 0.02;
+/// By how much the traced part of the beam is narrowed or widened at a time.
+const WIDENING: f64 = 1.25;
+/// Steps spent at each width on the way to the whole beam.
+const STEPS_A_WIDTH: u64 = 25;
+
+/// What became of an optimisation.
+#[derive(Debug, Clone)]
+pub struct Optimisation {
+    /// The file with its free numbers changed.
+    pub file: DesignFile,
+    /// Before and after.
+    pub report: OptimisationReport,
+    /// Why the solver stopped.
+    pub stopped: Stopped,
+}
+
+/// What `optimise --json` prints.
+#[derive(Debug, Clone, PartialEq, Serialize)]
+pub struct OptimisationReport {
+    /// Always `drawtube-optimisation/1`.
+    pub format: &'static str,
+    /// The solver's name.
+    pub method: &'static str,
+    /// Why it stopped, as a sentence.
+    pub stopped: String,
+    /// Steps accepted and rejected.
+    pub iterations: u64,
+    /// Evaluations of all residuals.
+    pub evaluations: u64,
+    /// Wall time of the solver alone, s.
+    pub solve_seconds: f64,
+    /// Free numbers that ended on a bound of their own.
+    pub on_bounds: usize,
+    /// Number of variables.
+    pub variables: usize,
+    /// The design as it was.
+    pub start: Assessment,
+    /// The design as it is now.
+    pub end: Assessment,
+}
+
+/// Why an optimisation could not begin.
+#[derive(Debug, thiserror::Error)]
+#[non_exhaustive]
+pub enum OptimiseError {
+    /// No state has a goal.
+    #[error("the file has no goals, so there is nothing to optimise towards")]
+    NoGoals,
+    /// Everything is held.
+    #[error("nothing in the file is free to change")]
+    NothingFree,
+    /// The free numbers contradict limits or housing.
+    #[error(transparent)]
+    Variables(#[from] VariablesError),
+    /// A glass is not known at a wavelength.
+    #[error(transparent)]
+    Glass(#[from] GlassError),
+    /// Not even the innermost rays get through.
+    #[error("the start cannot be traced: {0}")]
+    Start(EvaluationFault),
+    /// The solver refuses.
+    #[error(transparent)]
+    Solve(#[from] SolveError),
+    /// The numbers found do not make a design file.
+    #[error("the numbers found do not make a design:\n{0}")]
+    Result(Complaints),
+}
+
+/// Optimises the free numbers of a design file.
+///
+/// # Errors
+/// See [`OptimiseError`]. Whatever happens, the file that was given is not touched.
+pub fn optimise(
+    file: &DesignFile,
+    settings: &Settings,
+    observer: &mut dyn Observer,
+) -> Result<Optimisation, OptimiseError> {
+    let start = assess(&file.design, &file.wishes);
+    let mut merit = merit_of(file)?;
+    let from = merit.variables().start().to_vec();
+    let widened = bring_in(&mut merit, from, settings, observer)?;
+    let outcome = match widened.stopped_early {
+        Some(outcome) => outcome,
+        None => solve::run(&mut merit, &widened.variables, settings, observer)?,
+    };
+    let mut design = file.design.clone();
+    merit.variables().write(&outcome.variables, &mut design);
+    let optimised = file.with_numbers_of(&design).map_err(OptimiseError::Result)?;
+    let end = assess(&optimised.design, &optimised.wishes);
+    let report = OptimisationReport {
+        format: "drawtube-optimisation/1",
+        method: settings.method().name(),
+        stopped: outcome.stopped.to_string(),
+        iterations: outcome.iterations + widened.iterations,
+        evaluations: outcome.evaluations + widened.evaluations,
+        solve_seconds: outcome.time.as_secs_f64() + widened.seconds,
+        on_bounds: on_bounds(&merit, &outcome.variables),
+        variables: outcome.variables.len(),
+        start,
+        end,
+    };
+    Ok(Optimisation { file: optimised, report, stopped: outcome.stopped })
+}
+
+/// The merit function of a design file over its free numbers.
+///
+/// # Errors
+/// There is no goal or nothing free, or ranges contradict each other.
+pub fn merit_of(file: &DesignFile) -> Result<MeritFunction, OptimiseError> {
+    let any_goal = file.wishes.states.iter().any(|goals| {
+        let present = [goals.wavefront_rms_waves, goals.ratio_percent, goals.exit_slope_urad];
+        present.iter().any(Option::is_some) && goals.weight > 0.0
+    });
+    if !any_goal {
+        return Err(OptimiseError::NoGoals);
+    }
+    if file.free.is_empty() {
+        return Err(OptimiseError::NothingFree);
+    }
+    let variables = Variables::new(&file.design, &file.wishes.limits, &file.free)?;
+    Ok(MeritFunction::new(&file.design, &file.wishes, variables, RAYS)?)
+}
+
+fn on_bounds(merit: &MeritFunction, variables: &[f64]) -> usize {
+    let bounds = merit.bounds().iter().zip(variables);
+    bounds.filter(|(bounds, value)| **value <= bounds.low || **value >= bounds.high).count()
+}
+
+/// A start through which the whole beam passes.
+struct Widened {
+    variables: Vec<f64>,
+    /// The outcome, if the user stopped on the way.
+    stopped_early: Option<Outcome>,
+    iterations: u64,
+    evaluations: u64,
+    seconds: f64,
+}
+
+/// Where outer rays fail at the start, traces only as much of the beam as gets through, optimises
+/// a little, and widens step by step until the whole beam does.
+fn bring_in(
+    merit: &mut MeritFunction,
+    from: Vec<f64>,
+    settings: &Settings,
+    observer: &mut dyn Observer,
+) -> Result<Widened, OptimiseError> {
+    let mut widened = Widened {
+        variables: from.iter().zip(merit.bounds()).map(|(&x, bounds)| bounds.clamp(x)).collect(),
+        stopped_early: None,
+        iterations: 0,
+        evaluations: 0,
+        seconds: 0.0,
+    };
+    let few = Settings::new(settings.method())
+        .with_max_iterations(STEPS_A_WIDTH)
+        .unwrap_or_else(|_| settings.clone());
+    let mut residuals = vec![0.0; merit.shape().residuals()];
+    let mut aperture = 1.0;
+    loop {
+        merit.set_aperture(aperture);
+        match merit.residuals(&widened.variables, &mut residuals) {
+            Ok(()) if aperture >= 1.0 => return Ok(widened),
+            Ok(()) => {
+                let outcome = solve::run(merit, &widened.variables, &few, observer)?;
+                widened.iterations += outcome.iterations;
+                widened.evaluations += outcome.evaluations;
+                widened.seconds += outcome.time.as_secs_f64();
+                widened.variables.clone_from(&outcome.variables);
+                if outcome.stopped == Stopped::Interrupted || outcome.stopped == Stopped::Observer {
+                    widened.stopped_early = Some(outcome);
+                    merit.set_aperture(1.0);
+                    return Ok(widened);
+                }
+                aperture = widest(merit, &widened.variables, aperture, &mut residuals)?;
+            }
+            Err(fault) if aperture <= NARROWEST => return Err(OptimiseError::Start(fault)),
+            Err(_) => aperture = (aperture / WIDENING).max(NARROWEST),
+        }
+    }
+}
+
+/// The widest part of the beam, up to [`WIDENING`] times the last, that gets through; a start that
+/// widens no further is given up with the fault that stops it.
+fn widest(
+    merit: &mut MeritFunction,
+    variables: &[f64],
+    last: f64,
+    residuals: &mut [f64],
+) -> Result<f64, OptimiseError> {
+    let mut factor = WIDENING;
+    loop {
+        let aperture = (last * factor).min(1.0);
+        merit.set_aperture(aperture);
+        match merit.residuals(variables, residuals) {
+            Ok(()) => return Ok(aperture),
+            Err(fault) if factor < 1.001 => return Err(OptimiseError::Start(fault)),
+            Err(_) => factor = 1.0 + (factor - 1.0) / 2.0,
+        }
+    }
+}

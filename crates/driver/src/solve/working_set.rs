@@ -1,0 +1,242 @@
+//! The working set of the dual active-set method: which constraints hold with equality, their
+//! multipliers, and the small dense matrix `N ᵀH⁻¹N` over them.
+
+use nalgebra::DMatrix;
+
+use super::cholesky::{dot, factorise, solve_lower, solve_upper, subtract_scaled};
+use super::quadratic::{Constraint, Inconsistent, Program};
+
+/// A normal whose part outside the span of the working normals is smaller than this share of
+/// itself counts as dependent on them.
+const DEPENDENT: f64 = 1e-11;
+
+/// Constraints held with equality, with multipliers `u ≥ 0`.
+#[derive(Debug, Clone, Default)]
+pub(crate) struct WorkingSet {
+    members: Vec<Member>,
+    /// Columns solved with the present factors, for any constraint that entered so far.
+    solved: Vec<Column>,
+    /// Cholesky factor of `NᵀH⁻¹N` over the members.
+    factor: DMatrix<f64>,
+}
+
+#[derive(Debug, Clone, Copy)]
+struct Member {
+    constraint: Constraint,
+    multiplier: f64,
+    /// Index into `solved`.
+    column: usize,
+}
+
+#[derive(Debug, Clone)]
+struct Column {
+    constraint: Constraint,
+    /// `H⁻¹n`.
+    solved: Vec<f64>,
+    /// `nᵀH⁻¹n`.
+    curvature: f64,
+}
+
+impl WorkingSet {
+    /// Whether the constraint is held with equality.
+    pub(crate) fn contains(&self, constraint: Constraint) -> bool {
+        self.members.iter().any(|member| member.constraint == constraint)
+    }
+
+    /// The constraints held with equality and their multipliers.
+    pub(crate) fn multipliers(&self) -> impl Iterator<Item = (Constraint, f64)> + '_ {
+        self.members.iter().map(|member| (member.constraint, member.multiplier))
+    }
+
+    /// Holds nothing.
+    pub(crate) fn clear(&mut self) {
+        self.members.clear();
+        self.factor = DMatrix::zeros(0, 0);
+    }
+
+    /// Forgets the solved columns: the factors of `H` or the gradients of the limits changed.
+    pub(crate) fn forget_columns(&mut self) {
+        self.solved.clear();
+    }
+
+    /// Takes up the members left from an earlier program as far as they fit this one: those
+    /// dependent on others are left out, and those with a negative multiplier are let go, worst
+    /// first, until what is left is a point the dual method may start from.
+    pub(crate) fn resume(&mut self, program: &Program<'_>) {
+        let earlier = std::mem::take(&mut self.members);
+        self.refactor(program);
+        for member in earlier {
+            let still_there = match member.constraint {
+                Constraint::Low(j) => program.low[j].is_finite(),
+                Constraint::High(j) => program.high[j].is_finite(),
+                Constraint::Limit(i) => i < program.limits.len(),
+            };
+            if still_there {
+                let column = self.column(program, member.constraint);
+                if self.outside_span(program, column).is_some() {
+                    self.push(program, member.constraint, column, 0.0);
+                }
+            }
+        }
+        self.settle(program);
+    }
+
+    /// Multipliers of the present members, `(NᵀH⁻¹N) u = b − Nᵀp₀`, members whose multiplier is
+    /// negative let go.
+    pub(crate) fn settle(&mut self, program: &Program<'_>) {
+        loop {
+            let mut multipliers: Vec<f64> = self
+                .members
+                .iter()
+                .map(|m| program.level(m.constraint) - program.along(m.constraint, program.free))
+                .collect();
+            solve_lower(&self.factor, &mut multipliers);
+            solve_upper(&self.factor, &mut multipliers);
+            for (member, multiplier) in self.members.iter_mut().zip(&multipliers) {
+                member.multiplier = *multiplier;
+            }
+            let worst = multipliers
+                .iter()
+                .enumerate()
+                .min_by(|a, b| a.1.total_cmp(b.1))
+                .filter(|(_, multiplier)| **multiplier < 0.0);
+            match worst {
+                Some((position, _)) => self.let_go(program, position),
+                None => return,
+            }
+        }
+    }
+
+    /// `p = p₀ + H⁻¹N u`.
+    pub(crate) fn step(&self, program: &Program<'_>, step: &mut Vec<f64>) {
+        step.clear();
+        step.extend_from_slice(program.free);
+        for member in &self.members {
+            subtract_scaled(step, -member.multiplier, &self.solved[member.column].solved);
+        }
+    }
+
+    /// Takes in a violated constraint, letting go of members whose multiplier would turn
+    /// negative on the way (step 2 of the algorithm in Goldfarb and Idnani).
+    pub(crate) fn take_in(
+        &mut self,
+        program: &Program<'_>,
+        entering: Constraint,
+        step: &mut [f64],
+    ) -> Result<(), Inconsistent> {
+        let column = self.column(program, entering);
+        let mut multiplier = 0.0;
+        loop {
+            let direction = self.dual_direction(program, column);
+            let (blocking, dual_length) = self.blocking(&direction);
+            let outside = self.outside_span(program, column);
+            let shortfall = program.level(entering) - program.along(entering, step);
+            let primal_length = outside.map_or(f64::INFINITY, |outside| shortfall / outside);
+            let length = dual_length.min(primal_length);
+            if length == f64::INFINITY {
+                return Err(Inconsistent);
+            }
+            for (member, r) in self.members.iter_mut().zip(&direction) {
+                member.multiplier -= length * r;
+            }
+            multiplier += length;
+            if outside.is_some() {
+                subtract_scaled(step, -length, &self.solved[column].solved);
+                for (member, r) in self.members.iter().zip(&direction) {
+                    subtract_scaled(step, length * r, &self.solved[member.column].solved);
+                }
+            }
+            match blocking {
+                Some(position) if dual_length < primal_length => self.let_go(program, position),
+                _ => {
+                    self.push(program, entering, column, multiplier);
+                    return Ok(());
+                }
+            }
+        }
+    }
+
+    /// `r = (NᵀH⁻¹N)⁻¹ NᵀH⁻¹n`: how the multipliers give way to an entering normal.
+    fn dual_direction(&self, program: &Program<'_>, column: usize) -> Vec<f64> {
+        let mut direction = self.products(program, column);
+        solve_lower(&self.factor, &mut direction);
+        solve_upper(&self.factor, &mut direction);
+        direction
+    }
+
+    /// The member whose multiplier first reaches zero along `−direction`, and after what length.
+    fn blocking(&self, direction: &[f64]) -> (Option<usize>, f64) {
+        let largest = direction.iter().fold(0.0, |largest: f64, r| largest.max(r.abs()));
+        let mut first = (None, f64::INFINITY);
+        for (position, (member, &r)) in self.members.iter().zip(direction).enumerate() {
+            if r > 1e-13 * largest {
+                let length = member.multiplier.max(0.0) / r;
+                if length < first.1 {
+                    first = (Some(position), length);
+                }
+            }
+        }
+        first
+    }
+
+    /// `nᵀz`: the squared length, in the metric `H⁻¹`, of the part of a normal outside the span
+    /// of the working normals; `None` when it depends on them.
+    fn outside_span(&self, program: &Program<'_>, column: usize) -> Option<f64> {
+        let mut inside = self.products(program, column);
+        solve_lower(&self.factor, &mut inside);
+        let curvature = self.solved[column].curvature;
+        let outside = curvature - dot(&inside, &inside);
+        (outside > DEPENDENT * curvature).then_some(outside)
+    }
+
+    /// `NᵀH⁻¹n` for a solved column.
+    fn products(&self, program: &Program<'_>, column: usize) -> Vec<f64> {
+        let solved = &self.solved[column].solved;
+        self.members.iter().map(|m| program.along(m.constraint, solved)).collect()
+    }
+
+    fn push(
+        &mut self,
+        program: &Program<'_>,
+        constraint: Constraint,
+        column: usize,
+        multiplier: f64,
+    ) {
+        self.members.push(Member { constraint, multiplier, column });
+        self.refactor(program);
+    }
+
+    fn let_go(&mut self, program: &Program<'_>, position: usize) {
+        self.members.remove(position);
+        self.refactor(program);
+    }
+
+    /// Working sets are small: forming and factorising anew keeps rounding from piling up.
+    fn refactor(&mut self, program: &Program<'_>) {
+        loop {
+            let size = self.members.len();
+            self.factor = DMatrix::from_fn(size, size, |row, column| {
+                let solved = &self.solved[self.members[column].column].solved;
+                if row < column { 0.0 } else { program.along(self.members[row].constraint, solved) }
+            });
+            if factorise(&mut self.factor).is_ok() {
+                return;
+            }
+            // Dependent to working precision after all: the newest member goes.
+            self.members.pop();
+        }
+    }
+
+    /// Index of the solved column of a constraint, solved now if it is new.
+    fn column(&mut self, program: &Program<'_>, constraint: Constraint) -> usize {
+        let known = self.solved.iter().position(|column| column.constraint == constraint);
+        known.unwrap_or_else(|| {
+            let mut solved = vec![0.0; program.free.len()];
+            program.write_normal(constraint, &mut solved);
+            program.normal.solve(&mut solved);
+            let curvature = program.along(constraint, &solved);
+            self.solved.push(Column { constraint, solved, curvature });
+            self.solved.len() - 1
+        })
+    }
+}

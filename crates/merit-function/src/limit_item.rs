@@ -1,0 +1,217 @@
+//! Every single thing a limit applies to: this edge, that spacing in this state.
+
+use surface_model::design::Design;
+use surface_model::document::Address;
+use surface_model::housing::Anchor;
+use surface_model::place::Place;
+use surface_model::sequence::{GapId, Sequence, SurfaceId};
+use surface_model::train::Train;
+
+use crate::edge::edge_mm;
+use crate::limits::{LimitKind, Limits, Range};
+
+/// One limited quantity of a design.
+#[derive(Debug, Clone, PartialEq)]
+pub(crate) struct LimitItem {
+    /// Which limit it is.
+    pub kind: LimitKind,
+    /// What it applies to, in the design file.
+    pub at: Address,
+    /// The state it is measured in, where it differs from state to state and `at` does not tell.
+    pub state: Option<usize>,
+    /// What is allowed.
+    pub range: Range,
+    pub(crate) measure: Measure,
+}
+
+/// How a limited quantity is measured on the trains.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub(crate) enum Measure {
+    /// A gap on axis.
+    Gap(usize),
+    /// A gap at the edge: at the smaller clear radius of its two surfaces.
+    Edge(usize),
+    /// |1/curvature| of a surface.
+    Radius(usize),
+    /// Semi-diameter times |curvature| of a surface.
+    Steepness(usize),
+    /// Way of a group over all states.
+    Travel(usize),
+    /// Angle of incidence of the edge ray at a surface.
+    Incidence(usize),
+    /// First vertex to last vertex.
+    Length,
+    /// Room between the train and the front of the housing.
+    Front,
+    /// Room between the train and the rear of the housing.
+    Rear,
+    /// Smallest height of the marginal ray, paraxial and exact, over its height at entry.
+    Focus,
+}
+
+/// What is measured of one state: its train at the first wavelength, and the rays in it.
+#[derive(Debug, Clone)]
+pub(crate) struct StateView {
+    pub(crate) train: Train,
+    /// Paraxial marginal height at every surface for unit height at entry.
+    pub(crate) marginal: Vec<f64>,
+    /// Heights of the outermost traced ray at every surface over its height at entry; `None` when
+    /// it fails.
+    pub(crate) edge_ray: Option<Vec<f64>>,
+    /// Its angle of incidence at every surface, degrees.
+    pub(crate) incidence_deg: Option<Vec<f64>>,
+}
+
+impl LimitItem {
+    /// Everything the limits of a design apply to, in the order of the file; the housing, which
+    /// is always kept, last.
+    #[must_use]
+    pub(crate) fn all(design: &Design, limits: &Limits) -> Vec<Self> {
+        Lister { design, limits, sequence: design.sequence() }.all()
+    }
+
+    /// Its value; `None` where it cannot be measured (a surface that does not reach its edge, a
+    /// ray that fails).
+    pub(crate) fn value(&self, design: &Design, views: &[StateView]) -> Option<f64> {
+        let view = &views[self.state.unwrap_or(0)];
+        let state = &design.states[self.state.unwrap_or(0)];
+        let surface = |place: usize| &view.train.surfaces()[place];
+        match self.measure {
+            Measure::Gap(gap) => Some(view.train.gaps()[gap]),
+            Measure::Edge(gap) => edge_mm(&view.train, gap),
+            Measure::Radius(place) => {
+                let curvature = surface(place).curvature;
+                Some(if curvature == 0.0 { f64::INFINITY } else { 1.0 / curvature.abs() })
+            }
+            Measure::Steepness(place) => {
+                Some(surface(place).semi_diameter * surface(place).curvature.abs())
+            }
+            Measure::Travel(group) => {
+                let at = design.states.iter().map(|state| design.positions_mm(state)[group]);
+                let (low, high) = at.fold((f64::INFINITY, f64::NEG_INFINITY), |(low, high), z| {
+                    (low.min(z), high.max(z))
+                });
+                Some(high - low)
+            }
+            Measure::Incidence(place) => view.incidence_deg.as_ref().map(|angles| angles[place]),
+            Measure::Length => Some(view.train.length()),
+            Measure::Front => Some(design.front_mm(state)),
+            Measure::Rear => {
+                Some(design.housing.track_mm - design.front_mm(state) - view.train.length())
+            }
+            Measure::Focus => {
+                let exact = view.edge_ray.as_ref()?;
+                Some(view.marginal.iter().chain(exact).copied().fold(f64::INFINITY, f64::min))
+            }
+        }
+    }
+}
+
+struct Lister<'a> {
+    design: &'a Design,
+    limits: &'a Limits,
+    sequence: Sequence,
+}
+
+impl Lister<'_> {
+    fn all(&self) -> Vec<LimitItem> {
+        let mut items = Vec::new();
+        for (gap, &id) in self.sequence.gaps.iter().enumerate() {
+            self.gap(gap, id, &mut items);
+        }
+        for (place, &id) in self.sequence.surfaces.iter().enumerate() {
+            self.surface(place, id, &mut items);
+        }
+        for (group, fixed) in self.design.housing.fixed.iter().enumerate() {
+            if !fixed && let Some(range) = self.limits.range(LimitKind::TravelMm) {
+                let at = Address::root().key("groups").index(group);
+                items.push(item(LimitKind::TravelMm, at, None, range, Measure::Travel(group)));
+            }
+        }
+        for state in 0..self.design.states.len() {
+            self.state(state, &mut items);
+        }
+        items
+    }
+
+    fn gap(&self, gap: usize, id: GapId, items: &mut Vec<LimitItem>) {
+        let mut push = |kind, at: Address, state, measure| {
+            if let Some(range) = self.limits.range(kind) {
+                items.push(item(kind, at, state, range, measure));
+            }
+        };
+        match id {
+            GapId::Thickness { group, element, glass } => {
+                let at = Place::Thickness { group, element, glass }.address();
+                push(LimitKind::EdgeThicknessMm, at.clone(), None, Measure::Edge(gap));
+                push(LimitKind::CentreThicknessMm, at, None, Measure::Gap(gap));
+            }
+            GapId::Air { group, after } => {
+                let at = Place::Air { group, after }.address();
+                push(LimitKind::AirMm, at.clone(), None, Measure::Gap(gap));
+                push(LimitKind::EdgeGapMm, at, None, Measure::Edge(gap));
+            }
+            GapId::Spacing { after } => {
+                for state in 0..self.design.states.len() {
+                    let at = Place::Spacing { state, after }.address();
+                    push(LimitKind::SpacingMm, at.clone(), Some(state), Measure::Gap(gap));
+                    push(LimitKind::EdgeGapMm, at, Some(state), Measure::Edge(gap));
+                }
+            }
+        }
+    }
+
+    fn surface(&self, place: usize, id: SurfaceId, items: &mut Vec<LimitItem>) {
+        let at = Place::Radius(id).address();
+        let mut push = |kind, state, measure| {
+            if let Some(range) = self.limits.range(kind) {
+                items.push(item(kind, at.clone(), state, range, measure));
+            }
+        };
+        push(LimitKind::RadiusMm, None, Measure::Radius(place));
+        push(LimitKind::Steepness, None, Measure::Steepness(place));
+        for state in 0..self.design.states.len() {
+            push(LimitKind::IncidenceDeg, Some(state), Measure::Incidence(place));
+        }
+    }
+
+    fn state(&self, state: usize, items: &mut Vec<LimitItem>) {
+        let at = Address::root().key("states").index(state);
+        let mut push = |kind, range, measure| {
+            items.push(item(kind, at.clone(), Some(state), range, measure));
+        };
+        if let Some(range) = self.limits.range(LimitKind::TrackMm) {
+            push(LimitKind::TrackMm, range, Measure::Length);
+        }
+        if self.limits.forbid_internal_focus {
+            let range = Range { min: FOCUS_MARGIN, max: f64::INFINITY };
+            push(LimitKind::InternalFocus, range, Measure::Focus);
+        }
+        let housing = &self.design.housing;
+        let inside = Range { min: 0.0, max: f64::INFINITY };
+        let filled = housing.fixed.first() == Some(&true) && housing.fixed.last() == Some(&true);
+        match housing.anchor() {
+            Anchor::Rear if filled => {}
+            Anchor::Rear => push(LimitKind::HousingMm, inside, Measure::Front),
+            Anchor::Front => push(LimitKind::HousingMm, inside, Measure::Rear),
+            Anchor::Middle(_) => {
+                push(LimitKind::HousingMm, inside, Measure::Front);
+                push(LimitKind::HousingMm, inside, Measure::Rear);
+            }
+        }
+    }
+}
+
+/// The smallest height, over the height at entry, that a marginal ray may have at any surface
+/// where an internal focus is forbidden: a beam squeezed to a hundredth counts as a focus.
+pub(crate) const FOCUS_MARGIN: f64 = 0.01;
+
+fn item(
+    kind: LimitKind,
+    at: Address,
+    state: Option<usize>,
+    range: Range,
+    measure: Measure,
+) -> LimitItem {
+    LimitItem { kind, at, state, range, measure }
+}

@@ -1,0 +1,187 @@
+//! Limits: lines that must not be crossed.
+
+use schemars::JsonSchema;
+use serde::{Deserialize, Serialize};
+
+/// Limits as a design file writes them; each is optional.
+#[derive(Debug, Clone, Copy, Default, PartialEq, Deserialize, Serialize, JsonSchema)]
+pub struct LimitsDocument {
+    /// Axial distance between neighbouring surfaces of an element at its clear radius, mm.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub edge_thickness_mm: Option<RangeDocument>,
+    /// Thickness of each glass on axis, mm.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub centre_thickness_mm: Option<RangeDocument>,
+    /// Air between groups, vertex to vertex, in every state, mm.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub spacing_mm: Option<RangeDocument>,
+    /// Air inside groups, vertex to vertex, mm.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub air_mm: Option<RangeDocument>,
+    /// Air between facing surfaces at the smaller of their clear radii, mm.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub edge_gap_mm: Option<RangeDocument>,
+    /// Radius of curvature without its sign, mm; a flat is infinite.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub radius_mm: Option<RangeDocument>,
+    /// Clear semi-diameter over radius without its sign.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub steepness: Option<RangeDocument>,
+    /// Way of each group in the housing over all states, mm.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub travel_mm: Option<RangeDocument>,
+    /// Angle of incidence of the outermost traced ray at every surface, degrees.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub incidence_deg: Option<RangeDocument>,
+    /// First vertex to last vertex in every state, mm.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub track_mm: Option<RangeDocument>,
+    /// "forbid": no real focus between the first and the last surface, where a pulsed or strong
+    /// beam would ionise the air or burn dust.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub internal_focus: Option<FocusDocument>,
+}
+
+/// A range; `min`, `max` or both.
+#[derive(Debug, Clone, Copy, Default, PartialEq, Deserialize, Serialize, JsonSchema)]
+pub struct RangeDocument {
+    /// Smallest value allowed.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub min: Option<f64>,
+    /// Largest value allowed.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub max: Option<f64>,
+}
+
+/// Whether a real focus inside the expander is allowed.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, Deserialize, Serialize, JsonSchema)]
+#[serde(rename_all = "lowercase")]
+pub enum FocusDocument {
+    /// No real focus between the first and the last surface.
+    Forbid,
+    /// As if not given.
+    Allow,
+}
+
+/// The kinds of limit.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, Serialize)]
+#[serde(rename_all = "snake_case")]
+pub enum LimitKind {
+    /// Edge thickness of a glass.
+    EdgeThicknessMm,
+    /// Centre thickness of a glass.
+    CentreThicknessMm,
+    /// Air between groups.
+    SpacingMm,
+    /// Air inside a group.
+    AirMm,
+    /// Air at the edge between facing surfaces.
+    EdgeGapMm,
+    /// Radius of curvature.
+    RadiusMm,
+    /// Semi-diameter over radius.
+    Steepness,
+    /// Way of a group.
+    TravelMm,
+    /// Angle of incidence.
+    IncidenceDeg,
+    /// Length of the train.
+    TrackMm,
+    /// No real focus inside.
+    InternalFocus,
+    /// Clearance between the groups and the ends of the housing; always kept.
+    HousingMm,
+}
+
+impl LimitKind {
+    /// The word for it in files and tables.
+    #[must_use]
+    pub fn word(self) -> &'static str {
+        match self {
+            Self::EdgeThicknessMm => "edge_thickness_mm",
+            Self::CentreThicknessMm => "centre_thickness_mm",
+            Self::SpacingMm => "spacing_mm",
+            Self::AirMm => "air_mm",
+            Self::EdgeGapMm => "edge_gap_mm",
+            Self::RadiusMm => "radius_mm",
+            Self::Steepness => "steepness",
+            Self::TravelMm => "travel_mm",
+            Self::IncidenceDeg => "incidence_deg",
+            Self::TrackMm => "track_mm",
+            Self::InternalFocus => "internal_focus",
+            Self::HousingMm => "housing_mm",
+        }
+    }
+
+    /// How far a limit may be crossed and still counts as met, in its own unit: 1 µm for lengths,
+    /// 0.001° for angles, 0.00001 for pure numbers.
+    #[must_use]
+    pub fn tolerance(self) -> f64 {
+        match self {
+            Self::Steepness | Self::InternalFocus => 1e-5,
+            _ => 1e-3,
+        }
+    }
+
+    /// What a limit crossed by `by` (in its own unit) adds to the merit: nothing within its
+    /// tolerance, one unit at ten times its tolerance, growing with the square.
+    #[must_use]
+    pub fn merit_of_crossing(self, by: f64) -> f64 {
+        if by <= self.tolerance() { 0.0 } else { (by / (10.0 * self.tolerance())).powi(2) }
+    }
+}
+
+/// A range with at least one end, `min ≤ max`.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct Range {
+    /// Smallest value allowed, or −∞.
+    pub min: f64,
+    /// Largest value allowed, or ∞.
+    pub max: f64,
+}
+
+impl Range {
+    /// By how much a value lies outside; 0 inside.
+    #[must_use]
+    pub fn crossed_by(self, value: f64) -> f64 {
+        (self.min - value).max(value - self.max).max(0.0)
+    }
+}
+
+/// Limits, resolved.
+#[derive(Debug, Clone, PartialEq, Default)]
+pub struct Limits {
+    ranges: Vec<(LimitKind, Range)>,
+    /// Whether a real focus between the first and the last surface is forbidden.
+    pub forbid_internal_focus: bool,
+}
+
+impl Limits {
+    pub(crate) fn new(ranges: Vec<(LimitKind, Range)>, forbid_internal_focus: bool) -> Self {
+        Self { ranges, forbid_internal_focus }
+    }
+
+    /// The range of one kind of limit, if it is given.
+    #[must_use]
+    pub fn range(&self, kind: LimitKind) -> Option<Range> {
+        self.ranges.iter().find(|(other, _)| *other == kind).map(|&(_, range)| range)
+    }
+}
+
+impl LimitsDocument {
+    /// The ranges as written, by kind.
+    pub(crate) fn ranges(&self) -> [(LimitKind, Option<RangeDocument>); 10] {
+        [
+            (LimitKind::EdgeThicknessMm, self.edge_thickness_mm),
+            (LimitKind::CentreThicknessMm, self.centre_thickness_mm),
+            (LimitKind::SpacingMm, self.spacing_mm),
+            (LimitKind::AirMm, self.air_mm),
+            (LimitKind::EdgeGapMm, self.edge_gap_mm),
+            (LimitKind::RadiusMm, self.radius_mm),
+            (LimitKind::Steepness, self.steepness),
+            (LimitKind::TravelMm, self.travel_mm),
+            (LimitKind::IncidenceDeg, self.incidence_deg),
+            (LimitKind::TrackMm, self.track_mm),
+        ]
+    }
+}

@@ -1,0 +1,344 @@
+//! The merit function as a least-squares problem in blocks: residuals, block Jacobian, limits.
+//!
+//! For a state of weight v, each goal that is present gives residuals whose squares add up to its
+//! share of the merit:
+//!
+//! ```text
+//! wavefront   √v/within · √wⱼ (Wⱼ − Σ wᵢWᵢ)   one a ray j and wavelength, W in waves
+//! ratio       √v/within · 100 (ratio/wanted − 1)
+//! exit slope  √v/within · slope in µrad
+//! ```
+//!
+//! with wⱼ the share of the beam's power that ray stands for.
+
+use surface_model::bundle::Bundle;
+use surface_model::design::Design;
+use surface_model::glass::GlassError;
+use surface_model::paraxial::{ParaxialRay, ParaxialWeights};
+use surface_model::quadrature::{BeamSample, beam_sample};
+use surface_model::train::Train;
+
+use crate::block::{BlockProblem, BlockShape, Bounds, Linearisation, StateBlock};
+use crate::fault::EvaluationFault;
+use crate::goals::Goals;
+use crate::limit_rows::RowRule;
+use crate::row_evaluation::RowEvaluator;
+use crate::variables::{Column, Variables};
+use crate::wishes::Wishes;
+
+/// Rays from the axis to the edge of the beam, if nothing else is asked for.
+pub const RAYS: usize = 6;
+
+/// One state, ready to be evaluated.
+#[derive(Debug, Clone)]
+pub(crate) struct StateTrains {
+    pub(crate) name: String,
+    /// One train a wavelength.
+    pub(crate) trains: Vec<Train>,
+    wavelengths_nm: Vec<f64>,
+    goals: Goals,
+    ratio_wanted: f64,
+    /// Per shared variable, the quantities that follow it, with factors.
+    by_shared: Vec<Vec<(usize, f64)>>,
+    /// The same per own variable.
+    by_own: Vec<Vec<(usize, f64)>>,
+}
+
+/// A design's merit function over its variables.
+#[derive(Debug)]
+pub struct MeritFunction {
+    variables: Variables,
+    shape: BlockShape,
+    states: Vec<StateTrains>,
+    sample: BeamSample,
+    beam: (f64, f64, usize),
+    rows: RowEvaluator,
+    bundle: Bundle,
+    paraxial: ParaxialRay,
+    paths: Vec<f64>,
+    gradient: Vec<f64>,
+}
+
+impl MeritFunction {
+    /// The merit of `design` as a function of `variables`, with `rays` rays across the beam.
+    ///
+    /// # Errors
+    /// A glass is not known at a wavelength.
+    pub fn new(
+        design: &Design,
+        wishes: &Wishes,
+        variables: Variables,
+        rays: usize,
+    ) -> Result<Self, GlassError> {
+        let rules = RowRule::all(design, &wishes.limits, &variables);
+        let mut states = Vec::with_capacity(design.states.len());
+        let mut rows = Vec::with_capacity(design.states.len());
+        for (k, state) in design.states.iter().enumerate() {
+            let trains: Result<Vec<Train>, GlassError> =
+                state.wavelengths_nm.iter().map(|&nm| design.train(state, nm)).collect();
+            let goals = wishes.states[k];
+            let wavefront = goals.wavefront_rms_waves.map_or(0, |_| rays);
+            let paraxial = [goals.ratio_percent, goals.exit_slope_urad];
+            rows.push(wavefront * state.wavelengths_nm.len() + paraxial.iter().flatten().count());
+            states.push(StateTrains {
+                name: state.name.clone(),
+                trains: trains?,
+                wavelengths_nm: state.wavelengths_nm.clone(),
+                goals,
+                ratio_wanted: state.ratio,
+                by_shared: followers(&variables, k, variables.shared().len(), Column::Shared),
+                by_own: followers(&variables, k, variables.own(k).len(), Column::Own),
+            });
+        }
+        let (radius_mm, reach) = (design.beam.radius_mm(), design.beam.traced_to);
+        Ok(Self {
+            shape: variables.shape(rows),
+            variables,
+            states,
+            sample: beam_sample(radius_mm, reach, rays),
+            beam: (radius_mm, reach, rays),
+            rows: RowEvaluator::new(rules, design.beam.edge_mm()),
+            bundle: Bundle::new(),
+            paraxial: ParaxialRay::default(),
+            paths: vec![0.0; rays],
+            gradient: Vec::new(),
+        })
+    }
+
+    /// The variables.
+    #[must_use]
+    pub fn variables(&self) -> &Variables {
+        &self.variables
+    }
+
+    /// Traces only the inner `fraction` (0 to 1) of the beam from now on, so that a start in
+    /// which outer rays fail can be brought in.
+    pub fn set_aperture(&mut self, fraction: f64) {
+        let (radius_mm, reach, rays) = self.beam;
+        self.sample = beam_sample(radius_mm, reach * fraction, rays);
+        self.rows.set_edge_mm(radius_mm * reach * fraction);
+    }
+
+    /// Brings every train to these values of the variables.
+    fn place(&mut self, variables: &[f64]) {
+        for k in 0..self.states.len() {
+            let state = &mut self.states[k];
+            for binding in self.variables.bindings(k) {
+                let mut value = binding.offset;
+                for &(column, factor) in &binding.terms {
+                    value += factor * self.variables.value(variables, k, column);
+                }
+                for train in &mut state.trains {
+                    train.set_quantity(self.variables.quantities(), binding.quantity, value);
+                }
+            }
+        }
+    }
+
+    /// Residuals of one state. With `block`, its Jacobian too.
+    fn state(
+        &mut self,
+        k: usize,
+        residuals: &mut [f64],
+        mut block: Option<&mut StateBlock>,
+    ) -> Result<(), EvaluationFault> {
+        let state = &self.states[k];
+        let root_weight = state.goals.weight.sqrt();
+        let rays = self.sample.heights_mm.len();
+        let mut row = 0;
+        if let Some(within) = state.goals.wavefront_rms_waves {
+            for (train, &nm) in state.trains.iter().zip(&state.wavelengths_nm) {
+                let heights_mm = &self.sample.heights_mm;
+                self.bundle.trace(train, heights_mm, &mut self.paths).map_err(|fault| {
+                    let height_mm = heights_mm[fault.ray];
+                    EvaluationFault::ray(&state.name, nm, height_mm, fault.fault)
+                })?;
+                let scale = root_weight / within * 1e6 / nm;
+                let weights = &self.sample.weights;
+                let out = &mut residuals[row..row + rays];
+                centred(weights, scale, self.paths.iter().copied(), out);
+                if let Some(block) = block.as_deref_mut() {
+                    self.bundle.differentiate(train, self.variables.shapes_are_free());
+                    let fill =
+                        |columns: &[Vec<(usize, f64)>], matrix: &mut nalgebra::DMatrix<f64>| {
+                            for (column, quantities) in columns.iter().enumerate() {
+                                let mut into = matrix.column_mut(column);
+                                let into = &mut into.as_mut_slice()[row..row + rays];
+                                path_column(&self.bundle, quantities, into);
+                                centre_in_place(weights, scale, into);
+                            }
+                        };
+                    fill(&state.by_shared, &mut block.by_shared);
+                    fill(&state.by_own, &mut block.by_own);
+                }
+                row += rays;
+            }
+        }
+        self.paraxial_rows(k, &mut residuals[row..], row, block)
+    }
+
+    /// Residuals of ratio and exit slope, from row `first` on.
+    fn paraxial_rows(
+        &mut self,
+        k: usize,
+        residuals: &mut [f64],
+        first: usize,
+        mut block: Option<&mut StateBlock>,
+    ) -> Result<(), EvaluationFault> {
+        let state = &self.states[k];
+        let goals = &state.goals;
+        let train = &state.trains[0];
+        let root_weight = goals.weight.sqrt();
+        let overflow = || EvaluationFault::overflow(&state.name);
+        self.paraxial.trace(train, 1.0, 0.0).map_err(|_| overflow())?;
+        let ratio_now = self.paraxial.ratio().ok_or_else(overflow)?;
+        let slope_now = self.paraxial.exit_slope().ok_or_else(overflow)?;
+        let last = train.len() - 1;
+        let ratio = goals.ratio_percent.map(|within| {
+            let factor = root_weight / within * 100.0 / state.ratio_wanted;
+            (factor * (ratio_now - state.ratio_wanted), Some((last, factor)), 0.0)
+        });
+        let slope = goals.exit_slope_urad.map(|within| {
+            let factor = root_weight / within * 1e6 * self.beam.0;
+            (factor * slope_now, None, factor)
+        });
+        for (i, (value, height, by_slope)) in [ratio, slope].into_iter().flatten().enumerate() {
+            residuals[i] = value;
+            let Some(block) = block.as_deref_mut() else { continue };
+            let quantities = self.variables.quantities();
+            self.gradient.clear();
+            self.gradient.resize(quantities.count(), 0.0);
+            let weights = ParaxialWeights { heights: height.as_slice(), exit_slope: by_slope };
+            self.paraxial
+                .differentiate(train, weights, quantities, &mut self.gradient)
+                .map_err(|_| overflow())?;
+            let dot = |follows: &Vec<(usize, f64)>| -> f64 {
+                follows.iter().map(|&(quantity, factor)| factor * self.gradient[quantity]).sum()
+            };
+            for (column, follows) in state.by_shared.iter().enumerate() {
+                block.by_shared[(first + i, column)] = dot(follows);
+            }
+            for (column, follows) in state.by_own.iter().enumerate() {
+                block.by_own[(first + i, column)] = dot(follows);
+            }
+        }
+        Ok(())
+    }
+}
+
+/// Per variable, the quantities of a state's train that follow it.
+fn followers(
+    variables: &Variables,
+    state: usize,
+    count: usize,
+    column: fn(usize) -> Column,
+) -> Vec<Vec<(usize, f64)>> {
+    let follows = |number: usize| {
+        let bindings = variables.bindings(state).iter();
+        bindings
+            .flat_map(|binding| {
+                let terms = binding.terms.iter().filter(move |term| term.0 == column(number));
+                terms.map(move |&(_, factor)| (binding.quantity, factor))
+            })
+            .collect()
+    };
+    (0..count).map(follows).collect()
+}
+
+/// Derivatives of all rays' paths by one variable.
+#[inline]
+fn path_column(bundle: &Bundle, follows: &[(usize, f64)], out: &mut [f64]) {
+    match follows {
+        [(quantity, factor)] => {
+            for (out, by) in out.iter_mut().zip(bundle.path_derivatives(*quantity)) {
+                *out = factor * by;
+            }
+        }
+        _ => {
+            out.fill(0.0);
+            for &(quantity, factor) in follows {
+                for (out, by) in out.iter_mut().zip(bundle.path_derivatives(quantity)) {
+                    *out += factor * by;
+                }
+            }
+        }
+    }
+}
+
+fn centred(weights: &[f64], scale: f64, values: impl Iterator<Item = f64>, out: &mut [f64]) {
+    for (out, value) in out.iter_mut().zip(values) {
+        *out = value;
+    }
+    centre_in_place(weights, scale, out);
+}
+
+/// xⱼ → scale √wⱼ (xⱼ − Σ wᵢxᵢ).
+#[inline]
+fn centre_in_place(weights: &[f64], scale: f64, values: &mut [f64]) {
+    let mean: f64 = weights.iter().zip(values.iter()).map(|(w, x)| w * x).sum();
+    for (value, weight) in values.iter_mut().zip(weights) {
+        *value = scale * weight.sqrt() * (*value - mean);
+    }
+}
+
+impl BlockProblem for MeritFunction {
+    type Fault = EvaluationFault;
+
+    fn shape(&self) -> &BlockShape {
+        &self.shape
+    }
+
+    fn bounds(&self) -> &[Bounds] {
+        self.variables.bounds()
+    }
+
+    fn residuals(&mut self, variables: &[f64], out: &mut [f64]) -> Result<(), EvaluationFault> {
+        self.place(variables);
+        let mut rest = out;
+        for k in 0..self.states.len() {
+            let (own, behind) = rest.split_at_mut(self.shape.rows[k]);
+            self.state(k, own, None)?;
+            rest = behind;
+        }
+        Ok(())
+    }
+
+    fn linearise(
+        &mut self,
+        variables: &[f64],
+        out: &mut Linearisation,
+    ) -> Result<(), EvaluationFault> {
+        self.place(variables);
+        for (k, block) in out.states.iter_mut().enumerate() {
+            let mut residuals = std::mem::take(&mut block.residuals);
+            let done = self.state(k, residuals.as_mut_slice(), Some(block));
+            block.residuals = residuals;
+            done?;
+        }
+        self.rows.linearise(&self.states, &self.variables, variables, &mut out.limits)
+    }
+
+    fn limits(&mut self, variables: &[f64], out: &mut Vec<f64>) -> Result<(), EvaluationFault> {
+        self.place(variables);
+        self.rows.values(&self.states, variables, out)
+    }
+}
+
+impl StateTrains {
+    pub(crate) fn first_wavelength_nm(&self) -> f64 {
+        self.wavelengths_nm[0]
+    }
+
+    /// Maps a gradient over the train's quantities to shared and own variables.
+    pub(crate) fn to_variables(&self, gradient: &[f64], shared: &mut [f64], own: &mut [f64]) {
+        let dot = |follows: &Vec<(usize, f64)>| -> f64 {
+            follows.iter().map(|&(quantity, factor)| factor * gradient[quantity]).sum()
+        };
+        for (out, follows) in shared.iter_mut().zip(&self.by_shared) {
+            *out += dot(follows);
+        }
+        for (out, follows) in own.iter_mut().zip(&self.by_own) {
+            *out += dot(follows);
+        }
+    }
+}

@@ -1,0 +1,207 @@
+//! Values and gradients of the limit rows at a point.
+
+use nalgebra::DVector;
+use surface_model::bundle::Bundle;
+use surface_model::paraxial::{ParaxialRay, ParaxialWeights};
+use surface_model::train::Train;
+
+use crate::block::LimitRow;
+use crate::edge::{edge_gradient, edge_mm};
+use crate::fault::EvaluationFault;
+use crate::limit_rows::{Measured, RowRule};
+use crate::problem::StateTrains;
+use crate::variables::Variables;
+
+/// Evaluates the limit rows of a problem. Buffers are kept from call to call.
+#[derive(Debug)]
+pub(crate) struct RowEvaluator {
+    rules: Vec<RowRule>,
+    edge_mm: f64,
+    rays: Vec<StateRays>,
+    gradient: Vec<f64>,
+    values: Vec<f64>,
+}
+
+/// The rays that the rows of one state have in common, traced once a point.
+#[derive(Debug, Default)]
+struct StateRays {
+    paraxial: ParaxialRay,
+    bundle: Bundle,
+}
+
+impl RowEvaluator {
+    pub(crate) fn new(rules: Vec<RowRule>, edge_mm: f64) -> Self {
+        Self { rules, edge_mm, rays: Vec::new(), gradient: Vec::new(), values: Vec::new() }
+    }
+
+    /// Height of the ray whose incidence is limited, mm.
+    pub(crate) fn set_edge_mm(&mut self, edge_mm: f64) {
+        self.edge_mm = edge_mm;
+    }
+
+    /// Values of all rows.
+    pub(crate) fn values(
+        &mut self,
+        states: &[StateTrains],
+        variables: &[f64],
+        out: &mut Vec<f64>,
+    ) -> Result<(), EvaluationFault> {
+        out.clear();
+        self.trace(states)?;
+        for rule in &self.rules {
+            let k = rule.state.unwrap_or(0);
+            let train = &states[k].trains[0];
+            let measured = match &rule.measured {
+                Measured::Sum { gaps, shared } => sum(train, variables, gaps, shared),
+                Measured::Edge(gap) => edge_mm_or_fault(train, *gap)?,
+                Measured::Incidence(surface) => incidence_deg(&self.rays[k].bundle, *surface),
+                Measured::MarginalHeight(surface) => self.rays[k].paraxial.heights()[*surface],
+            };
+            out.push(rule.constant + rule.sign * measured);
+        }
+        Ok(())
+    }
+
+    /// Traces, in every state, the rays that some row measures.
+    fn trace(&mut self, states: &[StateTrains]) -> Result<(), EvaluationFault> {
+        self.rays.resize_with(states.len(), StateRays::default);
+        let any =
+            |wanted: fn(&Measured) -> bool| self.rules.iter().any(|rule| wanted(&rule.measured));
+        let paraxial = any(|measured| matches!(measured, Measured::MarginalHeight(_)));
+        let exact = any(|measured| matches!(measured, Measured::Incidence(_)));
+        for (state, rays) in states.iter().zip(&mut self.rays) {
+            let train = &state.trains[0];
+            if paraxial {
+                rays.paraxial
+                    .trace(train, 1.0, 0.0)
+                    .map_err(|_| EvaluationFault::overflow(&state.name))?;
+            }
+            if exact {
+                rays.bundle.trace(train, &[self.edge_mm], &mut [0.0]).map_err(|fault| {
+                    let nm = state.first_wavelength_nm();
+                    EvaluationFault::ray(&state.name, nm, self.edge_mm, fault.fault)
+                })?;
+            }
+        }
+        Ok(())
+    }
+
+    /// Values and gradients of all rows.
+    pub(crate) fn linearise(
+        &mut self,
+        states: &[StateTrains],
+        variables: &Variables,
+        at: &[f64],
+        out: &mut Vec<LimitRow>,
+    ) -> Result<(), EvaluationFault> {
+        let mut values = std::mem::take(&mut self.values);
+        let done = self.values(states, at, &mut values);
+        self.values = values;
+        done?;
+        out.resize_with(self.rules.len(), || LimitRow {
+            value: 0.0,
+            tolerance: 0.0,
+            state: None,
+            by_shared: DVector::zeros(0),
+            by_own: DVector::zeros(0),
+        });
+        for (i, row) in out.iter_mut().enumerate() {
+            self.gradient_of(i, states, variables, row)?;
+            row.value = self.values[i];
+        }
+        Ok(())
+    }
+
+    fn gradient_of(
+        &mut self,
+        i: usize,
+        states: &[StateTrains],
+        variables: &Variables,
+        row: &mut LimitRow,
+    ) -> Result<(), EvaluationFault> {
+        let Self { rules, rays, gradient, .. } = self;
+        let rule = &rules[i];
+        let k = rule.state.unwrap_or(0);
+        let state = &states[k];
+        let train = &state.trains[0];
+        let own = rule.state.map_or(0, |k| variables.own(k).len());
+        row.tolerance = rule.tolerance;
+        row.state = rule.state;
+        reset(&mut row.by_shared, variables.shared().len());
+        reset(&mut row.by_own, own);
+
+        let quantities = variables.quantities();
+        let shapes = variables.shapes_are_free();
+        gradient.clear();
+        gradient.resize(quantities.count(), 0.0);
+        let StateRays { paraxial, bundle } = &mut rays[k];
+        match &rule.measured {
+            Measured::Sum { gaps, shared } => {
+                for &(gap, factor) in gaps {
+                    gradient[quantities.gap(gap)] += factor;
+                }
+                for &(number, factor) in shared {
+                    row.by_shared[number] += rule.sign * factor;
+                }
+            }
+            Measured::Edge(gap) => {
+                edge_gradient(train, *gap, (quantities, shapes), gradient)
+                    .ok_or(EvaluationFault::Edge { surface: *gap })?;
+            }
+            Measured::Incidence(surface) => {
+                incidence_gradient(bundle, train, shapes, *surface, gradient);
+            }
+            Measured::MarginalHeight(surface) => {
+                let weights = ParaxialWeights { heights: &[(*surface, 1.0)], exit_slope: 0.0 };
+                paraxial
+                    .differentiate(train, weights, quantities, gradient)
+                    .map_err(|_| EvaluationFault::overflow(&state.name))?;
+            }
+        }
+        for by in gradient.iter_mut() {
+            *by *= rule.sign;
+        }
+        state.to_variables(gradient, row.by_shared.as_mut_slice(), row.by_own.as_mut_slice());
+        Ok(())
+    }
+}
+
+fn reset(vector: &mut DVector<f64>, length: usize) {
+    if vector.len() == length {
+        vector.fill(0.0);
+    } else {
+        *vector = DVector::zeros(length);
+    }
+}
+
+fn sum(train: &Train, variables: &[f64], gaps: &[(usize, f64)], shared: &[(usize, f64)]) -> f64 {
+    let gaps = gaps.iter().map(|&(gap, factor)| factor * train.gaps()[gap]);
+    let shared = shared.iter().map(|&(number, factor)| factor * variables[number]);
+    gaps.chain(shared).sum()
+}
+
+fn edge_mm_or_fault(train: &Train, gap: usize) -> Result<f64, EvaluationFault> {
+    edge_mm(train, gap).ok_or(EvaluationFault::Edge { surface: gap })
+}
+
+fn incidence_deg(bundle: &Bundle, surface: usize) -> f64 {
+    let cosine = bundle.cos_incidences(0).nth(surface).unwrap_or(1.0);
+    cosine.min(1.0).acos().to_degrees()
+}
+
+/// d(angle)/dq = −(d cos/dq)/sin; at normal incidence the angle has no slope and cannot be the
+/// one that is too large.
+fn incidence_gradient(
+    bundle: &mut Bundle,
+    train: &Train,
+    shapes: bool,
+    surface: usize,
+    gradient: &mut Vec<f64>,
+) {
+    let sine = incidence_deg(bundle, surface).to_radians().sin();
+    bundle.differentiate_cos_incidence(train, shapes, (0, surface), gradient);
+    let factor = if sine > 1e-6 { -(1.0 / sine).to_degrees() } else { 0.0 };
+    for by in gradient.iter_mut() {
+        *by *= factor;
+    }
+}

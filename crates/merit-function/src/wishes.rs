@@ -1,0 +1,176 @@
+//! What is wanted of a design: goals of every state, and limits.
+
+use schemars::JsonSchema;
+use serde::{Deserialize, Serialize};
+use surface_model::document::{Address, Complain, Place};
+
+use crate::goals::{Goals, GoalsDocument};
+use crate::limits::{FocusDocument, LimitKind, Limits, LimitsDocument, Range, RangeDocument};
+
+/// The part of a design file that says what is wanted.
+#[derive(Debug, Clone, Default, PartialEq, Deserialize, Serialize, JsonSchema)]
+pub struct WishesDocument {
+    /// Goals of all states.
+    #[serde(default)]
+    pub goals: GoalsDocument,
+    /// Limits.
+    #[serde(default)]
+    pub limits: LimitsDocument,
+    /// What single states want differently.
+    pub states: Vec<StateWishesDocument>,
+}
+
+/// What one state wants differently from the others.
+#[derive(Debug, Clone, Default, PartialEq, Deserialize, Serialize, JsonSchema)]
+pub struct StateWishesDocument {
+    /// How much the state counts in the merit; 1 if not given.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub weight: Option<f64>,
+    /// Goals of this state that differ from those of all.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub goals: Option<GoalsDocument>,
+}
+
+/// Goals and limits, resolved.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Wishes {
+    /// Per state, its goals.
+    pub states: Vec<Goals>,
+    /// Limits.
+    pub limits: Limits,
+}
+
+/// A goal or limit that makes no sense. Its place is told beside it.
+#[derive(Debug, Clone, PartialEq, thiserror::Error)]
+#[non_exhaustive]
+pub enum WishError {
+    /// A tolerance or weight out of range.
+    #[error("{what} is {found}")]
+    OutOfRange {
+        /// What it is.
+        what: &'static str,
+        /// The number found.
+        found: f64,
+        /// What it must be.
+        allowed: &'static str,
+    },
+    /// A range without ends.
+    #[error("the limit {} has neither \"min\" nor \"max\"", .0.word())]
+    NoEnds(LimitKind),
+    /// A range whose ends are the wrong way round.
+    #[error("the limit {} has min {min} above max {max}", .kind.word())]
+    Reversed {
+        /// Which limit.
+        kind: LimitKind,
+        /// Its min.
+        min: f64,
+        /// Its max.
+        max: f64,
+    },
+}
+
+impl WishError {
+    /// What would have been right.
+    #[must_use]
+    pub fn expected(&self) -> String {
+        match self {
+            Self::OutOfRange { allowed, .. } => (*allowed).into(),
+            Self::NoEnds(_) => "\"min\", \"max\" or both".into(),
+            Self::Reversed { .. } => "min at most max".into(),
+        }
+    }
+}
+
+/// A fault and its place.
+#[derive(Debug, Clone, PartialEq, thiserror::Error)]
+#[error("{error}")]
+pub struct WishFault {
+    /// Where in the file.
+    pub at: Address,
+    /// What.
+    pub error: WishError,
+}
+
+impl Complain for WishFault {
+    fn place(&self) -> Place {
+        Place::Value(self.at.clone())
+    }
+
+    fn expected(&self) -> Option<String> {
+        Some(self.error.expected())
+    }
+}
+
+impl WishesDocument {
+    /// Checks every number and gives each state its goals.
+    ///
+    /// # Errors
+    /// Every fault found, each with its address.
+    pub fn resolve(&self) -> Result<Wishes, Vec<WishFault>> {
+        let mut faults = Vec::new();
+        check_goals(&Address::root().key("goals"), &self.goals, &mut faults);
+        let limits = self.resolve_limits(&mut faults);
+        let mut states = Vec::with_capacity(self.states.len());
+        for (k, state) in self.states.iter().enumerate() {
+            let at = Address::root().key("states").index(k);
+            if let Some(goals) = &state.goals {
+                check_goals(&at.clone().key("goals"), goals, &mut faults);
+            }
+            let weight = state.weight.unwrap_or(1.0);
+            if !(0.0..=1e6).contains(&weight) {
+                let (what, allowed) = ("a weight", "a number from 0 to 1 000 000");
+                let error = WishError::OutOfRange { what, found: weight, allowed };
+                faults.push(WishFault { at: at.key("weight"), error });
+            }
+            states.push(Goals::of_state(&self.goals, state.goals.as_ref(), weight));
+        }
+        if faults.is_empty() { Ok(Wishes { states, limits }) } else { Err(faults) }
+    }
+
+    fn resolve_limits(&self, faults: &mut Vec<WishFault>) -> Limits {
+        let mut ranges = Vec::new();
+        for (kind, range) in self.limits.ranges() {
+            let Some(range) = range else { continue };
+            let at = Address::root().key("limits").key(kind.word());
+            match resolve_range(kind, range) {
+                Ok(range) => ranges.push((kind, range)),
+                Err(error) => faults.push(WishFault { at, error }),
+            }
+        }
+        Limits::new(ranges, self.limits.internal_focus == Some(FocusDocument::Forbid))
+    }
+}
+
+fn check_goals(at: &Address, goals: &GoalsDocument, faults: &mut Vec<WishFault>) {
+    let all = [
+        ("wavefront_rms_waves", goals.wavefront_rms_waves),
+        ("ratio_percent", goals.ratio_percent),
+        ("exit_slope_urad", goals.exit_slope_urad),
+    ];
+    for (word, goal) in all {
+        let Some(goal) = goal else { continue };
+        if !(goal.within > 1e-12 && goal.within <= 1e12) {
+            let (what, allowed) = ("a goal's \"within\"", "a number above 0");
+            let error = WishError::OutOfRange { what, found: goal.within, allowed };
+            faults.push(WishFault { at: at.clone().key(word).key("within"), error });
+        }
+    }
+}
+
+fn resolve_range(kind: LimitKind, range: RangeDocument) -> Result<Range, WishError> {
+    let RangeDocument { min, max } = range;
+    if min.is_none() && max.is_none() {
+        return Err(WishError::NoEnds(kind));
+    }
+    for found in [min, max].into_iter().flatten() {
+        if !(0.0..=1e9).contains(&found) {
+            let (what, allowed) = ("a limit", "a number from 0 to 1 000 000 000");
+            return Err(WishError::OutOfRange { what, found, allowed });
+        }
+    }
+    let ends = Range { min: min.unwrap_or(f64::NEG_INFINITY), max: max.unwrap_or(f64::INFINITY) };
+    if ends.min > ends.max {
+        return Err(WishError::Reversed { kind, min: ends.min, max: ends.max });
+    }
+    Ok(ends)
+}
