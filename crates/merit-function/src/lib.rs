@@ -10,6 +10,8 @@ mod limit_item;
 mod limit_rows;
 pub mod limits;
 pub mod problem;
+#[cfg(test)]
+mod problem_tests;
 mod row_evaluation;
 pub mod variables;
 mod warnings;
