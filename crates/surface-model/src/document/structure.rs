@@ -126,11 +126,13 @@ impl Complain for StructureError {
 /// How a sentence calls the value at an address.
 fn subject(at: &Address) -> String {
     let parent = at.parent().unwrap_or_default();
+    let is_index = |step: &str| super::address::as_index(step).is_some();
     match (at.last(), parent.last()) {
         (None, _) => "the document".into(),
-        (Some(index), Some(list)) if super::address::as_index(index).is_some() => {
+        (Some(index), Some(list)) if is_index(index) => {
             format!("entry {index} of {}", quoted(list))
         }
+        (Some(index), None) if is_index(index) => format!("entry {index}"),
         (Some(key), _) => quoted(key),
     }
 }

@@ -122,3 +122,42 @@ fn a_schema_that_refers_to_itself_is_followed() {
       expected: a whole number from 0 to 255
     "#);
 }
+
+#[test]
+fn what_two_owners_require_is_required() {
+    let part = |key: &str| {
+        let entry = json!({
+            "type": "object", "properties": { key: { "type": "number" } }, "required": [key]
+        });
+        Schema::try_from(json!({
+            "type": "object",
+            "properties": { "states": { "type": "array", "items": entry, "minItems": 1 } },
+            "required": ["states"]
+        }))
+        .unwrap()
+    };
+    let schema = union("States", &[part("ratio"), part("weight")]);
+    assert_eq!(schema.as_value()["required"], json!(["states"]));
+    let count = |value| match Document::from_value("d", value).check(&schema) {
+        Ok(()) => 0,
+        Err(complaints) => complaints.count(),
+    };
+    assert_eq!(count(json!({ "states": [{ "ratio": 1, "weight": 2 }] })), 0);
+    assert_eq!(count(json!({ "states": [{}] })), 2);
+    assert_eq!(count(json!({ "states": [] })), 1);
+}
+
+#[test]
+fn alternatives_that_look_alike_are_all_tried() {
+    let list = |kind: &str| json!({ "type": "array", "items": { "type": kind } });
+    let schema = json!({ "anyOf": [list("number"), list("string"), { "type": "null" }] });
+    let schema = Schema::try_from(schema).unwrap();
+    let check = |value| Document::from_value("d", value).check(&schema);
+    assert_eq!(check(json!(["a", "b"])), Ok(()));
+    assert_eq!(check(json!([1, 2])), Ok(()));
+    insta::assert_snapshot!(check(json!(["a", "b", 3])).unwrap_err(), @r#"
+    d:1:12: entry 2 is the number 3
+      expected: a text in quotes
+      put it in quotes: "3"
+    "#);
+}
