@@ -157,6 +157,7 @@ fn alternatives_that_look_alike_are_all_tried() {
     assert_eq!(check(json!([1, 2])), Ok(()));
     insta::assert_snapshot!(check(json!(["a", "b", 3])).unwrap_err(), @r#"
     d:1:12: entry 2 is the number 3
+      at /2
       expected: a text in quotes
       put it in quotes: "3"
     "#);
