@@ -262,3 +262,18 @@ fn a_type_that_refuses_more_than_its_schema_is_told_in_place() {
       expected: u8
     "#);
 }
+
+#[test]
+fn complaints_are_sorted_by_their_place() {
+    let complaint = |address: &str| Complaint {
+        place: Place::Value(address.parse().unwrap()),
+        found: address.into(),
+        expected: None,
+        advice: None,
+    };
+    let document = sample();
+    let verdict = document.verdict(["/held/0", "/groups/1", "/title"].map(complaint));
+    let told = verdict.unwrap_err();
+    let order: Vec<&str> = told.iter().map(|complaint| complaint.found.as_str()).collect();
+    assert_eq!(order, ["/title", "/groups/1", "/held/0"]);
+}
