@@ -89,6 +89,18 @@ impl Serialize for Address {
     }
 }
 
+/// Why a text is not an address.
+#[derive(Debug, Clone, PartialEq, Eq, Error)]
+#[non_exhaustive]
+pub enum AddressSyntaxError {
+    /// Neither empty nor with a slash in front.
+    #[error("the address {} does not begin with \"/\"", quoted(.0))]
+    NoSlash(String),
+    /// A `~` that is not followed by 0 or 1.
+    #[error("in the address {} a \"~\" is not followed by 0 or 1", quoted(.0))]
+    Escape(String),
+}
+
 impl AddressSyntaxError {
     /// The complaint about an address that is itself written at `place` of a document.
     pub fn complaint(&self, place: Place) -> Complaint {
@@ -102,18 +114,6 @@ impl AddressSyntaxError {
             Some("steps with a slash in front of each, such as \"/states/0/name\"".into());
         Complaint { place, found: self.to_string(), expected, advice }
     }
-}
-
-/// Why a text is not an address.
-#[derive(Debug, Clone, PartialEq, Eq, Error)]
-#[non_exhaustive]
-pub enum AddressSyntaxError {
-    /// Neither empty nor with a slash in front.
-    #[error("the address {} does not begin with \"/\"", quoted(.0))]
-    NoSlash(String),
-    /// A `~` that is not followed by 0 or 1.
-    #[error("in the address {} a \"~\" is not followed by 0 or 1", quoted(.0))]
-    Escape(String),
 }
 
 impl FromStr for Address {

@@ -5,8 +5,8 @@ use serde_json::{Map, Value};
 /// Columns within which an object or list stays on one line.
 const WIDTH: usize = 100;
 
-/// The text of a document: an object or list stands on one line if it fits within 100 columns,
-/// otherwise with one entry a line, indented by two spaces; a longer list of plain numbers fills
+/// The text of a document: an object or list stands on one line if it fits within 100 columns, with
+/// the comma that may follow it, otherwise with one entry a line, indented by two spaces; a longer list of plain numbers fills
 /// its lines. Numbers are the shortest that read back to the same bits. Ends with a line break.
 ///
 /// Reading the text gives the same value, bit for bit, as long as it is nested less than 128 deep.
@@ -237,6 +237,19 @@ mod tests {
           "o": {}
         }
         "#);
+    }
+
+    #[test]
+    fn a_line_is_broken_at_its_last_column() {
+        for length in 1..120 {
+            let list = json!(["x".repeat(length), "y"]);
+            let text = layout(&json!({ "k": [list, list, "long".repeat(30)] }));
+            let joined = text.lines().find(|line| line.contains("\", \""));
+            // Four columns of indent, `["`, `", "y"]` and a comma.
+            let width = 4 + 2 + length + 7 + 1;
+            assert_eq!(joined.is_some(), width <= WIDTH, "{text}");
+            assert!(joined.is_none_or(|line| line.len() == width), "{text}");
+        }
     }
 
     #[test]

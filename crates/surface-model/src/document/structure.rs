@@ -4,8 +4,9 @@
 //! Two rules go beyond the standard, and [`super::union`] writes them into the schema that is
 //! published: an object whose schema lists `properties` is closed unless the schema says otherwise,
 //! and the key `note` is allowed in every object, `$schema` at the root. `oneOf` is read as
-//! `anyOf`. Schemas are the program's own: those that refer to themselves through several
-//! alternatives at once would make the check slow.
+//! `anyOf`. In one respect the check is stricter: a whole number may not be written `3.0`, because
+//! serde does not read it as one. Schemas are the program's own: those that refer to themselves
+//! through several alternatives at once would make the check slow.
 
 use schemars::Schema;
 use serde_json::{Map, Value};
@@ -125,11 +126,13 @@ impl Complain for StructureError {
 /// How a sentence calls the value at an address.
 fn subject(at: &Address) -> String {
     let parent = at.parent().unwrap_or_default();
+    let is_index = |step: &str| super::address::as_index(step).is_some();
     match (at.last(), parent.last()) {
         (None, _) => "the document".into(),
-        (Some(index), Some(list)) if super::address::as_index(index).is_some() => {
+        (Some(index), Some(list)) if is_index(index) => {
             format!("entry {index} of {}", quoted(list))
         }
+        (Some(index), None) if is_index(index) => format!("entry {index}"),
         (Some(key), _) => quoted(key),
     }
 }
