@@ -207,7 +207,7 @@ mod tests {
         assert_eq!((ray.ratio(), ray.exit_slope()), (None, None));
         ray.trace(&singlet(), 0.0, 0.1).unwrap();
         assert_eq!(ray.ratio(), None);
-        let fault = ray.trace(&singlet(), f64::MAX, 1e300).unwrap_err();
+        let fault = ray.trace(&singlet(), f64::MAX, 1e308).unwrap_err();
         assert_eq!(fault, ParaxialError::Ray { surface: 1 });
         assert_eq!((ray.ratio(), ray.exit_slope()), (None, None));
         assert!(ray.trace(&singlet(), f64::NAN, 0.0).is_err());
