@@ -196,9 +196,11 @@ mod tests {
     fn a_second_trace_forgets_the_first() {
         let (mut used, mut fresh) = (ParaxialRay::new(), ParaxialRay::new());
         used.trace(&singlet(), 8.0, -0.3).unwrap();
+        let buffers = (used.heights().as_ptr(), used.slopes().as_ptr());
         used.trace(&singlet(), 1.0, 0.0).unwrap();
         fresh.trace(&singlet(), 1.0, 0.0).unwrap();
         assert_eq!(used, fresh);
+        assert_eq!(buffers, (used.heights().as_ptr(), used.slopes().as_ptr()), "the same buffers");
     }
 
     #[test]
