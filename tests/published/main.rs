@@ -1,6 +1,9 @@
 //! Checks against published values; each names its source.
 
+mod aberration;
 mod certified_regression;
+mod first_order;
 mod glass;
 mod least_squares;
 mod smooth;
+mod trace;

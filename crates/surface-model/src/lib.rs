@@ -15,6 +15,7 @@ pub mod quadrature;
 pub mod real;
 mod resolve;
 pub mod reverse;
+pub mod seidel;
 pub mod sequence;
 pub mod skew;
 pub mod solid;

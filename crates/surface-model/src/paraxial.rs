@@ -196,9 +196,11 @@ mod tests {
     fn a_second_trace_forgets_the_first() {
         let (mut used, mut fresh) = (ParaxialRay::new(), ParaxialRay::new());
         used.trace(&singlet(), 8.0, -0.3).unwrap();
+        let buffers = (used.heights().as_ptr(), used.slopes().as_ptr());
         used.trace(&singlet(), 1.0, 0.0).unwrap();
         fresh.trace(&singlet(), 1.0, 0.0).unwrap();
         assert_eq!(used, fresh);
+        assert_eq!(buffers, (used.heights().as_ptr(), used.slopes().as_ptr()), "the same buffers");
     }
 
     #[test]
@@ -207,7 +209,7 @@ mod tests {
         assert_eq!((ray.ratio(), ray.exit_slope()), (None, None));
         ray.trace(&singlet(), 0.0, 0.1).unwrap();
         assert_eq!(ray.ratio(), None);
-        let fault = ray.trace(&singlet(), f64::MAX, 1e300).unwrap_err();
+        let fault = ray.trace(&singlet(), f64::MAX, 1e308).unwrap_err();
         assert_eq!(fault, ParaxialError::Ray { surface: 1 });
         assert_eq!((ray.ratio(), ray.exit_slope()), (None, None));
         assert!(ray.trace(&singlet(), f64::NAN, 0.0).is_err());

@@ -203,26 +203,29 @@ mod tests {
 
     #[test]
     fn a_ball_is_a_ball() {
-        let (front, back) = (Surface::sphere(0.1, 10.0), Surface::sphere(-0.1, 10.0));
-        let ball = Solid { front: &front, back: &back, axial_mm: 20.0 };
-        assert_eq!(ball.thickness(10.0), Ok(0.0));
-        assert!((ball.volume_mm3(10.0).unwrap() - 4.0 / 3.0 * PI * 1000.0).abs() < 1e-11);
-        let mass = ball.mass_g(10.0, 2.203).unwrap();
-        assert!((mass - 4.0 / 3.0 * PI * 2.203).abs() < 1e-13, "1 cm radius: {mass} g");
+        let (front, back) = (Surface::sphere(0.125, 8.0), Surface::sphere(-0.125, 8.0));
+        let ball = Solid { front: &front, back: &back, axial_mm: 16.0 };
+        assert_eq!(ball.thickness(8.0), Ok(0.0));
+        let volume = 4.0 / 3.0 * PI * 512.0;
+        assert!((ball.volume_mm3(8.0).unwrap() - volume).abs() < 1e-12 * volume);
+        // 2.203 g/cm³ is 0.002203 g/mm³.
+        assert!((ball.mass_g(8.0, 2.203).unwrap() - 0.002203 * volume).abs() < 1e-14 * volume);
         // At the equator the derivatives have no end.
-        let fault = SolidError::Reach { side: Side::Front, height_mm: 10.0 };
-        assert_eq!(ball.thickness_gradient(10.0), Err(fault));
+        let fault = SolidError::Reach { side: Side::Front, height_mm: 8.0 };
+        assert_eq!(ball.thickness_gradient(8.0), Err(fault));
     }
 
     #[test]
     fn a_cap_has_the_volume_of_the_textbook() {
-        // Cap of height h on a sphere of radius R: πh²(3R − h)/3.
+        // Cap of height h on a sphere of radius R: πh²(3R − h)/3. It stands on a millimetre of
+        // cylinder here.
         let (front, back) = (Surface::sphere(1.0 / 25.0, 15.0), Surface::sphere(0.0, 15.0));
         let sag = 25.0 - (625.0_f64 - 225.0).sqrt();
-        let lens = Solid { front: &front, back: &back, axial_mm: sag };
+        let lens = Solid { front: &front, back: &back, axial_mm: sag + 1.0 };
         let cap = PI * sag * sag * (75.0 - sag) / 3.0;
-        assert!((lens.volume_mm3(15.0).unwrap() - cap).abs() < 1e-12 * cap);
-        assert!(lens.thickness(15.0).unwrap().abs() < 1e-14);
+        let volume = lens.volume_mm3(15.0).unwrap();
+        assert!((volume - (cap + PI * 225.0)).abs() < 1e-13 * volume);
+        assert!((lens.thickness(15.0).unwrap() - 1.0).abs() < 1e-14);
     }
 
     #[test]

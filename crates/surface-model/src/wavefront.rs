@@ -280,7 +280,7 @@ mod tests {
         let q_edge = beam().edge_mm().powi(2);
         let q_peak = -2.0 * a / (3.0 * b);
         assert!(q_peak < q_edge);
-        let waves = |sag: f64| -0.5 * sag * 1e6 / 532.0 * -1.0;
+        let waves = |sag: f64| 0.5 * sag * 1e6 / 532.0;
         let peak = waves(4.0 * a.powi(3) / (27.0 * b * b));
         let edge = waves(a * q_edge.powi(2) + b * q_edge.powi(3));
         let expected = peak.max(0.0) - edge.min(0.0);
