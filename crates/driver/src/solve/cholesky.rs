@@ -62,8 +62,7 @@ pub(crate) fn solve_upper(factor: &DMatrix<f64>, x: &mut [f64]) {
 pub(crate) fn dot(a: &[f64], b: &[f64]) -> f64 {
     let mut sums = [0.0; 4];
     let (a_chunks, b_chunks) = (a.chunks_exact(4), b.chunks_exact(4));
-    let tail: f64 =
-        a_chunks.remainder().iter().zip(b_chunks.remainder()).map(|(x, y)| x * y).sum();
+    let tail: f64 = a_chunks.remainder().iter().zip(b_chunks.remainder()).map(|(x, y)| x * y).sum();
     for (x, y) in a_chunks.zip(b_chunks) {
         for lane in 0..4 {
             sums[lane] += x[lane] * y[lane];

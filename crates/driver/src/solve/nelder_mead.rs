@@ -9,8 +9,7 @@ use std::cell::RefCell;
 use std::time::Duration;
 
 use argmin::core::{
-    CostFunction, Error, Executor, KV, Problem, Solver, State, TerminationReason,
-    TerminationStatus,
+    CostFunction, Error, Executor, KV, Problem, Solver, State, TerminationReason, TerminationStatus,
 };
 use argmin::solver::neldermead::NelderMead;
 use merit_function::block::{BlockProblem, Bounds, Linearisation};
@@ -202,9 +201,8 @@ pub(crate) fn run<P: BlockProblem>(
         tolerances: linearisation.limits.iter().map(|limit| limit.tolerance).collect(),
         residuals: shape.residuals(),
     };
-    let simplex = NelderMead::new(simplex)
-        .with_sd_tolerance(settings.reduction())
-        .map_err(unwrap_frame)?;
+    let simplex =
+        NelderMead::new(simplex).with_sd_tolerance(settings.reduction()).map_err(unwrap_frame)?;
     let watched = Watched { simplex, settings, observer, stopped: None };
     let result = Executor::new(cost, watched)
         .configure(|state| state.max_iters(settings.max_iterations()))

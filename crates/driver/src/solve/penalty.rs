@@ -19,11 +19,7 @@ pub(crate) struct Penalties {
 
 impl Penalties {
     /// Adapts the weights to the multipliers `(limit, u)` of a step; all others count as zero.
-    pub(crate) fn cover(
-        &mut self,
-        limits: usize,
-        multipliers: impl Iterator<Item = (usize, f64)>,
-    ) {
+    pub(crate) fn cover(&mut self, limits: usize, multipliers: impl Iterator<Item = (usize, f64)>) {
         self.weights.resize(limits, 0.0);
         self.weights.iter_mut().for_each(|weight| *weight /= 2.0);
         for (limit, multiplier) in multipliers {

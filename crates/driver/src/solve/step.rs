@@ -223,9 +223,9 @@ impl Stepper {
     fn require_restoration(&mut self) {
         let restoration = self.restoration;
         self.subproblem.required.clear();
-        self.subproblem.required.extend(
-            self.point.limits.iter().map(|&g| if g < 0.0 { -restoration * g } else { -g }),
-        );
+        self.subproblem
+            .required
+            .extend(self.point.limits.iter().map(|&g| if g < 0.0 { -restoration * g } else { -g }));
     }
 
     fn demand_less(&mut self) {
@@ -262,11 +262,8 @@ impl Stepper {
     /// nothing cancels.
     fn predict(&self) -> f64 {
         let gain = -dot(&self.subproblem.gradient, &self.step);
-        let resting: f64 = self
-            .working
-            .multipliers()
-            .map(|(constraint, u)| u * self.along_step(constraint))
-            .sum();
+        let resting: f64 =
+            self.working.multipliers().map(|(constraint, u)| u * self.along_step(constraint)).sum();
         let damped = self.lambda * self.scaling.length_squared(&self.step);
         let limits = self.here.limits.iter();
         let after = limits.map(|limit| limit.value + limit_along(limit, &self.normal, &self.step));
@@ -373,9 +370,14 @@ impl Stepper {
         for _ in 0..CORRECTIONS {
             evaluator.limits(&self.trial.variables, &mut self.trial.limits)?;
             let targets = self.targets();
-            if self.trial.limits.iter().zip(&targets).zip(&self.here.limits).all(
-                |((value, target), limit)| *value >= target - CROSSED * limit.tolerance,
-            ) {
+            if self
+                .trial
+                .limits
+                .iter()
+                .zip(&targets)
+                .zip(&self.here.limits)
+                .all(|((value, target), limit)| *value >= target - CROSSED * limit.tolerance)
+            {
                 return Ok(());
             }
             self.bent.copy_from_slice(&self.step);
@@ -429,11 +431,8 @@ impl Stepper {
         self.trial.sum_of_squares =
             evaluator.residuals(&self.trial.variables, &mut self.residuals)?;
         let merit = self.merit(&self.point);
-        let reduction = Reduction {
-            merit,
-            predicted: self.predicted,
-            actual: merit - self.merit(&self.trial),
-        };
+        let reduction =
+            Reduction { merit, predicted: self.predicted, actual: merit - self.merit(&self.trial) };
         let length = self.scaling.length_squared(&self.step).sqrt();
         Ok(Trial { point: self.trial.clone(), reduction, length })
     }
@@ -457,7 +456,12 @@ impl Stepper {
     }
 
     fn largest_violation(&self, limits: &[f64]) -> f64 {
-        let tolerances = self.here.limits.iter().map(|limit| limit.tolerance.max(f64::MIN_POSITIVE));
-        limits.iter().zip(tolerances).map(|(value, tolerance)| -value / tolerance).fold(0.0, f64::max)
+        let tolerances =
+            self.here.limits.iter().map(|limit| limit.tolerance.max(f64::MIN_POSITIVE));
+        limits
+            .iter()
+            .zip(tolerances)
+            .map(|(value, tolerance)| -value / tolerance)
+            .fold(0.0, f64::max)
     }
 }

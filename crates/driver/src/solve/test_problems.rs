@@ -35,10 +35,7 @@ pub(crate) struct TestFault(usize);
 
 impl TestProblem {
     /// One state, all variables shared.
-    pub(crate) fn dense(
-        variables: usize,
-        residuals: impl Fn(&[C]) -> Vec<C> + 'static,
-    ) -> Self {
+    pub(crate) fn dense(variables: usize, residuals: impl Fn(&[C]) -> Vec<C> + 'static) -> Self {
         let rows = residuals(&vec![C::new(0.5, 0.0); variables]).len();
         Self::blocks(
             BlockShape { shared: variables, own: vec![0], rows: vec![rows] },
@@ -167,12 +164,9 @@ const TRACK_MM: f64 = 150.0;
 /// ratio. Residuals are wavefront in units of 0.05 waves at six heights, ratio error in units of
 /// 0.2 %, exit slope in units of 20 µrad. The start is a layout off by `upset` of everything.
 pub(crate) fn expander(ratios: &[f64], upset: f64, seed: u64) -> (TestProblem, Vec<f64>) {
-    let shape = BlockShape {
-        shared: 6,
-        own: vec![2; ratios.len()],
-        rows: vec![8; ratios.len()],
-    };
-    let states = ratios.iter().map(|&ratio| -> Functions { Box::new(move |x| wavefront(x, ratio)) });
+    let shape = BlockShape { shared: 6, own: vec![2; ratios.len()], rows: vec![8; ratios.len()] };
+    let states =
+        ratios.iter().map(|&ratio| -> Functions { Box::new(move |x| wavefront(x, ratio)) });
     let mut problem = TestProblem::blocks(shape, states.collect());
     problem.tolerance = 1e-3;
     for state in 0..ratios.len() {
@@ -192,8 +186,7 @@ pub(crate) fn expander(ratios: &[f64], upset: f64, seed: u64) -> (TestProblem, V
         let sum = power / (INDEX - 1.0);
         [sum * (1.0 + shape) / 2.0, -sum * (1.0 - shape) / 2.0]
     };
-    let mut start: Vec<f64> =
-        [bend(entry, -0.5), bend(runner, -0.3), bend(exit, -1.0)].concat();
+    let mut start: Vec<f64> = [bend(entry, -0.5), bend(runner, -0.3), bend(exit, -1.0)].concat();
     for &ratio in ratios {
         // u after the entry group: collimation and ratio fix both spacings.
         let a = (1.0 - ratio * (exit / entry)) / 1.0;
@@ -215,13 +208,14 @@ fn wavefront(x: &[C], ratio: f64) -> Vec<C> {
         nodes.iter().zip(weights).map(|(s, w)| w * (-2.0 * s * 2.25_f64).exp()).collect();
     let total: f64 = weights.iter().sum();
     let axial = trace(x, 0.0).2;
-    let paths: Vec<C> = nodes
-        .iter()
-        .map(|s| (trace(x, 1.8 * s.sqrt()).2 - axial) / WAVELENGTH_MM / 0.05)
-        .collect();
+    let paths: Vec<C> =
+        nodes.iter().map(|s| (trace(x, 1.8 * s.sqrt()).2 - axial) / WAVELENGTH_MM / 0.05).collect();
     let mean: C = paths.iter().zip(&weights).map(|(w, weight)| w * weight).sum::<C>() / total;
-    let mut residuals: Vec<C> =
-        paths.iter().zip(&weights).map(|(w, weight)| (w - mean) * (weight / total).sqrt()).collect();
+    let mut residuals: Vec<C> = paths
+        .iter()
+        .zip(&weights)
+        .map(|(w, weight)| (w - mean) * (weight / total).sqrt())
+        .collect();
     let height = 1e-4;
     let (y, slope, _) = trace(x, height);
     residuals.push((y / height - ratio) / (ratio * 0.002));

@@ -217,11 +217,7 @@ impl WorkingSet {
             let size = self.members.len();
             self.factor = DMatrix::from_fn(size, size, |row, column| {
                 let solved = &self.solved[self.members[column].column].solved;
-                if row < column {
-                    0.0
-                } else {
-                    program.along(self.members[row].constraint, solved)
-                }
+                if row < column { 0.0 } else { program.along(self.members[row].constraint, solved) }
             });
             if factorise(&mut self.factor).is_ok() {
                 return;
