@@ -28,8 +28,6 @@ mod step;
 mod working_set;
 
 #[cfg(test)]
-mod test_problems;
-#[cfg(test)]
 mod tests;
 
 use std::time::Instant;
