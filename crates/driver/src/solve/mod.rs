@@ -17,6 +17,7 @@ mod damped_least_squares;
 mod damping;
 mod evaluation;
 mod events;
+mod growing_cholesky;
 mod nelder_mead;
 mod normal;
 mod outcome;

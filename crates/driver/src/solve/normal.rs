@@ -106,18 +106,21 @@ impl NormalEquations {
 
     /// Takes the columns of fixed variables out, so that every step leaves them where they are.
     fn hold_fixed(&mut self) {
-        let shared = self.shared;
-        for index in (0..self.fixed.len()).filter(|&index| self.fixed[index]) {
+        let (shared_fixed, own_fixed) = self.fixed.split_at(self.shared);
+        for index in (0..self.shared).filter(|&index| shared_fixed[index]) {
             self.gradient[index] = 0.0;
-            if index < shared {
-                self.shared_gram.row_mut(index).fill(0.0);
-                self.shared_gram.column_mut(index).fill(0.0);
-                self.states.iter_mut().for_each(|state| state.coupling.column_mut(index).fill(0.0));
-            } else if let Some(state) = self.states.iter_mut().find(|s| s.range.contains(&index)) {
-                let own = index - state.range.start;
-                state.own_gram.row_mut(own).fill(0.0);
-                state.own_gram.column_mut(own).fill(0.0);
-                state.coupling.row_mut(own).fill(0.0);
+            self.shared_gram.row_mut(index).fill(0.0);
+            self.shared_gram.column_mut(index).fill(0.0);
+            self.states.iter_mut().for_each(|state| state.coupling.column_mut(index).fill(0.0));
+        }
+        for state in &mut self.states {
+            for (own, index) in state.range.clone().enumerate() {
+                if own_fixed[index - self.shared] {
+                    self.gradient[index] = 0.0;
+                    state.own_gram.row_mut(own).fill(0.0);
+                    state.own_gram.column_mut(own).fill(0.0);
+                    state.coupling.row_mut(own).fill(0.0);
+                }
             }
         }
     }
@@ -201,7 +204,8 @@ impl NormalEquations {
         let (shared, own) = x.split_at_mut(self.shared);
         for state in &self.states {
             let part = own_part(own, state, self.shared);
-            if part.is_empty() {
+            // A constraint's normal touches one state at most; the others have nothing to add.
+            if part.iter().all(|entry| *entry == 0.0) {
                 continue;
             }
             solve_lower(&state.factor, part);

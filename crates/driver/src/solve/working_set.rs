@@ -1,14 +1,9 @@
 //! The working set of the dual active-set method: which constraints hold with equality, their
-//! multipliers, and the small dense matrix `N ᵀH⁻¹N` over them.
+//! multipliers, and the small dense matrix `NᵀH⁻¹N` over them.
 
-use nalgebra::DMatrix;
-
-use super::cholesky::{dot, factorise, solve_lower, solve_upper, subtract_scaled};
+use super::cholesky::subtract_scaled;
+use super::growing_cholesky::GrowingCholesky;
 use super::quadratic::{Constraint, Inconsistent, Program};
-
-/// A normal whose part outside the span of the working normals is smaller than this share of
-/// itself counts as dependent on them.
-const DEPENDENT: f64 = 1e-11;
 
 /// Constraints held with equality, with multipliers `u ≥ 0`.
 #[derive(Debug, Clone, Default)]
@@ -16,8 +11,8 @@ pub(crate) struct WorkingSet {
     members: Vec<Member>,
     /// Columns solved with the present factors, for any constraint that entered so far.
     solved: Vec<Column>,
-    /// Cholesky factor of `NᵀH⁻¹N` over the members.
-    factor: DMatrix<f64>,
+    /// `NᵀH⁻¹N` over the members.
+    gram: GrowingCholesky,
 }
 
 #[derive(Debug, Clone, Copy)]
@@ -51,7 +46,7 @@ impl WorkingSet {
     /// Holds nothing.
     pub(crate) fn clear(&mut self) {
         self.members.clear();
-        self.factor = DMatrix::zeros(0, 0);
+        self.gram.clear();
     }
 
     /// Forgets the solved columns: the factors of `H` or the gradients of the limits changed.
@@ -64,7 +59,7 @@ impl WorkingSet {
     /// first, until what is left is a point the dual method may start from.
     pub(crate) fn resume(&mut self, program: &Program<'_>) {
         let earlier = std::mem::take(&mut self.members);
-        self.refactor(program);
+        self.gram.clear();
         for member in earlier {
             let still_there = match member.constraint {
                 Constraint::Low(j) => program.low[j].is_finite(),
@@ -73,9 +68,7 @@ impl WorkingSet {
             };
             if still_there {
                 let column = self.column(program, member.constraint);
-                if self.outside_span(program, column).is_some() {
-                    self.push(program, member.constraint, column, 0.0);
-                }
+                self.push(program, member.constraint, column, 0.0);
             }
         }
         self.settle(program);
@@ -90,8 +83,7 @@ impl WorkingSet {
                 .iter()
                 .map(|m| program.level(m.constraint) - program.along(m.constraint, program.free))
                 .collect();
-            solve_lower(&self.factor, &mut multipliers);
-            solve_upper(&self.factor, &mut multipliers);
+            self.gram.solve(&mut multipliers);
             for (member, multiplier) in self.members.iter_mut().zip(&multipliers) {
                 member.multiplier = *multiplier;
             }
@@ -101,7 +93,7 @@ impl WorkingSet {
                 .min_by(|a, b| a.1.total_cmp(b.1))
                 .filter(|(_, multiplier)| **multiplier < 0.0);
             match worst {
-                Some((position, _)) => self.let_go(program, position),
+                Some((position, _)) => self.let_go(position),
                 None => return,
             }
         }
@@ -127,9 +119,10 @@ impl WorkingSet {
         let column = self.column(program, entering);
         let mut multiplier = 0.0;
         loop {
-            let direction = self.dual_direction(program, column);
+            let products = self.products(program, column);
+            let outside = self.gram.outside_span(&products, self.solved[column].curvature);
+            let direction = self.dual_direction(products);
             let (blocking, dual_length) = self.blocking(&direction);
-            let outside = self.outside_span(program, column);
             let shortfall = program.level(entering) - program.along(entering, step);
             let primal_length = outside.map_or(f64::INFINITY, |outside| shortfall / outside);
             let length = dual_length.min(primal_length);
@@ -147,7 +140,7 @@ impl WorkingSet {
                 }
             }
             match blocking {
-                Some(position) if dual_length < primal_length => self.let_go(program, position),
+                Some(position) if dual_length < primal_length => self.let_go(position),
                 _ => {
                     self.push(program, entering, column, multiplier);
                     return Ok(());
@@ -157,10 +150,9 @@ impl WorkingSet {
     }
 
     /// `r = (NᵀH⁻¹N)⁻¹ NᵀH⁻¹n`: how the multipliers give way to an entering normal.
-    fn dual_direction(&self, program: &Program<'_>, column: usize) -> Vec<f64> {
-        let mut direction = self.products(program, column);
-        solve_lower(&self.factor, &mut direction);
-        solve_upper(&self.factor, &mut direction);
+    fn dual_direction(&self, products: Vec<f64>) -> Vec<f64> {
+        let mut direction = products;
+        self.gram.solve(&mut direction);
         direction
     }
 
@@ -179,22 +171,13 @@ impl WorkingSet {
         first
     }
 
-    /// `nᵀz`: the squared length, in the metric `H⁻¹`, of the part of a normal outside the span
-    /// of the working normals; `None` when it depends on them.
-    fn outside_span(&self, program: &Program<'_>, column: usize) -> Option<f64> {
-        let mut inside = self.products(program, column);
-        solve_lower(&self.factor, &mut inside);
-        let curvature = self.solved[column].curvature;
-        let outside = curvature - dot(&inside, &inside);
-        (outside > DEPENDENT * curvature).then_some(outside)
-    }
-
     /// `NᵀH⁻¹n` for a solved column.
     fn products(&self, program: &Program<'_>, column: usize) -> Vec<f64> {
         let solved = &self.solved[column].solved;
         self.members.iter().map(|m| program.along(m.constraint, solved)).collect()
     }
 
+    /// Adds a member unless its normal depends on those of the others.
     fn push(
         &mut self,
         program: &Program<'_>,
@@ -202,29 +185,15 @@ impl WorkingSet {
         column: usize,
         multiplier: f64,
     ) {
-        self.members.push(Member { constraint, multiplier, column });
-        self.refactor(program);
-    }
-
-    fn let_go(&mut self, program: &Program<'_>, position: usize) {
-        self.members.remove(position);
-        self.refactor(program);
-    }
-
-    /// Working sets are small: forming and factorising anew keeps rounding from piling up.
-    fn refactor(&mut self, program: &Program<'_>) {
-        loop {
-            let size = self.members.len();
-            self.factor = DMatrix::from_fn(size, size, |row, column| {
-                let solved = &self.solved[self.members[column].column].solved;
-                if row < column { 0.0 } else { program.along(self.members[row].constraint, solved) }
-            });
-            if factorise(&mut self.factor).is_ok() {
-                return;
-            }
-            // Dependent to working precision after all: the newest member goes.
-            self.members.pop();
+        let products = self.products(program, column);
+        if self.gram.push(products, self.solved[column].curvature) {
+            self.members.push(Member { constraint, multiplier, column });
         }
+    }
+
+    fn let_go(&mut self, position: usize) {
+        self.members.remove(position);
+        self.gram.remove(position);
     }
 
     /// Index of the solved column of a constraint, solved now if it is new.
