@@ -1,15 +1,15 @@
 //! The working set of the dual active-set method: which constraints hold with equality, their
 //! multipliers, and the small dense matrix `NᵀH⁻¹N` over them.
 
-use super::cholesky::subtract_scaled;
 use super::growing_cholesky::GrowingCholesky;
+use super::normal::HalfSolved;
 use super::quadratic::{Constraint, Inconsistent, Program};
 
 /// Constraints held with equality, with multipliers `u ≥ 0`.
 #[derive(Debug, Clone, Default)]
 pub(crate) struct WorkingSet {
     members: Vec<Member>,
-    /// Columns solved with the present factors, for any constraint that entered so far.
+    /// Normals half-solved with the present factors, of any constraint that entered so far.
     solved: Vec<Column>,
     /// `NᵀH⁻¹N` over the members.
     gram: GrowingCholesky,
@@ -26,8 +26,8 @@ struct Member {
 #[derive(Debug, Clone)]
 struct Column {
     constraint: Constraint,
-    /// `H⁻¹n`.
-    solved: Vec<f64>,
+    /// `L⁻¹n`.
+    half: HalfSolved,
     /// `nᵀH⁻¹n`.
     curvature: f64,
 }
@@ -62,14 +62,22 @@ impl WorkingSet {
         self.gram.clear();
         for member in earlier {
             let still_there = match member.constraint {
-                Constraint::Low(j) => program.low[j].is_finite(),
-                Constraint::High(j) => program.high[j].is_finite(),
+                Constraint::Low(_) | Constraint::High(_) => true,
                 Constraint::Limit(i) => i < program.limits.len(),
             };
             if still_there {
                 let column = self.column(program, member.constraint);
-                self.push(program, member.constraint, column, 0.0);
+                self.push(member.constraint, column, 0.0);
             }
+        }
+        self.settle(program);
+    }
+
+    /// Takes in all of these at once, then lets go of what turns out not to hold the step back.
+    pub(crate) fn guess(&mut self, program: &Program<'_>, constraints: &[Constraint]) {
+        for &constraint in constraints {
+            let column = self.column(program, constraint);
+            self.push(constraint, column, 0.0);
         }
         self.settle(program);
     }
@@ -103,9 +111,24 @@ impl WorkingSet {
     pub(crate) fn step(&self, program: &Program<'_>, step: &mut Vec<f64>) {
         step.clear();
         step.extend_from_slice(program.free);
-        for member in &self.members {
-            subtract_scaled(step, -member.multiplier, &self.solved[member.column].solved);
+        if !self.members.is_empty() {
+            self.move_along(program, step, self.members.iter().map(|m| (m.column, m.multiplier)));
         }
+    }
+
+    /// `p ← p + H⁻¹ Σ factorᵢ nᵢ`, over solved columns and their factors.
+    fn move_along(
+        &self,
+        program: &Program<'_>,
+        step: &mut [f64],
+        columns: impl Iterator<Item = (usize, f64)>,
+    ) {
+        let mut change = vec![0.0; step.len()];
+        for (column, factor) in columns {
+            program.normal.add_scaled(&mut change, factor, &self.solved[column].half);
+        }
+        program.normal.solve_back(&mut change);
+        step.iter_mut().zip(&change).for_each(|(p, change)| *p += change);
     }
 
     /// Takes in a violated constraint, letting go of members whose multiplier would turn
@@ -119,7 +142,7 @@ impl WorkingSet {
         let column = self.column(program, entering);
         let mut multiplier = 0.0;
         loop {
-            let products = self.products(program, column);
+            let products = self.products(column);
             let outside = self.gram.outside_span(&products, self.solved[column].curvature);
             let direction = self.dual_direction(products);
             let (blocking, dual_length) = self.blocking(&direction);
@@ -134,15 +157,14 @@ impl WorkingSet {
             }
             multiplier += length;
             if outside.is_some() {
-                subtract_scaled(step, -length, &self.solved[column].solved);
-                for (member, r) in self.members.iter().zip(&direction) {
-                    subtract_scaled(step, length * r, &self.solved[member.column].solved);
-                }
+                let members = self.members.iter().zip(&direction);
+                let leaving = members.map(|(member, r)| (member.column, -length * r));
+                self.move_along(program, step, leaving.chain([(column, length)]));
             }
             match blocking {
                 Some(position) if dual_length < primal_length => self.let_go(position),
                 _ => {
-                    self.push(program, entering, column, multiplier);
+                    self.push(entering, column, multiplier);
                     return Ok(());
                 }
             }
@@ -172,20 +194,14 @@ impl WorkingSet {
     }
 
     /// `NᵀH⁻¹n` for a solved column.
-    fn products(&self, program: &Program<'_>, column: usize) -> Vec<f64> {
-        let solved = &self.solved[column].solved;
-        self.members.iter().map(|m| program.along(m.constraint, solved)).collect()
+    fn products(&self, column: usize) -> Vec<f64> {
+        let half = &self.solved[column].half;
+        self.members.iter().map(|m| self.solved[m.column].half.product(half)).collect()
     }
 
     /// Adds a member unless its normal depends on those of the others.
-    fn push(
-        &mut self,
-        program: &Program<'_>,
-        constraint: Constraint,
-        column: usize,
-        multiplier: f64,
-    ) {
-        let products = self.products(program, column);
+    fn push(&mut self, constraint: Constraint, column: usize, multiplier: f64) {
+        let products = self.products(column);
         if self.gram.push(products, self.solved[column].curvature) {
             self.members.push(Member { constraint, multiplier, column });
         }
@@ -200,11 +216,9 @@ impl WorkingSet {
     fn column(&mut self, program: &Program<'_>, constraint: Constraint) -> usize {
         let known = self.solved.iter().position(|column| column.constraint == constraint);
         known.unwrap_or_else(|| {
-            let mut solved = vec![0.0; program.free.len()];
-            program.write_normal(constraint, &mut solved);
-            program.normal.solve(&mut solved);
-            let curvature = program.along(constraint, &solved);
-            self.solved.push(Column { constraint, solved, curvature });
+            let half = program.half_solved(constraint);
+            let curvature = half.product(&half);
+            self.solved.push(Column { constraint, half, curvature });
             self.solved.len() - 1
         })
     }
