@@ -11,7 +11,7 @@ use driver::solve::{Settings, Unwatched, run};
 
 use crate::smooth::{C, Smooth};
 
-/// `y(b, x)`.
+/// The response `y` to the parameters `b` at `x`.
 type Model = fn(&[C], f64) -> C;
 
 const SOLVED: f64 = 6.0;
@@ -120,7 +120,7 @@ struct Certified {
     starts: [Vec<f64>; 2],
     parameters: Vec<f64>,
     sum_of_squares: f64,
-    /// `(y, x)`.
+    /// Pairs `(y, x)`.
     data: Vec<(f64, f64)>,
 }
 
@@ -200,39 +200,46 @@ fn files_are_read_as_they_state() {
     }
 }
 
+/// What is not solved, and why. Lanczos1: the certified sum of squares, 1.4e-25, is rounding of
+/// data given to sixteen digits; the parameters are met to ten. BoxBOD from its first start: the
+/// first step lands where the exponential vanishes and the sum of squares is flat. MGH10 from its
+/// first start: still creeping along the valley when the iterations run out.
+const UNSOLVED: [&str; 4] =
+    ["Lanczos1 start 1", "Lanczos1 start 2", "MGH10 start 1", "BoxBOD start 1"];
+
 #[test]
 fn certified_values_are_met_from_both_starts() {
     for acceleration in [Some(0.75), None] {
         let settings = Settings::default()
             .with_acceleration(acceleration)
             .and_then(|settings| settings.with_target(0.0))
+            .and_then(|settings| settings.with_reduction(1e-14))
+            .and_then(|settings| settings.with_gradient(1e-12))
             .unwrap();
-        let mut total = [0, 0, 0];
+        let (mut steps, mut evaluations, mut linearisations) = (0, 0, 0);
         let mut unsolved = vec![];
         for &(name, file, model) in SETS {
             let certified = parse(file);
-            for (number, start) in certified.starts.iter().enumerate() {
+            for (start, number) in certified.starts.iter().zip(1..) {
                 let scored = score(&certified, model, start, &settings);
-                println!(
-                    "{name:9} start {}: {:4} steps, {:4} residuals, {:4} Jacobians; \
-                     LRE {:4.1} parameters, {:4.1} sum of squares",
-                    number + 1,
-                    scored.steps,
-                    scored.evaluations,
-                    scored.linearisations,
-                    scored.parameters,
-                    scored.squares,
-                );
-                total[0] += scored.steps;
-                total[1] += scored.evaluations;
-                total[2] += scored.linearisations;
                 if scored.parameters.min(scored.squares) < SOLVED {
-                    unsolved.push(format!("{name} start {}", number + 1));
+                    unsolved.push(format!("{name} start {number}"));
+                } else {
+                    steps += scored.steps;
+                    evaluations += scored.evaluations;
+                    linearisations += scored.linearisations;
                 }
             }
         }
         println!(
+<<<<<<< HEAD
             "acceleration {acceleration:?}: steps, residuals, Jacobians {total:?}, unsolved {unsolved:?}"
         );
+=======
+            "acceleration {acceleration:?}, solved sets: {steps} steps, {evaluations} residuals, \
+             {linearisations} Jacobians"
+        );
+        assert_eq!(unsolved, UNSOLVED);
+>>>>>>> 96400a6231dbc747b4fac655bc77c0536e2fd982
     }
 }

@@ -17,6 +17,7 @@ mod damped_least_squares;
 mod damping;
 mod evaluation;
 mod events;
+mod growing_cholesky;
 mod nelder_mead;
 mod normal;
 mod outcome;
@@ -27,8 +28,6 @@ mod settings;
 mod step;
 mod working_set;
 
-#[cfg(test)]
-mod test_problems;
 #[cfg(test)]
 mod tests;
 

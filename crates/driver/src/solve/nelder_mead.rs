@@ -12,7 +12,7 @@ use argmin::core::{
     CostFunction, Error, Executor, KV, Problem, Solver, State, TerminationReason, TerminationStatus,
 };
 use argmin::solver::neldermead::NelderMead;
-use merit_function::block::{BlockProblem, Bounds, Linearisation};
+use merit_function::block::{BlockProblem, Bounds, LimitRow, Linearisation};
 
 use super::damped_least_squares::{SolverState, evaluator};
 use super::evaluation::Evaluator;
@@ -192,6 +192,9 @@ pub(crate) fn run<P: BlockProblem>(
     let lengths = column_lengths(&linearisation);
     let movable: Vec<usize> =
         (0..start.len()).filter(|&index| bounds[index].low < bounds[index].high).collect();
+    if movable.is_empty() {
+        return Ok(nothing_to_move(evaluator, &linearisation, start, squares));
+    }
     let simplex = corners(&start, &bounds, &movable, &lengths, squares.sqrt());
     let cost = SimplexCost {
         evaluator: RefCell::new(evaluator),
@@ -227,6 +230,26 @@ pub(crate) fn run<P: BlockProblem>(
         linearisations: evaluator.linearisations,
         time: Duration::ZERO,
     })
+}
+
+/// The start itself, when no variable has room.
+fn nothing_to_move<P: BlockProblem>(
+    evaluator: Evaluator<'_, P>,
+    linearisation: &Linearisation,
+    start: Vec<f64>,
+    squares: f64,
+) -> Outcome {
+    let crossed = |limit: &LimitRow| -limit.value / limit.tolerance.max(f64::MIN_POSITIVE);
+    Outcome {
+        variables: start,
+        sum_of_squares: squares,
+        stopped: Stopped::GradientSmall,
+        violation: linearisation.limits.iter().map(crossed).fold(0.0, f64::max),
+        iterations: 0,
+        evaluations: evaluator.evaluations,
+        linearisations: evaluator.linearisations,
+        time: Duration::ZERO,
+    }
 }
 
 /// Lengths of the columns of the Jacobian.

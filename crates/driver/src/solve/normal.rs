@@ -36,6 +36,24 @@ struct StateNormal {
     eliminated: DMatrix<f64>,
 }
 
+/// `L⁻¹n` for a normal `n` that touches the shared variables and one state at most, where
+/// `L Lᵀ = H` is the block factor: as sparse as the normal itself, and all that products
+/// `nᵀH⁻¹m` need.
+#[derive(Debug, Clone)]
+pub(crate) struct HalfSolved {
+    state: Option<usize>,
+    own: Vec<f64>,
+    shared: Vec<f64>,
+}
+
+impl HalfSolved {
+    /// `nᵀH⁻¹m`.
+    pub(crate) fn product(&self, other: &Self) -> f64 {
+        let own = if self.state == other.state { dot(&self.own, &other.own) } else { 0.0 };
+        own + dot(&self.shared, &other.shared)
+    }
+}
+
 /// Gram blocks and gradient of one linearisation, and their factors for one damping.
 #[derive(Debug, Clone)]
 pub(crate) struct NormalEquations {
@@ -49,6 +67,8 @@ pub(crate) struct NormalEquations {
     column_squares: Vec<f64>,
     /// Variables whose bounds leave them no room: their columns count as zero.
     fixed: Vec<bool>,
+    /// The state each own variable belongs to, from the first own variable on.
+    owner: Vec<usize>,
 }
 
 impl NormalEquations {
@@ -72,6 +92,7 @@ impl NormalEquations {
             gradient: vec![0.0; shape.variables()],
             column_squares: vec![0.0; shape.variables()],
             fixed,
+            owner: (0..shape.states()).flat_map(|k| std::iter::repeat_n(k, shape.own[k])).collect(),
         }
     }
 
@@ -106,18 +127,21 @@ impl NormalEquations {
 
     /// Takes the columns of fixed variables out, so that every step leaves them where they are.
     fn hold_fixed(&mut self) {
-        let shared = self.shared;
-        for index in (0..self.fixed.len()).filter(|&index| self.fixed[index]) {
+        let (shared_fixed, own_fixed) = self.fixed.split_at(self.shared);
+        for index in (0..self.shared).filter(|&index| shared_fixed[index]) {
             self.gradient[index] = 0.0;
-            if index < shared {
-                self.shared_gram.row_mut(index).fill(0.0);
-                self.shared_gram.column_mut(index).fill(0.0);
-                self.states.iter_mut().for_each(|state| state.coupling.column_mut(index).fill(0.0));
-            } else if let Some(state) = self.states.iter_mut().find(|s| s.range.contains(&index)) {
-                let own = index - state.range.start;
-                state.own_gram.row_mut(own).fill(0.0);
-                state.own_gram.column_mut(own).fill(0.0);
-                state.coupling.row_mut(own).fill(0.0);
+            self.shared_gram.row_mut(index).fill(0.0);
+            self.shared_gram.column_mut(index).fill(0.0);
+            self.states.iter_mut().for_each(|state| state.coupling.column_mut(index).fill(0.0));
+        }
+        for state in &mut self.states {
+            for (own, index) in state.range.clone().enumerate() {
+                if own_fixed[index - self.shared] {
+                    self.gradient[index] = 0.0;
+                    state.own_gram.row_mut(own).fill(0.0);
+                    state.own_gram.column_mut(own).fill(0.0);
+                    state.coupling.row_mut(own).fill(0.0);
+                }
             }
         }
     }
@@ -151,6 +175,11 @@ impl NormalEquations {
     /// Where in the packed vector the own variables of `state` stand.
     pub(crate) fn own_range(&self, state: usize) -> Range<usize> {
         self.states[state].range.clone()
+    }
+
+    /// The state a variable belongs to; `None` for a shared one.
+    pub(crate) fn owner(&self, variable: usize) -> Option<usize> {
+        variable.checked_sub(self.shared).map(|own| self.owner[own])
     }
 
     /// Whether the variable's bounds leave it no room.
@@ -201,17 +230,37 @@ impl NormalEquations {
         let (shared, own) = x.split_at_mut(self.shared);
         for state in &self.states {
             let part = own_part(own, state, self.shared);
-            if part.is_empty() {
-                continue;
-            }
-            solve_lower(&state.factor, part);
-            for (entry, column) in
-                shared.iter_mut().zip(state.eliminated.as_slice().chunks_exact(part.len()))
-            {
-                *entry -= dot(column, part);
-            }
+            state.solve_lower(part, shared);
         }
         solve_lower(&self.shared_factor, shared);
+        self.solve_back(x);
+    }
+
+    /// `L⁻¹n` for the normal with these parts, entries of fixed variables zero.
+    pub(crate) fn half_solve(
+        &self,
+        state: Option<usize>,
+        mut own: Vec<f64>,
+        mut shared: Vec<f64>,
+    ) -> HalfSolved {
+        if let Some(state) = state {
+            self.states[state].solve_lower(&mut own, &mut shared);
+        }
+        solve_lower(&self.shared_factor, &mut shared);
+        HalfSolved { state, own, shared }
+    }
+
+    /// `x ← x + factor · L⁻¹n`, packed.
+    pub(crate) fn add_scaled(&self, x: &mut [f64], factor: f64, half: &HalfSolved) {
+        subtract_scaled(&mut x[..self.shared], -factor, &half.shared);
+        if let Some(state) = half.state {
+            subtract_scaled(&mut x[self.own_range(state)], -factor, &half.own);
+        }
+    }
+
+    /// `x ← L⁻ᵀ x`.
+    pub(crate) fn solve_back(&self, x: &mut [f64]) {
+        let (shared, own) = x.split_at_mut(self.shared);
         solve_upper(&self.shared_factor, shared);
         for state in &self.states {
             let part = own_part(own, state, self.shared);
@@ -224,6 +273,21 @@ impl NormalEquations {
                 subtract_scaled(part, *entry, column);
             }
             solve_upper(&state.factor, part);
+        }
+    }
+}
+
+impl StateNormal {
+    /// Forward substitution through this state: `own ← Lₖ⁻¹ own`, `shared ← shared − Wₖᵀ own`.
+    fn solve_lower(&self, own: &mut [f64], shared: &mut [f64]) {
+        if own.is_empty() {
+            return;
+        }
+        solve_lower(&self.factor, own);
+        for (entry, column) in
+            shared.iter_mut().zip(self.eliminated.as_slice().chunks_exact(own.len()))
+        {
+            *entry -= dot(column, own);
         }
     }
 }

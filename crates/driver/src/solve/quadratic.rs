@@ -8,15 +8,15 @@
 //! (1983)). It starts from the unconstrained minimum and takes in one violated constraint after
 //! the other, dropping those whose multiplier would turn negative; most steps cross nothing and
 //! cost one solve. `H` is touched only through solves with its block factors, so a program costs
-//! one solve a constraint that enters, and the dense algebra is as small as the working set.
+//! half a solve a constraint that enters, and the dense algebra is as small as the working set.
 //!
 //! The same factors serve several programs (a step, its acceleration, its corrections for curved
-//! limits), so the solved columns `H⁻¹n` are kept until the factors change.
+//! limits), so the half-solved normals `L⁻¹n` are kept until the factors change.
 
 use merit_function::block::LimitRow;
 
 use super::cholesky::dot;
-use super::normal::NormalEquations;
+use super::normal::{HalfSolved, NormalEquations};
 use super::working_set::WorkingSet;
 
 /// Which side of which constraint: all are written `nᵀp ≥ b`.
@@ -111,36 +111,59 @@ impl Program<'_> {
         }
     }
 
-    /// The normal `n`, written to `out`; entries of fixed variables are zero.
-    pub(crate) fn write_normal(&self, constraint: Constraint, out: &mut [f64]) {
-        out.fill(0.0);
+    /// `L⁻¹n`.
+    pub(crate) fn half_solved(&self, constraint: Constraint) -> HalfSolved {
+        let (state, own, shared) = self.normal_parts(constraint);
+        self.normal.half_solve(state, own, shared)
+    }
+
+    /// The normal `n`: the state it touches, its own part, its shared part. Entries of fixed
+    /// variables are zero.
+    fn normal_parts(&self, constraint: Constraint) -> (Option<usize>, Vec<f64>, Vec<f64>) {
+        let unit = |j: usize, sign: f64| {
+            let state = self.normal.owner(j);
+            let mut shared = vec![0.0; self.normal.shared()];
+            let range = state.map_or(0..0, |state| self.normal.own_range(state));
+            let mut own = vec![0.0; range.len()];
+            if state.is_some() {
+                own[j - range.start] = sign;
+            } else {
+                shared[j] = sign;
+            }
+            (state, own, shared)
+        };
+        let movable = |(j, a): (usize, &f64)| if self.normal.is_fixed(j) { 0.0 } else { *a };
         match constraint {
-            Constraint::Low(j) => out[j] = 1.0,
-            Constraint::High(j) => out[j] = -1.0,
+            Constraint::Low(j) => unit(j, 1.0),
+            Constraint::High(j) => unit(j, -1.0),
             Constraint::Limit(i) => {
                 let limit = &self.limits[i];
-                out[..self.normal.shared()].copy_from_slice(limit.by_shared.as_slice());
-                if let Some(state) = limit.state {
-                    out[self.normal.own_range(state)].copy_from_slice(limit.by_own.as_slice());
-                }
-                for (j, entry) in out.iter_mut().enumerate() {
-                    if self.normal.is_fixed(j) {
-                        *entry = 0.0;
-                    }
-                }
+                let range = limit.state.map_or(0..0, |state| self.normal.own_range(state));
+                let own = range.zip(limit.by_own.iter()).map(movable).collect();
+                let shared = limit.by_shared.iter().enumerate().map(movable).collect();
+                (limit.state, own, shared)
             }
         }
     }
 
-    /// The constraint the step violates most, if any, and by how much.
+    /// All constraints the step violates and the working set does not hold.
+    pub(crate) fn violated<'s>(
+        &'s self,
+        step: &'s [f64],
+        working: &'s WorkingSet,
+    ) -> impl Iterator<Item = Constraint> + 's {
+        self.constraints().filter(move |&constraint| {
+            let (shortfall, allowed) = self.shortfall(constraint, step);
+            shortfall > allowed && !working.contains(constraint)
+        })
+    }
+
+    /// The constraint the step violates most, if any.
     fn most_violated(&self, step: &[f64], working: &WorkingSet) -> Option<Constraint> {
         let mut worst = None;
         let mut worst_score = 0.0;
-        for constraint in self.constraints().filter(|&c| !working.contains(c)) {
-            let (shortfall, allowed) = self.shortfall(constraint, step);
-            if shortfall <= allowed {
-                continue;
-            }
+        for constraint in self.violated(step, working) {
+            let (shortfall, _) = self.shortfall(constraint, step);
             let score = shortfall / self.scaled_length(constraint);
             if score > worst_score {
                 (worst, worst_score) = (Some(constraint), score);
@@ -157,7 +180,10 @@ pub(crate) fn limit_along(limit: &LimitRow, normal: &NormalEquations, step: &[f6
 }
 
 /// Solves the program; `step` receives the minimiser, `working` the constraints it rests on with
-/// their multipliers. The working set found on entry is tried first.
+/// their multipliers.
+///
+/// The working set found on entry, and all that the step it leads to violates, are tried first:
+/// any set whose multipliers are positive is a place the dual method may start from.
 ///
 /// # Errors
 /// The constraints are inconsistent; `step` then has no meaning and `working` is empty.
@@ -168,16 +194,28 @@ pub(crate) fn solve(
 ) -> Result<(), Inconsistent> {
     working.resume(program);
     working.step(program, step);
+    let violated: Vec<Constraint> = program.violated(step, working).collect();
+    if violated.len() > 1 {
+        working.guess(program, &violated);
+        working.step(program, step);
+    }
     // In exact arithmetic the dual rises at every change and no working set returns. The cap only
     // guards against rounding; what is reached then still satisfies its own working set, and the
     // caller clamps and judges by the merit.
     let changes_allowed = 10 * (program.limits.len() + program.low.len()) + 100;
-    for _ in 0..changes_allowed {
-        let Some(entering) = program.most_violated(step, working) else { break };
+    let mut changes = 0;
+    while let Some(entering) = program.most_violated(step, working) {
         if let Err(inconsistent) = working.take_in(program, entering, step) {
             working.clear();
             return Err(inconsistent);
         }
+        changes += 1;
+        if changes == changes_allowed {
+            break;
+        }
+    }
+    if changes > 0 {
+        // Sheds the rounding that the changes piled up.
         working.settle(program);
         working.step(program, step);
     }

@@ -82,16 +82,11 @@ impl Dense {
 
     /// All constraints as rows `nᵀp ≥ b`.
     fn rows(&self) -> Vec<(DVector<f64>, f64)> {
-        let variables = self.gradient.len();
         let program = self.program();
         program
             .constraints()
             .filter(|&c| program.level(c).is_finite())
-            .map(|c| {
-                let mut normal = vec![0.0; variables];
-                program.write_normal(c, &mut normal);
-                (DVector::from_vec(normal), program.level(c))
-            })
+            .map(|c| (DVector::from_vec(program.normal_parts(c).2), program.level(c)))
             .collect()
     }
 

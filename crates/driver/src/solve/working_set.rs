@@ -1,23 +1,18 @@
 //! The working set of the dual active-set method: which constraints hold with equality, their
-//! multipliers, and the small dense matrix `N ᵀH⁻¹N` over them.
+//! multipliers, and the small dense matrix `NᵀH⁻¹N` over them.
 
-use nalgebra::DMatrix;
-
-use super::cholesky::{dot, factorise, solve_lower, solve_upper, subtract_scaled};
+use super::growing_cholesky::GrowingCholesky;
+use super::normal::HalfSolved;
 use super::quadratic::{Constraint, Inconsistent, Program};
-
-/// A normal whose part outside the span of the working normals is smaller than this share of
-/// itself counts as dependent on them.
-const DEPENDENT: f64 = 1e-11;
 
 /// Constraints held with equality, with multipliers `u ≥ 0`.
 #[derive(Debug, Clone, Default)]
 pub(crate) struct WorkingSet {
     members: Vec<Member>,
-    /// Columns solved with the present factors, for any constraint that entered so far.
+    /// Normals half-solved with the present factors, of any constraint that entered so far.
     solved: Vec<Column>,
-    /// Cholesky factor of `NᵀH⁻¹N` over the members.
-    factor: DMatrix<f64>,
+    /// `NᵀH⁻¹N` over the members.
+    gram: GrowingCholesky,
 }
 
 #[derive(Debug, Clone, Copy)]
@@ -31,8 +26,8 @@ struct Member {
 #[derive(Debug, Clone)]
 struct Column {
     constraint: Constraint,
-    /// `H⁻¹n`.
-    solved: Vec<f64>,
+    /// `L⁻¹n`.
+    half: HalfSolved,
     /// `nᵀH⁻¹n`.
     curvature: f64,
 }
@@ -51,7 +46,7 @@ impl WorkingSet {
     /// Holds nothing.
     pub(crate) fn clear(&mut self) {
         self.members.clear();
-        self.factor = DMatrix::zeros(0, 0);
+        self.gram.clear();
     }
 
     /// Forgets the solved columns: the factors of `H` or the gradients of the limits changed.
@@ -64,19 +59,25 @@ impl WorkingSet {
     /// first, until what is left is a point the dual method may start from.
     pub(crate) fn resume(&mut self, program: &Program<'_>) {
         let earlier = std::mem::take(&mut self.members);
-        self.refactor(program);
+        self.gram.clear();
         for member in earlier {
             let still_there = match member.constraint {
-                Constraint::Low(j) => program.low[j].is_finite(),
-                Constraint::High(j) => program.high[j].is_finite(),
+                Constraint::Low(_) | Constraint::High(_) => true,
                 Constraint::Limit(i) => i < program.limits.len(),
             };
             if still_there {
                 let column = self.column(program, member.constraint);
-                if self.outside_span(program, column).is_some() {
-                    self.push(program, member.constraint, column, 0.0);
-                }
+                self.push(member.constraint, column, 0.0);
             }
+        }
+        self.settle(program);
+    }
+
+    /// Takes in all of these at once, then lets go of what turns out not to hold the step back.
+    pub(crate) fn guess(&mut self, program: &Program<'_>, constraints: &[Constraint]) {
+        for &constraint in constraints {
+            let column = self.column(program, constraint);
+            self.push(constraint, column, 0.0);
         }
         self.settle(program);
     }
@@ -90,8 +91,7 @@ impl WorkingSet {
                 .iter()
                 .map(|m| program.level(m.constraint) - program.along(m.constraint, program.free))
                 .collect();
-            solve_lower(&self.factor, &mut multipliers);
-            solve_upper(&self.factor, &mut multipliers);
+            self.gram.solve(&mut multipliers);
             for (member, multiplier) in self.members.iter_mut().zip(&multipliers) {
                 member.multiplier = *multiplier;
             }
@@ -101,7 +101,7 @@ impl WorkingSet {
                 .min_by(|a, b| a.1.total_cmp(b.1))
                 .filter(|(_, multiplier)| **multiplier < 0.0);
             match worst {
-                Some((position, _)) => self.let_go(program, position),
+                Some((position, _)) => self.let_go(position),
                 None => return,
             }
         }
@@ -111,9 +111,24 @@ impl WorkingSet {
     pub(crate) fn step(&self, program: &Program<'_>, step: &mut Vec<f64>) {
         step.clear();
         step.extend_from_slice(program.free);
-        for member in &self.members {
-            subtract_scaled(step, -member.multiplier, &self.solved[member.column].solved);
+        if !self.members.is_empty() {
+            self.move_along(program, step, self.members.iter().map(|m| (m.column, m.multiplier)));
         }
+    }
+
+    /// `p ← p + H⁻¹ Σ factorᵢ nᵢ`, over solved columns and their factors.
+    fn move_along(
+        &self,
+        program: &Program<'_>,
+        step: &mut [f64],
+        columns: impl Iterator<Item = (usize, f64)>,
+    ) {
+        let mut change = vec![0.0; step.len()];
+        for (column, factor) in columns {
+            program.normal.add_scaled(&mut change, factor, &self.solved[column].half);
+        }
+        program.normal.solve_back(&mut change);
+        step.iter_mut().zip(&change).for_each(|(p, change)| *p += change);
     }
 
     /// Takes in a violated constraint, letting go of members whose multiplier would turn
@@ -127,9 +142,10 @@ impl WorkingSet {
         let column = self.column(program, entering);
         let mut multiplier = 0.0;
         loop {
-            let direction = self.dual_direction(program, column);
+            let products = self.products(column);
+            let outside = self.gram.outside_span(&products, self.solved[column].curvature);
+            let direction = self.dual_direction(products);
             let (blocking, dual_length) = self.blocking(&direction);
-            let outside = self.outside_span(program, column);
             let shortfall = program.level(entering) - program.along(entering, step);
             let primal_length = outside.map_or(f64::INFINITY, |outside| shortfall / outside);
             let length = dual_length.min(primal_length);
@@ -141,15 +157,14 @@ impl WorkingSet {
             }
             multiplier += length;
             if outside.is_some() {
-                subtract_scaled(step, -length, &self.solved[column].solved);
-                for (member, r) in self.members.iter().zip(&direction) {
-                    subtract_scaled(step, length * r, &self.solved[member.column].solved);
-                }
+                let members = self.members.iter().zip(&direction);
+                let leaving = members.map(|(member, r)| (member.column, -length * r));
+                self.move_along(program, step, leaving.chain([(column, length)]));
             }
             match blocking {
-                Some(position) if dual_length < primal_length => self.let_go(program, position),
+                Some(position) if dual_length < primal_length => self.let_go(position),
                 _ => {
-                    self.push(program, entering, column, multiplier);
+                    self.push(entering, column, multiplier);
                     return Ok(());
                 }
             }
@@ -157,10 +172,9 @@ impl WorkingSet {
     }
 
     /// `r = (NᵀH⁻¹N)⁻¹ NᵀH⁻¹n`: how the multipliers give way to an entering normal.
-    fn dual_direction(&self, program: &Program<'_>, column: usize) -> Vec<f64> {
-        let mut direction = self.products(program, column);
-        solve_lower(&self.factor, &mut direction);
-        solve_upper(&self.factor, &mut direction);
+    fn dual_direction(&self, products: Vec<f64>) -> Vec<f64> {
+        let mut direction = products;
+        self.gram.solve(&mut direction);
         direction
     }
 
@@ -179,22 +193,13 @@ impl WorkingSet {
         first
     }
 
-    /// `nᵀz`: the squared length, in the metric `H⁻¹`, of the part of a normal outside the span
-    /// of the working normals; `None` when it depends on them.
-    fn outside_span(&self, program: &Program<'_>, column: usize) -> Option<f64> {
-        let mut inside = self.products(program, column);
-        solve_lower(&self.factor, &mut inside);
-        let curvature = self.solved[column].curvature;
-        let outside = curvature - dot(&inside, &inside);
-        (outside > DEPENDENT * curvature).then_some(outside)
-    }
-
     /// `NᵀH⁻¹n` for a solved column.
-    fn products(&self, program: &Program<'_>, column: usize) -> Vec<f64> {
-        let solved = &self.solved[column].solved;
-        self.members.iter().map(|m| program.along(m.constraint, solved)).collect()
+    fn products(&self, column: usize) -> Vec<f64> {
+        let half = &self.solved[column].half;
+        self.members.iter().map(|m| self.solved[m.column].half.product(half)).collect()
     }
 
+<<<<<<< HEAD
     fn push(
         &mut self,
         program: &Program<'_>,
@@ -224,18 +229,28 @@ impl WorkingSet {
             }
             // Dependent to working precision after all: the newest member goes.
             self.members.pop();
+=======
+    /// Adds a member unless its normal depends on those of the others.
+    fn push(&mut self, constraint: Constraint, column: usize, multiplier: f64) {
+        let products = self.products(column);
+        if self.gram.push(products, self.solved[column].curvature) {
+            self.members.push(Member { constraint, multiplier, column });
+>>>>>>> 96400a6231dbc747b4fac655bc77c0536e2fd982
         }
+    }
+
+    fn let_go(&mut self, position: usize) {
+        self.members.remove(position);
+        self.gram.remove(position);
     }
 
     /// Index of the solved column of a constraint, solved now if it is new.
     fn column(&mut self, program: &Program<'_>, constraint: Constraint) -> usize {
         let known = self.solved.iter().position(|column| column.constraint == constraint);
         known.unwrap_or_else(|| {
-            let mut solved = vec![0.0; program.free.len()];
-            program.write_normal(constraint, &mut solved);
-            program.normal.solve(&mut solved);
-            let curvature = program.along(constraint, &solved);
-            self.solved.push(Column { constraint, solved, curvature });
+            let half = program.half_solved(constraint);
+            let curvature = half.product(&half);
+            self.solved.push(Column { constraint, half, curvature });
             self.solved.len() - 1
         })
     }

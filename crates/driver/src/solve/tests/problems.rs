@@ -9,11 +9,13 @@ pub(crate) type C = Complex<f64>;
 const STEP: f64 = 1e-100;
 
 pub(crate) type Functions = Box<dyn Fn(&[C]) -> Vec<C>>;
+type Value = Box<dyn Fn(&[C]) -> C>;
+type Faults = Box<dyn Fn(usize, &[f64]) -> bool>;
 
 /// A limit over the shared variables and, perhaps, one state's own.
 pub(crate) struct TestLimit {
     pub(crate) state: Option<usize>,
-    pub(crate) value: Box<dyn Fn(&[C]) -> C>,
+    pub(crate) value: Value,
 }
 
 /// Residual and limit functions of `[shared, own of one state]`, one of the former a state.
@@ -26,7 +28,7 @@ pub(crate) struct TestProblem {
     /// Evaluations so far, of any kind.
     pub(crate) calls: usize,
     /// Evaluations that fault, by number.
-    pub(crate) faults: Box<dyn Fn(usize, &[f64]) -> bool>,
+    pub(crate) faults: Faults,
 }
 
 #[derive(Debug, thiserror::Error)]
@@ -153,6 +155,7 @@ impl BlockProblem for TestProblem {
         Ok(())
     }
 }
+<<<<<<< HEAD:crates/driver/src/solve/test_problems.rs
 
 /// Six curvatures shared, two spacings a state; exact meridional rays.
 const INDEX: f64 = 1.4607;
@@ -259,3 +262,5 @@ fn trace(x: &[C], height: f64) -> (C, C, C) {
     y -= sine / cosine * z;
     (y, sine, path)
 }
+=======
+>>>>>>> 96400a6231dbc747b4fac655bc77c0536e2fd982:crates/driver/src/solve/tests/problems.rs
