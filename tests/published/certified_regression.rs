@@ -232,14 +232,9 @@ fn certified_values_are_met_from_both_starts() {
             }
         }
         println!(
-<<<<<<< HEAD
-            "acceleration {acceleration:?}: steps, residuals, Jacobians {total:?}, unsolved {unsolved:?}"
-        );
-=======
             "acceleration {acceleration:?}, solved sets: {steps} steps, {evaluations} residuals, \
              {linearisations} Jacobians"
         );
         assert_eq!(unsolved, UNSOLVED);
->>>>>>> 96400a6231dbc747b4fac655bc77c0536e2fd982
     }
 }

@@ -199,43 +199,11 @@ impl WorkingSet {
         self.members.iter().map(|m| self.solved[m.column].half.product(half)).collect()
     }
 
-<<<<<<< HEAD
-    fn push(
-        &mut self,
-        program: &Program<'_>,
-        constraint: Constraint,
-        column: usize,
-        multiplier: f64,
-    ) {
-        self.members.push(Member { constraint, multiplier, column });
-        self.refactor(program);
-    }
-
-    fn let_go(&mut self, program: &Program<'_>, position: usize) {
-        self.members.remove(position);
-        self.refactor(program);
-    }
-
-    /// Working sets are small: forming and factorising anew keeps rounding from piling up.
-    fn refactor(&mut self, program: &Program<'_>) {
-        loop {
-            let size = self.members.len();
-            self.factor = DMatrix::from_fn(size, size, |row, column| {
-                let solved = &self.solved[self.members[column].column].solved;
-                if row < column { 0.0 } else { program.along(self.members[row].constraint, solved) }
-            });
-            if factorise(&mut self.factor).is_ok() {
-                return;
-            }
-            // Dependent to working precision after all: the newest member goes.
-            self.members.pop();
-=======
     /// Adds a member unless its normal depends on those of the others.
     fn push(&mut self, constraint: Constraint, column: usize, multiplier: f64) {
         let products = self.products(column);
         if self.gram.push(products, self.solved[column].curvature) {
             self.members.push(Member { constraint, multiplier, column });
->>>>>>> 96400a6231dbc747b4fac655bc77c0536e2fd982
         }
     }
 
