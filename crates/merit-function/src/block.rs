@@ -81,7 +81,8 @@ pub struct LimitRow {
     pub tolerance: f64,
     /// The state whose own variables it depends on, if any.
     pub state: Option<usize>,
-    /// Gradient by the shared variables.
+    /// Gradient by the shared variables. Zeros where the limit is so far away that it cannot
+    /// matter to a step of ordinary length.
     pub by_shared: DVector<f64>,
     /// Gradient by the state's own variables; empty when `state` is `None`.
     pub by_own: DVector<f64>,

@@ -18,13 +18,12 @@ pub(crate) fn edge_mm(train: &Train, gap: usize) -> Option<f64> {
     space.thickness(height_mm).ok()
 }
 
-/// Adds the derivatives of a gap's edge to a row over the train's quantities; `shapes` says
-/// whether the row has room for conic constants and asphere coefficients. Returns the length, or
-/// `None` where a surface does not reach the edge.
+/// Adds the derivatives of a gap's edge to a row over the train's quantities. Returns the length,
+/// or `None` where a surface does not reach the edge.
 pub(crate) fn edge_gradient(
     train: &Train,
     gap: usize,
-    (quantities, shapes): (Quantities, bool),
+    quantities: Quantities,
     row: &mut [f64],
 ) -> Option<f64> {
     let (space, height_mm) = space(train, gap);
@@ -32,7 +31,7 @@ pub(crate) fn edge_gradient(
     row[quantities.gap(gap)] += 1.0;
     for (surface, by) in [(gap, gradient.by_front), (gap + 1, gradient.by_back)] {
         row[quantities.curvature(surface)] += by.curvature;
-        if shapes {
+        if quantities.shapes().any() {
             row[quantities.conic(surface)] += by.conic;
             for (term, by) in by.asphere.into_iter().enumerate() {
                 row[quantities.asphere(surface, term)] += by;

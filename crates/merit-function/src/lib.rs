@@ -12,6 +12,7 @@ pub mod limits;
 pub mod problem;
 #[cfg(test)]
 mod problem_tests;
+mod ray_weights;
 mod row_evaluation;
 pub mod variables;
 mod warnings;

@@ -22,6 +22,7 @@ use crate::block::{BlockProblem, BlockShape, Bounds, Linearisation, StateBlock};
 use crate::fault::EvaluationFault;
 use crate::goals::Goals;
 use crate::limit_rows::RowRule;
+use crate::ray_weights::RayWeights;
 use crate::row_evaluation::RowEvaluator;
 use crate::variables::{Column, Variables};
 use crate::wishes::Wishes;
@@ -51,8 +52,9 @@ pub struct MeritFunction {
     shape: BlockShape,
     states: Vec<StateTrains>,
     sample: BeamSample,
+    weights: RayWeights,
     beam: (f64, f64, usize),
-    rows: RowEvaluator,
+    pub(crate) rows: RowEvaluator,
     bundle: Bundle,
     paraxial: ParaxialRay,
     paths: Vec<f64>,
@@ -91,11 +93,13 @@ impl MeritFunction {
             });
         }
         let (radius_mm, reach) = (design.beam.radius_mm(), design.beam.traced_to);
+        let sample = beam_sample(radius_mm, reach, rays);
         Ok(Self {
             shape: variables.shape(rows),
             variables,
             states,
-            sample: beam_sample(radius_mm, reach, rays),
+            weights: RayWeights::new(&sample.weights),
+            sample,
             beam: (radius_mm, reach, rays),
             rows: RowEvaluator::new(rules, design.beam.edge_mm()),
             bundle: Bundle::new(),
@@ -116,6 +120,7 @@ impl MeritFunction {
     pub fn set_aperture(&mut self, fraction: f64) {
         let (radius_mm, reach, rays) = self.beam;
         self.sample = beam_sample(radius_mm, reach * fraction, rays);
+        self.weights = RayWeights::new(&self.sample.weights);
         self.rows.set_edge_mm(radius_mm * reach * fraction);
     }
 
@@ -154,22 +159,21 @@ impl MeritFunction {
                     EvaluationFault::ray(&state.name, nm, height_mm, fault.fault)
                 })?;
                 let scale = root_weight / within * 1e6 / nm;
-                let weights = &self.sample.weights;
-                let out = &mut residuals[row..row + rays];
-                centred(weights, scale, self.paths.iter().copied(), out);
+                self.weights.residuals(&self.paths, scale, &mut residuals[row..row + rays]);
                 if let Some(block) = block.as_deref_mut() {
-                    self.bundle.differentiate(train, self.variables.shapes_are_free());
-                    let fill =
-                        |columns: &[Vec<(usize, f64)>], matrix: &mut nalgebra::DMatrix<f64>| {
-                            for (column, quantities) in columns.iter().enumerate() {
-                                let mut into = matrix.column_mut(column);
-                                let into = &mut into.as_mut_slice()[row..row + rays];
-                                path_column(&self.bundle, quantities, into);
-                                centre_in_place(weights, scale, into);
-                            }
-                        };
-                    fill(&state.by_shared, &mut block.by_shared);
-                    fill(&state.by_own, &mut block.by_own);
+                    self.bundle.differentiate(train, self.variables.quantities().shapes());
+                    self.weights.columns(
+                        &self.bundle,
+                        &state.by_shared,
+                        scale,
+                        &mut block.by_shared.rows_mut(row, rays),
+                    );
+                    self.weights.columns(
+                        &self.bundle,
+                        &state.by_own,
+                        scale,
+                        &mut block.by_own.rows_mut(row, rays),
+                    );
                 }
                 row += rays;
             }
@@ -243,42 +247,6 @@ fn followers(
             .collect()
     };
     (0..count).map(follows).collect()
-}
-
-/// Derivatives of all rays' paths by one variable.
-#[inline]
-fn path_column(bundle: &Bundle, follows: &[(usize, f64)], out: &mut [f64]) {
-    match follows {
-        [(quantity, factor)] => {
-            for (out, by) in out.iter_mut().zip(bundle.path_derivatives(*quantity)) {
-                *out = factor * by;
-            }
-        }
-        _ => {
-            out.fill(0.0);
-            for &(quantity, factor) in follows {
-                for (out, by) in out.iter_mut().zip(bundle.path_derivatives(quantity)) {
-                    *out += factor * by;
-                }
-            }
-        }
-    }
-}
-
-fn centred(weights: &[f64], scale: f64, values: impl Iterator<Item = f64>, out: &mut [f64]) {
-    for (out, value) in out.iter_mut().zip(values) {
-        *out = value;
-    }
-    centre_in_place(weights, scale, out);
-}
-
-/// xⱼ → scale √wⱼ (xⱼ − Σ wᵢxᵢ).
-#[inline]
-fn centre_in_place(weights: &[f64], scale: f64, values: &mut [f64]) {
-    let mean: f64 = weights.iter().zip(values.iter()).map(|(w, x)| w * x).sum();
-    for (value, weight) in values.iter_mut().zip(weights) {
-        *value = scale * weight.sqrt() * (*value - mean);
-    }
 }
 
 impl BlockProblem for MeritFunction {

@@ -3,6 +3,7 @@
 use nalgebra::DVector;
 use surface_model::bundle::Bundle;
 use surface_model::paraxial::{ParaxialRay, ParaxialWeights};
+use surface_model::reverse::Shapes;
 use surface_model::train::Train;
 
 use crate::block::LimitRow;
@@ -17,10 +18,16 @@ use crate::variables::Variables;
 pub(crate) struct RowEvaluator {
     rules: Vec<RowRule>,
     edge_mm: f64,
+    focus_in_sight: f64,
     rays: Vec<StateRays>,
     gradient: Vec<f64>,
     values: Vec<f64>,
 }
+
+/// Heights above the limit, over the height at entry, from which on a marginal ray counts as far
+/// from a focus: its limit then has no gradient and cannot hold up a step. A step that jumps the
+/// whole way is seen by the limit's value, and rejected.
+const FOCUS_IN_SIGHT: f64 = 0.3;
 
 /// The rays that the rows of one state have in common, traced once a point.
 #[derive(Debug, Default)]
@@ -31,12 +38,25 @@ struct StateRays {
 
 impl RowEvaluator {
     pub(crate) fn new(rules: Vec<RowRule>, edge_mm: f64) -> Self {
-        Self { rules, edge_mm, rays: Vec::new(), gradient: Vec::new(), values: Vec::new() }
+        Self {
+            rules,
+            edge_mm,
+            focus_in_sight: FOCUS_IN_SIGHT,
+            rays: Vec::new(),
+            gradient: Vec::new(),
+            values: Vec::new(),
+        }
     }
 
     /// Height of the ray whose incidence is limited, mm.
     pub(crate) fn set_edge_mm(&mut self, edge_mm: f64) {
         self.edge_mm = edge_mm;
+    }
+
+    /// Gives every row its gradient, however far from its limit.
+    #[cfg(test)]
+    pub(crate) fn see_every_focus(&mut self) {
+        self.focus_in_sight = f64::INFINITY;
     }
 
     /// Values of all rows.
@@ -106,8 +126,8 @@ impl RowEvaluator {
             by_own: DVector::zeros(0),
         });
         for (i, row) in out.iter_mut().enumerate() {
-            self.gradient_of(i, states, variables, row)?;
             row.value = self.values[i];
+            self.gradient_of(i, states, variables, row)?;
         }
         Ok(())
     }
@@ -119,7 +139,7 @@ impl RowEvaluator {
         variables: &Variables,
         row: &mut LimitRow,
     ) -> Result<(), EvaluationFault> {
-        let Self { rules, rays, gradient, .. } = self;
+        let Self { rules, rays, gradient, focus_in_sight, .. } = self;
         let rule = &rules[i];
         let k = rule.state.unwrap_or(0);
         let state = &states[k];
@@ -131,7 +151,6 @@ impl RowEvaluator {
         reset(&mut row.by_own, own);
 
         let quantities = variables.quantities();
-        let shapes = variables.shapes_are_free();
         gradient.clear();
         gradient.resize(quantities.count(), 0.0);
         let StateRays { paraxial, bundle } = &mut rays[k];
@@ -145,12 +164,14 @@ impl RowEvaluator {
                 }
             }
             Measured::Edge(gap) => {
-                edge_gradient(train, *gap, (quantities, shapes), gradient)
+                edge_gradient(train, *gap, quantities, gradient)
                     .ok_or(EvaluationFault::Edge { surface: *gap })?;
             }
             Measured::Incidence(surface) => {
-                incidence_gradient(bundle, train, shapes, *surface, gradient);
+                incidence_gradient(bundle, train, quantities.shapes(), *surface, gradient);
             }
+            // A beam far from a focus is left alone.
+            Measured::MarginalHeight(_) if row.value > *focus_in_sight => return Ok(()),
             Measured::MarginalHeight(surface) => {
                 let weights = ParaxialWeights { heights: &[(*surface, 1.0)], exit_slope: 0.0 };
                 paraxial
@@ -194,7 +215,7 @@ fn incidence_deg(bundle: &Bundle, surface: usize) -> f64 {
 fn incidence_gradient(
     bundle: &mut Bundle,
     train: &Train,
-    shapes: bool,
+    shapes: Shapes,
     surface: usize,
     gradient: &mut Vec<f64>,
 ) {

@@ -13,7 +13,7 @@
 use surface_model::design::Design;
 use surface_model::housing::Anchor;
 use surface_model::place::Place;
-use surface_model::reverse::Quantities;
+use surface_model::reverse::{Quantities, Shapes};
 use surface_model::sequence::{GapId, Sequence};
 
 use crate::block::{BlockShape, Bounds};
@@ -160,14 +160,6 @@ impl Variables {
         self.quantities
     }
 
-    /// Whether derivatives by conic constants or asphere coefficients are needed.
-    #[must_use]
-    pub fn shapes_are_free(&self) -> bool {
-        self.shared.iter().any(|variable| {
-            matches!(variable, SharedVariable::Glass(Place::Conic(_) | Place::Asphere(..)))
-        })
-    }
-
     /// The spacings of a state that follow from the housing, by the group they follow and their
     /// place among the train's quantities.
     pub fn dependents(&self, state: usize) -> impl Iterator<Item = (usize, usize)> + '_ {
@@ -231,7 +223,11 @@ struct Builder<'a> {
 impl<'a> Builder<'a> {
     fn new(design: &'a Design, limits: &'a Limits, free: &'a [FreePlace]) -> Self {
         let sequence = design.sequence();
-        let shapes = free.iter().any(|f| matches!(f.place, Place::Conic(_) | Place::Asphere(..)));
+        let shaped = free.iter().filter_map(|free| match free.place {
+            Place::Conic(id) | Place::Asphere(id, _) => sequence.place_of_surface(id),
+            _ => None,
+        });
+        let shapes = shaped.fold(Shapes::None, Shapes::with);
         let quantities = Quantities::new(sequence.surfaces.len(), shapes);
         Self { design, limits, free, sequence, quantities }
     }

@@ -3,7 +3,7 @@
 
 use crate::fault::RayFault;
 use crate::real::{LANES, Lanes, Real};
-use crate::reverse::{Quantities, Seed, backward_meridional};
+use crate::reverse::{Quantities, Seed, Shapes, backward_meridional};
 use crate::trace::{Crossing, Exit, Ray, find_fault, forward_meridional};
 use crate::train::Train;
 
@@ -72,10 +72,10 @@ impl Bundle {
         Ok(())
     }
 
-    /// Sweeps back along every ray of the last [`Self::trace`] of this train. `shapes` asks for
-    /// derivatives by conic constants and asphere coefficients too. Read the result with
+    /// Sweeps back along every ray of the last [`Self::trace`] of this train. `shapes` says for
+    /// which surfaces derivatives by conic constant and asphere coefficients are kept too. Read the result with
     /// [`Self::path_derivatives`].
-    pub fn differentiate(&mut self, train: &Train, shapes: bool) -> Quantities {
+    pub fn differentiate(&mut self, train: &Train, shapes: Shapes) -> Quantities {
         let quantities = Quantities::new(self.surfaces, shapes);
         self.rows.resize(self.exits.len() * quantities.count(), Lanes::ZERO);
         let seed = Seed::path();
@@ -94,6 +94,15 @@ impl Bundle {
         let count = self.quantities.map_or(0, |quantities| quantities.count());
         let blocks = if count == 0 { 0 } else { self.exits.len() };
         (0..blocks).flat_map(move |block| self.rows[block * count + place].0).take(self.rays)
+    }
+
+    /// The same eight at a time: the derivatives of block `block` of eight rays, in which a block
+    /// that is not full repeats its last ray.
+    #[must_use]
+    #[inline]
+    pub fn path_derivative_block(&self, place: usize, block: usize) -> Lanes {
+        let count = self.quantities.map_or(0, |quantities| quantities.count());
+        self.rows[block * count + place]
     }
 
     /// Height above the axis at which ray `ray` meets each surface, mm, from left to right.
@@ -115,7 +124,7 @@ impl Bundle {
     pub fn differentiate_cos_incidence(
         &mut self,
         train: &Train,
-        shapes: bool,
+        shapes: Shapes,
         (ray, surface): (usize, usize),
         row: &mut Vec<f64>,
     ) {

@@ -169,6 +169,7 @@ impl ParaxialRay {
 #[cfg(test)]
 mod tests {
     use super::*;
+    use crate::reverse::Shapes;
     use crate::surface::Surface;
 
     fn singlet() -> Train {
@@ -215,7 +216,7 @@ mod tests {
         assert!(ray.trace(&singlet(), f64::NAN, 0.0).is_err());
 
         ray.trace(&singlet(), 1e200, 0.0).unwrap();
-        let quantities = Quantities::new(2, false);
+        let quantities = Quantities::new(2, Shapes::None);
         let weights = ParaxialWeights { exit_slope: 1e200, ..ParaxialWeights::default() };
         let mut row = vec![0.0; quantities.count()];
         let fault = ray.differentiate(&singlet(), weights, quantities, &mut row).unwrap_err();
@@ -228,7 +229,7 @@ mod tests {
         let mut ray = ParaxialRay::new();
         ray.trace(&train, 2.0, 0.05).unwrap();
         let weights = ParaxialWeights { heights: &[(1, 0.3), (0, 2.0)], exit_slope: 0.7 };
-        let (few, all) = (Quantities::new(2, false), Quantities::new(2, true));
+        let (few, all) = (Quantities::new(2, Shapes::None), Quantities::new(2, Shapes::ALL));
         let (mut short, mut long) = (vec![9.0; few.count()], vec![9.0; all.count()]);
         ray.differentiate(&train, weights, few, &mut short).unwrap();
         ray.differentiate(&train, weights, all, &mut long).unwrap();

@@ -52,6 +52,14 @@ impl Lanes {
     /// All zeros.
     pub const ZERO: Self = Self([0.0; LANES]);
 
+    /// All lanes added up, always in the same order.
+    #[must_use]
+    #[inline]
+    pub fn sum(self) -> f64 {
+        let [a, b, c, d, e, f, g, h] = self.0;
+        ((a + e) + (c + g)) + ((b + f) + (d + h))
+    }
+
     #[inline(always)]
     fn map(self, f: impl Fn(f64) -> f64) -> Self {
         let mut out = self;

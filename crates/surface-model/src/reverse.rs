@@ -48,7 +48,52 @@ use crate::train::Train;
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
 pub struct Quantities {
     surfaces: usize,
-    shapes: bool,
+    shapes: Shapes,
+}
+
+/// For which surfaces derivatives by conic constant and asphere coefficients are kept.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, Default)]
+pub enum Shapes {
+    /// For none: spheres then cost least.
+    #[default]
+    None,
+    /// For those whose bit is set, by their place in the train; places from 63 on share the last
+    /// bit.
+    Of(u64),
+}
+
+impl Shapes {
+    /// For every surface.
+    pub const ALL: Self = Self::Of(u64::MAX);
+
+    /// These, and one more surface.
+    #[must_use]
+    pub fn with(self, surface: usize) -> Self {
+        match self {
+            Self::None => Self::Of(bit(surface)),
+            Self::Of(bits) => Self::Of(bits | bit(surface)),
+        }
+    }
+
+    /// Whether they are kept for any surface.
+    #[must_use]
+    #[inline]
+    pub fn any(self) -> bool {
+        self != Self::None
+    }
+
+    #[inline]
+    fn has(self, surface: usize) -> bool {
+        match self {
+            Self::None => false,
+            Self::Of(bits) => bits & bit(surface) != 0,
+        }
+    }
+}
+
+#[inline]
+fn bit(surface: usize) -> u64 {
+    1 << surface.min(63)
 }
 
 /// One quantity of a train.
@@ -67,10 +112,10 @@ pub enum Quantity {
 }
 
 impl Quantities {
-    /// For a train of `surfaces` surfaces; `shapes` says whether derivatives by conic constants
-    /// and asphere coefficients are kept.
+    /// For a train of `surfaces` surfaces; `shapes` says for which of them derivatives by conic
+    /// constants and asphere coefficients are kept.
     #[must_use]
-    pub fn new(surfaces: usize, shapes: bool) -> Self {
+    pub fn new(surfaces: usize, shapes: Shapes) -> Self {
         Self { surfaces, shapes }
     }
 
@@ -95,14 +140,14 @@ impl Quantities {
         2 * self.surfaces - 1 + medium
     }
 
-    /// Place of the conic constant of a surface, where kept.
+    /// Place of the conic constant of a surface, where any are kept.
     #[must_use]
     #[inline]
     pub fn conic(&self, surface: usize) -> usize {
         3 * self.surfaces + surface
     }
 
-    /// Place of an asphere coefficient (r⁴ is term 0), where kept.
+    /// Place of an asphere coefficient (r⁴ is term 0), where any are kept.
     #[must_use]
     #[inline]
     pub fn asphere(&self, surface: usize, term: usize) -> usize {
@@ -128,11 +173,18 @@ impl Quantities {
         }
     }
 
+    /// For which surfaces derivatives by conic constant and asphere coefficients are kept.
+    #[must_use]
+    #[inline]
+    pub fn shapes(&self) -> Shapes {
+        self.shapes
+    }
+
     /// Number of derivatives in a row.
     #[must_use]
     #[inline]
     pub fn count(&self) -> usize {
-        if self.shapes { (4 + ASPHERE_TERMS) * self.surfaces } else { 3 * self.surfaces }
+        if self.shapes.any() { (4 + ASPHERE_TERMS) * self.surfaces } else { 3 * self.surfaces }
     }
 }
 
@@ -319,13 +371,14 @@ fn backward<N: Real, const D: usize>(
             row[quantities.index(i)] + mu_bar * over_n_out + seed.path * (*path - N::splat(gap));
         row[quantities.index(i + 1)] = row[quantities.index(i + 1)] - mu_bar * mu * over_n_out;
 
-        // Bend, then meet. Where derivatives by the conic are kept, spheres are conics too.
-        let closed_form = surface.is_sphere() && !quantities.shapes;
+        // Bend, then meet. Where derivatives by the conic are kept, a sphere is a conic too.
+        let shapes = quantities.shapes.has(i);
+        let closed_form = surface.is_sphere() && !shapes;
         let mut put = |shape: Shape, value: N| {
             let place = match shape {
                 Shape::Curvature => quantities.curvature(i),
-                Shape::Conic if quantities.shapes => quantities.conic(i),
-                Shape::Term(term) if quantities.shapes => quantities.asphere(i, term),
+                Shape::Conic if shapes => quantities.conic(i),
+                Shape::Term(term) if shapes => quantities.asphere(i, term),
                 Shape::Conic | Shape::Term(_) => return,
             };
             row[place] = row[place] + value;

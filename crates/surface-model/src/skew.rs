@@ -2,7 +2,7 @@
 //! that enter at an angle are made of.
 
 use crate::fault::{FaultReason, RayFault};
-use crate::reverse::{Quantities, Seed, backward_skew};
+use crate::reverse::{Quantities, Seed, Shapes, backward_skew};
 use crate::trace::{Crossing, Exit, Ray, find_fault, forward_skew, normal};
 use crate::train::Train;
 
@@ -105,9 +105,10 @@ impl RayPath {
     }
 
     /// Exact derivatives of Σ weight × exit quantity by every quantity of the train, in the order
-    /// of [`Quantities`]; `shapes` adds conic constants and asphere coefficients.
+    /// of [`Quantities`]; `shapes` says for which surfaces conic constants and asphere
+    /// coefficients are among them.
     #[must_use]
-    pub fn differentiate(&self, train: &Train, weights: &ExitSum, shapes: bool) -> Vec<f64> {
+    pub fn differentiate(&self, train: &Train, weights: &ExitSum, shapes: Shapes) -> Vec<f64> {
         let quantities = Quantities::new(train.len(), shapes);
         let mut row = vec![0.0; quantities.count()];
         let seed = Seed {
@@ -189,9 +190,10 @@ mod tests {
         ];
         for conics in [false, true] {
             let train = train(conics);
-            let quantities = Quantities::new(train.len(), true);
+            let quantities = Quantities::new(train.len(), Shapes::ALL);
             for weights in all {
-                let exact = trace_ray(&train, start).unwrap().differentiate(&train, &weights, true);
+                let exact =
+                    trace_ray(&train, start).unwrap().differentiate(&train, &weights, Shapes::ALL);
                 for (place, &derivative) in exact.iter().enumerate() {
                     let term = place.checked_sub(quantities.asphere(0, 0)).map(|at| at % 9);
                     // A step that moves the sag by about a micrometre.
@@ -222,8 +224,8 @@ mod tests {
         let weights = ExitSum { path_mm: 1.0, direction: [0.1, 0.2], ..ExitSum::default() };
         let train = train(false);
         let path = trace_ray(&train, start).unwrap();
-        let few = path.differentiate(&train, &weights, false);
-        let all = path.differentiate(&train, &weights, true);
+        let few = path.differentiate(&train, &weights, Shapes::None);
+        let all = path.differentiate(&train, &weights, Shapes::ALL);
         for (a, b) in few.iter().zip(&all) {
             assert!((a - b).abs() <= 1e-13 * b.abs().max(1.0), "{a} {b}");
         }
@@ -238,12 +240,12 @@ mod tests {
             let mut paths = vec![0.0; heights.len()];
             let mut bundle = Bundle::new();
             bundle.trace(&train, &heights, &mut paths).unwrap();
-            let quantities = bundle.differentiate(&train, true);
+            let quantities = bundle.differentiate(&train, Shapes::ALL);
             for (i, &height) in heights.iter().enumerate() {
                 let ray = trace_ray(&train, RayStart::parallel(height)).unwrap();
                 assert!((ray.exit().path_mm - paths[i]).abs() < 1e-13);
                 let weights = ExitSum { path_mm: 1.0, ..ExitSum::default() };
-                let row = ray.differentiate(&train, &weights, true);
+                let row = ray.differentiate(&train, &weights, Shapes::ALL);
                 for (place, &expected) in row.iter().enumerate().take(quantities.count()) {
                     let got = bundle.path_derivatives(place).nth(i).unwrap();
                     assert!((got - expected).abs() <= 1e-12 * expected.abs().max(1.0));

@@ -5,7 +5,7 @@
 use proptest::prelude::*;
 use surface_model::first_order::first_order;
 use surface_model::paraxial::{ParaxialRay, ParaxialWeights};
-use surface_model::reverse::Quantities;
+use surface_model::reverse::{Quantities, Shapes};
 use surface_model::seidel::{SeidelRays, seidel};
 use surface_model::solid::{ShapeGradient, Solid};
 use surface_model::surface::{ASPHERE_TERMS, Surface, asphere_power};
@@ -170,7 +170,7 @@ proptest! {
         train in trains(), height in 0.5..3.0, slope in -0.05..0.05,
         weight in -1.0..1.0, exit in -1.0..1.0, at in any::<prop::sample::Index>(),
     ) {
-        let quantities = Quantities::new(train.len(), false);
+        let quantities = Quantities::new(train.len(), Shapes::None);
         let (last, inner) = (train.len() - 1, at.index(train.len()));
         let everything = [(last, 1.0 / height), (inner, weight)];
         let only_slope = ParaxialWeights { heights: &[], exit_slope: 1.0 };
