@@ -1,4 +1,41 @@
-//! surface-model
+//! The optics of zoom beam expanders: glass, surfaces, groups, zoom states; first order; the exact
+//! trace and its reverse sweep.
+//!
+//! # What it owns
+//!
+//! A [`design::Design`] is groups of elements in a [`housing`], and the zoom states they slide
+//! through. Each state at each wavelength is a flat [`train::Train`] of surfaces, and everything
+//! that is computed is computed on trains:
+//!
+//! - [`trace`]: exact rays on spheres, conics and even aspheres, meridional and skew, one body of
+//!   code; [`bundle`] traces many parallel to the axis, [`skew`] one of any direction;
+//! - [`reverse`]: from a traced ray the exact derivative of its optical path by every curvature,
+//!   gap, index, conic constant and asphere coefficient, in one backward sweep;
+//! - [`paraxial`], [`first_order`], [`seidel`]: what theory says to first and third order;
+//! - [`wavefront`]: the wavefront error behind the last surface, integrated to convergence;
+//! - [`solid`]: thickness at the edge, volume, mass; [`glass`]: the catalogue and own glasses.
+//!
+//! It also owns how design files are read: [`document`] for any JSON document,
+//! [`optics_document`] for the optics in one.
+//!
+//! # What it refuses to know
+//!
+//! What is wanted of a design (goals, limits), what may change, how to improve it, terminals and
+//! files on disk.
+//!
+//! # The one equation it exists for
+//!
+//! The wavefront error of a ray that enters at height r,
+//!
+//! W(r) = Σ nᵢ sᵢ(r) − Σ nᵢ tᵢ,
+//!
+//! its optical path to the plane through the last vertex less that of the axial ray, and its
+//! derivative by everything on the right. Start reading at [`trace`], then [`reverse`].
+//!
+//! # Signs and units
+//!
+//! Light travels to +z. Lengths in mm, curvatures in 1/mm, positive with the centre to the right;
+//! wavelengths in nm, in air; indices relative to air. Names carry the unit at every boundary.
 
 pub mod bundle;
 pub mod design;
