@@ -215,9 +215,7 @@ pub(crate) fn solve(
         }
     }
     if changes > 0 {
-        // Sheds the rounding that the changes piled up.
-        working.settle(program);
-        working.step(program, step);
+        working.polish(program, step);
     }
     Ok(())
 }

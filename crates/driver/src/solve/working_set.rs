@@ -55,8 +55,8 @@ impl WorkingSet {
     }
 
     /// Takes up the members left from an earlier program as far as they fit this one: those
-    /// dependent on others are left out, and those with a negative multiplier are let go, worst
-    /// first, until what is left is a point the dual method may start from.
+    /// dependent on others are left out, and those with a negative multiplier are let go until what
+    /// is left is a point the dual method may start from.
     pub(crate) fn resume(&mut self, program: &Program<'_>) {
         let earlier = std::mem::take(&mut self.members);
         self.gram.clear();
@@ -82,28 +82,45 @@ impl WorkingSet {
         self.settle(program);
     }
 
-    /// Multipliers of the present members, `(NᵀH⁻¹N) u = b − Nᵀp₀`, members whose multiplier is
-    /// negative let go.
-    pub(crate) fn settle(&mut self, program: &Program<'_>) {
+    /// Lets go of the members whose multiplier is negative until none is. All of them go at once:
+    /// any set left with positive multipliers will do to start from, and a large guess is sifted
+    /// in a few rounds.
+    fn settle(&mut self, program: &Program<'_>) {
         loop {
-            let mut multipliers: Vec<f64> = self
-                .members
-                .iter()
-                .map(|m| program.level(m.constraint) - program.along(m.constraint, program.free))
-                .collect();
-            self.gram.solve(&mut multipliers);
-            for (member, multiplier) in self.members.iter_mut().zip(&multipliers) {
-                member.multiplier = *multiplier;
+            self.find_multipliers(program);
+            let before = self.members.len();
+            let kept: Vec<Member> =
+                self.members.iter().copied().filter(|member| member.multiplier >= 0.0).collect();
+            if kept.len() == before {
+                return;
             }
-            let worst = multipliers
-                .iter()
-                .enumerate()
-                .min_by(|a, b| a.1.total_cmp(b.1))
-                .filter(|(_, multiplier)| **multiplier < 0.0);
-            match worst {
-                Some((position, _)) => self.let_go(position),
-                None => return,
+            self.clear();
+            for member in kept {
+                self.push(member.constraint, member.column, 0.0);
             }
+        }
+    }
+
+    /// Multipliers and step of the present members anew, which sheds the rounding that changes
+    /// piled up.
+    pub(crate) fn polish(&mut self, program: &Program<'_>, step: &mut Vec<f64>) {
+        self.find_multipliers(program);
+        for member in &mut self.members {
+            member.multiplier = member.multiplier.max(0.0);
+        }
+        self.step(program, step);
+    }
+
+    /// `(NᵀH⁻¹N) u = b − Nᵀp₀`.
+    fn find_multipliers(&mut self, program: &Program<'_>) {
+        let mut multipliers: Vec<f64> = self
+            .members
+            .iter()
+            .map(|m| program.level(m.constraint) - program.along(m.constraint, program.free))
+            .collect();
+        self.gram.solve(&mut multipliers);
+        for (member, multiplier) in self.members.iter_mut().zip(multipliers) {
+            member.multiplier = multiplier;
         }
     }
 

@@ -32,7 +32,7 @@ pub(crate) fn expander(ratios: &[f64], upset: f64, seed: u64) -> (TestProblem, V
     for bounds in &mut problem.bounds[..6] {
         *bounds = Bounds { low: -0.125, high: 0.125 };
     }
-    // Thin-lens layout: powers of the groups, and the closed form of their spacings.
+    // Powers of a thin-lens layout that works, and spacings roughly linear in the ratio.
     let (entry, runner, exit): (f64, f64, f64) = (1.0 / 34.5, -1.0 / 13.8, 1.0 / 140.0);
     let bend = |power: f64, shape: f64| {
         let sum = power / (INDEX - 1.0);
@@ -51,6 +51,7 @@ pub(crate) fn expander(ratios: &[f64], upset: f64, seed: u64) -> (TestProblem, V
 }
 
 fn wavefront(x: &[C], ratio: f64) -> Vec<C> {
+    // Six-point Gauss-Legendre on 0 to 1, in the squared height.
     let nodes = [0.0338, 0.1694, 0.3807, 0.6193, 0.8306, 0.9662];
     let weights: [f64; 6] = [0.0857, 0.1804, 0.2340, 0.2340, 0.1804, 0.0857];
     let weights: Vec<f64> =
@@ -140,7 +141,7 @@ fn the_same_start_gives_the_same_bits() {
 
 #[test]
 fn a_short_tube_is_kept_to() {
-    // 140 mm of track is too short for this layout to be comfortable: the limit is met exactly.
+    // 115 mm for both spacings is less than the layout would take: the limit holds it back.
     let (mut problem, start) = expander(&[2.0, 3.0, 4.0, 6.0], 0.05, 1);
     for limit in &mut problem.limits {
         limit.value = Box::new(|x: &[C]| C::new(115.0, 0.0) - x[6] - x[7]);
