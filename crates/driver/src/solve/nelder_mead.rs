@@ -128,11 +128,14 @@ impl<P: BlockProblem> Solver<SimplexCost<'_, P>, SolverState> for Watched<'_> {
         let (mut state, kv) = self.simplex.next_iter(problem, state)?;
         let cost = state.get_cost();
         let best = state.take_param().unwrap_or_default();
-        let variables = evaluator(problem)?.unpack(&best);
+        let problem = evaluator(problem)?;
+        let variables = problem.unpack(&best);
+        // Below the price of a crossed limit the cost is the sum of squares itself.
+        let squares = if cost < CROSSED { Some(cost) } else { problem.sum_of_squares(&variables) };
         let progress = Progress {
             iteration,
-            sum_of_squares: if cost < CROSSED { cost } else { before.min(cost) },
-            violation: if cost < CROSSED { 0.0 } else { cost / CROSSED },
+            sum_of_squares: squares.unwrap_or(f64::MAX),
+            violation: problem.violation(&variables).min(f64::MAX),
             damping: None,
             step: 0.0,
             accepted: cost < before,

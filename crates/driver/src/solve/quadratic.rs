@@ -183,7 +183,8 @@ pub(crate) fn limit_along(limit: &LimitRow, normal: &NormalEquations, step: &[f6
 /// their multipliers.
 ///
 /// The working set found on entry, and all that the step it leads to violates, are tried first:
-/// any set whose multipliers are positive is a place the dual method may start from.
+/// any set whose multipliers are positive is a place the dual method may start from. (Guessing a
+/// second time did not pay.)
 ///
 /// # Errors
 /// The constraints are inconsistent; `step` then has no meaning and `working` is empty.
