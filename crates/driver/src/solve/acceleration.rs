@@ -13,8 +13,8 @@
 //! hand, after which bounds hold as exactly as before.
 //!
 //! Where `2|a|/|v|` exceeds the ratio allowed, second order is no guide and the straight step is
-//! tried instead. (The paper rejects such steps unseen; trying them took half the steps on the
-//! test functions of Moré, Garbow and Hillstrom and a tenth fewer on beam expanders.)
+//! tried instead. (The paper rejects such steps unseen; trying them took a quarter fewer steps on
+//! the test functions of Moré, Garbow and Hillstrom and a tenth fewer on beam expanders.)
 
 /// The probe's share `h` of the step. The paper suggests 0.1: long enough to see curvature above
 /// rounding, short enough for second order to rule.
