@@ -236,7 +236,7 @@ impl<'a> Resolver<'a> {
 fn own_range(place: Place, range: Option<&RangedDocument>) -> Result<Bounds, FreedomError> {
     let Some(RangedDocument { min, max, .. }) = range else { return Ok(Bounds::FREE) };
     for end in [min, max].into_iter().flatten() {
-        if !(end.abs() <= 1e9) {
+        if !(-1e9..=1e9).contains(end) {
             return Err(FreedomError::End(*end));
         }
     }

@@ -47,6 +47,13 @@ impl RowRule {
     }
 }
 
+/// A position in the housing: constant + Σ factor × gap + Σ factor × shared variable.
+struct Position {
+    constant: f64,
+    gaps: Vec<(usize, f64)>,
+    shared: Vec<(usize, f64)>,
+}
+
 struct Maker<'a> {
     design: &'a Design,
     variables: &'a Variables,
@@ -128,37 +135,44 @@ impl Maker<'_> {
             Measure::Front => (0..place, 1.0, 0.0),
             _ => (place..all, -1.0, track_mm),
         };
-        let mut gaps: Vec<(usize, f64)> = gaps.map(|gap| (gap, -1.0)).collect();
-        gaps.shrink_to_fit();
-        let (shared, still) = match self.shared(SharedVariable::FixedPosition(group)) {
-            Some(number) => (vec![(number, factor)], 0.0),
-            None => (Vec::new(), factor * self.design.middle_position_mm(group)),
-        };
-        Some(row(constant + still, 1.0, Measured::Sum { gaps, shared }))
+        let gaps = gaps.map(|gap| (gap, -1.0)).collect();
+        let (still, shared) = self.still_position(group);
+        let shared = shared.into_iter().map(|(number, by)| (number, factor * by)).collect();
+        Some(row(constant + factor * still, 1.0, Measured::Sum { gaps, shared }))
+    }
+
+    /// Where a fixed middle group stands: a constant, or a shared variable.
+    fn still_position(&self, group: usize) -> (f64, Vec<(usize, f64)>) {
+        match self.shared(SharedVariable::FixedPosition(group)) {
+            Some(number) => (0.0, vec![(number, 1.0)]),
+            None => (self.design.middle_position_mm(group), Vec::new()),
+        }
     }
 
     fn shared(&self, wanted: SharedVariable) -> Option<usize> {
         self.variables.shared().iter().position(|&variable| variable == wanted)
     }
 
-    /// Position of a group as constant + Σ factor × gap + Σ factor × shared variable.
-    fn position(&self, group: usize) -> (f64, Vec<(usize, f64)>, Vec<(usize, f64)>) {
+    /// Where a group's first vertex stands in the housing.
+    fn position(&self, group: usize) -> Position {
         let place = self.sequence.first_surface(group);
         let all = self.sequence.gaps.len();
         match self.design.housing.anchor() {
             Anchor::Rear => {
                 let gaps = (place..all).map(|gap| (gap, -1.0)).collect();
-                (self.design.housing.track_mm, gaps, Vec::new())
+                let constant = self.design.housing.track_mm;
+                Position { constant, gaps, shared: Vec::new() }
             }
-            Anchor::Front => (0.0, (0..place).map(|gap| (gap, 1.0)).collect(), Vec::new()),
+            Anchor::Front => {
+                let gaps = (0..place).map(|gap| (gap, 1.0)).collect();
+                Position { constant: 0.0, gaps, shared: Vec::new() }
+            }
             Anchor::Middle(still) => {
                 let from = self.sequence.first_surface(still);
                 let factor = if place >= from { 1.0 } else { -1.0 };
                 let gaps = (place.min(from)..place.max(from)).map(|gap| (gap, factor)).collect();
-                match self.shared(SharedVariable::FixedPosition(still)) {
-                    Some(number) => (0.0, gaps, vec![(number, 1.0)]),
-                    None => (self.design.middle_position_mm(still), gaps, Vec::new()),
-                }
+                let (constant, shared) = self.still_position(still);
+                Position { constant, gaps, shared }
             }
         }
     }
@@ -168,7 +182,7 @@ impl Maker<'_> {
     /// are furthest apart now must stay that far apart.
     fn travel_rows(&self, item: &LimitItem, group: usize, rows: &mut Vec<RowRule>) {
         let Some(start) = self.shared(SharedVariable::TravelStart(group)) else { return };
-        let (constant, gaps, shared) = self.position(group);
+        let Position { constant, gaps, shared } = self.position(group);
         let mut push = |state: usize, sign: f64, beyond: f64| {
             let mut shared = shared.clone();
             shared.push((start, -1.0));
