@@ -36,5 +36,4 @@ mod problem_tests;
 mod ray_weights;
 mod row_evaluation;
 pub mod variables;
-mod warnings;
 pub mod wishes;

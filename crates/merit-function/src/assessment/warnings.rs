@@ -2,10 +2,10 @@
 
 use surface_model::design::Design;
 
-use crate::assessment::{ElementAssessment, StateAssessment};
+use super::{ElementAssessment, StateAssessment};
 
 /// Warnings in plain sentences, each naming its place and what to do.
-pub(crate) fn warnings(
+pub(super) fn warnings(
     design: &Design,
     elements: &[ElementAssessment],
     states: &[StateAssessment],

@@ -1,0 +1,165 @@
+//! One zoom state: ratio, collimation, wavefront.
+
+use serde::Serialize;
+use surface_model::bundle::Bundle;
+use surface_model::design::{Design, ZoomState};
+use surface_model::paraxial::ParaxialRay;
+use surface_model::train::Train;
+use surface_model::wavefront::{TracedBeam, wavefront_error};
+
+use super::finite;
+use super::surface::{self, SurfaceAssessment};
+use crate::goals::Goals;
+use crate::limit_item::StateView;
+
+/// One zoom state's numbers.
+#[derive(Debug, Clone, PartialEq, Serialize)]
+pub struct StateAssessment {
+    /// Its name.
+    pub name: String,
+    /// Ratio wanted.
+    pub ratio_wanted: f64,
+    /// Paraxial ratio at the first wavelength.
+    pub ratio: Option<f64>,
+    /// (ratio − wanted)/wanted in per cent.
+    pub ratio_error_percent: Option<f64>,
+    /// Paraxial exit slope of the ray that enters at the 1/e² radius, µrad.
+    pub exit_slope_urad: Option<f64>,
+    /// First vertex to last vertex, mm.
+    pub track_mm: f64,
+    /// Air between the groups, mm.
+    pub spacings_mm: Vec<f64>,
+    /// Where each group's first vertex stands in the housing, mm.
+    pub positions_mm: serde_json::Map<String, serde_json::Value>,
+    /// 1/e² diameter behind the last surface, paraxial, mm.
+    pub exit_diameter_mm: Option<f64>,
+    /// One entry a wavelength.
+    pub wavefront: Vec<WavefrontAssessment>,
+    /// One entry a surface: third-order aberrations and angle of incidence.
+    pub surfaces: Vec<SurfaceAssessment>,
+    /// Whether every goal of the state is met.
+    pub met: bool,
+    /// What the state adds to the merit.
+    pub merit: Option<f64>,
+    /// Why rays fail, if any do.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub fault: Option<String>,
+}
+
+/// Wavefront error at one wavelength.
+#[derive(Debug, Clone, Copy, PartialEq, Serialize)]
+pub struct WavefrontAssessment {
+    /// Wavelength, nm.
+    pub wavelength_nm: f64,
+    /// Weighted RMS, waves.
+    pub rms_waves: Option<f64>,
+    /// Peak to valley, waves.
+    pub pv_waves: Option<f64>,
+}
+
+/// A state's train at its first wavelength with the rays that limits are measured on. `None`
+/// where a glass is not known at the wavelength, which a resolved design rules out.
+pub(super) fn view(design: &Design, state: &ZoomState) -> Option<StateView> {
+    let train = design.train(state, *state.wavelengths_nm.first()?).ok()?;
+    let mut paraxial = ParaxialRay::default();
+    let marginal = paraxial.trace(&train, 1.0, 0.0).map(|()| paraxial.heights().to_vec());
+    let edge_mm = design.beam.edge_mm();
+    let mut bundle = Bundle::new();
+    let traced = bundle.trace(&train, &[edge_mm], &mut [0.0]).is_ok();
+    let heights = traced.then(|| bundle.heights_at_surfaces(0).map(|y| y / edge_mm).collect());
+    let angles = traced.then(|| {
+        bundle.cos_incidences(0).map(|cosine| cosine.min(1.0).acos().to_degrees()).collect()
+    });
+    Some(StateView {
+        train,
+        marginal: marginal.unwrap_or_default(),
+        edge_ray: heights,
+        incidence_deg: angles,
+    })
+}
+
+/// Assesses one state.
+pub(super) fn assess(design: &Design, state: &ZoomState, goals: &Goals) -> StateAssessment {
+    let first = state.wavelengths_nm.first().and_then(|&nm| design.train(state, nm).ok());
+    let paraxial = first.as_ref().and_then(|train| {
+        let mut ray = ParaxialRay::default();
+        ray.trace(train, 1.0, 0.0).ok().map(|()| ray)
+    });
+    let radius_mm = design.beam.radius_mm();
+    let ratio = paraxial.as_ref().and_then(ParaxialRay::ratio);
+    let exit_slope_urad =
+        paraxial.as_ref().and_then(|ray| finite(ray.exit_slope()? * radius_mm * 1e6));
+    let ratio_error_percent = ratio.map(|ratio| (ratio / state.ratio - 1.0) * 100.0);
+    let (wavefront, fault) = wavefronts(design, state);
+    let misses = misses(goals, ratio_error_percent, exit_slope_urad, &wavefront);
+    let positions = design.groups.iter().zip(design.positions_mm(state));
+    StateAssessment {
+        name: state.name.clone(),
+        ratio_wanted: state.ratio,
+        ratio,
+        ratio_error_percent,
+        exit_slope_urad,
+        track_mm: design.length_mm(state),
+        spacings_mm: state.spacings_mm.clone(),
+        positions_mm: positions.map(|(group, z)| (group.name.clone(), z.into())).collect(),
+        exit_diameter_mm: ratio.map(|ratio| ratio.abs() * design.beam.diameter_mm),
+        wavefront,
+        surfaces: first.map_or_else(Vec::new, |train| surface::assess(design, &train)),
+        met: fault.is_none()
+            && misses.iter().all(|miss| miss.is_some_and(|miss| miss.abs() <= 1.0)),
+        merit: misses
+            .iter()
+            .map(|miss| miss.map(|miss| goals.weight * miss * miss))
+            .sum::<Option<f64>>()
+            .filter(|_| fault.is_none()),
+        fault,
+    }
+}
+
+/// Each goal's miss in units of its `within`; `None` where it has no value.
+fn misses(
+    goals: &Goals,
+    ratio_error_percent: Option<f64>,
+    exit_slope_urad: Option<f64>,
+    wavefront: &[WavefrontAssessment],
+) -> Vec<Option<f64>> {
+    let mut misses = Vec::new();
+    if let Some(within) = goals.wavefront_rms_waves {
+        misses.extend(wavefront.iter().map(|w| w.rms_waves.map(|rms| rms / within)));
+    }
+    if let Some(within) = goals.ratio_percent {
+        misses.push(ratio_error_percent.map(|error| error / within));
+    }
+    if let Some(within) = goals.exit_slope_urad {
+        misses.push(exit_slope_urad.map(|slope| slope / within));
+    }
+    misses
+}
+
+fn wavefronts(design: &Design, state: &ZoomState) -> (Vec<WavefrontAssessment>, Option<String>) {
+    let mut fault = None;
+    let mut of = |nm: f64| -> WavefrontAssessment {
+        let mut tell = |reason: String| {
+            fault.get_or_insert(format!("at {nm} nm {reason}"));
+        };
+        let train: Option<Train> = match design.train(state, nm) {
+            Ok(train) => Some(train),
+            Err(error) => {
+                tell(error.to_string());
+                None
+            }
+        };
+        let error = train.and_then(|train| {
+            TracedBeam::new(design.beam.radius_mm(), design.beam.traced_to, nm)
+                .and_then(|beam| wavefront_error(&train, &beam))
+                .map_err(|error| tell(error.to_string()))
+                .ok()
+        });
+        WavefrontAssessment {
+            wavelength_nm: nm,
+            rms_waves: error.map(|error| error.rms_waves),
+            pv_waves: error.map(|error| error.pv_waves),
+        }
+    };
+    (state.wavelengths_nm.iter().map(|&nm| of(nm)).collect(), fault)
+}
