@@ -18,23 +18,23 @@ pub(crate) fn edge_mm(train: &Train, gap: usize) -> Option<f64> {
     space.thickness(height_mm).ok()
 }
 
-/// Adds the derivatives of a gap's edge to a row over the train's quantities. Returns the length,
-/// or `None` where a surface does not reach the edge.
+/// Hands on the derivatives of a gap's edge, each with the place of its quantity. Returns the
+/// length, or `None` where a surface does not reach the edge.
 pub(crate) fn edge_gradient(
     train: &Train,
     gap: usize,
     quantities: Quantities,
-    row: &mut [f64],
+    mut put: impl FnMut(usize, f64),
 ) -> Option<f64> {
     let (space, height_mm) = space(train, gap);
     let gradient = space.thickness_gradient(height_mm).ok()?;
-    row[quantities.gap(gap)] += 1.0;
+    put(quantities.gap(gap), 1.0);
     for (surface, by) in [(gap, gradient.by_front), (gap + 1, gradient.by_back)] {
-        row[quantities.curvature(surface)] += by.curvature;
+        put(quantities.curvature(surface), by.curvature);
         if quantities.shapes().any() {
-            row[quantities.conic(surface)] += by.conic;
+            put(quantities.conic(surface), by.conic);
             for (term, by) in by.asphere.into_iter().enumerate() {
-                row[quantities.asphere(surface, term)] += by;
+                put(quantities.asphere(surface, term), by);
             }
         }
     }

@@ -11,6 +11,7 @@
 //!
 //! with wⱼ the share of the beam's power that ray stands for.
 
+use nalgebra::DVector;
 use surface_model::bundle::Bundle;
 use surface_model::design::Design;
 use surface_model::glass::GlassError;
@@ -43,6 +44,8 @@ pub(crate) struct StateTrains {
     by_shared: Vec<Vec<(usize, f64)>>,
     /// The same per own variable.
     by_own: Vec<Vec<(usize, f64)>>,
+    /// The other way round: per quantity, the variables it follows, with factors.
+    followed: Vec<Vec<(Column, f64)>>,
 }
 
 /// A design's merit function over its variables.
@@ -90,6 +93,7 @@ impl MeritFunction {
                 ratio_wanted: state.ratio,
                 by_shared: followers(&variables, k, variables.shared().len(), Column::Shared),
                 by_own: followers(&variables, k, variables.own(k).len(), Column::Own),
+                followed: followed(&variables, k),
             });
         }
         let (radius_mm, reach) = (design.beam.radius_mm(), design.beam.traced_to);
@@ -249,6 +253,15 @@ fn followers(
     (0..count).map(follows).collect()
 }
 
+/// Per quantity of a state's train, the variables it follows.
+fn followed(variables: &Variables, state: usize) -> Vec<Vec<(Column, f64)>> {
+    let mut followed = vec![Vec::new(); variables.quantities().count()];
+    for binding in variables.bindings(state) {
+        followed[binding.quantity].clone_from(&binding.terms);
+    }
+    followed
+}
+
 impl BlockProblem for MeritFunction {
     type Fault = EvaluationFault;
 
@@ -297,16 +310,20 @@ impl StateTrains {
         self.wavelengths_nm[0]
     }
 
-    /// Maps a gradient over the train's quantities to shared and own variables.
-    pub(crate) fn to_variables(&self, gradient: &[f64], shared: &mut [f64], own: &mut [f64]) {
-        let dot = |follows: &Vec<(usize, f64)>| -> f64 {
-            follows.iter().map(|&(quantity, factor)| factor * gradient[quantity]).sum()
-        };
-        for (out, follows) in shared.iter_mut().zip(&self.by_shared) {
-            *out += dot(follows);
-        }
-        for (out, follows) in own.iter_mut().zip(&self.by_own) {
-            *out += dot(follows);
+    /// Adds to a gradient over the variables what a derivative `by` a quantity of the train is
+    /// worth to them.
+    pub(crate) fn follow(
+        &self,
+        quantity: usize,
+        by: f64,
+        shared: &mut DVector<f64>,
+        own: &mut DVector<f64>,
+    ) {
+        for &(column, factor) in &self.followed[quantity] {
+            match column {
+                Column::Shared(number) => shared[number] += factor * by,
+                Column::Own(number) => own[number] += factor * by,
+            }
         }
     }
 }

@@ -151,38 +151,39 @@ impl RowEvaluator {
         reset(&mut row.by_own, own);
 
         let quantities = variables.quantities();
-        gradient.clear();
-        gradient.resize(quantities.count(), 0.0);
         let StateRays { paraxial, bundle } = &mut rays[k];
+        let LimitRow { by_shared, by_own, .. } = row;
+        let mut put = |quantity: usize, by: f64| {
+            state.follow(quantity, rule.sign * by, by_shared, by_own);
+        };
         match &rule.measured {
             Measured::Sum { gaps, shared } => {
                 for &(gap, factor) in gaps {
-                    gradient[quantities.gap(gap)] += factor;
+                    put(quantities.gap(gap), factor);
                 }
                 for &(number, factor) in shared {
-                    row.by_shared[number] += rule.sign * factor;
+                    by_shared[number] += rule.sign * factor;
                 }
             }
             Measured::Edge(gap) => {
-                edge_gradient(train, *gap, quantities, gradient)
+                edge_gradient(train, *gap, quantities, put)
                     .ok_or(EvaluationFault::Edge { surface: *gap })?;
             }
             Measured::Incidence(surface) => {
                 incidence_gradient(bundle, train, quantities.shapes(), *surface, gradient);
+                gradient.iter().enumerate().for_each(|(quantity, &by)| put(quantity, by));
             }
             // A beam far from a focus is left alone.
-            Measured::MarginalHeight(_) if row.value > *focus_in_sight => return Ok(()),
+            Measured::MarginalHeight(_) if row.value > *focus_in_sight => {}
             Measured::MarginalHeight(surface) => {
                 let weights = ParaxialWeights { heights: &[(*surface, 1.0)], exit_slope: 0.0 };
+                gradient.resize(quantities.count(), 0.0);
                 paraxial
                     .differentiate(train, weights, quantities, gradient)
                     .map_err(|_| EvaluationFault::overflow(&state.name))?;
+                gradient.iter().enumerate().for_each(|(quantity, &by)| put(quantity, by));
             }
         }
-        for by in gradient.iter_mut() {
-            *by *= rule.sign;
-        }
-        state.to_variables(gradient, row.by_shared.as_mut_slice(), row.by_own.as_mut_slice());
         Ok(())
     }
 }
