@@ -1,2 +1,5 @@
-//! The command line.
-fn main() {}
+//! The program `drawtube`.
+
+fn main() -> std::process::ExitCode {
+    drawtube::main()
+}

@@ -1,0 +1,48 @@
+//! `assess`: the numbers of a design as it stands.
+
+use driver::design_file::DesignFile;
+use merit_function::assessment::assess;
+use report::text;
+use report::text::assessment::Scope;
+
+use crate::arguments::AssessArguments;
+use crate::console::Console;
+use crate::exit_status::ExitStatus;
+use crate::failure::Failure;
+use crate::input;
+
+/// What is printed.
+enum Form {
+    Json,
+    Text(Scope),
+}
+
+/// What is asked for.
+struct Request {
+    file: DesignFile,
+    form: Form,
+    require: bool,
+}
+
+impl Request {
+    fn of(arguments: AssessArguments) -> Result<Self, Failure> {
+        let scope = if arguments.all { Scope::All } else { Scope::Tightest };
+        Ok(Self {
+            file: input::design(&arguments.design)?,
+            form: if arguments.json { Form::Json } else { Form::Text(scope) },
+            require: arguments.require,
+        })
+    }
+}
+
+pub(crate) fn run(arguments: AssessArguments, console: &Console) -> Result<ExitStatus, Failure> {
+    let Request { file, form, require } = Request::of(arguments)?;
+    let assessment = assess(&file.design, &file.wishes);
+    match form {
+        Form::Json => console.print_json(&assessment)?,
+        Form::Text(scope) => {
+            console.print(&text::assessment::assessment(&file, &assessment, scope))?;
+        }
+    }
+    Ok(if require && !assessment.meets { ExitStatus::Missed } else { ExitStatus::Done })
+}

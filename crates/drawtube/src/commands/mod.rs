@@ -1,0 +1,8 @@
+//! One module a command: the request its arguments make, and carrying it out.
+
+pub(crate) mod assess;
+pub(crate) mod completions;
+pub(crate) mod glass;
+pub(crate) mod optimise;
+pub(crate) mod schema;
+pub(crate) mod trace;

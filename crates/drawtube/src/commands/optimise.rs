@@ -1,0 +1,81 @@
+//! `optimise`: from a design to a better one nearby.
+
+mod account;
+mod destination;
+mod request;
+
+use driver::optimise::{Optimisation, optimise};
+use driver::solve::{Interruptible, Stopped};
+
+use crate::arguments::OptimiseArguments;
+use crate::console::Console;
+use crate::exit_status::ExitStatus;
+use crate::failure::Failure;
+use crate::progress::Teller;
+use crate::signals::StopSignal;
+
+use account::Account;
+use destination::Destination;
+use request::{Request, Summary};
+
+pub(crate) fn run(arguments: OptimiseArguments, console: &Console) -> Result<ExitStatus, Failure> {
+    let request = Request::of(arguments, console)?;
+    request.destination.check()?;
+    let signals = StopSignal::listen().map_err(Failure::Signals)?;
+    let stages = solve(&request, &signals, console)?;
+    let account = Account::new(&request.file, stages)?;
+    let saved = request.destination.save(account.result(), console);
+    tell(&request, &account, saved.is_ok(), console)?;
+    saved?;
+    Ok(signals.status().unwrap_or(if request.require && !account.meets() {
+        ExitStatus::Missed
+    } else {
+        ExitStatus::Done
+    }))
+}
+
+/// Runs the methods one after the other, each from where the one before stopped.
+fn solve(
+    request: &Request,
+    signals: &StopSignal,
+    console: &Console,
+) -> Result<Vec<Optimisation>, Failure> {
+    let mut stages: Vec<Optimisation> = Vec::new();
+    let mut teller = Teller::new(request.progress, console);
+    for settings in &request.stages {
+        let from = stages.last().map_or(&request.file, |stage| &stage.file);
+        let mut observer = Interruptible { stop: signals.flag(), observer: &mut teller };
+        let result = optimise(from, settings, &mut observer);
+        if result.is_err() {
+            teller.finish();
+        }
+        let stage = result?;
+        let over = matches!(stage.stopped, Stopped::TargetReached | Stopped::Interrupted);
+        stages.push(stage);
+        if over {
+            break;
+        }
+    }
+    teller.finish();
+    Ok(stages)
+}
+
+/// Prints the summary: on standard output, unless a design is or has to be there.
+fn tell(
+    request: &Request,
+    account: &Account<'_>,
+    saved: bool,
+    console: &Console,
+) -> Result<(), Failure> {
+    let text = match request.summary {
+        Summary::None => return Ok(()),
+        Summary::Json => account.document()?,
+        Summary::Text => account.text(&request.destination, saved),
+    };
+    if saved && request.destination != Destination::StandardOutput {
+        console.print(&text)
+    } else {
+        console.say(&text);
+        Ok(())
+    }
+}

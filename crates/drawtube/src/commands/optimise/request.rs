@@ -1,0 +1,83 @@
+//! What `optimise` is asked for, with everything decided.
+
+use std::time::Duration;
+
+use driver::design_file::DesignFile;
+use driver::solve::{Method, Settings};
+
+use super::destination::Destination;
+use crate::arguments::{MethodArgument, OptimiseArguments, ProgressArgument};
+use crate::console::Console;
+use crate::failure::Failure;
+use crate::input;
+use crate::progress::Manner;
+
+/// What is printed at the end.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub(super) enum Summary {
+    Text,
+    Json,
+    None,
+}
+
+/// What is asked for.
+pub(super) struct Request {
+    pub(super) file: DesignFile,
+    /// One or more methods with their settings, in order.
+    pub(super) stages: Vec<Settings>,
+    pub(super) destination: Destination,
+    pub(super) summary: Summary,
+    pub(super) progress: Manner,
+    pub(super) require: bool,
+}
+
+impl Request {
+    pub(super) fn of(arguments: OptimiseArguments, console: &Console) -> Result<Self, Failure> {
+        let every = interval(arguments.progress_every)?;
+        let stages = stages(&arguments)?;
+        let quiet = arguments.quiet;
+        Ok(Self {
+            file: input::design(&arguments.design)?,
+            stages,
+            destination: Destination::of(arguments.output, arguments.force),
+            summary: match (quiet, arguments.json) {
+                (true, _) => Summary::None,
+                (false, true) => Summary::Json,
+                (false, false) => Summary::Text,
+            },
+            progress: Manner::of(
+                if quiet { ProgressArgument::None } else { arguments.progress },
+                every,
+                console,
+            ),
+            require: arguments.require,
+        })
+    }
+}
+
+fn interval(seconds: f64) -> Result<Duration, Failure> {
+    Duration::try_from_secs_f64(seconds).map_err(|_| Failure::Argument {
+        option: "--progress-every",
+        found: seconds.to_string(),
+        constraint: "a number of seconds, zero or positive",
+    })
+}
+
+fn stages(arguments: &OptimiseArguments) -> Result<Vec<Settings>, Failure> {
+    let methods = std::iter::once(arguments.method).chain(arguments.then.iter().copied());
+    methods
+        .map(|method| {
+            let mut settings = Settings::new(match method {
+                MethodArgument::LeastSquares => Method::DampedLeastSquares,
+                MethodArgument::NelderMead => Method::NelderMead,
+            });
+            if let Some(iterations) = arguments.iterations {
+                settings = settings.with_max_iterations(iterations)?;
+            }
+            if let Some(target) = arguments.target_merit {
+                settings = settings.with_target(target)?;
+            }
+            Ok(settings)
+        })
+        .collect()
+}

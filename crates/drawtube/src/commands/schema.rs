@@ -1,0 +1,16 @@
+//! `schema`: the JSON Schema of the documents the program reads.
+
+use driver::design_file::design_schema;
+
+use crate::arguments::{DocumentKind, SchemaArguments};
+use crate::console::Console;
+use crate::exit_status::ExitStatus;
+use crate::failure::Failure;
+
+pub(crate) fn run(arguments: SchemaArguments, console: &Console) -> Result<ExitStatus, Failure> {
+    let schema = match arguments.kind {
+        DocumentKind::Design => design_schema(),
+    };
+    console.print_json(&schema)?;
+    Ok(ExitStatus::Done)
+}

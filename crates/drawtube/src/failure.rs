@@ -1,0 +1,179 @@
+//! What can go wrong, how it is told, and which exit status it has.
+
+use std::io;
+
+use driver::optimise::OptimiseError;
+use driver::solve::SettingsError;
+use driver::write_whole::WriteError;
+use report::ray::RayError;
+use serde_json::{Value, json};
+use surface_model::document::{Complaints, nearest, quoted};
+use surface_model::glass::{GlassError, LookupError, SearchError};
+
+use crate::exit_status::ExitStatus;
+
+/// Why a command could not do what it was asked.
+#[derive(Debug, thiserror::Error)]
+pub(crate) enum Failure {
+    /// Not a command line of this program, in clap's words.
+    #[error("{0}")]
+    CommandLine(String),
+    /// A value on the command line is out of range.
+    #[error("{option}: {found}, but it must be {constraint}")]
+    Argument {
+        /// The option.
+        option: &'static str,
+        /// What was given.
+        found: String,
+        /// What would do.
+        constraint: &'static str,
+    },
+    /// A setting is out of range.
+    #[error(transparent)]
+    Settings(#[from] SettingsError),
+    /// The file cannot be opened.
+    #[error("{label} cannot be opened: {source}")]
+    Open {
+        /// What the file is called.
+        label: String,
+        /// What the system says.
+        source: io::Error,
+    },
+    /// The file is not what it should be.
+    #[error("{0}")]
+    Input(#[from] Complaints),
+    /// There is no zoom state of this name.
+    #[error("the design has no state {}", quoted(.asked))]
+    NoState {
+        /// The name asked for.
+        asked: String,
+        /// The names there are.
+        names: Vec<String>,
+    },
+    /// The optimisation could not begin.
+    #[error(transparent)]
+    Optimise(#[from] OptimiseError),
+    /// The ray has no path.
+    #[error(transparent)]
+    Ray(#[from] RayError),
+    /// No glass of this name.
+    #[error(transparent)]
+    Lookup(#[from] LookupError),
+    /// A glass is not known there.
+    #[error(transparent)]
+    Glass(#[from] GlassError),
+    /// A glass search that cannot be understood.
+    #[error(transparent)]
+    Search(#[from] SearchError),
+    /// A file cannot be written.
+    #[error(transparent)]
+    Write(#[from] WriteError),
+    /// Standard output takes nothing more.
+    #[error("standard output cannot be written: {0}")]
+    StandardOutput(io::Error),
+    /// A result could not be made into a document.
+    #[error("the result cannot be written as JSON: {0}")]
+    Document(serde_json::Error),
+    /// No method was run.
+    #[error("no method was run")]
+    NoStage,
+    /// Signals cannot be listened to.
+    #[error("signals cannot be listened to: {0}")]
+    Signals(io::Error),
+}
+
+impl Failure {
+    /// The exit status it leads to.
+    pub(crate) fn status(&self) -> ExitStatus {
+        match self {
+            Self::CommandLine(_)
+            | Self::Argument { .. }
+            | Self::Settings(_)
+            | Self::Open { .. }
+            | Self::Input(_)
+            | Self::NoState { .. }
+            | Self::Lookup(_)
+            | Self::Glass(_)
+            | Self::Search(_) => ExitStatus::WrongInput,
+            Self::Optimise(error) => status_of(error),
+            Self::Ray(RayError::Glass(_) | RayError::Direction { .. }) => ExitStatus::WrongInput,
+            Self::Ray(_) | Self::Document(_) | Self::NoStage | Self::Signals(_) => {
+                ExitStatus::Failed
+            }
+            Self::Write(_) | Self::StandardOutput(_) => ExitStatus::CannotWrite,
+        }
+    }
+
+    /// What to do about it.
+    fn advice(&self) -> Option<String> {
+        match self {
+            Self::NoState { asked, names } => {
+                let all: Vec<&str> = names.iter().map(String::as_str).collect();
+                Some(match nearest(asked, all.iter().copied()) {
+                    Some(near) => surface_model::document::did_you_mean(near),
+                    None => format!("its states are {}", all.join(", ")),
+                })
+            }
+            Self::Optimise(error) => advice_on(error),
+            Self::Lookup(error) => error.advice(),
+            Self::Glass(error) | Self::Ray(RayError::Glass(error)) => error.advice(),
+            Self::Search(error) => error.advice(),
+            Self::Write(WriteError::Exists(_)) => {
+                Some("give --force to replace it, or choose another name".to_owned())
+            }
+            _ => None,
+        }
+    }
+
+    /// For people.
+    pub(crate) fn text(&self) -> String {
+        if let Self::Input(complaints) = self {
+            return complaints.to_string();
+        }
+        match self.advice() {
+            Some(advice) => format!("drawtube: {self}\n  {advice}"),
+            None => format!("drawtube: {self}"),
+        }
+    }
+
+    /// For machines: `drawtube-error/1`.
+    pub(crate) fn document(&self) -> Value {
+        let mut document = json!({
+            "format": "drawtube-error/1",
+            "status": self.status() as u8,
+            "message": self.to_string(),
+            "advice": self.advice(),
+        });
+        if let (Self::Input(complaints), Value::Object(map)) = (self, &mut document)
+            && let Value::Object(list) = complaints.to_json()
+        {
+            map.extend(list);
+        }
+        document
+    }
+}
+
+fn status_of(error: &OptimiseError) -> ExitStatus {
+    match error {
+        OptimiseError::NoGoals
+        | OptimiseError::NothingFree
+        | OptimiseError::Variables(_)
+        | OptimiseError::Glass(_) => ExitStatus::WrongInput,
+        _ => ExitStatus::Failed,
+    }
+}
+
+fn advice_on(error: &OptimiseError) -> Option<String> {
+    let advice = match error {
+        OptimiseError::NoGoals => "add \"goals\" to the file, such as wavefront_rms_waves",
+        OptimiseError::NothingFree => {
+            "name what may change under \"free\", or take something out of \"held\""
+        }
+        OptimiseError::Start(_) => {
+            "begin with weaker curves or a narrower beam (traced_to); assess tells where rays fail"
+        }
+        OptimiseError::Glass(error) => return error.advice(),
+        _ => return None,
+    };
+    Some(advice.to_owned())
+}

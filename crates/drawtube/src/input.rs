@@ -1,0 +1,26 @@
+//! Reading what a command is given.
+
+use std::fs::File;
+use std::io;
+use std::path::Path;
+
+use driver::design_file::DesignFile;
+use surface_model::document::Document;
+
+use crate::failure::Failure;
+
+/// The path that means a standard stream.
+pub(crate) const STANDARD_STREAM: &str = "-";
+
+/// Reads a design from a file, or from standard input.
+pub(crate) fn design(path: &Path) -> Result<DesignFile, Failure> {
+    let document = if path.as_os_str() == STANDARD_STREAM {
+        Document::from_reader("standard input", io::stdin().lock())?
+    } else {
+        let label = path.display().to_string();
+        let file =
+            File::open(path).map_err(|source| Failure::Open { label: label.clone(), source })?;
+        Document::from_reader(label, file)?
+    };
+    Ok(DesignFile::read(document)?)
+}

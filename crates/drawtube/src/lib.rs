@@ -1,0 +1,45 @@
+//! The command line of drawtube, thin: arguments in, results on standard output, everything else
+//! on standard error, and an exit status that says how it went.
+//!
+//! A command takes its typed arguments ([`arguments`]), turns them into a request in which nothing
+//! contradicts itself, lets the crates below do the work, and prints. What goes wrong is a
+//! [`failure::Failure`], told in one place. Start reading at [`main`], then `commands/optimise.rs`.
+
+mod arguments;
+mod colour;
+mod commands;
+mod console;
+pub mod exit_status;
+mod failure;
+mod input;
+mod progress;
+mod signals;
+
+use std::process::ExitCode;
+
+use arguments::{Arguments, Command};
+use console::Console;
+use exit_status::ExitStatus;
+
+/// Runs the program on the arguments it was called with.
+#[must_use]
+pub fn main() -> ExitCode {
+    let status = match Arguments::read(std::env::args_os()) {
+        Ok(arguments) => run(arguments),
+        Err(refused) => refused.tell(),
+    };
+    status.into()
+}
+
+fn run(arguments: Arguments) -> ExitStatus {
+    let console = Console::new(arguments.errors);
+    let result = match arguments.command {
+        Command::Assess(arguments) => commands::assess::run(arguments, &console),
+        Command::Optimise(arguments) => commands::optimise::run(arguments, &console),
+        Command::Trace(arguments) => commands::trace::run(arguments, &console),
+        Command::Glass(arguments) => commands::glass::run(arguments, &console),
+        Command::Schema(arguments) => commands::schema::run(arguments, &console),
+        Command::Completions(arguments) => commands::completions::run(arguments, &console),
+    };
+    result.unwrap_or_else(|failure| console.fail(&failure))
+}

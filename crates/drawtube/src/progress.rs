@@ -1,0 +1,101 @@
+//! Progress of the solver on standard error: a line that is redrawn, or a plain one now and then.
+
+use std::ops::ControlFlow;
+use std::time::{Duration, Instant};
+
+use driver::solve::{Observer, Progress};
+use indicatif::{ProgressBar, ProgressStyle};
+
+use crate::arguments::ProgressArgument;
+use crate::console::Console;
+
+/// How often a line is redrawn.
+const REDRAW: Duration = Duration::from_millis(100);
+
+/// How progress is told, decided.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub(crate) enum Manner {
+    /// A line that is redrawn.
+    Bar,
+    /// A line every so often.
+    Plain(Duration),
+    /// Nothing.
+    Nothing,
+}
+
+impl Manner {
+    /// What suits the terminal, or what was asked for.
+    pub(crate) fn of(asked: ProgressArgument, every: Duration, console: &Console) -> Self {
+        match asked {
+            ProgressArgument::None => Self::Nothing,
+            ProgressArgument::Plain => Self::Plain(every),
+            ProgressArgument::Auto if !console.can_redraw() => Self::Plain(every),
+            ProgressArgument::Auto | ProgressArgument::Bar => Self::Bar,
+        }
+    }
+}
+
+/// Tells how far the solver is.
+pub(crate) struct Teller<'a> {
+    console: &'a Console,
+    bar: Option<ProgressBar>,
+    every: Option<Duration>,
+    began: Instant,
+    last: Instant,
+    iterations: u64,
+}
+
+impl<'a> Teller<'a> {
+    pub(crate) fn new(manner: Manner, console: &'a Console) -> Self {
+        let (bar, every) = match manner {
+            Manner::Bar => (Some(bar()), Some(REDRAW)),
+            Manner::Plain(every) => (None, Some(every)),
+            Manner::Nothing => (None, None),
+        };
+        let now = Instant::now();
+        Self { console, bar, every, began: now, last: now, iterations: 0 }
+    }
+
+    /// Takes the line off the terminal.
+    pub(crate) fn finish(&self) {
+        if let Some(bar) = &self.bar {
+            bar.finish_and_clear();
+        }
+    }
+
+    fn tell(&self, progress: &Progress<'_>, now: Instant) {
+        let seconds = (now - self.began).as_secs_f64();
+        let rate = self.iterations as f64 / seconds.max(1e-9);
+        let crossed = if progress.violation > 1.0 { ", limits crossed" } else { "" };
+        let told = format!(
+            "{} iterations, {rate:.0} a second, merit {:.6e}{crossed}",
+            self.iterations, progress.sum_of_squares
+        );
+        match &self.bar {
+            Some(bar) => bar.set_message(told),
+            None => self.console.say(&format!("{seconds:.0} s: {told}")),
+        }
+    }
+}
+
+fn bar() -> ProgressBar {
+    let bar = ProgressBar::new_spinner();
+    if let Ok(style) = ProgressStyle::with_template("{spinner} {elapsed} {wide_msg}") {
+        bar.set_style(style);
+    }
+    bar
+}
+
+impl Observer for Teller<'_> {
+    fn observe(&mut self, progress: &Progress<'_>) -> ControlFlow<()> {
+        self.iterations += 1;
+        if let Some(every) = self.every {
+            let now = Instant::now();
+            if now - self.last >= every {
+                self.last = now;
+                self.tell(progress, now);
+            }
+        }
+        ControlFlow::Continue(())
+    }
+}

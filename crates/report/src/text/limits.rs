@@ -1,0 +1,90 @@
+//! The table of limits.
+
+use driver::design_file::DesignFile;
+use merit_function::assessment::{Assessment, LimitAssessment};
+use merit_function::limits::LimitKind;
+
+use super::number::{as_written, fixed};
+use super::table::{Column, Table};
+
+/// Which limits are told.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, Default)]
+pub enum Scope {
+    /// Of each kind the tightest, and every one that is crossed.
+    #[default]
+    Tightest,
+    /// Every single one.
+    All,
+}
+
+/// The table of limits; empty if the file has none.
+pub(crate) fn limits(file: &DesignFile, assessment: &Assessment, scope: Scope) -> String {
+    let mut table =
+        Table::new([(Column::Left, "limit"), (Column::Right, "value "), (Column::Left, "at")]);
+    for limit in chosen(&assessment.limits, scope) {
+        table.row([
+            format!("{} {}", limit.limit.word(), allowed(limit)),
+            value(limit) + if limit.met { "\u{a0}" } else { "!" },
+            place(file, limit),
+        ]);
+    }
+    if table.is_empty() { String::new() } else { table.text() }
+}
+
+fn chosen(limits: &[LimitAssessment], scope: Scope) -> Vec<&LimitAssessment> {
+    if scope == Scope::All {
+        return limits.iter().collect();
+    }
+    let mut kinds: Vec<LimitKind> = Vec::new();
+    for limit in limits {
+        if !kinds.contains(&limit.limit) {
+            kinds.push(limit.limit);
+        }
+    }
+    let of_kind = |kind: LimitKind| {
+        let tightest = limits
+            .iter()
+            .filter(|limit| limit.limit == kind)
+            .min_by(|a, b| margin(a).total_cmp(&margin(b)));
+        limits.iter().filter(move |limit| {
+            limit.limit == kind && (!limit.met || tightest.is_some_and(|t| std::ptr::eq(t, *limit)))
+        })
+    };
+    kinds.into_iter().flat_map(of_kind).collect()
+}
+
+/// Distance to the nearest end of what is allowed, negative outside.
+fn margin(limit: &LimitAssessment) -> f64 {
+    let Some(value) = limit.value else {
+        // The radius of a flat keeps every minimum; what cannot be measured keeps none.
+        return if limit.met { f64::INFINITY } else { f64::NEG_INFINITY };
+    };
+    let below = limit.min.map_or(f64::INFINITY, |min| value - min);
+    let above = limit.max.map_or(f64::INFINITY, |max| max - value);
+    below.min(above)
+}
+
+fn allowed(limit: &LimitAssessment) -> String {
+    match (limit.min, limit.max) {
+        (Some(min), Some(max)) => format!("{} to {}", as_written(min), as_written(max)),
+        (Some(min), None) => format!("≥ {}", as_written(min)),
+        (None, Some(max)) => format!("≤ {}", as_written(max)),
+        (None, None) => String::new(),
+    }
+}
+
+fn value(limit: &LimitAssessment) -> String {
+    match limit.value {
+        Some(value) => fixed(value, 4),
+        None if limit.met => "flat".to_owned(),
+        None => "unknown".to_owned(),
+    }
+}
+
+fn place(file: &DesignFile, limit: &LimitAssessment) -> String {
+    let at = limit.at.with_names(file.document().value());
+    match &limit.state {
+        Some(state) => format!("{at} in {state}"),
+        None => at.to_string(),
+    }
+}

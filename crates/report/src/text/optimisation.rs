@@ -1,0 +1,131 @@
+//! What `optimise` prints for people: before and after, side by side.
+
+use std::time::Duration;
+
+use driver::design_file::DesignFile;
+use merit_function::assessment::{Assessment, StateAssessment};
+
+use super::number::{as_written, counted, fixed_or_dash, significant_or_dash};
+use super::table::{Column, Table};
+use super::{WIDTH, assessment, optimised, paragraph, sections, warnings};
+
+/// What is told about an optimisation.
+#[derive(Debug)]
+pub struct Told<'a> {
+    /// The file as it was.
+    pub before: &'a DesignFile,
+    /// Its assessment.
+    pub start: &'a Assessment,
+    /// The file as it is now.
+    pub after: &'a DesignFile,
+    /// Its assessment.
+    pub end: &'a Assessment,
+    /// Methods in order, and why each stopped.
+    pub stages: Vec<(&'static str, String)>,
+    /// Steps tried.
+    pub iterations: u64,
+    /// Evaluations of all residuals.
+    pub evaluations: u64,
+    /// Time of the solver alone.
+    pub solving: Duration,
+    /// Warnings beside those of the assessment.
+    pub warnings: Vec<String>,
+}
+
+/// The whole account of an optimisation.
+#[must_use]
+pub fn optimisation(told: &Told<'_>) -> String {
+    let mut parts = vec![assessment::heading(told.before), states(told), totals(told)];
+    parts.extend(optimised::moved(told.before, told.after));
+    parts.push(how(told));
+    let all: Vec<String> = told.warnings.iter().chain(&told.end.warnings).cloned().collect();
+    parts.push(warnings(&all));
+    parts.push(assessment::closing(told.after, told.end));
+    sections(parts)
+}
+
+fn states(told: &Told<'_>) -> String {
+    let mut table = Table::new([
+        (Column::Left, "state"),
+        (Column::Right, "wave-\nlength nm"),
+        (Column::Right, "RMS waves\nbefore"),
+        (Column::Left, ""),
+        (Column::Right, "\nafter"),
+        (Column::Right, "ratio err. %\nbefore"),
+        (Column::Left, ""),
+        (Column::Right, "\nafter"),
+        (Column::Right, "slope µrad\nbefore"),
+        (Column::Left, ""),
+        (Column::Right, "\nafter"),
+    ]);
+    for (before, after) in told.start.states.iter().zip(&told.end.states) {
+        for k in 0..after.wavefront.len() {
+            table.row(row(before, after, k));
+        }
+    }
+    table.text()
+}
+
+fn row(before: &StateAssessment, after: &StateAssessment, k: usize) -> Vec<String> {
+    let arrow = || "→".to_owned();
+    let rms = |state: &StateAssessment| {
+        significant_or_dash(state.wavefront.get(k).and_then(|wavefront| wavefront.rms_waves), 3)
+    };
+    let nm = after.wavefront.get(k).map_or_else(String::new, |w| as_written(w.wavelength_nm));
+    let name = if k == 0 { after.name.clone() } else { String::new() };
+    let mut row = vec![name, nm, rms(before), arrow(), rms(after)];
+    if k == 0 {
+        let error = |state: &StateAssessment| fixed_or_dash(state.ratio_error_percent, 4);
+        let slope = |state: &StateAssessment| fixed_or_dash(state.exit_slope_urad, 2);
+        row.extend([error(before), arrow(), error(after), slope(before), arrow(), slope(after)]);
+    } else {
+        row.resize(11, String::new());
+    }
+    row
+}
+
+fn totals(told: &Told<'_>) -> String {
+    let crossed = |assessment: &Assessment| {
+        assessment.limits.iter().filter(|limit| !limit.met).count().to_string()
+    };
+    let merit = |assessment: &Assessment| significant_or_dash(assessment.merit.total, 4);
+    let mut table = Table::new([
+        (Column::Left, ""),
+        (Column::Right, "before"),
+        (Column::Left, ""),
+        (Column::Right, "after"),
+    ]);
+    let mut row = |what: &str, of: &dyn Fn(&Assessment) -> String| {
+        table.row([what.to_owned(), of(told.start), "→".to_owned(), of(told.end)]);
+    };
+    row("merit", &merit);
+    row("limits crossed", &crossed);
+    table.text()
+}
+
+fn how(told: &Told<'_>) -> String {
+    let stages = told.stages.iter().map(|(method, stopped)| {
+        let mut method = (*method).to_owned();
+        if let Some(first) = method.get_mut(..1) {
+            first.make_ascii_uppercase();
+        }
+        paragraph(&format!("{method}: {stopped}."), WIDTH, "")
+    });
+    let effort = format!(
+        "{}, {}, {} of solving.",
+        counted(usize::try_from(told.iterations).unwrap_or(usize::MAX), "iteration"),
+        counted(usize::try_from(told.evaluations).unwrap_or(usize::MAX), "evaluation"),
+        duration(told.solving)
+    );
+    stages.chain([effort]).collect::<Vec<_>>().join("\n")
+}
+
+/// A time as people say it.
+fn duration(time: Duration) -> String {
+    let seconds = time.as_secs_f64();
+    match seconds {
+        _ if seconds < 1.0 => format!("{:.1} ms", seconds * 1e3),
+        _ if seconds < 100.0 => format!("{seconds:.1} s"),
+        _ => format!("{} min {} s", time.as_secs() / 60, time.as_secs() % 60),
+    }
+}

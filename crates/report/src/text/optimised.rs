@@ -1,0 +1,81 @@
+//! Which numbers an optimisation moved.
+
+use driver::design_file::DesignFile;
+use surface_model::design::Design;
+use surface_model::place::Place;
+
+use super::number::{fixed, significant};
+use super::table::{Column, Table};
+
+/// The shared numbers that moved, and the spacings of every state.
+pub(crate) fn moved(before: &DesignFile, after: &DesignFile) -> Vec<String> {
+    vec![shared(before, after), spacings(before, after)]
+}
+
+/// A number as people know it: a radius instead of a curvature.
+fn told(place: Place, design: &Design) -> String {
+    let value = place.value(design);
+    match place {
+        Place::Radius(_) if value == 0.0 => "flat".to_owned(),
+        Place::Radius(_) => fixed(1.0 / value, 4),
+        Place::Conic(_) | Place::Asphere(..) => significant(value, 6),
+        _ => fixed(value, 4),
+    }
+}
+
+fn moved_places<'a>(
+    before: &'a DesignFile,
+    after: &'a DesignFile,
+) -> impl Iterator<Item = Place> + 'a {
+    let moved = |place: &Place| {
+        place.value(&before.design).to_bits() != place.value(&after.design).to_bits()
+    };
+    Place::all(&before.design).into_iter().filter(moved)
+}
+
+fn shared(before: &DesignFile, after: &DesignFile) -> String {
+    let mut table = Table::new([
+        (Column::Left, "moved"),
+        (Column::Right, "from"),
+        (Column::Left, ""),
+        (Column::Right, "to"),
+    ]);
+    let document = before.document().value();
+    for place in moved_places(before, after) {
+        if !matches!(place, Place::Spacing { .. }) {
+            table.row([
+                place.address().with_names(document).to_string(),
+                told(place, &before.design),
+                "→".to_owned(),
+                told(place, &after.design),
+            ]);
+        }
+    }
+    if table.is_empty() { String::new() } else { table.text() }
+}
+
+fn spacings(before: &DesignFile, after: &DesignFile) -> String {
+    let any = moved_places(before, after).any(|place| matches!(place, Place::Spacing { .. }));
+    if !any {
+        return String::new();
+    }
+    let heads: Vec<[String; 2]> = before
+        .design
+        .groups
+        .windows(2)
+        .map(|pair| [format!("{} to", pair[0].name), format!("{} mm", pair[1].name)])
+        .collect();
+    let mut columns = vec![(Column::Left, "spacing")];
+    for [from, to] in &heads {
+        columns.extend([(Column::Right, from.as_str()), (Column::Left, ""), (Column::Right, to)]);
+    }
+    let mut table = Table::new(columns);
+    for (old, new) in before.design.states.iter().zip(&after.design.states) {
+        let mut row = vec![old.name.clone()];
+        for (&from, &to) in old.spacings_mm.iter().zip(&new.spacings_mm) {
+            row.extend([fixed(from, 4), "→".to_owned(), fixed(to, 4)]);
+        }
+        table.row(row);
+    }
+    table.text()
+}

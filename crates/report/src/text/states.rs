@@ -1,0 +1,117 @@
+//! The table of zoom states.
+
+use driver::design_file::DesignFile;
+use merit_function::assessment::{Assessment, StateAssessment, WavefrontAssessment};
+use merit_function::goals::Goals;
+
+use super::number::{NONE, as_written, fixed, fixed_or_dash, significant_or_dash};
+use super::table::{Column, Table};
+use super::verdict::missed;
+
+/// A number with the sign that it misses its goal, or room for one.
+fn marked(text: String, missed: bool) -> String {
+    text + if missed { "!" } else { "\u{a0}" }
+}
+
+/// What every state reaches, with the goals in the first row.
+pub(crate) fn reached(file: &DesignFile, assessment: &Assessment) -> String {
+    let mut table = Table::new([
+        (Column::Left, "state"),
+        (Column::Right, "ratio\nwanted"),
+        (Column::Right, "ratio"),
+        (Column::Right, "ratio \nerror % "),
+        (Column::Right, "exit slope \nµrad "),
+        (Column::Right, "exit\nbeam mm"),
+        (Column::Right, "wave-\nlength nm"),
+        (Column::Right, "RMS \nwaves "),
+        (Column::Right, "PV\nwaves"),
+    ]);
+    if let Some(goals) = shared_goals(file) {
+        let within =
+            |goal: Option<f64>| goal.map_or_else(String::new, |goal| as_written(goal) + "\u{a0}");
+        let mut row = vec![String::new(); 9];
+        "goal".clone_into(&mut row[0]);
+        row[3] = within(goals.ratio_percent);
+        row[4] = within(goals.exit_slope_urad);
+        row[7] = within(goals.wavefront_rms_waves);
+        table.row(row);
+    }
+    for (goals, state) in file.wishes.states.iter().zip(&assessment.states) {
+        for (k, wavefront) in state.wavefront.iter().enumerate() {
+            let mut row = if k == 0 { paraxial(goals, state) } else { vec![String::new(); 6] };
+            row.extend(at_wavelength(goals, wavefront));
+            table.row(row);
+        }
+    }
+    table.text()
+}
+
+/// The goals, where they are the same in all states and there are any.
+fn shared_goals(file: &DesignFile) -> Option<Goals> {
+    let first = *file.wishes.states.first()?;
+    let numbers =
+        |goals: &Goals| [goals.ratio_percent, goals.exit_slope_urad, goals.wavefront_rms_waves];
+    let same = file.wishes.states.iter().all(|goals| numbers(goals) == numbers(&first));
+    (same && numbers(&first).iter().any(Option::is_some)).then_some(first)
+}
+
+fn paraxial(goals: &Goals, state: &StateAssessment) -> Vec<String> {
+    vec![
+        state.name.clone(),
+        as_written(state.ratio_wanted),
+        fixed_or_dash(state.ratio, 4),
+        marked(
+            fixed_or_dash(state.ratio_error_percent, 4),
+            missed(state.ratio_error_percent, goals.ratio_percent),
+        ),
+        marked(
+            fixed_or_dash(state.exit_slope_urad, 2),
+            missed(state.exit_slope_urad, goals.exit_slope_urad),
+        ),
+        fixed_or_dash(state.exit_diameter_mm, 2),
+    ]
+}
+
+fn at_wavelength(goals: &Goals, wavefront: &WavefrontAssessment) -> [String; 3] {
+    let rms = wavefront.rms_waves;
+    [
+        as_written(wavefront.wavelength_nm),
+        marked(significant_or_dash(rms, 3), missed(rms, goals.wavefront_rms_waves)),
+        significant_or_dash(wavefront.pv_waves, 3),
+    ]
+}
+
+/// Whether a table of states has a number with the sign that it misses its goal.
+pub(crate) fn any_missed(file: &DesignFile, assessment: &Assessment) -> bool {
+    super::verdict::marks(file, assessment).iter().any(|mark| mark.size() > 1.0)
+}
+
+/// Why rays fail, a line a state.
+pub(crate) fn faults(assessment: &Assessment) -> String {
+    let lines: Vec<String> = assessment
+        .states
+        .iter()
+        .filter_map(|state| Some(format!("{}: {}", state.name, state.fault.as_ref()?)))
+        .collect();
+    lines.join("\n")
+}
+
+/// Spacings and lengths of every state.
+pub(crate) fn spacings(file: &DesignFile, assessment: &Assessment) -> String {
+    let groups = &file.design.groups;
+    let heads: Vec<String> =
+        groups.windows(2).map(|pair| format!("{} to\n{} mm", pair[0].name, pair[1].name)).collect();
+    let mut columns = vec![(Column::Left, "state")];
+    columns.extend(heads.iter().map(|head| (Column::Right, head.as_str())));
+    columns.extend([(Column::Right, "length\nmm"), (Column::Right, "front\nat mm")]);
+    let mut table = Table::new(columns);
+    for state in &assessment.states {
+        let front = state.positions_mm.values().next().and_then(serde_json::Value::as_f64);
+        let mut row = vec![state.name.clone()];
+        row.extend(state.spacings_mm.iter().map(|&spacing| fixed(spacing, 4)));
+        row.push(fixed(state.track_mm, 4));
+        row.push(front.map_or_else(|| NONE.to_owned(), |front| fixed(front, 4)));
+        table.row(row);
+    }
+    table.text()
+}

@@ -1,0 +1,56 @@
+//! One look for all tables: no lines, two spaces between columns, numbers to the right.
+
+use comfy_table::{Cell, CellAlignment, ContentArrangement, Table as Grid, presets};
+
+/// Which way a column leans.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub(crate) enum Column {
+    /// Words.
+    Left,
+    /// Numbers.
+    Right,
+}
+
+/// A table in the making.
+pub(crate) struct Table {
+    columns: Vec<Column>,
+    grid: Grid,
+}
+
+impl Table {
+    /// A table with these heads; a head of several lines stands at the bottom of its row.
+    pub(crate) fn new<'a>(heads: impl IntoIterator<Item = (Column, &'a str)>) -> Self {
+        let (columns, heads): (Vec<Column>, Vec<&str>) = heads.into_iter().unzip();
+        let mut grid = Grid::new();
+        grid.load_style(presets::NOTHING);
+        grid.set_content_arrangement(ContentArrangement::Disabled);
+        let lines = heads.iter().map(|head| head.lines().count()).max().unwrap_or(0);
+        grid.set_header(heads.iter().map(|head| {
+            let above = lines - head.lines().count();
+            Cell::new(format!("{}{head}", "\n".repeat(above)))
+        }));
+        Self { columns, grid }
+    }
+
+    /// Adds a row.
+    pub(crate) fn row(&mut self, cells: impl IntoIterator<Item = String>) {
+        self.grid.add_row(cells.into_iter().map(Cell::new));
+    }
+
+    /// Whether no row has been added.
+    pub(crate) fn is_empty(&self) -> bool {
+        self.grid.is_empty()
+    }
+
+    /// The table as text, without blanks at the ends of lines.
+    pub(crate) fn text(mut self) -> String {
+        for (column, leaning) in self.grid.column_iter_mut().zip(&self.columns) {
+            column.set_padding((0, 2));
+            column.set_cell_alignment(match leaning {
+                Column::Left => CellAlignment::Left,
+                Column::Right => CellAlignment::Right,
+            });
+        }
+        self.grid.trim_fmt()
+    }
+}

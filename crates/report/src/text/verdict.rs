@@ -1,0 +1,110 @@
+//! Goals held against what was reached, and the sentence an assessment ends with.
+
+use driver::design_file::DesignFile;
+use merit_function::assessment::{Assessment, LimitAssessment, StateAssessment};
+use merit_function::goals::Goals;
+
+use super::number::{as_written, counted, significant};
+
+/// One goal in one state.
+#[derive(Debug, Clone, PartialEq)]
+pub(crate) struct Mark {
+    /// What the goal is about, with the state and, for a wavefront, the wavelength.
+    pub(crate) what: String,
+    /// The value reached; `None` where it has none.
+    pub(crate) value: Option<f64>,
+    /// What was wanted.
+    pub(crate) within: f64,
+    /// Its unit, with a space in front where one belongs.
+    unit: &'static str,
+}
+
+impl Mark {
+    /// Size of the value in units of what was wanted; infinite without a value.
+    pub(crate) fn size(&self) -> f64 {
+        self.value.map_or(f64::INFINITY, |value| (value / self.within).abs())
+    }
+
+    fn missed(&self) -> bool {
+        missed(self.value, Some(self.within))
+    }
+
+    fn told(&self) -> String {
+        let Self { what, within, unit, .. } = self;
+        let within = as_written(*within);
+        match self.value {
+            Some(value) => {
+                format!(
+                    "the {what}, {}{unit} where {within}{unit} is wanted",
+                    significant(value, 3)
+                )
+            }
+            None => format!("the {what}, which cannot be measured"),
+        }
+    }
+}
+
+/// Whether a value misses a goal; one that is not asked for is never missed.
+pub(crate) fn missed(value: Option<f64>, within: Option<f64>) -> bool {
+    within.is_some_and(|within| value.is_none_or(|value| value.abs() / within > 1.0))
+}
+
+/// Every goal of every state.
+pub(crate) fn marks(file: &DesignFile, assessment: &Assessment) -> Vec<Mark> {
+    let states = file.wishes.states.iter().zip(&assessment.states);
+    states.flat_map(|(goals, state)| marks_of(goals, state)).collect()
+}
+
+fn marks_of(goals: &Goals, state: &StateAssessment) -> Vec<Mark> {
+    let name = &state.name;
+    let mut marks = Vec::new();
+    if let Some(within) = goals.wavefront_rms_waves {
+        marks.extend(state.wavefront.iter().map(|wavefront| Mark {
+            what: format!("RMS wavefront of {name} at {} nm", as_written(wavefront.wavelength_nm)),
+            value: wavefront.rms_waves,
+            within,
+            unit: " waves",
+        }));
+    }
+    let mut push = |what, value, within: Option<f64>, unit| {
+        let what = format!("{what} of {name}");
+        marks.extend(within.map(|within| Mark { what, value, within, unit }));
+    };
+    push("ratio error", state.ratio_error_percent, goals.ratio_percent, " %");
+    push("exit slope", state.exit_slope_urad, goals.exit_slope_urad, " µrad");
+    marks
+}
+
+/// Whether the design does what it should, and what is worst about it.
+pub(crate) fn closing_sentence(file: &DesignFile, assessment: &Assessment) -> String {
+    let marks = marks(file, assessment);
+    let missed: Vec<&Mark> = marks.iter().filter(|mark| mark.missed()).collect();
+    let crossed: Vec<&LimitAssessment> =
+        assessment.limits.iter().filter(|limit| !limit.met).collect();
+    let worst = marks.iter().max_by(|a, b| a.size().total_cmp(&b.size()));
+    let faults = assessment.states.iter().filter(|state| state.fault.is_some()).count();
+
+    let mut told = match (missed.len(), crossed.len()) {
+        (0, 0) if faults > 0 => format!("Rays fail in {}", counted(faults, "state")),
+        (0, 0) if marks.is_empty() => "Every limit is kept; the file asks for no goal".to_owned(),
+        (0, 0) => "The design meets every goal and keeps every limit".to_owned(),
+        (goals, 0) => format!("The design misses {} of {}", goals, counted(marks.len(), "goal")),
+        (0, limits) => {
+            format!("The design meets every goal but crosses {}", counted(limits, "limit"))
+        }
+        (goals, limits) => format!(
+            "The design misses {goals} of {} and crosses {}",
+            counted(marks.len(), "goal"),
+            counted(limits, "limit")
+        ),
+    };
+    if let Some(worst) = worst {
+        let which = if worst.missed() { "worst is" } else { "closest to its goal is" };
+        told.push_str(&format!("; {which} {}", worst.told()));
+        if worst.missed() && worst.value.is_some() {
+            told.push_str(&format!(" ({} times)", significant(worst.size(), 2)));
+        }
+    }
+    told.push('.');
+    told
+}
