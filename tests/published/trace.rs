@@ -38,7 +38,7 @@ fn snells_law_at_a_flat() {
     let [x, y] = path.exit().direction;
     assert!((x - 0.2).abs() < 1e-15 && (y - 0.8 / 3.0).abs() < 1e-15, "{x} {y}");
     assert!((axial([x, y]) - 8.0_f64.sqrt() / 3.0).abs() < 1e-15);
-    let point = &path.points(&flat)[0];
+    let point = &path.points()[0];
     assert!((point.incidence_rad - std::f64::consts::FRAC_PI_6).abs() < 1e-15);
     assert!((point.refraction_rad - (1.0_f64 / 3.0).asin()).abs() < 1e-15);
 }
@@ -50,7 +50,7 @@ fn snells_law_at_a_flat() {
 fn snells_law_at_a_sphere() {
     let sphere = one_surface(Surface::sphere(0.2, 4.9), 1.0, 1.2);
     let path = trace_ray(&sphere, RayStart::parallel(3.0)).unwrap();
-    let point = &path.points(&sphere)[0];
+    let point = &path.points()[0];
     for (got, expected) in point.position_mm.iter().zip([0.0, 3.0, 1.0]) {
         assert!((got - expected).abs() < 1e-14);
     }

@@ -11,6 +11,8 @@
 //!
 //! with wⱼ the share of the beam's power that ray stands for.
 
+use std::ops::Range;
+
 use nalgebra::DVector;
 use surface_model::bundle::Bundle;
 use surface_model::design::Design;
@@ -33,11 +35,13 @@ pub const RAYS: usize = 6;
 
 /// One state, ready to be evaluated.
 #[derive(Debug, Clone)]
-pub(crate) struct StateTrains {
+pub(crate) struct StateOptics {
     pub(crate) name: String,
-    /// One train a wavelength.
-    pub(crate) trains: Vec<Train>,
+    /// The train at the first wavelength, for what is paraxial and for limits.
+    pub(crate) train: Train,
     wavelengths_nm: Vec<f64>,
+    /// The state's trains in the bundle, one a wavelength; none without a goal on the wavefront.
+    bundled: Range<usize>,
     goals: Goals,
     ratio_wanted: f64,
     /// Per shared variable, the quantities that follow it, with factors.
@@ -48,15 +52,31 @@ pub(crate) struct StateTrains {
     followed: Vec<Vec<(Column, f64)>>,
 }
 
+/// The traced part of the beam.
+#[derive(Debug, Clone, Copy)]
+struct TracedPart {
+    radius_mm: f64,
+    reach: f64,
+    rays: usize,
+}
+
+impl TracedPart {
+    fn sample(self, fraction: f64) -> BeamSample {
+        beam_sample(self.radius_mm, self.reach * fraction, self.rays)
+    }
+}
+
 /// A design's merit function over its variables.
 #[derive(Debug)]
 pub struct MeritFunction {
     variables: Variables,
     shape: BlockShape,
-    states: Vec<StateTrains>,
+    states: Vec<StateOptics>,
+    /// Every state's train at every wavelength: what the bundle traces.
+    trains: Vec<Train>,
+    beam: TracedPart,
     sample: BeamSample,
     weights: RayWeights,
-    beam: (f64, f64, usize),
     pub(crate) rows: RowEvaluator,
     bundle: Bundle,
     paraxial: ParaxialRay,
@@ -78,18 +98,25 @@ impl MeritFunction {
         let rules = RowRule::all(design, &wishes.limits, &variables);
         let mut states = Vec::with_capacity(design.states.len());
         let mut rows = Vec::with_capacity(design.states.len());
-        for (k, state) in design.states.iter().enumerate() {
-            let trains: Result<Vec<Train>, GlassError> =
-                state.wavelengths_nm.iter().map(|&nm| design.train(state, nm)).collect();
-            let goals = wishes.states[k];
-            let wavefront = goals.wavefront_rms_waves.map_or(0, |_| rays);
+        let mut trains = Vec::new();
+        for (k, (state, goals)) in design.states.iter().zip(&wishes.states).enumerate() {
+            let first = trains.len();
+            for &nm in &state.wavelengths_nm {
+                trains.push(design.train(state, nm)?);
+            }
+            let train = trains[first].clone();
+            if goals.wavefront_rms_waves.is_none() {
+                trains.truncate(first);
+            }
+            let bundled = first..trains.len();
             let paraxial = [goals.ratio_percent, goals.exit_slope_urad];
-            rows.push(wavefront * state.wavelengths_nm.len() + paraxial.iter().flatten().count());
-            states.push(StateTrains {
+            rows.push(rays * bundled.len() + paraxial.iter().flatten().count());
+            states.push(StateOptics {
                 name: state.name.clone(),
-                trains: trains?,
+                train,
                 wavelengths_nm: state.wavelengths_nm.clone(),
-                goals,
+                bundled,
+                goals: *goals,
                 ratio_wanted: state.ratio,
                 by_shared: followers(&variables, k, variables.shared().len(), Column::Shared),
                 by_own: followers(&variables, k, variables.own(k).len(), Column::Own),
@@ -97,18 +124,22 @@ impl MeritFunction {
             });
         }
         let (radius_mm, reach) = (design.beam.radius_mm(), design.beam.traced_to);
-        let sample = beam_sample(radius_mm, reach, rays);
+        let beam = TracedPart { radius_mm, reach, rays };
+        let sample = beam.sample(1.0);
+        let mut bundle = Bundle::new();
+        bundle.load(&trains, &sample.heights_mm);
         Ok(Self {
             shape: variables.shape(rows),
             variables,
             states,
+            paths: vec![0.0; rays * trains.len()],
+            trains,
+            beam,
             weights: RayWeights::new(&sample.weights),
             sample,
-            beam: (radius_mm, reach, rays),
             rows: RowEvaluator::new(rules, design.beam.edge_mm()),
-            bundle: Bundle::new(),
+            bundle,
             paraxial: ParaxialRay::default(),
-            paths: vec![0.0; rays],
             gradient: Vec::new(),
         })
     }
@@ -122,29 +153,50 @@ impl MeritFunction {
     /// Traces only the inner `fraction` (0 to 1) of the beam from now on, so that a start in
     /// which outer rays fail can be brought in.
     pub fn set_aperture(&mut self, fraction: f64) {
-        let (radius_mm, reach, rays) = self.beam;
-        self.sample = beam_sample(radius_mm, reach * fraction, rays);
+        self.sample = self.beam.sample(fraction);
         self.weights = RayWeights::new(&self.sample.weights);
-        self.rows.set_edge_mm(radius_mm * reach * fraction);
+        self.bundle.load(&self.trains, &self.sample.heights_mm);
+        self.rows.set_edge_mm(self.beam.radius_mm * self.beam.reach * fraction);
     }
 
     /// Brings every train to these values of the variables.
     fn place(&mut self, variables: &[f64]) {
-        for k in 0..self.states.len() {
-            let state = &mut self.states[k];
+        let quantities = self.variables.quantities();
+        for (k, state) in self.states.iter_mut().enumerate() {
             for binding in self.variables.bindings(k) {
                 let mut value = binding.offset;
                 for &(column, factor) in &binding.terms {
                     value += factor * self.variables.value(variables, k, column);
                 }
-                for train in &mut state.trains {
-                    train.set_quantity(self.variables.quantities(), binding.quantity, value);
+                state.train.set_quantity(quantities, binding.quantity, value);
+                for train in state.bundled.clone() {
+                    self.bundle.set_quantity(train, quantities.at(binding.quantity), value);
                 }
             }
         }
     }
 
-    /// Residuals of one state. With `block`, its Jacobian too.
+    /// Traces every state's rays; with `kept`, so that they can be differentiated.
+    fn trace(&mut self, kept: bool) -> Result<(), EvaluationFault> {
+        let traced = if kept {
+            self.bundle.trace_kept(&mut self.paths)
+        } else {
+            self.bundle.trace(&mut self.paths)
+        };
+        traced.map_err(|failed| {
+            let height_mm = self.sample.heights_mm[failed.ray];
+            let state = self.states.iter().find(|state| state.bundled.contains(&failed.train));
+            match state {
+                Some(state) => {
+                    let nm = state.wavelengths_nm[failed.train - state.bundled.start];
+                    EvaluationFault::ray(&state.name, nm, height_mm, failed.fault)
+                }
+                None => EvaluationFault::ray("", f64::NAN, height_mm, failed.fault),
+            }
+        })
+    }
+
+    /// Residuals of one state, whose rays are traced. With `block`, its Jacobian too.
     fn state(
         &mut self,
         k: usize,
@@ -153,34 +205,21 @@ impl MeritFunction {
     ) -> Result<(), EvaluationFault> {
         let state = &self.states[k];
         let root_weight = state.goals.weight.sqrt();
-        let rays = self.sample.heights_mm.len();
+        let rays = self.beam.rays;
+        let within = state.goals.wavefront_rms_waves.unwrap_or(1.0);
         let mut row = 0;
-        if let Some(within) = state.goals.wavefront_rms_waves {
-            for (train, &nm) in state.trains.iter().zip(&state.wavelengths_nm) {
-                let heights_mm = &self.sample.heights_mm;
-                self.bundle.trace(train, heights_mm, &mut self.paths).map_err(|fault| {
-                    let height_mm = heights_mm[fault.ray];
-                    EvaluationFault::ray(&state.name, nm, height_mm, fault.fault)
-                })?;
-                let scale = root_weight / within * 1e6 / nm;
-                self.weights.residuals(&self.paths, scale, &mut residuals[row..row + rays]);
-                if let Some(block) = block.as_deref_mut() {
-                    self.bundle.differentiate(train, self.variables.quantities().shapes());
-                    self.weights.columns(
-                        &self.bundle,
-                        &state.by_shared,
-                        scale,
-                        &mut block.by_shared.rows_mut(row, rays),
-                    );
-                    self.weights.columns(
-                        &self.bundle,
-                        &state.by_own,
-                        scale,
-                        &mut block.by_own.rows_mut(row, rays),
-                    );
-                }
-                row += rays;
+        for (train, &nm) in state.bundled.clone().zip(&state.wavelengths_nm) {
+            let scale = root_weight / within * 1e6 / nm;
+            let paths = &self.paths[train * rays..][..rays];
+            self.weights.residuals(paths, scale, &mut residuals[row..row + rays]);
+            if let Some(block) = block.as_deref_mut() {
+                let from = (&self.bundle, train);
+                let shared = &mut block.by_shared.rows_mut(row, rays);
+                self.weights.columns(from, &state.by_shared, scale, shared);
+                let own = &mut block.by_own.rows_mut(row, rays);
+                self.weights.columns(from, &state.by_own, scale, own);
             }
+            row += rays;
         }
         self.paraxial_rows(k, &mut residuals[row..], row, block)
     }
@@ -195,7 +234,7 @@ impl MeritFunction {
     ) -> Result<(), EvaluationFault> {
         let state = &self.states[k];
         let goals = &state.goals;
-        let train = &state.trains[0];
+        let train = &state.train;
         let root_weight = goals.weight.sqrt();
         let overflow = || EvaluationFault::overflow(&state.name);
         self.paraxial.trace(train, 1.0, 0.0).map_err(|_| overflow())?;
@@ -207,7 +246,7 @@ impl MeritFunction {
             (factor * (ratio_now - state.ratio_wanted), Some((last, factor)), 0.0)
         });
         let slope = goals.exit_slope_urad.map(|within| {
-            let factor = root_weight / within * 1e6 * self.beam.0;
+            let factor = root_weight / within * 1e6 * self.beam.radius_mm;
             (factor * slope_now, None, factor)
         });
         for (i, (value, height, by_slope)) in [ratio, slope].into_iter().flatten().enumerate() {
@@ -275,6 +314,7 @@ impl BlockProblem for MeritFunction {
 
     fn residuals(&mut self, variables: &[f64], out: &mut [f64]) -> Result<(), EvaluationFault> {
         self.place(variables);
+        self.trace(false)?;
         let mut rest = out;
         for k in 0..self.states.len() {
             let (own, behind) = rest.split_at_mut(self.shape.rows[k]);
@@ -290,6 +330,8 @@ impl BlockProblem for MeritFunction {
         out: &mut Linearisation,
     ) -> Result<(), EvaluationFault> {
         self.place(variables);
+        self.trace(true)?;
+        self.bundle.differentiate(self.variables.quantities().shapes());
         for (k, block) in out.states.iter_mut().enumerate() {
             let mut residuals = std::mem::take(&mut block.residuals);
             let done = self.state(k, residuals.as_mut_slice(), Some(block));
@@ -305,7 +347,7 @@ impl BlockProblem for MeritFunction {
     }
 }
 
-impl StateTrains {
+impl StateOptics {
     pub(crate) fn first_wavelength_nm(&self) -> f64 {
         self.wavelengths_nm[0]
     }

@@ -29,11 +29,11 @@ impl RayWeights {
         self.centre(blocks, mean, scale, out);
     }
 
-    /// Columns of the Jacobian: for each variable, the quantities of the train that follow it,
+    /// Columns of the Jacobian for the rays of one train: for each variable, the quantities of the train that follow it,
     /// with factors.
     pub(crate) fn columns(
         &self,
-        bundle: &Bundle,
+        (bundle, train): (&Bundle, usize),
         columns: &[Vec<(usize, f64)>],
         scale: f64,
         out: &mut MatrixViewMut<'_, f64, Dyn, Dyn, U1, Dyn>,
@@ -42,7 +42,7 @@ impl RayWeights {
             let block = |block: usize| {
                 let mut sum = Lanes::ZERO;
                 for &(quantity, factor) in follows {
-                    let by = bundle.path_derivative_block(quantity, block);
+                    let by = bundle.path_derivative_vector(train, block, quantity);
                     sum = sum + Lanes::splat(factor) * by;
                 }
                 sum

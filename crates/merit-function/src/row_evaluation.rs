@@ -1,16 +1,16 @@
 //! Values and gradients of the limit rows at a point.
 
 use nalgebra::DVector;
-use surface_model::bundle::Bundle;
 use surface_model::paraxial::{ParaxialRay, ParaxialWeights};
 use surface_model::reverse::Shapes;
+use surface_model::skew::{RayPath, RayStart, trace_ray};
 use surface_model::train::Train;
 
 use crate::block::LimitRow;
 use crate::edge::{edge_gradient, edge_mm};
 use crate::fault::EvaluationFault;
 use crate::limit_rows::{Measured, RowRule};
-use crate::problem::StateTrains;
+use crate::problem::StateOptics;
 use crate::variables::Variables;
 
 /// Evaluates the limit rows of a problem. Buffers are kept from call to call.
@@ -33,7 +33,7 @@ const FOCUS_IN_SIGHT: f64 = 0.3;
 #[derive(Debug, Default)]
 struct StateRays {
     paraxial: ParaxialRay,
-    bundle: Bundle,
+    edge: Option<RayPath>,
 }
 
 impl RowEvaluator {
@@ -62,7 +62,7 @@ impl RowEvaluator {
     /// Values of all rows.
     pub(crate) fn values(
         &mut self,
-        states: &[StateTrains],
+        states: &[StateOptics],
         variables: &[f64],
         out: &mut Vec<f64>,
     ) -> Result<(), EvaluationFault> {
@@ -70,11 +70,11 @@ impl RowEvaluator {
         self.trace(states)?;
         for rule in &self.rules {
             let k = rule.state.unwrap_or(0);
-            let train = &states[k].trains[0];
+            let train = &states[k].train;
             let measured = match &rule.measured {
                 Measured::Sum { gaps, shared } => sum(train, variables, gaps, shared),
                 Measured::Edge(gap) => edge_mm_or_fault(train, *gap)?,
-                Measured::Incidence(surface) => incidence_deg(&self.rays[k].bundle, *surface),
+                Measured::Incidence(surface) => incidence_deg(self.rays[k].edge.as_ref(), *surface),
                 Measured::MarginalHeight(surface) => self.rays[k].paraxial.heights()[*surface],
             };
             out.push(rule.constant + rule.sign * measured);
@@ -83,24 +83,25 @@ impl RowEvaluator {
     }
 
     /// Traces, in every state, the rays that some row measures.
-    fn trace(&mut self, states: &[StateTrains]) -> Result<(), EvaluationFault> {
+    fn trace(&mut self, states: &[StateOptics]) -> Result<(), EvaluationFault> {
         self.rays.resize_with(states.len(), StateRays::default);
         let any =
             |wanted: fn(&Measured) -> bool| self.rules.iter().any(|rule| wanted(&rule.measured));
         let paraxial = any(|measured| matches!(measured, Measured::MarginalHeight(_)));
         let exact = any(|measured| matches!(measured, Measured::Incidence(_)));
         for (state, rays) in states.iter().zip(&mut self.rays) {
-            let train = &state.trains[0];
+            let train = &state.train;
             if paraxial {
                 rays.paraxial
                     .trace(train, 1.0, 0.0)
                     .map_err(|_| EvaluationFault::overflow(&state.name))?;
             }
             if exact {
-                rays.bundle.trace(train, &[self.edge_mm], &mut [0.0]).map_err(|fault| {
+                let ray = trace_ray(train, RayStart::parallel(self.edge_mm)).map_err(|fault| {
                     let nm = state.first_wavelength_nm();
-                    EvaluationFault::ray(&state.name, nm, self.edge_mm, fault.fault)
+                    EvaluationFault::ray(&state.name, nm, self.edge_mm, fault)
                 })?;
+                rays.edge = Some(ray);
             }
         }
         Ok(())
@@ -109,7 +110,7 @@ impl RowEvaluator {
     /// Values and gradients of all rows.
     pub(crate) fn linearise(
         &mut self,
-        states: &[StateTrains],
+        states: &[StateOptics],
         variables: &Variables,
         at: &[f64],
         out: &mut Vec<LimitRow>,
@@ -135,7 +136,7 @@ impl RowEvaluator {
     fn gradient_of(
         &mut self,
         i: usize,
-        states: &[StateTrains],
+        states: &[StateOptics],
         variables: &Variables,
         row: &mut LimitRow,
     ) -> Result<(), EvaluationFault> {
@@ -143,7 +144,7 @@ impl RowEvaluator {
         let rule = &rules[i];
         let k = rule.state.unwrap_or(0);
         let state = &states[k];
-        let train = &state.trains[0];
+        let train = &state.train;
         let own = rule.state.map_or(0, |k| variables.own(k).len());
         row.tolerance = rule.tolerance;
         row.state = rule.state;
@@ -151,7 +152,7 @@ impl RowEvaluator {
         reset(&mut row.by_own, own);
 
         let quantities = variables.quantities();
-        let StateRays { paraxial, bundle } = &mut rays[k];
+        let StateRays { paraxial, edge } = &mut rays[k];
         let LimitRow { by_shared, by_own, .. } = row;
         let mut put = |quantity: usize, by: f64| {
             state.follow(quantity, rule.sign * by, by_shared, by_own);
@@ -170,7 +171,7 @@ impl RowEvaluator {
                     .ok_or(EvaluationFault::Edge { surface: *gap })?;
             }
             Measured::Incidence(surface) => {
-                incidence_gradient(bundle, train, quantities.shapes(), *surface, gradient);
+                incidence_gradient(edge.as_ref(), quantities.shapes(), *surface, gradient);
                 gradient.iter().enumerate().for_each(|(quantity, &by)| put(quantity, by));
             }
             // A beam far from a focus is left alone.
@@ -206,24 +207,24 @@ fn edge_mm_or_fault(train: &Train, gap: usize) -> Result<f64, EvaluationFault> {
     edge_mm(train, gap).ok_or(EvaluationFault::Edge { surface: gap })
 }
 
-fn incidence_deg(bundle: &Bundle, surface: usize) -> f64 {
-    let cosine = bundle.cos_incidences(0).nth(surface).unwrap_or(1.0);
+fn incidence_deg(edge: Option<&RayPath>, surface: usize) -> f64 {
+    let cosine = edge.and_then(|ray| ray.cos_incidences().nth(surface)).unwrap_or(1.0);
     cosine.min(1.0).acos().to_degrees()
 }
 
 /// d(angle)/dq = −(d cos/dq)/sin; at normal incidence the angle has no slope and cannot be the
 /// one that is too large.
 fn incidence_gradient(
-    bundle: &mut Bundle,
-    train: &Train,
+    edge: Option<&RayPath>,
     shapes: Shapes,
     surface: usize,
     gradient: &mut Vec<f64>,
 ) {
-    let sine = incidence_deg(bundle, surface).to_radians().sin();
-    bundle.differentiate_cos_incidence(train, shapes, (0, surface), gradient);
+    let sine = incidence_deg(edge, surface).to_radians().sin();
     let factor = if sine > 1e-6 { -(1.0 / sine).to_degrees() } else { 0.0 };
-    for by in gradient.iter_mut() {
-        *by *= factor;
+    gradient.clear();
+    if let Some(ray) = edge {
+        let by_cosine = ray.differentiate_cos_incidence(surface, shapes);
+        gradient.extend(by_cosine.iter().map(|by| factor * by));
     }
 }

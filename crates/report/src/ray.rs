@@ -145,7 +145,7 @@ pub fn ray(
         reason: fault.reason,
         at: ids.get(fault.surface).map_or_else(Address::root, |&id| address(id)),
     })?;
-    let points = path.points(&train);
+    let points = path.points();
     let after = slopes(&path, &points);
     let mut surfaces = Vec::with_capacity(points.len());
     for (i, (point, &id)) in points.iter().zip(&ids).enumerate() {

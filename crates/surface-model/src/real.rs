@@ -1,4 +1,5 @@
-//! The numbers a ray is traced with: one at a time (`f64`) or eight side by side ([`Lanes`]).
+//! The numbers a ray is traced with: one at a time (`f64`), eight side by side ([`Lanes`]), or
+//! several such vectors abreast.
 //!
 //! The kernels are written once, over [`Real`]. No fused multiply-add is used anywhere, so that
 //! the same bits come out whichever vector width the processor offers.
@@ -116,6 +117,83 @@ impl Neg for Lanes {
     #[inline(always)]
     fn neg(self) -> Self {
         self.map(|a| -a)
+    }
+}
+
+/// Vectors of lanes that go through a trace abreast. One alone would wait for its own square roots
+/// most of the time; the more, the fuller the processor, until its registers are.
+pub(crate) const ABREAST: usize = 4;
+
+/// [`ABREAST`] vectors of lanes.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub(crate) struct Abreast(pub(crate) [Lanes; ABREAST]);
+
+impl Abreast {
+    #[inline(always)]
+    fn map(self, f: impl Fn(Lanes) -> Lanes) -> Self {
+        Self(self.0.map(f))
+    }
+
+    #[inline(always)]
+    fn zip(self, other: Self, f: impl Fn(Lanes, Lanes) -> Lanes) -> Self {
+        Self(std::array::from_fn(|i| f(self.0[i], other.0[i])))
+    }
+}
+
+impl Add for Abreast {
+    type Output = Self;
+    #[inline(always)]
+    fn add(self, other: Self) -> Self {
+        self.zip(other, |a, b| a + b)
+    }
+}
+
+impl Sub for Abreast {
+    type Output = Self;
+    #[inline(always)]
+    fn sub(self, other: Self) -> Self {
+        self.zip(other, |a, b| a - b)
+    }
+}
+
+impl Mul for Abreast {
+    type Output = Self;
+    #[inline(always)]
+    fn mul(self, other: Self) -> Self {
+        self.zip(other, |a, b| a * b)
+    }
+}
+
+impl Div for Abreast {
+    type Output = Self;
+    #[inline(always)]
+    fn div(self, other: Self) -> Self {
+        self.zip(other, |a, b| a / b)
+    }
+}
+
+impl Neg for Abreast {
+    type Output = Self;
+    #[inline(always)]
+    fn neg(self) -> Self {
+        self.map(|a| -a)
+    }
+}
+
+impl Real for Abreast {
+    #[inline(always)]
+    fn splat(value: f64) -> Self {
+        Self([Lanes::splat(value); ABREAST])
+    }
+
+    #[inline(always)]
+    fn sqrt(self) -> Self {
+        self.map(Real::sqrt)
+    }
+
+    #[inline(always)]
+    fn settled_within(self, limit: f64) -> bool {
+        self.0.iter().all(|lanes| lanes.settled_within(limit))
     }
 }
 

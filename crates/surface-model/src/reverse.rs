@@ -38,10 +38,9 @@
 
 use multiversion::multiversion;
 
-use crate::real::{Lanes, Real};
+use crate::real::{Abreast, Real};
 use crate::surface::{ASPHERE_TERMS, Surface};
-use crate::trace::{Crossing, Exit, Ray, along, dot, normal};
-use crate::train::Train;
+use crate::trace::{Crossing, Exit, Ray, Stage, Stages, along, dot, normal};
 
 /// Where each quantity of a train stands in a row of derivatives: curvatures first, then gaps,
 /// then indices, then, if kept, conic constants and asphere coefficients.
@@ -221,12 +220,8 @@ type Adjoint<N, const D: usize> = Ray<N, D>;
 
 /// Adjoint of the ray behind the last surface, from the seeds in the exit plane.
 #[inline(always)]
-fn leave<N: Real, const D: usize>(
-    exit: &Exit<N, D>,
-    index: f64,
-    seed: &Seed<N, D>,
-) -> Adjoint<N, D> {
-    let spread = (N::splat(index) * seed.path + dot(&exit.d, &seed.position)) / exit.dz;
+fn leave<N: Real, const D: usize>(exit: &Exit<N, D>, index: N, seed: &Seed<N, D>) -> Adjoint<N, D> {
+    let spread = (index * seed.path + dot(&exit.d, &seed.position)) / exit.dz;
     Adjoint {
         y: seed.position,
         z: -spread,
@@ -324,24 +319,21 @@ fn displace<N: Real, const D: usize>(
 /// The sweep itself. `row` (length [`Quantities::count`]) receives the derivatives.
 #[inline(always)]
 fn backward<N: Real, const D: usize>(
-    train: &Train,
+    stages: &Stages<N>,
     crossings: &[Crossing<N, D>],
     exit: &Exit<N, D>,
     seed: &Seed<N, D>,
     quantities: Quantities,
     row: &mut [N],
 ) {
-    let indices = train.indices();
-    let surfaces = train.len();
     row.fill(N::splat(0.0));
-    let mut behind = leave(exit, indices[surfaces], seed);
-    row[quantities.index(surfaces)] = seed.path * exit.path_to_plane;
+    let mut behind = leave(exit, stages.last_index, seed);
+    row[quantities.index(stages.list.len())] = seed.path * exit.path_to_plane;
 
-    for (i, (surface, crossing)) in train.surfaces().iter().zip(crossings).enumerate().rev() {
-        let (n_in, n_out) = (N::splat(indices[i]), indices[i + 1]);
-        let mu = N::splat(indices[i] / n_out);
+    for (i, (stage, crossing)) in stages.list.iter().zip(crossings).enumerate().rev() {
+        let Stage { surface, sphere, gap, index: n_in, ratio: mu } = *stage;
         let Crossing { ray: at, path, cos_in, cos_out } = crossing;
-        let (n, nz) = normal(surface, at);
+        let (n, nz) = normal(stage, at);
 
         // Refract.
         let over_cos_out = N::splat(1.0) / *cos_out;
@@ -365,15 +357,14 @@ fn backward<N: Real, const D: usize>(
         let nz_bar = gamma * behind.dz + cos_bar * at.dz;
         before.dz = mu * behind.dz + cos_bar * nz;
 
-        let gap = if i == 0 { 0.0 } else { train.gaps()[i - 1] };
-        let over_n_out = N::splat(1.0 / n_out);
+        let over_n_out = mu / n_in;
         row[quantities.index(i)] =
-            row[quantities.index(i)] + mu_bar * over_n_out + seed.path * (*path - N::splat(gap));
+            row[quantities.index(i)] + mu_bar * over_n_out + seed.path * (*path - gap);
         row[quantities.index(i + 1)] = row[quantities.index(i + 1)] - mu_bar * mu * over_n_out;
 
         // Bend, then meet. Where derivatives by the conic are kept, a sphere is a conic too.
         let shapes = quantities.shapes.has(i);
-        let closed_form = surface.is_sphere() && !shapes;
+        let closed_form = sphere && !shapes;
         let mut put = |shape: Shape, value: N| {
             let place = match shape {
                 Shape::Curvature => quantities.curvature(i),
@@ -383,10 +374,10 @@ fn backward<N: Real, const D: usize>(
             };
             row[place] = row[place] + value;
         };
-        bend(surface, closed_form, at, (&n_bar, nz_bar), &mut before, &mut put);
+        bend(&surface, closed_form, at, (&n_bar, nz_bar), &mut before, &mut put);
         let spread = n_in * seed.path + dot(&at.d, &before.y) + at.dz * before.z;
         let nu_bar = spread / *cos_in;
-        displace(surface, closed_form, at, nz, nu_bar, &mut put);
+        displace(&surface, closed_form, at, nz, nu_bar, &mut put);
         before.y = along(&before.y, -nu_bar, &n);
         before.z = before.z - nu_bar * nz;
         before.d = along(&before.d, *path, &before.y);
@@ -398,27 +389,26 @@ fn backward<N: Real, const D: usize>(
     }
 }
 
-/// [`backward`] for eight meridional rays, in the widest vectors the processor has.
+/// [`backward`] for meridional rays abreast, in the widest vectors the processor has.
 #[multiversion(targets("x86_64+avx512f+avx512dq+avx512vl+avx2", "x86_64+avx2", "aarch64+neon"))]
 pub(crate) fn backward_meridional(
-    train: &Train,
-    crossings: &[Crossing<Lanes, 1>],
-    exit: &Exit<Lanes, 1>,
-    seed: &Seed<Lanes, 1>,
+    stages: &Stages<Abreast>,
+    crossings: &[Crossing<Abreast, 1>],
+    exit: &Exit<Abreast, 1>,
     quantities: Quantities,
-    row: &mut [Lanes],
+    row: &mut [Abreast],
 ) {
-    backward(train, crossings, exit, seed, quantities, row);
+    backward(stages, crossings, exit, &Seed::path(), quantities, row);
 }
 
 /// [`backward`] for one skew ray.
 pub(crate) fn backward_skew(
-    train: &Train,
+    stages: &Stages<f64>,
     crossings: &[Crossing<f64, 2>],
     exit: &Exit<f64, 2>,
     seed: &Seed<f64, 2>,
     quantities: Quantities,
     row: &mut [f64],
 ) {
-    backward(train, crossings, exit, seed, quantities, row);
+    backward(stages, crossings, exit, seed, quantities, row);
 }

@@ -3,7 +3,7 @@
 
 use crate::fault::{FaultReason, RayFault};
 use crate::reverse::{Quantities, Seed, Shapes, backward_skew};
-use crate::trace::{Crossing, Exit, Ray, find_fault, forward_skew, normal};
+use crate::trace::{Crossing, Exit, Ray, Stages, find_fault, forward_skew, normal};
 use crate::train::Train;
 
 /// Where a ray starts: a point of the plane through the first vertex, and a direction.
@@ -43,6 +43,7 @@ pub struct RayPoint {
 /// A traced ray.
 #[derive(Debug, Clone)]
 pub struct RayPath {
+    stages: Stages<f64>,
     crossings: Vec<Crossing<f64, 2>>,
     exit: Exit<f64, 2>,
 }
@@ -72,20 +73,21 @@ pub fn trace_ray(train: &Train, start: RayStart) -> Result<RayPath, RayFault> {
     let ray = Ray { y: start.position_mm, z: 0.0, d: start.direction, dz: axial };
     let blank = Crossing { ray, path: 0.0, cos_in: 0.0, cos_out: 0.0 };
     let mut crossings = vec![blank; train.len()];
-    let exit = forward_skew(train, &ray, &mut crossings);
+    let stages = Stages::of(train);
+    let exit = forward_skew(&stages, &ray, &mut crossings);
     match find_fault(&crossings, &exit, |number: f64| number) {
         Some(fault) => Err(fault),
-        None => Ok(RayPath { crossings, exit }),
+        None => Ok(RayPath { stages, crossings, exit }),
     }
 }
 
 impl RayPath {
-    /// The ray at every surface, from left to right; `train` is the one it was traced through.
+    /// The ray at every surface, from left to right.
     #[must_use]
-    pub fn points(&self, train: &Train) -> Vec<RayPoint> {
-        let point = |(crossing, surface): (&Crossing<f64, 2>, _)| {
+    pub fn points(&self) -> Vec<RayPoint> {
+        let point = |(crossing, stage): (&Crossing<f64, 2>, _)| {
             let at = &crossing.ray;
-            let (n, nz) = normal(surface, at);
+            let (n, nz) = normal(stage, at);
             RayPoint {
                 position_mm: [at.y[0], at.y[1], at.z],
                 direction_in: [at.d[0], at.d[1], at.dz],
@@ -95,7 +97,7 @@ impl RayPath {
                 path_mm: crossing.path,
             }
         };
-        self.crossings.iter().zip(train.surfaces()).map(point).collect()
+        self.crossings.iter().zip(&self.stages.list).map(point).collect()
     }
 
     /// What the ray ends with in the plane through the last vertex.
@@ -108,16 +110,32 @@ impl RayPath {
     /// of [`Quantities`]; `shapes` says for which surfaces conic constants and asphere
     /// coefficients are among them.
     #[must_use]
-    pub fn differentiate(&self, train: &Train, weights: &ExitSum, shapes: Shapes) -> Vec<f64> {
-        let quantities = Quantities::new(train.len(), shapes);
-        let mut row = vec![0.0; quantities.count()];
+    pub fn differentiate(&self, weights: &ExitSum, shapes: Shapes) -> Vec<f64> {
         let seed = Seed {
             path: weights.path_mm,
             position: weights.position_mm,
             direction: weights.direction,
             cos_in: None,
         };
-        backward_skew(train, &self.crossings, &self.exit, &seed, quantities, &mut row);
+        self.sweep(&seed, shapes)
+    }
+
+    /// Cosine of the angle of incidence at every surface, from left to right.
+    pub fn cos_incidences(&self) -> impl Iterator<Item = f64> + '_ {
+        self.crossings.iter().map(|crossing| crossing.cos_in)
+    }
+
+    /// Exact derivatives of the cosine of the angle of incidence at one surface, as
+    /// [`Self::differentiate`].
+    #[must_use]
+    pub fn differentiate_cos_incidence(&self, surface: usize, shapes: Shapes) -> Vec<f64> {
+        self.sweep(&Seed::cos_in(surface), shapes)
+    }
+
+    fn sweep(&self, seed: &Seed<f64, 2>, shapes: Shapes) -> Vec<f64> {
+        let quantities = Quantities::new(self.stages.list.len(), shapes);
+        let mut row = vec![0.0; quantities.count()];
+        backward_skew(&self.stages, &self.crossings, &self.exit, seed, quantities, &mut row);
         row
     }
 }
@@ -192,8 +210,7 @@ mod tests {
             let train = train(conics);
             let quantities = Quantities::new(train.len(), Shapes::ALL);
             for weights in all {
-                let exact =
-                    trace_ray(&train, start).unwrap().differentiate(&train, &weights, Shapes::ALL);
+                let exact = trace_ray(&train, start).unwrap().differentiate(&weights, Shapes::ALL);
                 for (place, &derivative) in exact.iter().enumerate() {
                     let term = place.checked_sub(quantities.asphere(0, 0)).map(|at| at % 9);
                     // A step that moves the sag by about a micrometre.
@@ -224,8 +241,8 @@ mod tests {
         let weights = ExitSum { path_mm: 1.0, direction: [0.1, 0.2], ..ExitSum::default() };
         let train = train(false);
         let path = trace_ray(&train, start).unwrap();
-        let few = path.differentiate(&train, &weights, Shapes::None);
-        let all = path.differentiate(&train, &weights, Shapes::ALL);
+        let few = path.differentiate(&weights, Shapes::None);
+        let all = path.differentiate(&weights, Shapes::ALL);
         for (a, b) in few.iter().zip(&all) {
             assert!((a - b).abs() <= 1e-13 * b.abs().max(1.0), "{a} {b}");
         }
@@ -239,15 +256,16 @@ mod tests {
             let heights: Vec<f64> = (0..11).map(|i| 0.5 * f64::from(i)).collect();
             let mut paths = vec![0.0; heights.len()];
             let mut bundle = Bundle::new();
-            bundle.trace(&train, &heights, &mut paths).unwrap();
-            let quantities = bundle.differentiate(&train, Shapes::ALL);
+            bundle.load([&train], &heights);
+            bundle.trace_kept(&mut paths).unwrap();
+            let quantities = bundle.differentiate(Shapes::ALL);
             for (i, &height) in heights.iter().enumerate() {
                 let ray = trace_ray(&train, RayStart::parallel(height)).unwrap();
                 assert!((ray.exit().path_mm - paths[i]).abs() < 1e-13);
                 let weights = ExitSum { path_mm: 1.0, ..ExitSum::default() };
-                let row = ray.differentiate(&train, &weights, Shapes::ALL);
+                let row = ray.differentiate(&weights, Shapes::ALL);
                 for (place, &expected) in row.iter().enumerate().take(quantities.count()) {
-                    let got = bundle.path_derivatives(place).nth(i).unwrap();
+                    let got = bundle.path_derivatives(0, place).nth(i).unwrap();
                     assert!((got - expected).abs() <= 1e-12 * expected.abs().max(1.0));
                 }
             }

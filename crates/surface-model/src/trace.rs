@@ -1,7 +1,7 @@
 //! The exact trace: rays through a [`Train`], by vector refraction, everything else is taken from it.
 //!
 //! One body of code traces meridional rays (`D = 1` transverse coordinate, all that is needed on
-//! axis) and skew rays (`D = 2`), one at a time or [`LANES`](crate::real::LANES) side by side.
+//! axis) and skew rays (`D = 2`), one at a time or many side by side.
 //!
 //! At each surface, in coordinates whose origin is its vertex:
 //!
@@ -21,7 +21,7 @@
 use multiversion::multiversion;
 
 use crate::fault::{FaultReason, RayFault};
-use crate::real::{Lanes, Real};
+use crate::real::{Abreast, Real};
 use crate::surface::Surface;
 use crate::train::Train;
 
@@ -30,6 +30,45 @@ use crate::train::Train;
 const NEWTON_REACH_MM: f64 = 1e-9;
 /// Newton steps before an aspheric surface counts as missed.
 const NEWTON_STEPS: usize = 30;
+
+/// A surface, and the gap and the medium before it: what a ray crosses in one go.
+#[derive(Debug, Clone, Copy)]
+pub(crate) struct Stage<N> {
+    pub(crate) surface: Surface,
+    /// Whether the closed form for spheres applies.
+    pub(crate) sphere: bool,
+    /// Axial distance from the surface before, mm; 0 for the first.
+    pub(crate) gap: N,
+    /// Refractive index before the surface.
+    pub(crate) index: N,
+    /// That index over the one behind the surface.
+    pub(crate) ratio: N,
+}
+
+/// A train as the kernels take it.
+#[derive(Debug, Clone)]
+pub(crate) struct Stages<N> {
+    /// One a surface, from left to right.
+    pub(crate) list: Vec<Stage<N>>,
+    /// Refractive index behind the last surface.
+    pub(crate) last_index: N,
+}
+
+impl<N: Real> Stages<N> {
+    pub(crate) fn of(train: &Train) -> Self {
+        let gaps = std::iter::once(&0.0).chain(train.gaps());
+        let media = train.indices().windows(2);
+        let stage = |((surface, &gap), media): ((&Surface, &f64), &[f64])| Stage {
+            surface: *surface,
+            sphere: surface.is_sphere(),
+            gap: N::splat(gap),
+            index: N::splat(media[0]),
+            ratio: N::splat(media[0] / media[1]),
+        };
+        let list = train.surfaces().iter().zip(gaps).zip(media).map(stage).collect();
+        Self { list, last_index: N::splat(train.indices()[train.len()]) }
+    }
+}
 
 /// A point and a unit direction. `D` transverse coordinates, the axial one apart.
 #[derive(Debug, Clone, Copy)]
@@ -100,9 +139,12 @@ impl<N: Real, const D: usize> Ray<N, D> {
 
 /// Unit normal of a surface at a point on it, pointing towards +z.
 #[inline(always)]
-pub(crate) fn normal<N: Real, const D: usize>(surface: &Surface, at: &Ray<N, D>) -> ([N; D], N) {
+pub(crate) fn normal<N: Real, const D: usize>(
+    Stage { surface, sphere, .. }: &Stage<N>,
+    at: &Ray<N, D>,
+) -> ([N; D], N) {
     let one = N::splat(1.0);
-    if surface.is_sphere() {
+    if *sphere {
         let c = N::splat(surface.curvature);
         return (at.y.map(|y| -(c * y)), one - c * at.z);
     }
@@ -112,11 +154,22 @@ pub(crate) fn normal<N: Real, const D: usize>(surface: &Surface, at: &Ray<N, D>)
     (at.y.map(|y| -(slope * nz * y)), nz)
 }
 
-/// Steps 1 and 2: carries a ray over `gap` to the surface. Returns the ray there and the path.
+/// A ray on a surface.
+struct Meeting<N, const D: usize> {
+    at: Ray<N, D>,
+    /// Path from the surface before, mm.
+    path: N,
+    cos_in: N,
+    /// Its square, which on a sphere is there before the root is drawn.
+    cos_in_squared: N,
+}
+
+/// Steps 1 and 2: carries a ray over the gap to the surface.
 #[inline(always)]
-fn meet<N: Real, const D: usize>(surface: &Surface, gap: f64, ray: &Ray<N, D>) -> (Ray<N, D>, N) {
+fn meet<N: Real, const D: usize>(stage: &Stage<N>, ray: &Ray<N, D>) -> Meeting<N, D> {
+    let Stage { surface, sphere, gap, .. } = stage;
     let two = N::splat(2.0);
-    let ahead = N::splat(gap) - ray.z;
+    let ahead = *gap - ray.z;
     // 2 − d_z is 1/d_z to first order: near enough to the vertex plane, and no division.
     let approach = ahead * (two - ray.dz);
     let near = Ray { y: along(&ray.y, approach, &ray.d), z: approach * ray.dz - ahead, ..*ray };
@@ -124,11 +177,14 @@ fn meet<N: Real, const D: usize>(surface: &Surface, gap: f64, ray: &Ray<N, D>) -
     let c = N::splat(surface.curvature);
     let q = dot(&near.y, &near.y);
     let yd = dot(&near.y, &near.d);
-    if surface.is_sphere() {
+    if *sphere {
         let f = c * (q + near.z * near.z) - two * near.z;
         let g = near.dz - c * (yd + near.z * near.dz);
-        let rest = f / (g + (g * g - c * f).sqrt());
-        return (near.advanced(rest), approach + rest);
+        // On a sphere this is cos I.
+        let cos_in_squared = g * g - c * f;
+        let cos_in = cos_in_squared.sqrt();
+        let rest = f / (g + cos_in);
+        return Meeting { at: near.advanced(rest), path: approach + rest, cos_in, cos_in_squared };
     }
     let k1 = N::splat(1.0 + surface.conic);
     let f = c * (q + k1 * near.z * near.z) - two * near.z;
@@ -136,7 +192,9 @@ fn meet<N: Real, const D: usize>(surface: &Surface, gap: f64, ray: &Ray<N, D>) -
     let a = c * (N::splat(1.0) + N::splat(surface.conic) * near.dz * near.dz);
     let rest = f / (g + (g * g - a * f).sqrt());
     let (at, last) = polished(surface, near.advanced(rest));
-    (at, approach + rest + last)
+    let (n, nz) = normal(stage, &at);
+    let cos_in = dot(&n, &at.d) + nz * at.dz;
+    Meeting { at, path: approach + rest + last, cos_in, cos_in_squared: cos_in * cos_in }
 }
 
 /// Newton's method along the ray onto a surface given by its sag. A lane that does not settle
@@ -163,69 +221,73 @@ fn polished<N: Real, const D: usize>(surface: &Surface, start: Ray<N, D>) -> (Ra
 /// Step 3: the crossing and the ray behind it.
 #[inline(always)]
 fn cross<N: Real, const D: usize>(
-    surface: &Surface,
-    gap: f64,
-    index_ratio: f64,
+    stage: &Stage<N>,
     ray: &Ray<N, D>,
 ) -> (Crossing<N, D>, Ray<N, D>) {
-    let (one, mu) = (N::splat(1.0), N::splat(index_ratio));
-    let (at, path) = meet(surface, gap, ray);
-    let (n, nz) = normal(surface, &at);
-    let cos_in = dot(&n, &at.d) + nz * at.dz;
-    let cos_out = (one - mu * mu * (one - cos_in * cos_in)).sqrt();
+    let (one, mu) = (N::splat(1.0), stage.ratio);
+    let Meeting { at, path, cos_in, cos_in_squared } = meet(stage, ray);
+    let (n, nz) = normal(stage, &at);
+    let cos_out = (one - mu * mu * (one - cos_in_squared)).sqrt();
     let gamma = cos_out - mu * cos_in;
     let behind =
         Ray { d: along(&at.d.map(|d| mu * d), gamma, &n), dz: mu * at.dz + gamma * nz, ..at };
     (Crossing { ray: at, path, cos_in, cos_out }, behind)
 }
 
-/// Traces a ray that starts in the plane through the first vertex; `crossings` (one a surface)
-/// receives what the reverse sweep needs.
+/// Traces a ray that starts in the plane through the first vertex. `keep` is given each crossing
+/// in turn: what the reverse sweep needs.
 #[inline(always)]
 fn forward<N: Real, const D: usize>(
-    train: &Train,
+    stages: &Stages<N>,
     start: &Ray<N, D>,
-    crossings: &mut [Crossing<N, D>],
+    mut keep: impl FnMut(usize, Crossing<N, D>),
 ) -> Exit<N, D> {
-    let indices = train.indices();
     let mut ray = *start;
     let mut excess = N::splat(0.0);
-    let mut gap = 0.0;
-    for (i, (surface, kept)) in train.surfaces().iter().zip(crossings).enumerate() {
-        let (crossing, behind) = cross(surface, gap, indices[i] / indices[i + 1], &ray);
-        excess = excess + N::splat(indices[i]) * (crossing.path - N::splat(gap));
-        *kept = crossing;
+    for (i, stage) in stages.list.iter().enumerate() {
+        let (crossing, behind) = cross(stage, &ray);
+        excess = excess + stage.index * (crossing.path - stage.gap);
+        keep(i, crossing);
         ray = behind;
-        gap = train.gaps().get(i).copied().unwrap_or(0.0);
     }
     let path_to_plane = -ray.z / ray.dz;
-    let last_index = indices[train.len()];
     Exit {
         y: along(&ray.y, path_to_plane, &ray.d),
         d: ray.d,
         dz: ray.dz,
         path_to_plane,
-        path_excess: excess + N::splat(last_index) * path_to_plane,
+        path_excess: excess + stages.last_index * path_to_plane,
     }
 }
 
-/// [`forward`] for eight meridional rays, in the widest vectors the processor has.
+/// [`forward`] for meridional rays abreast, in the widest vectors the processor has, with every
+/// crossing kept.
 #[multiversion(targets("x86_64+avx512f+avx512dq+avx512vl+avx2", "x86_64+avx2", "aarch64+neon"))]
 pub(crate) fn forward_meridional(
-    train: &Train,
-    start: &Ray<Lanes, 1>,
-    crossings: &mut [Crossing<Lanes, 1>],
-) -> Exit<Lanes, 1> {
-    forward(train, start, crossings)
+    stages: &Stages<Abreast>,
+    start: &Ray<Abreast, 1>,
+    crossings: &mut [Crossing<Abreast, 1>],
+) -> Exit<Abreast, 1> {
+    let crossings = &mut crossings[..stages.list.len()];
+    forward(stages, start, |i, crossing| crossings[i] = crossing)
+}
+
+/// The same where only the paths are wanted.
+#[multiversion(targets("x86_64+avx512f+avx512dq+avx512vl+avx2", "x86_64+avx2", "aarch64+neon"))]
+pub(crate) fn forward_meridional_paths(
+    stages: &Stages<Abreast>,
+    start: &Ray<Abreast, 1>,
+) -> Exit<Abreast, 1> {
+    forward(stages, start, |_, _| {})
 }
 
 /// [`forward`] for one skew ray.
 pub(crate) fn forward_skew(
-    train: &Train,
+    stages: &Stages<f64>,
     start: &Ray<f64, 2>,
     crossings: &mut [Crossing<f64, 2>],
 ) -> Exit<f64, 2> {
-    forward(train, start, crossings)
+    forward(stages, start, |i, crossing| crossings[i] = crossing)
 }
 
 /// Looks through the crossings of one ray for the first that failed. `lane` reads one ray's

@@ -201,8 +201,10 @@ struct Paths<'a> {
 impl Paths<'_> {
     fn trace(&mut self, heights_mm: &[f64]) -> Result<(), WavefrontFault> {
         self.waves.resize(heights_mm.len(), 0.0);
-        self.bundle.trace(self.train, heights_mm, &mut self.waves).map_err(|failed| {
-            WavefrontFault::Ray { height_mm: heights_mm[failed.ray], fault: failed.fault }
+        self.bundle.load([self.train], heights_mm);
+        self.bundle.trace(&mut self.waves).map_err(|failed| WavefrontFault::Ray {
+            height_mm: heights_mm[failed.ray],
+            fault: failed.fault,
         })?;
         let scale = self.beam.waves_per_mm();
         self.waves.iter_mut().for_each(|path| *path *= scale);

@@ -1,9 +1,9 @@
 //! One zoom state: ratio, collimation, wavefront.
 
 use serde::Serialize;
-use surface_model::bundle::Bundle;
 use surface_model::design::{Design, ZoomState};
 use surface_model::paraxial::ParaxialRay;
+use surface_model::skew::{RayStart, trace_ray};
 use surface_model::train::Train;
 use surface_model::wavefront::{TracedBeam, wavefront_error};
 
@@ -64,12 +64,13 @@ pub(super) fn view(design: &Design, state: &ZoomState) -> Option<StateView> {
     let mut paraxial = ParaxialRay::default();
     let marginal = paraxial.trace(&train, 1.0, 0.0).map(|()| paraxial.heights().to_vec());
     let edge_mm = design.beam.edge_mm();
-    let mut bundle = Bundle::new();
-    let traced = bundle.trace(&train, &[edge_mm], &mut [0.0]).is_ok();
-    let heights = traced.then(|| bundle.heights_at_surfaces(0).map(|y| y / edge_mm).collect());
-    let angles = traced.then(|| {
-        bundle.cos_incidences(0).map(|cosine| cosine.min(1.0).acos().to_degrees()).collect()
-    });
+    let edge = trace_ray(&train, RayStart::parallel(edge_mm)).ok();
+    let heights = edge
+        .as_ref()
+        .map(|ray| ray.points().iter().map(|point| point.position_mm[1] / edge_mm).collect());
+    let angles = edge
+        .as_ref()
+        .map(|ray| ray.points().iter().map(|point| point.incidence_rad.to_degrees()).collect());
     Some(StateView {
         train,
         marginal: marginal.unwrap_or_default(),

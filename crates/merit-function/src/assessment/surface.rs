@@ -1,11 +1,11 @@
 //! One surface in one state: where its third-order aberrations and its steepest ray come from.
 
 use serde::Serialize;
-use surface_model::bundle::Bundle;
 use surface_model::design::Design;
 use surface_model::document::Address;
 use surface_model::place::Place;
 use surface_model::seidel::{SeidelRays, SeidelSums, seidel};
+use surface_model::skew::{RayStart, trace_ray};
 use surface_model::train::Train;
 
 /// Slope of the chief ray that the off-axis Seidel sums are told for: 1 mrad, the order of a
@@ -33,13 +33,11 @@ pub(super) fn assess(design: &Design, train: &Train) -> Vec<SurfaceAssessment> {
         chief_slope: CHIEF_SLOPE,
     };
     let sums = seidel(train, rays).ok();
-    let mut bundle = Bundle::new();
-    let traced = bundle.trace(train, &[design.beam.edge_mm()], &mut [0.0]).is_ok();
-    let angles: Vec<f64> = if traced {
-        bundle.cos_incidences(0).map(|cosine| cosine.min(1.0).acos().to_degrees()).collect()
-    } else {
-        Vec::new()
-    };
+    let edge = trace_ray(train, RayStart::parallel(design.beam.edge_mm()));
+    let angles: Vec<f64> = edge.map_or_else(
+        |_| Vec::new(),
+        |ray| ray.points().iter().map(|point| point.incidence_rad.to_degrees()).collect(),
+    );
     let ids = design.sequence().surfaces;
     let surface = |(place, id)| SurfaceAssessment {
         at: Place::Radius(id).address(),
