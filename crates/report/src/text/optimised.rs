@@ -5,7 +5,7 @@ use surface_model::design::Design;
 use surface_model::place::Place;
 
 use super::number::{fixed, significant};
-use super::table::{Column, Table};
+use super::table::{ARROW, Column, Table};
 
 /// The shared numbers that moved, and the spacings of every state.
 pub(crate) fn moved(before: &DesignFile, after: &DesignFile) -> Vec<String> {
@@ -36,8 +36,8 @@ fn moved_places<'a>(
 fn shared(before: &DesignFile, after: &DesignFile) -> String {
     let mut table = Table::new([
         (Column::Left, "moved"),
-        (Column::Right, "from"),
-        (Column::Left, ""),
+        (Column::From, "from"),
+        (Column::Arrow, ""),
         (Column::Right, "to"),
     ]);
     let document = before.document().value();
@@ -46,7 +46,7 @@ fn shared(before: &DesignFile, after: &DesignFile) -> String {
             table.row([
                 place.address().with_names(document).to_string(),
                 told(place, &before.design),
-                "→".to_owned(),
+                ARROW.to_owned(),
                 told(place, &after.design),
             ]);
         }
@@ -59,21 +59,21 @@ fn spacings(before: &DesignFile, after: &DesignFile) -> String {
     if !any {
         return String::new();
     }
-    let heads: Vec<[String; 2]> = before
+    let heads: Vec<String> = before
         .design
         .groups
         .windows(2)
-        .map(|pair| [format!("{} to", pair[0].name), format!("{} mm", pair[1].name)])
+        .map(|pair| format!("{} to\n{} mm", pair[0].name, pair[1].name))
         .collect();
     let mut columns = vec![(Column::Left, "spacing")];
-    for [from, to] in &heads {
-        columns.extend([(Column::Right, from.as_str()), (Column::Left, ""), (Column::Right, to)]);
+    for head in &heads {
+        columns.extend([(Column::From, head.as_str()), (Column::Arrow, ""), (Column::Right, "")]);
     }
     let mut table = Table::new(columns);
     for (old, new) in before.design.states.iter().zip(&after.design.states) {
         let mut row = vec![old.name.clone()];
         for (&from, &to) in old.spacings_mm.iter().zip(&new.spacings_mm) {
-            row.extend([fixed(from, 4), "→".to_owned(), fixed(to, 4)]);
+            row.extend([fixed(from, 4), ARROW.to_owned(), fixed(to, 4)]);
         }
         table.row(row);
     }

@@ -103,7 +103,7 @@ pub(crate) fn spacings(file: &DesignFile, assessment: &Assessment) -> String {
         groups.windows(2).map(|pair| format!("{} to\n{} mm", pair[0].name, pair[1].name)).collect();
     let mut columns = vec![(Column::Left, "state")];
     columns.extend(heads.iter().map(|head| (Column::Right, head.as_str())));
-    columns.extend([(Column::Right, "length\nmm"), (Column::Right, "front\nat mm")]);
+    columns.extend([(Column::Right, "track\nmm"), (Column::Right, "front\nat mm")]);
     let mut table = Table::new(columns);
     for state in &assessment.states {
         let front = state.positions_mm.values().next().and_then(serde_json::Value::as_f64);
