@@ -5,6 +5,7 @@ use surface_model::design::Design;
 use surface_model::place::Place;
 
 use super::number::{fixed, significant};
+use super::states::spacing_heads;
 use super::table::{ARROW, Column, Table};
 
 /// The shared numbers that moved, and the spacings of every state.
@@ -17,9 +18,9 @@ fn told(place: Place, design: &Design) -> String {
     let value = place.value(design);
     match place {
         Place::Radius(_) if value == 0.0 => "flat".to_owned(),
-        Place::Radius(_) => fixed(1.0 / value, 4),
+        Place::Radius(_) => fixed(1.0 / value, 3),
         Place::Conic(_) | Place::Asphere(..) => significant(value, 6),
-        _ => fixed(value, 4),
+        _ => fixed(value, 3),
     }
 }
 
@@ -59,12 +60,7 @@ fn spacings(before: &DesignFile, after: &DesignFile) -> String {
     if !any {
         return String::new();
     }
-    let heads: Vec<String> = before
-        .design
-        .groups
-        .windows(2)
-        .map(|pair| format!("{} to\n{} mm", pair[0].name, pair[1].name))
-        .collect();
+    let heads = spacing_heads(&before.design);
     let mut columns = vec![(Column::Left, "spacing")];
     for head in &heads {
         columns.extend([(Column::From, head.as_str()), (Column::Arrow, ""), (Column::Right, "")]);
@@ -73,7 +69,7 @@ fn spacings(before: &DesignFile, after: &DesignFile) -> String {
     for (old, new) in before.design.states.iter().zip(&after.design.states) {
         let mut row = vec![old.name.clone()];
         for (&from, &to) in old.spacings_mm.iter().zip(&new.spacings_mm) {
-            row.extend([fixed(from, 4), ARROW.to_owned(), fixed(to, 4)]);
+            row.extend([fixed(from, 3), ARROW.to_owned(), fixed(to, 3)]);
         }
         table.row(row);
     }

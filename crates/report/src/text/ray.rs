@@ -52,7 +52,7 @@ fn surfaces(report: &RayReport) -> String {
         (Column::Right, "slope\nmrad"),
     ];
     if skew {
-        columns.insert(2, (Column::Right, "x\nmm"));
+        columns[1] = (Column::Right, "x\nmm");
         columns.push((Column::Right, "slope\nx mrad"));
     }
     let mut table = Table::new(columns);
@@ -74,7 +74,8 @@ fn row(surface: &RayAtSurface, skew: bool) -> Vec<String> {
         fixed(surface.slope_y_mrad, 3),
     ];
     if skew {
-        row.insert(2, fixed(surface.x_mm, 4));
+        // Both do not fit in a line; the document for machines has the medium too.
+        row[1] = fixed(surface.x_mm, 4);
         row.push(fixed(surface.slope_x_mrad, 3));
     }
     row
@@ -93,9 +94,10 @@ fn exit(report: &RayReport) -> String {
     } else {
         format!("a height of {} mm with a slope of {slope} µrad", fixed(exit.y_mm, 5))
     };
+    let longer = if exit.path_waves < 0.0 { "shorter" } else { "longer" };
     format!(
         "It crosses the plane through the last vertex at {across}. Up to there its optical path is \
-         {} waves longer than that of the axial ray.",
-        significant(exit.path_waves, 5)
+         {} waves {longer} than that of the axial ray.",
+        significant(exit.path_waves.abs(), 5)
     )
 }

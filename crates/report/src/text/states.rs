@@ -3,6 +3,7 @@
 use driver::design_file::DesignFile;
 use merit_function::assessment::{Assessment, StateAssessment, WavefrontAssessment};
 use merit_function::goals::Goals;
+use surface_model::design::{Design, Group};
 
 use super::number::{NONE, as_written, fixed, fixed_or_dash, significant_or_dash};
 use super::table::{Column, Table};
@@ -98,9 +99,7 @@ pub(crate) fn faults(assessment: &Assessment) -> String {
 
 /// Spacings and lengths of every state.
 pub(crate) fn spacings(file: &DesignFile, assessment: &Assessment) -> String {
-    let groups = &file.design.groups;
-    let heads: Vec<String> =
-        groups.windows(2).map(|pair| format!("{} to\n{} mm", pair[0].name, pair[1].name)).collect();
+    let heads = spacing_heads(&file.design);
     let mut columns = vec![(Column::Left, "state")];
     columns.extend(heads.iter().map(|head| (Column::Right, head.as_str())));
     columns.extend([(Column::Right, "track\nmm"), (Column::Right, "front\nat mm")]);
@@ -108,10 +107,20 @@ pub(crate) fn spacings(file: &DesignFile, assessment: &Assessment) -> String {
     for state in &assessment.states {
         let front = state.positions_mm.values().next().and_then(serde_json::Value::as_f64);
         let mut row = vec![state.name.clone()];
-        row.extend(state.spacings_mm.iter().map(|&spacing| fixed(spacing, 4)));
-        row.push(fixed(state.track_mm, 4));
-        row.push(front.map_or_else(|| NONE.to_owned(), |front| fixed(front, 4)));
+        row.extend(state.spacings_mm.iter().map(|&spacing| fixed(spacing, 3)));
+        row.push(fixed(state.track_mm, 3));
+        row.push(front.map_or_else(|| NONE.to_owned(), |front| fixed(front, 3)));
         table.row(row);
     }
     table.text()
 }
+
+/// What a spacing's column is called: the groups on both sides, in short lines.
+pub(crate) fn spacing_heads(design: &Design) -> Vec<String> {
+    let named = |pair: &[Group]| format!("{} to {} mm", pair[0].name, pair[1].name);
+    let head = |pair: &[Group]| super::paragraph(&named(pair), HEAD_WIDTH, "");
+    design.groups.windows(2).map(head).collect()
+}
+
+/// A spacing's head is broken into lines about as wide as its numbers.
+const HEAD_WIDTH: usize = 10;
