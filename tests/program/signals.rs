@@ -1,0 +1,87 @@
+//! Ctrl-C and SIGTERM while the program is computing.
+
+use std::io::Write;
+use std::process::{Child, Command, Stdio};
+use std::time::{Duration, Instant};
+
+use crate::designs::long_job;
+use crate::program::{program, run};
+
+/// A job of hours, a moment after it has begun to iterate.
+fn begin(arguments: &[&str]) -> Child {
+    let mut child = program()
+        .args(["optimise", "-", "--method", "nelder-mead", "--iterations", "1000000000"])
+        .args(arguments)
+        .stdin(Stdio::piped())
+        .stdout(Stdio::piped())
+        .stderr(Stdio::piped())
+        .spawn()
+        .unwrap();
+    child.stdin.take().unwrap().write_all(long_job().as_bytes()).unwrap();
+    std::thread::sleep(Duration::from_millis(700));
+    assert!(child.try_wait().unwrap().is_none(), "the job is still busy");
+    child
+}
+
+fn signal(child: &Child, name: &str) {
+    let sent = Command::new("kill").args(["-s", name, &child.id().to_string()]).status().unwrap();
+    assert!(sent.success());
+}
+
+fn within(child: Child, limit: Duration) -> (i32, String, String) {
+    let began = Instant::now();
+    let output = child.wait_with_output().unwrap();
+    let took = began.elapsed();
+    assert!(took < limit, "it took {took:?}");
+    let text = |bytes| String::from_utf8(bytes).unwrap();
+    (output.status.code().unwrap(), text(output.stdout), text(output.stderr))
+}
+
+#[test]
+fn the_first_signal_saves_the_best_so_far() {
+    for (name, status) in [("INT", 130), ("TERM", 143)] {
+        let folder = tempfile::tempdir().unwrap();
+        let path = folder.path().join("best.json");
+        let child = begin(&["-o", path.to_str().unwrap()]);
+        signal(&child, name);
+        let (code, out, err) = within(child, Duration::from_secs(3));
+        assert_eq!(code, status, "{err}");
+        assert!(out.contains("Nelder-Mead: stopped by the user."), "{out}");
+        assert!(out.contains("The design was written to"), "{out}");
+        assert_eq!(run(&format!("assess {}", path.display())).status, 0);
+    }
+}
+
+#[test]
+fn without_a_file_the_summary_is_all() {
+    let child = begin(&["--then", "least-squares"]);
+    signal(&child, "INT");
+    let (code, out, _) = within(child, Duration::from_secs(3));
+    assert_eq!(code, 130);
+    assert!(out.contains("The design was not kept"), "{out}");
+    assert!(!out.contains("Damped least squares"), "no method follows a stop: {out}");
+}
+
+#[test]
+fn the_second_signal_leaves_at_once() {
+    let child = begin(&[]);
+    // While it is halted nothing can be handled; both signals are there when it goes on.
+    signal(&child, "STOP");
+    signal(&child, "INT");
+    signal(&child, "TERM");
+    signal(&child, "CONT");
+    let (code, out, _) = within(child, Duration::from_secs(1));
+    assert!([130, 143].contains(&code), "{code}");
+    assert_eq!(out, "", "nothing is summed up");
+}
+
+#[test]
+fn a_halt_and_going_on_change_nothing() {
+    let child = begin(&[]);
+    signal(&child, "STOP");
+    std::thread::sleep(Duration::from_millis(200));
+    signal(&child, "CONT");
+    signal(&child, "TERM");
+    let (code, _, _) = within(child, Duration::from_secs(3));
+    assert_eq!(code, 143);
+}
