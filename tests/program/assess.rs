@@ -67,7 +67,7 @@ fn a_missed_goal_is_a_status_only_when_asked() {
 #[test]
 fn failing_rays_are_told_by_state_and_surface() {
     let mut design = every_key();
-    design["beam"]["diameter_mm"] = 5.0.into();
+    design["beam"]["diameter_mm"] = 14.0.into();
     let ended = run_on("assess -", &text(&design));
     insta::assert_snapshot!(ended.told());
     let state = &run_on("assess - --json", &text(&design)).json()["states"][0];

@@ -31,6 +31,7 @@ fn what_is_not_found_is_told() {
         "glass no-such-glass",
         "glass no-such-glass --json",
         "glass nd=high",
+        "glass nd=high --errors json",
         "glass --nearest N-BK8",
         "glass --nearest F2",
         "glass schott --nearest N-BK7",

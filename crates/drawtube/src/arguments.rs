@@ -18,6 +18,7 @@ use crate::failure::Failure;
 #[derive(Debug, Parser)]
 #[command(
     name = "drawtube",
+    bin_name = "drawtube",
     version,
     max_term_width = 80,
     arg_required_else_help = true,
@@ -247,7 +248,7 @@ pub(crate) enum DocumentKind {
 #[derive(Debug, Args)]
 #[command(after_help = "\
 Example:
-  drawtube completions bash > ~/.local/share/bash-completion/completions/drawtube")]
+  drawtube completions fish > ~/.config/fish/completions/drawtube.fish")]
 pub(crate) struct CompletionsArguments {
     /// Which shell
     #[arg(value_enum)]
