@@ -70,6 +70,6 @@ fn failing_rays_are_told_by_state_and_surface() {
     design["beam"]["diameter_mm"] = 14.0.into();
     let ended = run_on("assess -", &text(&design));
     insta::assert_snapshot!(ended.told());
-    let state = &run_on("assess - --json", &text(&design)).json()["states"][0];
+    let state = &run_on("assess - --json", &text(&design)).json()["states"][1];
     assert!(state["fault"].is_string() && state["wavefront"][0]["rms_waves"].is_null());
 }

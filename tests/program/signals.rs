@@ -5,7 +5,7 @@ use std::process::{Child, Command, Stdio};
 use std::time::{Duration, Instant};
 
 use crate::designs::long_job;
-use crate::program::{program, run};
+use crate::program::{program, run, run_on};
 
 /// A job of hours, a moment after it has begun to iterate.
 fn begin(arguments: &[&str]) -> Child {
@@ -50,6 +50,20 @@ fn the_first_signal_saves_the_best_so_far() {
         assert!(out.contains("The design was written to"), "{out}");
         assert_eq!(run(&format!("assess {}", path.display())).status, 0);
     }
+}
+
+#[test]
+fn a_design_whose_folder_is_gone_goes_to_standard_output() {
+    let folder = tempfile::tempdir().unwrap();
+    let path = folder.path().join("inner/best.json");
+    std::fs::create_dir(path.parent().unwrap()).unwrap();
+    let child = begin(&["-o", path.to_str().unwrap()]);
+    std::fs::remove_dir(path.parent().unwrap()).unwrap();
+    signal(&child, "INT");
+    let (code, out, err) = within(child, Duration::from_secs(3));
+    assert_eq!(code, 7, "{err}");
+    assert!(err.contains("cannot be written") && err.contains("last resort"), "{err}");
+    assert_eq!(run_on("assess -", &out).status, 0, "standard output holds the design alone");
 }
 
 #[test]

@@ -74,6 +74,15 @@ fn pipes_and_files_hold_no_escape_codes() {
 }
 
 #[test]
+fn a_path_that_is_no_text_is_told() {
+    use std::ffi::OsStr;
+    use std::os::unix::ffi::OsStrExt;
+    let output = program().arg("assess").arg(OsStr::from_bytes(b"a\xff.json")).output().unwrap();
+    assert_eq!(output.status.code(), Some(2));
+    assert!(String::from_utf8(output.stderr).unwrap().contains("a\u{fffd}.json cannot be opened"));
+}
+
+#[test]
 fn twenty_columns_are_survived() {
     for arguments in [
         format!("assess {RIVER}"),

@@ -93,6 +93,7 @@ pub(crate) fn faults(assessment: &Assessment) -> String {
         .states
         .iter()
         .filter_map(|state| Some(format!("{}: {}", state.name, state.fault.as_ref()?)))
+        .map(|line| super::paragraph(&line, super::WIDTH, "  "))
         .collect();
     lines.join("\n")
 }
