@@ -1,7 +1,7 @@
 //! One ray as a table.
 
 use super::number::{as_written, fixed, significant};
-use super::table::{Column, Table};
+use super::table::{BLANK, Column, Table};
 use super::{WIDTH, paragraph, sections, warnings};
 use crate::ray::{RayAtSurface, RayReport};
 
@@ -66,7 +66,7 @@ fn row(surface: &RayAtSurface, skew: bool) -> Vec<String> {
     let mut row = vec![
         surface.label.clone(),
         surface.into.clone(),
-        fixed(surface.y_mm, 4) + if surface.outside { "!" } else { "\u{a0}" },
+        format!("{}{}", fixed(surface.y_mm, 4), if surface.outside { '!' } else { BLANK }),
         fixed(surface.sag_mm, 4),
         fixed(surface.path_mm, 4),
         fixed(surface.incidence_deg, 3),

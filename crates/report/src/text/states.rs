@@ -6,12 +6,12 @@ use merit_function::goals::Goals;
 use surface_model::design::{Design, Group};
 
 use super::number::{NONE, as_written, fixed, fixed_or_dash, significant_or_dash};
-use super::table::{Column, Table};
+use super::table::{BLANK, Column, Table};
 use super::verdict::missed;
 
 /// A number with the sign that it misses its goal, or room for one.
 fn marked(text: String, missed: bool) -> String {
-    text + if missed { "!" } else { "\u{a0}" }
+    format!("{text}{}", if missed { '!' } else { BLANK })
 }
 
 /// What every state reaches, with the goals in the first row.
@@ -28,8 +28,9 @@ pub(crate) fn reached(file: &DesignFile, assessment: &Assessment) -> String {
         (Column::Right, "PV\nwaves"),
     ]);
     if let Some(goals) = shared_goals(file) {
-        let within =
-            |goal: Option<f64>| goal.map_or_else(String::new, |goal| as_written(goal) + "\u{a0}");
+        let within = |goal: Option<f64>| {
+            goal.map_or_else(String::new, |goal| format!("{}{BLANK}", as_written(goal)))
+        };
         let mut row = vec![String::new(); 9];
         "goal".clone_into(&mut row[0]);
         row[3] = within(goals.ratio_percent);

@@ -18,6 +18,9 @@ pub(crate) enum Column {
 /// The sign between before and after.
 pub(crate) const ARROW: &str = "→";
 
+/// A blank that keeps its place at the end of a cell until the table is laid out.
+pub(crate) const BLANK: char = '\u{a0}';
+
 /// A table in the making.
 pub(crate) struct Table {
     columns: Vec<Column>,
@@ -61,7 +64,9 @@ impl Table {
             column.set_padding((0, gap));
             column.set_cell_alignment(alignment);
         }
-        self.grid.trim_fmt()
+        let text = self.grid.to_string().replace(BLANK, " ");
+        let lines: Vec<&str> = text.lines().map(str::trim_end).collect();
+        lines.join("\n")
     }
 }
 
