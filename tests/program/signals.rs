@@ -1,16 +1,25 @@
 //! Ctrl-C and SIGTERM while the program is computing.
 
-use std::io::Write;
+use std::io::{BufRead, BufReader, Read, Write};
 use std::process::{Child, Command, Stdio};
+use std::thread::{self, JoinHandle};
 use std::time::{Duration, Instant};
 
 use crate::designs::long_job;
 use crate::program::{program, run, run_on};
 
-/// A job of hours, a moment after it has begun to iterate.
-fn begin(arguments: &[&str]) -> Child {
+/// A job of hours.
+struct Job {
+    child: Child,
+    out: JoinHandle<String>,
+    err: JoinHandle<String>,
+}
+
+/// The job when it has begun to iterate, as its first line of progress tells.
+fn begin(arguments: &[&str]) -> Job {
     let mut child = program()
         .args(["optimise", "-", "--method", "nelder-mead", "--iterations", "1000000000"])
+        .args(["--progress", "plain", "--progress-every", "0.1"])
         .args(arguments)
         .stdin(Stdio::piped())
         .stdout(Stdio::piped())
@@ -18,23 +27,32 @@ fn begin(arguments: &[&str]) -> Child {
         .spawn()
         .unwrap();
     child.stdin.take().unwrap().write_all(long_job().as_bytes()).unwrap();
-    std::thread::sleep(Duration::from_millis(700));
-    assert!(child.try_wait().unwrap().is_none(), "the job is still busy");
-    child
+    let mut err = BufReader::new(child.stderr.take().unwrap());
+    let mut line = String::new();
+    err.read_line(&mut line).unwrap();
+    assert!(line.contains("iterations"), "{line}");
+    let out = child.stdout.take().unwrap();
+    Job { child, out: thread::spawn(|| all(out)), err: thread::spawn(|| all(err)) }
 }
 
-fn signal(child: &Child, name: &str) {
-    let sent = Command::new("kill").args(["-s", name, &child.id().to_string()]).status().unwrap();
-    assert!(sent.success());
+fn all(mut stream: impl Read) -> String {
+    let mut text = String::new();
+    stream.read_to_string(&mut text).unwrap();
+    text
 }
 
-fn within(child: Child, limit: Duration) -> (i32, String, String) {
+fn signal(job: &Job, name: &str) {
+    let id = job.child.id().to_string();
+    assert!(Command::new("kill").args(["-s", name, &id]).status().unwrap().success());
+}
+
+/// Status and both streams of a job that must end soon.
+fn within(mut job: Job, limit: Duration) -> (i32, String, String) {
     let began = Instant::now();
-    let output = child.wait_with_output().unwrap();
+    let status = job.child.wait().unwrap();
     let took = began.elapsed();
     assert!(took < limit, "it took {took:?}");
-    let text = |bytes| String::from_utf8(bytes).unwrap();
-    (output.status.code().unwrap(), text(output.stdout), text(output.stderr))
+    (status.code().unwrap(), job.out.join().unwrap(), job.err.join().unwrap())
 }
 
 #[test]
@@ -93,7 +111,7 @@ fn the_second_signal_leaves_at_once() {
 fn a_halt_and_going_on_change_nothing() {
     let child = begin(&[]);
     signal(&child, "STOP");
-    std::thread::sleep(Duration::from_millis(200));
+    thread::sleep(Duration::from_millis(200));
     signal(&child, "CONT");
     signal(&child, "TERM");
     let (code, _, _) = within(child, Duration::from_secs(3));
