@@ -1,1 +1,13 @@
 //! The program run as a user runs it.
+
+mod assess;
+mod designs;
+mod extremes;
+mod glass;
+mod help;
+mod mistakes;
+mod optimise;
+mod program;
+mod signals;
+mod streams;
+mod trace;

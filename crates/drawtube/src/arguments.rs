@@ -18,6 +18,7 @@ use crate::failure::Failure;
 #[derive(Debug, Parser)]
 #[command(
     name = "drawtube",
+    bin_name = "drawtube",
     version,
     max_term_width = 80,
     arg_required_else_help = true,
@@ -94,8 +95,8 @@ pub(crate) struct AssessArguments {
 /// random numbers: the same file gives the same design, bit for bit.
 #[derive(Debug, Args)]
 #[command(after_help = "\
-The first Ctrl-C finishes the step, saves the best so far where -o says, and prints
-the summary; the second leaves at once.
+The first Ctrl-C finishes the step, saves the best so far where -o says, and
+prints the summary; the second leaves at once.
 
 Example:
   drawtube optimise configs/river-lidar-2x-6x.json -o better.json")]
@@ -247,7 +248,7 @@ pub(crate) enum DocumentKind {
 #[derive(Debug, Args)]
 #[command(after_help = "\
 Example:
-  drawtube completions bash > ~/.local/share/bash-completion/completions/drawtube")]
+  drawtube completions fish > ~/.config/fish/completions/drawtube.fish")]
 pub(crate) struct CompletionsArguments {
     /// Which shell
     #[arg(value_enum)]
@@ -295,11 +296,7 @@ impl Refused {
                 console.say_help(&error.render());
                 ExitStatus::WrongInput
             }
-            _ if errors == ErrorFormat::Json => {
-                let told = error.render().to_string();
-                let told = told.trim_end().strip_prefix("error: ").unwrap_or(told.trim_end());
-                console.fail(&Failure::CommandLine(told.to_owned()))
-            }
+            _ if errors == ErrorFormat::Json => console.fail(&Failure::CommandLine(error)),
             _ => {
                 console.say_help(&error.render());
                 ExitStatus::WrongInput

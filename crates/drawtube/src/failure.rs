@@ -15,9 +15,9 @@ use crate::exit_status::ExitStatus;
 /// Why a command could not do what it was asked.
 #[derive(Debug, thiserror::Error)]
 pub(crate) enum Failure {
-    /// Not a command line of this program, in clap's words.
-    #[error("{0}")]
-    CommandLine(String),
+    /// Not a command line of this program.
+    #[error("{}", message_of(.0))]
+    CommandLine(clap::Error),
     /// A value on the command line is out of range.
     #[error("{option}: {found}, but it must be {constraint}")]
     Argument {
@@ -107,6 +107,7 @@ impl Failure {
     /// What to do about it.
     fn advice(&self) -> Option<String> {
         match self {
+            Self::CommandLine(error) => tip_of(error),
             Self::NoState { asked, names } => {
                 let all: Vec<&str> = names.iter().map(String::as_str).collect();
                 Some(match nearest(asked, all.iter().copied()) {
@@ -147,10 +148,29 @@ impl Failure {
         if let (Self::Input(complaints), Value::Object(map)) = (self, &mut document)
             && let Value::Object(list) = complaints.to_json()
         {
+            let told = match complaints.count() {
+                1 => "the document has a problem".to_owned(),
+                count => format!("the document has {count} problems"),
+            };
+            map.insert("message".to_owned(), told.into());
             map.extend(list);
         }
         document
     }
+}
+
+/// What clap found, in one line.
+fn message_of(error: &clap::Error) -> String {
+    let told = error.render().to_string();
+    let first = told.split("\n\n").next().unwrap_or_default();
+    let words: Vec<&str> = first.split_whitespace().collect();
+    words.join(" ").trim_start_matches("error: ").to_owned()
+}
+
+/// What clap advises.
+fn tip_of(error: &clap::Error) -> Option<String> {
+    let told = error.render().to_string();
+    told.lines().find_map(|line| Some(line.trim().strip_prefix("tip: ")?.to_owned()))
 }
 
 fn status_of(error: &OptimiseError) -> ExitStatus {

@@ -1,6 +1,7 @@
 //! Progress of the solver on standard error: a line that is redrawn, or a plain one now and then.
 
 use std::ops::ControlFlow;
+use std::sync::atomic::{AtomicBool, Ordering};
 use std::time::{Duration, Instant};
 
 use driver::solve::{Observer, Progress};
@@ -35,9 +36,10 @@ impl Manner {
     }
 }
 
-/// Tells how far the solver is.
+/// Tells how far the solver is, and passes on the wish to stop.
 pub(crate) struct Teller<'a> {
     console: &'a Console,
+    stop: &'a AtomicBool,
     bar: Option<ProgressBar>,
     every: Option<Duration>,
     began: Instant,
@@ -46,14 +48,14 @@ pub(crate) struct Teller<'a> {
 }
 
 impl<'a> Teller<'a> {
-    pub(crate) fn new(manner: Manner, console: &'a Console) -> Self {
+    pub(crate) fn new(manner: Manner, console: &'a Console, stop: &'a AtomicBool) -> Self {
         let (bar, every) = match manner {
             Manner::Bar => (Some(bar()), Some(REDRAW)),
             Manner::Plain(every) => (None, Some(every)),
             Manner::Nothing => (None, None),
         };
         let now = Instant::now();
-        Self { console, bar, every, began: now, last: now, iterations: 0 }
+        Self { console, stop, bar, every, began: now, last: now, iterations: 0 }
     }
 
     /// Takes the line off the terminal.
@@ -97,5 +99,9 @@ impl Observer for Teller<'_> {
             }
         }
         ControlFlow::Continue(())
+    }
+
+    fn interrupted(&self) -> bool {
+        self.stop.load(Ordering::Relaxed)
     }
 }

@@ -5,7 +5,7 @@ mod destination;
 mod request;
 
 use driver::optimise::{Optimisation, optimise};
-use driver::solve::{Interruptible, Stopped};
+use driver::solve::Stopped;
 
 use crate::arguments::OptimiseArguments;
 use crate::console::Console;
@@ -41,11 +41,10 @@ fn solve(
     console: &Console,
 ) -> Result<Vec<Optimisation>, Failure> {
     let mut stages: Vec<Optimisation> = Vec::new();
-    let mut teller = Teller::new(request.progress, console);
+    let mut teller = Teller::new(request.progress, console, signals.flag());
     for settings in &request.stages {
         let from = stages.last().map_or(&request.file, |stage| &stage.file);
-        let mut observer = Interruptible { stop: signals.flag(), observer: &mut teller };
-        let result = optimise(from, settings, &mut observer);
+        let result = optimise(from, settings, &mut teller);
         if result.is_err() {
             teller.finish();
         }

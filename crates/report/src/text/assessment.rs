@@ -52,6 +52,9 @@ fn signs(file: &DesignFile, assessment: &Assessment) -> String {
 
 fn merit(assessment: &Assessment) -> String {
     let merit = &assessment.merit;
+    if merit.total.is_none() {
+        return "There is no merit while rays fail.".to_owned();
+    }
     format!(
         "Merit {}: goals {}, limits {}.",
         significant_or_dash(merit.total, 4),

@@ -43,7 +43,7 @@ pub fn equivalents(found: &[Equivalent], wavelengths_nm: &[f64]) -> String {
 }
 
 fn index_heads(wavelengths_nm: &[f64]) -> Vec<String> {
-    wavelengths_nm.iter().map(|&nm| format!("n {} nm", as_written(nm))).collect()
+    wavelengths_nm.iter().map(|&nm| format!("n at\n{} nm", as_written(nm))).collect()
 }
 
 fn leading(glass: &Glass) -> [String; 7] {

@@ -24,7 +24,7 @@ pub(crate) fn layout(file: &DesignFile) -> String {
         })
         .collect();
     let legend = format!(
-        "{} in a tube of {} mm; light enters from the left",
+        "{} in a tube of {} mm, light from the left",
         legend.join(", "),
         as_written(design.housing.track_mm)
     );

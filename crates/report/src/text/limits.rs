@@ -5,7 +5,7 @@ use merit_function::assessment::{Assessment, LimitAssessment};
 use merit_function::limits::LimitKind;
 
 use super::number::{as_written, fixed};
-use super::table::{Column, Table};
+use super::table::{BLANK, Column, Table};
 
 /// Which limits are told.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, Default)]
@@ -24,7 +24,7 @@ pub(crate) fn limits(file: &DesignFile, assessment: &Assessment, scope: Scope) -
     for limit in chosen(&assessment.limits, scope) {
         table.row([
             format!("{} {}", limit.limit.word(), allowed(limit)),
-            value(limit) + if limit.met { "\u{a0}" } else { "!" },
+            format!("{}{}", value(limit), if limit.met { BLANK } else { '!' }),
             place(file, limit),
         ]);
     }

@@ -6,7 +6,7 @@ use driver::design_file::DesignFile;
 use merit_function::assessment::{Assessment, StateAssessment};
 
 use super::number::{as_written, counted, fixed_or_dash, significant_or_dash};
-use super::table::{Column, Table};
+use super::table::{ARROW, Column, Table};
 use super::{WIDTH, assessment, optimised, paragraph, sections, warnings};
 
 /// What is told about an optimisation.
@@ -48,15 +48,15 @@ fn states(told: &Told<'_>) -> String {
     let mut table = Table::new([
         (Column::Left, "state"),
         (Column::Right, "wave-\nlength nm"),
-        (Column::Right, "RMS waves\nbefore"),
-        (Column::Left, ""),
-        (Column::Right, "\nafter"),
-        (Column::Right, "ratio err. %\nbefore"),
-        (Column::Left, ""),
-        (Column::Right, "\nafter"),
-        (Column::Right, "slope µrad\nbefore"),
-        (Column::Left, ""),
-        (Column::Right, "\nafter"),
+        (Column::From, "RMS\nwaves\nbefore"),
+        (Column::Arrow, ""),
+        (Column::Right, "after"),
+        (Column::From, "ratio\nerror %\nbefore"),
+        (Column::Arrow, ""),
+        (Column::Right, "after"),
+        (Column::From, "exit slope\nµrad\nbefore"),
+        (Column::Arrow, ""),
+        (Column::Right, "after"),
     ]);
     for (before, after) in told.start.states.iter().zip(&told.end.states) {
         for k in 0..after.wavefront.len() {
@@ -67,7 +67,7 @@ fn states(told: &Told<'_>) -> String {
 }
 
 fn row(before: &StateAssessment, after: &StateAssessment, k: usize) -> Vec<String> {
-    let arrow = || "→".to_owned();
+    let arrow = || ARROW.to_owned();
     let rms = |state: &StateAssessment| {
         significant_or_dash(state.wavefront.get(k).and_then(|wavefront| wavefront.rms_waves), 3)
     };
@@ -91,12 +91,12 @@ fn totals(told: &Told<'_>) -> String {
     let merit = |assessment: &Assessment| significant_or_dash(assessment.merit.total, 4);
     let mut table = Table::new([
         (Column::Left, ""),
-        (Column::Right, "before"),
-        (Column::Left, ""),
+        (Column::From, "before"),
+        (Column::Arrow, ""),
         (Column::Right, "after"),
     ]);
     let mut row = |what: &str, of: &dyn Fn(&Assessment) -> String| {
-        table.row([what.to_owned(), of(told.start), "→".to_owned(), of(told.end)]);
+        table.row([what.to_owned(), of(told.start), ARROW.to_owned(), of(told.end)]);
     };
     row("merit", &merit);
     row("limits crossed", &crossed);

@@ -5,7 +5,8 @@ use surface_model::design::Design;
 use surface_model::place::Place;
 
 use super::number::{fixed, significant};
-use super::table::{Column, Table};
+use super::states::spacing_heads;
+use super::table::{ARROW, Column, Table};
 
 /// The shared numbers that moved, and the spacings of every state.
 pub(crate) fn moved(before: &DesignFile, after: &DesignFile) -> Vec<String> {
@@ -17,9 +18,9 @@ fn told(place: Place, design: &Design) -> String {
     let value = place.value(design);
     match place {
         Place::Radius(_) if value == 0.0 => "flat".to_owned(),
-        Place::Radius(_) => fixed(1.0 / value, 4),
+        Place::Radius(_) => fixed(1.0 / value, 3),
         Place::Conic(_) | Place::Asphere(..) => significant(value, 6),
-        _ => fixed(value, 4),
+        _ => fixed(value, 3),
     }
 }
 
@@ -36,8 +37,8 @@ fn moved_places<'a>(
 fn shared(before: &DesignFile, after: &DesignFile) -> String {
     let mut table = Table::new([
         (Column::Left, "moved"),
-        (Column::Right, "from"),
-        (Column::Left, ""),
+        (Column::From, "from"),
+        (Column::Arrow, ""),
         (Column::Right, "to"),
     ]);
     let document = before.document().value();
@@ -46,7 +47,7 @@ fn shared(before: &DesignFile, after: &DesignFile) -> String {
             table.row([
                 place.address().with_names(document).to_string(),
                 told(place, &before.design),
-                "→".to_owned(),
+                ARROW.to_owned(),
                 told(place, &after.design),
             ]);
         }
@@ -59,21 +60,16 @@ fn spacings(before: &DesignFile, after: &DesignFile) -> String {
     if !any {
         return String::new();
     }
-    let heads: Vec<[String; 2]> = before
-        .design
-        .groups
-        .windows(2)
-        .map(|pair| [format!("{} to", pair[0].name), format!("{} mm", pair[1].name)])
-        .collect();
+    let heads = spacing_heads(&before.design);
     let mut columns = vec![(Column::Left, "spacing")];
-    for [from, to] in &heads {
-        columns.extend([(Column::Right, from.as_str()), (Column::Left, ""), (Column::Right, to)]);
+    for head in &heads {
+        columns.extend([(Column::From, head.as_str()), (Column::Arrow, ""), (Column::Right, "")]);
     }
     let mut table = Table::new(columns);
     for (old, new) in before.design.states.iter().zip(&after.design.states) {
         let mut row = vec![old.name.clone()];
         for (&from, &to) in old.spacings_mm.iter().zip(&new.spacings_mm) {
-            row.extend([fixed(from, 4), "→".to_owned(), fixed(to, 4)]);
+            row.extend([fixed(from, 3), ARROW.to_owned(), fixed(to, 3)]);
         }
         table.row(row);
     }

@@ -1,7 +1,7 @@
 //! One ray as a table.
 
 use super::number::{as_written, fixed, significant};
-use super::table::{Column, Table};
+use super::table::{BLANK, Column, Table};
 use super::{WIDTH, paragraph, sections, warnings};
 use crate::ray::{RayAtSurface, RayReport};
 
@@ -52,7 +52,7 @@ fn surfaces(report: &RayReport) -> String {
         (Column::Right, "slope\nmrad"),
     ];
     if skew {
-        columns.insert(2, (Column::Right, "x\nmm"));
+        columns[1] = (Column::Right, "x\nmm");
         columns.push((Column::Right, "slope\nx mrad"));
     }
     let mut table = Table::new(columns);
@@ -66,7 +66,7 @@ fn row(surface: &RayAtSurface, skew: bool) -> Vec<String> {
     let mut row = vec![
         surface.label.clone(),
         surface.into.clone(),
-        fixed(surface.y_mm, 4) + if surface.outside { "!" } else { "\u{a0}" },
+        format!("{}{}", fixed(surface.y_mm, 4), if surface.outside { '!' } else { BLANK }),
         fixed(surface.sag_mm, 4),
         fixed(surface.path_mm, 4),
         fixed(surface.incidence_deg, 3),
@@ -74,7 +74,8 @@ fn row(surface: &RayAtSurface, skew: bool) -> Vec<String> {
         fixed(surface.slope_y_mrad, 3),
     ];
     if skew {
-        row.insert(2, fixed(surface.x_mm, 4));
+        // Both do not fit in a line; the document for machines has the medium too.
+        row[1] = fixed(surface.x_mm, 4);
         row.push(fixed(surface.slope_x_mrad, 3));
     }
     row
@@ -93,9 +94,10 @@ fn exit(report: &RayReport) -> String {
     } else {
         format!("a height of {} mm with a slope of {slope} µrad", fixed(exit.y_mm, 5))
     };
+    let longer = if exit.path_waves < 0.0 { "shorter" } else { "longer" };
     format!(
         "It crosses the plane through the last vertex at {across}. Up to there its optical path is \
-         {} waves longer than that of the axial ray.",
-        significant(exit.path_waves, 5)
+         {} waves {longer} than that of the axial ray.",
+        significant(exit.path_waves.abs(), 5)
     )
 }

@@ -3,14 +3,15 @@
 use driver::design_file::DesignFile;
 use merit_function::assessment::{Assessment, StateAssessment, WavefrontAssessment};
 use merit_function::goals::Goals;
+use surface_model::design::{Design, Group};
 
 use super::number::{NONE, as_written, fixed, fixed_or_dash, significant_or_dash};
-use super::table::{Column, Table};
+use super::table::{BLANK, Column, Table};
 use super::verdict::missed;
 
 /// A number with the sign that it misses its goal, or room for one.
 fn marked(text: String, missed: bool) -> String {
-    text + if missed { "!" } else { "\u{a0}" }
+    format!("{text}{}", if missed { '!' } else { BLANK })
 }
 
 /// What every state reaches, with the goals in the first row.
@@ -27,8 +28,9 @@ pub(crate) fn reached(file: &DesignFile, assessment: &Assessment) -> String {
         (Column::Right, "PV\nwaves"),
     ]);
     if let Some(goals) = shared_goals(file) {
-        let within =
-            |goal: Option<f64>| goal.map_or_else(String::new, |goal| as_written(goal) + "\u{a0}");
+        let within = |goal: Option<f64>| {
+            goal.map_or_else(String::new, |goal| format!("{}{BLANK}", as_written(goal)))
+        };
         let mut row = vec![String::new(); 9];
         "goal".clone_into(&mut row[0]);
         row[3] = within(goals.ratio_percent);
@@ -92,26 +94,35 @@ pub(crate) fn faults(assessment: &Assessment) -> String {
         .states
         .iter()
         .filter_map(|state| Some(format!("{}: {}", state.name, state.fault.as_ref()?)))
+        .map(|line| super::paragraph(&line, super::WIDTH, "  "))
         .collect();
     lines.join("\n")
 }
 
 /// Spacings and lengths of every state.
 pub(crate) fn spacings(file: &DesignFile, assessment: &Assessment) -> String {
-    let groups = &file.design.groups;
-    let heads: Vec<String> =
-        groups.windows(2).map(|pair| format!("{} to\n{} mm", pair[0].name, pair[1].name)).collect();
+    let heads = spacing_heads(&file.design);
     let mut columns = vec![(Column::Left, "state")];
     columns.extend(heads.iter().map(|head| (Column::Right, head.as_str())));
-    columns.extend([(Column::Right, "length\nmm"), (Column::Right, "front\nat mm")]);
+    columns.extend([(Column::Right, "track\nmm"), (Column::Right, "front\nat mm")]);
     let mut table = Table::new(columns);
     for state in &assessment.states {
         let front = state.positions_mm.values().next().and_then(serde_json::Value::as_f64);
         let mut row = vec![state.name.clone()];
-        row.extend(state.spacings_mm.iter().map(|&spacing| fixed(spacing, 4)));
-        row.push(fixed(state.track_mm, 4));
-        row.push(front.map_or_else(|| NONE.to_owned(), |front| fixed(front, 4)));
+        row.extend(state.spacings_mm.iter().map(|&spacing| fixed(spacing, 3)));
+        row.push(fixed(state.track_mm, 3));
+        row.push(front.map_or_else(|| NONE.to_owned(), |front| fixed(front, 3)));
         table.row(row);
     }
     table.text()
 }
+
+/// What a spacing's column is called: the groups on both sides, in short lines.
+pub(crate) fn spacing_heads(design: &Design) -> Vec<String> {
+    let named = |pair: &[Group]| format!("{} to {} mm", pair[0].name, pair[1].name);
+    let head = |pair: &[Group]| super::paragraph(&named(pair), HEAD_WIDTH, "");
+    design.groups.windows(2).map(head).collect()
+}
+
+/// A spacing's head is broken into lines about as wide as its numbers.
+const HEAD_WIDTH: usize = 10;

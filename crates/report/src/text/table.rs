@@ -9,7 +9,17 @@ pub(crate) enum Column {
     Left,
     /// Numbers.
     Right,
+    /// Numbers with an arrow to the next column.
+    From,
+    /// The arrow.
+    Arrow,
 }
+
+/// The sign between before and after.
+pub(crate) const ARROW: &str = "→";
+
+/// A blank that keeps its place at the end of a cell until the table is laid out.
+pub(crate) const BLANK: char = '\u{a0}';
 
 /// A table in the making.
 pub(crate) struct Table {
@@ -24,9 +34,9 @@ impl Table {
         let mut grid = Grid::new();
         grid.load_style(presets::NOTHING);
         grid.set_content_arrangement(ContentArrangement::Disabled);
-        let lines = heads.iter().map(|head| head.lines().count()).max().unwrap_or(0);
+        let lines = heads.iter().map(|head| height(head)).max().unwrap_or(0);
         grid.set_header(heads.iter().map(|head| {
-            let above = lines - head.lines().count();
+            let above = lines - height(head);
             Cell::new(format!("{}{head}", "\n".repeat(above)))
         }));
         Self { columns, grid }
@@ -45,12 +55,22 @@ impl Table {
     /// The table as text, without blanks at the ends of lines.
     pub(crate) fn text(mut self) -> String {
         for (column, leaning) in self.grid.column_iter_mut().zip(&self.columns) {
-            column.set_padding((0, 2));
-            column.set_cell_alignment(match leaning {
-                Column::Left => CellAlignment::Left,
-                Column::Right => CellAlignment::Right,
-            });
+            let (alignment, gap) = match leaning {
+                Column::Left => (CellAlignment::Left, 2),
+                Column::Right => (CellAlignment::Right, 2),
+                Column::From => (CellAlignment::Right, 1),
+                Column::Arrow => (CellAlignment::Left, 1),
+            };
+            column.set_padding((0, gap));
+            column.set_cell_alignment(alignment);
         }
-        self.grid.trim_fmt()
+        let text = self.grid.to_string().replace(BLANK, " ");
+        let lines: Vec<&str> = text.lines().map(str::trim_end).collect();
+        lines.join("\n")
     }
+}
+
+/// Lines a head takes up, at least one.
+fn height(head: &str) -> usize {
+    head.lines().count().max(1)
 }

@@ -99,7 +99,7 @@ pub(crate) fn closing_sentence(file: &DesignFile, assessment: &Assessment) -> St
         ),
     };
     if let Some(worst) = worst {
-        let which = if worst.missed() { "worst is" } else { "closest to its goal is" };
+        let which = if worst.missed() { "worst is" } else { "the closest call is" };
         told.push_str(&format!("; {which} {}", worst.told()));
         if worst.missed() && worst.value.is_some() {
             told.push_str(&format!(" ({} times)", significant(worst.size(), 2)));

@@ -1,0 +1,95 @@
+//! Help, schema, completions, and command lines that are wrong.
+
+use crate::program::{run, run_on};
+
+const COMMANDS: [&str; 6] = ["assess", "optimise", "trace", "glass", "schema", "completions"];
+
+#[test]
+fn the_overview() {
+    insta::assert_snapshot!(run("--help").told());
+}
+
+#[test]
+fn help_fits_eighty_columns_and_its_examples_work() {
+    for command in COMMANDS {
+        let help = run(&format!("{command} --help")).out;
+        assert!(help.lines().all(|line| line.chars().count() <= 80), "{help}");
+        let examples: Vec<&str> =
+            help.lines().filter_map(|line| line.trim().strip_prefix("drawtube ")).collect();
+        assert!(!examples.is_empty(), "{command} has no example");
+        for example in examples {
+            // What a shell does with `> file` and what `-o` writes is not for this folder.
+            let example = example.split(" > ").next().unwrap().replace("-o better.json", "");
+            assert_eq!(run(&example).status, 0, "{example}");
+        }
+    }
+}
+
+#[test]
+fn wrong_command_lines_are_put_right() {
+    let told: Vec<String> = [
+        "",
+        "asess x",
+        "assess",
+        "optimise x --iteration 5",
+        "optimise x --method least-square",
+        "optimise x --iterations many",
+        "optimise configs/river-lidar-2x-6x.json --iterations 0",
+        "optimise configs/river-lidar-2x-6x.json --target-merit -1",
+        "optimise configs/river-lidar-2x-6x.json --target-merit nan",
+        "optimise configs/river-lidar-2x-6x.json --progress-every -3",
+        "optimise x --force",
+        "assess no-such-file.json",
+        "assess configs",
+        "schema desing",
+        "completions tcsh",
+        "assess x --jsn --errors json",
+        "assess no-such-file.json --errors=json",
+    ]
+    .iter()
+    .map(|arguments| {
+        let ended = run(arguments);
+        assert_eq!(ended.status, 2, "{arguments}");
+        assert_eq!(ended.out, "", "{arguments}");
+        format!("$ drawtube {arguments}\n{}", ended.err)
+    })
+    .collect();
+    insta::assert_snapshot!(told.join("\n"));
+}
+
+#[test]
+fn errors_for_machines_have_place_and_advice() {
+    let ended = run_on("assess - --errors json", r#"{ "format": "drawtube/1", "beem": 3 }"#);
+    assert_eq!((ended.status, ended.out.as_str()), (2, ""));
+    let document: serde_json::Value = serde_json::from_str(&ended.err).unwrap();
+    assert_eq!(document["format"], "drawtube-error/1");
+    assert_eq!(document["status"], 2);
+    let problem = document["problems"]
+        .as_array()
+        .unwrap()
+        .iter()
+        .find(|problem| problem["at"] == "/beem")
+        .unwrap();
+    assert_eq!((&problem["line"], &problem["column"]), (&1.into(), &27.into()));
+    assert_eq!(problem["advice"], r#"did you mean "beam"?"#);
+}
+
+#[test]
+fn the_schema_knows_every_key() {
+    let schema = run("schema design").json();
+    let properties = schema["properties"].as_object().unwrap();
+    for key in crate::designs::every_key().as_object().unwrap().keys() {
+        assert!(properties.contains_key(key), "{key}");
+    }
+}
+
+#[test]
+fn completions_for_every_shell() {
+    for shell in ["bash", "zsh", "fish", "elvish", "powershell"] {
+        let ended = run(&format!("completions {shell}"));
+        assert_eq!(ended.status, 0);
+        for command in COMMANDS {
+            assert!(ended.out.contains(command), "{shell} {command}");
+        }
+    }
+}
