@@ -117,24 +117,41 @@ class Expander:
 
     def _choose_variables(self):
         """Free numbers: what is shared first, in the order of the file, then spacings by state."""
-        free = self.document.get("free", ["radii", "spacings"])
         self.shared = []
         surface = 0
         for g, group in enumerate(self.document["groups"]):
             for e, element in enumerate(group["elements"]):
-                for _ in element["radii_mm"]:
-                    if "radii" in free:
+                here = [("groups",), (group["name"], g), ("elements",), (element.get("name"), e)]
+                for s in range(len(element["radii_mm"])):
+                    if self._free("radii", [*here, ("radii_mm",), (s,)]):
                         self.shared.append(("curvature", surface))
-                    if "aspheres" in free:
-                        powers = sorted(self.asphere[surface])
-                        self.shared += [("asphere", surface, power) for power in powers]
+                    for power in sorted(self.asphere[surface]):
+                        at = [*here, ("shapes",), (s,), ("asphere",), (power,)]
+                        if self._free("aspheres", at):
+                            self.shared.append(("asphere", surface, power))
                     surface += 1
-                if "thicknesses" in free:
-                    for s in range(len(element["glasses"])):
+                for s in range(len(element["glasses"])):
+                    if self._free("thicknesses", [*here, ("thicknesses_mm",), (s,)]):
                         self.shared.append(("thickness", g, e, s))
         last = len(self.document["groups"]) - 1
-        moving = range(last - 1 if self.both_ends else last) if "spacings" in free else []
-        self.own = [(k, after) for k in range(len(self.goals)) for after in moving]
+        self.own = []
+        for k, state in enumerate(self.document["states"]):
+            for after in range(last - 1 if self.both_ends else last):
+                at = [("states",), (state["name"], k), ("spacings_mm",), (after,)]
+                if self._free("spacings", at):
+                    self.own.append((k, after))
+
+    def _free(self, word, steps):
+        """Whether a number is free by its word and not held, by word or by address."""
+        held = self.document.get("held", [])
+        if word not in self.document.get("free", ["radii", "spacings"]) or word in held:
+            return False
+        for address in held:
+            wanted = address.split("/")[1:]
+            names = [[str(name) for name in step] for step in steps]
+            if wanted and all(step in name for step, name in zip(wanted, names)):
+                return False
+        return True
 
     def _place_rays(self, rays):
         beam, dtype = self.document["beam"], self.dtype

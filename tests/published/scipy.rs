@@ -14,7 +14,11 @@ use nalgebra::{DMatrix, DVector};
 use serde_json::Value;
 use surface_model::document::Document;
 
-const DESIGNS: [&str; 6] = [
+/// With one minimum inside all bounds.
+const HELD: [&str; 4] = ["cemented-pairs", "four-singlets", "one-mover", "three-singlets"];
+
+/// The shipped designs and two more, everything free that they free.
+const FREE: [&str; 6] = [
     "four-groups-asphere",
     "four-singlets-six-states",
     "moving-collimator",
@@ -22,6 +26,10 @@ const DESIGNS: [&str; 6] = [
     "river-lidar-2x-6x",
     "two-colour-pairs",
 ];
+
+fn designs() -> impl Iterator<Item = &'static str> {
+    HELD.into_iter().chain(FREE)
+}
 
 fn read(path: &str) -> Vec<u8> {
     let root = std::path::Path::new(env!("CARGO_MANIFEST_DIR")).join("..");
@@ -86,7 +94,7 @@ const ROUNDING: f64 = 5e-9;
 
 #[test]
 fn residuals_are_those_of_the_independent_program() {
-    for name in DESIGNS {
+    for name in designs() {
         let reference = reference(name);
         let pairs = [
             ("start", residuals(&design(name)), vector(&reference["start"]["residuals"])),
@@ -103,7 +111,7 @@ fn residuals_are_those_of_the_independent_program() {
 
 #[test]
 fn derivatives_are_those_of_imaginary_steps() {
-    for name in DESIGNS {
+    for name in designs() {
         let reference = reference(name);
         let ours = jacobian(&design(name));
         let rows = reference["start"]["jacobian"].as_array().unwrap();
@@ -121,7 +129,7 @@ fn derivatives_are_those_of_imaginary_steps() {
 
 #[test]
 fn the_minimum_from_the_same_start_is_not_above_the_one_scipy_finds() {
-    for name in DESIGNS.into_iter().filter(|&name| name != "two-colour-pairs") {
+    for name in designs().filter(|&name| name != "two-colour-pairs") {
         let theirs = reference(name)["end"]["merit"].as_f64().unwrap();
         let ours = minimum(&design(name)).sum_of_squares;
         assert!(ours <= theirs * (1.0 + 1e-6) + 1e-12, "{name}: {ours:e}, SciPy {theirs:e}");
@@ -131,7 +139,9 @@ fn the_minimum_from_the_same_start_is_not_above_the_one_scipy_finds() {
 /// Where the minimum is one point and not a valley floor near zero, both programs find the same.
 #[test]
 fn both_find_the_same_minimum_where_there_is_but_one() {
-    for name in ["one-mover-three-states", "river-lidar-2x-6x"] {
+    let bounded = ["one-mover-three-states", "river-lidar-2x-6x"];
+    let unstalled = HELD.into_iter().filter(|&name| name != "four-singlets");
+    for name in unstalled.chain(bounded) {
         let theirs = reference(name)["end"]["merit"].as_f64().unwrap();
         let ours = minimum(&design(name)).sum_of_squares;
         assert!((ours / theirs - 1.0).abs() < 1e-6, "{name}: {ours:e}, SciPy {theirs:e}");
@@ -142,11 +152,11 @@ fn both_find_the_same_minimum_where_there_is_but_one() {
 /// and of the pairs much lower.
 #[test]
 fn going_on_from_where_scipy_stopped_ends_lower() {
-    for name in DESIGNS {
+    for name in designs() {
         let reference = reference(name);
         let theirs = reference["end"]["merit"].as_f64().unwrap();
         let onwards = minimum(&at_end(name, &reference)).sum_of_squares;
-        assert!(onwards <= theirs * (1.0 + 1e-9), "{name}: {onwards:e}, SciPy {theirs:e}");
+        assert!(onwards <= theirs * (1.0 + 1e-6), "{name}: {onwards:e}, SciPy {theirs:e}");
         let stalled = matches!(name, "four-singlets-six-states" | "two-colour-pairs");
         assert!(!stalled || onwards < 0.98 * theirs, "{name}: {onwards:e}, SciPy {theirs:e}");
     }
