@@ -16,8 +16,13 @@ pub(crate) struct Measured {
     pub(crate) about: &'static str,
 }
 
-/// Limits on single numbers only: what solvers that know bounds and nothing else can take.
-pub(crate) const DESIGNS: [Measured; 6] = [
+/// Limits on single numbers only: what solvers that know bounds and nothing else can take. The
+/// first four have one minimum inside all bounds.
+pub(crate) const DESIGNS: [Measured; 10] = [
+    Measured { name: "three-singlets", about: "five states" },
+    Measured { name: "four-singlets", about: "six states" },
+    Measured { name: "cemented-pairs", about: "two wavelengths, four states" },
+    Measured { name: "one-mover", about: "one moving group, two states" },
     Measured { name: "river-lidar-2x-6x", about: "three singlets, five states" },
     Measured { name: "four-singlets-six-states", about: "four singlets, six states" },
     Measured { name: "two-colour-pairs", about: "three cemented pairs, two wavelengths" },
