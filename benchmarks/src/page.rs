@@ -1,0 +1,82 @@
+//! The page of numbers, `benchmarks/README.md`.
+
+use std::fmt::Write;
+use std::process::Command;
+
+use crate::{Failure, bare_loop, derivatives, design, instructions, jobs, threads, zoom_states};
+
+const HEAD: &str = "# Numbers
+
+Made by `cargo run --release -p benchmarks`; what stands here is what that run measured, targets missed
+included. One section alone: `cargo run --release -p benchmarks SECTION`, where SECTION is `jobs` (with
+names of designs, to measure only those), `derivatives`, `trace`, `states`, `threads` or
+`instructions`. All figures are median (min … max).
+
+The peers: `pip install numpy scipy` for SciPy; `apt-get install libceres-dev` and a C++ compiler for
+Ceres, whose program `peers/ceres/build.sh` builds into `target/peers/` on the way; `valgrind` for the
+instruction counts. What is missing is skipped and named. Where time goes, by function:
+
+```sh
+cargo build --release -p benchmarks
+perf record target/release/benchmarks kernel optimise 20000 && perf report
+valgrind --tool=callgrind target/release/benchmarks kernel linearise 2000
+```
+
+`peers/expander.py` is an independent NumPy program for the same merit; `peers/reference.py` writes
+with it what `tests/published/scipy.rs` checks against.
+";
+
+/// Measures everything and writes the page.
+pub(crate) fn write() -> Result<(), Failure> {
+    let mut page = format!("{HEAD}\n{}", machine()?);
+    let sections: [(&str, &dyn Fn() -> Result<String, Failure>); 6] = [
+        ("jobs", &|| jobs::section(&[])),
+        ("derivatives", &derivatives::section),
+        ("trace", &bare_loop::section),
+        ("states", &zoom_states::section),
+        ("threads", &threads::section),
+        ("instructions", &instructions::section),
+    ];
+    for (name, section) in sections {
+        eprintln!("{name}");
+        write!(page, "\n{}", section()?)?;
+    }
+    std::fs::write(design::home().join("README.md"), page)?;
+    Ok(())
+}
+
+/// The machine and the versions measured.
+fn machine() -> Result<String, Failure> {
+    let mut text = String::from("## Machine and versions\n\n");
+    let cpus = std::fs::read_to_string("/proc/cpuinfo").unwrap_or_default();
+    let model = cpus.lines().find_map(|line| line.strip_prefix("model name")?.split(':').nth(1));
+    let cores = std::thread::available_parallelism()?;
+    let processor = model.map_or("unknown", str::trim);
+    let wide = if cpus.contains("avx512f") { ", 512-bit vectors" } else { "" };
+    writeln!(text, "- processor: {processor}, {cores} cores{wide}")?;
+    let load = std::fs::read_to_string("/proc/loadavg").unwrap_or_default();
+    let load: Vec<&str> = load.split_whitespace().take(3).collect();
+    writeln!(text, "- load before the run (1, 5, 15 minutes): {}", load.join(", "))?;
+    let versions: [(&str, &str, &[&str]); 5] = [
+        ("Rust", "rustc", &["--version"]),
+        ("C++", "g++", &["-dumpfullversion"]),
+        ("Ceres", "dpkg-query", &["-W", "-f", "${Version}", "libceres-dev"]),
+        (
+            "Python, NumPy, SciPy",
+            "python3",
+            &[
+                "-c",
+                "import platform, numpy, scipy; print(platform.python_version(), numpy.__version__, scipy.__version__)",
+            ],
+        ),
+        ("valgrind", "valgrind", &["--version"]),
+    ];
+    for (name, command, arguments) in versions {
+        let output = Command::new(command).args(arguments).output();
+        let found = output.ok().filter(|output| output.status.success());
+        let version = found.map(|output| String::from_utf8_lossy(&output.stdout).trim().to_owned());
+        writeln!(text, "- {name}: {}", version.as_deref().unwrap_or("not installed"))?;
+    }
+    writeln!(text, "- levenberg-marquardt crate: 0.15")?;
+    Ok(text)
+}
