@@ -38,7 +38,7 @@ pub(crate) fn section() -> Result<String, Failure> {
     for (kernel, calls, units, unit) in KERNELS {
         let (short, long) = (count(kernel, calls)?, count(kernel, 2 * calls)?);
         let each = (long - short) as f64 / calls as f64;
-        writeln!(page, "| `{kernel}` | {each:.0} | {:.1} a {unit} |", each / units)?;
+        writeln!(page, "| `{kernel}` | {each:.0} | {:.1} per {unit} |", each / units)?;
     }
     Ok(page)
 }

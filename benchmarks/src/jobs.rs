@@ -144,9 +144,12 @@ impl Job {
         let survey = program.run(&input, 0.0, 1, &[])?;
         let lowest = |runs: &[Reached]| runs.iter().map(|run| run.merit).fold(f64::MAX, f64::min);
         let merit = lowest(&survey);
-        let trial = program.run(&input, self.target(merit), 1, &[])?;
+        let target = self.target(merit);
+        let arrive = survey.iter().filter(|run| run.merit <= target);
+        let arrive: Vec<String> = arrive.map(|run| run.options.clone()).collect();
+        let trial = program.run(&input, target, 1, &arrive)?;
         let mut raced = Vec::new();
-        if let Some(best) = fastest(&trial, self.target(merit)) {
+        if let Some(best) = fastest(&trial, target) {
             raced.push((best, merit));
         }
         if let Some(plain) = survey.iter().find(|run| run.options == "trf-differences") {

@@ -3,6 +3,8 @@
 use std::fmt::Write;
 use std::process::Command;
 
+use driver::write_whole::{Existing, write_whole};
+
 use crate::{Failure, bare_loop, derivatives, design, instructions, jobs, threads, zoom_states};
 
 const HEAD: &str = "# Numbers
@@ -26,23 +28,24 @@ valgrind --tool=callgrind target/release/benchmarks kernel linearise 2000
 with it what `tests/published/scipy.rs` checks against.
 ";
 
+type Section = fn() -> Result<String, Failure>;
+
 /// Measures everything and writes the page.
 pub(crate) fn write() -> Result<(), Failure> {
     let mut page = format!("{HEAD}\n{}", machine()?);
-    let sections: [(&str, &dyn Fn() -> Result<String, Failure>); 6] = [
-        ("jobs", &|| jobs::section(&[])),
-        ("derivatives", &derivatives::section),
-        ("trace", &bare_loop::section),
-        ("states", &zoom_states::section),
-        ("threads", &threads::section),
-        ("instructions", &instructions::section),
+    let sections: [(&str, Section); 6] = [
+        ("jobs", || jobs::section(&[])),
+        ("derivatives", derivatives::section),
+        ("trace", bare_loop::section),
+        ("states", zoom_states::section),
+        ("threads", threads::section),
+        ("instructions", instructions::section),
     ];
     for (name, section) in sections {
         eprintln!("{name}");
         write!(page, "\n{}", section()?)?;
     }
-    std::fs::write(design::home().join("README.md"), page)?;
-    Ok(())
+    Ok(write_whole(&design::home().join("README.md"), page.as_bytes(), Existing::Replace)?)
 }
 
 /// The machine and the versions measured.

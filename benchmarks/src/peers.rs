@@ -4,9 +4,10 @@
 use std::path::{Path, PathBuf};
 use std::process::Command;
 
+use driver::write_whole::{Existing, write_whole};
 use serde_json::Value;
 
-use crate::{Failure, design};
+use crate::{Failure, design, peer_input};
 
 /// A program to be held against.
 #[derive(Debug, Clone)]
@@ -78,7 +79,8 @@ impl Program {
         let folder = design::home().join("../target/peers");
         std::fs::create_dir_all(&folder)?;
         let path = folder.join(format!("{name}.txt"));
-        std::fs::write(&path, crate::peer_input::text(&design::load(name)?)?)?;
+        let text = peer_input::text(&design::load(name)?)?;
+        write_whole(&path, text.as_bytes(), Existing::Replace)?;
         Ok(path)
     }
 }
