@@ -176,3 +176,21 @@ fn the_pairs_end_in_a_minimum_if_not_in_the_same() {
     assert!(again.sum_of_squares > first.sum_of_squares * (1.0 - 1e-5));
     assert!(first.sum_of_squares < 1e-3);
 }
+
+/// The shipped designs with every limit, derived ones included: SLSQP, begun anew until that no
+/// longer helped, ends no lower, and where the minimum is not a valley floor near zero the same.
+#[test]
+fn with_all_limits_slsqp_ends_no_lower() {
+    let reference = reference("shipped");
+    let minima = reference["minima"].as_object().unwrap();
+    assert!(minima.len() >= 4);
+    for (name, theirs) in minima {
+        let file = DesignFile::read(Document::from_value(name, theirs["design"].clone())).unwrap();
+        let theirs = theirs["merit"].as_f64().unwrap();
+        let ours = minimum(&file);
+        assert!(ours.limits_kept(), "{name}: a limit is crossed by {} tolerances", ours.violation);
+        let ours = ours.sum_of_squares;
+        assert!(ours <= theirs * (1.0 + 1e-6), "{name}: {ours:e}, SLSQP {theirs:e}");
+        assert!(theirs < 1e-2 || (ours / theirs - 1.0).abs() < 1e-6, "{name}: {ours:e}");
+    }
+}
