@@ -16,6 +16,7 @@ use surface_model::surface::Surface;
 use surface_model::train::Train;
 
 use crate::Failure;
+use crate::page::{Section, Verdict};
 use crate::spread::{Spread, interleaved, ratios};
 
 const SURFACES: usize = 6;
@@ -88,8 +89,8 @@ pub(crate) fn train() -> Result<Train, Failure> {
 }
 
 /// The section of the page.
-pub(crate) fn section() -> Result<String, Failure> {
-    let mut page = String::from(INTRODUCTION);
+pub(crate) fn section() -> Result<Section, Failure> {
+    let mut page = Section::new(INTRODUCTION);
     let train = train()?;
     for rays in [64, 512] {
         let heights: Vec<f64> = (0..rays).map(|i| 1.8 * (i as f64 + 0.5) / rays as f64).collect();
@@ -113,14 +114,17 @@ pub(crate) fn section() -> Result<String, Failure> {
         let times = interleaved(25, Duration::from_millis(15), jobs);
         let nano =
             |times: &Vec<f64>| Spread::of(times.clone()).scaled(1e9 / (rays * SURFACES) as f64);
+        let ratio = ratios(&times[0], &times[1]);
+        let what = format!("trace over a bare loop of square roots and divisions, {rays} rays");
+        page.verdicts.push(Verdict::at_most(what, 1.5, ratio));
         writeln!(
-            page,
+            page.text,
             "| {rays} | {} | {} | {} | {} | **{}** | {} | {} |",
             nano(&times[0]),
             nano(&times[1]),
             nano(&times[2]),
             nano(&times[3]),
-            ratios(&times[0], &times[1]),
+            ratio,
             ratios(&times[0], &times[2]),
             ratios(&times[0], &times[3])
         )?;

@@ -7,6 +7,7 @@ use merit_function::block::{BlockProblem, Linearisation};
 use merit_function::problem::MeritFunction;
 use serde_json::{Value, json};
 
+use crate::page::{Section, Verdict};
 use crate::spread::{Spread, interleaved, ratios};
 use crate::{Failure, design};
 
@@ -19,11 +20,11 @@ Time of `linearise` over time of `residuals` at the start, in turn. Wanted: at m
 ";
 
 /// The problems, by what they are.
-pub(crate) fn problems() -> Result<Vec<(&'static str, MeritFunction)>, Failure> {
+fn problems() -> Result<Vec<(&'static str, MeritFunction)>, Failure> {
     let make = |about, document| Ok((about, design::merit_of_document(about, document)?));
     [
         make("three singlets, 5 states", design::document("river-lidar-2x-6x")?),
-        make("three singlets, 27 states", design::with_states(27)?),
+        make("three singlets, 27 states", design::with_states("river-lidar-2x-6x", 27)?),
         make("cemented pairs with thicknesses and conics, 18 states", many_shapes()?),
         make("four groups, an asphere, 3 states", design::document("four-groups-asphere")?),
     ]
@@ -46,8 +47,8 @@ fn many_shapes() -> Result<Value, Failure> {
 }
 
 /// The section of the page.
-pub(crate) fn section() -> Result<String, Failure> {
-    let mut page = String::from(INTRODUCTION);
+pub(crate) fn section() -> Result<Section, Failure> {
+    let mut page = Section::new(INTRODUCTION);
     for (about, mut merit) in problems()? {
         let shape = merit.shape().clone();
         let start = merit.variables().start().to_vec();
@@ -64,14 +65,17 @@ pub(crate) fn section() -> Result<String, Failure> {
         };
         let times = interleaved(25, Duration::from_millis(15), &mut [&mut alone, &mut whole]);
         let micro = |seconds: &Vec<f64>| Spread::of(seconds.clone()).scaled(1e6);
+        let ratio = ratios(&times[1], &times[0]);
+        let what = format!("residuals and Jacobian over residuals: {about}");
+        page.verdicts.push(Verdict::at_most(what, 4.0, ratio));
         writeln!(
-            page,
+            page.text,
             "| {about} | {} | {} | {} | {} | **{}** |",
             shape.variables(),
             shape.residuals(),
             micro(&times[0]),
             micro(&times[1]),
-            ratios(&times[1], &times[0])
+            ratio
         )?;
     }
     Ok(page)

@@ -57,11 +57,20 @@ pub(crate) fn merit_of_document(label: &str, document: Value) -> Result<MeritFun
     Ok(merit_of(&file)?)
 }
 
-/// The river lidar with `count` states from 2x to 6x, its spacings interpolated.
-pub(crate) fn with_states(count: usize) -> Result<Value, Failure> {
-    let mut document = document("river-lidar-2x-6x")?;
+/// A design with `count` states over the same ratios, its spacings interpolated. What is held of
+/// the last state stays held.
+pub(crate) fn with_states(name: &str, count: usize) -> Result<Value, Failure> {
+    let mut document = document(name)?;
+    let last = document["states"][document["states"].as_array().map_or(0, Vec::len) - 1].clone();
     let states = between_states(&document["states"], count).ok_or("the states are not as known")?;
     document["states"] = states;
+    if let Some(held) = document["held"].as_array_mut() {
+        let old = format!("/states/{}/", last["name"].as_str().unwrap_or_default());
+        let new = format!("/states/{}/", count - 1);
+        for address in held {
+            *address = Value::from(address.as_str().unwrap_or_default().replace(&old, &new));
+        }
+    }
     Ok(document)
 }
 

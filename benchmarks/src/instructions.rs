@@ -9,6 +9,7 @@ use driver::solve::{Settings, Unwatched, run};
 use merit_function::block::{BlockProblem, Linearisation};
 use surface_model::bundle::Bundle;
 
+use crate::page::Section;
 use crate::{Failure, bare_loop, design};
 
 const INTRODUCTION: &str = "## Instructions
@@ -29,16 +30,16 @@ const KERNELS: [(&str, usize, f64, &str); 4] = [
 ];
 
 /// The section of the page; a line of its own where valgrind is missing.
-pub(crate) fn section() -> Result<String, Failure> {
-    let mut page = String::from(INTRODUCTION);
+pub(crate) fn section() -> Result<Section, Failure> {
+    let mut page = Section::new(INTRODUCTION);
     if Command::new("valgrind").arg("--version").output().is_err() {
-        page.push_str("| skipped: valgrind is not installed | | |\n");
+        page.text.push_str("| skipped: valgrind is not installed | | |\n");
         return Ok(page);
     }
     for (kernel, calls, units, unit) in KERNELS {
         let (short, long) = (count(kernel, calls)?, count(kernel, 2 * calls)?);
         let each = (long - short) as f64 / calls as f64;
-        writeln!(page, "| `{kernel}` | {each:.0} | {:.1} per {unit} |", each / units)?;
+        writeln!(page.text, "| `{kernel}` | {each:.0} | {:.1} per {unit} |", each / units)?;
     }
     Ok(page)
 }

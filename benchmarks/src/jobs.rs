@@ -7,6 +7,7 @@ use driver::solve::{Outcome, Settings, Unwatched, run};
 use merit_function::problem::MeritFunction;
 
 use crate::design::{self, DESIGNS};
+use crate::page::{Section, Verdict};
 use crate::peers::{Program, Reached};
 use crate::spread::{Spread, ratios};
 use crate::{Failure, minpack};
@@ -24,7 +25,7 @@ const PEERS_A_ROUND: usize = 3;
 const SLOW: f64 = 0.5;
 
 /// One design, ready to be optimised.
-struct Job {
+pub(crate) struct Job {
     name: &'static str,
     merit: MeritFunction,
     start: Vec<f64>,
@@ -32,18 +33,19 @@ struct Job {
 }
 
 /// What a peer reaches at its best, and how much longer it takes to reach the same.
-struct Match {
+pub(crate) struct Match {
     peer: String,
     options: String,
     merit: f64,
-    target: f64,
-    ours: Spread,
-    theirs: Spread,
-    ratio: Spread,
+    pub(crate) target: f64,
+    pub(crate) ours: Spread,
+    pub(crate) theirs: Spread,
+    pub(crate) ratio: Spread,
 }
 
 /// The section of the page.
-pub(crate) fn section(filter: &[&str]) -> Result<String, Failure> {
+pub(crate) fn section(filter: &[&str]) -> Result<Section, Failure> {
+    let mut page = Section::new(INTRODUCTION);
     let mut minima = String::from(
         "| design | variables | drawtube | SciPy | Ceres | levenberg-marquardt crate |\n\
          |---|---|---|---|---|---|\n",
@@ -67,6 +69,7 @@ pub(crate) fn section(filter: &[&str]) -> Result<String, Failure> {
                     reached.push(format!("{merit:.6e}"));
                     for matched in matched {
                         times.push_str(&matched.row(job.name)?);
+                        page.verdicts.extend(matched.verdict(job.name));
                     }
                 }
                 Err(reason) => reached.push(reason.clone()),
@@ -74,6 +77,7 @@ pub(crate) fn section(filter: &[&str]) -> Result<String, Failure> {
         }
         let matched = job.against_minpack();
         times.push_str(&matched.row(job.name)?);
+        page.verdicts.extend(matched.verdict(job.name));
         writeln!(
             minima,
             "| {}: {} | {} | {:.6e} | {} | {:.6e} |",
@@ -85,7 +89,8 @@ pub(crate) fn section(filter: &[&str]) -> Result<String, Failure> {
             matched.merit
         )?;
     }
-    Ok(format!("{INTRODUCTION}\n{minima}\n{TIMES}\n{times}"))
+    write!(page.text, "\n{minima}\n{TIMES}\n{times}")?;
+    Ok(page)
 }
 
 const INTRODUCTION: &str = "## Whole local optimisations
@@ -102,6 +107,18 @@ the same run: median (min … max). A ratio above 1 is how much longer the peer 
 ";
 
 impl Match {
+    /// What was wanted of it, for the designs on which all solvers find the same minimum.
+    fn verdict(&self, design: &str) -> Option<Verdict> {
+        let alike = ["three-singlets", "four-singlets", "cemented-pairs", "one-mover"];
+        let wanted = match self.peer.as_str() {
+            "SciPy" => 1000.0,
+            "Ceres" => 3.0,
+            _ => 2.0,
+        };
+        let what = format!("{} ({}) over drawtube: {design}", self.peer, self.options);
+        alike.contains(&design).then(|| Verdict::at_least(what, wanted, self.ratio))
+    }
+
     fn row(&self, design: &str) -> Result<String, Failure> {
         let (ours, theirs) = (self.ours.scaled(1e3), self.theirs.scaled(1e3));
         let mut row = String::new();
@@ -116,7 +133,10 @@ impl Match {
 
 impl Job {
     fn load(name: &'static str) -> Result<Self, Failure> {
-        let mut merit = merit_of(&design::load(name)?)?;
+        Self::new(name, merit_of(&design::load(name)?)?)
+    }
+
+    pub(crate) fn new(name: &'static str, mut merit: MeritFunction) -> Result<Self, Failure> {
         let start = merit.variables().start().to_vec();
         let ours = run(&mut merit, &start, &Settings::default(), &mut Unwatched)?;
         Ok(Self { name, merit, start, ours })
@@ -182,7 +202,8 @@ impl Job {
         Ok((merit, matches))
     }
 
-    fn against_minpack(&mut self) -> Match {
+    /// The race against the MINPACK port.
+    pub(crate) fn against_minpack(&mut self) -> Match {
         let start = self.start.clone();
         let finals = STEP_BOUNDS.map(|step| minpack::run(&mut self.merit, &start, 0.0, step).merit);
         let merit = finals.into_iter().fold(f64::MAX, f64::min);

@@ -17,9 +17,11 @@ mod instructions;
 mod jobs;
 mod memory;
 mod minpack;
+mod more_states;
 mod page;
 mod peer_input;
 mod peers;
+mod profile;
 mod spread;
 mod threads;
 mod zoom_states;
@@ -33,19 +35,24 @@ fn main() -> Result<(), Failure> {
     let section = match words.as_slice() {
         [] => return page::write(),
         ["kernel", name, calls] => return instructions::repeat(name, calls.parse()?),
-        ["peer-input", name] => peer_input::text(&design::load(name)?)?,
+        ["peer-input", name] => {
+            print!("{}", peer_input::text(&design::load(name)?)?);
+            return Ok(());
+        }
         ["jobs", names @ ..] => jobs::section(names)?,
+        ["more-states"] => more_states::section()?,
         ["derivatives"] => derivatives::section()?,
         ["trace"] => bare_loop::section()?,
         ["states"] => zoom_states::section()?,
         ["threads"] => threads::section()?,
         ["instructions"] => instructions::section()?,
+        ["profile"] => profile::section()?,
         _ => {
-            return Err("sections: jobs [DESIGN…], derivatives, trace, states, threads, \
-                        instructions; or kernel NAME CALLS, peer-input DESIGN"
+            return Err("sections: jobs [DESIGN…], more-states, derivatives, trace, states, \
+                        threads, instructions, profile; or kernel NAME CALLS, peer-input DESIGN"
                 .into());
         }
     };
-    print!("{section}");
+    print!("{}", section.text);
     Ok(())
 }

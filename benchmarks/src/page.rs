@@ -5,21 +5,28 @@ use std::process::Command;
 
 use driver::write_whole::{Existing, write_whole};
 
-use crate::{Failure, bare_loop, derivatives, design, instructions, jobs, threads, zoom_states};
+use crate::spread::Spread;
+use crate::{
+    Failure, bare_loop, derivatives, design, instructions, jobs, more_states, profile, threads,
+    zoom_states,
+};
 
 const HEAD: &str = "# Numbers
 
 Made by `cargo run --release -p benchmarks`; what stands here is what that run measured, targets missed
 included. One section alone: `cargo run --release -p benchmarks SECTION`, where SECTION is `jobs` (with
-names of designs, to measure only those), `derivatives`, `trace`, `states`, `threads` or
-`instructions`. All figures are median (min … max).
+names of designs, to measure only those), `more-states`, `derivatives`, `trace`, `states`, `threads`,
+`instructions` or `profile`. All figures are median (min … max).
 
 The peers: `pip install numpy scipy` for SciPy; `apt-get install libceres-dev` and a C++ compiler for
 Ceres, whose program `peers/ceres/build.sh` builds into `target/peers/` on the way; `valgrind` for the
-instruction counts. What is missing is skipped and named. Where time goes, by function:
+instruction counts, `perf` for the profile. What is missing is skipped and named. By hand:
 
 ```sh
-cargo build --release -p benchmarks
+benchmarks/peers/ceres/build.sh
+cargo run --release -p benchmarks peer-input three-singlets > target/peers/three-singlets.txt
+target/peers/ceres-expander target/peers/three-singlets.txt 0 1
+python3 benchmarks/peers/scipy_job.py benchmarks/designs/three-singlets.json 0 1
 perf record target/release/benchmarks kernel optimise 20000 && perf report
 valgrind --tool=callgrind target/release/benchmarks kernel linearise 2000
 ```
@@ -28,23 +35,71 @@ valgrind --tool=callgrind target/release/benchmarks kernel linearise 2000
 with it what `tests/published/scipy.rs` checks against.
 ";
 
-type Section = fn() -> Result<String, Failure>;
+const VERDICTS: &str = "## What was wanted and what was measured
+
+| ratio | wanted | measured | met |
+|---|---|---|---|
+";
+
+/// A section of the page, and what it says about what was wanted.
+pub(crate) struct Section {
+    pub(crate) text: String,
+    pub(crate) verdicts: Vec<Verdict>,
+}
+
+impl Section {
+    pub(crate) fn new(introduction: &str) -> Self {
+        Self { text: introduction.to_owned(), verdicts: Vec::new() }
+    }
+}
+
+/// A ratio that was wanted, and the one measured; its median decides.
+pub(crate) struct Verdict {
+    what: String,
+    wanted: String,
+    measured: Spread,
+    met: bool,
+}
+
+impl Verdict {
+    /// The ratio should not be above `most`.
+    pub(crate) fn at_most(what: String, most: f64, measured: Spread) -> Self {
+        Self { what, wanted: format!("at most {most}"), measured, met: measured.median <= most }
+    }
+
+    /// The ratio should not be below `least`.
+    pub(crate) fn at_least(what: String, least: f64, measured: Spread) -> Self {
+        Self { what, wanted: format!("at least {least}"), measured, met: measured.median >= least }
+    }
+}
+
+type Measure = fn() -> Result<Section, Failure>;
 
 /// Measures everything and writes the page.
 pub(crate) fn write() -> Result<(), Failure> {
-    let mut page = format!("{HEAD}\n{}", machine()?);
-    let sections: [(&str, Section); 6] = [
+    let machine = machine()?;
+    let (mut verdicts, mut rest) = (String::from(VERDICTS), String::new());
+    let sections: [(&str, Measure); 8] = [
         ("jobs", || jobs::section(&[])),
+        ("more-states", more_states::section),
         ("derivatives", derivatives::section),
         ("trace", bare_loop::section),
         ("states", zoom_states::section),
         ("threads", threads::section),
         ("instructions", instructions::section),
+        ("profile", profile::section),
     ];
     for (name, section) in sections {
         eprintln!("{name}");
-        write!(page, "\n{}", section()?)?;
+        let section = section()?;
+        write!(rest, "\n{}", section.text)?;
+        for verdict in section.verdicts {
+            let Verdict { what, wanted, measured, met } = verdict;
+            let met = if met { "yes" } else { "**no**" };
+            writeln!(verdicts, "| {what} | {wanted} | {measured} | {met} |")?;
+        }
     }
+    let page = format!("{HEAD}\n{machine}\n{verdicts}{rest}");
     Ok(write_whole(&design::home().join("README.md"), page.as_bytes(), Existing::Replace)?)
 }
 

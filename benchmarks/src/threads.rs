@@ -7,6 +7,7 @@ use driver::optimise::merit_of;
 use driver::solve::{Settings, Unwatched, run};
 use rayon::prelude::*;
 
+use crate::page::{Section, Verdict};
 use crate::spread::{Spread, ratios};
 use crate::{Failure, design};
 
@@ -23,7 +24,7 @@ turn on one thread and on two. Starts that cannot be traced count as done. Wante
 ";
 
 /// The section of the page.
-pub(crate) fn section() -> Result<String, Failure> {
+pub(crate) fn section() -> Result<Section, Failure> {
     let pool = |threads| rayon::ThreadPoolBuilder::new().num_threads(threads).build();
     let (one, two) = (pool(1)?, pool(2)?);
     let (mut alone, mut shared) = (Vec::new(), Vec::new());
@@ -34,8 +35,14 @@ pub(crate) fn section() -> Result<String, Failure> {
     let rate = |seconds: &[f64]| {
         Spread::of(seconds.iter().map(|seconds| STARTS as f64 / seconds).collect())
     };
-    let mut page = String::from(INTRODUCTION);
-    writeln!(page, "| {} | {} | **{}** |", rate(&alone), rate(&shared), ratios(&alone, &shared))?;
+    let mut page = Section::new(INTRODUCTION);
+    let ratio = ratios(&alone, &shared);
+    page.verdicts.push(Verdict::at_least(
+        "two threads over one, starts a second".into(),
+        1.9,
+        ratio,
+    ));
+    writeln!(page.text, "| {} | {} | **{ratio}** |", rate(&alone), rate(&shared))?;
     Ok(page)
 }
 

@@ -8,6 +8,7 @@ use driver::solve::{Settings, Unwatched, run};
 use merit_function::problem::MeritFunction;
 use surface_model::document::Document;
 
+use crate::page::{Section, Verdict};
 use crate::spread::{Spread, ratios};
 use crate::{Failure, design, memory};
 
@@ -26,8 +27,8 @@ limits*: as shipped, edge thickness, track and internal focus too. Wanted: 64 st
 ";
 
 /// The section of the page.
-pub(crate) fn section() -> Result<String, Failure> {
-    let mut page = String::from(INTRODUCTION);
+pub(crate) fn section() -> Result<Section, Failure> {
+    let mut page = Section::new(INTRODUCTION);
     for (about, all) in [("bounds only", false), ("all limits", true)] {
         let mut problems = Vec::new();
         let mut bytes = Vec::new();
@@ -46,9 +47,15 @@ pub(crate) fn section() -> Result<String, Failure> {
                 seconds.push(steps(merit)?);
             }
         }
+        let last = STATES.len() - 1;
+        let growth = ratios(&seconds[last], &seconds[0]);
+        let what = |of: &str| format!("64 states over 8, {of}, {about}");
+        page.verdicts.push(Verdict::at_most(what("time a step"), 9.0, growth));
+        let growth = Spread::of(vec![bytes[last] as f64 / bytes[0] as f64]);
+        page.verdicts.push(Verdict::at_most(what("memory"), 9.0, growth));
         for (i, count) in STATES.iter().enumerate() {
             writeln!(
-                page,
+                page.text,
                 "| {about} | {count} | {} | **{}** | {:.0} | **{:.2}** |",
                 Spread::of(seconds[i].clone()).scaled(1e6),
                 ratios(&seconds[i], &seconds[0]),
@@ -61,7 +68,7 @@ pub(crate) fn section() -> Result<String, Failure> {
 }
 
 fn problem(states: usize, all_limits: bool) -> Result<MeritFunction, Failure> {
-    let mut document = design::with_states(states)?;
+    let mut document = design::with_states("river-lidar-2x-6x", states)?;
     if all_limits {
         let path = design::home().join("../configs/river-lidar-2x-6x.json");
         let shipped: serde_json::Value = serde_json::from_slice(&std::fs::read(path)?)?;
