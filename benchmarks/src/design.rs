@@ -64,7 +64,7 @@ pub(crate) fn with_states(name: &str, count: usize) -> Result<Value, Failure> {
     let last = document["states"][document["states"].as_array().map_or(0, Vec::len) - 1].clone();
     let states = between_states(&document["states"], count).ok_or("the states are not as known")?;
     document["states"] = states;
-    if let Some(held) = document["held"].as_array_mut() {
+    if let Some(held) = document.get_mut("held").and_then(Value::as_array_mut) {
         let old = format!("/states/{}/", last["name"].as_str().unwrap_or_default());
         let new = format!("/states/{}/", count - 1);
         for address in held {

@@ -18,6 +18,8 @@ const WITHIN: f64 = 1.01;
 const NOTHING: f64 = 1e-4;
 /// First step bounds the MINPACK port is tried with.
 const STEP_BOUNDS: [f64; 4] = [100.0, 10.0, 1.0, 0.1];
+/// The designs on which all solvers find the same minimum.
+const ALIKE: [&str; 4] = ["three-singlets", "four-singlets", "cemented-pairs", "one-mover"];
 /// Our optimisations a round; their median stands against the peer's.
 const OURS_A_ROUND: usize = 9;
 const PEERS_A_ROUND: usize = 3;
@@ -109,14 +111,13 @@ the same run: median (min … max). A ratio above 1 is how much longer the peer 
 impl Match {
     /// What was wanted of it, for the designs on which all solvers find the same minimum.
     fn verdict(&self, design: &str) -> Option<Verdict> {
-        let alike = ["three-singlets", "four-singlets", "cemented-pairs", "one-mover"];
         let wanted = match self.peer.as_str() {
             "SciPy" => 1000.0,
             "Ceres" => 3.0,
             _ => 2.0,
         };
         let what = format!("{} ({}) over drawtube: {design}", self.peer, self.options);
-        alike.contains(&design).then(|| Verdict::at_least(what, wanted, self.ratio))
+        ALIKE.contains(&design).then(|| Verdict::at_least(what, wanted, self.ratio))
     }
 
     fn row(&self, design: &str) -> Result<String, Failure> {
@@ -172,7 +173,8 @@ impl Job {
         if let Some(best) = fastest(&trial, target) {
             raced.push((best, merit));
         }
-        if let Some(plain) = survey.iter().find(|run| run.options == "trf-differences") {
+        let plain = survey.iter().find(|run| run.options == "trf-differences");
+        if let Some(plain) = plain.filter(|_| ALIKE.contains(&self.name)) {
             raced.push((plain.options.clone(), plain.merit));
         }
         let mut matches = Vec::new();

@@ -19,7 +19,8 @@ names of designs, to measure only those), `more-states`, `derivatives`, `trace`,
 `instructions` or `profile`. All figures are median (min … max).
 
 The peers: `pip install numpy scipy` for SciPy; `apt-get install libceres-dev` and a C++ compiler for
-Ceres, whose program `peers/ceres/build.sh` builds into `target/peers/` on the way; `valgrind` for the
+Ceres, whose program `peers/ceres/build.sh` builds into `target/peers/` on the way (the library as it
+is packaged, residuals and derivatives with `-O3 -march=native`); `valgrind` for the
 instruction counts, `perf` for the profile. What is missing is skipped and named. By hand:
 
 ```sh
@@ -91,7 +92,8 @@ pub(crate) fn write() -> Result<(), Failure> {
     ];
     for (name, section) in sections {
         eprintln!("{name}");
-        let section = section()?;
+        // What was measured is not thrown away for one section that failed.
+        let section = section().unwrap_or_else(|failure| failed(name, &failure));
         write!(rest, "\n{}", section.text)?;
         for verdict in section.verdicts {
             let Verdict { what, wanted, measured, met } = verdict;
@@ -101,6 +103,11 @@ pub(crate) fn write() -> Result<(), Failure> {
     }
     let page = format!("{HEAD}\n{machine}\n{verdicts}{rest}");
     Ok(write_whole(&design::home().join("README.md"), page.as_bytes(), Existing::Replace)?)
+}
+
+fn failed(name: &str, failure: &Failure) -> Section {
+    eprintln!("{name}: {failure}");
+    Section::new(&format!("## {name}\n\nFailed: {failure}\n"))
 }
 
 /// The machine and the versions measured.
