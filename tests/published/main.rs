@@ -5,5 +5,6 @@ mod certified_regression;
 mod first_order;
 mod glass;
 mod least_squares;
+mod scipy;
 mod smooth;
 mod trace;
