@@ -96,7 +96,8 @@ pub(crate) fn section() -> Result<Section, Failure> {
         let heights: Vec<f64> = (0..rays).map(|i| 1.8 * (i as f64 + 0.5) / rays as f64).collect();
         let mut paths = vec![0.0; rays];
         let mut bundle = Bundle::new();
-        bundle.trace(&train, &heights, &mut paths)?;
+        bundle.load([&train], &heights);
+        bundle.trace(&mut paths)?;
         let numbers: Vec<Eight> = heights
             .chunks(LANES)
             .map(|chunk| std::array::from_fn(|lane| 1.0 + chunk[lane]))
@@ -104,7 +105,7 @@ pub(crate) fn section() -> Result<Section, Failure> {
         let mut sums = vec![[0.0; LANES]; numbers.len()];
         let (mut ends, mut last) = (sums.clone(), sums.clone());
         let mut trace = || {
-            let _ = bundle.trace(black_box(&train), black_box(&heights), &mut paths);
+            let _ = black_box(&mut bundle).trace(&mut paths);
         };
         let mut independent = || free(black_box(&numbers), black_box(&mut sums));
         let mut in_turn = || chained(black_box(&numbers), black_box(&mut ends));

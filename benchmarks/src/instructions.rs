@@ -65,8 +65,9 @@ pub(crate) fn repeat(kernel: &str, calls: usize) -> Result<(), Failure> {
             let train = bare_loop::train()?;
             let heights: Vec<f64> = (0..64).map(|i| 1.8 * (f64::from(i) + 0.5) / 64.0).collect();
             let (mut bundle, mut paths) = (Bundle::new(), vec![0.0; 64]);
+            bundle.load([&train], &heights);
             for _ in 0..calls {
-                bundle.trace(std::hint::black_box(&train), &heights, &mut paths)?;
+                std::hint::black_box(&mut bundle).trace(&mut paths)?;
             }
         }
         "residuals" => {
