@@ -8,6 +8,7 @@ mod help;
 mod mistakes;
 mod optimise;
 mod program;
+mod readme;
 mod signals;
 mod streams;
 mod trace;

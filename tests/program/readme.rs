@@ -1,0 +1,58 @@
+//! Every console block of the README is what the program prints, effort of the solver aside.
+
+use std::path::Path;
+use std::process::Command;
+
+use driver::write_whole::{Existing, write_whole};
+
+use crate::program::{root, without_effort};
+
+/// A command line of the README and what it says the program prints.
+struct Block {
+    line: String,
+    printed: String,
+}
+
+fn blocks(readme: &str) -> Vec<Block> {
+    let parts = readme.split("```console\n$ ").skip(1);
+    let block = |part: &str| {
+        let text = part.split("\n```").next().unwrap_or_default();
+        let (line, printed) = text.split_once('\n').unwrap_or((text, ""));
+        Block { line: line.to_owned(), printed: printed.to_owned() }
+    };
+    parts.map(block).collect()
+}
+
+/// The folder the tour is taken in: the shipped designs, and one with a slip of the pen.
+fn scene(folder: &Path) {
+    let configs = folder.join("configs");
+    std::fs::create_dir(&configs).unwrap();
+    for file in std::fs::read_dir(root().join("configs")).unwrap() {
+        let file = file.unwrap();
+        std::fs::copy(file.path(), configs.join(file.file_name())).unwrap();
+    }
+    let design = std::fs::read_to_string(configs.join("river-lidar-2x-6x.json")).unwrap();
+    let slip = design.replace(r#"thicknesses_mm": [2.0]"#, r#"thiknesses_mm": [2.0]"#);
+    assert_ne!(slip, design);
+    write_whole(&folder.join("wrong.json"), slip.as_bytes(), Existing::Keep).unwrap();
+}
+
+#[test]
+fn every_block_is_what_the_program_prints() {
+    let readme = std::fs::read_to_string(root().join("README.md")).unwrap();
+    let folder = tempfile::tempdir().unwrap();
+    scene(folder.path());
+    let blocks = blocks(&readme);
+    assert!(blocks.len() >= 6, "the tour has come to an end too soon");
+    for Block { line, printed } in blocks {
+        let arguments: Vec<&str> = line.strip_prefix("drawtube ").unwrap().split(' ').collect();
+        let output = Command::new(env!("CARGO_BIN_EXE_drawtube-program"))
+            .args(arguments)
+            .env_clear()
+            .current_dir(folder.path())
+            .output()
+            .unwrap();
+        let told = String::from_utf8([output.stdout, output.stderr].concat()).unwrap();
+        assert_eq!(without_effort(told.trim_end()), without_effort(&printed), "$ {line}");
+    }
+}
