@@ -3,6 +3,7 @@
 //! This is the resolved form of a design file: names are looked up, counts fit, every number is
 //! finite and possible. It is made by [`OpticsDocument::resolve`](crate::optics_document::OpticsDocument::resolve).
 
+use crate::document::Address;
 use crate::glass::{Glass, GlassError};
 use crate::housing::Housing;
 use crate::sequence::Sequence;
@@ -125,6 +126,18 @@ impl Design {
             gaps.extend(state.spacings_mm.get(g));
         }
         Ok(Train::of_design(surfaces, gaps, indices))
+    }
+
+    /// Address of an element as people read it, with names where there are any.
+    #[must_use]
+    pub fn element_address(&self, group: usize, element: usize) -> Address {
+        let at = Address::root().key("groups");
+        let Some(part) = self.groups.get(group) else { return at.index(group) };
+        let at = at.key(part.name.as_str()).key("elements");
+        match part.elements.get(element).and_then(|element| element.name.as_deref()) {
+            Some(name) => at.key(name),
+            None => at.index(element),
+        }
     }
 
     /// First vertex to last vertex in a state, mm.

@@ -2,10 +2,11 @@
 
 use serde::Serialize;
 use surface_model::design::{Design, ZoomState};
+use surface_model::fault::RayFault;
 use surface_model::paraxial::ParaxialRay;
 use surface_model::skew::{RayStart, trace_ray};
 use surface_model::train::Train;
-use surface_model::wavefront::{TracedBeam, wavefront_error};
+use surface_model::wavefront::{TracedBeam, WavefrontFault, wavefront_error};
 
 use super::finite;
 use super::surface::{self, SurfaceAssessment};
@@ -141,7 +142,7 @@ fn wavefronts(design: &Design, state: &ZoomState) -> (Vec<WavefrontAssessment>, 
     let mut fault = None;
     let mut of = |nm: f64| -> WavefrontAssessment {
         let mut tell = |reason: String| {
-            fault.get_or_insert(format!("at {nm} nm {reason}"));
+            fault.get_or_insert(format!("at {nm} nm: {reason}"));
         };
         let train: Option<Train> = match design.train(state, nm) {
             Ok(train) => Some(train),
@@ -153,7 +154,7 @@ fn wavefronts(design: &Design, state: &ZoomState) -> (Vec<WavefrontAssessment>, 
         let error = train.and_then(|train| {
             TracedBeam::new(design.beam.radius_mm(), design.beam.traced_to, nm)
                 .and_then(|beam| wavefront_error(&train, &beam))
-                .map_err(|error| tell(error.to_string()))
+                .map_err(|error| tell(reason(design, &error)))
                 .ok()
         });
         WavefrontAssessment {
@@ -163,4 +164,16 @@ fn wavefronts(design: &Design, state: &ZoomState) -> (Vec<WavefrontAssessment>, 
         }
     };
     (state.wavelengths_nm.iter().map(|&nm| of(nm)).collect(), fault)
+}
+
+/// A wavefront's fault with the surface by its address.
+fn reason(design: &Design, fault: &WavefrontFault) -> String {
+    let WavefrontFault::Ray { height_mm, fault: RayFault { surface, reason } } = fault else {
+        return fault.to_string();
+    };
+    let at = design.sequence().surfaces.get(*surface).map_or_else(String::new, |id| {
+        let element = design.element_address(id.group, id.element);
+        format!(" at {}", element.key("radii_mm").index(id.surface))
+    });
+    format!("entering at {height_mm:.4} mm, {reason}{at}")
 }

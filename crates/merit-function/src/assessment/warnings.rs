@@ -11,22 +11,23 @@ pub(super) fn warnings(
     states: &[StateAssessment],
 ) -> Vec<String> {
     let mut out = Vec::new();
-    let parts = design.groups.iter().flat_map(|group| &group.elements);
-    for (element, part) in elements.iter().zip(parts) {
+    let parts = design.groups.iter().enumerate().flat_map(|(g, group)| {
+        group.elements.iter().enumerate().map(move |(e, part)| (design.element_address(g, e), part))
+    });
+    for (element, (at, part)) in elements.iter().zip(parts) {
         if let Some(footprint) = element.footprint_mm
             && footprint > part.diameter_mm
         {
             out.push(format!(
-                "{}: traced rays take up {footprint:.2} mm, more than its clear diameter of {} mm; \
+                "{at}: traced rays take up {footprint:.2} mm, more than its clear diameter of {} mm; \
                  make it larger, or trace less of the beam",
-                element.at, part.diameter_mm
+                part.diameter_mm
             ));
         }
         if element.edge_thicknesses_mm.iter().flatten().any(|&edge| edge <= 0.0) {
             out.push(format!(
-                "{}: its surfaces cross inside the clear diameter; give it an edge_thickness_mm \
-                 limit and optimise",
-                element.at
+                "{at}: its surfaces cross inside the clear diameter; give it an edge_thickness_mm \
+                 limit and optimise"
             ));
         }
     }
