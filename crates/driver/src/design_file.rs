@@ -11,6 +11,7 @@ use surface_model::document::{
 };
 use surface_model::optics_document::OpticsDocument;
 use surface_model::place::Place;
+use surface_model::ranges::LARGEST_RADIUS_MM;
 
 use crate::freedom::{self, FreedomDocument};
 
@@ -94,11 +95,11 @@ impl DesignFile {
     }
 }
 
-/// Writes one number into a document, in the file's own unit. A place that the document lacks (a
-/// conic constant left out) is made.
+/// Writes one number into a document, in the file's own unit: a radius too large for a file is
+/// flat. A place that the document lacks (a conic constant left out) is made.
 fn put(value: &mut Value, place: Place, number: f64) {
     let written = match place {
-        Place::Radius(_) if number == 0.0 => Value::from("flat"),
+        Place::Radius(_) if (1.0 / number).abs() > LARGEST_RADIUS_MM => Value::from("flat"),
         Place::Radius(_) => Value::from(1.0 / number),
         _ => Value::from(number),
     };

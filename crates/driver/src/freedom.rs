@@ -1,6 +1,6 @@
 //! What the optimiser may change: `free` and `held` of a design file.
 
-use std::collections::HashMap;
+use std::collections::{HashMap, HashSet};
 
 use merit_function::block::Bounds;
 use merit_function::variables::FreePlace;
@@ -128,7 +128,7 @@ pub(crate) fn resolve(
 ) -> Result<Vec<FreePlace>, Vec<Complaint>> {
     let resolver = Resolver::new(design, file);
     let mut complaints = Vec::new();
-    let mut free: Vec<FreePlace> = Vec::new();
+    let mut free: HashMap<Place, Bounds> = HashMap::new();
     let default = ["radii", "spacings"].map(|word| FreeDocument::Words(word.into()));
     let entries = document.free.as_deref().unwrap_or(&default);
     for (i, entry) in entries.iter().enumerate() {
@@ -140,21 +140,16 @@ pub(crate) fn resolve(
             places.into_iter().map(|place| Ok((place, own_range(place, range)?))).collect()
         });
         match found {
-            Ok::<Vec<(Place, Bounds)>, _>(places) => {
-                for (place, own_range) in places {
-                    // A later entry about the same number wins: the finer one follows the coarser.
-                    free.retain(|free| free.place != place);
-                    free.push(FreePlace { place, own_range });
-                }
-            }
+            // A later entry about the same number wins: the finer one follows the coarser.
+            Ok::<Vec<(Place, Bounds)>, _>(places) => free.extend(places),
             Err(error) => {
                 complaints.push(error.complaint(Address::root().key("free").index(i)));
             }
         }
     }
     for (i, words) in document.held.iter().enumerate() {
-        match resolver.places(words) {
-            Ok(held) => free.retain(|free| !held.contains(&free.place)),
+        match resolver.places(words).map(HashSet::<Place>::from_iter) {
+            Ok(held) => free.retain(|place, _| !held.contains(place)),
             Err(error) => {
                 complaints.push(error.complaint(Address::root().key("held").index(i)));
             }
@@ -163,9 +158,10 @@ pub(crate) fn resolve(
     if !complaints.is_empty() {
         return Err(complaints);
     }
-    let order: HashMap<String, usize> = resolver.order();
-    free.sort_by_key(|free| order.get(&free.place.address().to_string()).copied());
-    Ok(free)
+    let in_order = resolver.places.iter().filter_map(|&(_, place)| {
+        free.get(&place).map(|&own_range| FreePlace { place, own_range })
+    });
+    Ok(in_order.collect())
 }
 
 struct Resolver<'a> {
@@ -187,10 +183,6 @@ impl<'a> Resolver<'a> {
         Self { file, places: written.collect() }
     }
 
-    fn order(&self) -> HashMap<String, usize> {
-        self.places.iter().enumerate().map(|(i, (at, _))| (at.to_string(), i)).collect()
-    }
-
     fn places(&self, words: &str) -> Result<Vec<Place>, FreedomError> {
         let kind: fn(&Place) -> bool = match words {
             "radii" => |place| matches!(place, Place::Radius(_)),
@@ -207,11 +199,11 @@ impl<'a> Resolver<'a> {
 
     fn at(&self, written: &str) -> Result<Vec<Place>, FreedomError> {
         let address: Address = written.parse()?;
-        let mut places = Vec::new();
-        for at in self.targets(&address)? {
-            let within = self.places.iter().filter(|(place, _)| at.contains(place));
-            places.extend(within.map(|&(_, place)| place));
-        }
+        let targets: HashSet<Address> = self.targets(&address)?.into_iter().collect();
+        let around = |at: &Address| std::iter::successors(Some(at.clone()), Address::parent);
+        let within =
+            self.places.iter().filter(|(at, _)| around(at).any(|at| targets.contains(&at)));
+        let places: Vec<Place> = within.map(|&(_, place)| place).collect();
         if places.is_empty() { Err(FreedomError::Unchangeable(written.into())) } else { Ok(places) }
     }
 

@@ -53,6 +53,8 @@ pub(crate) enum Measure {
 #[derive(Debug, Clone)]
 pub(crate) struct StateView {
     pub(crate) train: Train,
+    /// Where each group's first vertex stands in the housing, mm.
+    pub(crate) positions_mm: Vec<f64>,
     /// Paraxial marginal height at every surface for unit height at entry.
     pub(crate) marginal: Vec<f64>,
     /// Heights of the outermost traced ray at every surface over its height at entry; `None` when
@@ -74,7 +76,7 @@ impl LimitItem {
     /// ray that fails).
     pub(crate) fn value(&self, design: &Design, views: &[StateView]) -> Option<f64> {
         let view = &views[self.state.unwrap_or(0)];
-        let state = &design.states[self.state.unwrap_or(0)];
+        let front_mm = view.positions_mm.first().copied().unwrap_or(0.0);
         let surface = |place: usize| &view.train.surfaces()[place];
         match self.measure {
             Measure::Gap(gap) => Some(view.train.gaps()[gap]),
@@ -87,7 +89,7 @@ impl LimitItem {
                 Some(surface(place).semi_diameter * surface(place).curvature.abs())
             }
             Measure::Travel(group) => {
-                let at = design.states.iter().map(|state| design.positions_mm(state)[group]);
+                let at = views.iter().map(|view| view.positions_mm[group]);
                 let (low, high) = at.fold((f64::INFINITY, f64::NEG_INFINITY), |(low, high), z| {
                     (low.min(z), high.max(z))
                 });
@@ -95,10 +97,8 @@ impl LimitItem {
             }
             Measure::Incidence(place) => view.incidence_deg.as_ref().map(|angles| angles[place]),
             Measure::Length => Some(view.train.length()),
-            Measure::Front => Some(design.front_mm(state)),
-            Measure::Rear => {
-                Some(design.housing.track_mm - design.front_mm(state) - view.train.length())
-            }
+            Measure::Front => Some(front_mm),
+            Measure::Rear => Some(design.housing.track_mm - front_mm - view.train.length()),
             Measure::Focus => {
                 let exact = view.edge_ray.as_ref()?;
                 Some(view.marginal.iter().chain(exact).copied().fold(f64::INFINITY, f64::min))

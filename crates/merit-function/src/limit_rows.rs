@@ -37,7 +37,8 @@ pub(crate) enum Measured {
 impl RowRule {
     /// All rows of a design.
     pub(crate) fn all(design: &Design, limits: &Limits, variables: &Variables) -> Vec<Self> {
-        let maker = Maker { design, variables, sequence: design.sequence() };
+        let positions_mm = design.all_positions_mm();
+        let maker = Maker { design, variables, positions_mm, sequence: design.sequence() };
         let mut rows = Vec::new();
         for item in LimitItem::all(design, limits) {
             maker.rows_of(&item, &mut rows);
@@ -57,6 +58,8 @@ struct Position {
 struct Maker<'a> {
     design: &'a Design,
     variables: &'a Variables,
+    /// Per state, where each group's first vertex stands in the housing now.
+    positions_mm: Vec<Vec<f64>>,
     sequence: Sequence,
 }
 
@@ -145,7 +148,7 @@ impl Maker<'_> {
     fn still_position(&self, group: usize) -> (f64, Vec<(usize, f64)>) {
         match self.shared(SharedVariable::FixedPosition(group)) {
             Some(number) => (0.0, vec![(number, 1.0)]),
-            None => (self.design.middle_position_mm(group), Vec::new()),
+            None => (self.positions_mm.first().map_or(0.0, |z| z[group]), Vec::new()),
         }
     }
 
@@ -201,9 +204,8 @@ impl Maker<'_> {
             }
         }
         if item.range.min > 0.0 {
-            let states = self.design.states.iter().enumerate();
-            let mut order: Vec<(usize, f64)> =
-                states.map(|(k, state)| (k, self.design.positions_mm(state)[group])).collect();
+            let positions = self.positions_mm.iter().enumerate();
+            let mut order: Vec<(usize, f64)> = positions.map(|(k, z)| (k, z[group])).collect();
             order.sort_by(|a, b| a.1.total_cmp(&b.1));
             if let (Some(first), Some(last)) = (order.first(), order.last()) {
                 push(first.0, -1.0, 0.0);

@@ -74,6 +74,8 @@ pub struct MeritFunction {
     states: Vec<StateOptics>,
     /// Every state's train at every wavelength: what the bundle traces.
     trains: Vec<Train>,
+    /// Per train of the bundle, its state and wavelength in nm.
+    traced_in: Vec<(usize, f64)>,
     beam: TracedPart,
     sample: BeamSample,
     weights: RayWeights,
@@ -98,7 +100,7 @@ impl MeritFunction {
         let rules = RowRule::all(design, &wishes.limits, &variables);
         let mut states = Vec::with_capacity(design.states.len());
         let mut rows = Vec::with_capacity(design.states.len());
-        let mut trains = Vec::new();
+        let (mut trains, mut traced_in) = (Vec::new(), Vec::new());
         for (k, (state, goals)) in design.states.iter().zip(&wishes.states).enumerate() {
             let first = trains.len();
             for &nm in &state.wavelengths_nm {
@@ -109,6 +111,7 @@ impl MeritFunction {
                 trains.truncate(first);
             }
             let bundled = first..trains.len();
+            traced_in.extend(bundled.clone().zip(&state.wavelengths_nm).map(|(_, &nm)| (k, nm)));
             let paraxial = [goals.ratio_percent, goals.exit_slope_urad];
             rows.push(rays * bundled.len() + paraxial.iter().flatten().count());
             states.push(StateOptics {
@@ -134,6 +137,7 @@ impl MeritFunction {
             states,
             paths: vec![0.0; rays * trains.len()],
             trains,
+            traced_in,
             beam,
             weights: RayWeights::new(&sample.weights),
             sample,
@@ -159,8 +163,9 @@ impl MeritFunction {
         self.rows.set_edge_mm(self.beam.radius_mm * self.beam.reach * fraction);
     }
 
-    /// Brings every train to these values of the variables.
-    fn place(&mut self, variables: &[f64]) {
+    /// Brings every train to these values of the variables. Bounds keep spheres within reach of
+    /// their clear diameter, but cannot do so where a conic constant changes too.
+    fn place(&mut self, variables: &[f64]) -> Result<(), EvaluationFault> {
         let quantities = self.variables.quantities();
         for (k, state) in self.states.iter_mut().enumerate() {
             for binding in self.variables.bindings(k) {
@@ -174,6 +179,16 @@ impl MeritFunction {
                 }
             }
         }
+        if self.variables.quantities().shapes().any() { self.reach() } else { Ok(()) }
+    }
+
+    /// Whether every surface reaches its clear diameter; all trains have the same surfaces.
+    fn reach(&self) -> Result<(), EvaluationFault> {
+        let surfaces = self.states.first().map_or(&[][..], |state| state.train.surfaces());
+        match surfaces.iter().position(|surface| surface.sag(surface.semi_diameter).is_none()) {
+            Some(surface) => Err(EvaluationFault::Edge { surface }),
+            None => Ok(()),
+        }
     }
 
     /// Traces every state's rays; with `kept`, so that they can be differentiated.
@@ -185,14 +200,8 @@ impl MeritFunction {
         };
         traced.map_err(|failed| {
             let height_mm = self.sample.heights_mm[failed.ray];
-            let state = self.states.iter().find(|state| state.bundled.contains(&failed.train));
-            match state {
-                Some(state) => {
-                    let nm = state.wavelengths_nm[failed.train - state.bundled.start];
-                    EvaluationFault::ray(&state.name, nm, height_mm, failed.fault)
-                }
-                None => EvaluationFault::ray("", f64::NAN, height_mm, failed.fault),
-            }
+            let (state, nm) = self.traced_in[failed.train];
+            EvaluationFault::ray(&self.states[state].name, nm, height_mm, failed.fault)
         })
     }
 
@@ -313,7 +322,7 @@ impl BlockProblem for MeritFunction {
     }
 
     fn residuals(&mut self, variables: &[f64], out: &mut [f64]) -> Result<(), EvaluationFault> {
-        self.place(variables);
+        self.place(variables)?;
         self.trace(false)?;
         let mut rest = out;
         for k in 0..self.states.len() {
@@ -329,7 +338,7 @@ impl BlockProblem for MeritFunction {
         variables: &[f64],
         out: &mut Linearisation,
     ) -> Result<(), EvaluationFault> {
-        self.place(variables);
+        self.place(variables)?;
         self.trace(true)?;
         self.bundle.differentiate(self.variables.quantities().shapes());
         for (k, block) in out.states.iter_mut().enumerate() {
@@ -342,7 +351,7 @@ impl BlockProblem for MeritFunction {
     }
 
     fn limits(&mut self, variables: &[f64], out: &mut Vec<f64>) -> Result<(), EvaluationFault> {
-        self.place(variables);
+        self.place(variables)?;
         self.rows.values(&self.states, variables, out)
     }
 }

@@ -71,6 +71,8 @@ struct Dependent {
 #[derive(Debug, Clone, PartialEq, Default)]
 struct StateVariables {
     own: Vec<Place>,
+    /// Where its own variables begin in the packed vector.
+    own_start: usize,
     bindings: Vec<Binding>,
     dependents: Vec<Dependent>,
 }
@@ -171,12 +173,8 @@ impl Variables {
     pub fn value(&self, variables: &[f64], state: usize, column: Column) -> f64 {
         match column {
             Column::Shared(number) => variables[number],
-            Column::Own(number) => variables[self.own_start(state) + number],
+            Column::Own(number) => variables[self.states[state].own_start + number],
         }
-    }
-
-    fn own_start(&self, state: usize) -> usize {
-        self.shared.len() + self.states[..state].iter().map(|s| s.own.len()).sum::<usize>()
     }
 
     /// Writes the variables into the design they were made for, dependent spacings included.
@@ -187,7 +185,7 @@ impl Variables {
             }
         }
         for (k, state) in self.states.iter().enumerate() {
-            let own = &variables[self.own_start(k)..];
+            let own = &variables[state.own_start..];
             for (place, &value) in state.own.iter().zip(own) {
                 place.set(design, value);
             }
@@ -216,6 +214,10 @@ struct Builder<'a> {
     design: &'a Design,
     limits: &'a Limits,
     free: &'a [FreePlace],
+    /// Per state and spacing, its own range if it is free.
+    free_spacings: Vec<Vec<Option<Bounds>>>,
+    /// Per state, where each group's first vertex stands in the housing.
+    positions_mm: Vec<Vec<f64>>,
     sequence: Sequence,
     quantities: Quantities,
 }
@@ -229,7 +231,16 @@ impl<'a> Builder<'a> {
         });
         let shapes = shaped.fold(Shapes::None, Shapes::with);
         let quantities = Quantities::new(sequence.surfaces.len(), shapes);
-        Self { design, limits, free, sequence, quantities }
+        let states = design.states.iter();
+        let mut free_spacings: Vec<Vec<Option<Bounds>>> =
+            states.map(|state| vec![None; state.spacings_mm.len()]).collect();
+        for free in free {
+            if let Place::Spacing { state, after } = free.place {
+                free_spacings[state][after] = Some(free.own_range);
+            }
+        }
+        let positions_mm = design.all_positions_mm();
+        Self { design, limits, free, free_spacings, positions_mm, sequence, quantities }
     }
 
     fn build(&self) -> Result<Variables, VariablesError> {
@@ -246,8 +257,11 @@ impl<'a> Builder<'a> {
             shared.extend(moving.map(SharedVariable::TravelStart));
         }
         let mut states = Vec::with_capacity(self.design.states.len());
+        let mut own_start = shared.len();
         for k in 0..self.design.states.len() {
-            states.push(self.state(k, &shared, &spans)?);
+            let state = self.state(k, own_start, &shared, &spans)?;
+            own_start += state.own.len();
+            states.push(state);
         }
         let mut bounds = Vec::new();
         let mut start = Vec::new();
@@ -268,24 +282,24 @@ impl<'a> Builder<'a> {
     }
 
     fn bounds(&self, place: Place) -> Result<Bounds, VariablesError> {
-        let own = self
-            .free
-            .iter()
-            .find(|free| free.place == place)
-            .map_or(Bounds::FREE, |free| free.own_range);
+        let own = match place {
+            Place::Spacing { state, after } => self.free_spacings[state][after],
+            _ => self.free.iter().find(|free| free.place == place).map(|free| free.own_range),
+        };
+        let own = own.unwrap_or(Bounds::FREE);
         bounds_of(place, self.design, self.limits)
             .and_then(|bounds| bounds.meet(own))
             .ok_or(VariablesError::NoRange(place))
     }
 
     fn start_of(&self, variable: &SharedVariable) -> f64 {
-        let positions = |group: usize| {
-            self.design.states.iter().map(move |state| self.design.positions_mm(state)[group])
-        };
+        let mut positions = self.positions_mm.iter();
         match *variable {
             SharedVariable::Glass(place) => place.value(self.design),
-            SharedVariable::FixedPosition(group) => positions(group).next().unwrap_or(0.0),
-            SharedVariable::TravelStart(group) => positions(group).fold(f64::INFINITY, f64::min),
+            SharedVariable::FixedPosition(group) => positions.next().map_or(0.0, |z| z[group]),
+            SharedVariable::TravelStart(group) => {
+                positions.map(|z| z[group]).fold(f64::INFINITY, f64::min)
+            }
         }
     }
 
@@ -311,12 +325,13 @@ impl<'a> Builder<'a> {
     }
 
     fn spacing_is_free(&self, state: usize, after: usize) -> bool {
-        self.free.iter().any(|free| free.place == Place::Spacing { state, after })
+        self.free_spacings[state][after].is_some()
     }
 
     fn state(
         &self,
         k: usize,
+        own_start: usize,
         shared: &[SharedVariable],
         spans: &[Span],
     ) -> Result<StateVariables, VariablesError> {
@@ -326,7 +341,7 @@ impl<'a> Builder<'a> {
             let give_way = (span.from..span.to).rev().find(|&after| self.spacing_is_free(k, after));
             dependent_in.push(give_way);
         }
-        let mut state = StateVariables::default();
+        let mut state = StateVariables { own_start, ..StateVariables::default() };
         for after in 0..spacings {
             if self.spacing_is_free(k, after) && !dependent_in.contains(&Some(after)) {
                 state.own.push(Place::Spacing { state: k, after });

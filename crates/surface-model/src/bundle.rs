@@ -96,15 +96,17 @@ impl Bundle {
         Lanes(std::array::from_fn(|lane| heights_mm[(vector * LANES + lane).min(self.rays - 1)]))
     }
 
-    /// Sets a quantity of one train; curvatures, conic constants and asphere coefficients are
-    /// those of all trains, since they are the same glass.
+    /// Sets a quantity of one train. Curvatures, conic constants and asphere coefficients are the
+    /// same glass in all trains and must be set alike in each before the next trace.
     #[inline]
     pub fn set_quantity(&mut self, train: usize, quantity: Quantity, value: f64) {
         match quantity {
-            Quantity::Curvature(at) => self.reshape(at, |surface| surface.curvature = value),
-            Quantity::Conic(at) => self.reshape(at, |surface| surface.conic = value),
+            Quantity::Curvature(at) => {
+                self.reshape(train, at, |surface| surface.curvature = value);
+            }
+            Quantity::Conic(at) => self.reshape(train, at, |surface| surface.conic = value),
             Quantity::Asphere(at, term) => {
-                self.reshape(at, |surface| surface.asphere[term] = value);
+                self.reshape(train, at, |surface| surface.asphere[term] = value);
             }
             Quantity::Gap(gap) => {
                 self.each_vector(train, |block, place| {
@@ -117,12 +119,12 @@ impl Bundle {
         }
     }
 
-    fn reshape(&mut self, at: usize, change: impl Fn(&mut Surface)) {
-        for block in &mut self.blocks {
+    fn reshape(&mut self, train: usize, at: usize, change: impl Fn(&mut Surface)) {
+        self.each_vector(train, |block, _| {
             let stage = &mut block.stages.list[at];
             change(&mut stage.surface);
             stage.sphere = stage.surface.is_sphere();
-        }
+        });
     }
 
     fn each_vector(&mut self, train: usize, change: impl Fn(&mut Block, usize)) {

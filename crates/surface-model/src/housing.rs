@@ -83,6 +83,25 @@ impl Design {
         self.offsets_mm(state).iter().map(|offset| front + offset).collect()
     }
 
+    /// The same for every state. Where positions are measured from a middle group, its own follows
+    /// from all states and is worked out once.
+    #[must_use]
+    pub fn all_positions_mm(&self) -> Vec<Vec<f64>> {
+        let middle = match self.housing.anchor() {
+            Anchor::Middle(group) => Some((group, self.middle_position_mm(group))),
+            _ => None,
+        };
+        let positions = |state: &ZoomState| {
+            let offsets = self.offsets_mm(state);
+            let front = match middle {
+                Some((group, position)) => position - offsets[group],
+                None => self.front_mm(state),
+            };
+            offsets.iter().map(|offset| front + offset).collect()
+        };
+        self.states.iter().map(positions).collect()
+    }
+
     /// The one position of a fixed middle group: halfway between the foremost and the rearmost
     /// that keep all states inside.
     #[must_use]

@@ -49,6 +49,7 @@ pub mod optics_document;
 pub mod paraxial;
 pub mod place;
 pub mod quadrature;
+pub mod ranges;
 pub mod real;
 mod resolve;
 pub mod reverse;

@@ -6,7 +6,7 @@ use crate::sequence::SurfaceId;
 use crate::surface::{ASPHERE_TERMS, asphere_power};
 
 /// One number of a design that the optimiser may change.
-#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+#[derive(Debug, Clone, Copy, PartialEq, Eq, Hash)]
 pub enum Place {
     /// Vertex radius of a surface (curvature inside the program).
     Radius(SurfaceId),

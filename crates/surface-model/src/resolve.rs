@@ -11,19 +11,26 @@ use crate::housing::Housing;
 use crate::optics_document::{
     ElementDocument, GroupDocument, OpticsDocument, RadiusDocument, ShapeDocument, StateDocument,
 };
+use crate::ranges::{
+    LARGEST_COEFFICIENT, LARGEST_CONIC, LARGEST_RADIUS_MM, LONGEST_MM, SMALLEST_RADIUS_MM,
+};
 use crate::surface::{ASPHERE_TERMS, Surface, asphere_power};
-
-/// Largest length a design can have anywhere, mm: a kilometre. Beyond it is a slip of the pen.
-const LONGEST_MM: f64 = 1e6;
 
 const LENGTH: Allowed = Allowed { low: 0.0, high: LONGEST_MM, above_low: true, unit: " mm" };
 const DISTANCE: Allowed = Allowed { above_low: false, ..LENGTH };
 const WAVELENGTH: Allowed = Allowed { low: 100.0, high: 30_000.0, above_low: false, unit: " nm" };
 const REACH: Allowed = Allowed { low: 0.0, high: 4.0, above_low: true, unit: "" };
-const RADIUS: Allowed = Allowed { low: 1e-3, high: 1e9, above_low: false, unit: " mm either way" };
+const RADIUS: Allowed = Allowed {
+    low: SMALLEST_RADIUS_MM,
+    high: LARGEST_RADIUS_MM,
+    above_low: false,
+    unit: " mm either way",
+};
 const RATIO: Allowed = Allowed { low: 0.01, high: 100.0, above_low: false, unit: " either way" };
-const CONIC: Allowed = Allowed { low: -1e6, high: 1e6, above_low: false, unit: "" };
-const COEFFICIENT: Allowed = Allowed { low: -1e6, high: 1e6, above_low: false, unit: "" };
+const CONIC: Allowed =
+    Allowed { low: -LARGEST_CONIC, high: LARGEST_CONIC, above_low: false, unit: "" };
+const COEFFICIENT: Allowed =
+    Allowed { low: -LARGEST_COEFFICIENT, high: LARGEST_COEFFICIENT, above_low: false, unit: "" };
 
 /// Collects faults as it goes.
 struct Resolver {

@@ -3,7 +3,7 @@
 use crate::design::Group;
 
 /// A surface, named by group, element and place in the element, all counted from 0.
-#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+#[derive(Debug, Clone, Copy, PartialEq, Eq, Hash)]
 pub struct SurfaceId {
     /// Which group.
     pub group: usize,

@@ -56,14 +56,17 @@ pub struct Merit {
 /// Assesses a design against what is wanted of it.
 #[must_use]
 pub fn assess(design: &Design, wishes: &Wishes) -> Assessment {
+    let positions = design.all_positions_mm();
     let states: Vec<StateAssessment> = design
         .states
         .iter()
+        .zip(&positions)
         .zip(&wishes.states)
-        .map(|(state, goals)| state::assess(design, state, goals))
+        .map(|((state, positions), goals)| state::assess(design, state, positions, goals))
         .collect();
+    let placed = design.states.iter().zip(positions);
     let views: Option<Vec<StateView>> =
-        design.states.iter().map(|state| state::view(design, state)).collect();
+        placed.map(|(state, positions)| state::view(design, state, positions)).collect();
     let views = views.unwrap_or_default();
     let items = LimitItem::all(design, &wishes.limits);
     let judged: Vec<(LimitAssessment, f64)> =

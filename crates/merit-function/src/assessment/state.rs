@@ -60,7 +60,11 @@ pub struct WavefrontAssessment {
 
 /// A state's train at its first wavelength with the rays that limits are measured on. `None`
 /// where a glass is not known at the wavelength, which a resolved design rules out.
-pub(super) fn view(design: &Design, state: &ZoomState) -> Option<StateView> {
+pub(super) fn view(
+    design: &Design,
+    state: &ZoomState,
+    positions_mm: Vec<f64>,
+) -> Option<StateView> {
     let train = design.train(state, *state.wavelengths_nm.first()?).ok()?;
     let mut paraxial = ParaxialRay::default();
     let marginal = paraxial.trace(&train, 1.0, 0.0).map(|()| paraxial.heights().to_vec());
@@ -74,6 +78,7 @@ pub(super) fn view(design: &Design, state: &ZoomState) -> Option<StateView> {
         .map(|ray| ray.points().iter().map(|point| point.incidence_rad.to_degrees()).collect());
     Some(StateView {
         train,
+        positions_mm,
         marginal: marginal.unwrap_or_default(),
         edge_ray: heights,
         incidence_deg: angles,
@@ -81,7 +86,12 @@ pub(super) fn view(design: &Design, state: &ZoomState) -> Option<StateView> {
 }
 
 /// Assesses one state.
-pub(super) fn assess(design: &Design, state: &ZoomState, goals: &Goals) -> StateAssessment {
+pub(super) fn assess(
+    design: &Design,
+    state: &ZoomState,
+    positions_mm: &[f64],
+    goals: &Goals,
+) -> StateAssessment {
     let first = state.wavelengths_nm.first().and_then(|&nm| design.train(state, nm).ok());
     let paraxial = first.as_ref().and_then(|train| {
         let mut ray = ParaxialRay::default();
@@ -94,7 +104,7 @@ pub(super) fn assess(design: &Design, state: &ZoomState, goals: &Goals) -> State
     let ratio_error_percent = ratio.map(|ratio| (ratio / state.ratio - 1.0) * 100.0);
     let (wavefront, fault) = wavefronts(design, state);
     let misses = misses(goals, ratio_error_percent, exit_slope_urad, &wavefront);
-    let positions = design.groups.iter().zip(design.positions_mm(state));
+    let positions = design.groups.iter().zip(positions_mm);
     StateAssessment {
         name: state.name.clone(),
         ratio_wanted: state.ratio,
@@ -103,7 +113,7 @@ pub(super) fn assess(design: &Design, state: &ZoomState, goals: &Goals) -> State
         exit_slope_urad,
         track_mm: design.length_mm(state),
         spacings_mm: state.spacings_mm.clone(),
-        positions_mm: positions.map(|(group, z)| (group.name.clone(), z.into())).collect(),
+        positions_mm: positions.map(|(group, &z)| (group.name.clone(), z.into())).collect(),
         exit_diameter_mm: ratio.map(|ratio| ratio.abs() * design.beam.diameter_mm),
         wavefront,
         surfaces: first.map_or_else(Vec::new, |train| surface::assess(design, &train)),
