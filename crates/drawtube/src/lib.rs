@@ -1,7 +1,7 @@
 //! The command line of drawtube, thin: arguments in, results on standard output, everything else
 //! on standard error, and an exit status that says how it went.
 //!
-//! A command takes its typed arguments (`arguments.rs`), turns them into a request in which nothing
+//! A command takes its typed arguments (`arguments/`), turns them into a request in which nothing
 //! contradicts itself, lets the crates below do the work, and prints. What goes wrong is a
 //! `Failure`, told in one place. Start reading at [`main`], then `commands/optimise.rs`.
 

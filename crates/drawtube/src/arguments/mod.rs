@@ -1,0 +1,136 @@
+//! The command line as it is typed: typed values, nothing opened, nothing decided. Each command
+//! turns its part into a request of its own.
+
+mod assess;
+mod completions;
+mod glass;
+mod optimise;
+mod progress;
+mod schema;
+mod trace;
+
+use std::ffi::OsString;
+
+use clap::error::ErrorKind;
+use clap::{CommandFactory, Parser, Subcommand};
+
+pub(crate) use assess::AssessArguments;
+pub(crate) use completions::CompletionsArguments;
+pub(crate) use glass::GlassArguments;
+pub(crate) use optimise::{MethodArgument, OptimiseArguments};
+pub(crate) use progress::ProgressArgument;
+pub(crate) use schema::{DocumentKind, SchemaArguments};
+pub(crate) use trace::TraceArguments;
+
+use crate::console::{Console, ErrorFormat};
+use crate::exit_status::ExitStatus;
+use crate::failure::Failure;
+
+/// Design zoom laser-beam expanders: lens groups that slide in a tube of fixed length.
+///
+/// Results go to standard output, progress and messages to standard error. DESIGN is a file, or
+/// "-" for standard input.
+#[derive(Debug, Parser)]
+#[command(
+    name = "drawtube",
+    bin_name = "drawtube",
+    version,
+    max_term_width = 80,
+    arg_required_else_help = true,
+    disable_help_subcommand = true,
+    after_help = STATUSES
+)]
+pub(crate) struct Arguments {
+    /// What to do.
+    #[command(subcommand)]
+    pub(crate) command: Command,
+    /// How errors are told on standard error.
+    #[arg(
+        long,
+        global = true,
+        value_enum,
+        default_value_t,
+        value_name = "FORM",
+        help_heading = "Everywhere"
+    )]
+    pub(crate) errors: ErrorFormat,
+}
+
+const STATUSES: &str = "\
+Exit status:
+    0  done
+    1  the work failed: a ray does not get through, nothing was found
+    2  the input or the command line is wrong
+    3  done, but a goal or limit is missed (only with --require)
+    7  the result cannot be written
+  130  stopped by Ctrl-C, the best so far saved; 143 the same by SIGTERM
+
+Example:
+  drawtube assess configs/river-lidar-2x-6x.json";
+
+/// What the program can do.
+#[derive(Debug, Subcommand)]
+pub(crate) enum Command {
+    /// Tell every zoom state's numbers and every limit of a design
+    Assess(AssessArguments),
+    /// Improve a design: move what is free until the goals are met as well as they can be
+    Optimise(OptimiseArguments),
+    /// Follow one exact ray through a design, surface by surface
+    Trace(TraceArguments),
+    /// Look through the glass catalogue, or find equivalents of a glass
+    Glass(GlassArguments),
+    /// Print the JSON Schema of a kind of document
+    Schema(SchemaArguments),
+    /// Print the completions for a shell
+    Completions(CompletionsArguments),
+}
+
+/// A command line that was not taken, or that asked for help.
+pub(crate) struct Refused {
+    error: clap::Error,
+    errors: ErrorFormat,
+}
+
+impl Arguments {
+    /// Reads a command line.
+    pub(crate) fn read(words: impl IntoIterator<Item = OsString>) -> Result<Self, Refused> {
+        let words: Vec<OsString> = words.into_iter().collect();
+        Self::try_parse_from(&words)
+            .map_err(|error| Refused { error, errors: errors_asked(&words) })
+    }
+
+    /// The command line as the shell completions need it.
+    pub(crate) fn grammar() -> clap::Command {
+        Self::command()
+    }
+}
+
+/// How errors are to be told on a command line that could not be taken as a whole.
+fn errors_asked(words: &[OsString]) -> ErrorFormat {
+    let spaced = words.windows(2).any(|pair| pair[0] == "--errors" && pair[1] == "json");
+    let joined = words.iter().any(|word| word == "--errors=json");
+    if spaced || joined { ErrorFormat::Json } else { ErrorFormat::Text }
+}
+
+impl Refused {
+    /// Prints the help that was asked for, or what is wrong.
+    pub(crate) fn tell(self) -> ExitStatus {
+        let Self { error, errors } = self;
+        let console = Console::new(errors);
+        match error.kind() {
+            ErrorKind::DisplayHelp | ErrorKind::DisplayVersion => {
+                console.print_help(&error.render());
+                ExitStatus::Done
+            }
+            ErrorKind::DisplayHelpOnMissingArgumentOrSubcommand => {
+                console.say_help(&error.render());
+                ExitStatus::WrongInput
+            }
+            _ if errors == ErrorFormat::Json => console.fail(&Failure::CommandLine(error)),
+            _ => {
+                console.say_help(&error.render());
+                ExitStatus::WrongInput
+            }
+        }
+    }
+}
