@@ -126,10 +126,7 @@ pub fn optimise(
 /// # Errors
 /// There is no goal or nothing free, or ranges contradict each other.
 pub fn merit_of(file: &DesignFile) -> Result<MeritFunction, OptimiseError> {
-    let any_goal = file.wishes.states.iter().any(|goals| {
-        let present = [goals.wavefront_rms_waves, goals.ratio_percent, goals.exit_slope_urad];
-        present.iter().any(Option::is_some) && goals.weight > 0.0
-    });
+    let any_goal = file.wishes.states.iter().any(|goals| goals.any() && goals.weight > 0.0);
     if !any_goal {
         return Err(OptimiseError::NoGoals);
     }

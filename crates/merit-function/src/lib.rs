@@ -22,10 +22,12 @@
 //! One unit of merit is one goal missed by exactly its `within`. Start reading at [`problem`].
 
 pub mod assessment;
+mod beam_rows;
 pub mod block;
 mod bounds;
 mod edge;
 pub mod fault;
+mod focus_rows;
 pub mod goals;
 mod limit_item;
 mod limit_rows;

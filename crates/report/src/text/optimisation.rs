@@ -7,7 +7,7 @@ use merit_function::assessment::{Assessment, StateAssessment};
 
 use super::number::{as_written, counted, fixed_or_dash, significant_or_dash};
 use super::table::{ARROW, Column, Table};
-use super::{WIDTH, assessment, optimised, paragraph, sections, warnings};
+use super::{WIDTH, assessment, hazards, optimised, paragraph, sections, warnings};
 
 /// What is told about an optimisation.
 #[derive(Debug)]
@@ -40,6 +40,7 @@ pub fn optimisation(told: &Told<'_>) -> String {
     parts.push(how(told));
     let all: Vec<String> = told.warnings.iter().chain(&told.end.warnings).cloned().collect();
     parts.push(warnings(&all));
+    parts.push(hazards::cautions(told.end));
     parts.push(assessment::closing(told.after, told.end));
     sections(parts)
 }

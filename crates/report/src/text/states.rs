@@ -48,6 +48,51 @@ pub(crate) fn reached(file: &DesignFile, assessment: &Assessment) -> String {
     table.text()
 }
 
+/// The goals about the real beam in every state that has any; empty if none has.
+pub(crate) fn of_the_beam(file: &DesignFile, assessment: &Assessment) -> String {
+    let mut table = Table::new([
+        (Column::Left, "state"),
+        (Column::Right, "divergence \nmrad "),
+        (Column::Right, "wanted\nwithin"),
+        (Column::Right, "beam at \nrange mm "),
+        (Column::Right, "wanted"),
+        (Column::Right, "at m"),
+        (Column::Right, "focus \nat m "),
+        (Column::Right, "wanted"),
+    ]);
+    for (goals, state) in file.wishes.states.iter().zip(&assessment.states) {
+        let (range, focus) = (goals.diameter_at_range_mm, goals.exit_focus_m);
+        if goals.divergence_mrad.is_none() && range.is_none() && focus.is_none() {
+            continue;
+        }
+        let divergence = state.divergence_mrad.filter(|_| goals.divergence_mrad.is_some());
+        let off = range.and_then(|goal| Some(state.diameter_at_range_mm? - goal.wanted_mm));
+        let about = |wanted: f64, within: f64| {
+            format!("{} ± {}", as_written(wanted), as_written(within))
+        };
+        table.row([
+            state.name.clone(),
+            marked(
+                significant_or_dash(divergence, 4),
+                missed(state.divergence_mrad, goals.divergence_mrad),
+            ),
+            goals.divergence_mrad.map_or_else(String::new, as_written),
+            marked(
+                fixed_or_dash(state.diameter_at_range_mm, 2),
+                missed(off, range.map(|goal| goal.within_mm)),
+            ),
+            range.map_or_else(String::new, |goal| about(goal.wanted_mm, goal.within_mm)),
+            range.map_or_else(String::new, |goal| as_written(goal.range_m)),
+            marked(
+                significant_or_dash(state.exit_focus_m, 4),
+                missed(state.exit_focus_error_m, focus.map(|goal| goal.within_m)),
+            ),
+            focus.map_or_else(String::new, |goal| about(goal.wanted_m, goal.within_m)),
+        ]);
+    }
+    if table.is_empty() { String::new() } else { table.text() }
+}
+
 /// The goals, where they are the same in all states and there are any.
 fn shared_goals(file: &DesignFile) -> Option<Goals> {
     let first = *file.wishes.states.first()?;
