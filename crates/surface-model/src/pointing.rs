@@ -2,7 +2,8 @@
 //!
 //! The beam turns about the first vertex. Optical path is counted from its own plane wavefront to
 //! the plane through the last vertex; the part of it that is linear in the place of exit is the
-//! *tilt* of the beam that leaves, and what is left is wavefront error.
+//! *tilt* of the beam that leaves, and what is left is wavefront error. A beam that should come to a
+//! focus has its path counted on to that focus: the same tilt then moves the focus sideways.
 
 use std::f64::consts::PI;
 
@@ -73,7 +74,9 @@ impl Section {
                     vignetted += weight;
                 }
                 let exit = ray.exit();
-                let path = exit.path_mm + position_mm[1] * direction[1];
+                let height = exit.position_mm[0].hypot(exit.position_mm[1]);
+                let to_focus = beam.path_to_focus_mm(height);
+                let path = exit.path_mm + position_mm[1] * direction[1] + to_focus;
                 through.push([weight, path, exit.position_mm[1]]);
             }
         }

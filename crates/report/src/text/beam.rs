@@ -1,7 +1,7 @@
 //! The tables of the real beam.
 
 use driver::design_file::DesignFile;
-use merit_function::assessment::{Assessment, BeamAssessment, BeamNumbers};
+use merit_function::assessment::{Assessment, BeamAssessment, BeamNumbers, SurfaceBeam};
 
 use super::number::{NONE, as_written, fixed, fixed_or_dash, significant, significant_or_dash};
 use super::table::{Column, Table};
@@ -124,7 +124,7 @@ fn ranges(file: &DesignFile, beams: &[BeamAssessment]) -> String {
     let laser = &file.design.beam.laser;
     let peak = |dose: Option<f64>, diameter_mm: f64| {
         let peak = |dose| surface_model::gaussian::peak_per_cm2(dose, 0.5 * diameter_mm);
-        dose.map_or_else(|| NONE.to_owned(), |dose| significant(peak(dose), 3))
+        dose.map_or_else(dash, |dose| significant(peak(dose), 3))
     };
     let heads = [
         (Column::Right, "range m"),
@@ -170,38 +170,67 @@ fn pointing(beams: &[BeamAssessment]) -> String {
     if table.is_empty() { String::new() } else { table.text() }
 }
 
+/// Most states side by side in one table.
+const ABREAST: usize = 5;
+
+/// The beam at every surface, states side by side; then what is clipped, where anything is.
 fn surfaces(file: &DesignFile, beams: &[BeamAssessment]) -> String {
-    let heads = [
-        (Column::Left, "surface"),
-        (Column::Right, "beam mm"),
-        (Column::Right, "clear Ø\nmm"),
-        (Column::Right, "clipped\n%"),
-    ];
-    let elements = || file.design.groups.iter().flat_map(|group| &group.elements);
-    let clear: Vec<f64> = elements()
-        .flat_map(|part| part.surfaces.iter().map(|surface| 2.0 * surface.semi_diameter))
-        .collect();
-    let mut table = Table::new(NAMES.into_iter().chain(heads));
-    for (i, beam) in beams.iter().enumerate() {
-        for (k, surface) in beam.surfaces.iter().enumerate() {
-            let names = if k == 0 { names(beams, i) } else { [String::new(), String::new()] };
-            table.row(names.into_iter().chain([
-                surface_name(file, &surface.at),
-                fixed(surface.diameter_mm, 3),
-                clear.get(k).map_or_else(|| NONE.to_owned(), |&clear| as_written(clear)),
-                significant(negligible(surface.clipped_percent), 2),
-            ]));
-        }
+    let told = |what: &str, of: &dyn Fn(&SurfaceBeam) -> String| {
+        beams.chunks(ABREAST).map(|some| beside(file, some, what, of)).collect::<Vec<_>>()
+    };
+    let mut parts = told("beam mm", &|surface| fixed(surface.diameter_mm, 3));
+    let all = || beams.iter().flat_map(|beam| &beam.surfaces);
+    if all().any(|surface| surface.clipped_percent >= WORTH_TELLING_PERCENT) {
+        parts.extend(told("clipped %", &|surface| {
+            significant(negligible(surface.clipped_percent), 2)
+        }));
     }
-    if table.is_empty() { String::new() } else { table.text() }
+    sections(parts)
+}
+
+/// Share of the power outside a clear diameter that is worth a table, per cent.
+const WORTH_TELLING_PERCENT: f64 = 1e-3;
+
+fn beside(
+    file: &DesignFile,
+    beams: &[BeamAssessment],
+    what: &str,
+    of: &dyn Fn(&SurfaceBeam) -> String,
+) -> String {
+    let several = beams.iter().any(|beam| beam.wavelength_nm != beams[0].wavelength_nm);
+    let head = |beam: &BeamAssessment| {
+        let nm = as_written(beam.wavelength_nm);
+        let nm = if several { format!("\n{nm} nm") } else { String::new() };
+        format!("{}{nm}\n{what}", beam.state)
+    };
+    let heads: Vec<String> = beams.iter().map(head).collect();
+    let mut columns = vec![(Column::Left, "surface"), (Column::Right, "clear\nØ mm")];
+    columns.extend(heads.iter().map(|head| (Column::Right, head.as_str())));
+    let mut table = Table::new(columns);
+    let elements = file.design.groups.iter().flat_map(|group| &group.elements);
+    let clear = elements.flat_map(|part| part.surfaces.iter().map(|s| 2.0 * s.semi_diameter));
+    let Some(first) = beams.iter().find(|beam| !beam.surfaces.is_empty()) else {
+        return String::new();
+    };
+    for (k, (surface, clear)) in first.surfaces.iter().zip(clear).enumerate() {
+        let mut row = vec![surface_name(file, &surface.at), as_written(clear)];
+        row.extend(beams.iter().map(|beam| beam.surfaces.get(k).map_or_else(dash, of)));
+        table.row(row);
+    }
+    table.text()
+}
+
+fn dash() -> String {
+    NONE.to_owned()
 }
 
 fn explained() -> String {
     paragraph(
         "Diameters are 1/e² diameters and divergences full angles (ISO 11146-1). Divergence and M² \
          behind the design are with its aberration, all else is first order. \"On axis far off\" is \
-         the intensity by diffraction over that of the same beam without aberration and perfectly \
-         collimated. Groups move away from the laser by positive ways.",
+         the intensity by diffraction over that of the same beam without aberration, collimated (or, \
+         where that is the goal, focused) as it should be. Groups move away from the laser by \
+         positive ways.",
         WIDTH,
         "",
     )

@@ -38,8 +38,17 @@ pub(crate) fn summary(file: &DesignFile, assessment: &Assessment) -> String {
 /// What must be said wherever power is.
 #[must_use]
 pub(crate) fn cautions(assessment: &Assessment) -> String {
-    let caution = |text: &String| paragraph(&format!("caution: {text}"), WIDTH, "  ");
-    assessment.cautions.iter().map(caution).collect::<Vec<_>>().join("\n")
+    assessment.cautions.iter().map(|text| caution(text)).collect::<Vec<_>>().join("\n")
+}
+
+/// The first of them: what an account of something else says.
+#[must_use]
+pub(crate) fn first_caution(assessment: &Assessment) -> String {
+    assessment.cautions.first().map_or_else(String::new, |text| caution(text))
+}
+
+fn caution(text: &str) -> String {
+    paragraph(&format!("caution: {text}"), WIDTH, "  ")
 }
 
 const EXPOSURE: [(Column, &str); 4] = [

@@ -40,7 +40,7 @@ pub fn optimisation(told: &Told<'_>) -> String {
     parts.push(how(told));
     let all: Vec<String> = told.warnings.iter().chain(&told.end.warnings).cloned().collect();
     parts.push(warnings(&all));
-    parts.push(hazards::cautions(told.end));
+    parts.push(hazards::first_caution(told.end));
     parts.push(assessment::closing(told.after, told.end));
     sections(parts)
 }

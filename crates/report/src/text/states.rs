@@ -50,47 +50,76 @@ pub(crate) fn reached(file: &DesignFile, assessment: &Assessment) -> String {
 
 /// The goals about the real beam in every state that has any; empty if none has.
 pub(crate) fn of_the_beam(file: &DesignFile, assessment: &Assessment) -> String {
-    let mut table = Table::new([
-        (Column::Left, "state"),
-        (Column::Right, "divergence \nmrad "),
-        (Column::Right, "wanted\nwithin"),
-        (Column::Right, "beam at \nrange mm "),
-        (Column::Right, "wanted"),
-        (Column::Right, "at m"),
-        (Column::Right, "focus \nat m "),
-        (Column::Right, "wanted"),
-    ]);
-    for (goals, state) in file.wishes.states.iter().zip(&assessment.states) {
-        let (range, focus) = (goals.diameter_at_range_mm, goals.exit_focus_m);
-        if goals.divergence_mrad.is_none() && range.is_none() && focus.is_none() {
-            continue;
-        }
-        let divergence = state.divergence_mrad.filter(|_| goals.divergence_mrad.is_some());
-        let off = range.and_then(|goal| Some(state.diameter_at_range_mm? - goal.wanted_mm));
-        let about = |wanted: f64, within: f64| {
-            format!("{} ± {}", as_written(wanted), as_written(within))
-        };
-        table.row([
-            state.name.clone(),
-            marked(
-                significant_or_dash(divergence, 4),
-                missed(state.divergence_mrad, goals.divergence_mrad),
-            ),
-            goals.divergence_mrad.map_or_else(String::new, as_written),
-            marked(
-                fixed_or_dash(state.diameter_at_range_mm, 2),
-                missed(off, range.map(|goal| goal.within_mm)),
-            ),
-            range.map_or_else(String::new, |goal| about(goal.wanted_mm, goal.within_mm)),
-            range.map_or_else(String::new, |goal| as_written(goal.range_m)),
-            marked(
-                significant_or_dash(state.exit_focus_m, 4),
-                missed(state.exit_focus_error_m, focus.map(|goal| goal.within_m)),
-            ),
-            focus.map_or_else(String::new, |goal| about(goal.wanted_m, goal.within_m)),
+    let goals = || file.wishes.states.iter();
+    let divergence = goals().any(|goals| goals.divergence_mrad.is_some());
+    let range = goals().any(|goals| goals.diameter_at_range_mm.is_some());
+    let focus = goals().any(|goals| goals.exit_focus_m.is_some());
+    let mut heads = vec![(Column::Left, "state")];
+    if divergence {
+        heads.extend([(Column::Right, "divergence \nmrad "), (Column::Right, "goal")]);
+    }
+    if range {
+        heads.extend([
+            (Column::Right, "at\nrange m"),
+            (Column::Right, "beam \nmm "),
+            (Column::Right, "goal"),
         ]);
     }
-    if table.is_empty() { String::new() } else { table.text() }
+    if focus {
+        heads.extend([(Column::Right, "focus \nat m "), (Column::Right, "goal")]);
+    }
+    if heads.len() == 1 {
+        return String::new();
+    }
+    let mut table = Table::new(heads);
+    for (goals, state) in file.wishes.states.iter().zip(&assessment.states) {
+        let mut row = vec![state.name.clone()];
+        if divergence {
+            row.extend(divergence_cells(goals, state));
+        }
+        if range {
+            row.extend(range_cells(goals, state));
+        }
+        if focus {
+            row.extend(focus_cells(goals, state));
+        }
+        table.row(row);
+    }
+    table.text()
+}
+
+fn about(wanted: f64, within: f64) -> String {
+    format!("{} ± {}", as_written(wanted), as_written(within))
+}
+
+fn divergence_cells(goals: &Goals, state: &StateAssessment) -> [String; 2] {
+    let value = state.divergence_mrad;
+    let within = goals.divergence_mrad;
+    [
+        marked(significant_or_dash(value, 4), missed(value, within)),
+        within.map_or_else(String::new, |within| format!("≤ {}", as_written(within))),
+    ]
+}
+
+fn range_cells(goals: &Goals, state: &StateAssessment) -> [String; 3] {
+    let Some(goal) = goals.diameter_at_range_mm else { return [const { String::new() }; 3] };
+    let off = state.diameter_at_range_mm.map(|diameter| diameter - goal.wanted_mm);
+    [
+        as_written(goal.range_m),
+        marked(fixed_or_dash(state.diameter_at_range_mm, 2), missed(off, Some(goal.within_mm))),
+        about(goal.wanted_mm, goal.within_mm),
+    ]
+}
+
+fn focus_cells(goals: &Goals, state: &StateAssessment) -> [String; 2] {
+    let Some(goal) = goals.exit_focus_m else { return [const { String::new() }; 2] };
+    [
+        marked(
+            significant_or_dash(state.exit_focus_m, 4),
+            missed(state.exit_focus_error_m, Some(goal.within_m)),
+        ),
+        about(goal.wanted_m, goal.within_m),
+    ]
 }
 
 /// The goals, where they are the same in all states and there are any.
