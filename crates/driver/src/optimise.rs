@@ -48,8 +48,8 @@ pub struct OptimisationReport {
     pub evaluations: u64,
     /// Wall time of the solver alone, s.
     pub solve_seconds: f64,
-    /// Free numbers that ended on a bound of their own.
-    pub on_bounds: usize,
+    /// Addresses of the free numbers that ended on a bound.
+    pub on_bounds: Vec<String>,
     /// Number of variables.
     pub variables: usize,
     /// The design as it was.
@@ -137,9 +137,14 @@ pub fn merit_of(file: &DesignFile) -> Result<MeritFunction, OptimiseError> {
     Ok(MeritFunction::new(&file.design, &file.wishes, variables, RAYS)?)
 }
 
-fn on_bounds(merit: &MeritFunction, variables: &[f64]) -> usize {
-    let bounds = merit.bounds().iter().zip(variables);
-    bounds.filter(|(bounds, value)| **value <= bounds.low || **value >= bounds.high).count()
+/// Free numbers that stand on a bound, by their addresses in the file.
+fn on_bounds(merit: &MeritFunction, variables: &[f64]) -> Vec<String> {
+    let bounds = merit.bounds().iter().zip(variables).enumerate();
+    bounds
+        .filter(|(_, (bounds, value))| **value <= bounds.low || **value >= bounds.high)
+        .filter_map(|(variable, _)| merit.variables().address(variable))
+        .map(|address| address.to_string())
+        .collect()
 }
 
 /// A start through which the whole beam passes.
