@@ -46,11 +46,8 @@ impl FocusFan<'_> {
             *residual = exit.path_mm + sphere_path_mm(focus_mm, y);
             if block.is_some() {
                 let by_height = focus_mm.signum() * y / focus_mm.hypot(y);
-                let weights = ExitSum {
-                    path_mm: 1.0,
-                    position_mm: [0.0, by_height],
-                    ..ExitSum::default()
-                };
+                let weights =
+                    ExitSum { path_mm: 1.0, position_mm: [0.0, by_height], ..ExitSum::default() };
                 gradients.push(ray.differentiate(&weights, shapes));
             }
         }
@@ -62,10 +59,9 @@ impl FocusFan<'_> {
             gather(gradient, &state.by_shared, first + ray, &mut block.by_shared);
             gather(gradient, &state.by_own, first + ray, &mut block.by_own);
         }
-        for mut columns in [
-            block.by_shared.rows_mut(first, count),
-            block.by_own.rows_mut(first, count),
-        ] {
+        for mut columns in
+            [block.by_shared.rows_mut(first, count), block.by_own.rows_mut(first, count)]
+        {
             for mut column in columns.column_iter_mut() {
                 self.centre(column.as_mut_slice(), scale);
             }

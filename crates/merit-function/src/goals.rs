@@ -130,9 +130,8 @@ impl Goals {
         let range = own.and_then(|own| own.diameter_at_range_mm).or(all.diameter_at_range_mm);
         let focus = own.and_then(|own| own.exit_focus_m).or(all.exit_focus_m);
         let own_slope = own.and_then(|own| own.exit_slope_urad);
-        let focus = focus.filter(|_| {
-            own_slope.is_none() || own.is_some_and(|own| own.exit_focus_m.is_some())
-        });
+        let focus = focus
+            .filter(|_| own_slope.is_none() || own.is_some_and(|own| own.exit_focus_m.is_some()));
         Self {
             wavefront_rms_waves: pick(|goals| goals.wavefront_rms_waves),
             ratio_percent: pick(|goals| goals.ratio_percent),

@@ -37,8 +37,7 @@ impl Ghost {
 
     /// Every double reflection of a train of so many surfaces.
     pub fn doubles(surfaces: usize) -> impl Iterator<Item = Self> {
-        (0..surfaces)
-            .flat_map(|first| (0..first).map(move |second| Self::Double { first, second }))
+        (0..surfaces).flat_map(|first| (0..first).map(move |second| Self::Double { first, second }))
     }
 
     /// Share of the power that takes this way, by the reflectance of every surface; what other
@@ -100,13 +99,17 @@ impl GhostWay {
     pub fn new(train: &Train, ghost: Ghost) -> Self {
         let mut surfaces = Vec::new();
         let mut media = vec![(0, 1.0)];
-        let forward = |range: std::ops::Range<usize>, surfaces: &mut Vec<usize>, media: &mut Vec<(usize, f64)>| {
+        let forward = |range: std::ops::Range<usize>,
+                       surfaces: &mut Vec<usize>,
+                       media: &mut Vec<(usize, f64)>| {
             for surface in range {
                 surfaces.push(surface);
                 media.push((surface + 1, 1.0));
             }
         };
-        let back = |range: std::ops::Range<usize>, surfaces: &mut Vec<usize>, media: &mut Vec<(usize, f64)>| {
+        let back = |range: std::ops::Range<usize>,
+                    surfaces: &mut Vec<usize>,
+                    media: &mut Vec<(usize, f64)>| {
             for surface in range.rev() {
                 surfaces.push(surface);
                 media.push((surface, -1.0));
@@ -312,10 +315,7 @@ mod tests {
     fn a_way_meets_its_surfaces_in_order() {
         let way = |ghost| GhostWay::new(&train(), ghost).surfaces().to_vec();
         assert_eq!(way(Ghost::Single { at: 2 }), [0, 1, 2, 1, 0]);
-        assert_eq!(
-            way(Ghost::Double { first: 3, second: 1 }),
-            [0, 1, 2, 3, 2, 1, 2, 3, 4, 5]
-        );
+        assert_eq!(way(Ghost::Double { first: 3, second: 1 }), [0, 1, 2, 3, 2, 1, 2, 3, 4, 5]);
         assert_eq!(way(Ghost::Double { first: 1, second: 0 }), [0, 1, 0, 1, 2, 3, 4, 5]);
         assert_eq!((Ghost::singles(6).count(), Ghost::doubles(6).count()), (6, 15));
     }

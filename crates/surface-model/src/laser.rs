@@ -39,7 +39,7 @@ pub enum BeamFormError {
         diameter_mm: f64,
     },
     /// A beam better than diffraction allows.
-    #[error("diameter and divergence make M² {m_squared} at {wavelength_nm} nm")]
+    #[error("waist and divergence make M² {m_squared:.4} at {wavelength_nm} nm")]
     BelowDiffraction {
         /// What M² would have to be.
         m_squared: f64,
@@ -76,12 +76,10 @@ impl BeamFormError {
     #[must_use]
     pub fn advice(&self) -> Option<String> {
         match self {
-            Self::TooMany => {
-                Some("leave out what the maker gives with the least certainty".into())
-            }
+            Self::TooMany => Some("leave out what the maker gives with the least certainty".into()),
             Self::BelowDiffraction { m_squared, .. } => Some(format!(
-                "diameters are 1/e² diameters and the divergence a full angle; at least {:.4} times \
-                 that product is needed",
+                "waists are 1/e² diameters and divergences full angles: their product has to be {:.4} \
+                 times as large",
                 1.0 / m_squared
             )),
             Self::WaistTooWide { .. } | Self::TooFar { .. } => None,
@@ -128,9 +126,7 @@ impl BeamForm {
         let (waist, divergence, distance) = match (divergence, waist_diameter_mm, waist_distance_mm)
         {
             (None, None, None) => (diameter_mm, product * quality / diameter_mm, 0.0),
-            (Some(divergence), None, None) if m_squared.is_none() => {
-                (diameter_mm, divergence, 0.0)
-            }
+            (Some(divergence), None, None) if m_squared.is_none() => (diameter_mm, divergence, 0.0),
             (Some(divergence), None, None) => {
                 let waist = product * quality / divergence;
                 (waist, divergence, narrower(waist)? / divergence)
@@ -161,7 +157,8 @@ impl BeamForm {
             }
             (None, None, Some(distance)) => {
                 let spread = 2.0 * product * quality * distance.abs();
-                let room = (diameter_mm * diameter_mm - spread) * (diameter_mm * diameter_mm + spread);
+                let room =
+                    (diameter_mm * diameter_mm - spread) * (diameter_mm * diameter_mm + spread);
                 if room < 0.0 {
                     return Err(BeamFormError::TooFar { diameter_mm, waist_distance_mm: distance });
                 }
@@ -337,7 +334,8 @@ mod tests {
         assert!(matches!(wider, Err(BeamFormError::WaistTooWide { .. })), "{wider:?}");
         let far = beam(BeamForm { waist_distance_mm: Some(1e5), ..none });
         assert!(matches!(far, Err(BeamFormError::TooFar { .. })), "{far:?}");
-        let beside = BeamForm { waist_diameter_mm: Some(2.0), waist_distance_mm: Some(0.0), ..none };
+        let beside =
+            BeamForm { waist_diameter_mm: Some(2.0), waist_distance_mm: Some(0.0), ..none };
         assert!(beam(beside).is_err());
     }
 

@@ -97,7 +97,8 @@ fn check(
     faults: &mut Vec<DesignFault>,
 ) {
     if let Some(found) = found.filter(|&found| !allowed.contains(found)) {
-        faults.push(DesignFault { at, error: DesignError::OutOfRange { quantity, found, allowed } });
+        faults
+            .push(DesignFault { at, error: DesignError::OutOfRange { quantity, found, allowed } });
     }
 }
 

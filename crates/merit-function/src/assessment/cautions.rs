@@ -1,6 +1,9 @@
 //! What must be said wherever a laser's power is, and warnings about what it may damage.
 
+use surface_model::design::Design;
+use surface_model::document::Address;
 use surface_model::laser::{Laser, SQUARE_ROOT_RANGE_NS, ScalingDocument, ThresholdDocument};
+use surface_model::place::Place;
 
 use super::StateHazards;
 
@@ -64,29 +67,38 @@ fn of_pulse_length(name: &str, threshold: &ThresholdDocument, laser: &Laser) -> 
     })
 }
 
-/// One warning a state in which something is hit harder than its threshold, or where the beam
-/// comes to a focus.
-pub(super) fn warnings(states: &[StateHazards]) -> Vec<String> {
-    let mut out = Vec::new();
-    for state in states {
-        let hit = state.surfaces.iter().map(|surface| (&surface.at, &surface.exposure));
-        let foci = state.internal_foci.iter().map(|focus| (&focus.behind, &focus.exposure));
-        let ghosts = state.ghosts.iter().filter_map(|ghost| {
-            Some((ghost.reflected_at.first()?, ghost.hardest_on_glass.as_ref()?))
-        });
-        for (what, (at, exposure)) in hit
-            .map(|hit| ("the beam at", hit))
-            .chain(foci.map(|hit| ("the internal focus behind", hit)))
-            .chain(ghosts.map(|hit| ("the ghost reflected at", hit)))
-        {
-            if let Some(times) = exposure.of_threshold.filter(|&times| times > 1.0) {
-                out.push(format!(
-                    "{}: {what} {at} reaches {times:.2} times the threshold given for it; widen \
-                     the beam there, or set a limit on fluence_j_cm2 or ghosts and optimise",
-                    state.state
-                ));
-            }
-        }
-    }
-    out
+/// In each state the place that is hit hardest beyond its threshold.
+pub(super) fn warnings(design: &Design, states: &[StateHazards]) -> Vec<String> {
+    states.iter().filter_map(|state| warning(design, state)).collect()
+}
+
+fn warning(design: &Design, state: &StateHazards) -> Option<String> {
+    let surfaces = state.surfaces.iter().map(|hit| ("the beam at", &hit.at, &hit.exposure));
+    let foci = state
+        .internal_foci
+        .iter()
+        .map(|focus| ("the internal focus behind", &focus.behind, &focus.exposure));
+    let ghosts = state.ghosts.iter().filter_map(|ghost| {
+        Some(("the ghost from", ghost.reflected_at.first()?, ghost.hardest_on_glass.as_ref()?))
+    });
+    let beyond = surfaces.chain(foci).chain(ghosts).filter_map(|(what, at, exposure)| {
+        Some((what, at, exposure.of_threshold.filter(|&times| times > 1.0)?))
+    });
+    let (what, at, times) = beyond.max_by(|a, b| a.2.total_cmp(&b.2))?;
+    Some(format!(
+        "{}: {what} {} reaches {times:.2} times the threshold given for it; widen the beam there, \
+         or set fluence_j_cm2 or ghost_clearance_mm as a limit and optimise",
+        state.state,
+        with_names(design, at)
+    ))
+}
+
+/// A surface's address as people read it.
+fn with_names(design: &Design, at: &Address) -> Address {
+    let ids = design.sequence().surfaces;
+    let id = ids.into_iter().find(|&id| Place::Radius(id).address() == *at);
+    id.map_or_else(
+        || at.clone(),
+        |id| design.element_address(id.group, id.element).key("radii_mm").index(id.surface),
+    )
 }

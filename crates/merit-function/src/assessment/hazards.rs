@@ -119,7 +119,9 @@ pub(super) fn hazards(design: &Design) -> Option<Vec<StateHazards>> {
     if !design.beam.laser.has_power() {
         return None;
     }
-    Some(design.states.iter().filter_map(|state| Inspector::new(design, state)?.inspect()).collect())
+    Some(
+        design.states.iter().filter_map(|state| Inspector::new(design, state)?.inspect()).collect(),
+    )
 }
 
 /// Where light hits.

@@ -111,7 +111,7 @@ pub fn assess(design: &Design, wishes: &Wishes) -> Assessment {
         cautions: cautions::cautions(&design.beam.laser),
         warnings: warnings::warnings(design, &elements, &states)
             .into_iter()
-            .chain(cautions::warnings(hazards.as_deref().unwrap_or_default()))
+            .chain(cautions::warnings(design, hazards.as_deref().unwrap_or_default()))
             .collect(),
         hazards,
         states,

@@ -2,7 +2,7 @@
 //!
 //! Heights and slopes of both rays of the beam behind the last surface are quadratic in the way of
 //! one group (linear at an end of the row), so three traces give them for every way. Looked for
-//! are, nearest to where the group stands and within the air around it, the least divergence, and
+//! are, nearest to where the group stands and within the air around it and the tube, the least divergence, and
 //! the place that puts the waist at the last vertex.
 
 use serde::Serialize;
@@ -22,7 +22,7 @@ pub struct Readjustment {
     /// The group that moves.
     pub group: String,
     /// Its way to the least divergence, mm, positive away from the laser; `None` if there is none
-    /// within the air around it.
+    /// within the air around it and the tube.
     pub to_least_divergence_mm: Option<f64>,
     /// The divergence then, full angle, mrad.
     pub least_divergence_mrad: Option<f64>,
@@ -39,8 +39,9 @@ pub(super) fn readjustments(
 ) -> Vec<Readjustment> {
     let groups = design.groups.iter().zip(&design.housing.fixed).enumerate();
     let free = groups.filter(|(_, (_, fixed))| !**fixed);
+    let positions_mm = design.positions_mm(state);
     free.map(|(g, (group, _))| {
-        let way = Way::of(design, state, train, beam, g);
+        let way = Way::of(design, state, train, beam, (g, positions_mm[g]));
         let least = way.as_ref().and_then(|way| way.nearest(true, &|at| way.growth_slope(at)));
         let waist = way.as_ref().and_then(|way| way.nearest(false, &|at| way.waist_product(at)));
         Readjustment {
@@ -85,7 +86,7 @@ impl Way {
         state: &ZoomState,
         train: &Train,
         beam: &GaussianBeam,
-        group: usize,
+        (group, position_mm): (usize, f64),
     ) -> Option<Self> {
         let sequence = design.sequence();
         let gap = |after: usize| sequence.place_of_gap(GapId::Spacing { after });
@@ -113,8 +114,9 @@ impl Way {
             }
         }
         let room = |after: Option<usize>| after.and_then(|g| state.spacings_mm.get(g)).copied();
-        let high_mm = room(Some(group)).unwrap_or(design.housing.track_mm);
-        let low_mm = -room(group.checked_sub(1)).unwrap_or(design.housing.track_mm);
+        let rear_mm = design.housing.track_mm - position_mm - design.groups[group].length_mm();
+        let high_mm = room(Some(group)).unwrap_or(rear_mm.max(0.0));
+        let low_mm = -room(group.checked_sub(1)).unwrap_or(position_mm.max(0.0));
         let [heights, slopes] = rays.map(|pair| pair.map(Quadratic::through));
         Some(Self { heights, slopes, low_mm, high_mm })
     }

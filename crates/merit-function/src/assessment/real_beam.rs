@@ -123,8 +123,10 @@ pub struct PointingAssessment {
 #[must_use]
 pub fn real_beam(design: &Design, wishes: &Wishes, ranges_m: &[f64]) -> Vec<BeamAssessment> {
     let states = design.states.iter().zip(&wishes.states);
-    let all = states.flat_map(|(state, goals)| state.wavelengths_nm.iter().map(move |&nm| (state, goals, nm)));
-    all.filter_map(|(state, goals, nm)| Looker { design, state, goals, nm }.look(ranges_m)).collect()
+    let all = states
+        .flat_map(|(state, goals)| state.wavelengths_nm.iter().map(move |&nm| (state, goals, nm)));
+    all.filter_map(|(state, goals, nm)| Looker { design, state, goals, nm }.look(ranges_m))
+        .collect()
 }
 
 struct Looker<'a> {

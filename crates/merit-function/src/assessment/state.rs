@@ -203,9 +203,8 @@ impl ExitBeam {
 
 /// The same misses for the goals about the real beam.
 fn beam_misses(goals: &Goals, beam: Option<&ExitBeam>) -> Vec<Option<f64>> {
-    let divergence = goals
-        .divergence_mrad
-        .map(|within| beam.map(|beam| beam.divergence_mrad() / within));
+    let divergence =
+        goals.divergence_mrad.map(|within| beam.map(|beam| beam.divergence_mrad() / within));
     let range = goals
         .diameter_at_range_mm
         .map(|goal| beam.map(|beam| goal.miss(beam.diameter_mm(goal.range_m))));

@@ -188,12 +188,41 @@ fn worst_ghosts(file: &DesignFile, states: &[StateHazards]) -> String {
     table.text()
 }
 
+/// Every ghost, with the place of its focus nearest to glass.
 fn ghosts(file: &DesignFile, states: &[StateHazards]) -> String {
-    let mut table = Table::new(GHOST);
+    let hardest = |ghost: &GhostHazard| ghost.hardest_on_glass?.of_threshold;
+    let judged = states.iter().flat_map(|state| &state.ghosts).any(|g| hardest(g).is_some());
+    let on_glass = if judged { "of thres-\nhold %" } else { "on glass\nJ/cm²" };
+    let mut table = Table::new([
+        (Column::Left, "state"),
+        (Column::Left, "ghost re-\nflected at"),
+        (Column::Right, "share\n%"),
+        (Column::Left, "focus\nafter"),
+        (Column::Right, "by mm"),
+        (Column::Right, "clear of\nglass mm"),
+        (Column::Right, on_glass),
+        (Column::Right, "into\nlaser\nppm"),
+    ]);
     for state in states {
         for (k, ghost) in state.ghosts.iter().enumerate() {
             let name = if k == 0 { state.state.clone() } else { String::new() };
-            table.row(ghost_row(file, name, ghost));
+            let [name, at, share, _, _, fluence, of_threshold, into_laser] =
+                ghost_row(file, name, ghost);
+            let nearest = ghost.foci.iter();
+            let nearest = nearest.min_by(|a, b| a.clearance_mm.total_cmp(&b.clearance_mm));
+            let focus = nearest.map_or_else(
+                || [NONE.to_owned(), NONE.to_owned(), NONE.to_owned()],
+                |focus| {
+                    [
+                        surface_name(file, &focus.after),
+                        fixed(focus.from_surface_mm, 2),
+                        fixed(focus.clearance_mm, 2),
+                    ]
+                },
+            );
+            let cells = [name, at, share].into_iter().chain(focus);
+            let on_glass = if judged { of_threshold } else { fluence };
+            table.row(cells.chain([on_glass, into_laser]));
         }
     }
     table.text()
@@ -203,7 +232,8 @@ fn explained() -> String {
     paragraph(
         "Peak values of a Gaussian cross-section, 2E/(πw²) and 2P/(πw²), at the first wavelength. A \
          ghost's share is at most what it says: what other surfaces take away is left out. A focus \
-         clear of glass by less than nothing lies in it. \"Into laser\" is what couples back into \
+         clear of glass by less than nothing lies in it; \"by\" is how far behind the surface it left \
+         last, negative on the way back. \"Into laser\" is what couples back into \
          the laser's own mode, for a beam with M² of 1 that is perfectly aligned.",
         WIDTH,
         "",

@@ -23,7 +23,7 @@ pub(crate) fn reached(file: &DesignFile, assessment: &Assessment) -> String {
         (Column::Right, "ratio \nerror % "),
         (Column::Right, "exit slope \nµrad "),
         (Column::Right, "exit\nbeam mm"),
-        (Column::Right, "wave-\nlength nm"),
+        (Column::Right, "wave-\nlength\nnm"),
         (Column::Right, "RMS \nwaves "),
         (Column::Right, "PV\nwaves"),
     ]);
@@ -74,6 +74,12 @@ pub(crate) fn of_the_beam(file: &DesignFile, assessment: &Assessment) -> String 
     let mut table = Table::new(heads);
     for (goals, state) in file.wishes.states.iter().zip(&assessment.states) {
         let mut row = vec![state.name.clone()];
+        let any = goals.divergence_mrad.is_some()
+            || goals.diameter_at_range_mm.is_some()
+            || goals.exit_focus_m.is_some();
+        if !any {
+            continue;
+        }
         if divergence {
             row.extend(divergence_cells(goals, state));
         }
@@ -93,8 +99,11 @@ fn about(wanted: f64, within: f64) -> String {
 }
 
 fn divergence_cells(goals: &Goals, state: &StateAssessment) -> [String; 2] {
-    let value = state.divergence_mrad;
     let within = goals.divergence_mrad;
+    if within.is_none() {
+        return [const { String::new() }; 2];
+    }
+    let value = state.divergence_mrad;
     [
         marked(significant_or_dash(value, 4), missed(value, within)),
         within.map_or_else(String::new, |within| format!("≤ {}", as_written(within))),
