@@ -30,7 +30,7 @@ impl FocusFan<'_> {
         residuals: &mut [f64],
         first: usize,
         shapes: Shapes,
-        mut block: Option<&mut StateBlock>,
+        block: Option<&mut StateBlock>,
     ) -> Result<(), EvaluationFault> {
         let Self { state, sample, .. } = self;
         let Some(focus) = state.goals.exit_focus_m else { return Ok(()) };
@@ -54,7 +54,7 @@ impl FocusFan<'_> {
         let within = state.goals.wavefront_rms_waves.unwrap_or(1.0);
         let scale = state.goals.weight.sqrt() / within * 1e6 / self.wavelength_nm;
         self.centre(&mut residuals[..count], scale);
-        let Some(block) = block.as_deref_mut() else { return Ok(()) };
+        let Some(block) = block else { return Ok(()) };
         for (ray, gradient) in gradients.iter().enumerate() {
             gather(gradient, &state.by_shared, first + ray, &mut block.by_shared);
             gather(gradient, &state.by_own, first + ray, &mut block.by_own);

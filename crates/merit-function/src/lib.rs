@@ -17,7 +17,7 @@
 //! # The one equation it exists for
 //!
 //! merit = Σ over states of weight × [ Σ over wavelengths (RMS/within)² + (ratio error/within)² +
-//! (exit slope/within)² ]
+//! (exit slope/within)² + the same for the goals about the real beam ]
 //!
 //! One unit of merit is one goal missed by exactly its `within`. Start reading at [`problem`].
 

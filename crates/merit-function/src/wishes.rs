@@ -118,7 +118,7 @@ impl Wishes {
         let wanted = self.limits.range(kind).is_some();
         let lacks = wanted && design.beam.laser.pulse_energy_mj.is_none();
         let at = Address::root().key("limits").key(kind.word());
-        lacks.then(|| WishFault { at, error: WishError::NoEnergy(kind) })
+        lacks.then_some(WishFault { at, error: WishError::NoEnergy(kind) })
     }
 }
 

@@ -19,7 +19,7 @@ pub fn beam(file: &DesignFile, beams: &[BeamAssessment], assessment: &Assessment
         pointing(beams),
         surfaces(file, beams),
         explained(),
-        hazards::cautions(assessment),
+        hazards::first_caution(assessment),
     ])
 }
 

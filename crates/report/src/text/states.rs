@@ -94,7 +94,8 @@ pub(crate) fn of_the_beam(file: &DesignFile, assessment: &Assessment) -> String 
     table.text()
 }
 
-fn about(wanted: f64, within: f64) -> String {
+/// A value wanted and how far off it may be.
+pub(crate) fn about(wanted: f64, within: f64) -> String {
     format!("{} ± {}", as_written(wanted), as_written(within))
 }
 
