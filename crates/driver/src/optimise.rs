@@ -113,7 +113,7 @@ pub fn optimise(
         iterations: outcome.iterations + widened.iterations,
         evaluations: outcome.evaluations + widened.evaluations,
         solve_seconds: outcome.time.as_secs_f64() + widened.seconds,
-        on_bounds: on_bounds(&merit, &outcome.variables),
+        on_bounds: on_bounds(file, &merit, &outcome.variables),
         variables: outcome.variables.len(),
         start,
         end,
@@ -141,12 +141,13 @@ pub fn merit_of(file: &DesignFile) -> Result<MeritFunction, OptimiseError> {
 }
 
 /// Free numbers that stand on a bound, by their addresses in the file.
-fn on_bounds(merit: &MeritFunction, variables: &[f64]) -> Vec<String> {
+fn on_bounds(file: &DesignFile, merit: &MeritFunction, variables: &[f64]) -> Vec<String> {
+    let document = file.document().value();
     let bounds = merit.bounds().iter().zip(variables).enumerate();
     bounds
         .filter(|(_, (bounds, value))| **value <= bounds.low || **value >= bounds.high)
         .filter_map(|(variable, _)| merit.variables().address(variable))
-        .map(|address| address.to_string())
+        .map(|address| address.with_names(document).to_string())
         .collect()
 }
 
