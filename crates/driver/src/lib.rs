@@ -7,6 +7,7 @@
 //! - [`design_file`]: a design file with its three owners' parts, its JSON Schema, and the same
 //!   file with other numbers; [`freedom`]: its `free` and `held`;
 //! - [`brief`]: the requirement a design is begun from;
+//! - [`start`]: first-order layouts of a brief;
 //! - [`fn@optimise::optimise`]: one local optimisation from file to file;
 //! - [`write_whole`]: the one function of the program that writes files.
 //!
@@ -25,4 +26,5 @@ mod document_kind;
 pub mod freedom;
 pub mod optimise;
 pub mod solve;
+pub mod start;
 pub mod write_whole;
