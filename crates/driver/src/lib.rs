@@ -6,6 +6,8 @@
 //!   solver; argmin's Nelder-Mead on the same problem;
 //! - [`design_file`]: a design file with its three owners' parts, its JSON Schema, and the same
 //!   file with other numbers; [`freedom`]: its `free` and `held`;
+//! - [`brief`]: the requirement a design is begun from;
+//! - [`start`]: first-order layouts of a brief;
 //! - [`fn@optimise::optimise`]: one local optimisation from file to file;
 //! - [`write_whole`]: the one function of the program that writes files.
 //!
@@ -18,8 +20,11 @@
 //! The step p that minimises ½|r + Jp|² + ½λ|Dp|² under low ≤ x + p ≤ high and g + Gp ≥ 0, with J in
 //! blocks, one a zoom state. Start reading at [`solve`].
 
+pub mod brief;
 pub mod design_file;
+mod document_kind;
 pub mod freedom;
 pub mod optimise;
 pub mod solve;
+pub mod start;
 pub mod write_whole;
