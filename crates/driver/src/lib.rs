@@ -7,6 +7,7 @@
 //! - [`design_file`]: a design file with its three owners' parts, its JSON Schema, and the same
 //!   file with other numbers; [`freedom`]: its `free` and `held`;
 //! - [`fn@optimise::optimise`]: one local optimisation from file to file;
+//! - [`run`]: long work in a folder, where nothing is lost;
 //! - [`write_whole`]: the one function of the program that writes files.
 //!
 //! # What it refuses to know
@@ -21,5 +22,6 @@
 pub mod design_file;
 pub mod freedom;
 pub mod optimise;
+pub mod run;
 pub mod solve;
 pub mod write_whole;
