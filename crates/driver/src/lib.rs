@@ -8,6 +8,8 @@
 //!   file with other numbers; [`freedom`]: its `free` and `held`;
 //! - [`fn@optimise::optimise`]: one local optimisation from file to file;
 //! - [`run`]: long work in a folder, where nothing is lost;
+//! - [`sampling`]: points that fill a space evenly, random numbers keyed by a number;
+//! - [`search`]: the global search, from a problem to many finished designs;
 //! - [`write_whole`]: the one function of the program that writes files.
 //!
 //! # What it refuses to know
@@ -23,5 +25,7 @@ pub mod design_file;
 pub mod freedom;
 pub mod optimise;
 pub mod run;
+pub mod sampling;
+pub mod search;
 pub mod solve;
 pub mod write_whole;
