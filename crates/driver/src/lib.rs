@@ -6,6 +6,7 @@
 //!   solver; argmin's Nelder-Mead on the same problem;
 //! - [`design_file`]: a design file with its three owners' parts, its JSON Schema, and the same
 //!   file with other numbers; [`freedom`]: its `free` and `held`;
+//! - [`brief`]: the requirement a design is begun from;
 //! - [`fn@optimise::optimise`]: one local optimisation from file to file;
 //! - [`run`]: long work in a folder, where nothing is lost;
 //! - [`sampling`]: points that fill a space evenly, random numbers keyed by a number;
@@ -21,7 +22,9 @@
 //! The step p that minimises ½|r + Jp|² + ½λ|Dp|² under low ≤ x + p ≤ high and g + Gp ≥ 0, with J in
 //! blocks, one a zoom state. Start reading at [`solve`].
 
+pub mod brief;
 pub mod design_file;
+mod document_kind;
 pub mod freedom;
 pub mod optimise;
 pub mod run;
