@@ -28,6 +28,8 @@ pub(super) struct Begin {
     pub(super) part: super::share::Share,
     /// Units wanted of the whole run.
     pub(super) units: Option<u64>,
+    /// Merit that is good enough.
+    pub(super) target_merit: Option<f64>,
     /// When, in seconds since 1970.
     pub(super) unix_seconds: u64,
 }

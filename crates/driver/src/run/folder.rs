@@ -17,6 +17,7 @@ pub(super) const LOCK: &str = "lock";
 pub(super) const JOURNAL: &str = "journal.jsonl";
 pub(super) const PARTS: &str = "parts";
 pub(super) const BEST: &str = "best";
+pub(super) const RANKING: &str = "ranking.json";
 
 /// A run folder that this process may work in until it is dropped.
 #[derive(Debug)]
@@ -108,17 +109,39 @@ fn recognise(path: &Path, asked: &RunDocument) -> Result<bool, RunError> {
 
 /// A folder without `run.json` may hold what a beginning that was cut short left, nothing else.
 fn refuse_strangers(path: &Path) -> Result<(), RunError> {
-    let refused = RunError::system(path);
-    for entry in std::fs::read_dir(path).map_err(&refused)? {
-        let name = entry.map_err(&refused)?.file_name();
-        let name = name.to_string_lossy();
-        let ours = [LOCK, ASKED, PARTS].contains(&&*name) || name.starts_with(TEMPORARY_PREFIX);
-        if !ours {
+    match first_stranger(path, &[LOCK, ASKED, PARTS])? {
+        None => Ok(()),
+        Some(name) => {
             let reason = format!("it has no {RUN} and holds other things, such as {name:?}");
-            return Err(RunError::NotARun { path: path.into(), reason });
+            Err(RunError::NotARun { path: path.into(), reason })
         }
     }
-    Ok(())
+}
+
+/// A folder for results may hold a run or earlier results, nothing else.
+pub(super) fn admit(path: &Path) -> Result<(), RunError> {
+    if !path.exists() || path.join(RUN).exists() {
+        return Ok(());
+    }
+    match first_stranger(path, &[LOCK, BEST, RANKING])? {
+        None => Ok(()),
+        Some(name) => {
+            let reason = format!("it holds other things, such as {name:?}; nothing was written");
+            Err(RunError::NotARun { path: path.into(), reason })
+        }
+    }
+}
+
+/// Something in a folder that is none of these.
+fn first_stranger(path: &Path, known: &[&str]) -> Result<Option<String>, RunError> {
+    let refused = RunError::system(path);
+    for entry in std::fs::read_dir(path).map_err(&refused)? {
+        let name = entry.map_err(&refused)?.file_name().to_string_lossy().into_owned();
+        if !known.contains(&name.as_str()) && !name.starts_with(TEMPORARY_PREFIX) {
+            return Ok(Some(name));
+        }
+    }
+    Ok(None)
 }
 
 /// Reads `run.json` and holds the copy of the ask against it; `None` if there is none.
@@ -155,7 +178,7 @@ pub(super) fn read_asked(path: &Path) -> Result<Vec<u8>, RunError> {
     })
 }
 
-fn make(path: &Path) -> Result<(), RunError> {
+pub(super) fn make(path: &Path) -> Result<(), RunError> {
     match DirBuilder::new().create(path) {
         Err(error) if error.kind() != ErrorKind::AlreadyExists => {
             Err(RunError::system(path)(error))
@@ -186,7 +209,7 @@ fn begin(path: &Path, ask: &Ask, asked: &RunDocument) -> Result<(), RunError> {
 }
 
 /// Temporary files of a process that was killed while it wrote. Under the lock no other writes here.
-fn remove_leftovers(place: &Path) {
+pub(super) fn remove_leftovers(place: &Path) {
     for folder in [place.to_owned(), place.join(BEST)] {
         for entry in std::fs::read_dir(folder).into_iter().flatten().flatten() {
             if entry.file_name().to_string_lossy().starts_with(TEMPORARY_PREFIX) {
@@ -197,7 +220,7 @@ fn remove_leftovers(place: &Path) {
 }
 
 /// Finds out before any computing whether results can be written.
-fn check_results(place: &Path) -> Result<(), RunError> {
+pub(super) fn check_results(place: &Path) -> Result<(), RunError> {
     let best = place.join(BEST);
     make(&best)?;
     check_writable(&best.join("01.json"), Existing::Replace)?;

@@ -15,7 +15,7 @@
 //! run.json          format, kind, version, seed, settings, parts, hash of the ask
 //! lock              held by the system for the process at work; names it for others
 //! journal.jsonl     append-only, one finished unit a line, a checksum in every line
-//! best/01.json …    results, written last and whole
+//! best/01.json …    results, written last and whole; the list of them in ranking.json
 //! parts/03-of-16/   of a run split into parts: each part's own lock, journal and results
 //! ```
 //!
@@ -62,7 +62,7 @@ pub use folder::RunFolder;
 pub use interrupt::{Interrupt, Interrupted};
 pub use perform::perform;
 pub use reading::JournalFacts;
-pub use results::ResultFile;
+pub use results::{ResultFile, ResultsFolder};
 pub use share::{Share, ShareError};
 pub use survey::{PartSurvey, Survey};
 pub use work::{Finished, RunEnd, Saving, Stop, TakenUp, Tally, Watcher, Work};

@@ -114,7 +114,7 @@ impl<'a, W: Work> Session<'a, W> {
         let path = folder.journal();
         let mut sufficed: Option<u64> = None;
         let read = reading::read(&path, &folder.identity(), folder.share(), &mut |unit| {
-            if work.suffices(&unit.done) {
+            if budget.is_reached_by(work.merit(&unit.done)) {
                 sufficed = Some(sufficed.map_or(unit.number, |first| first.min(unit.number)));
             }
             watcher.found(unit);
@@ -146,6 +146,7 @@ impl<'a, W: Work> Session<'a, W> {
             run: folder.identity(),
             part: self.share,
             units: self.budget.units,
+            target_merit: self.budget.target_merit,
             unix_seconds: since_1970.as_secs(),
         });
         // What could not be written at first is still there to be written now.
@@ -187,7 +188,8 @@ impl<'a, W: Work> Session<'a, W> {
         dispenser: &Dispenser,
         watcher: &mut dyn Watcher<W::Done>,
     ) {
-        if self.work.suffices(&done) && self.sufficed.is_none_or(|first| number < first) {
+        let reached = self.budget.is_reached_by(self.work.merit(&done));
+        if reached && self.sufficed.is_none_or(|first| number < first) {
             self.sufficed = Some(number);
             dispenser.end_at(self.share.nth(number) + 1);
         }

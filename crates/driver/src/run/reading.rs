@@ -27,6 +27,8 @@ pub struct JournalFacts {
     pub seconds: f64,
     /// The most units that were wanted of the whole run.
     pub units: Option<u64>,
+    /// The merit that was good enough for the last session.
+    pub target_merit: Option<f64>,
     /// Whether the last session ended with nothing left to do.
     pub complete: bool,
     /// When the first session began, in seconds since 1970.
@@ -146,6 +148,7 @@ impl<'a> Reader<'a> {
         facts.sessions += 1;
         facts.complete = false;
         facts.units = facts.units.max(begin.units);
+        facts.target_merit = begin.target_merit;
         facts.began_unix_seconds.get_or_insert(begin.unix_seconds);
         Ok(())
     }

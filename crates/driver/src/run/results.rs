@@ -5,7 +5,8 @@ use std::path::{Path, PathBuf};
 use std::time::Duration;
 
 use super::error::RunError;
-use super::folder::{BEST, RunFolder};
+use super::folder::{BEST, LOCK, RANKING, RunFolder, admit, check_results, make, remove_leftovers};
+use super::lock::Lock;
 use crate::write_whole::{Existing, WriteError, write_whole};
 
 /// How often a file is tried, and with what pause.
@@ -27,10 +28,41 @@ impl ResultFile {
         Self { name: Path::new(BEST).join(format!("{rank:02}.json")), contents: contents.into() }
     }
 
-    /// A file in the folder itself.
+    /// The list itself: `ranking.json`.
     #[must_use]
-    pub fn named(name: &'static str, contents: impl Into<Vec<u8>>) -> Self {
-        Self { name: name.into(), contents: contents.into() }
+    pub fn ranking(contents: impl Into<Vec<u8>>) -> Self {
+        Self { name: RANKING.into(), contents: contents.into() }
+    }
+}
+
+/// A folder for results alone, such as those merged from several run folders.
+#[derive(Debug)]
+pub struct ResultsFolder {
+    place: PathBuf,
+    _lock: Lock,
+}
+
+impl ResultsFolder {
+    /// Opens the folder at `path`, and makes it if it is not there; the folder it lies in must
+    /// exist. It may hold earlier results or a run, nothing else.
+    ///
+    /// # Errors
+    /// It is in use, holds something else, or the system refuses.
+    pub fn open(path: &Path) -> Result<Self, RunError> {
+        admit(path)?;
+        make(path)?;
+        let lock = Lock::take(&path.join(LOCK), path)?;
+        remove_leftovers(path);
+        check_results(path)?;
+        Ok(Self { place: path.to_owned(), _lock: lock })
+    }
+
+    /// As [`RunFolder::write_results`].
+    ///
+    /// # Errors
+    /// As there.
+    pub fn write_results(&self, files: &[ResultFile]) -> Result<(), RunError> {
+        write_results(&self.place, files)
     }
 }
 

@@ -17,6 +17,8 @@ use super::work::Finished;
 /// A run folder as it is at this moment.
 #[derive(Debug)]
 pub struct Survey {
+    /// Where it is.
+    pub path: PathBuf,
     /// What the run is about.
     pub run: RunDocument,
     /// The copy of what was asked.
@@ -61,7 +63,7 @@ impl Survey {
             PartSurvey { share, place, holder, identity: identity.clone() }
         });
         let parts = parts.collect();
-        Ok(Self { run, asked, parts })
+        Ok(Self { path: path.to_owned(), run, asked, parts })
     }
 }
 

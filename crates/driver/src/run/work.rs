@@ -20,11 +20,11 @@ pub trait Work: Sync {
     /// The interrupt was raised before it was done.
     fn perform(&self, number: u64, interrupt: &Interrupt) -> Result<Self::Done, Interrupted>;
 
-    /// Whether this result is good enough to end the run: then units up to this one count, and
-    /// none after it.
-    fn suffices(&self, done: &Self::Done) -> bool {
+    /// How good a result is, the smaller the better, where that can be said: a budget may have a
+    /// target for it.
+    fn merit(&self, done: &Self::Done) -> Option<f64> {
         let _ = done;
-        false
+        None
     }
 }
 

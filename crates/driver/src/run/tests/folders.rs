@@ -114,7 +114,7 @@ fn results_replace_those_of_before() {
     let three: Vec<ResultFile> = (1..=3).map(|rank| ResultFile::best(rank, "x")).collect();
     run.write_results(&three).unwrap();
     write(&best.join("mine.json"), b"kept");
-    run.write_results(&[ResultFile::best(1, "y"), ResultFile::named("ranking.json", "r")]).unwrap();
+    run.write_results(&[ResultFile::best(1, "y"), ResultFile::ranking("r")]).unwrap();
     assert_eq!(names(&best), ["01.json", "mine.json"]);
     assert_eq!(std::fs::read(best.join("01.json")).unwrap(), b"y");
 }

@@ -22,8 +22,6 @@ pub(super) struct Yield {
 /// Work whose units are cheap and differ; the lower the value the better.
 #[derive(Default)]
 pub(super) struct Digits {
-    /// Good enough.
-    target: Option<f64>,
     performed: AtomicU64,
 }
 
@@ -41,8 +39,8 @@ impl Work for Digits {
         if interrupt.is_raised() { Err(Interrupted) } else { Ok(yield_of(number)) }
     }
 
-    fn suffices(&self, done: &Yield) -> bool {
-        self.target.is_some_and(|target| done.value <= target)
+    fn merit(&self, done: &Yield) -> Option<f64> {
+        Some(done.value)
     }
 }
 

@@ -48,14 +48,13 @@ fn a_finished_run_computes_nothing_and_a_larger_one_only_what_is_new() {
 
 #[test]
 fn a_target_ends_the_run_at_the_first_unit_that_reaches_it() {
-    let target = Some(0.01);
     let first = (0..).find(|&number| yield_of(number).value <= 0.01).unwrap();
     let mut results = Vec::new();
     for threads in [1, 2, 3, 8] {
         let folder = in_memory();
-        let work = Digits { target, ..Digits::default() };
+        let work = Digits::default();
         let stop_after = Some(first as usize / 2);
-        let open = Budget::default();
+        let open = Budget { target_merit: Some(0.01), ..Budget::default() };
         let (end, _) =
             session(folder.path(), Share::WHOLE, &work, &open, threads, stop_after).unwrap();
         assert!([Stop::Interrupted, Stop::Sufficed].contains(&end.stop));
