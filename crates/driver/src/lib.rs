@@ -7,6 +7,7 @@
 //! - [`design_file`]: a design file with its three owners' parts, its JSON Schema, and the same
 //!   file with other numbers; [`freedom`]: its `free` and `held`;
 //! - [`brief`]: the requirement a design is begun from;
+//! - [`start`]: first-order layouts of a brief;
 //! - [`fn@optimise::optimise`]: one local optimisation from file to file;
 //! - [`overnight`]: the global search as a run, and the ranked list it leaves;
 //! - [`run`]: long work in a folder, where nothing is lost;
@@ -33,4 +34,5 @@ pub mod run;
 pub mod sampling;
 pub mod search;
 pub mod solve;
+pub mod start;
 pub mod write_whole;

@@ -8,6 +8,7 @@ use merit_function::block::BlockProblem;
 use merit_function::fault::EvaluationFault;
 use merit_function::problem::{MeritFunction, RAYS};
 use merit_function::variables::{Variables, VariablesError};
+use merit_function::wishes::Wishes;
 use serde::Serialize;
 use surface_model::document::Complaints;
 use surface_model::glass::GlassError;
@@ -126,18 +127,21 @@ pub fn optimise(
 /// # Errors
 /// There is no goal or nothing free, or ranges contradict each other.
 pub fn merit_of(file: &DesignFile) -> Result<MeritFunction, OptimiseError> {
-    let any_goal = file.wishes.states.iter().any(|goals| {
-        let present = [goals.wavefront_rms_waves, goals.ratio_percent, goals.exit_slope_urad];
-        present.iter().any(Option::is_some) && goals.weight > 0.0
-    });
-    if !any_goal {
-        return Err(OptimiseError::NoGoals);
-    }
+    require_goal(&file.wishes)?;
     if file.free.is_empty() {
         return Err(OptimiseError::NothingFree);
     }
     let variables = Variables::new(&file.design, &file.wishes.limits, &file.free)?;
     Ok(MeritFunction::new(&file.design, &file.wishes, variables, RAYS)?)
+}
+
+/// There has to be a goal that counts.
+pub(crate) fn require_goal(wishes: &Wishes) -> Result<(), OptimiseError> {
+    let any_goal = wishes.states.iter().any(|goals| {
+        let present = [goals.wavefront_rms_waves, goals.ratio_percent, goals.exit_slope_urad];
+        present.iter().any(Option::is_some) && goals.weight > 0.0
+    });
+    if any_goal { Ok(()) } else { Err(OptimiseError::NoGoals) }
 }
 
 fn on_bounds(merit: &MeritFunction, variables: &[f64]) -> usize {
