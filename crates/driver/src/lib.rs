@@ -9,6 +9,8 @@
 //! - [`brief`]: the requirement a design is begun from;
 //! - [`start`]: first-order layouts of a brief;
 //! - [`fn@optimise::optimise`]: one local optimisation from file to file;
+//! - [`overnight`]: the global search as a run, and the ranked list it leaves;
+//! - [`run`]: long work in a folder, where nothing is lost;
 //! - [`sampling`]: points that fill a space evenly, random numbers keyed by a number;
 //! - [`search`]: the global search, from a problem to many finished designs;
 //! - [`write_whole`]: the one function of the program that writes files.
@@ -27,6 +29,8 @@ pub mod design_file;
 mod document_kind;
 pub mod freedom;
 pub mod optimise;
+pub mod overnight;
+pub mod run;
 pub mod sampling;
 pub mod search;
 pub mod solve;

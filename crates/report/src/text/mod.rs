@@ -8,6 +8,7 @@ mod limits;
 mod number;
 pub mod optimisation;
 mod optimised;
+pub mod overnight;
 pub mod ray;
 mod states;
 mod table;
