@@ -18,8 +18,10 @@
 //! The step p that minimises ½|r + Jp|² + ½λ|Dp|² under low ≤ x + p ≤ high and g + Gp ≥ 0, with J in
 //! blocks, one a zoom state. Start reading at [`solve`].
 
+pub mod change;
 pub mod design_file;
 pub mod freedom;
 pub mod optimise;
+pub mod retune;
 pub mod solve;
 pub mod write_whole;
