@@ -25,6 +25,7 @@
 //! blocks, one a zoom state. Start reading at [`solve`].
 
 pub mod brief;
+pub mod change;
 pub mod design_file;
 mod document_kind;
 pub mod freedom;
@@ -33,6 +34,7 @@ pub mod overnight;
 pub mod run;
 pub mod sampling;
 pub mod search;
+pub mod retune;
 pub mod solve;
 pub mod start;
 pub mod write_whole;
