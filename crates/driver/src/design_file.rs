@@ -7,7 +7,7 @@ use merit_function::wishes::{Wishes, WishesDocument};
 use schemars::Schema;
 use serde_json::Value;
 use surface_model::design::Design;
-use surface_model::document::{Complaint, Complaints, Document, layout, union};
+use surface_model::document::{Address, Complaint, Complaints, Document, layout, union};
 use surface_model::optics_document::OpticsDocument;
 use surface_model::place::Place;
 use surface_model::ranges::LARGEST_RADIUS_MM;

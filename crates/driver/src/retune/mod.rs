@@ -28,7 +28,7 @@ use surface_model::place::Place;
 
 use crate::change::{Change, Changed, apply};
 use crate::design_file::DesignFile;
-use crate::optimise::{Optimisation, OptimiseError, OptimisationReport, optimise};
+use crate::optimise::{Optimisation, OptimisationReport, OptimiseError, optimise};
 use crate::solve::{Observer, Settings};
 use blame::Blame;
 
@@ -84,8 +84,8 @@ pub struct Solver {
     pub evaluations: u64,
     /// Its wall time, s.
     pub solve_seconds: f64,
-    /// Variables that ended on a bound.
-    pub on_bounds: usize,
+    /// Addresses of the variables that ended on a bound.
+    pub on_bounds: Vec<String>,
     /// All variables.
     pub variables: usize,
 }
@@ -198,8 +198,15 @@ fn stage(moving: Moving, file: &DesignFile) -> Stage {
 
 fn optimised(moving: Moving, result: Optimisation) -> Stage {
     let Optimisation { file, report, stopped } = result;
-    let OptimisationReport { end, iterations, evaluations, solve_seconds, on_bounds, variables, .. } =
-        report;
+    let OptimisationReport {
+        end,
+        iterations,
+        evaluations,
+        solve_seconds,
+        on_bounds,
+        variables,
+        ..
+    } = report;
     let solver = Solver {
         stopped: report.stopped,
         was_successful: stopped.was_successful(),

@@ -1,6 +1,7 @@
 //! Text for a terminal: tables at most 80 columns wide where names allow it, units in the heads.
 
 pub mod assessment;
+pub mod bounds;
 pub mod differences;
 mod elements;
 pub mod glass;

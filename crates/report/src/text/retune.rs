@@ -6,6 +6,7 @@ use driver::retune::blame::Blame;
 use driver::retune::{Moving, Retuning, Stage};
 use surface_model::design::Design;
 
+use super::bounds::ended_on_bounds;
 use super::differences::{differences as table_of, signed};
 use super::number::{NONE, as_written, fixed, fixed_or_dash, significant, significant_or_dash};
 use super::states::spacing_heads;
@@ -83,10 +84,8 @@ fn merits(retuning: &Retuning) -> String {
         (Column::Right, "limits\ncrossed"),
     ]);
     for stage in &retuning.stages {
-        let missed_goals = marks(&stage.file, &stage.assessment)
-            .iter()
-            .filter(|mark| mark.size() > 1.0)
-            .count();
+        let missed_goals =
+            marks(&stage.file, &stage.assessment).iter().filter(|mark| mark.size() > 1.0).count();
         let crossed = stage.assessment.limits.iter().filter(|limit| !limit.met).count();
         let recovered = retuning.recovered_percent(stage);
         table.row([
@@ -262,11 +261,8 @@ fn cautions(retuning: &Retuning) -> Vec<String> {
         if !solver.was_successful {
             cautions.push(format!("{name}: {}", solver.stopped));
         }
-        if solver.on_bounds > 0 {
-            cautions.push(format!(
-                "{name}: {} of {} variables ended on a bound",
-                solver.on_bounds, solver.variables
-            ));
+        if let Some(told) = ended_on_bounds(&solver.on_bounds, solver.variables) {
+            cautions.push(format!("{name}: {told}"));
         }
     }
     if retuning.stage(Moving::Spacings).is_none() {
@@ -286,7 +282,10 @@ fn closing(retuning: &Retuning) -> String {
     if let (Some(worst), true) = (worst, retuning.blame.len() > 1) {
         let how = if worst.by_derivatives.is_some() { "from derivatives" } else { "traced alone" };
         let cost = significant(worst.cost().unwrap_or(0.0), 3);
-        told.push(format!("What hurt most is {}: it adds {cost} to the merit, {how}.", worst.change));
+        told.push(format!(
+            "What hurt most is {}: it adds {cost} to the merit, {how}.",
+            worst.change
+        ));
     }
     if let Some(stage) = retuning.stage(Moving::Spacings)
         && let Some(percent) = retuning.recovered_percent(stage)
