@@ -6,6 +6,7 @@ mod cautions;
 mod element;
 mod hazards;
 mod limit;
+mod obstacle;
 mod readjust;
 mod real_beam;
 mod state;
@@ -23,6 +24,7 @@ pub use hazards::{
     Exposure, FocusHazard, GhostFocusHazard, GhostHazard, StateHazards, SurfaceHazard,
 };
 pub use limit::LimitAssessment;
+pub use obstacle::{Obstacle, obstacle};
 pub use readjust::Readjustment;
 pub use real_beam::{
     BeamAssessment, BeamNumbers, FarFieldAssessment, PointingAssessment, RangeBeam, SurfaceBeam,

@@ -2,6 +2,8 @@
 
 pub mod assessment;
 pub mod beam;
+pub mod bounds;
+pub mod differences;
 mod elements;
 pub mod glass;
 pub mod hazards;
@@ -10,7 +12,10 @@ mod limits;
 mod number;
 pub mod optimisation;
 mod optimised;
+pub mod overnight;
 pub mod ray;
+pub mod retune;
+pub mod retune_lists;
 mod states;
 mod table;
 mod verdict;
