@@ -76,10 +76,7 @@ pub(crate) fn share(
     }
 }
 
-fn automatic(
-    of: Option<u64>,
-    variable: &dyn Fn(&str) -> Option<String>,
-) -> Result<Share, Failure> {
+fn automatic(of: Option<u64>, variable: &dyn Fn(&str) -> Option<String>) -> Result<Share, Failure> {
     let read = |name: Option<&'static str>| -> Result<Option<u64>, Failure> {
         let text = name.and_then(|name| Some((name, variable(name)?)));
         text.map(|(name, text)| number(name, &text)).transpose()

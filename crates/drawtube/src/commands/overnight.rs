@@ -38,9 +38,8 @@ fn search(
     signals: &StopSignal,
     console: &Console,
 ) -> Result<(RunEnd, RankedList), Failure> {
-    let teller =
-        RunTeller::new(request.progress, console, "starts", request.budget.run_time)
-            .map_err(Failure::Signals)?;
+    let teller = RunTeller::new(request.progress, console, "starts", request.budget.run_time)
+        .map_err(Failure::Signals)?;
     let mut watch = NightWatch::new(teller, signals.flag(), request);
     let end = perform(folder, &request.work, &request.budget, request.threads, &mut watch);
     let (mut finds, teller) = watch.over();
@@ -107,8 +106,7 @@ fn tell(
 fn closing(request: &Request, folder: &RunFolder, end: &RunEnd, list: &RankedList) -> String {
     let share = folder.share();
     let of = end.tally.wanted.map_or_else(String::new, |wanted| format!(" of {wanted}"));
-    let part =
-        if share.is_whole() { String::new() } else { format!(" Part {share} of the run:") };
+    let part = if share.is_whole() { String::new() } else { format!(" Part {share} of the run:") };
     let (why, then) = match end.stop {
         Stop::Complete => ("Complete", ""),
         Stop::Sufficed => ("The target is reached", ""),
@@ -133,12 +131,7 @@ fn closing(request: &Request, folder: &RunFolder, end: &RunEnd, list: &RankedLis
     report::text::paragraph(&format!("{done}{kept}"), report::text::WIDTH, "")
 }
 
-fn status(
-    request: &Request,
-    signals: &StopSignal,
-    end: &RunEnd,
-    list: &RankedList,
-) -> ExitStatus {
+fn status(request: &Request, signals: &StopSignal, end: &RunEnd, list: &RankedList) -> ExitStatus {
     match end.stop {
         Stop::SessionTime => ExitStatus::TimeLimit,
         Stop::Interrupted => signals.status().unwrap_or(ExitStatus::Failed),

@@ -191,11 +191,7 @@ impl Gathering {
 ///
 /// # Errors
 /// A journal is damaged or cannot be read.
-pub fn fetch(
-    finds: &mut Finds,
-    below: Option<u64>,
-    surveys: &[Survey],
-) -> Result<(), RunError> {
+pub fn fetch(finds: &mut Finds, below: Option<u64>, surveys: &[Survey]) -> Result<(), RunError> {
     let missing = finds.missing(below);
     if missing.is_empty() {
         return Ok(());

@@ -131,8 +131,7 @@ pub fn missing(missing: &[MissingPart], of_parts: u64) -> String {
         };
         table.row([part.share.to_string(), starts]);
     }
-    let parts: Vec<String> =
-        missing.iter().map(|part| format!("--part {}", part.share)).collect();
+    let parts: Vec<String> = missing.iter().map(|part| format!("--part {}", part.share)).collect();
     let again = format!(
         "Of {}, {} to be run again: {}",
         counted(of_parts as usize, "part"),

@@ -38,8 +38,7 @@ impl Request {
     pub(super) fn of(arguments: OvernightArguments, console: &Console) -> Result<Self, Failure> {
         let every = duration("--progress-every", arguments.progress_every, 1.0, ZERO_OR_MORE)?;
         let budget = budget(&arguments)?;
-        let share =
-            part::share(arguments.part.as_deref(), &|name| std::env::var(name).ok())?;
+        let share = part::share(arguments.part.as_deref(), &|name| std::env::var(name).ok())?;
         let settings = SearchSettings {
             strategy: match arguments.strategy {
                 StrategyArgument::BasinHopping => Strategy::BasinHopping,

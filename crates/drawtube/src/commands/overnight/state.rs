@@ -69,9 +69,11 @@ impl State {
                 "complete": facts.complete,
             })
         });
-        let running = self.gathering.running().iter().map(|(share, holder)| {
-            json!({ "part": share.to_string(), "process": holder })
-        });
+        let running = self
+            .gathering
+            .running()
+            .iter()
+            .map(|(share, holder)| json!({ "part": share.to_string(), "process": holder }));
         let missing = self.gathering.missing();
         json!({
             "format": "drawtube-overnight/1",
@@ -104,7 +106,8 @@ impl State {
 
     fn heading(&self) -> String {
         let run = &self.survey.run;
-        let wanted = self.gathering.units().map_or_else(String::new, |units| format!(" of {units}"));
+        let wanted =
+            self.gathering.units().map_or_else(String::new, |units| format!(" of {units}"));
         let at_work = match self.gathering.running() {
             [] => self.status().to_owned(),
             [(_, holder)] => format!("running, {holder}"),
