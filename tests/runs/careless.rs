@@ -11,9 +11,7 @@ fn a_careless_program_is_found_out() {
     let checks: [(&str, fn() -> Result<(), String>); 4] = [
         ("random kills", || kills::check(Program::Careless)),
         ("a kill at every call", || injected::check_kills(Program::Careless)),
-        ("a full disk at every call", || {
-            injected::check_errors(Program::Careless, "ENOSPC", true)
-        }),
+        ("a full disk at every call", || injected::check_errors(Program::Careless, "ENOSPC", true)),
         ("a journal cut within its last line", || journals::check_cuts(Program::Careless, 97)),
     ];
     for (what, check) in checks {

@@ -32,6 +32,8 @@ fn calls(program: Program, scene: &Scene) -> BTreeMap<&'static str, usize> {
             *counts.entry(*call).or_insert(0) += 1;
         }
     }
+    // Were nothing counted, nothing would be tried.
+    assert!(counts["write"] >= 5, "{counts:?}");
     counts
 }
 
@@ -48,7 +50,12 @@ fn inject(program: Program, scene: &Scene, call: &str, what: &str, when: &str) -
 /// Killed at every call, each time in a new folder, and gone on.
 pub fn check_kills(program: Program) -> Result<(), String> {
     undisturbed();
-    for (call, count) in calls(program, &Scene::new()) {
+    let counts = calls(program, &Scene::new());
+    let brought_to_disk = counts.contains_key("fsync") && counts.contains_key("renameat");
+    if !brought_to_disk {
+        return Err(format!("files are not written whole: {counts:?}"));
+    }
+    for (call, count) in counts {
         for when in 1..=count {
             let scene = Scene::new();
             let killed = inject(program, &scene, call, "signal=SIGKILL", &when.to_string());
@@ -72,11 +79,12 @@ fn with_an_old_state() -> Scene {
 /// Fails every call in turn, once or from then on.
 pub fn check_errors(program: Program, error: &str, from_then_on: bool) -> Result<(), String> {
     undisturbed();
-    for (call, count) in calls(program, &with_an_old_state()) {
+    let before = with_an_old_state();
+    let old = before.result();
+    for (call, count) in calls(program, &before.copy()) {
         for when in 1..=count {
             let place = format!("{error} at {call} {when}");
-            let scene = with_an_old_state();
-            let old = scene.result();
+            let scene = before.copy();
             let suffix = if from_then_on { "+" } else { "" };
             let what = format!("error={error}");
             let failed = inject(program, &scene, call, &what, &format!("{when}{suffix}"));

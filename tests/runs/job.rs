@@ -46,9 +46,9 @@ const DESIGN: &str = r#"{
 "#;
 
 /// Starts of the run.
-pub const STARTS: u64 = 8;
+pub const STARTS: u64 = 4;
 /// Designs in its list.
-pub const KEEP: usize = 3;
+pub const KEEP: usize = 2;
 
 /// A folder of its own with the design in it; the run folder will be `run`.
 pub struct Scene {
@@ -60,6 +60,13 @@ impl Scene {
         let folder = tempfile::tempdir_in("/dev/shm").or_else(|_| tempfile::tempdir()).unwrap();
         write(&folder.path().join("design.json"), DESIGN.as_bytes());
         Self { folder }
+    }
+
+    /// The same folder once more.
+    pub fn copy(&self) -> Self {
+        let copy = Self::new();
+        copy_into(&self.run_folder(), &copy.run_folder());
+        copy
     }
 
     pub fn path(&self) -> &Path {
@@ -102,6 +109,19 @@ impl Scene {
     /// What a finished run has left, all but the journal and the lock.
     pub fn result(&self) -> BTreeMap<String, Vec<u8>> {
         result_in(&self.run_folder())
+    }
+}
+
+fn copy_into(from: &Path, to: &Path) {
+    std::fs::create_dir(to).unwrap();
+    for entry in std::fs::read_dir(from).unwrap() {
+        let entry = entry.unwrap();
+        let to = to.join(entry.file_name());
+        if entry.path().is_dir() {
+            copy_into(&entry.path(), &to);
+        } else {
+            std::fs::copy(entry.path(), to).unwrap();
+        }
     }
 }
 
@@ -187,7 +207,8 @@ impl Chance {
     /// From 0 to 1.
     pub fn next(&mut self) -> f64 {
         // Knuth's linear congruential generator (The Art of Computer Programming 2, 3.3.4).
-        self.0 = self.0.wrapping_mul(6_364_136_223_846_793_005).wrapping_add(1_442_695_040_888_963_407);
+        self.0 =
+            self.0.wrapping_mul(6_364_136_223_846_793_005).wrapping_add(1_442_695_040_888_963_407);
         (self.0 >> 11) as f64 / (1u64 << 53) as f64
     }
 }

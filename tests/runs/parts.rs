@@ -46,7 +46,7 @@ fn folders_of_their_own_in_any_order_do_so_too() {
     part(&folders[0], "1/2", "");
     part(&folders[1], "2/2", "");
     // The same part twice, once not to the end.
-    part(&folders[2], "2/2", "--starts 3");
+    part(&folders[2], "2/2", "--starts 2");
     let name = |i: usize| folders[i].run_folder().display().to_string();
     let out = Scene::new();
     let orders = [vec![name(0), name(1), name(2)], vec![name(2), name(1), name(0), name(1)]];
