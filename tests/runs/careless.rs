@@ -3,12 +3,14 @@
 use crate::job::Program;
 use crate::{injected, journals, kills};
 
+type Check = fn() -> Result<(), String>;
+
 #[test]
 fn a_careless_program_is_found_out() {
     if !injected::can_trace() {
         return;
     }
-    let checks: [(&str, fn() -> Result<(), String>); 4] = [
+    let checks: [(&str, Check); 4] = [
         ("random kills", || kills::check(Program::Careless)),
         ("a kill at every call", || injected::check_kills(Program::Careless)),
         ("a full disk at every call", || injected::check_errors(Program::Careless, "ENOSPC", true)),
