@@ -27,11 +27,13 @@
 pub mod brief;
 #[doc(hidden)]
 pub mod careless;
+pub mod change;
 pub mod design_file;
 mod document_kind;
 pub mod freedom;
 pub mod optimise;
 pub mod overnight;
+pub mod retune;
 pub mod run;
 pub mod sampling;
 pub mod search;
