@@ -24,6 +24,7 @@ mod peers;
 mod profile;
 mod spread;
 mod threads;
+mod tolerance;
 mod zoom_states;
 
 /// Anything that stops a measurement.
@@ -45,11 +46,12 @@ fn main() -> Result<(), Failure> {
         ["trace"] => bare_loop::section()?,
         ["states"] => zoom_states::section()?,
         ["threads"] => threads::section()?,
+        ["tolerance"] => tolerance::section()?,
         ["instructions"] => instructions::section()?,
         ["profile"] => profile::section()?,
         _ => {
             return Err("sections: jobs [DESIGN…], more-states, derivatives, trace, states, \
-                        threads, instructions, profile; or kernel NAME CALLS, peer-input DESIGN"
+                        threads, tolerance, instructions, profile; or kernel NAME CALLS, peer-input DESIGN"
                 .into());
         }
     };

@@ -2,7 +2,8 @@
 
 use crate::program::{run, run_on};
 
-const COMMANDS: [&str; 6] = ["assess", "optimise", "trace", "glass", "schema", "completions"];
+const COMMANDS: [&str; 7] =
+    ["assess", "optimise", "tolerance", "trace", "glass", "schema", "completions"];
 
 #[test]
 fn the_overview() {

@@ -11,4 +11,5 @@ mod program;
 mod readme;
 mod signals;
 mod streams;
+mod tolerance;
 mod trace;

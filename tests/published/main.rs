@@ -7,4 +7,6 @@ mod glass;
 mod least_squares;
 mod scipy;
 mod smooth;
+mod temperature;
+mod tolerance;
 mod trace;

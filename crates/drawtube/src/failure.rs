@@ -4,7 +4,10 @@ use std::io;
 
 use driver::optimise::OptimiseError;
 use driver::solve::SettingsError;
+use driver::temperature::AtTemperatureError;
+use driver::tolerance::ToleranceError;
 use driver::write_whole::WriteError;
+use report::RowsError;
 use report::ray::RayError;
 use serde_json::{Value, json};
 use surface_model::document::{Complaints, nearest, quoted};
@@ -53,6 +56,12 @@ pub(crate) enum Failure {
     /// The optimisation could not begin.
     #[error(transparent)]
     Optimise(#[from] OptimiseError),
+    /// The tolerances could not be told.
+    #[error(transparent)]
+    Tolerance(#[from] ToleranceError),
+    /// The design cannot be told at a temperature.
+    #[error(transparent)]
+    Temperature(#[from] AtTemperatureError),
     /// The ray has no path.
     #[error(transparent)]
     Ray(#[from] RayError),
@@ -74,6 +83,12 @@ pub(crate) enum Failure {
     /// A result could not be made into a document.
     #[error("the result cannot be written as JSON: {0}")]
     Document(serde_json::Error),
+    /// A result could not be made into rows.
+    #[error("the result cannot be written as CSV: {0}")]
+    Rows(RowsError),
+    /// Threads cannot be started.
+    #[error("threads cannot be started: {0}")]
+    Threads(rayon::ThreadPoolBuildError),
     /// No method was run.
     #[error("no method was run")]
     NoStage,
@@ -96,10 +111,22 @@ impl Failure {
             | Self::Glass(_)
             | Self::Search(_) => ExitStatus::WrongInput,
             Self::Optimise(error) => status_of(error),
-            Self::Ray(RayError::Glass(_) | RayError::Direction { .. }) => ExitStatus::WrongInput,
-            Self::Ray(_) | Self::Document(_) | Self::NoStage | Self::Signals(_) => {
-                ExitStatus::Failed
+            Self::Tolerance(
+                ToleranceError::Nominal { .. }
+                | ToleranceError::Overflow { .. }
+                | ToleranceError::Spoilt { .. },
+            ) => ExitStatus::Failed,
+            Self::Tolerance(_) | Self::Temperature(AtTemperatureError::Temperature(_)) => {
+                ExitStatus::WrongInput
             }
+            Self::Temperature(_) => ExitStatus::Failed,
+            Self::Ray(RayError::Glass(_) | RayError::Direction { .. }) => ExitStatus::WrongInput,
+            Self::Ray(_)
+            | Self::Document(_)
+            | Self::Rows(_)
+            | Self::Threads(_)
+            | Self::NoStage
+            | Self::Signals(_) => ExitStatus::Failed,
             Self::Write(_) | Self::StandardOutput(_) => ExitStatus::CannotWrite,
         }
     }
@@ -116,6 +143,8 @@ impl Failure {
                 })
             }
             Self::Optimise(error) => advice_on(error),
+            Self::Tolerance(error) => advice_on_tolerances(error),
+            Self::Temperature(AtTemperatureError::Temperature(error)) => error.advice(),
             Self::Lookup(error) => error.advice(),
             Self::Glass(error) | Self::Ray(RayError::Glass(error)) => error.advice(),
             Self::Search(error) => error.advice(),
@@ -178,9 +207,27 @@ fn status_of(error: &OptimiseError) -> ExitStatus {
         OptimiseError::NoGoals
         | OptimiseError::NothingFree
         | OptimiseError::Variables(_)
-        | OptimiseError::Glass(_) => ExitStatus::WrongInput,
+        | OptimiseError::Glass(_)
+        | OptimiseError::Temperature(_) => ExitStatus::WrongInput,
         _ => ExitStatus::Failed,
     }
+}
+
+fn advice_on_tolerances(error: &ToleranceError) -> Option<String> {
+    let advice = match error {
+        ToleranceError::NothingRequired => {
+            "add \"goals\" to the file, or \"require\" to its \"tolerances\""
+        }
+        ToleranceError::Readjusted(_) => {
+            "give \"spacings\", an address such as \"/states/*/spacings_mm/1\", or \"none\""
+        }
+        ToleranceError::Nominal { .. } => "assess tells where rays fail",
+        ToleranceError::Spoilt { .. } => {
+            "tighten that tolerance, or make the surfaces wider than the beam"
+        }
+        _ => return None,
+    };
+    Some(advice.to_owned())
 }
 
 fn advice_on(error: &OptimiseError) -> Option<String> {
@@ -193,6 +240,7 @@ fn advice_on(error: &OptimiseError) -> Option<String> {
             "begin with weaker curves or a narrower beam (traced_to); assess tells where rays fail"
         }
         OptimiseError::Glass(error) => return error.advice(),
+        OptimiseError::Temperature(error) => return error.advice(),
         _ => return None,
     };
     Some(advice.to_owned())

@@ -1,4 +1,4 @@
-//! A design file: the document as it was written, and what its three owners make of it.
+//! A design file: the document as it was written, and what its owners make of it.
 
 use merit_function::variables::FreePlace;
 use merit_function::wishes::{Wishes, WishesDocument};
@@ -14,6 +14,7 @@ use surface_model::place::Place;
 use surface_model::ranges::LARGEST_RADIUS_MM;
 
 use crate::freedom::{self, FreedomDocument};
+use crate::tolerance::{self, Tolerances, TolerancesDocument};
 
 /// The newest format of design files this program reads and writes.
 pub const DESIGN_FORMAT: &str = "drawtube/1";
@@ -28,6 +29,8 @@ pub struct DesignFile {
     pub wishes: Wishes,
     /// What may change: `free` less `held`.
     pub free: Vec<FreePlace>,
+    /// How well it can be built: `tolerances`.
+    pub tolerances: Tolerances,
 }
 
 impl DesignFile {
@@ -41,6 +44,7 @@ impl DesignFile {
         let optics: OpticsDocument = document.read()?;
         let wanted: WishesDocument = document.read()?;
         let freedom: FreedomDocument = document.read()?;
+        let workshop: TolerancesDocument = document.read()?;
 
         let (design, wishes) = match (optics.resolve(), wanted.resolve()) {
             (Ok(design), Ok(wishes)) => (design, wishes),
@@ -50,9 +54,17 @@ impl DesignFile {
                 return Err(document.refuse(optics.chain(wanted)));
             }
         };
-        match freedom::resolve(&freedom, &design, document.value()) {
-            Ok(free) => Ok(Self { document, design, wishes, free }),
-            Err(complaints) => Err(document.refuse(complaints)),
+        if let Some(complaint) = silent_about_temperature(&design, &wishes) {
+            return Err(document.refuse([complaint]));
+        }
+        let free = freedom::resolve(&freedom, &design, document.value());
+        let tolerances = tolerance::resolve(&workshop, &design, document.value());
+        match (free, tolerances) {
+            (Ok(free), Ok(tolerances)) => Ok(Self { document, design, wishes, free, tolerances }),
+            (free, tolerances) => {
+                let free = free.err().into_iter().flatten();
+                Err(document.refuse(free.chain(tolerances.err().into_iter().flatten())))
+            }
         }
     }
 
@@ -93,6 +105,20 @@ impl DesignFile {
     pub fn text(&self) -> String {
         layout(self.document.value())
     }
+}
+
+/// Goals at other temperatures need to know how everything changes with temperature.
+fn silent_about_temperature(design: &Design, wishes: &Wishes) -> Option<Complaint> {
+    let listed = wishes.temperatures_c.iter().enumerate();
+    listed.into_iter().find_map(|(i, &temperature_c)| {
+        let error = design.at_temperature(temperature_c).err()?;
+        Some(Complaint {
+            place: PlaceInFile::Value(Address::root().key("temperatures_c").index(i)),
+            found: error.to_string(),
+            expected: None,
+            advice: error.advice(),
+        })
+    })
 }
 
 /// Writes one number into a document, in the file's own unit: a radius too large for a file is
@@ -148,9 +174,14 @@ fn part<T: JsonSchema>() -> Schema {
     settings.into_generator().into_root_schema_for::<T>()
 }
 
-/// JSON Schema of design files: the union of what the three owners read.
+/// JSON Schema of design files: the union of what its owners read.
 #[must_use]
 pub fn design_schema() -> Schema {
-    let parts = [part::<OpticsDocument>(), part::<WishesDocument>(), part::<FreedomDocument>()];
+    let parts = [
+        part::<OpticsDocument>(),
+        part::<WishesDocument>(),
+        part::<FreedomDocument>(),
+        part::<TolerancesDocument>(),
+    ];
     union("A drawtube design", &parts)
 }

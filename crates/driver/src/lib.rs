@@ -7,6 +7,8 @@
 //! - [`design_file`]: a design file with its three owners' parts, its JSON Schema, and the same
 //!   file with other numbers; [`freedom`]: its `free` and `held`;
 //! - [`fn@optimise::optimise`]: one local optimisation from file to file;
+//! - [`mod@tolerance`]: what a workshop's errors do to a design, and the yield;
+//! - [`temperature`]: what a design does at other temperatures, and how it is brought back;
 //! - [`write_whole`]: the one function of the program that writes files.
 //!
 //! # What it refuses to know
@@ -22,4 +24,6 @@ pub mod design_file;
 pub mod freedom;
 pub mod optimise;
 pub mod solve;
+pub mod temperature;
+pub mod tolerance;
 pub mod write_whole;

@@ -24,6 +24,7 @@
 pub mod assessment;
 pub mod block;
 mod bounds;
+mod climates;
 mod edge;
 pub mod fault;
 pub mod goals;

@@ -13,7 +13,11 @@
 //!   gap, index, conic constant and asphere coefficient, in one backward sweep;
 //! - [`paraxial`], [`first_order`], [`seidel`]: what theory says to first and third order;
 //! - [`wavefront`]: the wavefront error behind the last surface, integrated to convergence;
+//! - [`spoilt`]: the exact trace with surfaces shifted, turned and uneven, as a workshop leaves
+//!   them; [`pupil`]: the wavefront over a beam of such rays, its tilt told apart;
 //! - [`solid`]: thickness at the edge, volume, mass; [`glass`]: the catalogue and own glasses.
+//!
+//! [`temperature`] makes of a design what it is when it is warmer or colder.
 //!
 //! It also owns how design files are read: [`document`] for any JSON document,
 //! [`optics_document`] for the optics in one.
@@ -48,6 +52,8 @@ pub mod housing;
 pub mod optics_document;
 pub mod paraxial;
 pub mod place;
+pub mod pose;
+pub mod pupil;
 pub mod quadrature;
 pub mod ranges;
 pub mod real;
@@ -57,7 +63,9 @@ pub mod seidel;
 pub mod sequence;
 pub mod skew;
 pub mod solid;
+pub mod spoilt;
 pub mod surface;
+pub mod temperature;
 pub mod trace;
 pub mod train;
 pub mod wavefront;

@@ -1,9 +1,11 @@
 //! `assess`: the numbers of a design as it stands.
 
 use driver::design_file::DesignFile;
-use merit_function::assessment::assess;
+use driver::temperature::{TemperatureReport, at_temperatures};
+use merit_function::assessment::{Assessment, assess};
 use report::text;
 use report::text::assessment::Scope;
+use serde::Serialize;
 
 use crate::arguments::AssessArguments;
 use crate::console::Console;
@@ -22,6 +24,7 @@ struct Request {
     file: DesignFile,
     form: Form,
     require: bool,
+    temperatures_c: Vec<f64>,
 }
 
 impl Request {
@@ -31,16 +34,36 @@ impl Request {
             file: input::design(&arguments.design)?,
             form: if arguments.json { Form::Json } else { Form::Text(scope) },
             require: arguments.require,
+            temperatures_c: arguments.temperature,
         })
     }
 }
 
+/// The assessment, with what the design does at other temperatures where that was asked for.
+#[derive(Serialize)]
+struct Printed<'a> {
+    #[serde(flatten)]
+    assessment: &'a Assessment,
+    #[serde(flatten)]
+    warm: Option<&'a TemperatureReport>,
+}
+
 pub(crate) fn run(arguments: AssessArguments, console: &Console) -> Result<ExitStatus, Failure> {
-    let Request { file, form, require } = Request::of(arguments)?;
+    let Request { file, form, require, temperatures_c } = Request::of(arguments)?;
     let assessment = assess(&file.design, &file.wishes);
+    let warm = match temperatures_c.as_slice() {
+        [] => None,
+        temperatures_c => Some(at_temperatures(&file, temperatures_c)?),
+    };
     match form {
-        Form::Json => console.print_json(&assessment)?,
+        Form::Json => {
+            console.print_json(&Printed { assessment: &assessment, warm: warm.as_ref() })?
+        }
         Form::Text(scope) => {
+            if let Some(warm) = &warm {
+                console.print(&text::temperature::temperatures(&file, warm))?;
+                console.print("")?;
+            }
             console.print(&text::assessment::assessment(&file, &assessment, scope))?;
         }
     }

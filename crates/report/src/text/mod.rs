@@ -11,6 +11,8 @@ mod optimised;
 pub mod ray;
 mod states;
 mod table;
+pub mod temperature;
+pub mod tolerance;
 mod verdict;
 
 /// Widest line that running text is broken into, in characters.
