@@ -22,6 +22,7 @@ mod page;
 mod peer_input;
 mod peers;
 mod profile;
+mod search;
 mod spread;
 mod threads;
 mod tolerance;
@@ -47,11 +48,13 @@ fn main() -> Result<(), Failure> {
         ["states"] => zoom_states::section()?,
         ["threads"] => threads::section()?,
         ["tolerance"] => tolerance::section()?,
+        ["search", names @ ..] => search::section(names)?,
         ["instructions"] => instructions::section()?,
         ["profile"] => profile::section()?,
         _ => {
             return Err("sections: jobs [DESIGN…], more-states, derivatives, trace, states, \
-                        threads, tolerance, instructions, profile; or kernel NAME CALLS, peer-input DESIGN"
+                        threads, search [DESIGN…], tolerance, instructions, profile; or \
+                        kernel NAME CALLS, peer-input DESIGN"
                 .into());
         }
     };

@@ -5,8 +5,8 @@ use std::time::Duration;
 use driver::design_file::DesignFile;
 use merit_function::assessment::{Assessment, StateAssessment};
 
-use super::states::at_temperature;
 use super::number::{as_written, counted, fixed_or_dash, significant_or_dash};
+use super::states::at_temperature;
 use super::table::{ARROW, Column, Table};
 use super::{WIDTH, assessment, optimised, paragraph, sections, warnings};
 
@@ -79,8 +79,7 @@ fn row(
         significant_or_dash(state.wavefront.get(k).and_then(|wavefront| wavefront.rms_waves), 3)
     };
     let nm = after.wavefront.get(k).map_or_else(String::new, |w| as_written(w.wavelength_nm));
-    let name =
-        if k == 0 { at_temperature(&after.name, temperature_c) } else { String::new() };
+    let name = if k == 0 { at_temperature(&after.name, temperature_c) } else { String::new() };
     let mut row = vec![name, nm, rms(before), arrow(), rms(after)];
     if k == 0 {
         let error = |state: &StateAssessment| fixed_or_dash(state.ratio_error_percent, 4);
