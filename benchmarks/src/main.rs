@@ -25,6 +25,7 @@ mod profile;
 mod search;
 mod spread;
 mod threads;
+mod tolerance;
 mod zoom_states;
 
 /// Anything that stops a measurement.
@@ -46,12 +47,14 @@ fn main() -> Result<(), Failure> {
         ["trace"] => bare_loop::section()?,
         ["states"] => zoom_states::section()?,
         ["threads"] => threads::section()?,
+        ["tolerance"] => tolerance::section()?,
         ["search", names @ ..] => search::section(names)?,
         ["instructions"] => instructions::section()?,
         ["profile"] => profile::section()?,
         _ => {
             return Err("sections: jobs [DESIGN…], more-states, derivatives, trace, states, \
-                        threads, search [DESIGN…], instructions, profile; or kernel NAME CALLS, peer-input DESIGN"
+                        threads, search [DESIGN…], tolerance, instructions, profile; or \
+                        kernel NAME CALLS, peer-input DESIGN"
                 .into());
         }
     };

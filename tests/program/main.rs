@@ -12,4 +12,5 @@ mod program;
 mod readme;
 mod signals;
 mod streams;
+mod tolerance;
 mod trace;

@@ -8,4 +8,6 @@ mod least_squares;
 mod real_beam;
 mod scipy;
 mod smooth;
+mod temperature;
+mod tolerance;
 mod trace;

@@ -38,6 +38,7 @@ fn run(arguments: Arguments) -> ExitStatus {
     let result = match arguments.command {
         Command::Assess(arguments) => commands::assess::run(arguments, &console),
         Command::Optimise(arguments) => commands::optimise::run(arguments, &console),
+        Command::Tolerance(arguments) => commands::tolerance::run(arguments, &console),
         Command::Overnight(arguments) => commands::overnight::run(arguments, &console),
         Command::Gather(arguments) => commands::gather::run(&arguments, &console),
         Command::Trace(arguments) => commands::trace::run(arguments, &console),

@@ -9,6 +9,7 @@ mod optimise;
 mod overnight;
 mod progress;
 mod schema;
+mod tolerance;
 mod trace;
 
 use std::ffi::OsString;
@@ -24,6 +25,7 @@ pub(crate) use optimise::{MethodArgument, OptimiseArguments};
 pub(crate) use overnight::{OvernightArguments, StrategyArgument};
 pub(crate) use progress::ProgressArgument;
 pub(crate) use schema::{DocumentKind, SchemaArguments};
+pub(crate) use tolerance::{GradeArgument, ToleranceArguments};
 pub(crate) use trace::TraceArguments;
 
 use crate::console::{Console, ErrorFormat};
@@ -83,6 +85,8 @@ pub(crate) enum Command {
     Assess(AssessArguments),
     /// Improve a design: move what is free until the goals are met as well as they can be
     Optimise(OptimiseArguments),
+    /// Tell what a workshop's errors do to a design, and the yield
+    Tolerance(ToleranceArguments),
     /// Search for designs for hours, in a run folder that survives anything
     Overnight(OvernightArguments),
     /// Put the parts of an overnight run together

@@ -7,4 +7,5 @@ pub(crate) mod glass;
 pub(crate) mod optimise;
 pub(crate) mod overnight;
 pub(crate) mod schema;
+pub(crate) mod tolerance;
 pub(crate) mod trace;

@@ -18,6 +18,8 @@ pub mod retune;
 pub mod retune_lists;
 mod states;
 mod table;
+pub mod temperature;
+pub mod tolerance;
 mod verdict;
 
 use driver::design_file::DesignFile;
