@@ -3,6 +3,7 @@
 use std::io;
 
 use driver::optimise::OptimiseError;
+use driver::retune::RetuneError;
 use driver::solve::SettingsError;
 use driver::write_whole::WriteError;
 use report::ray::RayError;
@@ -53,6 +54,12 @@ pub(crate) enum Failure {
     /// The optimisation could not begin.
     #[error(transparent)]
     Optimise(#[from] OptimiseError),
+    /// Nothing suits.
+    #[error("nothing was found: {0}")]
+    NothingFound(&'static str),
+    /// A table could not be laid out.
+    #[error("the table cannot be laid out: {0}")]
+    Table(Box<dyn std::error::Error + Send + Sync>),
     /// The ray has no path.
     #[error(transparent)]
     Ray(#[from] RayError),
@@ -82,6 +89,15 @@ pub(crate) enum Failure {
     Signals(io::Error),
 }
 
+impl From<RetuneError> for Failure {
+    fn from(error: RetuneError) -> Self {
+        match error {
+            RetuneError::Input(complaints) => Self::Input(complaints),
+            RetuneError::Optimise(error) => Self::Optimise(error),
+        }
+    }
+}
+
 impl Failure {
     /// The exit status it leads to.
     pub(crate) fn status(&self) -> ExitStatus {
@@ -97,9 +113,12 @@ impl Failure {
             | Self::Search(_) => ExitStatus::WrongInput,
             Self::Optimise(error) => status_of(error),
             Self::Ray(RayError::Glass(_) | RayError::Direction { .. }) => ExitStatus::WrongInput,
-            Self::Ray(_) | Self::Document(_) | Self::NoStage | Self::Signals(_) => {
-                ExitStatus::Failed
-            }
+            Self::Ray(_)
+            | Self::Document(_)
+            | Self::NoStage
+            | Self::NothingFound(_)
+            | Self::Table(_)
+            | Self::Signals(_) => ExitStatus::Failed,
             Self::Write(_) | Self::StandardOutput(_) => ExitStatus::CannotWrite,
         }
     }

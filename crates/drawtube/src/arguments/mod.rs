@@ -6,6 +6,7 @@ mod completions;
 mod glass;
 mod optimise;
 mod progress;
+mod retune;
 mod schema;
 mod trace;
 
@@ -19,6 +20,7 @@ pub(crate) use completions::CompletionsArguments;
 pub(crate) use glass::GlassArguments;
 pub(crate) use optimise::{MethodArgument, OptimiseArguments};
 pub(crate) use progress::ProgressArgument;
+pub(crate) use retune::RetuneArguments;
 pub(crate) use schema::{DocumentKind, SchemaArguments};
 pub(crate) use trace::TraceArguments;
 
@@ -75,6 +77,8 @@ pub(crate) enum Command {
     Assess(AssessArguments),
     /// Improve a design: move what is free until the goals are met as well as they can be
     Optimise(OptimiseArguments),
+    /// After a change, move only what can still move, in stages
+    Retune(RetuneArguments),
     /// Follow one exact ray through a design, surface by surface
     Trace(TraceArguments),
     /// Look through the glass catalogue, or find equivalents of a glass

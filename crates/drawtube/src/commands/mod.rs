@@ -4,5 +4,6 @@ pub(crate) mod assess;
 pub(crate) mod completions;
 pub(crate) mod glass;
 pub(crate) mod optimise;
+pub(crate) mod retune;
 pub(crate) mod schema;
 pub(crate) mod trace;

@@ -30,7 +30,10 @@ pub(super) fn define(
         _ => return Ok(()),
     };
     let Some(glasses) = glasses_of(value) else { return Ok(()) };
-    let stem = format!("{replaced} {}", if change.value().is_object() { "as changed" } else { "as measured" });
+    let stem = format!(
+        "{replaced} {}",
+        if change.value().is_object() { "as changed" } else { "as measured" }
+    );
     let taken = |name: &String| glasses.get(name).is_some_and(|other| *other != definition);
     let numbered = (2..).map(|number| format!("{stem} {number}"));
     let name = std::iter::once(stem.clone()).chain(numbered).find(|name| !taken(name));

@@ -31,8 +31,8 @@ use crate::design_file::{DesignFile, hold};
 use target::{Edit, Target};
 
 pub use difference::{Difference, differences};
-pub(crate) use written::value_of;
 pub use written::Change;
+pub(crate) use written::value_of;
 
 /// A design file with changes made.
 #[derive(Debug, Clone)]
@@ -68,8 +68,11 @@ pub fn apply(file: &DesignFile, changes: &[Change]) -> Result<Changed, Complaint
         return Err(Complaints::elsewhere(file.label(), wrong, before));
     }
     edit(&mut value, &mut targets);
-    let facts: Vec<Address> =
-        targets.iter().filter(|(_, target)| target.is_number()).map(|(_, t)| t.at.clone()).collect();
+    let facts: Vec<Address> = targets
+        .iter()
+        .filter(|(_, target)| target.is_number())
+        .map(|(_, t)| t.at.clone())
+        .collect();
     hold_numbers(&mut value, &facts);
     let taken_up = take_up(&mut value, file, &facts);
     match DesignFile::read(Document::from_value(file.label(), value.clone())) {
@@ -91,7 +94,8 @@ fn edit(value: &mut Value, targets: &mut [(usize, Target)]) {
                 }
             }
             Edit::Insert(new) => {
-                if let (Some(Value::Object(map)), Some(key)) = (entries(&target.at, value), target.at.last())
+                if let (Some(Value::Object(map)), Some(key)) =
+                    (entries(&target.at, value), target.at.last())
                 {
                     map.insert(key.to_owned(), new.clone());
                 }
@@ -166,7 +170,8 @@ fn with_spacings(mut new: Value, list_at: &Address, states: &[Value]) -> Value {
     }
     let ratio = |state: &Value| state.get("ratio").and_then(Value::as_f64);
     let Some(wanted) = ratio(&new) else { return new };
-    let off = |state: &Value| ratio(state).map_or(f64::INFINITY, |ratio| (ratio / wanted - 1.0).abs());
+    let off =
+        |state: &Value| ratio(state).map_or(f64::INFINITY, |ratio| (ratio / wanted - 1.0).abs());
     let nearest = states.iter().min_by(|a, b| off(a).total_cmp(&off(b)));
     if let (Some(nearest), Value::Object(map)) = (nearest, &mut new)
         && !map.contains_key("spacings_mm")
@@ -202,9 +207,8 @@ fn take_up(value: &mut Value, file: &DesignFile, facts: &[Address]) -> Vec<Taken
         let at = place(state, after).address();
         facts.iter().any(|fact| fact.contains(&at))
     };
-    let taken_up = design.fit_to_housing(|state, mut spacings| {
-        spacings.rfind(|&after| !is_fact(state, after))
-    });
+    let taken_up = design
+        .fit_to_housing(|state, mut spacings| spacings.rfind(|&after| !is_fact(state, after)));
     for taken in &taken_up {
         let place = place(taken.state, taken.after);
         if let Some(slot) = place.address().get_mut(value) {

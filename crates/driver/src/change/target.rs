@@ -57,8 +57,10 @@ pub(super) fn targets(change: &Change, before: &Value) -> Result<Vec<Target>, Co
     }
     let parents = || at.parent().and_then(|parent| parent.resolve(before).ok()).unwrap_or_default();
     if at.last() == Some(BEHIND) {
-        let lists: Vec<Address> =
-            parents().into_iter().filter(|at| at.get(before).is_some_and(Value::is_array)).collect();
+        let lists: Vec<Address> = parents()
+            .into_iter()
+            .filter(|at| at.get(before).is_some_and(Value::is_array))
+            .collect();
         if !lists.is_empty() && !value.is_null() {
             return Ok(all(lists, Edit::Append(value.clone())));
         }

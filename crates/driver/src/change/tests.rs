@@ -43,9 +43,9 @@ fn told(fixed: &[&str], changes: &[&str]) -> String {
     let found = differences(design(fixed).document().value(), after.file.document().value());
     let line = |d: &Difference| {
         let shown = |value: &Option<Value>| value.as_ref().map_or("-".into(), Value::to_string);
-        let by = d.by.zip(d.by_percent).map_or_else(String::new, |(by, percent)| {
-            format!(" by {by:.4}, {percent:.2} %")
-        });
+        let by =
+            d.by.zip(d.by_percent)
+                .map_or_else(String::new, |(by, percent)| format!(" by {by:.4}, {percent:.2} %"));
         format!("{} {} -> {}{by}", d.at, shown(&d.from), shown(&d.to))
     };
     found.iter().map(line).collect::<Vec<_>>().join("\n")

@@ -29,7 +29,8 @@ impl Change {
                 advice: None,
             }));
         };
-        let at = address.parse::<Address>().map_err(|error| refused(error.complaint(Place::File)))?;
+        let at =
+            address.parse::<Address>().map_err(|error| refused(error.complaint(Place::File)))?;
         Ok(Self { at, value: value_of(value), source })
     }
 

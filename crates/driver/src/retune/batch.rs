@@ -68,7 +68,9 @@ pub fn units(file: &DesignFile, table: &Table) -> Result<Vec<Unit>, Complaints> 
             expected: Some("heads such as: serial,/groups/exit/elements/0/radii_mm/0".to_owned()),
             advice: None,
         };
-        return Err(table.refuse(vec![(table.heads().first().map(|head| head.position), complaint)]));
+        return Err(
+            table.refuse(vec![(table.heads().first().map(|head| head.position), complaint)])
+        );
     };
     let columns = columns(file, table, serial)?;
     refuse_twins(table, serial)?;
@@ -99,7 +101,9 @@ fn columns(
     for (column, head) in table.heads().iter().enumerate().filter(|(column, _)| *column != serial) {
         let address = head.text.parse::<Address>().map_err(|error| error.complaint(Place::File));
         let found = address.and_then(|address| {
-            address.resolve(file.document().value()).map_err(|error| error.complaint(Place::File))?;
+            address
+                .resolve(file.document().value())
+                .map_err(|error| error.complaint(Place::File))?;
             Ok(address)
         });
         match found {
@@ -115,7 +119,8 @@ fn refuse_twins(table: &Table, serial: usize) -> Result<(), Complaints> {
     let mut wrong = Vec::new();
     for cell in table.rows().iter().filter_map(|row| row.get(serial)) {
         if let Some(line) = seen.insert(cell.text.as_str(), cell.position.line) {
-            let found = format!("the serial number {} is that of line {line} too", quoted(&cell.text));
+            let found =
+                format!("the serial number {} is that of line {line} too", quoted(&cell.text));
             let expected = Some("each unit once".to_owned());
             let complaint = Complaint { place: Place::File, found, expected, advice: None };
             wrong.push((Some(cell.position), complaint));
@@ -193,7 +198,10 @@ impl Totals {
 ///
 /// # Errors
 /// The table cannot be laid out.
-pub fn spacing_table(file: &DesignFile, units: &[TunedUnit]) -> Result<Vec<u8>, csv::Error> {
+pub fn spacing_table(
+    file: &DesignFile,
+    units: &[TunedUnit],
+) -> Result<Vec<u8>, Box<dyn std::error::Error + Send + Sync>> {
     let document = file.document().value();
     let mut table = csv::Writer::from_writer(Vec::new());
     let mut heads = vec![SERIAL_HEAD.to_owned(), "meets".to_owned(), "merit".to_owned()];
@@ -209,8 +217,10 @@ pub fn spacing_table(file: &DesignFile, units: &[TunedUnit]) -> Result<Vec<u8>, 
         let merit = unit.merit.map_or_else(String::new, |merit| merit.to_string());
         let mut row = vec![unit.serial.clone(), meets.to_owned(), merit];
         let spacings = unit.states.iter().flat_map(|state| &state.spacings_mm);
-        row.extend(spacings.map(|&mm| if unit.fault.is_some() { String::new() } else { mm.to_string() }));
+        row.extend(
+            spacings.map(|&mm| if unit.fault.is_some() { String::new() } else { mm.to_string() }),
+        );
         table.write_record(&row)?;
     }
-    table.into_inner().map_err(|error| csv::Error::from(error.into_error()))
+    Ok(table.into_inner().map_err(csv::IntoInnerError::into_error)?)
 }

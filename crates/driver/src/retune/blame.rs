@@ -111,7 +111,9 @@ fn by_derivatives(file: &DesignFile, changed: &Design) -> Option<f64> {
     let direction = |k: usize, nm: f64| {
         let train = |design: &Design| design.train(design.states.get(k)?, nm).ok();
         let (old, new) = (train(&file.design), train(changed));
-        old.zip(new).map_or_else(Vec::new, |(old, new)| steps(&old, &new, quantities, &free_shapes(&free, &file.design)))
+        old.zip(new).map_or_else(Vec::new, |(old, new)| {
+            steps(&old, &new, quantities, &free_shapes(&free, &file.design))
+        })
     };
     let (residuals, slopes) = merit.along(&start, direction).ok()?;
     let costs = residuals.iter().zip(&slopes).map(|(r, s)| (2.0 * r + s) * s);
@@ -143,12 +145,7 @@ fn free_shapes(free: &[FreePlace], design: &Design) -> Vec<usize> {
 }
 
 /// By how much which quantity of a train changes.
-fn steps(
-    old: &Train,
-    new: &Train,
-    quantities: Quantities,
-    shaped: &[usize],
-) -> Vec<(usize, f64)> {
+fn steps(old: &Train, new: &Train, quantities: Quantities, shaped: &[usize]) -> Vec<(usize, f64)> {
     let mut steps = Vec::new();
     let mut step = |place: usize, from: f64, to: f64| {
         if from.to_bits() != to.to_bits() {

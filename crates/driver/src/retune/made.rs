@@ -73,9 +73,10 @@ fn by_name(word: &str, known: &[(&str, Address)]) -> Result<Vec<Address>, Compla
 }
 
 fn at_address(word: &str, document: &Value) -> Result<Vec<Address>, Complaint> {
-    let address: Address = word.parse().map_err(|error: surface_model::document::AddressSyntaxError| {
-        error.complaint(Place::File)
-    })?;
+    let address: Address =
+        word.parse().map_err(|error: surface_model::document::AddressSyntaxError| {
+            error.complaint(Place::File)
+        })?;
     let found = address.resolve(document).map_err(|error| error.complaint(Place::File))?;
     let is_part = |at: &Address| {
         matches!(at.steps().as_slice(), ["groups", _] | ["groups", _, "elements", _])

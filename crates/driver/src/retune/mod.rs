@@ -28,13 +28,12 @@ use surface_model::place::Place;
 
 use crate::change::{Change, Changed, apply};
 use crate::design_file::DesignFile;
-use crate::optimise::{Optimisation, OptimiseError, OptimisationReport, optimise};
+use crate::optimise::{Optimisation, OptimisationReport, OptimiseError, optimise};
 use crate::solve::{Observer, Settings};
 use blame::Blame;
 
 /// Why a design could not be retuned.
 #[derive(Debug, thiserror::Error)]
-#[non_exhaustive]
 pub enum RetuneError {
     /// A change, a part or a table is not right.
     #[error("{0}")]
@@ -198,8 +197,15 @@ fn stage(moving: Moving, file: &DesignFile) -> Stage {
 
 fn optimised(moving: Moving, result: Optimisation) -> Stage {
     let Optimisation { file, report, stopped } = result;
-    let OptimisationReport { end, iterations, evaluations, solve_seconds, on_bounds, variables, .. } =
-        report;
+    let OptimisationReport {
+        end,
+        iterations,
+        evaluations,
+        solve_seconds,
+        on_bounds,
+        variables,
+        ..
+    } = report;
     let solver = Solver {
         stopped: report.stopped,
         was_successful: stopped.was_successful(),

@@ -42,7 +42,13 @@ impl Table {
         let mut wrong = Vec::new();
         for record in reader.records() {
             let record = record.map_err(|error| {
-                table.refuse(vec![(None, plain(&format!("the table cannot be read: {error}"), "a table with commas between its cells"))])
+                table.refuse(vec![(
+                    None,
+                    plain(
+                        &format!("the table cannot be read: {error}"),
+                        "a table with commas between its cells",
+                    ),
+                )])
             })?;
             let start = record.position().map_or(0, |position| position.byte());
             let cells = places.cells(usize::try_from(start).unwrap_or(usize::MAX), &record);
@@ -185,12 +191,8 @@ mod tests {
 
     #[test]
     fn what_is_no_table_is_told_with_its_place() {
-        let all = [
-            &b""[..],
-            b"\n\n",
-            b"serial,/a\nZ-1,2\nZ-2\nZ-3,1,2\n",
-            b"serial,/a\nZ-1,\xff\n",
-        ];
+        let all =
+            [&b""[..], b"\n\n", b"serial,/a\nZ-1,2\nZ-2\nZ-3,1,2\n", b"serial,/a\nZ-1,\xff\n"];
         insta::assert_snapshot!(all.map(told).join("\n"), @"");
     }
 

@@ -8,7 +8,9 @@
 use rayon::prelude::*;
 use serde::Serialize;
 use serde_json::Value;
-use surface_model::document::{Address, Complaint, Complaints, Place as PlaceInFile, Source, quoted};
+use surface_model::document::{
+    Address, Complaint, Complaints, Place as PlaceInFile, Source, quoted,
+};
 use surface_model::place::Place;
 
 use super::RetuneError;
@@ -106,7 +108,8 @@ impl Tools {
         let signed = |tool: f64| Value::from(if curvature < 0.0 { -tool } else { tool });
         let steeper = above.checked_sub(1).and_then(|i| self.radii_mm.get(i));
         let flatter = self.radii_mm.get(above);
-        let mut found: Vec<Value> = [steeper, flatter].into_iter().flatten().map(|&t| signed(t)).collect();
+        let mut found: Vec<Value> =
+            [steeper, flatter].into_iter().flatten().map(|&t| signed(t)).collect();
         if flatter.is_none() && self.flat {
             found.push(Value::from("flat"));
         }
@@ -122,11 +125,13 @@ fn radius(cell: &Cell) -> Result<Option<f64>, Complaint> {
         return Ok(None);
     }
     let radius_mm = cell.text.parse::<f64>().ok().map(f64::abs);
-    radius_mm.filter(|radius_mm| (1e-3..=1e9).contains(radius_mm)).map(Some).ok_or_else(|| Complaint {
-        place: PlaceInFile::File,
-        found: format!("{} is not a radius", quoted(&cell.text)),
-        expected: Some("a number of mm from 0.001 to 1 000 000 000, or \"flat\"".to_owned()),
-        advice: None,
+    radius_mm.filter(|radius_mm| (1e-3..=1e9).contains(radius_mm)).map(Some).ok_or_else(|| {
+        Complaint {
+            place: PlaceInFile::File,
+            found: format!("{} is not a radius", quoted(&cell.text)),
+            expected: Some("a number of mm from 0.001 to 1 000 000 000, or \"flat\"".to_owned()),
+            advice: None,
+        }
     })
 }
 
@@ -158,8 +163,10 @@ pub fn move_to_tools(
         if trials.is_empty() {
             return Ok(done);
         }
-        let outcomes: Vec<Result<Trial, RetuneError>> =
-            trials.par_iter().map(|(place, to)| attempt(&done.file, *place, to, settings)).collect();
+        let outcomes: Vec<Result<Trial, RetuneError>> = trials
+            .par_iter()
+            .map(|(place, to)| attempt(&done.file, *place, to, settings))
+            .collect();
         let best = cheapest(&trials, outcomes)?;
         let (place, to) = &trials[best.0];
         let before = done.moves.last().map_or(done.merit_before, |last| last.merit);

@@ -45,7 +45,9 @@ fn decimals(by: f64) -> usize {
 fn value(value: Option<&Value>) -> String {
     match value {
         None => NONE.to_owned(),
-        Some(Value::Number(number)) => number.as_f64().map_or_else(|| number.to_string(), number_as_read),
+        Some(Value::Number(number)) => {
+            number.as_f64().map_or_else(|| number.to_string(), number_as_read)
+        }
         Some(Value::String(text)) => text.clone(),
         Some(Value::Object(map)) => match map.get("name").and_then(Value::as_str) {
             Some(name) => name.to_owned(),

@@ -83,10 +83,8 @@ fn merits(retuning: &Retuning) -> String {
         (Column::Right, "limits\ncrossed"),
     ]);
     for stage in &retuning.stages {
-        let missed_goals = marks(&stage.file, &stage.assessment)
-            .iter()
-            .filter(|mark| mark.size() > 1.0)
-            .count();
+        let missed_goals =
+            marks(&stage.file, &stage.assessment).iter().filter(|mark| mark.size() > 1.0).count();
         let crossed = stage.assessment.limits.iter().filter(|limit| !limit.met).count();
         let recovered = retuning.recovered_percent(stage);
         table.row([
@@ -286,7 +284,10 @@ fn closing(retuning: &Retuning) -> String {
     if let (Some(worst), true) = (worst, retuning.blame.len() > 1) {
         let how = if worst.by_derivatives.is_some() { "from derivatives" } else { "traced alone" };
         let cost = significant(worst.cost().unwrap_or(0.0), 3);
-        told.push(format!("What hurt most is {}: it adds {cost} to the merit, {how}.", worst.change));
+        told.push(format!(
+            "What hurt most is {}: it adds {cost} to the merit, {how}.",
+            worst.change
+        ));
     }
     if let Some(stage) = retuning.stage(Moving::Spacings)
         && let Some(percent) = retuning.recovered_percent(stage)

@@ -108,7 +108,8 @@ pub fn batch(file: &DesignFile, units: &[TunedUnit]) -> String {
                 row[2] = marked(unit.merit, unit.meets);
             }
             row.push(state.name.clone());
-            let told = |mm: &f64| if unit.fault.is_some() { NONE.to_owned() } else { fixed(*mm, 3) };
+            let told =
+                |mm: &f64| if unit.fault.is_some() { NONE.to_owned() } else { fixed(*mm, 3) };
             row.extend(state.spacings_mm.iter().map(told));
             table.row(row);
         }
@@ -126,7 +127,10 @@ pub fn batch(file: &DesignFile, units: &[TunedUnit]) -> String {
 
 fn totals(units: &[TunedUnit]) -> String {
     let totals = Totals::of(units);
-    let worst = units.iter().filter_map(|unit| Some((unit.merit?, unit))).max_by(|a, b| a.0.total_cmp(&b.0));
+    let worst = units
+        .iter()
+        .filter_map(|unit| Some((unit.merit?, unit)))
+        .max_by(|a, b| a.0.total_cmp(&b.0));
     let mut told = format!(
         "{}: {} meet everything with the spacings of the design, {} with their own",
         counted(totals.units, "unit"),
@@ -138,7 +142,11 @@ fn totals(units: &[TunedUnit]) -> String {
     }
     told.push('.');
     if let Some((merit, unit)) = worst {
-        told.push_str(&format!(" The worst is {}, merit {}.", unit.serial, fixed_or_dash(Some(merit), 4)));
+        told.push_str(&format!(
+            " The worst is {}, merit {}.",
+            unit.serial,
+            fixed_or_dash(Some(merit), 4)
+        ));
     }
     paragraph(&told, WIDTH, "")
 }
