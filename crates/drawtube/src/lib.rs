@@ -13,7 +13,9 @@ mod destination;
 pub mod exit_status;
 mod failure;
 mod input;
+mod part;
 mod progress;
+mod run_progress;
 mod signals;
 
 use std::process::ExitCode;
@@ -38,6 +40,8 @@ fn run(arguments: Arguments) -> ExitStatus {
         Command::Assess(arguments) => commands::assess::run(arguments, &console),
         Command::Optimise(arguments) => commands::optimise::run(arguments, &console),
         Command::Retune(arguments) => commands::retune::run(arguments, &console),
+        Command::Overnight(arguments) => commands::overnight::run(arguments, &console),
+        Command::Gather(arguments) => commands::gather::run(&arguments, &console),
         Command::Trace(arguments) => commands::trace::run(arguments, &console),
         Command::Glass(arguments) => commands::glass::run(arguments, &console),
         Command::Schema(arguments) => commands::schema::run(arguments, &console),

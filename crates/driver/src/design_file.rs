@@ -4,21 +4,16 @@ use std::sync::OnceLock;
 
 use merit_function::variables::FreePlace;
 use merit_function::wishes::{Wishes, WishesDocument};
-use schemars::generate::SchemaSettings;
-use schemars::{JsonSchema, Schema};
+use schemars::Schema;
 use serde_json::Value;
 use surface_model::design::Design;
-use surface_model::document::{
-    Address, Complaint, Complaints, Document, Place as PlaceInFile, layout, quoted, union,
-};
+use surface_model::document::{Address, Complaint, Complaints, Document, layout, union};
 use surface_model::optics_document::OpticsDocument;
 use surface_model::place::Place;
 use surface_model::ranges::LARGEST_RADIUS_MM;
 
+use crate::document_kind::{DESIGN, part};
 use crate::freedom::{self, FreedomDocument};
-
-/// The newest format of design files this program reads and writes.
-pub const DESIGN_FORMAT: &str = "drawtube/1";
 
 /// A design file, read and checked.
 #[derive(Debug, Clone)]
@@ -38,7 +33,7 @@ impl DesignFile {
     /// # Errors
     /// Everything that is wrong with it, placed in its text.
     pub fn read(document: Document) -> Result<Self, Complaints> {
-        refuse_other_formats(&document)?;
+        DESIGN.refuse_others(&document)?;
         document.check(own_schema())?;
         let optics: OpticsDocument = document.read()?;
         let wanted: WishesDocument = document.read()?;
@@ -141,41 +136,6 @@ fn put(value: &mut Value, place: Place, number: f64) {
     {
         map.insert(key.to_owned(), written);
     }
-}
-
-/// A document of a newer format, or of another kind, is refused by name before anything else is
-/// held against it.
-fn refuse_other_formats(document: &Document) -> Result<(), Complaints> {
-    let Some(Value::String(format)) = document.value().get("format") else { return Ok(()) };
-    if format == DESIGN_FORMAT {
-        return Ok(());
-    }
-    let newer = format
-        .strip_prefix("drawtube/")
-        .and_then(|version| version.parse::<u32>().ok())
-        .is_some_and(|version| version > 1);
-    let advice = if newer {
-        Some("this file was written for a newer drawtube".to_owned())
-    } else if format.starts_with("drawtube-brief/") {
-        Some("this is a brief, not a design".to_owned())
-    } else {
-        None
-    };
-    let at = Address::root().key("format");
-    Err(document.refuse([Complaint {
-        place: PlaceInFile::Value(at),
-        found: format!("the format is {}", quoted(format)),
-        expected: Some(format!("\"{DESIGN_FORMAT}\"")),
-        advice,
-    }]))
-}
-
-/// The schema of a type without references, so that a document can be held against it step by
-/// step.
-fn part<T: JsonSchema>() -> Schema {
-    let settings =
-        SchemaSettings::draft2020_12().with(|settings| settings.inline_subschemas = true);
-    settings.into_generator().into_root_schema_for::<T>()
 }
 
 /// The schema of design files, made once.

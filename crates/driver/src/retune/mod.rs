@@ -84,7 +84,7 @@ pub struct Solver {
     /// Its wall time, s.
     pub solve_seconds: f64,
     /// Variables that ended on a bound.
-    pub on_bounds: usize,
+    pub on_bounds: Vec<String>,
     /// All variables.
     pub variables: usize,
 }

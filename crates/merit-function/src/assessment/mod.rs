@@ -4,6 +4,7 @@
 
 mod element;
 mod limit;
+mod obstacle;
 mod state;
 mod surface;
 mod warnings;
@@ -16,6 +17,7 @@ use crate::wishes::Wishes;
 
 pub use element::{ElementAssessment, GroupAssessment};
 pub use limit::LimitAssessment;
+pub use obstacle::{Obstacle, obstacle};
 pub use state::{StateAssessment, WavefrontAssessment};
 pub use surface::SurfaceAssessment;
 

@@ -9,6 +9,7 @@ mod limits;
 mod number;
 pub mod optimisation;
 mod optimised;
+pub mod overnight;
 pub mod ray;
 pub mod retune;
 pub mod retune_lists;

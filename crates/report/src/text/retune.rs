@@ -260,10 +260,11 @@ fn cautions(retuning: &Retuning) -> Vec<String> {
         if !solver.was_successful {
             cautions.push(format!("{name}: {}", solver.stopped));
         }
-        if solver.on_bounds > 0 {
+        if !solver.on_bounds.is_empty() {
             cautions.push(format!(
                 "{name}: {} of {} variables ended on a bound",
-                solver.on_bounds, solver.variables
+                solver.on_bounds.len(),
+                solver.variables
             ));
         }
     }

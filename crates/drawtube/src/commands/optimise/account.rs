@@ -12,6 +12,9 @@ use serde_json::{Value, json};
 use crate::destination::Destination;
 use crate::failure::Failure;
 
+/// How many variables on a bound a warning names.
+const MOST_NAMED: usize = 4;
+
 /// One or more methods run one after the other.
 pub(super) struct Account<'a> {
     before: &'a DesignFile,
@@ -106,13 +109,18 @@ impl<'a> Account<'a> {
 
     fn warnings(&self) -> Vec<String> {
         let mut warnings = Vec::new();
-        let last = self.stages.last();
-        let (on_bounds, variables) =
-            last.map_or((0, 0), |stage| (stage.on_bounds, stage.variables));
-        if on_bounds > 0 {
+        if let Some(last) = self.stages.last()
+            && !last.on_bounds.is_empty()
+        {
+            let count = last.on_bounds.len();
+            let mut named = last.on_bounds[..count.min(MOST_NAMED)].join(", ");
+            if count > MOST_NAMED {
+                named += &format!(" and {} more", count - MOST_NAMED);
+            }
             warnings.push(format!(
-                "{on_bounds} of {variables} variables ended on a bound: widen the limits or ranges \
-                 that hold them, if the design can bear it, and optimise again"
+                "{count} of {} variables ended on a bound ({named}): widen the limits or ranges \
+                 that hold them, if the design can bear it, and optimise again",
+                last.variables
             ));
         }
         match self.stopped {
