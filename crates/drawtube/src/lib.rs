@@ -42,6 +42,7 @@ fn run(arguments: Arguments) -> ExitStatus {
         Command::Retune(arguments) => commands::retune::run(arguments, &console),
         Command::Overnight(arguments) => commands::overnight::run(arguments, &console),
         Command::Gather(arguments) => commands::gather::run(&arguments, &console),
+        Command::Sweep(arguments) => commands::sweep::run(arguments, &console),
         Command::Trace(arguments) => commands::trace::run(arguments, &console),
         Command::Glass(arguments) => commands::glass::run(arguments, &console),
         Command::Schema(arguments) => commands::schema::run(arguments, &console),

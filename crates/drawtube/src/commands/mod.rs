@@ -8,4 +8,5 @@ pub(crate) mod optimise;
 pub(crate) mod overnight;
 pub(crate) mod retune;
 pub(crate) mod schema;
+pub(crate) mod sweep;
 pub(crate) mod trace;

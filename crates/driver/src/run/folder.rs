@@ -18,6 +18,8 @@ pub(super) const JOURNAL: &str = "journal.jsonl";
 pub(super) const PARTS: &str = "parts";
 pub(super) const BEST: &str = "best";
 pub(super) const RANKING: &str = "ranking.json";
+pub(super) const POINTS: &str = "points.json";
+pub(super) const POINTS_TABLE: &str = "points.csv";
 
 /// A run folder that this process may work in until it is dropped.
 #[derive(Debug)]
@@ -123,7 +125,7 @@ pub(super) fn admit(path: &Path) -> Result<(), RunError> {
     if !path.exists() || path.join(RUN).exists() {
         return Ok(());
     }
-    match first_stranger(path, &[LOCK, BEST, RANKING])? {
+    match first_stranger(path, &[LOCK, BEST, RANKING, POINTS, POINTS_TABLE])? {
         None => Ok(()),
         Some(name) => {
             let reason = format!("it holds other things, such as {name:?}; nothing was written");

@@ -5,7 +5,10 @@ use std::path::{Path, PathBuf};
 use std::time::Duration;
 
 use super::error::RunError;
-use super::folder::{BEST, LOCK, RANKING, RunFolder, admit, check_results, make, remove_leftovers};
+use super::folder::{
+    BEST, LOCK, POINTS, POINTS_TABLE, RANKING, RunFolder, admit, check_results, make,
+    remove_leftovers,
+};
 use super::lock::Lock;
 use crate::write_whole::{Existing, WriteError, write_whole};
 
@@ -26,6 +29,18 @@ impl ResultFile {
     #[must_use]
     pub fn best(rank: usize, contents: impl Into<Vec<u8>>) -> Self {
         Self { name: Path::new(BEST).join(format!("{rank:02}.json")), contents: contents.into() }
+    }
+
+    /// The points of a sweep as a table: `points.csv`.
+    #[must_use]
+    pub fn points_table(contents: impl Into<Vec<u8>>) -> Self {
+        Self { name: POINTS_TABLE.into(), contents: contents.into() }
+    }
+
+    /// The points of a sweep with their designs: `points.json`.
+    #[must_use]
+    pub fn points(contents: impl Into<Vec<u8>>) -> Self {
+        Self { name: POINTS.into(), contents: contents.into() }
     }
 
     /// The list itself: `ranking.json`.

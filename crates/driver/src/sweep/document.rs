@@ -9,38 +9,38 @@ use crate::document_kind::part;
 
 /// What is swept over what.
 #[derive(Debug, Clone, PartialEq, Deserialize, Serialize, JsonSchema)]
-pub struct PlanDocument {
+pub(super) struct PlanDocument {
     /// Which version of the plan format this is.
-    pub format: PlanFormat,
+    pub(super) format: PlanFormat,
     /// What the sweep is for.
     #[serde(default)]
-    pub title: String,
+    pub(super) title: String,
     /// The design file, seen from the folder of the plan.
-    pub design: String,
+    pub(super) design: String,
     /// What is varied. Without `sample` every value of each axis is combined with every value of
     /// the others.
     #[schemars(length(min = 1))]
-    pub axes: Vec<AxisDocument>,
+    pub(super) axes: Vec<AxisDocument>,
     /// Draw points from the ranges of all axes together instead of combining their steps.
     #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub sample: Option<SampleDocument>,
+    pub(super) sample: Option<SampleDocument>,
     /// Starts of each point, from 1 to 1000: the best neighbour, then the design of the plan, then
     /// the neighbour shaken at random. 1 if left out.
     #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub starts: Option<u32>,
+    pub(super) starts: Option<u32>,
     /// Seed of the random numbers; 0 if left out.
     #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub seed: Option<u64>,
+    pub(super) seed: Option<u64>,
     /// Two results to weigh against each other, the less the better: "merit",
     /// "worst_rms_waves", "worst_ratio_error_percent", "worst_exit_slope_urad", "track_mm", or the
     /// address of a number of the design.
     #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub front: Option<[String; 2]>,
+    pub(super) front: Option<[String; 2]>,
 }
 
 /// The version of the plan format.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, Deserialize, Serialize, JsonSchema)]
-pub enum PlanFormat {
+pub(super) enum PlanFormat {
     /// The first version.
     #[serde(rename = "drawtube-plan/1")]
     V1,
@@ -48,37 +48,37 @@ pub enum PlanFormat {
 
 /// One axis: `values` or `range`.
 #[derive(Debug, Clone, PartialEq, Deserialize, Serialize, JsonSchema)]
-pub struct AxisDocument {
+pub(super) struct AxisDocument {
     /// An address of the design. A number that is swept is held in every point.
-    pub at: String,
+    pub(super) at: String,
     /// The values, in order: numbers, words, anything that may stand there.
     #[serde(default, skip_serializing_if = "Option::is_none")]
     #[schemars(length(min = 1))]
-    pub values: Option<Vec<Value>>,
+    pub(super) values: Option<Vec<Value>>,
     /// A range of numbers.
     #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub range: Option<RangeDocument>,
+    pub(super) range: Option<RangeDocument>,
 }
 
 /// A range of numbers, both ends in it.
 #[derive(Debug, Clone, Copy, PartialEq, Deserialize, Serialize, JsonSchema)]
-pub struct RangeDocument {
+pub(super) struct RangeDocument {
     /// First number.
-    pub from: f64,
+    pub(super) from: f64,
     /// Last number.
-    pub to: f64,
+    pub(super) to: f64,
     /// How many numbers, ends and all; left out where points are drawn.
     #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub steps: Option<u32>,
+    pub(super) steps: Option<u32>,
     /// How they are spaced; "linear" if left out.
     #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub scale: Option<ScaleDocument>,
+    pub(super) scale: Option<ScaleDocument>,
 }
 
 /// How numbers are spaced.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, Default, Deserialize, Serialize, JsonSchema)]
 #[serde(rename_all = "lowercase")]
-pub enum ScaleDocument {
+pub(super) enum ScaleDocument {
     /// Equal differences.
     #[default]
     Linear,
@@ -88,16 +88,16 @@ pub enum ScaleDocument {
 
 /// Points drawn instead of combined.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, Deserialize, Serialize, JsonSchema)]
-pub struct SampleDocument {
+pub(super) struct SampleDocument {
     /// How they are drawn.
-    pub kind: SampleKind,
+    pub(super) kind: SampleKind,
     /// How many.
-    pub points: u32,
+    pub(super) points: u32,
 }
 
 /// How points are drawn.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, Deserialize, Serialize, JsonSchema)]
-pub enum SampleKind {
+pub(super) enum SampleKind {
     /// Sobol's low-discrepancy points.
     #[serde(rename = "sobol")]
     Sobol,

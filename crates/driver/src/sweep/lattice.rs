@@ -132,12 +132,13 @@ mod tests {
     #[test]
     fn a_part_needs_few_ancestors() {
         let neighbours = Lattice::new(&[21, 21]).neighbours();
-        let deepest = neighbours.iter().enumerate().fold(vec![0], |mut depth: Vec<usize>, (n, near)| {
-            if n > 0 {
-                depth.push(near.0.iter().map(|&other| depth[other] + 1).max().unwrap_or(0));
-            }
-            depth
-        });
+        let deepest =
+            neighbours.iter().enumerate().fold(vec![0], |mut depth: Vec<usize>, (n, near)| {
+                if n > 0 {
+                    depth.push(near.0.iter().map(|&other| depth[other] + 1).max().unwrap_or(0));
+                }
+                depth
+            });
         assert!(deepest.iter().max().is_some_and(|&deepest| deepest <= 10), "{deepest:?}");
     }
 

@@ -8,6 +8,7 @@
 //! Start reading at [`Sweep::point`].
 
 mod document;
+mod gathering;
 mod lattice;
 mod plan;
 mod point;
@@ -32,6 +33,7 @@ use crate::sampling::stream;
 use crate::solve::{Interruptible, Settings, Stopped, Unwatched};
 
 pub use document::plan_schema;
+pub use gathering::SweepGathering;
 pub use plan::{MOST_POINTS, Plan, PlanFile};
 pub use point::{PointResult, Reached};
 pub use results::{NumberedPoint, Quantity, SweepResults, front};
@@ -81,7 +83,8 @@ impl Sweep {
 
     /// Takes note of a point that is known already, so that it need not be computed again.
     pub fn note(&self, number: u64, point: &PointResult) {
-        if let Some(known) = usize::try_from(number).ok().and_then(|number| self.known.get(number)) {
+        if let Some(known) = usize::try_from(number).ok().and_then(|number| self.known.get(number))
+        {
             let mut known = lock(known);
             if known.is_none() {
                 *known = Some(Arc::new(point.clone()));
@@ -93,7 +96,11 @@ impl Sweep {
     ///
     /// # Errors
     /// The interrupt was raised before it was done.
-    pub fn point(&self, number: usize, interrupt: &Interrupt) -> Result<Arc<PointResult>, Interrupted> {
+    pub fn point(
+        &self,
+        number: usize,
+        interrupt: &Interrupt,
+    ) -> Result<Arc<PointResult>, Interrupted> {
         // Neighbours have smaller numbers, so locks are always taken downwards and none waits for
         // another in a circle.
         let mut known = lock(&self.known[number]);
@@ -133,7 +140,8 @@ impl Sweep {
             Err(fault) => return Ok(failed(fault)),
         };
         let starts = self.starts(number, &own, neighbour);
-        let (mut best, mut fault, mut iterations): (Option<Reached>, Option<String>, u64) = (None, None, 0);
+        let (mut best, mut fault, mut iterations): (Option<Reached>, Option<String>, u64) =
+            (None, None, 0);
         for (from_point, start) in starts {
             if interrupt.is_raised() {
                 return Err(Interrupted);
@@ -259,9 +267,8 @@ fn warmed(own: &DesignFile, neighbour: &Value) -> Option<DesignFile> {
 
 /// The file with these numbers, its spacings fitted to the fixed groups.
 fn fitted(file: &DesignFile, mut design: Design) -> Option<DesignFile> {
-    let is_free = |state, after| {
-        file.free.iter().any(|free| free.place == Place::Spacing { state, after })
-    };
+    let is_free =
+        |state, after| file.free.iter().any(|free| free.place == Place::Spacing { state, after });
     design.fit_to_housing(|state, mut spacings| spacings.rfind(|&after| is_free(state, after)));
     file.with_numbers_of(&design).ok()
 }

@@ -88,7 +88,9 @@ impl PlanFile {
         let at = |number: usize| Address::root().key("front").index(number);
         let mut read = |number: usize| {
             let found = Quantity::read(&words[number], design);
-            found.map_err(|error| wrong.push(Complaint { place: Place::Value(at(number)), ..error })).ok()
+            found
+                .map_err(|error| wrong.push(Complaint { place: Place::Value(at(number)), ..error }))
+                .ok()
         };
         Some([read(0)?, read(1)?])
     }
@@ -103,7 +105,8 @@ impl PlanFile {
         match self.written.sample {
             None => {
                 let counts: Vec<usize> = axes.iter().map(|axis| axis.values.len()).collect();
-                let total = counts.iter().try_fold(1_usize, |total, &count| total.checked_mul(count));
+                let total =
+                    counts.iter().try_fold(1_usize, |total, &count| total.checked_mul(count));
                 self.admit(total, Address::root().key("axes"))?;
                 let lattice = Lattice::new(&counts);
                 let value = |index: &Vec<usize>| {
@@ -128,7 +131,10 @@ impl PlanFile {
         if points.is_some_and(|points| (1..=MOST_POINTS).contains(&points)) {
             return Ok(());
         }
-        let found = points.map_or_else(|| "more points than can be counted".to_owned(), |points| format!("{points} points"));
+        let found = points.map_or_else(
+            || "more points than can be counted".to_owned(),
+            |points| format!("{points} points"),
+        );
         Err(self.document.refuse([complaint(at, found, format!("1 to {MOST_POINTS}"))]))
     }
 }
@@ -144,8 +150,9 @@ fn drawn(
             Ok(LatinHypercube::new(points, dimensions, seed).points().to_vec())
         }
         SampleKind::Sobol => {
-            let sobol = Sobol::new(dimensions)
-                .map_err(|error| (error.to_string(), "fewer axes, or a Latin hypercube".to_owned()))?;
+            let sobol = Sobol::new(dimensions).map_err(|error| {
+                (error.to_string(), "fewer axes, or a Latin hypercube".to_owned())
+            })?;
             Ok((0..sample.points.into()).map(|number| sobol.point(number)).collect())
         }
     }
@@ -203,15 +210,20 @@ fn axis(
     design: &DesignFile,
 ) -> Result<Axis, Complaint> {
     let place = || Place::Value(here.clone().key("at"));
-    let at: Address = axis.at.parse().map_err(
-        |error: surface_model::document::AddressSyntaxError| error.complaint(place()),
-    )?;
+    let at: Address = axis
+        .at
+        .parse()
+        .map_err(|error: surface_model::document::AddressSyntaxError| error.complaint(place()))?;
     let file = design.document().value();
     let known = at.resolve(file).map(|_| ());
     // A key that the design leaves out can be swept too, such as a limit.
-    let addable = || at.parent().is_some_and(|parent| {
-        parent.resolve(file).is_ok_and(|found| found.iter().all(|at| at.get(file).is_some_and(Value::is_object)))
-    });
+    let addable = || {
+        at.parent().is_some_and(|parent| {
+            parent.resolve(file).is_ok_and(|found| {
+                found.iter().all(|at| at.get(file).is_some_and(Value::is_object))
+            })
+        })
+    };
     if let Err(error) = known
         && !addable()
     {
@@ -248,13 +260,19 @@ fn steps(here: &Address, range: &RangeDocument, drawn: bool) -> Result<Vec<Value
     }
     match steps {
         None if drawn => Ok(Vec::new()),
-        Some(steps) if drawn => refuse("steps", format!("{steps} steps, but points are drawn"), "no steps"),
+        Some(steps) if drawn => {
+            refuse("steps", format!("{steps} steps, but points are drawn"), "no steps")
+        }
         Some(steps) if (1..=MOST_POINTS).contains(&(steps as usize)) => {
             let last = f64::from(steps.max(2) - 1);
             Ok((0..steps).map(|i| Value::from(between(range, f64::from(i) / last))).collect())
         }
         Some(steps) => refuse("steps", format!("{steps} steps"), "1 to 100000"),
-        None => refuse("from", "the range has no steps".to_owned(), "\"steps\", or a \"sample\" of the plan"),
+        None => refuse(
+            "from",
+            "the range has no steps".to_owned(),
+            "\"steps\", or a \"sample\" of the plan",
+        ),
     }
 }
 

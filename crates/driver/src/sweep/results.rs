@@ -2,11 +2,15 @@
 
 use serde::Serialize;
 use serde_json::Value;
-use surface_model::document::{Address, Complaint, Place, did_you_mean, nearest, one_of};
+use surface_model::document::{Address, Complaint, Place, did_you_mean, layout, nearest, one_of};
 
 use super::plan::{Plan, shown};
 use super::point::{PointResult, Reached};
 use crate::design_file::DesignFile;
+use crate::run::ResultFile;
+
+/// How many designs are kept as files of their own.
+const BEST_KEPT: usize = 10;
 
 /// A result by its word.
 type Named = (&'static str, fn(&Reached) -> Option<f64>);
@@ -46,7 +50,10 @@ impl Quantity {
         let refuse = |found: String, advice| Complaint {
             place: Place::File,
             found,
-            expected: Some(format!("{}, or the address of a number", one_of(NAMED.map(|(word, _)| word)))),
+            expected: Some(format!(
+                "{}, or the address of a number",
+                one_of(NAMED.map(|(word, _)| word))
+            )),
             advice,
         };
         if let Some((_, value)) = NAMED.iter().find(|(known, _)| *known == word) {
@@ -56,9 +63,10 @@ impl Quantity {
             let near = nearest(word, NAMED.map(|(word, _)| word)).map(did_you_mean);
             return Err(refuse(format!("{} is not a result of a sweep", shown(word)), near));
         }
-        let address: Address = word.parse().map_err(
-            |error: surface_model::document::AddressSyntaxError| error.complaint(Place::File),
-        )?;
+        let address: Address =
+            word.parse().map_err(|error: surface_model::document::AddressSyntaxError| {
+                error.complaint(Place::File)
+            })?;
         let file = design.document().value();
         let found = address.resolve(file).map_err(|error| error.complaint(Place::File))?;
         match found.as_slice() {
@@ -173,6 +181,30 @@ impl SweepResults {
         reached.min_by(|a, b| merit(a).total_cmp(&merit(b)))
     }
 
+    /// Whether every point meets every goal and limit.
+    #[must_use]
+    pub fn meet(&self) -> bool {
+        self.points.iter().all(|point| point.reached.as_ref().is_some_and(|reached| reached.meets))
+    }
+
+    /// The files of the results: the best designs, all points as a table and as JSON.
+    ///
+    /// # Errors
+    /// They cannot be laid out.
+    pub fn files(&self) -> Result<Vec<ResultFile>, Box<dyn std::error::Error + Send + Sync>> {
+        let mut reached: Vec<&Reached> =
+            self.points.iter().filter_map(|point| point.reached.as_ref()).collect();
+        reached.sort_by(|a, b| a.merit.total_cmp(&b.merit));
+        let best = reached.iter().take(BEST_KEPT).enumerate();
+        let mut files: Vec<ResultFile> = best
+            .map(|(rank, reached)| ResultFile::best(rank + 1, layout(&reached.design)))
+            .collect();
+        let mut json = serde_json::to_vec_pretty(self)?;
+        json.push(b'\n');
+        files.extend([ResultFile::points_table(self.table()?), ResultFile::points(json)]);
+        Ok(files)
+    }
+
     /// As a table (RFC 4180): a line a point, designs left out.
     ///
     /// # Errors
@@ -188,11 +220,14 @@ impl SweepResults {
             let mut row = vec![point.number.to_string()];
             row.extend(point.values.iter().map(plain));
             let reached = point.reached.as_ref();
-            let number = |value: Option<f64>| value.map_or_else(String::new, |value| value.to_string());
+            let number =
+                |value: Option<f64>| value.map_or_else(String::new, |value| value.to_string());
             row.extend(NAMED.map(|(_, of)| number(reached.and_then(of))));
             let word = |yes: bool| if yes { "yes" } else { "no" }.to_owned();
             row.push(reached.map_or_else(String::new, |reached| word(reached.meets)));
-            row.push(reached.map_or_else(String::new, |reached| reached.limits_crossed.to_string()));
+            row.push(
+                reached.map_or_else(String::new, |reached| reached.limits_crossed.to_string()),
+            );
             row.push(word(self.front.contains(&point.number)));
             row.push(point.fault.clone().unwrap_or_default());
             table.write_record(&row)?;
