@@ -2,7 +2,8 @@
 
 use crate::program::{run, run_on};
 
-const COMMANDS: [&str; 6] = ["assess", "optimise", "trace", "glass", "schema", "completions"];
+const COMMANDS: [&str; 8] =
+    ["assess", "optimise", "sweep", "retune", "trace", "glass", "schema", "completions"];
 
 #[test]
 fn the_overview() {
@@ -11,6 +12,7 @@ fn the_overview() {
 
 #[test]
 fn help_fits_eighty_columns_and_its_examples_work() {
+    let folder = tempfile::tempdir().unwrap();
     for command in COMMANDS {
         let help = run(&format!("{command} --help")).out;
         assert!(help.lines().all(|line| line.chars().count() <= 80), "{help}");
@@ -20,6 +22,8 @@ fn help_fits_eighty_columns_and_its_examples_work() {
         for example in examples {
             // What a shell does with `> file` and what `-o` writes is not for this folder.
             let example = example.split(" > ").next().unwrap().replace("-o better.json", "");
+            let place = format!("--run {}/", folder.path().display());
+            let example = example.replace("--run ", &place);
             assert_eq!(run(&example).status, 0, "{example}");
         }
     }

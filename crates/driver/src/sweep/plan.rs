@@ -2,7 +2,7 @@
 //! may start from.
 
 use serde_json::Value;
-use surface_model::document::{Address, Complaint, Complaints, Document, Place, quoted};
+use surface_model::document::{Address, Complaint, Complaints, Document, Place, Source, quoted};
 
 use super::document::{
     AxisDocument, PlanDocument, RangeDocument, SampleDocument, SampleKind, ScaleDocument,
@@ -10,6 +10,7 @@ use super::document::{
 };
 use super::lattice::{Lattice, Neighbours};
 use super::results::Quantity;
+use crate::change::{Change, apply};
 use crate::design_file::DesignFile;
 use crate::document_kind::PLAN;
 use crate::sampling::{LatinHypercube, Sobol};
@@ -241,7 +242,28 @@ fn axis(
         (Some(_), Some(_)) => return refuse("range", "the axis has values too", "one of the two"),
         (None, None) => return refuse("at", "the axis has no values", "\"values\" or \"range\""),
     };
-    Ok(Axis { at, values, range })
+    let axis = Axis { at, values, range };
+    if axis.at.resolve(file).is_err() {
+        try_key(&axis, here, design)?;
+    }
+    Ok(axis)
+}
+
+/// A key that the design lacks is tried once: whether the format knows it shows then.
+fn try_key(axis: &Axis, here: &Address, design: &DesignFile) -> Result<(), Complaint> {
+    let value = axis.values.first().cloned().unwrap_or_else(|| Value::from(axis.at_share(0.0)));
+    let source = Source { label: axis.at.to_string(), position: None };
+    let Err(complaints) = apply(design, &[Change::new(axis.at.clone(), value, source)]) else {
+        return Ok(());
+    };
+    match complaints.iter().find(|complaint| matches!(complaint.place, Place::Key(_))) {
+        Some(complaint) => {
+            let place = Place::Value(here.clone().key("at"));
+            Err(Complaint { place, ..complaint.clone() })
+        }
+        // A value that does not fit is that point's affair.
+        None => Ok(()),
+    }
 }
 
 /// The numbers of a range; none where points are drawn.

@@ -40,13 +40,15 @@ pub fn results(results: &SweepResults) -> String {
         (Column::Right, "merit "),
         (Column::Right, "worst\nRMS\nwaves"),
         (Column::Right, "ratio\nerror %"),
-        (Column::Right, "exit\nslope µrad"),
+        (Column::Right, "exit\nslope\nµrad"),
         (Column::Right, "track\nmm"),
-        (Column::Right, "limits\ncrossed"),
     ]);
+    let any_crossed = listed.iter().any(|point| crossed(point) > 0);
+    columns.extend(any_crossed.then_some((Column::Right, "limits\ncrossed")));
     let mut table = Table::new(columns);
     for point in &listed {
-        table.row(row(point));
+        let limits = any_crossed.then(|| crossed(point).to_string());
+        table.row(row(point).into_iter().chain(limits));
     }
     let faults: Vec<String> = results
         .points
@@ -87,17 +89,20 @@ fn row(point: &NumberedPoint) -> Vec<String> {
     let mut row = vec![point.number.to_string()];
     row.extend(point.values.iter().map(value));
     match &point.reached {
-        None => row.extend(std::iter::repeat_n(NONE.to_owned(), 6)),
+        None => row.extend(std::iter::repeat_n(NONE.to_owned(), 5)),
         Some(reached) => row.extend([
             format!("{}{}", significant(reached.merit, 4), if reached.meets { BLANK } else { '!' }),
             significant_or_dash(reached.worst_rms_waves, 3),
             fixed_or_dash(reached.worst_ratio_error_percent, 4),
             fixed_or_dash(reached.worst_exit_slope_urad, 2),
             fixed(reached.track_mm, 2),
-            reached.limits_crossed.to_string(),
         ]),
     }
     row
+}
+
+fn crossed(point: &NumberedPoint) -> usize {
+    point.reached.as_ref().map_or(0, |reached| reached.limits_crossed)
 }
 
 fn signs(listed: &[&NumberedPoint]) -> String {
@@ -165,5 +170,9 @@ fn value(value: &Value) -> String {
 /// A number as written, if that is short.
 fn short(number: f64) -> String {
     let written = as_written(number);
-    if written.len() <= 8 { written } else { significant(number, 6) }
+    if written.len() <= 8 {
+        return written;
+    }
+    let rounded = significant(number, 6);
+    rounded.parse().map_or(rounded, as_written)
 }
