@@ -22,8 +22,10 @@ mod page;
 mod peer_input;
 mod peers;
 mod profile;
+mod retune;
 mod search;
 mod spread;
+mod sweep;
 mod threads;
 mod zoom_states;
 
@@ -47,11 +49,13 @@ fn main() -> Result<(), Failure> {
         ["states"] => zoom_states::section()?,
         ["threads"] => threads::section()?,
         ["search", names @ ..] => search::section(names)?,
+        ["sweep"] => sweep::section()?,
+        ["retune"] => retune::section()?,
         ["instructions"] => instructions::section()?,
         ["profile"] => profile::section()?,
         _ => {
             return Err("sections: jobs [DESIGN…], more-states, derivatives, trace, states, \
-                        threads, search [DESIGN…], instructions, profile; or kernel NAME CALLS, peer-input DESIGN"
+                        threads, search [DESIGN…], sweep, retune, instructions, profile; or kernel NAME CALLS, peer-input DESIGN"
                 .into());
         }
     };

@@ -9,6 +9,8 @@ mod mistakes;
 mod optimise;
 mod program;
 mod readme;
+mod retune;
 mod signals;
 mod streams;
+mod sweep;
 mod trace;

@@ -5,6 +5,8 @@ mod certified_regression;
 mod first_order;
 mod glass;
 mod least_squares;
+mod retune;
 mod scipy;
 mod smooth;
+mod sweep;
 mod trace;

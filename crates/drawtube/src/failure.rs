@@ -4,6 +4,7 @@ use std::io;
 use std::path::PathBuf;
 
 use driver::optimise::OptimiseError;
+use driver::retune::RetuneError;
 use driver::run::{RunError, ShareError};
 use driver::search::SearchError as DesignSearchError;
 use driver::solve::SettingsError;
@@ -56,6 +57,12 @@ pub(crate) enum Failure {
     /// The optimisation could not begin.
     #[error(transparent)]
     Optimise(#[from] OptimiseError),
+    /// Nothing suits.
+    #[error("nothing was found: {0}")]
+    NothingFound(&'static str),
+    /// A table could not be laid out.
+    #[error("the table cannot be laid out: {0}")]
+    Table(Box<dyn std::error::Error + Send + Sync>),
     /// The ray has no path.
     #[error(transparent)]
     Ray(#[from] RayError),
@@ -105,6 +112,15 @@ pub(crate) enum Failure {
     Signals(io::Error),
 }
 
+impl From<RetuneError> for Failure {
+    fn from(error: RetuneError) -> Self {
+        match error {
+            RetuneError::Input(complaints) => Self::Input(complaints),
+            RetuneError::Optimise(error) => Self::Optimise(error),
+        }
+    }
+}
+
 impl Failure {
     /// The exit status it leads to.
     pub(crate) fn status(&self) -> ExitStatus {
@@ -126,9 +142,12 @@ impl Failure {
             Self::DesignSearch(_) => ExitStatus::WrongInput,
             Self::Run(error) => status_of_run(error),
             Self::Ray(RayError::Glass(_) | RayError::Direction { .. }) => ExitStatus::WrongInput,
-            Self::Ray(_) | Self::Document(_) | Self::NoStage | Self::Signals(_) => {
-                ExitStatus::Failed
-            }
+            Self::Ray(_)
+            | Self::Document(_)
+            | Self::NoStage
+            | Self::NothingFound(_)
+            | Self::Table(_)
+            | Self::Signals(_) => ExitStatus::Failed,
             Self::Write(_) | Self::Unsaved { .. } | Self::StandardOutput(_) => {
                 ExitStatus::CannotWrite
             }

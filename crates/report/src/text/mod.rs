@@ -15,6 +15,7 @@ pub mod ray;
 pub mod retune;
 pub mod retune_lists;
 mod states;
+pub mod sweep;
 mod table;
 mod verdict;
 
