@@ -22,8 +22,10 @@ mod page;
 mod peer_input;
 mod peers;
 mod profile;
+mod retune;
 mod search;
 mod spread;
+mod sweep;
 mod threads;
 mod tolerance;
 mod zoom_states;
@@ -49,12 +51,14 @@ fn main() -> Result<(), Failure> {
         ["threads"] => threads::section()?,
         ["tolerance"] => tolerance::section()?,
         ["search", names @ ..] => search::section(names)?,
+        ["sweep"] => sweep::section()?,
+        ["retune"] => retune::section()?,
         ["instructions"] => instructions::section()?,
         ["profile"] => profile::section()?,
         _ => {
             return Err("sections: jobs [DESIGN…], more-states, derivatives, trace, states, \
-                        threads, search [DESIGN…], tolerance, instructions, profile; or \
-                        kernel NAME CALLS, peer-input DESIGN"
+                        threads, search [DESIGN…], sweep, retune, tolerance, instructions, \
+                        profile; or kernel NAME CALLS, peer-input DESIGN"
                 .into());
         }
     };

@@ -3,12 +3,14 @@
 use crate::program::{program, run, run_on};
 use crate::readme::scene;
 
-const COMMANDS: [&str; 9] = [
+const COMMANDS: [&str; 11] = [
     "assess",
     "optimise",
     "tolerance",
     "overnight",
     "gather",
+    "sweep",
+    "retune",
     "trace",
     "glass",
     "schema",

@@ -4,6 +4,7 @@ use std::io;
 use std::path::PathBuf;
 
 use driver::optimise::OptimiseError;
+use driver::retune::RetuneError;
 use driver::run::{RunError, ShareError};
 use driver::search::SearchError as DesignSearchError;
 use driver::solve::SettingsError;
@@ -65,6 +66,12 @@ pub(crate) enum Failure {
     /// The design cannot be told at a temperature.
     #[error(transparent)]
     Temperature(#[from] AtTemperatureError),
+    /// Nothing suits.
+    #[error("nothing was found: {0}")]
+    NothingFound(&'static str),
+    /// A table could not be laid out.
+    #[error("the table cannot be laid out: {0}")]
+    Table(Box<dyn std::error::Error + Send + Sync>),
     /// The ray has no path.
     #[error(transparent)]
     Ray(#[from] RayError),
@@ -120,6 +127,15 @@ pub(crate) enum Failure {
     Signals(io::Error),
 }
 
+impl From<RetuneError> for Failure {
+    fn from(error: RetuneError) -> Self {
+        match error {
+            RetuneError::Input(complaints) => Self::Input(complaints),
+            RetuneError::Optimise(error) => Self::Optimise(error),
+        }
+    }
+}
+
 impl Failure {
     /// The exit status it leads to.
     pub(crate) fn status(&self) -> ExitStatus {
@@ -155,6 +171,8 @@ impl Failure {
             | Self::Rows(_)
             | Self::Threads(_)
             | Self::NoStage
+            | Self::NothingFound(_)
+            | Self::Table(_)
             | Self::Signals(_) => ExitStatus::Failed,
             Self::Write(_) | Self::Unsaved { .. } | Self::StandardOutput(_) => {
                 ExitStatus::CannotWrite

@@ -15,6 +15,8 @@
 //! - [`run`]: long work in a folder, where nothing is lost;
 //! - [`sampling`]: points that fill a space evenly, random numbers keyed by a number;
 //! - [`search`]: the global search, from a problem to many finished designs;
+//! - [`change`]: what came back different, in a design file; [`retune`]: then moving only what can
+//!   still move; [`sweep`]: a grid or a sample over any addresses, each point optimised;
 //! - [`write_whole`]: the one function of the program that writes files.
 //!
 //! # What it refuses to know
@@ -41,6 +43,7 @@ pub mod sampling;
 pub mod search;
 pub mod solve;
 pub mod start;
+pub mod sweep;
 pub mod temperature;
 pub mod tolerance;
 pub mod write_whole;

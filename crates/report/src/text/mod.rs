@@ -17,6 +17,7 @@ pub mod ray;
 pub mod retune;
 pub mod retune_lists;
 mod states;
+pub mod sweep;
 mod table;
 pub mod temperature;
 pub mod tolerance;

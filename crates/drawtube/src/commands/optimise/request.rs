@@ -3,9 +3,9 @@
 use driver::design_file::DesignFile;
 use driver::solve::{Method, Settings};
 
-use super::destination::Destination;
 use crate::arguments::{MethodArgument, OptimiseArguments, ProgressArgument};
 use crate::console::Console;
+use crate::destination::Destination;
 use crate::failure::Failure;
 use crate::input;
 use crate::progress::{Manner, interval};
