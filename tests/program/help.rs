@@ -2,7 +2,8 @@
 
 use crate::program::{run, run_on};
 
-const COMMANDS: [&str; 6] = ["assess", "optimise", "trace", "glass", "schema", "completions"];
+const COMMANDS: [&str; 7] =
+    ["assess", "optimise", "trace", "glass", "schema", "completions", "start"];
 
 #[test]
 fn the_overview() {
@@ -39,6 +40,8 @@ fn wrong_command_lines_are_put_right() {
         "optimise configs/river-lidar-2x-6x.json --target-merit nan",
         "optimise configs/river-lidar-2x-6x.json --progress-every -3",
         "optimise x --force",
+        "start configs/river-brief.json --rank 0",
+        "start configs/river-lidar-2x-6x.json",
         "assess no-such-file.json",
         "assess configs",
         "schema desing",

@@ -10,5 +10,6 @@ mod optimise;
 mod program;
 mod readme;
 mod signals;
+mod start;
 mod streams;
 mod trace;

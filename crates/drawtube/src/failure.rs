@@ -4,8 +4,10 @@ use std::io;
 
 use driver::optimise::OptimiseError;
 use driver::solve::SettingsError;
+use driver::start::StartError;
 use driver::write_whole::WriteError;
 use report::ray::RayError;
+use report::start::Impossible;
 use serde_json::{Value, json};
 use surface_model::document::{Complaints, nearest, quoted};
 use surface_model::glass::{GlassError, LookupError, SearchError};
@@ -53,6 +55,20 @@ pub(crate) enum Failure {
     /// The optimisation could not begin.
     #[error(transparent)]
     Optimise(#[from] OptimiseError),
+    /// The brief contradicts itself.
+    #[error(transparent)]
+    Start(#[from] StartError),
+    /// No layout does what a brief asks.
+    #[error("{}", .0.message)]
+    Impossible(Impossible),
+    /// There are not so many layouts.
+    #[error("there is no layout {asked}: {found} differ enough to be told apart")]
+    NoSuchRank {
+        /// The rank asked for.
+        asked: usize,
+        /// How many layouts there are.
+        found: usize,
+    },
     /// The ray has no path.
     #[error(transparent)]
     Ray(#[from] RayError),
@@ -97,9 +113,13 @@ impl Failure {
             | Self::Search(_) => ExitStatus::WrongInput,
             Self::Optimise(error) => status_of(error),
             Self::Ray(RayError::Glass(_) | RayError::Direction { .. }) => ExitStatus::WrongInput,
-            Self::Ray(_) | Self::Document(_) | Self::NoStage | Self::Signals(_) => {
-                ExitStatus::Failed
-            }
+            Self::Start(_)
+            | Self::Impossible(_)
+            | Self::NoSuchRank { .. }
+            | Self::Ray(_)
+            | Self::Document(_)
+            | Self::NoStage
+            | Self::Signals(_) => ExitStatus::Failed,
             Self::Write(_) | Self::StandardOutput(_) => ExitStatus::CannotWrite,
         }
     }
@@ -116,6 +136,8 @@ impl Failure {
                 })
             }
             Self::Optimise(error) => advice_on(error),
+            Self::Start(error) => Some(error.advice()),
+            Self::Impossible(impossible) => Some(impossible.advice.clone()),
             Self::Lookup(error) => error.advice(),
             Self::Glass(error) | Self::Ray(RayError::Glass(error)) => error.advice(),
             Self::Search(error) => error.advice(),

@@ -36,6 +36,7 @@ fn run(arguments: Arguments) -> ExitStatus {
     let result = match arguments.command {
         Command::Assess(arguments) => commands::assess::run(arguments, &console),
         Command::Optimise(arguments) => commands::optimise::run(arguments, &console),
+        Command::Start(arguments) => commands::start::run(arguments, &console),
         Command::Trace(arguments) => commands::trace::run(arguments, &console),
         Command::Glass(arguments) => commands::glass::run(arguments, &console),
         Command::Schema(arguments) => commands::schema::run(arguments, &console),

@@ -7,4 +7,5 @@
 //! Start reading at [`text::assessment`], then [`text::optimisation`].
 
 pub mod ray;
+pub mod start;
 pub mod text;

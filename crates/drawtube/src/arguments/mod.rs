@@ -7,6 +7,7 @@ mod glass;
 mod optimise;
 mod progress;
 mod schema;
+mod start;
 mod trace;
 
 use std::ffi::OsString;
@@ -20,6 +21,7 @@ pub(crate) use glass::GlassArguments;
 pub(crate) use optimise::{MethodArgument, OptimiseArguments};
 pub(crate) use progress::ProgressArgument;
 pub(crate) use schema::{DocumentKind, SchemaArguments};
+pub(crate) use start::StartArguments;
 pub(crate) use trace::TraceArguments;
 
 use crate::console::{Console, ErrorFormat};
@@ -75,6 +77,8 @@ pub(crate) enum Command {
     Assess(AssessArguments),
     /// Improve a design: move what is free until the goals are met as well as they can be
     Optimise(OptimiseArguments),
+    /// Begin: work out layouts that can do what a brief asks, and rank them
+    Start(StartArguments),
     /// Follow one exact ray through a design, surface by surface
     Trace(TraceArguments),
     /// Look through the glass catalogue, or find equivalents of a glass

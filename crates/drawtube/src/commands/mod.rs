@@ -5,4 +5,5 @@ pub(crate) mod completions;
 pub(crate) mod glass;
 pub(crate) mod optimise;
 pub(crate) mod schema;
+pub(crate) mod start;
 pub(crate) mod trace;

@@ -1,7 +1,7 @@
 //! `optimise`: from a design to a better one nearby.
 
 mod account;
-mod destination;
+pub(crate) mod destination;
 mod request;
 
 use driver::optimise::{Optimisation, optimise};

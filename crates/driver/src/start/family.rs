@@ -22,6 +22,14 @@ impl Sign {
         }
     }
 
+    /// The opposite sign.
+    pub(super) fn other(self) -> Self {
+        match self {
+            Self::Positive => Self::Negative,
+            Self::Negative => Self::Positive,
+        }
+    }
+
     /// The word for it.
     #[must_use]
     pub fn word(self) -> &'static str {
@@ -38,6 +46,12 @@ impl Sign {
 pub struct Family(pub Vec<Sign>);
 
 impl Family {
+    /// The signs of some powers.
+    pub(super) fn of(powers: &[f64]) -> Self {
+        let sign = |&power: &f64| if power > 0.0 { Sign::Positive } else { Sign::Negative };
+        Self(powers.iter().map(sign).collect())
+    }
+
     /// Every pattern of signs that could keep a beam collimated, upright or, where `inverted`,
     /// with a focus inside. Groups of negative power alone spread it for good; groups of positive
     /// power alone make it cross the axis, which an upright beam without internal focus must not.

@@ -12,7 +12,7 @@
 //! |---|---|
 //! | number and seed → point | `sequence` |
 //! | fixed groups and counts → how spacings follow | `plan`, `family` |
-//! | point → powers, spacings of thin groups in closed form, screened | `thin`, `spacings` |
+//! | point → powers, spacings of thin groups in closed form, screened | `thin`, `by_heights`, `spacings` |
 //! | powers → glasses, bendings of least spherical aberration | `shape`, `glasses`, `bending` |
 //! | thin → thick, exact by principal planes | `thick`, `lens` |
 //! | thick → design, every limit held against it | `layout` |
@@ -27,6 +27,7 @@
 //! depends on threads or order: the same brief, number and seed give the same bits.
 
 mod bending;
+mod by_heights;
 mod error;
 mod family;
 mod file;
@@ -65,6 +66,9 @@ pub use relaxation::{Relaxation, Relaxed};
 pub use score::Score;
 
 use space::{Point, Space};
+
+/// Points that `start` looks at: enough for several layouts of every family that fits, in seconds.
+pub const LOOKED_AT: u64 = 1 << 13;
 
 /// The layouts that a brief allows.
 #[derive(Debug, Clone)]

@@ -122,6 +122,12 @@ impl Point<'_> {
         (WIDEST_FOCAL_RATIO.ln() * (2.0 * self.at(3 + group.min(MOST - 1)) - 1.0)).exp()
     }
 
+    /// Where in their ranges the heights at the second of three groups are, 0 to 1: at the highest
+    /// ratio, and at the lowest.
+    pub(super) fn heights(&self) -> (f64, f64) {
+        (self.at(4), self.at(5))
+    }
+
     /// Where in the range of sizes, 0 to 1.
     pub(super) fn scale(&self) -> f64 {
         self.at(7)

@@ -11,7 +11,7 @@ use crate::input::STANDARD_STREAM;
 
 /// Where a design is kept.
 #[derive(Debug, Clone, PartialEq, Eq)]
-pub(super) enum Destination {
+pub(crate) enum Destination {
     /// Nowhere.
     Nowhere,
     /// On standard output.
@@ -21,7 +21,7 @@ pub(super) enum Destination {
 }
 
 impl Destination {
-    pub(super) fn of(output: Option<PathBuf>, force: bool) -> Self {
+    pub(crate) fn of(output: Option<PathBuf>, force: bool) -> Self {
         match output {
             None => Self::Nowhere,
             Some(path) if path.as_os_str() == STANDARD_STREAM => Self::StandardOutput,
@@ -33,7 +33,7 @@ impl Destination {
     }
 
     /// Finds out, before any computing, whether the design can be kept there.
-    pub(super) fn check(&self) -> Result<(), Failure> {
+    pub(crate) fn check(&self) -> Result<(), Failure> {
         match self {
             Self::File { path, existing } => Ok(check_writable(path, *existing)?),
             Self::Nowhere | Self::StandardOutput => Ok(()),
@@ -42,7 +42,7 @@ impl Destination {
 
     /// Keeps a design. One that cannot be written to its file goes to standard output as the last
     /// resort.
-    pub(super) fn save(&self, design: &DesignFile, console: &Console) -> Result<(), Failure> {
+    pub(crate) fn save(&self, design: &DesignFile, console: &Console) -> Result<(), Failure> {
         match self {
             Self::Nowhere => Ok(()),
             Self::StandardOutput => console.print_exactly(&design.text()),
@@ -56,7 +56,7 @@ impl Destination {
     }
 
     /// What became of the design, as a sentence.
-    pub(super) fn told(&self) -> String {
+    pub(crate) fn told(&self) -> String {
         match self {
             Self::Nowhere => "The design was not kept: give -o OUT to write it.".to_owned(),
             Self::StandardOutput => "The design was written to standard output.".to_owned(),
