@@ -23,7 +23,8 @@ pub(crate) fn brief(path: &Path) -> Result<BriefFile, Failure> {
     Ok(BriefFile::read(document(path)?)?)
 }
 
-fn document(path: &Path) -> Result<Document, Failure> {
+/// Reads a document of any kind from a file, or from standard input.
+pub(crate) fn document(path: &Path) -> Result<Document, Failure> {
     Ok(if path.as_os_str() == STANDARD_STREAM {
         Document::from_reader("standard input", io::stdin().lock())?
     } else {

@@ -12,7 +12,9 @@ mod console;
 pub mod exit_status;
 mod failure;
 mod input;
+mod part;
 mod progress;
+mod run_progress;
 mod signals;
 
 use std::process::ExitCode;
@@ -37,6 +39,8 @@ fn run(arguments: Arguments) -> ExitStatus {
         Command::Assess(arguments) => commands::assess::run(arguments, &console),
         Command::Optimise(arguments) => commands::optimise::run(arguments, &console),
         Command::Start(arguments) => commands::start::run(arguments, &console),
+        Command::Overnight(arguments) => commands::overnight::run(arguments, &console),
+        Command::Gather(arguments) => commands::gather::run(&arguments, &console),
         Command::Trace(arguments) => commands::trace::run(arguments, &console),
         Command::Glass(arguments) => commands::glass::run(arguments, &console),
         Command::Schema(arguments) => commands::schema::run(arguments, &console),

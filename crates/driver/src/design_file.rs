@@ -1,11 +1,13 @@
 //! A design file: the document as it was written, and what its three owners make of it.
 
+use std::sync::OnceLock;
+
 use merit_function::variables::FreePlace;
 use merit_function::wishes::{Wishes, WishesDocument};
 use schemars::Schema;
 use serde_json::Value;
 use surface_model::design::Design;
-use surface_model::document::{Complaint, Complaints, Document, layout, union};
+use surface_model::document::{Address, Complaint, Complaints, Document, layout, union};
 use surface_model::optics_document::OpticsDocument;
 use surface_model::place::Place;
 use surface_model::ranges::LARGEST_RADIUS_MM;
@@ -32,7 +34,7 @@ impl DesignFile {
     /// Everything that is wrong with it, placed in its text.
     pub fn read(document: Document) -> Result<Self, Complaints> {
         DESIGN.refuse_others(&document)?;
-        document.check(&design_schema())?;
+        document.check(own_schema())?;
         let optics: OpticsDocument = document.read()?;
         let wanted: WishesDocument = document.read()?;
         let freedom: FreedomDocument = document.read()?;
@@ -83,10 +85,38 @@ impl DesignFile {
         Self::read(Document::from_value(self.label(), value))
     }
 
+    /// The same file with more that the optimiser must leave alone: addresses with indices for
+    /// entries of lists, added to `held`.
+    ///
+    /// # Errors
+    /// One of them holds nothing that could change.
+    pub fn holding(&self, addresses: &[Address]) -> Result<Self, Complaints> {
+        let mut value = self.document.value().clone();
+        hold(&mut value, addresses);
+        Self::read(Document::from_value(self.label(), value))
+    }
+
     /// The text of the file.
     #[must_use]
     pub fn text(&self) -> String {
         layout(self.document.value())
+    }
+}
+
+/// Adds addresses to `held`, with names; those that stand there already are left out.
+pub(crate) fn hold(value: &mut Value, addresses: &[Address]) {
+    let words: Vec<Value> =
+        addresses.iter().map(|at| Value::from(at.with_names(value).to_string())).collect();
+    let Value::Object(map) = value else { return };
+    if words.is_empty() {
+        return;
+    }
+    if let Value::Array(held) = map.entry("held").or_insert_with(|| Value::Array(Vec::new())) {
+        for word in words {
+            if !held.contains(&word) {
+                held.push(word);
+            }
+        }
     }
 }
 
@@ -106,6 +136,12 @@ fn put(value: &mut Value, place: Place, number: f64) {
     {
         map.insert(key.to_owned(), written);
     }
+}
+
+/// The schema of design files, made once.
+fn own_schema() -> &'static Schema {
+    static SCHEMA: OnceLock<Schema> = OnceLock::new();
+    SCHEMA.get_or_init(design_schema)
 }
 
 /// JSON Schema of design files: the union of what the three owners read.

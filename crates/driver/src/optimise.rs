@@ -49,8 +49,8 @@ pub struct OptimisationReport {
     pub evaluations: u64,
     /// Wall time of the solver alone, s.
     pub solve_seconds: f64,
-    /// Free numbers that ended on a bound of their own.
-    pub on_bounds: usize,
+    /// Addresses of the free numbers that ended on a bound.
+    pub on_bounds: Vec<String>,
     /// Number of variables.
     pub variables: usize,
     /// The design as it was.
@@ -114,7 +114,7 @@ pub fn optimise(
         iterations: outcome.iterations + widened.iterations,
         evaluations: outcome.evaluations + widened.evaluations,
         solve_seconds: outcome.time.as_secs_f64() + widened.seconds,
-        on_bounds: on_bounds(&merit, &outcome.variables),
+        on_bounds: on_bounds(file, &merit, &outcome.variables),
         variables: outcome.variables.len(),
         start,
         end,
@@ -144,9 +144,15 @@ pub(crate) fn require_goal(wishes: &Wishes) -> Result<(), OptimiseError> {
     if any_goal { Ok(()) } else { Err(OptimiseError::NoGoals) }
 }
 
-fn on_bounds(merit: &MeritFunction, variables: &[f64]) -> usize {
-    let bounds = merit.bounds().iter().zip(variables);
-    bounds.filter(|(bounds, value)| **value <= bounds.low || **value >= bounds.high).count()
+/// Free numbers that stand on a bound, by their addresses in the file.
+fn on_bounds(file: &DesignFile, merit: &MeritFunction, variables: &[f64]) -> Vec<String> {
+    let document = file.document().value();
+    let bounds = merit.bounds().iter().zip(variables).enumerate();
+    bounds
+        .filter(|(_, (bounds, value))| **value <= bounds.low || **value >= bounds.high)
+        .filter_map(|(variable, _)| merit.variables().address(variable))
+        .map(|address| address.with_names(document).to_string())
+        .collect()
 }
 
 /// A start through which the whole beam passes.

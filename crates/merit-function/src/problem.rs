@@ -11,6 +11,8 @@
 //!
 //! with wⱼ the share of the beam's power that ray stands for.
 
+mod along;
+
 use std::ops::Range;
 
 use nalgebra::DVector;

@@ -44,6 +44,19 @@ impl OpticsDocument {
     /// # Errors
     /// Every fault found, each with its address.
     pub fn resolve(&self) -> Result<Design, Vec<DesignFault>> {
+        let design = self.resolve_unfitted()?;
+        let mut faults = Vec::new();
+        fit(&design, &mut faults);
+        if faults.is_empty() { Ok(design) } else { Err(faults) }
+    }
+
+    /// As [`Self::resolve`], but the spacings need not fit the fixed groups: for a design whose
+    /// parts have changed and whose spacings are still to be fitted
+    /// ([`Design::fit_to_housing`]).
+    ///
+    /// # Errors
+    /// Every other fault found, each with its address.
+    pub fn resolve_unfitted(&self) -> Result<Design, Vec<DesignFault>> {
         let definitions = self.glasses.iter().map(|(name, glass)| (name.as_str(), glass));
         let (shelf, glass_faults) = GlassShelf::resolve(definitions);
         let mut resolver = Resolver { shelf, faults: Vec::new() };
@@ -62,7 +75,6 @@ impl OpticsDocument {
         }
         let design = Design { title: self.title.clone(), beam, groups, housing, states };
         resolver.indices(&design);
-        resolver.fit(&design);
         if resolver.faults.is_empty() { Ok(design) } else { Err(resolver.faults) }
     }
 }
@@ -317,16 +329,16 @@ impl Resolver {
             }
         }
     }
+}
 
-    fn fit(&mut self, design: &Design) {
-        if let Some(mismatch) = design.housing_mismatch() {
-            let at = Address::root().key("states").index(mismatch.state);
-            let error = DesignError::Housing {
-                state: design.states[mismatch.state].name.clone(),
-                found_mm: mismatch.found_mm,
-                needed_mm: mismatch.needed_mm,
-            };
-            self.fault(at.key("spacings_mm").index(mismatch.spacing), error);
-        }
+fn fit(design: &Design, faults: &mut Vec<DesignFault>) {
+    if let Some(mismatch) = design.housing_mismatch() {
+        let at = Address::root().key("states").index(mismatch.state);
+        let error = DesignError::Housing {
+            state: design.states[mismatch.state].name.clone(),
+            found_mm: mismatch.found_mm,
+            needed_mm: mismatch.needed_mm,
+        };
+        faults.push(DesignFault { at: at.key("spacings_mm").index(mismatch.spacing), error });
     }
 }

@@ -3,8 +3,10 @@
 
 mod assess;
 mod completions;
+mod gather;
 mod glass;
 mod optimise;
+mod overnight;
 mod progress;
 mod schema;
 mod start;
@@ -17,8 +19,10 @@ use clap::{CommandFactory, Parser, Subcommand};
 
 pub(crate) use assess::AssessArguments;
 pub(crate) use completions::CompletionsArguments;
+pub(crate) use gather::GatherArguments;
 pub(crate) use glass::GlassArguments;
 pub(crate) use optimise::{MethodArgument, OptimiseArguments};
+pub(crate) use overnight::{OvernightArguments, StrategyArgument};
 pub(crate) use progress::ProgressArgument;
 pub(crate) use schema::{DocumentKind, SchemaArguments};
 pub(crate) use start::StartArguments;
@@ -63,8 +67,12 @@ Exit status:
     0  done
     1  the work failed: a ray does not get through, nothing was found
     2  the input or the command line is wrong
-    3  done, but a goal or limit is missed (only with --require)
+    3  done, but a goal or limit is missed (only with --require), or parts of a
+       run are missing
+    5  the run folder is in use by another process
+    6  the run folder is damaged, or of another file, seed or version
     7  the result cannot be written
+   75  stopped by --time-limit; run again, it goes on
   130  stopped by Ctrl-C, the best so far saved; 143 the same by SIGTERM
 
 Example:
@@ -79,6 +87,10 @@ pub(crate) enum Command {
     Optimise(OptimiseArguments),
     /// Begin: work out layouts that can do what a brief asks, and rank them
     Start(StartArguments),
+    /// Search for designs for hours, in a run folder that survives anything
+    Overnight(OvernightArguments),
+    /// Put the parts of an overnight run together
+    Gather(GatherArguments),
     /// Follow one exact ray through a design, surface by surface
     Trace(TraceArguments),
     /// Look through the glass catalogue, or find equivalents of a glass

@@ -2,8 +2,10 @@
 
 pub(crate) mod assess;
 pub(crate) mod completions;
+pub(crate) mod gather;
 pub(crate) mod glass;
 pub(crate) mod optimise;
+pub(crate) mod overnight;
 pub(crate) mod schema;
 pub(crate) mod start;
 pub(crate) mod trace;

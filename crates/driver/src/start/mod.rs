@@ -12,7 +12,7 @@
 //! |---|---|
 //! | number and seed → point | `sequence` |
 //! | fixed groups and counts → how spacings follow | `plan`, `family` |
-//! | point → powers, spacings of thin groups in closed form, screened | `thin`, `by_heights`, `spacings` |
+//! | point → powers, spacings of thin groups in closed form, screened | `thin` (`by_heights`, `four_groups`), `spacings` |
 //! | powers → glasses, bendings of least spherical aberration | `shape`, `glasses`, `bending` |
 //! | thin → thick, exact by principal planes | `thick`, `lens` |
 //! | thick → design, every limit held against it | `layout` |
@@ -31,6 +31,7 @@ mod by_heights;
 mod error;
 mod family;
 mod file;
+mod four_groups;
 mod glasses;
 mod layout;
 mod lens;

@@ -41,7 +41,7 @@ pub struct Score {
 
 /// Shares of the sums in the total: what the optimiser can be expected to leave of each. Found by
 /// optimising layouts of the shipped briefs.
-const THIRD_ORDER_LEFT: f64 = 0.1;
+const THIRD_ORDER_LEFT: f64 = 0.2;
 const HIGHER_ORDERS_LEFT: f64 = 1.0;
 const COLOUR_LEFT: f64 = 0.3;
 /// Units of the goal a mrad of bending counts as.

@@ -242,7 +242,7 @@ fn look() {
         let starts = Starts::of(&brief).unwrap();
         println!("== {name}");
         let clock = std::time::Instant::now();
-        let ranking = starts.ranked(LOOKED_AT, 0, 12);
+        let ranking = starts.ranked(LOOKED_AT, 0, 5);
         println!(
             "{} dims {} fitting {} of {} in {:?} {:?}",
             starts.brief().label(),

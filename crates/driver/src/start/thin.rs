@@ -5,6 +5,7 @@ use surface_model::housing::Anchor;
 
 use super::by_heights::by_heights;
 use super::family::Family;
+use super::four_groups::four_groups;
 use super::no_layout::NoLayout;
 use super::plan::{Movement, Plan};
 use super::shape::least_size;
@@ -35,7 +36,7 @@ pub(super) struct Tied {
 pub(super) const NO_FOCUS: f64 = 0.05;
 
 /// The distances tied where that is open.
-const TIES: [Tie; 6] =
+pub(super) const TIES: [Tie; 6] =
     [Tie::First, Tie::Second, Tie::Third, Tie::FirstTwo, Tie::LastTwo, Tie::Whole];
 
 impl<'a> Thin<'a> {
@@ -54,15 +55,7 @@ impl<'a> Thin<'a> {
     fn shape(space: &Space, plan: &'a Plan, point: Point<'_>) -> Result<Self, NoLayout> {
         let count = plan.groups.len();
         let ratios: Vec<f64> = space.brief.ratios.iter().map(|ratio| ratio.ratio).collect();
-        let powers_per_mm = match (count, &plan.movement) {
-            (3, Movement::Determined) => by_heights(plan, &ratios, point)?,
-            _ => None,
-        };
-        let powers_per_mm = match powers_per_mm {
-            Some(powers_per_mm) => powers_per_mm,
-            None => by_family(plan, &ratios, point).ok_or(NoLayout::Passing)?,
-        };
-        let mut tied = Self::tied(space, plan, point);
+        let (powers_per_mm, mut tied) = Self::powers(space, plan, &ratios, point)?;
         let passages = passages(&powers_per_mm, count, &ratios, tied.as_ref());
         let passages = match (passages, &mut tied) {
             (None, Some(tied)) => {
@@ -74,6 +67,28 @@ impl<'a> Thin<'a> {
         let passages = passages.ok_or(NoLayout::Passing)?;
         let family = Family::of(&powers_per_mm[..count]);
         Ok(Self { plan, family, powers_per_mm, passages, tied })
+    }
+
+    /// Powers, and what ties the spacings of four groups.
+    fn powers(
+        space: &Space,
+        plan: &Plan,
+        ratios: &[f64],
+        point: Point<'_>,
+    ) -> Result<([f64; MOST], Option<Tied>), NoLayout> {
+        let found = match (plan.groups.len(), &plan.movement) {
+            (3, Movement::Determined) => {
+                by_heights(plan, ratios, point)?.map(|found| (found, None))
+            }
+            (MOST, _) => four_groups(space, plan, ratios, point)
+                .map(|(powers_per_mm, tied)| (powers_per_mm, Some(tied))),
+            _ => None,
+        };
+        if let Some(found) = found {
+            return Ok(found);
+        }
+        let powers_per_mm = by_family(plan, ratios, point).ok_or(NoLayout::Passing)?;
+        Ok((powers_per_mm, Self::tied(space, plan, point)))
     }
 
     fn tied(space: &Space, plan: &Plan, point: Point<'_>) -> Option<Tied> {

@@ -1,6 +1,8 @@
 //! Text for a terminal: tables at most 80 columns wide where names allow it, units in the heads.
 
 pub mod assessment;
+pub mod bounds;
+pub mod differences;
 mod elements;
 pub mod glass;
 mod layout;
@@ -8,7 +10,10 @@ mod limits;
 pub(crate) mod number;
 pub mod optimisation;
 mod optimised;
+pub mod overnight;
 pub mod ray;
+pub mod retune;
+pub mod retune_lists;
 pub mod start;
 mod states;
 mod table;
