@@ -31,7 +31,7 @@ pub struct LayoutEntry {
     pub rank: usize,
     /// Number of its point.
     pub number: u64,
-    /// Signs of the groups’ powers.
+    /// Signs of the groups' powers.
     pub family: Family,
     /// Focal lengths of the groups, mm.
     pub focal_lengths_mm: Vec<f64>,

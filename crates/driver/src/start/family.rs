@@ -57,10 +57,12 @@ impl Family {
     /// power alone make it cross the axis, which an upright beam without internal focus must not.
     pub(super) fn all(groups: usize, inverted: bool) -> Vec<Self> {
         let pattern = |bits: usize| {
-            let sign = |g: usize| if bits >> g & 1 == 0 { Sign::Positive } else { Sign::Negative };
+            let sign =
+                |g: usize| if (bits >> g) & 1 == 0 { Sign::Positive } else { Sign::Negative };
             Self((0..groups).map(sign).collect())
         };
-        let all = (0..1_usize << groups).map(pattern);
+        let count = 1_usize << groups;
+        let all = (0..count).map(pattern);
         all.filter(|family| {
             let any = |sign| family.0.contains(&sign);
             any(Sign::Positive) && (inverted || any(Sign::Negative))

@@ -21,8 +21,8 @@
 //! | many points → the best that differ | `ranking`; none at all: `relaxation` |
 //!
 //! For a search: [`Starts::of`] once; then for start number k [`Starts::point`]`(k, seed)` or a
-//! point of one's own, [`Starts::layout`] (some ten microseconds; what has no layout says why in
-//! a fraction of one), [`Starts::merit`] over the layout's design for a local solver,
+//! point of one's own, [`Starts::layout`] (a fraction of a millisecond; what has no layout mostly says why
+//! in a microsecond), [`Starts::merit`] over the layout's design for a local solver,
 //! [`Starts::design_file`] for what is kept (milliseconds: it is read as any file is). Nothing
 //! depends on threads or order: the same brief, number and seed give the same bits.
 

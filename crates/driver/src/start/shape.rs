@@ -33,7 +33,7 @@ const CURVE_MARGIN: f64 = 0.95;
 const SHAPE_FACTORS: (f64, f64) = (-3.0, 3.0);
 /// The goal where a brief has none for the wavefront: a fourteenth of a wave, after A. Maréchal
 /// (M. Born and E. Wolf, *Principles of Optics*, section 9.3).
-const MARECHAL_WAVES: f64 = 1.0 / 14.0;
+pub(super) const MARECHAL_WAVES: f64 = 1.0 / 14.0;
 
 /// The elements of every group.
 pub(super) fn shapes(
@@ -117,7 +117,7 @@ fn weights(space: &Space) -> Vec<f64> {
 
 /// RMS of (r/edge)⁴ for a beam traced to 1.5 of its 1/e² radius, weighted by its intensity: with
 /// x = (r/edge)² the square root of ⟨x⁴⟩ − ⟨x²⟩² under exp(−4.5x) from 0 to 1.
-const RMS_OF_FOURTH_POWER: f64 = 0.1445;
+pub(super) const RMS_OF_FOURTH_POWER: f64 = 0.1445;
 
 /// An element before it is bent.
 struct Raw {
