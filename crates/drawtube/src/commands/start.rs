@@ -46,6 +46,10 @@ pub(crate) fn run(arguments: StartArguments, console: &Console) -> Result<ExitSt
         let relaxed = starts.relaxations(LOOKED_AT, request.seed);
         return Err(Failure::Impossible(impossible(&ranking, &relaxed)));
     }
+    if ranking.best.len() <= request.place {
+        let (asked, found) = (request.place + 1, ranking.best.len());
+        return Err(Failure::NoSuchRank { asked, found });
+    }
     let saved = save(&request, &starts, &ranking, console);
     ranking.best.truncate(request.count);
     tell(&request, &starts, &ranking, saved.is_ok(), console)?;
@@ -60,13 +64,7 @@ fn save(
     ranking: &Ranking,
     console: &Console,
 ) -> Result<(), Failure> {
-    if request.destination == Destination::Nowhere && request.place == 0 {
-        return Ok(());
-    }
-    let layout = ranking.best.get(request.place).ok_or_else(|| Failure::NoSuchRank {
-        asked: request.place + 1,
-        found: ranking.best.len(),
-    })?;
+    let Some(layout) = ranking.best.get(request.place) else { return Ok(()) };
     let note = text::start::note(layout, request.place + 1, request.seed);
     let file = starts.design_file(&layout.layout, &layout.layout.design, &note)?;
     request.destination.save(&file, console)

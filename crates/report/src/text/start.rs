@@ -1,6 +1,6 @@
 //! Layouts of a brief as a table.
 
-use driver::start::{Layout, Ranked, Ranking, Starts};
+use driver::start::{Layout, Ranked, Ranking, Sign, Starts};
 
 use super::number::{NONE, as_written, counted, fixed, significant};
 use super::table::{Column, Table};
@@ -29,15 +29,15 @@ fn heading(starts: &Starts) -> String {
 
 fn table(ranking: &Ranking) -> String {
     let mut table = Table::new([
-        (Column::Right, "layout"),
+        (Column::Right, "no"),
         (Column::Left, "group"),
-        (Column::Left, "power"),
+        (Column::Left, "sign"),
         (Column::Right, "focal\nmm"),
-        (Column::Right, "air behind\nfrom mm"),
+        (Column::Right, "air\nfrom mm"),
         (Column::Right, "to mm"),
         (Column::Right, "travel\nmm"),
         (Column::Right, "rays\nØ mm"),
-        (Column::Right, "longest\nmm"),
+        (Column::Right, "train\nmm"),
         (Column::Right, "score"),
     ]);
     for (place, ranked) in ranking.best.iter().enumerate() {
@@ -62,7 +62,7 @@ fn rows(rank: usize, layout: &Layout, table: &mut Table) {
         table.row([
             first(rank.to_string()),
             name,
-            layout.family.0[g].word().to_owned(),
+            sign(layout.family.0[g]).to_owned(),
             fixed(layout.focal_lengths_mm[g], 2),
             air(|range| range.0),
             air(|range| range.1),
@@ -74,23 +74,27 @@ fn rows(rank: usize, layout: &Layout, table: &mut Table) {
     }
 }
 
+/// The sign of a power, short.
+fn sign(sign: Sign) -> &'static str {
+    match sign {
+        Sign::Positive => "plus",
+        Sign::Negative => "minus",
+    }
+}
+
 fn legend() -> String {
     let text = "Every layout is collimated, at its ratio and inside its limits in every state. \
                 Score: the wavefront error that third and fifth order foretell, in units of the \
-                goal, with a share for sensitive powers; the smaller the better. \"longest\" is \
-                the longest train, first to last vertex.";
+                goal, with a share for sensitive powers; the smaller the better. Air is that \
+                behind the group; the train is told at its longest, first to last vertex.";
     paragraph(text, WIDTH, "")
 }
 
 fn searched(ranking: &Ranking) -> String {
-    let share = |points: usize| significant(100.0 * points as f64 / ranking.tried as f64, 2);
     let mut text =
         format!("Of {} points looked at {} have a layout.", ranking.tried, ranking.fitting);
     if let Some((reason, points)) = ranking.refusals.reasons.first() {
-        text.push_str(&format!(
-            " Most of the others fail ({} %) because {reason}.",
-            share(*points)
-        ));
+        text.push_str(&format!(" Most of the others fail because {reason} ({points})."));
     }
     paragraph(&text, WIDTH, "")
 }
