@@ -3,8 +3,19 @@
 use crate::program::{program, run, run_on};
 use crate::readme::scene;
 
-const COMMANDS: [&str; 8] =
-    ["assess", "optimise", "overnight", "gather", "trace", "glass", "schema", "completions"];
+const COMMANDS: [&str; 11] = [
+    "assess",
+    "optimise",
+    "tolerance",
+    "overnight",
+    "gather",
+    "sweep",
+    "retune",
+    "trace",
+    "glass",
+    "schema",
+    "completions",
+];
 
 #[test]
 fn the_overview() {

@@ -8,7 +8,10 @@ mod glass;
 mod optimise;
 mod overnight;
 mod progress;
+mod retune;
 mod schema;
+mod sweep;
+mod tolerance;
 mod trace;
 
 use std::ffi::OsString;
@@ -23,7 +26,10 @@ pub(crate) use glass::GlassArguments;
 pub(crate) use optimise::{MethodArgument, OptimiseArguments};
 pub(crate) use overnight::{OvernightArguments, StrategyArgument};
 pub(crate) use progress::ProgressArgument;
+pub(crate) use retune::RetuneArguments;
 pub(crate) use schema::{DocumentKind, SchemaArguments};
+pub(crate) use sweep::SweepArguments;
+pub(crate) use tolerance::{GradeArgument, ToleranceArguments};
 pub(crate) use trace::TraceArguments;
 
 use crate::console::{Console, ErrorFormat};
@@ -83,9 +89,15 @@ pub(crate) enum Command {
     Assess(AssessArguments),
     /// Improve a design: move what is free until the goals are met as well as they can be
     Optimise(OptimiseArguments),
+    /// Tell what a workshop's errors do to a design, and the yield
+    Tolerance(ToleranceArguments),
+    /// Optimise a design at every point of a grid or a sample
+    Sweep(SweepArguments),
+    /// After a change, move only what can still move, in stages
+    Retune(RetuneArguments),
     /// Search for designs for hours, in a run folder that survives anything
     Overnight(OvernightArguments),
-    /// Put the parts of an overnight run together
+    /// Put the parts of an overnight run or a sweep together
     Gather(GatherArguments),
     /// Follow one exact ray through a design, surface by surface
     Trace(TraceArguments),

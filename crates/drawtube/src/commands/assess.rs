@@ -1,9 +1,11 @@
 //! `assess`: the numbers of a design as it stands.
 
 use driver::design_file::DesignFile;
-use merit_function::assessment::{assess, real_beam};
+use driver::temperature::{TemperatureReport, at_temperatures};
+use merit_function::assessment::{Assessment, assess, real_beam};
 use report::text;
 use report::text::assessment::Scope;
+use serde::Serialize;
 
 use crate::arguments::AssessArguments;
 use crate::console::Console;
@@ -26,6 +28,7 @@ struct Request {
     /// Distances to tell the real beam at, m.
     ranges_m: Vec<f64>,
     require: bool,
+    temperatures_c: Vec<f64>,
 }
 
 impl Request {
@@ -44,19 +47,39 @@ impl Request {
             form,
             ranges_m: arguments.ranges_m,
             require: arguments.require,
+            temperatures_c: arguments.temperature,
         })
     }
 }
 
+/// The assessment, with what the design does at other temperatures where that was asked for.
+#[derive(Serialize)]
+struct Printed<'a> {
+    #[serde(flatten)]
+    assessment: &'a Assessment,
+    #[serde(flatten)]
+    warm: Option<&'a TemperatureReport>,
+}
+
 pub(crate) fn run(arguments: AssessArguments, console: &Console) -> Result<ExitStatus, Failure> {
-    let Request { file, form, ranges_m, require } = Request::of(arguments)?;
+    let Request { file, form, ranges_m, require, temperatures_c } = Request::of(arguments)?;
     let mut assessment = assess(&file.design, &file.wishes);
     if matches!(form, Form::Beam) || !ranges_m.is_empty() {
         assessment.real_beam = Some(real_beam(&file.design, &file.wishes, &ranges_m));
     }
+    let warm = match temperatures_c.as_slice() {
+        [] => None,
+        temperatures_c => Some(at_temperatures(&file, temperatures_c)?),
+    };
     match form {
-        Form::Json => console.print_json(&assessment)?,
+        Form::Json => {
+            console.print_json(&Printed { assessment: &assessment, warm: warm.as_ref() })?
+        }
         Form::Text(scope) => {
+            if let Some(warm) = &warm {
+                console.print(&text::temperature::temperatures(&file, warm))?;
+                console.print("")?;
+            }
             console.print(&text::assessment::assessment(&file, &assessment, scope))?;
         }
         Form::Beam => {

@@ -6,5 +6,8 @@ pub(crate) mod gather;
 pub(crate) mod glass;
 pub(crate) mod optimise;
 pub(crate) mod overnight;
+pub(crate) mod retune;
 pub(crate) mod schema;
+pub(crate) mod sweep;
+pub(crate) mod tolerance;
 pub(crate) mod trace;

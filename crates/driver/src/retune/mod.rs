@@ -34,7 +34,6 @@ use blame::Blame;
 
 /// Why a design could not be retuned.
 #[derive(Debug, thiserror::Error)]
-#[non_exhaustive]
 pub enum RetuneError {
     /// A change, a part or a table is not right.
     #[error("{0}")]
@@ -84,7 +83,7 @@ pub struct Solver {
     pub evaluations: u64,
     /// Its wall time, s.
     pub solve_seconds: f64,
-    /// Addresses of the variables that ended on a bound.
+    /// Variables that ended on a bound.
     pub on_bounds: Vec<String>,
     /// All variables.
     pub variables: usize,

@@ -17,7 +17,10 @@ pub mod ray;
 pub mod retune;
 pub mod retune_lists;
 mod states;
+pub mod sweep;
 mod table;
+pub mod temperature;
+pub mod tolerance;
 mod verdict;
 
 use driver::design_file::DesignFile;
