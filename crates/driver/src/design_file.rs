@@ -47,6 +47,9 @@ impl DesignFile {
                 return Err(document.refuse(optics.chain(wanted)));
             }
         };
+        if let Some(lacks) = wishes.lacks_of(&design) {
+            return Err(document.refuse([lacks]));
+        }
         match freedom::resolve(&freedom, &design, document.value()) {
             Ok(free) => Ok(Self { document, design, wishes, free }),
             Err(complaints) => Err(document.refuse(complaints)),

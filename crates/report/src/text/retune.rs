@@ -6,6 +6,7 @@ use driver::retune::blame::Blame;
 use driver::retune::{Moving, Retuning, Stage};
 use surface_model::design::Design;
 
+use super::bounds::ended_on_bounds;
 use super::differences::{differences as table_of, signed};
 use super::number::{NONE, as_written, fixed, fixed_or_dash, significant, significant_or_dash};
 use super::states::spacing_heads;
@@ -271,12 +272,8 @@ fn cautions(retuning: &Retuning) -> Vec<String> {
         if !solver.was_successful {
             cautions.push(format!("{name}: {}", solver.stopped));
         }
-        if !solver.on_bounds.is_empty() {
-            cautions.push(format!(
-                "{name}: {} of {} variables ended on a bound",
-                solver.on_bounds.len(),
-                solver.variables
-            ));
+        if let Some(told) = ended_on_bounds(&solver.on_bounds, solver.variables) {
+            cautions.push(format!("{name}: {told}"));
         }
     }
     if retuning.stage(Moving::Spacings).is_none() {

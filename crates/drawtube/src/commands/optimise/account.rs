@@ -12,9 +12,6 @@ use serde_json::{Value, json};
 use crate::destination::Destination;
 use crate::failure::Failure;
 
-/// How many variables on a bound a warning names.
-const MOST_NAMED: usize = 4;
-
 /// One or more methods run one after the other.
 pub(super) struct Account<'a> {
     before: &'a DesignFile,
@@ -109,18 +106,13 @@ impl<'a> Account<'a> {
 
     fn warnings(&self) -> Vec<String> {
         let mut warnings = Vec::new();
-        if let Some(last) = self.stages.last()
-            && !last.on_bounds.is_empty()
+        let last = self.stages.last();
+        if let Some(told) =
+            last.and_then(|stage| text::bounds::ended_on_bounds(&stage.on_bounds, stage.variables))
         {
-            let count = last.on_bounds.len();
-            let mut named = last.on_bounds[..count.min(MOST_NAMED)].join(", ");
-            if count > MOST_NAMED {
-                named += &format!(" and {} more", count - MOST_NAMED);
-            }
             warnings.push(format!(
-                "{count} of {} variables ended on a bound ({named}): widen the limits or ranges \
-                 that hold them, if the design can bear it, and optimise again",
-                last.variables
+                "{told}: widen the limits or ranges that hold them, if the design can bear it, and \
+                 optimise again"
             ));
         }
         match self.stopped {
