@@ -4,14 +4,14 @@ use crate::program::{program, run, run_on};
 use crate::readme::scene;
 
 const COMMANDS: [&str; 12] = [
+    "start",
     "assess",
     "optimise",
-    "tolerance",
-    "start",
     "overnight",
-    "gather",
     "sweep",
     "retune",
+    "tolerance",
+    "gather",
     "trace",
     "glass",
     "schema",
