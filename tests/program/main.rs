@@ -1,12 +1,14 @@
 //! The program run as a user runs it.
 
 mod assess;
+mod cam;
 mod designs;
 mod extremes;
 mod glass;
 mod help;
 mod mistakes;
 mod optimise;
+mod page;
 mod program;
 mod readme;
 mod signals;

@@ -2,6 +2,7 @@
 
 use std::io;
 
+use driver::cam::CamError;
 use driver::optimise::OptimiseError;
 use driver::solve::SettingsError;
 use driver::write_whole::WriteError;
@@ -53,6 +54,12 @@ pub(crate) enum Failure {
     /// The optimisation could not begin.
     #[error(transparent)]
     Optimise(#[from] OptimiseError),
+    /// The design has no movement curve.
+    #[error(transparent)]
+    Cam(#[from] CamError),
+    /// A table could not be put into words.
+    #[error("the table cannot be written: {0}")]
+    Table(csv::Error),
     /// The ray has no path.
     #[error(transparent)]
     Ray(#[from] RayError),
@@ -68,6 +75,14 @@ pub(crate) enum Failure {
     /// A file cannot be written.
     #[error(transparent)]
     Write(#[from] WriteError),
+    /// A folder cannot be made.
+    #[error("the folder {} cannot be made: {source}", .path.display())]
+    Folder {
+        /// Which.
+        path: std::path::PathBuf,
+        /// What the system says.
+        source: io::Error,
+    },
     /// Standard output takes nothing more.
     #[error("standard output cannot be written: {0}")]
     StandardOutput(io::Error),
@@ -97,10 +112,12 @@ impl Failure {
             | Self::Search(_) => ExitStatus::WrongInput,
             Self::Optimise(error) => status_of(error),
             Self::Ray(RayError::Glass(_) | RayError::Direction { .. }) => ExitStatus::WrongInput,
-            Self::Ray(_) | Self::Document(_) | Self::NoStage | Self::Signals(_) => {
+            Self::Cam(CamError::State { .. }) => ExitStatus::Failed,
+            Self::Cam(_) => ExitStatus::WrongInput,
+            Self::Ray(_) | Self::Document(_) | Self::Table(_) | Self::NoStage | Self::Signals(_) => {
                 ExitStatus::Failed
             }
-            Self::Write(_) | Self::StandardOutput(_) => ExitStatus::CannotWrite,
+            Self::Write(_) | Self::Folder { .. } | Self::StandardOutput(_) => ExitStatus::CannotWrite,
         }
     }
 
@@ -116,6 +133,7 @@ impl Failure {
                 })
             }
             Self::Optimise(error) => advice_on(error),
+            Self::Cam(error) => advice_on_cam(error),
             Self::Lookup(error) => error.advice(),
             Self::Glass(error) | Self::Ray(RayError::Glass(error)) => error.advice(),
             Self::Search(error) => error.advice(),
@@ -193,6 +211,17 @@ fn advice_on(error: &OptimiseError) -> Option<String> {
             "begin with weaker curves or a narrower beam (traced_to); assess tells where rays fail"
         }
         OptimiseError::Glass(error) => return error.advice(),
+        _ => return None,
+    };
+    Some(advice.to_owned())
+}
+
+fn advice_on_cam(error: &CamError) -> Option<String> {
+    let advice = match error {
+        CamError::NothingMoves => "take a group out of the housing's \"fixed\"",
+        CamError::OneRatio => "give at least two states with different ratios",
+        CamError::State { .. } => "optimise the design first; assess tells how far off it is",
+        CamError::Glass(error) => return error.advice(),
         _ => return None,
     };
     Some(advice.to_owned())

@@ -12,6 +12,7 @@ mod console;
 pub mod exit_status;
 mod failure;
 mod input;
+mod output_file;
 mod progress;
 mod signals;
 
@@ -36,6 +37,8 @@ fn run(arguments: Arguments) -> ExitStatus {
     let result = match arguments.command {
         Command::Assess(arguments) => commands::assess::run(arguments, &console),
         Command::Optimise(arguments) => commands::optimise::run(arguments, &console),
+        Command::Cam(arguments) => commands::cam::run(arguments, &console),
+        Command::Report(arguments) => commands::report::run(arguments, &console),
         Command::Trace(arguments) => commands::trace::run(arguments, &console),
         Command::Glass(arguments) => commands::glass::run(arguments, &console),
         Command::Schema(arguments) => commands::schema::run(arguments, &console),

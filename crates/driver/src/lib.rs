@@ -6,6 +6,7 @@
 //!   solver; argmin's Nelder-Mead on the same problem;
 //! - [`design_file`]: a design file with its three owners' parts, its JSON Schema, and the same
 //!   file with other numbers; [`freedom`]: its `free` and `held`;
+//! - [`cam`]: movement curves, where every group stands at any ratio;
 //! - [`fn@optimise::optimise`]: one local optimisation from file to file;
 //! - [`write_whole`]: the one function of the program that writes files.
 //!
@@ -18,6 +19,7 @@
 //! The step p that minimises ½|r + Jp|² + ½λ|Dp|² under low ≤ x + p ≤ high and g + Gp ≥ 0, with J in
 //! blocks, one a zoom state. Start reading at [`solve`].
 
+pub mod cam;
 pub mod design_file;
 pub mod freedom;
 pub mod optimise;

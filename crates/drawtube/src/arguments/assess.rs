@@ -18,6 +18,12 @@ pub(crate) struct AssessArguments {
     /// List every limited quantity, not only the tightest of each kind and those crossed
     #[arg(long, conflicts_with = "json")]
     pub(crate) all: bool,
+    /// Write a picture as SVG: layout and wavefronts
+    #[arg(long, value_name = "FILE")]
+    pub(crate) picture: Option<PathBuf>,
+    /// Replace FILE if it is there already
+    #[arg(long, requires = "picture")]
+    pub(crate) force: bool,
     /// Leave with status 3 if a goal is missed or a limit crossed
     #[arg(long)]
     pub(crate) require: bool,

@@ -2,10 +2,12 @@
 //! turns its part into a request of its own.
 
 mod assess;
+mod cam;
 mod completions;
 mod glass;
 mod optimise;
 mod progress;
+mod report;
 mod schema;
 mod trace;
 
@@ -15,10 +17,12 @@ use clap::error::ErrorKind;
 use clap::{CommandFactory, Parser, Subcommand};
 
 pub(crate) use assess::AssessArguments;
+pub(crate) use cam::CamArguments;
 pub(crate) use completions::CompletionsArguments;
 pub(crate) use glass::GlassArguments;
 pub(crate) use optimise::{MethodArgument, OptimiseArguments};
 pub(crate) use progress::ProgressArgument;
+pub(crate) use report::ReportArguments;
 pub(crate) use schema::{DocumentKind, SchemaArguments};
 pub(crate) use trace::TraceArguments;
 
@@ -75,6 +79,10 @@ pub(crate) enum Command {
     Assess(AssessArguments),
     /// Improve a design: move what is free until the goals are met as well as they can be
     Optimise(OptimiseArguments),
+    /// Work out the movement curves: where every group stands at any ratio
+    Cam(CamArguments),
+    /// Write a page about a design, or about several side by side; sheets for the shop
+    Report(ReportArguments),
     /// Follow one exact ray through a design, surface by surface
     Trace(TraceArguments),
     /// Look through the glass catalogue, or find equivalents of a glass

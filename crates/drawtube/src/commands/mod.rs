@@ -1,8 +1,10 @@
 //! One module a command: the request its arguments make, and carrying it out.
 
 pub(crate) mod assess;
+pub(crate) mod cam;
 pub(crate) mod completions;
 pub(crate) mod glass;
 pub(crate) mod optimise;
+pub(crate) mod report;
 pub(crate) mod schema;
 pub(crate) mod trace;

@@ -1,17 +1,21 @@
 //! Text for a terminal: tables at most 80 columns wide where names allow it, units in the heads.
 
 pub mod assessment;
+pub mod cam;
 mod elements;
 pub mod glass;
 mod layout;
-mod limits;
+pub(crate) mod limits;
 mod number;
 pub mod optimisation;
 mod optimised;
 pub mod ray;
 mod states;
 mod table;
-mod verdict;
+pub(crate) mod verdict;
+
+pub(crate) use limits::Scope;
+pub(crate) use number::{as_written, fixed, fixed_or_dash, significant, significant_or_dash};
 
 /// Widest line that running text is broken into, in characters.
 pub const WIDTH: usize = 80;
