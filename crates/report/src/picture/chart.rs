@@ -45,7 +45,7 @@ pub struct Chart {
 
 /// Room around the field, px.
 const LEFT: f64 = 58.0;
-const TOP: f64 = 38.0;
+const TOP: f64 = 50.0;
 const BOTTOM: f64 = 36.0;
 
 /// Draws a chart.
