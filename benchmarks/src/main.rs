@@ -22,6 +22,7 @@ mod page;
 mod peer_input;
 mod peers;
 mod profile;
+mod search;
 mod spread;
 mod threads;
 mod zoom_states;
@@ -45,11 +46,12 @@ fn main() -> Result<(), Failure> {
         ["trace"] => bare_loop::section()?,
         ["states"] => zoom_states::section()?,
         ["threads"] => threads::section()?,
+        ["search", names @ ..] => search::section(names)?,
         ["instructions"] => instructions::section()?,
         ["profile"] => profile::section()?,
         _ => {
             return Err("sections: jobs [DESIGN…], more-states, derivatives, trace, states, \
-                        threads, instructions, profile; or kernel NAME CALLS, peer-input DESIGN"
+                        threads, search [DESIGN…], instructions, profile; or kernel NAME CALLS, peer-input DESIGN"
                 .into());
         }
     };

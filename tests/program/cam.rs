@@ -82,7 +82,9 @@ fn the_sheets_hold_what_the_design_says_and_no_more() {
     let elements = text("elements.csv");
     assert!(elements.contains("3.000000,2.489175,8"), "{elements}");
     let html = text("elements.html");
-    for told in ["75.0000 CX", "20.0000 CX", "24.0000 CC", "thickness 3.0000 mm ± –", "4/ –", "chamfer –"] {
+    for told in
+        ["75.0000 CX", "20.0000 CX", "24.0000 CC", "thickness 3.0000 mm ± –", "4/ –", "chamfer –"]
+    {
         assert!(html.contains(told) || html.contains(&told.replace(' ', "</b> ")), "{told}");
     }
     assert_eq!(html.matches("<section>").count(), 3, "a sheet an element");

@@ -63,7 +63,8 @@ document.body.append(pre);
 </script></body>"#;
 
 fn noted(document: &str) -> Value {
-    let text = document.split("<pre id=\"noted\">").nth(1).and_then(|rest| rest.split("</pre>").next());
+    let text =
+        document.split("<pre id=\"noted\">").nth(1).and_then(|rest| rest.split("</pre>").next());
     serde_json::from_str(text.expect("the probe ran")).unwrap()
 }
 
@@ -123,7 +124,9 @@ fn the_page_loads_in_silence_and_its_slider_moves_what_it_should() {
 fn the_slider_agrees_with_the_curve(noted: &Value, design: &str) {
     let curve = run(&format!("cam {design} --json --ratios 2")).json();
     let points = curve["points"].as_array().unwrap();
-    for (when, point) in [("first", &points[0]), ("second", &points[1]), ("last", points.last().unwrap())] {
+    for (when, point) in
+        [("first", &points[0]), ("second", &points[1]), ("last", points.last().unwrap())]
+    {
         let readings = noted[when]["readings"].as_array().unwrap();
         let read = |k: usize| readings[k].as_str().unwrap().parse::<f64>().unwrap();
         assert!((read(0) - point["ratio"].as_f64().unwrap()).abs() < 5.1e-5, "{when}");

@@ -1,9 +1,12 @@
 //! What can go wrong, how it is told, and which exit status it has.
 
 use std::io;
+use std::path::PathBuf;
 
 use driver::cam::CamError;
 use driver::optimise::OptimiseError;
+use driver::run::{RunError, ShareError};
+use driver::search::SearchError as DesignSearchError;
 use driver::solve::SettingsError;
 use driver::write_whole::WriteError;
 use report::ray::RayError;
@@ -72,6 +75,26 @@ pub(crate) enum Failure {
     /// A glass search that cannot be understood.
     #[error(transparent)]
     Search(#[from] SearchError),
+    /// There is nothing to search for designs.
+    #[error(transparent)]
+    DesignSearch(#[from] DesignSearchError),
+    /// A run folder cannot be used.
+    #[error(transparent)]
+    Run(#[from] RunError),
+    /// Not a part of a run.
+    #[error("--part: {0}")]
+    Part(#[from] ShareError),
+    /// The job engine's variables do not say which part this is.
+    #[error("--part auto: {0}")]
+    NoPart(String),
+    /// The journal of a run could not be written to its end.
+    #[error("{} could not be written to its end: {source}", .path.display())]
+    Unsaved {
+        /// The run folder.
+        path: PathBuf,
+        /// What the system says.
+        source: io::Error,
+    },
     /// A file cannot be written.
     #[error(transparent)]
     Write(#[from] WriteError),
@@ -109,15 +132,26 @@ impl Failure {
             | Self::NoState { .. }
             | Self::Lookup(_)
             | Self::Glass(_)
+            | Self::Part(_)
+            | Self::NoPart(_)
             | Self::Search(_) => ExitStatus::WrongInput,
-            Self::Optimise(error) => status_of(error),
+            Self::Optimise(error) | Self::DesignSearch(DesignSearchError::Design(error)) => {
+                status_of(error)
+            }
+            Self::DesignSearch(_) => ExitStatus::WrongInput,
+            Self::Run(error) => status_of_run(error),
             Self::Ray(RayError::Glass(_) | RayError::Direction { .. }) => ExitStatus::WrongInput,
             Self::Cam(CamError::State { .. }) => ExitStatus::Failed,
             Self::Cam(_) => ExitStatus::WrongInput,
-            Self::Ray(_) | Self::Document(_) | Self::Table(_) | Self::NoStage | Self::Signals(_) => {
-                ExitStatus::Failed
-            }
-            Self::Write(_) | Self::Folder { .. } | Self::StandardOutput(_) => ExitStatus::CannotWrite,
+            Self::Ray(_)
+            | Self::Document(_)
+            | Self::Table(_)
+            | Self::NoStage
+            | Self::Signals(_) => ExitStatus::Failed,
+            Self::Write(_)
+            | Self::Folder { .. }
+            | Self::Unsaved { .. }
+            | Self::StandardOutput(_) => ExitStatus::CannotWrite,
         }
     }
 
@@ -132,8 +166,14 @@ impl Failure {
                     None => format!("its states are {}", all.join(", ")),
                 })
             }
-            Self::Optimise(error) => advice_on(error),
             Self::Cam(error) => advice_on_cam(error),
+            Self::Optimise(error) | Self::DesignSearch(DesignSearchError::Design(error)) => {
+                advice_on(error)
+            }
+            Self::Run(error) => advice_on_run(error).map(str::to_owned),
+            Self::NoPart(_) => {
+                Some("give the part as I/N, or auto/N where only the index is known".to_owned())
+            }
             Self::Lookup(error) => error.advice(),
             Self::Glass(error) | Self::Ray(RayError::Glass(error)) => error.advice(),
             Self::Search(error) => error.advice(),
@@ -198,6 +238,32 @@ fn status_of(error: &OptimiseError) -> ExitStatus {
         | OptimiseError::Variables(_)
         | OptimiseError::Glass(_) => ExitStatus::WrongInput,
         _ => ExitStatus::Failed,
+    }
+}
+
+fn status_of_run(error: &RunError) -> ExitStatus {
+    match error {
+        RunError::InUse { .. } => ExitStatus::InUse,
+        RunError::NotARun { .. }
+        | RunError::AnotherRun { .. }
+        | RunError::Newer { .. }
+        | RunError::Damaged { .. } => ExitStatus::Damaged,
+        RunError::System { .. } | RunError::Write(_) => ExitStatus::CannotWrite,
+        _ => ExitStatus::Failed,
+    }
+}
+
+fn advice_on_run(error: &RunError) -> Option<&'static str> {
+    match error {
+        RunError::InUse { .. } => Some("wait for it, stop it, or look at it with --show"),
+        RunError::NotARun { .. } => Some("name a run folder, or one that is new or empty"),
+        RunError::AnotherRun { .. } => {
+            Some("go on with what was asked there, or name another folder")
+        }
+        RunError::Damaged { path, .. } if path.ends_with("journal.jsonl") => Some(
+            "take the damaged line out of the file (keep a copy): what it held is computed again",
+        ),
+        _ => None,
     }
 }
 

@@ -13,7 +13,9 @@ pub mod exit_status;
 mod failure;
 mod input;
 mod output_file;
+mod part;
 mod progress;
+mod run_progress;
 mod signals;
 
 use std::process::ExitCode;
@@ -39,6 +41,8 @@ fn run(arguments: Arguments) -> ExitStatus {
         Command::Optimise(arguments) => commands::optimise::run(arguments, &console),
         Command::Cam(arguments) => commands::cam::run(arguments, &console),
         Command::Report(arguments) => commands::report::run(arguments, &console),
+        Command::Overnight(arguments) => commands::overnight::run(arguments, &console),
+        Command::Gather(arguments) => commands::gather::run(&arguments, &console),
         Command::Trace(arguments) => commands::trace::run(arguments, &console),
         Command::Glass(arguments) => commands::glass::run(arguments, &console),
         Command::Schema(arguments) => commands::schema::run(arguments, &console),

@@ -57,7 +57,16 @@ impl<'a> Teller<'a> {
             Manner::Nothing => (None, None),
         };
         let now = Instant::now();
-        Self { console, stop, bar, every, began: now, last: now, iterations: 0, history: Vec::new() }
+        Self {
+            console,
+            stop,
+            bar,
+            every,
+            began: now,
+            last: now,
+            iterations: 0,
+            history: Vec::new(),
+        }
     }
 
     /// A new run of a method begins.

@@ -1,22 +1,19 @@
 //! A design file: the document as it was written, and what its three owners make of it.
 
+use std::sync::OnceLock;
+
 use merit_function::variables::FreePlace;
 use merit_function::wishes::{Wishes, WishesDocument};
-use schemars::generate::SchemaSettings;
-use schemars::{JsonSchema, Schema};
+use schemars::Schema;
 use serde_json::Value;
 use surface_model::design::Design;
-use surface_model::document::{
-    Address, Complaint, Complaints, Document, Place as PlaceInFile, layout, quoted, union,
-};
+use surface_model::document::{Address, Complaint, Complaints, Document, layout, union};
 use surface_model::optics_document::OpticsDocument;
 use surface_model::place::Place;
 use surface_model::ranges::LARGEST_RADIUS_MM;
 
+use crate::document_kind::{DESIGN, part};
 use crate::freedom::{self, FreedomDocument};
-
-/// The newest format of design files this program reads and writes.
-pub const DESIGN_FORMAT: &str = "drawtube/1";
 
 /// A design file, read and checked.
 #[derive(Debug, Clone)]
@@ -36,8 +33,8 @@ impl DesignFile {
     /// # Errors
     /// Everything that is wrong with it, placed in its text.
     pub fn read(document: Document) -> Result<Self, Complaints> {
-        refuse_other_formats(&document)?;
-        document.check(&design_schema())?;
+        DESIGN.refuse_others(&document)?;
+        document.check(own_schema())?;
         let optics: OpticsDocument = document.read()?;
         let wanted: WishesDocument = document.read()?;
         let freedom: FreedomDocument = document.read()?;
@@ -50,6 +47,9 @@ impl DesignFile {
                 return Err(document.refuse(optics.chain(wanted)));
             }
         };
+        if let Some(lacks) = wishes.lacks_of(&design) {
+            return Err(document.refuse([lacks]));
+        }
         match freedom::resolve(&freedom, &design, document.value()) {
             Ok(free) => Ok(Self { document, design, wishes, free }),
             Err(complaints) => Err(document.refuse(complaints)),
@@ -88,10 +88,38 @@ impl DesignFile {
         Self::read(Document::from_value(self.label(), value))
     }
 
+    /// The same file with more that the optimiser must leave alone: addresses with indices for
+    /// entries of lists, added to `held`.
+    ///
+    /// # Errors
+    /// One of them holds nothing that could change.
+    pub fn holding(&self, addresses: &[Address]) -> Result<Self, Complaints> {
+        let mut value = self.document.value().clone();
+        hold(&mut value, addresses);
+        Self::read(Document::from_value(self.label(), value))
+    }
+
     /// The text of the file.
     #[must_use]
     pub fn text(&self) -> String {
         layout(self.document.value())
+    }
+}
+
+/// Adds addresses to `held`, with names; those that stand there already are left out.
+pub(crate) fn hold(value: &mut Value, addresses: &[Address]) {
+    let words: Vec<Value> =
+        addresses.iter().map(|at| Value::from(at.with_names(value).to_string())).collect();
+    let Value::Object(map) = value else { return };
+    if words.is_empty() {
+        return;
+    }
+    if let Value::Array(held) = map.entry("held").or_insert_with(|| Value::Array(Vec::new())) {
+        for word in words {
+            if !held.contains(&word) {
+                held.push(word);
+            }
+        }
     }
 }
 
@@ -113,39 +141,10 @@ fn put(value: &mut Value, place: Place, number: f64) {
     }
 }
 
-/// A document of a newer format, or of another kind, is refused by name before anything else is
-/// held against it.
-fn refuse_other_formats(document: &Document) -> Result<(), Complaints> {
-    let Some(Value::String(format)) = document.value().get("format") else { return Ok(()) };
-    if format == DESIGN_FORMAT {
-        return Ok(());
-    }
-    let newer = format
-        .strip_prefix("drawtube/")
-        .and_then(|version| version.parse::<u32>().ok())
-        .is_some_and(|version| version > 1);
-    let advice = if newer {
-        Some("this file was written for a newer drawtube".to_owned())
-    } else if format.starts_with("drawtube-brief/") {
-        Some("this is a brief, not a design".to_owned())
-    } else {
-        None
-    };
-    let at = Address::root().key("format");
-    Err(document.refuse([Complaint {
-        place: PlaceInFile::Value(at),
-        found: format!("the format is {}", quoted(format)),
-        expected: Some(format!("\"{DESIGN_FORMAT}\"")),
-        advice,
-    }]))
-}
-
-/// The schema of a type without references, so that a document can be held against it step by
-/// step.
-fn part<T: JsonSchema>() -> Schema {
-    let settings =
-        SchemaSettings::draft2020_12().with(|settings| settings.inline_subschemas = true);
-    settings.into_generator().into_root_schema_for::<T>()
+/// The schema of design files, made once.
+fn own_schema() -> &'static Schema {
+    static SCHEMA: OnceLock<Schema> = OnceLock::new();
+    SCHEMA.get_or_init(design_schema)
 }
 
 /// JSON Schema of design files: the union of what the three owners read.

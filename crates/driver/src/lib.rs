@@ -7,7 +7,13 @@
 //! - [`design_file`]: a design file with its three owners' parts, its JSON Schema, and the same
 //!   file with other numbers; [`freedom`]: its `free` and `held`;
 //! - [`cam`]: movement curves, where every group stands at any ratio;
+//! - [`brief`]: the requirement a design is begun from;
+//! - [`start`]: first-order layouts of a brief;
 //! - [`fn@optimise::optimise`]: one local optimisation from file to file;
+//! - [`overnight`]: the global search as a run, and the ranked list it leaves;
+//! - [`run`]: long work in a folder, where nothing is lost;
+//! - [`sampling`]: points that fill a space evenly, random numbers keyed by a number;
+//! - [`search`]: the global search, from a problem to many finished designs;
 //! - [`write_whole`]: the one function of the program that writes files.
 //!
 //! # What it refuses to know
@@ -19,9 +25,20 @@
 //! The step p that minimises ½|r + Jp|² + ½λ|Dp|² under low ≤ x + p ≤ high and g + Gp ≥ 0, with J in
 //! blocks, one a zoom state. Start reading at [`solve`].
 
+pub mod brief;
 pub mod cam;
+#[doc(hidden)]
+pub mod careless;
+pub mod change;
 pub mod design_file;
+mod document_kind;
 pub mod freedom;
 pub mod optimise;
+pub mod overnight;
+pub mod retune;
+pub mod run;
+pub mod sampling;
+pub mod search;
 pub mod solve;
+pub mod start;
 pub mod write_whole;

@@ -8,6 +8,7 @@ use merit_function::block::BlockProblem;
 use merit_function::fault::EvaluationFault;
 use merit_function::problem::{MeritFunction, RAYS};
 use merit_function::variables::{Variables, VariablesError};
+use merit_function::wishes::Wishes;
 use serde::Serialize;
 use surface_model::document::Complaints;
 use surface_model::glass::GlassError;
@@ -48,8 +49,8 @@ pub struct OptimisationReport {
     pub evaluations: u64,
     /// Wall time of the solver alone, s.
     pub solve_seconds: f64,
-    /// Free numbers that ended on a bound of their own.
-    pub on_bounds: usize,
+    /// Addresses of the free numbers that ended on a bound.
+    pub on_bounds: Vec<String>,
     /// Number of variables.
     pub variables: usize,
     /// The design as it was.
@@ -113,7 +114,7 @@ pub fn optimise(
         iterations: outcome.iterations + widened.iterations,
         evaluations: outcome.evaluations + widened.evaluations,
         solve_seconds: outcome.time.as_secs_f64() + widened.seconds,
-        on_bounds: on_bounds(&merit, &outcome.variables),
+        on_bounds: on_bounds(file, &merit, &outcome.variables),
         variables: outcome.variables.len(),
         start,
         end,
@@ -126,13 +127,7 @@ pub fn optimise(
 /// # Errors
 /// There is no goal or nothing free, or ranges contradict each other.
 pub fn merit_of(file: &DesignFile) -> Result<MeritFunction, OptimiseError> {
-    let any_goal = file.wishes.states.iter().any(|goals| {
-        let present = [goals.wavefront_rms_waves, goals.ratio_percent, goals.exit_slope_urad];
-        present.iter().any(Option::is_some) && goals.weight > 0.0
-    });
-    if !any_goal {
-        return Err(OptimiseError::NoGoals);
-    }
+    require_goal(&file.wishes)?;
     if file.free.is_empty() {
         return Err(OptimiseError::NothingFree);
     }
@@ -140,9 +135,21 @@ pub fn merit_of(file: &DesignFile) -> Result<MeritFunction, OptimiseError> {
     Ok(MeritFunction::new(&file.design, &file.wishes, variables, RAYS)?)
 }
 
-fn on_bounds(merit: &MeritFunction, variables: &[f64]) -> usize {
-    let bounds = merit.bounds().iter().zip(variables);
-    bounds.filter(|(bounds, value)| **value <= bounds.low || **value >= bounds.high).count()
+/// There has to be a goal that counts.
+pub(crate) fn require_goal(wishes: &Wishes) -> Result<(), OptimiseError> {
+    let any_goal = wishes.states.iter().any(|goals| goals.any() && goals.weight > 0.0);
+    if any_goal { Ok(()) } else { Err(OptimiseError::NoGoals) }
+}
+
+/// Free numbers that stand on a bound, by their addresses in the file.
+fn on_bounds(file: &DesignFile, merit: &MeritFunction, variables: &[f64]) -> Vec<String> {
+    let document = file.document().value();
+    let bounds = merit.bounds().iter().zip(variables).enumerate();
+    bounds
+        .filter(|(_, (bounds, value))| **value <= bounds.low || **value >= bounds.high)
+        .filter_map(|(variable, _)| merit.variables().address(variable))
+        .map(|address| address.with_names(document).to_string())
+        .collect()
 }
 
 /// A start through which the whole beam passes.

@@ -11,6 +11,7 @@
 //! of its way.
 
 use surface_model::design::Design;
+use surface_model::document::Address;
 use surface_model::housing::Anchor;
 use surface_model::place::Place;
 use surface_model::reverse::{Quantities, Shapes};
@@ -148,6 +149,24 @@ impl Variables {
     #[must_use]
     pub fn start(&self) -> &[f64] {
         &self.start
+    }
+
+    /// Where a variable stands in the file, by its place in the packed vector; for a position in
+    /// the tube, the group that takes it.
+    #[must_use]
+    pub fn address(&self, variable: usize) -> Option<Address> {
+        if let Some(shared) = self.shared.get(variable) {
+            return Some(match *shared {
+                SharedVariable::Glass(place) => place.address(),
+                SharedVariable::FixedPosition(group) | SharedVariable::TravelStart(group) => {
+                    Address::root().key("groups").index(group)
+                }
+            });
+        }
+        let own = |state: &StateVariables| {
+            state.own.get(variable.checked_sub(state.own_start)?).map(|place| place.address())
+        };
+        self.states.iter().find_map(own)
     }
 
     /// How the quantities of a state's train follow from the variables.

@@ -14,6 +14,7 @@ use crate::optics_document::{
 use crate::ranges::{
     LARGEST_COEFFICIENT, LARGEST_CONIC, LARGEST_RADIUS_MM, LONGEST_MM, SMALLEST_RADIUS_MM,
 };
+use crate::resolve_laser::{beam_fault, laser};
 use crate::surface::{ASPHERE_TERMS, Surface, asphere_power};
 
 const LENGTH: Allowed = Allowed { low: 0.0, high: LONGEST_MM, above_low: true, unit: " mm" };
@@ -44,6 +45,19 @@ impl OpticsDocument {
     /// # Errors
     /// Every fault found, each with its address.
     pub fn resolve(&self) -> Result<Design, Vec<DesignFault>> {
+        let design = self.resolve_unfitted()?;
+        let mut faults = Vec::new();
+        fit(&design, &mut faults);
+        if faults.is_empty() { Ok(design) } else { Err(faults) }
+    }
+
+    /// As [`Self::resolve`], but the spacings need not fit the fixed groups: for a design whose
+    /// parts have changed and whose spacings are still to be fitted
+    /// ([`Design::fit_to_housing`]).
+    ///
+    /// # Errors
+    /// Every other fault found, each with its address.
+    pub fn resolve_unfitted(&self) -> Result<Design, Vec<DesignFault>> {
         let definitions = self.glasses.iter().map(|(name, glass)| (name.as_str(), glass));
         let (shelf, glass_faults) = GlassShelf::resolve(definitions);
         let mut resolver = Resolver { shelf, faults: Vec::new() };
@@ -62,7 +76,7 @@ impl OpticsDocument {
         }
         let design = Design { title: self.title.clone(), beam, groups, housing, states };
         resolver.indices(&design);
-        resolver.fit(&design);
+        resolver.faults.extend(beam_fault(&design));
         if resolver.faults.is_empty() { Ok(design) } else { Err(resolver.faults) }
     }
 }
@@ -114,10 +128,13 @@ impl Resolver {
         self.wavelengths(&at.clone().key("wavelengths_nm"), &beam.wavelengths_nm);
         self.check(at.clone().key("diameter_mm"), "the beam diameter", beam.diameter_mm, LENGTH);
         self.check(at.key("traced_to"), "the reach of the traced rays", beam.traced_to, REACH);
+        let (laser, faults) = laser(document);
+        self.faults.extend(faults);
         Beam {
             wavelengths_nm: beam.wavelengths_nm.clone(),
             diameter_mm: beam.diameter_mm,
             traced_to: beam.traced_to,
+            laser,
         }
     }
 
@@ -317,16 +334,16 @@ impl Resolver {
             }
         }
     }
+}
 
-    fn fit(&mut self, design: &Design) {
-        if let Some(mismatch) = design.housing_mismatch() {
-            let at = Address::root().key("states").index(mismatch.state);
-            let error = DesignError::Housing {
-                state: design.states[mismatch.state].name.clone(),
-                found_mm: mismatch.found_mm,
-                needed_mm: mismatch.needed_mm,
-            };
-            self.fault(at.key("spacings_mm").index(mismatch.spacing), error);
-        }
+fn fit(design: &Design, faults: &mut Vec<DesignFault>) {
+    if let Some(mismatch) = design.housing_mismatch() {
+        let at = Address::root().key("states").index(mismatch.state);
+        let error = DesignError::Housing {
+            state: design.states[mismatch.state].name.clone(),
+            found_mm: mismatch.found_mm,
+            needed_mm: mismatch.needed_mm,
+        };
+        faults.push(DesignFault { at: at.key("spacings_mm").index(mismatch.spacing), error });
     }
 }

@@ -4,8 +4,10 @@
 mod assess;
 mod cam;
 mod completions;
+mod gather;
 mod glass;
 mod optimise;
+mod overnight;
 mod progress;
 mod report;
 mod schema;
@@ -19,8 +21,10 @@ use clap::{CommandFactory, Parser, Subcommand};
 pub(crate) use assess::AssessArguments;
 pub(crate) use cam::CamArguments;
 pub(crate) use completions::CompletionsArguments;
+pub(crate) use gather::GatherArguments;
 pub(crate) use glass::GlassArguments;
 pub(crate) use optimise::{MethodArgument, OptimiseArguments};
+pub(crate) use overnight::{OvernightArguments, StrategyArgument};
 pub(crate) use progress::ProgressArgument;
 pub(crate) use report::ReportArguments;
 pub(crate) use schema::{DocumentKind, SchemaArguments};
@@ -65,8 +69,12 @@ Exit status:
     0  done
     1  the work failed: a ray does not get through, nothing was found
     2  the input or the command line is wrong
-    3  done, but a goal or limit is missed (only with --require)
+    3  done, but a goal or limit is missed (only with --require), or parts of a
+       run are missing
+    5  the run folder is in use by another process
+    6  the run folder is damaged, or of another file, seed or version
     7  the result cannot be written
+   75  stopped by --time-limit; run again, it goes on
   130  stopped by Ctrl-C, the best so far saved; 143 the same by SIGTERM
 
 Example:
@@ -83,6 +91,10 @@ pub(crate) enum Command {
     Cam(CamArguments),
     /// Write a page about a design, or about several side by side; sheets for the shop
     Report(ReportArguments),
+    /// Search for designs for hours, in a run folder that survives anything
+    Overnight(OvernightArguments),
+    /// Put the parts of an overnight run together
+    Gather(GatherArguments),
     /// Follow one exact ray through a design, surface by surface
     Trace(TraceArguments),
     /// Look through the glass catalogue, or find equivalents of a glass

@@ -18,4 +18,6 @@ pub(crate) struct SchemaArguments {
 pub(crate) enum DocumentKind {
     /// A design file
     Design,
+    /// A brief: the requirement a design is begun from
+    Brief,
 }

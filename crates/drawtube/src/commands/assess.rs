@@ -2,7 +2,7 @@
 
 use driver::cam::{CamSettings, movement_curve};
 use driver::design_file::DesignFile;
-use merit_function::assessment::assess;
+use merit_function::assessment::{assess, real_beam};
 use report::picture::assessment_picture;
 use report::text;
 use report::text::assessment::Scope;
@@ -18,6 +18,8 @@ use crate::output_file::OutputFile;
 enum Form {
     Json,
     Text(Scope),
+    Beam,
+    Hazards,
 }
 
 /// What is asked for.
@@ -25,26 +27,40 @@ struct Request {
     file: DesignFile,
     form: Form,
     picture: Option<OutputFile>,
+    /// Distances to tell the real beam at, m.
+    ranges_m: Vec<f64>,
     require: bool,
 }
 
 impl Request {
     fn of(arguments: AssessArguments) -> Result<Self, Failure> {
-        let scope = if arguments.all { Scope::All } else { Scope::Tightest };
+        let form = if arguments.json {
+            Form::Json
+        } else if arguments.beam || !arguments.ranges_m.is_empty() {
+            Form::Beam
+        } else if arguments.hazards {
+            Form::Hazards
+        } else {
+            Form::Text(if arguments.all { Scope::All } else { Scope::Tightest })
+        };
         let force = arguments.force;
         let picture = arguments.picture.map(|path| OutputFile::checked(path, force));
         Ok(Self {
             picture: picture.transpose()?,
             file: input::design(&arguments.design)?,
-            form: if arguments.json { Form::Json } else { Form::Text(scope) },
+            form,
+            ranges_m: arguments.ranges_m,
             require: arguments.require,
         })
     }
 }
 
 pub(crate) fn run(arguments: AssessArguments, console: &Console) -> Result<ExitStatus, Failure> {
-    let Request { file, form, picture, require } = Request::of(arguments)?;
-    let assessment = assess(&file.design, &file.wishes);
+    let Request { file, form, picture, ranges_m, require } = Request::of(arguments)?;
+    let mut assessment = assess(&file.design, &file.wishes);
+    if matches!(form, Form::Beam) || !ranges_m.is_empty() {
+        assessment.real_beam = Some(real_beam(&file.design, &file.wishes, &ranges_m));
+    }
     if let Some(output) = picture {
         let curve = movement_curve(&file.design, &file.wishes, &CamSettings::default());
         output.write(&assessment_picture(&file, curve.as_ref().ok()))?;
@@ -54,6 +70,11 @@ pub(crate) fn run(arguments: AssessArguments, console: &Console) -> Result<ExitS
         Form::Text(scope) => {
             console.print(&text::assessment::assessment(&file, &assessment, scope))?;
         }
+        Form::Beam => {
+            let beams = assessment.real_beam.as_deref().unwrap_or_default();
+            console.print(&text::beam::beam(&file, beams, &assessment))?;
+        }
+        Form::Hazards => console.print(&text::hazards::hazards(&file, &assessment))?,
     }
     Ok(if require && !assessment.meets { ExitStatus::Missed } else { ExitStatus::Done })
 }

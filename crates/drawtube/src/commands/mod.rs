@@ -3,8 +3,10 @@
 pub(crate) mod assess;
 pub(crate) mod cam;
 pub(crate) mod completions;
+pub(crate) mod gather;
 pub(crate) mod glass;
 pub(crate) mod optimise;
+pub(crate) mod overnight;
 pub(crate) mod report;
 pub(crate) mod schema;
 pub(crate) mod trace;

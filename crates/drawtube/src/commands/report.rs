@@ -5,8 +5,9 @@ use std::path::{Path, PathBuf};
 use driver::cam::{CamError, CamSettings, MovementCurve, movement_curve};
 use driver::design_file::DesignFile;
 use merit_function::assessment::{Assessment, assess};
-use report::page::{Found, Subject, page};
+use report::page::{Found, Section, Subject, page, preformatted};
 use report::shop::shop_files;
+use report::text;
 
 use crate::arguments::ReportArguments;
 use crate::console::Console;
@@ -46,8 +47,26 @@ impl Told {
             assessment: &self.assessment,
             curve: self.curve.as_ref().map_err(ToString::to_string),
             found: self.found(),
-            sections: Vec::new(),
+            sections: self.sections(),
         }
+    }
+
+    /// What the assessment tells of the laser, where the design describes one.
+    fn sections(&self) -> Vec<Section> {
+        let Self { file, assessment, .. } = self;
+        let section = |title: &str, text: String| Section {
+            title: title.to_owned(),
+            body: preformatted(&text),
+        };
+        let beam = assessment
+            .real_beam
+            .as_ref()
+            .map(|beams| section("The real beam", text::beam::beam(file, beams, assessment)));
+        let hazards = assessment
+            .hazards
+            .as_ref()
+            .map(|_| section("Hazards", text::hazards::hazards(file, assessment)));
+        beam.into_iter().chain(hazards).collect()
     }
 
     /// What is known of how the design was found: what its file says of itself.
@@ -97,10 +116,8 @@ fn write_sheets(
     console: &Console,
 ) -> Result<(), Failure> {
     let files = shop_files(file).map_err(Failure::Table)?;
-    std::fs::create_dir_all(folder).map_err(|source| Failure::Folder {
-        path: folder.to_owned(),
-        source,
-    })?;
+    std::fs::create_dir_all(folder)
+        .map_err(|source| Failure::Folder { path: folder.to_owned(), source })?;
     let checked: Vec<(OutputFile, PathBuf, String)> = files
         .into_iter()
         .map(|(name, text)| {

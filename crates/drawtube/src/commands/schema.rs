@@ -1,5 +1,6 @@
 //! `schema`: the JSON Schema of the documents the program reads.
 
+use driver::brief::brief_schema;
 use driver::design_file::design_schema;
 
 use crate::arguments::{DocumentKind, SchemaArguments};
@@ -10,6 +11,7 @@ use crate::failure::Failure;
 pub(crate) fn run(arguments: SchemaArguments, console: &Console) -> Result<ExitStatus, Failure> {
     let schema = match arguments.kind {
         DocumentKind::Design => design_schema(),
+        DocumentKind::Brief => brief_schema(),
     };
     console.print_json(&schema)?;
     Ok(ExitStatus::Done)

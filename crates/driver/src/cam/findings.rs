@@ -132,8 +132,10 @@ impl Look<'_> {
                 let gap = self.edge_gap_mm(after, self.points[k].spacings_mm[after])?;
                 Some((-gap, gap))
             });
-            for (place, run) in
-                axis.iter().map(|run| ("on axis", run)).chain(edge.iter().map(|run| ("at the edge", run)))
+            for (place, run) in axis
+                .iter()
+                .map(|run| ("on axis", run))
+                .chain(edge.iter().map(|run| ("at the edge", run)))
             {
                 found.push(Finding {
                     kind: FindingKind::Collision,
@@ -165,9 +167,8 @@ impl Look<'_> {
         let mut found = Vec::new();
         let mut seen: Vec<(LimitKind, String)> = Vec::new();
         let moving = self.assessment.limits.iter().filter(|limit| depends_on_movement(limit.limit));
-        let placed: Vec<(&LimitAssessment, Option<usize>, String)> = moving
-            .map(|limit| (limit, self.state_of(limit), self.place_of(limit)))
-            .collect();
+        let placed: Vec<(&LimitAssessment, Option<usize>, String)> =
+            moving.map(|limit| (limit, self.state_of(limit), self.place_of(limit))).collect();
         for (limit, _, place) in &placed {
             let key = (limit.limit, place.clone());
             if seen.contains(&key) {
@@ -254,24 +255,25 @@ impl Look<'_> {
     fn steep(&self) -> Vec<Finding> {
         let mut found = Vec::new();
         for (g, group) in self.groups.iter().enumerate().filter(|(_, g)| g.part != Part::Still) {
-            let mut push = |limit: Option<f64>, unit: &str, value: &dyn Fn(usize) -> Option<f64>| {
-                let Some(allowed) = limit else { return };
-                let bad = runs(self.points, |k| value(k).map(|value| (value - allowed, value)));
-                found.extend(bad.iter().map(|run| Finding {
-                    kind: FindingKind::Steep,
-                    wrong: true,
-                    ratios: [run.from, run.to],
-                    what: group.name.clone(),
-                    worst: Some(run.worst),
-                    told: format!(
-                        "{} {} is steeper than {allowed} {unit}: {:.3} at {:.4}x",
-                        between(run),
-                        group.name,
-                        run.worst,
-                        run.worst_at
-                    ),
-                }));
-            };
+            let mut push =
+                |limit: Option<f64>, unit: &str, value: &dyn Fn(usize) -> Option<f64>| {
+                    let Some(allowed) = limit else { return };
+                    let bad = runs(self.points, |k| value(k).map(|value| (value - allowed, value)));
+                    found.extend(bad.iter().map(|run| Finding {
+                        kind: FindingKind::Steep,
+                        wrong: true,
+                        ratios: [run.from, run.to],
+                        what: group.name.clone(),
+                        worst: Some(run.worst),
+                        told: format!(
+                            "{} {} is steeper than {allowed} {unit}: {:.3} at {:.4}x",
+                            between(run),
+                            group.name,
+                            run.worst,
+                            run.worst_at
+                        ),
+                    }));
+                };
             let at = |k: usize| &self.points[k].groups[g];
             push(self.settings.steepest_mm, "mm a unit of ratio", &|k| {
                 Some(at(k).slope_mm_per_ratio.abs())

@@ -80,8 +80,7 @@ struct Linear {
 
 impl Equations<'_> {
     fn linear(&mut self, ratio: f64, moving_mm: &[f64]) -> Result<Linear, Stop> {
-        let held =
-            self.gauge.measure(&self.slide.spacings_mm(moving_mm)).map_err(Stop::Fault)?;
+        let held = self.gauge.measure(&self.slide.spacings_mm(moving_mm)).map_err(Stop::Fault)?;
         let count = moving_mm.len();
         let mut residuals = DVector::zeros(count);
         let mut jacobian = DMatrix::zeros(count, count);
@@ -125,7 +124,11 @@ impl Equations<'_> {
                 break;
             }
         }
-        if self.is_held(&linear) { self.point(ratio, moving_mm, linear) } else { Err(Stop::NoSolution) }
+        if self.is_held(&linear) {
+            self.point(ratio, moving_mm, linear)
+        } else {
+            Err(Stop::NoSolution)
+        }
     }
 
     fn is_held(&self, linear: &Linear) -> bool {
@@ -148,9 +151,7 @@ impl Equations<'_> {
                 from_mm.iter().zip(step.iter()).map(|(z, by)| z - part * by).collect();
             match self.linear(ratio, &next_mm) {
                 // A tiny step is taken as it is: the last digits of a residual are noise.
-                Ok(next)
-                    if size(&next) < size(at) || step.amax() < 100.0 * ARRIVED_MM =>
-                {
+                Ok(next) if size(&next) < size(at) || step.amax() < 100.0 * ARRIVED_MM => {
                     return Ok((next_mm, next));
                 }
                 Ok(_) => {}
@@ -225,9 +226,8 @@ impl Equations<'_> {
         let ahead = from.moving_mm.iter().zip(&from.slopes_mm);
         let predicted: Vec<f64> = ahead.map(|(z, slope)| z + by * slope).collect();
         let point = self.solve(ratio, &predicted)?;
-        let largest = |a: &[f64], b: &[f64]| {
-            a.iter().zip(b).map(|(a, b)| (a - b).abs()).fold(0.0, f64::max)
-        };
+        let largest =
+            |a: &[f64], b: &[f64]| a.iter().zip(b).map(|(a, b)| (a - b).abs()).fold(0.0, f64::max);
         let correction = largest(&point.moving_mm, &predicted);
         let length = largest(&predicted, &from.moving_mm);
         let near = correction <= (CORRECTION * length).max(SMALL_MM);

@@ -25,9 +25,10 @@ mod table;
 mod tests;
 
 use merit_function::assessment::{Assessment, assess};
-use merit_function::goals::Goals;
+use merit_function::goals::{Goals, GoalsDocument};
 use merit_function::wishes::Wishes;
 use surface_model::design::{Design, ZoomState};
+use surface_model::laser::Laser;
 
 use collimation::Gauge;
 use findings::Look;
@@ -61,6 +62,10 @@ pub fn movement_curve(
     settings: &CamSettings,
 ) -> Result<MovementCurve, CamError> {
     settings.check()?;
+    let focused = wishes.states.iter().position(|goals| goals.exit_focus_m.is_some());
+    if let Some(state) = focused.and_then(|k| design.states.get(k)) {
+        return Err(CamError::Focused(state.name.clone()));
+    }
     let knots = knots(design)?;
     let stations = stations(design, &knots, settings)?;
     let wavelengths_nm = wavelengths(design);
@@ -70,8 +75,7 @@ pub fn movement_curve(
     let mut equations = equations(design, &slide, &knots, &starts, wavelengths_nm[0])?;
     let roots = roots(design, &mut equations, &knots, &starts)?;
     let (reached, mut findings) = walk(design, &mut equations, &knots, &roots, &stations);
-    let hold =
-        if equations.hold_collimation { Hold::RatioAndCollimation } else { Hold::Ratio };
+    let hold = if equations.hold_collimation { Hold::RatioAndCollimation } else { Hold::Ratio };
     let guided: Vec<usize> = equations.guides.iter().map(|(j, _)| slide.moving()[*j]).collect();
 
     let assessment = assess_points(design, wishes, &slide, &reached, &wavelengths_nm);
@@ -83,7 +87,8 @@ pub fn movement_curve(
         .map(|(k, (station, point))| teller.point(station, point, &assessment, k))
         .collect();
     let groups = teller.ways(&fine, &guided);
-    let look = Look { design, wishes, settings, groups: &groups, points: &fine, assessment: &assessment };
+    let look =
+        Look { design, wishes, settings, groups: &groups, points: &fine, assessment: &assessment };
     findings.extend(look.findings());
     let told = reached.iter().zip(&fine).filter(|((station, _), _)| station.told);
     let points = told.map(|(_, point)| point.clone()).collect();
@@ -310,13 +315,10 @@ fn assess_points(
         wavelengths_nm: wavelengths_nm.to_vec(),
     };
     let states = reached.iter().enumerate().map(state).collect();
-    let between = Design { states, ..design.clone() };
-    let none = Goals {
-        wavefront_rms_waves: None,
-        ratio_percent: None,
-        exit_slope_urad: None,
-        weight: 1.0,
-    };
+    let mut between = Design { states, ..design.clone() };
+    // The real beam and its hazards are told of the designed states.
+    between.beam.laser = Laser::default();
+    let none = Goals::of_state(&GoalsDocument::default(), None, 1.0);
     let wishes = Wishes { states: vec![none; reached.len()], ..wishes.clone() };
     assess(&between, &wishes)
 }

@@ -38,9 +38,8 @@ impl CamSettings {
     /// # Errors
     /// A number is out of range.
     pub(super) fn check(&self) -> Result<(), CamError> {
-        let refuse = |option, found, constraint| {
-            Err(CamError::Setting { option, found, constraint })
-        };
+        let refuse =
+            |option, found, constraint| Err(CamError::Setting { option, found, constraint });
         match self.ratios {
             Ratios::Count(count) if !(2..=MOST_RATIOS).contains(&count) => {
                 return refuse("--ratios", count as f64, "a number from 2 to 100000");
@@ -50,8 +49,7 @@ impl CamSettings {
             }
             _ => {}
         }
-        let steepest =
-            [("--steepest-mm", self.steepest_mm), ("--steepest-deg", self.steepest_deg)];
+        let steepest = [("--steepest-mm", self.steepest_mm), ("--steepest-deg", self.steepest_deg)];
         for (option, found) in steepest {
             if let Some(found) = found
                 && !(found.is_finite() && found > 0.0)

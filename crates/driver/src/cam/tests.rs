@@ -15,7 +15,12 @@ use crate::design_file::DesignFile;
 const THICKNESS_MM: f64 = 2e-4;
 
 /// A train of thin groups of these focal lengths, mm.
-fn thin(focal_mm: &[f64], track_mm: f64, fixed: &[usize], states: &[(f64, Vec<f64>)]) -> DesignFile {
+fn thin(
+    focal_mm: &[f64],
+    track_mm: f64,
+    fixed: &[usize],
+    states: &[(f64, Vec<f64>)],
+) -> DesignFile {
     let name = |g: &usize| format!("g{g}");
     let group = |(g, f): (usize, &f64)| {
         json!({ "name": name(&g), "elements": [ { "radii_mm": [f, -f], "glasses": ["medium"],
@@ -248,7 +253,8 @@ fn curve_of(value: Value) -> MovementCurve {
 
 #[test]
 fn what_has_no_curve_says_why() {
-    let (states, focal) = ([(2.0, vec![33.0, 125.0]), (6.0, vec![20.0, 138.0])], [50.0, -10.0, 150.0]);
+    let (states, focal) =
+        ([(2.0, vec![33.0, 125.0]), (6.0, vec![20.0, 138.0])], [50.0, -10.0, 150.0]);
     let refused = |file: &DesignFile, settings| {
         movement_curve(&file.design, &file.wishes, &settings)
             .err()
@@ -266,6 +272,7 @@ fn what_has_no_curve_says_why() {
     let steps = CamSettings { ratios: Ratios::Count(1), ..usual() };
     assert!(refused(&two, steps).contains("--ratios"));
     // Two groups have one afocal distance; here their rays cross the axis and spread for ever.
-    let lone = thin(&[50.0, -10.0, -10.0], 170.0, &[2], &[(2.0, vec![9.0, 9.0]), states[1].clone()]);
+    let lone =
+        thin(&[50.0, -10.0, -10.0], 170.0, &[2], &[(2.0, vec![9.0, 9.0]), states[1].clone()]);
     assert!(refused(&lone, usual()).contains("no positions hold"), "{}", refused(&lone, usual()));
 }

@@ -33,25 +33,36 @@ fn rows(subjects: &[Subject<'_>]) -> Vec<Vec<String>> {
         let values = subjects.iter().map(value);
         std::iter::once(name.to_owned()).chain(values).collect::<Vec<String>>()
     };
-    let worst = |assessment: &Assessment, value: fn(&merit_function::assessment::StateAssessment) -> Option<f64>| {
-        let values: Option<Vec<f64>> = assessment.states.iter().map(value).collect();
-        significant_or_dash(values.map(|v| v.iter().map(|v| v.abs()).fold(0.0, f64::max)), 3)
-    };
+    let worst =
+        |assessment: &Assessment,
+         value: fn(&merit_function::assessment::StateAssessment) -> Option<f64>| {
+            let values: Option<Vec<f64>> = assessment.states.iter().map(value).collect();
+            significant_or_dash(values.map(|v| v.iter().map(|v| v.abs()).fold(0.0, f64::max)), 3)
+        };
     vec![
         row("requirement", &|s| if s.assessment.meets { "met" } else { "not met" }.to_owned()),
         row("merit", &|s| significant_or_dash(s.assessment.merit.total, 4)),
         row("worst RMS wavefront, waves", &|s| {
             worst(s.assessment, |state| {
-                state.wavefront.iter().map(|w| w.rms_waves).try_fold(0.0, |most: f64, rms| Some(most.max(rms?)))
+                state
+                    .wavefront
+                    .iter()
+                    .map(|w| w.rms_waves)
+                    .try_fold(0.0, |most: f64, rms| Some(most.max(rms?)))
             })
         }),
-        row("worst error of the ratio, %", &|s| worst(s.assessment, |state| state.ratio_error_percent)),
+        row("worst error of the ratio, %", &|s| {
+            worst(s.assessment, |state| state.ratio_error_percent)
+        }),
         row("worst exit slope, µrad", &|s| worst(s.assessment, |state| state.exit_slope_urad)),
-        row("limits crossed", &|s| s.assessment.limits.iter().filter(|l| !l.met).count().to_string()),
+        row("limits crossed", &|s| {
+            s.assessment.limits.iter().filter(|l| !l.met).count().to_string()
+        }),
         row("states", &|s| s.file.design.states.len().to_string()),
         row("ratios", &|s| {
             let ratios = || s.file.design.states.iter().map(|state| state.ratio);
-            let (low, high) = ratios().fold((f64::INFINITY, f64::NEG_INFINITY), |(l, h), r| (l.min(r), h.max(r)));
+            let (low, high) =
+                ratios().fold((f64::INFINITY, f64::NEG_INFINITY), |(l, h), r| (l.min(r), h.max(r)));
             format!("{low} to {high}")
         }),
         row("groups, elements", &|s| {
@@ -67,7 +78,8 @@ fn rows(subjects: &[Subject<'_>]) -> Vec<Vec<String>> {
             Err(_) => "–".into(),
         }),
         row("mass of glass, g", &|s| {
-            let masses: Option<f64> = s.assessment.elements.iter().map(|element| element.mass_g).sum();
+            let masses: Option<f64> =
+                s.assessment.elements.iter().map(|element| element.mass_g).sum();
             significant_or_dash(masses, 3)
         }),
     ]

@@ -19,8 +19,8 @@ use driver::design_file::DesignFile;
 use maud::{DOCTYPE, Markup, PreEscaped, html};
 use merit_function::assessment::Assessment;
 
-pub(crate) use parts::{radius, shape};
 pub use parts::{preformatted, table_of};
+pub(crate) use parts::{radius, shape};
 
 use crate::picture::{Panel, layout, merit_curve, movement, wavefronts};
 

@@ -209,11 +209,12 @@ pub(super) fn glasses(file: &DesignFile) -> Markup {
             glasses.push(glass);
         }
     }
-    let heads: Vec<String> = ["glass", "maker", "code", "nd", "νd", "density g/cm³", "known from–to nm", "status"]
-        .map(str::to_owned)
-        .into_iter()
-        .chain(wavelengths.iter().map(|&nm| format!("n at {} nm", as_written(nm))))
-        .collect();
+    let heads: Vec<String> =
+        ["glass", "maker", "code", "nd", "νd", "density g/cm³", "known from–to nm", "status"]
+            .map(str::to_owned)
+            .into_iter()
+            .chain(wavelengths.iter().map(|&nm| format!("n at {} nm", as_written(nm))))
+            .collect();
     let rows: Vec<Vec<String>> = glasses
         .iter()
         .map(|glass| {

@@ -31,6 +31,7 @@ pub(super) fn requirement(file: &DesignFile, assessment: &Assessment) -> Markup 
                 td.word { }
             }
         }
+        @for caution in &assessment.cautions { p { strong { "Caution: " } (caution) } }
         @for warning in &assessment.warnings { p { "Warning: " (warning) } }
     }
 }

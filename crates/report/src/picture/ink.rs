@@ -28,8 +28,7 @@ pub(crate) const TITLE: f64 = 13.0;
 
 /// Series by their number: blue, green, purple, orange, sky, black. (Yellow is left out, it does
 /// not print; vermillion is for rays and for what is missed.)
-const SERIES: [&str; 6] =
-    ["#0072B2", "#009E73", "#CC79A7", "#E69F00", "#56B4E9", "#1b1b1b"];
+const SERIES: [&str; 6] = ["#0072B2", "#009E73", "#CC79A7", "#E69F00", "#56B4E9", "#1b1b1b"];
 /// The dash that goes with each.
 const DASHES: [&str; 6] = ["", "8 3", "10 3 2 3", "2.5 2.5", "5 2", "12 3 2 3 2 3"];
 

@@ -27,7 +27,13 @@ fn over_ratio(
     points
 }
 
-fn over(curve: &MovementCurve, title: &str, y: Axis, series: Vec<Series>, levels: Vec<Level>) -> Chart {
+fn over(
+    curve: &MovementCurve,
+    title: &str,
+    y: Axis,
+    series: Vec<Series>,
+    levels: Vec<Level>,
+) -> Chart {
     let marks = curve.states.iter().map(|state| (state.ratio, state.name.clone()));
     Chart {
         title: title.into(),

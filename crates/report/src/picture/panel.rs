@@ -202,7 +202,8 @@ impl Panel {
 
     fn document(self, margin: f64) -> Document {
         let (width, height) = (px(self.width + 2.0 * margin), px(self.height + 2.0 * margin));
-        let back = Rectangle::new().set("width", width).set("height", height).set("fill", "#ffffff");
+        let back =
+            Rectangle::new().set("width", width).set("height", height).set("fill", "#ffffff");
         let mut page = Self::new(width, height);
         page.place([margin, margin], self);
         Document::new()

@@ -26,10 +26,8 @@ fn file_of(panels: impl IntoIterator<Item = Panel>) -> String {
 /// What `assess --picture` writes: layout and wavefronts.
 #[must_use]
 pub fn assessment_picture(file: &DesignFile, curve: Option<&MovementCurve>) -> String {
-    let panels = [
-        layout(&file.design, curve, PICTURE_WIDTH),
-        wavefronts(&file.design, PICTURE_WIDTH),
-    ];
+    let panels =
+        [layout(&file.design, curve, PICTURE_WIDTH), wavefronts(&file.design, PICTURE_WIDTH)];
     file_of(title(file).into_iter().chain(panels))
 }
 

@@ -202,7 +202,8 @@ pub fn trade(trade: &Trade, width: f64) -> Panel {
         stair.push(here);
     }
     panel.polyline(&stair, Stroke { width: 1.2, ..Stroke::series(0) });
-    for k in (0..trade.designs.len()).filter(|&k| trade.designs[k].at.iter().all(|v| v.is_finite())) {
+    for k in (0..trade.designs.len()).filter(|&k| trade.designs[k].at.iter().all(|v| v.is_finite()))
+    {
         if !front.contains(&k) {
             panel.dot(at(k), 2.4, "#ffffff", Stroke::solid(FAINT, 1.0));
         }

@@ -50,14 +50,8 @@ pub fn heights(design: &Design) -> [f64; 4] {
 /// Exact rays of a state in the housing, from `lead_mm` before the first vertex to as far behind
 /// the last. A ray that fails is left out.
 #[must_use]
-pub fn rays(
-    design: &Design,
-    state: &ZoomState,
-    front_mm: f64,
-    lead_mm: f64,
-) -> Vec<DrawnRay> {
-    let Some(train) =
-        state.wavelengths_nm.first().and_then(|&nm| design.train(state, nm).ok())
+pub fn rays(design: &Design, state: &ZoomState, front_mm: f64, lead_mm: f64) -> Vec<DrawnRay> {
+    let Some(train) = state.wavelengths_nm.first().and_then(|&nm| design.train(state, nm).ok())
     else {
         return Vec::new();
     };

@@ -93,7 +93,11 @@ fn surface(surface: &Surface, left: bool, clear_mm: f64) -> Markup {
         _ if bulges => " CX",
         _ => " CC",
     };
-    let size = if surface.curvature == 0.0 { "∞".to_owned() } else { fixed((1.0 / surface.curvature).abs(), 4) };
+    let size = if surface.curvature == 0.0 {
+        "∞".to_owned()
+    } else {
+        fixed((1.0 / surface.curvature).abs(), 4)
+    };
     let terms = shape(surface);
     html! {
         div data-radius=(radius(surface)) { "R " b { (size) (form) } " ± " (OPEN) }

@@ -8,7 +8,13 @@ use surface_model::surface::asphere_power;
 pub(super) fn surfaces(file: &DesignFile) -> Result<String, csv::Error> {
     let mut writer = csv::Writer::from_writer(Vec::new());
     writer.write_record([
-        "group", "element", "surface", "radius_mm", "clear_diameter_mm", "sag_mm", "conic",
+        "group",
+        "element",
+        "surface",
+        "radius_mm",
+        "clear_diameter_mm",
+        "sag_mm",
+        "conic",
         "asphere",
     ])?;
     for group in &file.design.groups {
@@ -42,8 +48,16 @@ pub(super) fn surfaces(file: &DesignFile) -> Result<String, csv::Error> {
 pub(super) fn elements(file: &DesignFile) -> Result<String, csv::Error> {
     let mut writer = csv::Writer::from_writer(Vec::new());
     writer.write_record([
-        "group", "element", "piece", "glass", "maker", "nd", "vd", "centre_thickness_mm",
-        "edge_thickness_mm", "clear_diameter_mm",
+        "group",
+        "element",
+        "piece",
+        "glass",
+        "maker",
+        "nd",
+        "vd",
+        "centre_thickness_mm",
+        "edge_thickness_mm",
+        "clear_diameter_mm",
     ])?;
     let number = |value: Option<f64>, places: usize| {
         value.map_or_else(String::new, |value| format!("{value:.places$}"))

@@ -109,7 +109,11 @@ fn movement(curve: &MovementCurve) -> Vec<String> {
             as_written(barrel.radius_mm),
             as_written(barrel.turn_deg)
         );
-        told.push(format!("{}\n{}", paragraph(&note, WIDTH, ""), tables(curve, columns).join("\n\n")));
+        told.push(format!(
+            "{}\n{}",
+            paragraph(&note, WIDTH, ""),
+            tables(curve, columns).join("\n\n")
+        ));
     }
     told
 }
@@ -159,6 +163,7 @@ fn ways(curve: &MovementCurve) -> String {
     for group in &curve.groups {
         let moves = match group.part {
             Part::Still => "not",
+            Part::Solved if curve.held == Hold::Ratio => "to hold the ratio",
             Part::Solved => "to hold ratio and beam",
             Part::Guided => "on a smooth path",
         };
@@ -183,8 +188,7 @@ fn beside_the_design(curve: &MovementCurve) -> String {
     let worst = curve.states.iter().max_by(|a, b| off(a).total_cmp(&off(b)));
     let Some(worst) = worst else { return NONE.to_owned() };
     let told = format!(
-        "The curve holds what the designed states hold to within their goals; their positions are \
-         at most {} mm off it (state {}).",
+        "At the designed states the curve is at most {} mm off their positions (state {}).",
         fixed(off(worst), 4),
         worst.name
     );
@@ -204,10 +208,13 @@ fn closing(curve: &MovementCurve) -> String {
     let told = if wrong == 0 {
         "Between the states no goal is missed, no limit is crossed and no groups meet.".to_owned()
     } else {
-        format!("{} wrong along the curve, marked with !.", match wrong {
-            1 => "1 thing is".to_owned(),
-            many => format!("{} are", counted(many, "thing")),
-        })
+        format!(
+            "{} wrong along the curve, marked with !.",
+            match wrong {
+                1 => "1 thing is".to_owned(),
+                many => format!("{} are", counted(many, "thing")),
+            }
+        )
     };
     paragraph(&told, WIDTH, "")
 }

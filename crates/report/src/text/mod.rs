@@ -1,21 +1,31 @@
 //! Text for a terminal: tables at most 80 columns wide where names allow it, units in the heads.
 
 pub mod assessment;
+pub mod beam;
+pub mod bounds;
 pub mod cam;
+pub mod differences;
 mod elements;
 pub mod glass;
+pub mod hazards;
 mod layout;
 pub(crate) mod limits;
 mod number;
 pub mod optimisation;
 mod optimised;
+pub mod overnight;
 pub mod ray;
+pub mod retune;
+pub mod retune_lists;
 mod states;
 mod table;
 pub(crate) mod verdict;
 
 pub(crate) use limits::Scope;
 pub(crate) use number::{as_written, fixed, fixed_or_dash, significant, significant_or_dash};
+
+use driver::design_file::DesignFile;
+use surface_model::document::Address;
 
 /// Widest line that running text is broken into, in characters.
 pub const WIDTH: usize = 80;
@@ -44,4 +54,12 @@ pub fn warnings(warnings: &[String]) -> String {
         .map(|warning| paragraph(&format!("warning: {warning}"), WIDTH, "  "))
         .collect();
     lines.join("\n")
+}
+
+/// A surface's address in short: group, element and surface, each by name or number.
+fn surface_name(file: &DesignFile, at: &Address) -> String {
+    let named = at.with_names(file.document().value());
+    let steps = named.steps();
+    let short = [1, 3, 5].map(|step| steps.get(step).copied().unwrap_or_default());
+    short.join(" ")
 }

@@ -107,12 +107,12 @@ impl<'a> Account<'a> {
     fn warnings(&self) -> Vec<String> {
         let mut warnings = Vec::new();
         let last = self.stages.last();
-        let (on_bounds, variables) =
-            last.map_or((0, 0), |stage| (stage.on_bounds, stage.variables));
-        if on_bounds > 0 {
+        if let Some(told) =
+            last.and_then(|stage| text::bounds::ended_on_bounds(&stage.on_bounds, stage.variables))
+        {
             warnings.push(format!(
-                "{on_bounds} of {variables} variables ended on a bound: widen the limits or ranges \
-                 that hold them, if the design can bear it, and optimise again"
+                "{told}: widen the limits or ranges that hold them, if the design can bear it, and \
+                 optimise again"
             ));
         }
         match self.stopped {

@@ -1,0 +1,145 @@
+//! First-order starts: from a brief to designs worth optimising.
+//!
+//! A brief spans a space of layouts. A point of it is a list of [`Starts::dimensions`] numbers
+//! from 0 to 1, and stands for everything a layout has to choose: the plan (number of groups),
+//! the signs of their powers, the focal lengths, the size in the tube, what is tied where four
+//! groups leave a freedom, and for every element its bending and its glass, or its pair of glasses
+//! in their order. Any list of numbers is a point.
+//!
+//! The way of a point:
+//!
+//! | step | where |
+//! |---|---|
+//! | number and seed → point | `sequence` |
+//! | fixed groups and counts → how spacings follow | `plan`, `family` |
+//! | point → powers, spacings of thin groups in closed form, screened | `thin`, `spacings` |
+//! | powers → glasses, bendings of least spherical aberration | `shape`, `glasses`, `bending` |
+//! | thin → thick, exact by principal planes | `thick`, `lens` |
+//! | thick → design, every limit held against it | `layout` |
+//! | sums that foretell aberration and sensitivity | `score` |
+//! | layout → design file | `file` |
+//! | many points → the best that differ | `ranking`; none at all: `relaxation` |
+//!
+//! For a search: [`Starts::of`] once; then for start number k [`Starts::point`]`(k, seed)` or a
+//! point of one's own, [`Starts::layout`] (some ten microseconds; what has no layout says why in
+//! a fraction of one), [`Starts::merit`] over the layout's design for a local solver,
+//! [`Starts::design_file`] for what is kept (milliseconds: it is read as any file is). Nothing
+//! depends on threads or order: the same brief, number and seed give the same bits.
+
+mod bending;
+mod error;
+mod family;
+mod file;
+mod glasses;
+mod layout;
+mod lens;
+mod no_layout;
+mod plan;
+mod ranking;
+mod relaxation;
+mod score;
+mod sequence;
+mod shape;
+mod space;
+mod spacings;
+#[cfg(test)]
+mod tests;
+mod thick;
+mod thin;
+
+use merit_function::problem::{MeritFunction, RAYS};
+use merit_function::variables::{FreePlace, Variables};
+use surface_model::design::Design;
+use surface_model::document::Complaints;
+use surface_model::place::Place;
+
+use crate::brief::BriefFile;
+use crate::optimise::OptimiseError;
+
+pub use error::StartError;
+pub use family::{Family, Sign};
+pub use layout::Layout;
+pub use no_layout::NoLayout;
+pub use ranking::{Ranked, Ranking, Refusals};
+pub use relaxation::{Relaxation, Relaxed};
+pub use score::Score;
+
+use space::{Point, Space};
+
+/// The layouts that a brief allows.
+#[derive(Debug, Clone)]
+pub struct Starts {
+    space: Space,
+}
+
+impl Starts {
+    /// Sets up the space of a brief's layouts.
+    ///
+    /// # Errors
+    /// The brief contradicts itself in a way that no layout gets around.
+    pub fn of(brief: &BriefFile) -> Result<Self, StartError> {
+        Ok(Self { space: Space::of(brief)? })
+    }
+
+    /// The brief they are of.
+    #[must_use]
+    pub fn brief(&self) -> &BriefFile {
+        &self.space.brief
+    }
+
+    /// How many numbers a point has.
+    #[must_use]
+    pub fn dimensions(&self) -> usize {
+        self.space.sequence.dimensions()
+    }
+
+    /// Point `number` of the evenly spread sequence that `seed` begins.
+    #[must_use]
+    pub fn point(&self, number: u64, seed: u64) -> Vec<f64> {
+        self.space.sequence.point(number, seed)
+    }
+
+    /// The layout at a point.
+    ///
+    /// # Errors
+    /// There is none, with the first thing that stands against it.
+    pub fn layout(&self, point: &[f64]) -> Result<Layout, NoLayout> {
+        Layout::at(&self.space, Point(point))
+    }
+
+    /// What an optimiser may change of a layout's design: radii and spacings, as the `free` of its
+    /// design file says.
+    #[must_use]
+    pub fn free(&self, design: &Design) -> Vec<FreePlace> {
+        let places = Place::all(design).into_iter();
+        places
+            .filter(|place| matches!(place, Place::Radius(_) | Place::Spacing { .. }))
+            .map(|place| FreePlace { place, own_range: merit_function::block::Bounds::FREE })
+            .collect()
+    }
+
+    /// The merit function of a layout's design over its radii and spacings, ready for a solver.
+    ///
+    /// # Errors
+    /// The limits contradict each other, or the brief has no goals.
+    pub fn merit(&self, design: &Design) -> Result<MeritFunction, OptimiseError> {
+        let wishes = &self.space.brief.wishes;
+        crate::optimise::require_goal(wishes)?;
+        let variables = Variables::new(design, &wishes.limits, &self.free(design))?;
+        Ok(MeritFunction::new(design, wishes, variables, RAYS)?)
+    }
+
+    /// A design file: the layout's glasses and the brief's wishes, with the numbers of `design`
+    /// (the layout's own, or what an optimiser made of them) and a remark.
+    ///
+    /// # Errors
+    /// The numbers do not make a design.
+    pub fn design_file(
+        &self,
+        layout: &Layout,
+        design: &Design,
+        note: &str,
+    ) -> Result<crate::design_file::DesignFile, Complaints> {
+        file::design_file(&self.space.brief, layout, design, note)
+    }
+}
