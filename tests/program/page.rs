@@ -130,12 +130,13 @@ fn the_slider_agrees_with_the_curve(noted: &Value, design: &str) {
         let readings = noted[when]["readings"].as_array().unwrap();
         let read = |k: usize| readings[k].as_str().unwrap().parse::<f64>().unwrap();
         assert!((read(0) - point["ratio"].as_f64().unwrap()).abs() < 5.1e-5, "{when}");
-        assert!((read(1) - point["exit_slope_urad"].as_f64().unwrap()).abs() < 5.1e-3, "{when}");
+        assert!((read(2) - point["exit_slope_urad"].as_f64().unwrap()).abs() < 5.1e-3, "{when}");
+        assert!((read(1) - point["collimation_urad"].as_f64().unwrap()).abs() < 5.1e-3, "{when}");
         let rms = point["wavefront"][0]["rms_waves"].as_f64().unwrap();
-        assert!((read(2) / rms - 1.0).abs() < 5.1e-3, "{when}");
+        assert!((read(3) / rms - 1.0).abs() < 5.1e-3, "{when}");
         for g in 0..3 {
             let z = point["groups"][g]["position_mm"].as_f64().unwrap();
-            assert!((read(3 + g) - z).abs() < 5.1e-5, "{when}");
+            assert!((read(4 + g) - z).abs() < 5.1e-5, "{when}");
         }
     }
     // 840 px hold the track of 150 mm and a twentieth of it at both ends.

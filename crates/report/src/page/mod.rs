@@ -1,11 +1,11 @@
 //! The page: one self-contained HTML file about one design, or several side by side.
 //!
 //! No network, no fonts to fetch, prints on A4, and reads with scripts off: all that a script does
-//! is to move the slider of the layout ([`stage`](self)). Numbers are those of the assessment and of the
+//! is to move the slider of the layout (`stage.rs`). Numbers are those of the assessment and of the
 //! movement curve, rounded for people; the full ones stand in `data-value`.
 //!
 //! To add a section (beam, hazards, tolerances, temperature, …) hand it over in
-//! [`Subject::sections`]: a title and a body, which [`Markup`] is made by `maud::html!`, or by
+//! [`Subject::sections`]: a title and a body, made by `maud::html!`, by
 //! [`table_of`] from heads and rows, or by [`preformatted`] from a text for the terminal. It stands
 //! between the glasses and how the design was found.
 

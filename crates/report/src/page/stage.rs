@@ -1,6 +1,6 @@
 //! The layout with a slider along the movement curve.
 //!
-//! Frames are worked out here, at the ratios the curve was looked at; the script only shows them.
+//! A drawing inside a page is not HTML: its elements are closed, empty or not. Frames are worked out here, at the ratios the curve was looked at; the script only shows them.
 
 use driver::cam::CurvePoint;
 use maud::{Markup, PreEscaped, html};
@@ -64,7 +64,7 @@ pub(super) fn stage(subject: &Subject<'_>, number: usize) -> Markup {
 }
 
 fn reading_names(point: &CurvePoint) -> Vec<String> {
-    let mut names = vec!["ratio".to_owned(), "exit slope µrad".to_owned()];
+    let mut names = ["ratio", "collimation µrad", "paraxial µrad"].map(str::to_owned).to_vec();
     let wavefronts = point.wavefront.iter();
     names.extend(wavefronts.map(|at| format!("RMS waves at {} nm", at.wavelength_nm)));
     names.extend(point.groups.iter().map(|group| format!("{} at mm", group.name)));
@@ -72,7 +72,11 @@ fn reading_names(point: &CurvePoint) -> Vec<String> {
 }
 
 fn readings(point: &CurvePoint) -> Vec<String> {
-    let mut readings = vec![fixed(point.ratio, 4), fixed_or_dash(point.exit_slope_urad, 2)];
+    let mut readings = vec![
+        fixed(point.ratio, 4),
+        fixed(point.collimation_urad, 2),
+        fixed_or_dash(point.exit_slope_urad, 2),
+    ];
     let wavefronts = point.wavefront.iter();
     readings.extend(wavefronts.map(|at| significant_or_dash(at.rms_waves, 3)));
     readings.extend(point.groups.iter().map(|group| fixed(group.position_mm, 4)));
@@ -142,12 +146,12 @@ impl<'a> View<'a> {
             svg role="img" aria-label="Layout at the ratio chosen" width=(WIDTH) height=(height)
                 viewBox=(format!("0 0 {WIDTH} {height}")) {
                 @for x in ends {
-                    line x1=(x) x2=(x) y1="2" y2=(height - 2.0) stroke="#6e6e6e" stroke-dasharray="6 3 1 3";
+                    line x1=(x) x2=(x) y1="2" y2=(height - 2.0) stroke="#6e6e6e" stroke-dasharray="6 3 1 3" {}
                 }
-                line x1="0" x2=(WIDTH) y1=(middle) y2=(middle) stroke="#c4c4c4" stroke-dasharray="9 2 2 2";
+                line x1="0" x2=(WIDTH) y1=(middle) y2=(middle) stroke="#c4c4c4" stroke-dasharray="9 2 2 2" {}
                 @for (points, height) in frame.rays.iter().zip(heights(self.design)) {
                     polyline data-ray="" points=(points) fill="none" stroke="#D55E00"
-                        stroke-dasharray=[(height.abs() > 1.0).then_some("4 2")];
+                        stroke-dasharray=[(height.abs() > 1.0).then_some("4 2")] {}
                 }
                 @for (group, place) in self.design.groups.iter().zip(&first.groups) {
                     g data-group=(group.name) { (self.glass(group, place.position_mm)) }
@@ -170,7 +174,7 @@ impl<'a> View<'a> {
         }
         html! {
             @for piece in pieces {
-                polygon points=(piece) fill="#56B4E9" fill-opacity="0.28" stroke="#1b1b1b";
+                polygon points=(piece) fill="#56B4E9" fill-opacity="0.28" stroke="#1b1b1b" {}
             }
         }
     }

@@ -99,8 +99,10 @@ impl Scale {
         let first = (self.low / step).ceil() as i64;
         let last = (self.high / step + 1e-9).floor() as i64;
         let label = |value: f64| {
-            if self.high.abs().max(self.low.abs()) >= 1e6 || step < 1e-6 {
-                format!("{value:.1e}")
+            if value == 0.0 {
+                "0".to_owned()
+            } else if self.high.abs().max(self.low.abs()) >= 1e6 || step < 1e-6 {
+                format!("{value:.1e}").replace('-', "\u{2212}")
             } else {
                 let text = format!("{value:.decimals$}");
                 // U+2212, the sign that is as wide as a plus.
@@ -161,7 +163,7 @@ mod tests {
     fn ticks_are_round_and_inside() {
         let axis = Axis::linear("ratio", "");
         assert_eq!(labels(Scale::holding(&axis, [2.0, 6.0], 0.0, 1.0), 5), "2 3 4 5 6");
-        assert_eq!(labels(Scale::holding(&axis, [-0.031, 0.012], 0.0, 1.0), 4), "−0.02 0.00");
+        assert_eq!(labels(Scale::holding(&axis, [-0.031, 0.012], 0.0, 1.0), 4), "−0.02 0");
         let axis = Axis::logarithmic("merit", "");
         assert_eq!(labels(Scale::holding(&axis, [1e-6, 1e4], 0.0, 1.0), 4), "10⁻⁶ 0.001 1 1000");
         assert_eq!(labels(Scale::holding(&axis, [3.0, 12.0], 0.0, 1.0), 4), "5 10");

@@ -35,7 +35,8 @@ pub fn layout(design: &Design, curve: Option<&MovementCurve>, width: f64) -> Pan
         panel.word([width, 12.0], &told, Word::SMALL.at(Anchor::End));
     }
     place.housing(design, shown.len(), &mut panel);
-    if let Some(curve) = curve {
+    // The curve of a design that is far from collimated stands elsewhere than its states.
+    if let Some(curve) = curve.filter(|curve| is_near(design, curve)) {
         place.movement(design, &shown, curve, &mut panel);
     }
     let positions = design.all_positions_mm();
@@ -47,7 +48,13 @@ pub fn layout(design: &Design, curve: Option<&MovementCurve>, width: f64) -> Pan
     panel
 }
 
-/// Which states are drawn, by descending ratio of their place in the list: all, or some evenly.
+/// Whether the curve passes the designed states within a hundredth of the track.
+fn is_near(design: &Design, curve: &MovementCurve) -> bool {
+    let off = curve.states.iter().flat_map(|state| &state.curve_less_design_mm);
+    off.map(|by| by.abs()).fold(0.0, f64::max) <= 0.01 * design.housing.track_mm
+}
+
+/// Which states are drawn: all, or some evenly.
 fn shown(design: &Design) -> Vec<usize> {
     let count = design.states.len();
     if count <= MOST_STATES {
@@ -59,11 +66,6 @@ fn shown(design: &Design) -> Vec<usize> {
 fn half_height_mm(design: &Design) -> f64 {
     let elements = design.groups.iter().flat_map(|group| &group.elements);
     elements.map(|element| 0.5 * element.diameter_mm).fold(design.beam.edge_mm(), f64::max)
-}
-
-/// Draws a piece of glass, in a place given by its first vertex.
-pub(crate) fn glass_stroke() -> Stroke {
-    Stroke::solid(INK, 0.9)
 }
 
 /// Where things stand on the panel.
@@ -144,7 +146,7 @@ impl Place {
                 for outline in outlines(element) {
                     let line: Vec<[f64; 2]> =
                         outline.iter().map(|&[dz, y]| self.at([z + dz, y], row)).collect();
-                    panel.outline(&line, GLASS, 0.28, glass_stroke());
+                    panel.outline(&line, GLASS, 0.28, Stroke::solid(INK, 0.9));
                 }
                 z += element.thicknesses_mm.iter().sum::<f64>();
                 z += group.airs_mm.get(e).copied().unwrap_or(0.0);

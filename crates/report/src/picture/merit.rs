@@ -9,7 +9,7 @@ use super::panel::Panel;
 pub fn merit_curve(runs: &[(String, Vec<(u64, f64)>)], width: f64) -> Panel {
     let series = runs.iter().enumerate().map(|(style, (name, points))| Series {
         name: name.clone(),
-        points: points.iter().map(|&(k, merit)| (k as f64, Some(merit))).collect(),
+        points: thinned(points).map(|&(k, merit)| (k as f64, Some(merit))).collect(),
         style,
         dots: false,
     });
@@ -22,4 +22,14 @@ pub fn merit_curve(runs: &[(String, Vec<(u64, f64)>)], width: f64) -> Panel {
         marks: Vec::new(),
     };
     chart(&drawn, width, 240.0)
+}
+
+/// Most points that a curve is drawn through.
+const POINTS: usize = 800;
+
+/// Some of many points, the last among them.
+fn thinned(points: &[(u64, f64)]) -> impl Iterator<Item = &(u64, f64)> {
+    let each = points.len().div_ceil(POINTS).max(1);
+    let last = points.len().saturating_sub(1);
+    points.iter().enumerate().filter(move |(k, _)| k % each == 0 || *k == last).map(|(_, p)| p)
 }
