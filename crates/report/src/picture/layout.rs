@@ -186,10 +186,14 @@ impl Place {
         }
         panel.word([to + 6.0, y - 8.0], &format!("{length} mm"), Word::SMALL);
         let [one, _, edge, _] = heights(design);
-        let told = format!(
-            "rays at the 1/e² radius ({one:.0} w, solid) and at the edge traced ({edge} w, dashed); tube of {} mm",
-            design.housing.track_mm
+        let track = design.housing.track_mm;
+        let long = format!(
+            "rays at the 1/e² radius ({one:.0} w, solid) and at the edge traced ({edge} w, dashed); \
+             tube of {track} mm"
         );
+        let short = format!("rays at w and {edge} w; tube of {track} mm");
+        let room = self.x(track + self.lead_mm) - to - 70.0;
+        let told = if width_of(&long, WORDS - 1.0) <= room { long } else { short };
         let end = self.x(design.housing.track_mm + self.lead_mm);
         panel.word([end, y - 8.0], &told, Word::SMALL.at(Anchor::End));
     }
