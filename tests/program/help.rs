@@ -3,14 +3,16 @@
 use crate::program::{program, run, run_on};
 use crate::readme::scene;
 
-const COMMANDS: [&str; 12] = [
+const COMMANDS: [&str; 14] = [
     "start",
     "assess",
     "optimise",
     "overnight",
     "sweep",
     "retune",
+    "cam",
     "tolerance",
+    "report",
     "gather",
     "trace",
     "glass",

@@ -1,6 +1,7 @@
 //! The program run as a user runs it.
 
 mod assess;
+mod cam;
 mod designs;
 mod extremes;
 mod glass;
@@ -8,6 +9,7 @@ mod help;
 mod laser;
 mod mistakes;
 mod optimise;
+mod page;
 mod program;
 mod readme;
 mod retune;

@@ -3,6 +3,7 @@
 use std::io;
 use std::path::PathBuf;
 
+use driver::cam::CamError;
 use driver::optimise::OptimiseError;
 use driver::retune::RetuneError;
 use driver::run::{RunError, ShareError};
@@ -88,6 +89,9 @@ pub(crate) enum Failure {
         /// How many layouts there are.
         found: usize,
     },
+    /// The design has no movement curve.
+    #[error(transparent)]
+    Cam(#[from] CamError),
     /// The ray has no path.
     #[error(transparent)]
     Ray(#[from] RayError),
@@ -123,6 +127,14 @@ pub(crate) enum Failure {
     /// A file cannot be written.
     #[error(transparent)]
     Write(#[from] WriteError),
+    /// A folder cannot be made.
+    #[error("the folder {} cannot be made: {source}", .path.display())]
+    Folder {
+        /// Which.
+        path: std::path::PathBuf,
+        /// What the system says.
+        source: io::Error,
+    },
     /// Standard output takes nothing more.
     #[error("standard output cannot be written: {0}")]
     StandardOutput(io::Error),
@@ -182,6 +194,8 @@ impl Failure {
             }
             Self::Temperature(_) => ExitStatus::Failed,
             Self::Ray(RayError::Glass(_) | RayError::Direction { .. }) => ExitStatus::WrongInput,
+            Self::Cam(CamError::State { .. }) => ExitStatus::Failed,
+            Self::Cam(_) => ExitStatus::WrongInput,
             Self::Start(_)
             | Self::Impossible(_)
             | Self::NoSuchRank { .. }
@@ -193,9 +207,10 @@ impl Failure {
             | Self::NothingFound(_)
             | Self::Table(_)
             | Self::Signals(_) => ExitStatus::Failed,
-            Self::Write(_) | Self::Unsaved { .. } | Self::StandardOutput(_) => {
-                ExitStatus::CannotWrite
-            }
+            Self::Write(_)
+            | Self::Folder { .. }
+            | Self::Unsaved { .. }
+            | Self::StandardOutput(_) => ExitStatus::CannotWrite,
         }
     }
 
@@ -210,6 +225,7 @@ impl Failure {
                     None => format!("its states are {}", all.join(", ")),
                 })
             }
+            Self::Cam(error) => advice_on_cam(error),
             Self::Optimise(error) | Self::DesignSearch(DesignSearchError::Design(error)) => {
                 advice_on(error)
             }
@@ -343,6 +359,17 @@ fn advice_on(error: &OptimiseError) -> Option<String> {
         }
         OptimiseError::Glass(error) => return error.advice(),
         OptimiseError::Temperature(error) => return error.advice(),
+        _ => return None,
+    };
+    Some(advice.to_owned())
+}
+
+fn advice_on_cam(error: &CamError) -> Option<String> {
+    let advice = match error {
+        CamError::NothingMoves => "take a group out of the housing's \"fixed\"",
+        CamError::OneRatio => "give at least two states with different ratios",
+        CamError::State { .. } => "optimise the design first; assess tells how far off it is",
+        CamError::Glass(error) => return error.advice(),
         _ => return None,
     };
     Some(advice.to_owned())

@@ -13,6 +13,7 @@ mod destination;
 pub mod exit_status;
 mod failure;
 mod input;
+mod output_file;
 mod part;
 mod progress;
 mod run_progress;
@@ -42,6 +43,8 @@ fn run(arguments: Arguments) -> ExitStatus {
         Command::Tolerance(arguments) => commands::tolerance::run(arguments, &console),
         Command::Retune(arguments) => commands::retune::run(arguments, &console),
         Command::Start(arguments) => commands::start::run(arguments, &console),
+        Command::Cam(arguments) => commands::cam::run(arguments, &console),
+        Command::Report(arguments) => commands::report::run(arguments, &console),
         Command::Overnight(arguments) => commands::overnight::run(arguments, &console),
         Command::Gather(arguments) => commands::gather::run(&arguments, &console),
         Command::Sweep(arguments) => commands::sweep::run(arguments, &console),

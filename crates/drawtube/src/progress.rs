@@ -56,6 +56,8 @@ pub(crate) struct Teller<'a> {
     began: Instant,
     last: Instant,
     iterations: u64,
+    /// Iteration and merit, for a picture; the latest run last.
+    history: Vec<Vec<(u64, f64)>>,
 }
 
 impl<'a> Teller<'a> {
@@ -66,7 +68,26 @@ impl<'a> Teller<'a> {
             Manner::Nothing => (None, None),
         };
         let now = Instant::now();
-        Self { console, stop, bar, every, began: now, last: now, iterations: 0 }
+        Self {
+            console,
+            stop,
+            bar,
+            every,
+            began: now,
+            last: now,
+            iterations: 0,
+            history: Vec::new(),
+        }
+    }
+
+    /// A new run of a method begins.
+    pub(crate) fn begin(&mut self) {
+        self.history.push(Vec::new());
+    }
+
+    /// Iteration and merit of every run.
+    pub(crate) fn into_history(self) -> Vec<Vec<(u64, f64)>> {
+        self.history
     }
 
     /// Takes the line off the terminal.
@@ -102,6 +123,9 @@ fn bar() -> ProgressBar {
 impl Observer for Teller<'_> {
     fn observe(&mut self, progress: &Progress<'_>) -> ControlFlow<()> {
         self.iterations += 1;
+        if let Some(run) = self.history.last_mut() {
+            run.push((self.iterations, progress.sum_of_squares));
+        }
         if let Some(every) = self.every {
             let now = Instant::now();
             if now - self.last >= every {

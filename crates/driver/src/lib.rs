@@ -6,6 +6,7 @@
 //!   solver; argmin's Nelder-Mead on the same problem;
 //! - [`design_file`]: a design file with its three owners' parts, its JSON Schema, and the same
 //!   file with other numbers; [`freedom`]: its `free` and `held`;
+//! - [`cam`]: movement curves, where every group stands at any ratio;
 //! - [`brief`]: the requirement a design is begun from;
 //! - [`start`]: first-order layouts of a brief;
 //! - [`fn@optimise::optimise`]: one local optimisation from file to file;
@@ -29,6 +30,7 @@
 //! blocks, one a zoom state. Start reading at [`solve`].
 
 pub mod brief;
+pub mod cam;
 #[doc(hidden)]
 pub mod careless;
 pub mod change;

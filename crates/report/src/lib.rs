@@ -2,12 +2,16 @@
 //!
 //! The numbers come from the crates below and are only laid out here; the one document of its own
 //! is the path of a single ray ([`ray`]), for people and for machines. Nothing here knows of
-//! colours, terminals or files: every function gives a text.
+//! the terminal's colours, or files: every function gives a text. [`picture`] draws, [`page`] puts
+//! everything about a design on one page, [`shop`] makes the sheets a shop works from.
 //!
-//! Start reading at [`text::assessment`], then [`text::optimisation`].
+//! Start reading at [`text::assessment`], then [`picture`].
 
+pub mod page;
+pub mod picture;
 pub mod ray;
 mod rows;
+pub mod shop;
 pub mod start;
 pub mod text;
 

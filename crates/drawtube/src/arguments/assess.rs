@@ -20,6 +20,12 @@ pub(crate) struct AssessArguments {
     /// List every limited quantity, not only the tightest of each kind and those crossed
     #[arg(long, conflicts_with = "json")]
     pub(crate) all: bool,
+    /// Write a picture as SVG: layout and wavefronts
+    #[arg(long, value_name = "FILE")]
+    pub(crate) picture: Option<PathBuf>,
+    /// Replace FILE if it is there already
+    #[arg(long, requires = "picture")]
+    pub(crate) force: bool,
     /// Print all about the real beam instead: as it leaves, far off, at every surface, re-adjusted
     #[arg(long, conflicts_with_all = ["json", "all"])]
     pub(crate) beam: bool,

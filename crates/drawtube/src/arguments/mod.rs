@@ -2,12 +2,14 @@
 //! turns its part into a request of its own.
 
 mod assess;
+mod cam;
 mod completions;
 mod gather;
 mod glass;
 mod optimise;
 mod overnight;
 mod progress;
+mod report;
 mod retune;
 mod schema;
 mod start;
@@ -21,12 +23,14 @@ use clap::error::ErrorKind;
 use clap::{CommandFactory, Parser, Subcommand};
 
 pub(crate) use assess::AssessArguments;
+pub(crate) use cam::CamArguments;
 pub(crate) use completions::CompletionsArguments;
 pub(crate) use gather::GatherArguments;
 pub(crate) use glass::GlassArguments;
 pub(crate) use optimise::{MethodArgument, OptimiseArguments};
 pub(crate) use overnight::{OvernightArguments, StrategyArgument};
 pub(crate) use progress::ProgressArgument;
+pub(crate) use report::ReportArguments;
 pub(crate) use retune::RetuneArguments;
 pub(crate) use schema::{DocumentKind, SchemaArguments};
 pub(crate) use start::StartArguments;
@@ -99,6 +103,10 @@ pub(crate) enum Command {
     Sweep(SweepArguments),
     /// After a change, move only what can still move, in stages
     Retune(RetuneArguments),
+    /// Work out the movement curves: where every group stands at any ratio
+    Cam(CamArguments),
+    /// Write a page about a design, or about several side by side; sheets for the shop
+    Report(ReportArguments),
     /// Search for designs for hours, in a run folder that survives anything
     Overnight(OvernightArguments),
     /// Put the parts of an overnight run or a sweep together

@@ -24,8 +24,11 @@ pub(crate) struct OptimiseArguments {
     /// error
     #[arg(short, long, value_name = "OUT")]
     pub(crate) output: Option<PathBuf>,
-    /// Replace OUT if it is there already
-    #[arg(long, requires = "output")]
+    /// Write a picture as SVG: how the merit fell, and the optimised design
+    #[arg(long, value_name = "FILE")]
+    pub(crate) picture: Option<PathBuf>,
+    /// Replace OUT and FILE if they are there already
+    #[arg(long)]
     pub(crate) force: bool,
     /// Print the summary as JSON
     #[arg(long)]

@@ -1,8 +1,10 @@
 //! `assess`: the numbers of a design as it stands.
 
+use driver::cam::{CamSettings, movement_curve};
 use driver::design_file::DesignFile;
 use driver::temperature::{TemperatureReport, at_temperatures};
 use merit_function::assessment::{Assessment, assess, real_beam};
+use report::picture::assessment_picture;
 use report::text;
 use report::text::assessment::Scope;
 use serde::Serialize;
@@ -12,6 +14,7 @@ use crate::console::Console;
 use crate::exit_status::ExitStatus;
 use crate::failure::Failure;
 use crate::input;
+use crate::output_file::OutputFile;
 
 /// What is printed.
 enum Form {
@@ -25,6 +28,7 @@ enum Form {
 struct Request {
     file: DesignFile,
     form: Form,
+    picture: Option<OutputFile>,
     /// Distances to tell the real beam at, m.
     ranges_m: Vec<f64>,
     require: bool,
@@ -42,7 +46,10 @@ impl Request {
         } else {
             Form::Text(if arguments.all { Scope::All } else { Scope::Tightest })
         };
+        let force = arguments.force;
+        let picture = arguments.picture.map(|path| OutputFile::checked(path, force));
         Ok(Self {
+            picture: picture.transpose()?,
             file: input::design(&arguments.design)?,
             form,
             ranges_m: arguments.ranges_m,
@@ -62,7 +69,8 @@ struct Printed<'a> {
 }
 
 pub(crate) fn run(arguments: AssessArguments, console: &Console) -> Result<ExitStatus, Failure> {
-    let Request { file, form, ranges_m, require, temperatures_c } = Request::of(arguments)?;
+    let Request { file, form, picture, ranges_m, require, temperatures_c } =
+        Request::of(arguments)?;
     let mut assessment = assess(&file.design, &file.wishes);
     if matches!(form, Form::Beam) || !ranges_m.is_empty() {
         assessment.real_beam = Some(real_beam(&file.design, &file.wishes, &ranges_m));
@@ -71,6 +79,10 @@ pub(crate) fn run(arguments: AssessArguments, console: &Console) -> Result<ExitS
         [] => None,
         temperatures_c => Some(at_temperatures(&file, temperatures_c)?),
     };
+    if let Some(output) = picture {
+        let curve = movement_curve(&file.design, &file.wishes, &CamSettings::default());
+        output.write(&assessment_picture(&file, curve.as_ref().ok()))?;
+    }
     match form {
         Form::Json => {
             console.print_json(&Printed { assessment: &assessment, warm: warm.as_ref() })?

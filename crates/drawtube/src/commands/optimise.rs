@@ -3,8 +3,11 @@
 mod account;
 mod request;
 
+use driver::cam::{CamSettings, movement_curve};
 use driver::optimise::{Optimisation, optimise};
 use driver::solve::Stopped;
+
+use report::picture::optimisation_picture;
 
 use crate::arguments::OptimiseArguments;
 use crate::console::Console;
@@ -21,11 +24,12 @@ pub(crate) fn run(arguments: OptimiseArguments, console: &Console) -> Result<Exi
     let request = Request::of(arguments, console)?;
     request.destination.check()?;
     let signals = StopSignal::listen().map_err(Failure::Signals)?;
-    let stages = solve(&request, &signals, console)?;
+    let (stages, history) = solve(&request, &signals, console)?;
     let account = Account::new(&request.file, stages)?;
     let saved = request.destination.save("design", account.result().text().as_bytes(), console);
     tell(&request, &account, saved.is_ok(), console)?;
     saved?;
+    draw(&request, &account, history)?;
     Ok(signals.status().unwrap_or(if request.require && !account.meets() {
         ExitStatus::Missed
     } else {
@@ -38,11 +42,12 @@ fn solve(
     request: &Request,
     signals: &StopSignal,
     console: &Console,
-) -> Result<Vec<Optimisation>, Failure> {
+) -> Result<(Vec<Optimisation>, Vec<Vec<(u64, f64)>>), Failure> {
     let mut stages: Vec<Optimisation> = Vec::new();
     let mut teller = Teller::new(request.progress, console, signals.flag());
     for settings in &request.stages {
         let from = stages.last().map_or(&request.file, |stage| &stage.file);
+        teller.begin();
         let result = optimise(from, settings, &mut teller);
         if result.is_err() {
             teller.finish();
@@ -55,7 +60,21 @@ fn solve(
         }
     }
     teller.finish();
-    Ok(stages)
+    Ok((stages, teller.into_history()))
+}
+
+/// Writes the picture that was asked for.
+fn draw(
+    request: &Request,
+    account: &Account<'_>,
+    history: Vec<Vec<(u64, f64)>>,
+) -> Result<(), Failure> {
+    let Some(output) = &request.picture else { return Ok(()) };
+    let runs: Vec<(String, Vec<(u64, f64)>)> =
+        request.stages.iter().map(|stage| stage.method().name().to_owned()).zip(history).collect();
+    let file = account.result();
+    let curve = movement_curve(&file.design, &file.wishes, &CamSettings::default());
+    output.write(&optimisation_picture(file, curve.as_ref().ok(), &runs))
 }
 
 /// Prints the summary: on standard output, unless a design is or has to be there.

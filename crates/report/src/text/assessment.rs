@@ -33,10 +33,17 @@ pub fn assessment(file: &DesignFile, assessment: &Assessment, scope: Scope) -> S
 
 /// Title, beam and what the design is made of.
 pub(crate) fn heading(file: &DesignFile) -> String {
+    let told = paragraph(&beam_sentence(file), WIDTH, "");
+    let title = &file.design.title;
+    if title.is_empty() { told } else { format!("{}\n{told}", paragraph(title, WIDTH, "")) }
+}
+
+/// The beam and what the design is made of.
+pub(crate) fn beam_sentence(file: &DesignFile) -> String {
     let beam = &file.design.beam;
     let wavelengths: Vec<String> = beam.wavelengths_nm.iter().map(|&nm| as_written(nm)).collect();
     let elements = file.design.groups.iter().map(|group| group.elements.len()).sum();
-    let told = format!(
+    format!(
         "Beam {} mm (1/e²) at {} nm, traced to {} of its radius; {} in {}, {}.",
         as_written(beam.diameter_mm),
         wavelengths.join(", "),
@@ -44,10 +51,7 @@ pub(crate) fn heading(file: &DesignFile) -> String {
         counted(elements, "element"),
         counted(file.design.groups.len(), "group"),
         counted(file.design.states.len(), "zoom state"),
-    );
-    let told = paragraph(&told, WIDTH, "");
-    let title = &file.design.title;
-    if title.is_empty() { told } else { format!("{}\n{told}", paragraph(title, WIDTH, "")) }
+    )
 }
 
 /// What the sign `!` means, where there is one.

@@ -31,7 +31,7 @@ pub(crate) fn limits(file: &DesignFile, assessment: &Assessment, scope: Scope) -
     if table.is_empty() { String::new() } else { table.text() }
 }
 
-fn chosen(limits: &[LimitAssessment], scope: Scope) -> Vec<&LimitAssessment> {
+pub(crate) fn chosen(limits: &[LimitAssessment], scope: Scope) -> Vec<&LimitAssessment> {
     if scope == Scope::All {
         return limits.iter().collect();
     }
@@ -54,7 +54,7 @@ fn chosen(limits: &[LimitAssessment], scope: Scope) -> Vec<&LimitAssessment> {
 }
 
 /// Distance to the nearest end of what is allowed, negative outside.
-fn margin(limit: &LimitAssessment) -> f64 {
+pub(crate) fn margin(limit: &LimitAssessment) -> f64 {
     let Some(value) = limit.value else {
         // The radius of a flat and a ghost without a focus keep every minimum; what cannot be
         // measured keeps none.
@@ -65,7 +65,7 @@ fn margin(limit: &LimitAssessment) -> f64 {
     below.min(above)
 }
 
-fn allowed(limit: &LimitAssessment) -> String {
+pub(crate) fn allowed(limit: &LimitAssessment) -> String {
     match (limit.min, limit.max) {
         (Some(min), Some(max)) => format!("{} to {}", as_written(min), as_written(max)),
         (Some(min), None) => format!("≥ {}", as_written(min)),
@@ -83,7 +83,7 @@ fn value(limit: &LimitAssessment) -> String {
     }
 }
 
-fn place(file: &DesignFile, limit: &LimitAssessment) -> String {
+pub(crate) fn place(file: &DesignFile, limit: &LimitAssessment) -> String {
     let at = limit.at.with_names(file.document().value());
     match &limit.state {
         Some(state) => format!("{at} in {state}"),

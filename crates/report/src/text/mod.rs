@@ -3,12 +3,13 @@
 pub mod assessment;
 pub mod beam;
 pub mod bounds;
+pub mod cam;
 pub mod differences;
 mod elements;
 pub mod glass;
 pub mod hazards;
 mod layout;
-mod limits;
+pub(crate) mod limits;
 pub(crate) mod number;
 pub mod optimisation;
 mod optimised;
@@ -22,7 +23,10 @@ pub mod sweep;
 mod table;
 pub mod temperature;
 pub mod tolerance;
-mod verdict;
+pub(crate) mod verdict;
+
+pub(crate) use limits::Scope;
+pub(crate) use number::{as_written, fixed, fixed_or_dash, significant, significant_or_dash};
 
 use driver::design_file::DesignFile;
 use surface_model::document::Address;

@@ -8,6 +8,7 @@ use crate::console::Console;
 use crate::destination::Destination;
 use crate::failure::Failure;
 use crate::input;
+use crate::output_file::OutputFile;
 use crate::progress::{Manner, interval};
 
 /// What is printed at the end.
@@ -24,6 +25,7 @@ pub(super) struct Request {
     /// One or more methods with their settings, in order.
     pub(super) stages: Vec<Settings>,
     pub(super) destination: Destination,
+    pub(super) picture: Option<OutputFile>,
     pub(super) summary: Summary,
     pub(super) progress: Manner,
     pub(super) require: bool,
@@ -33,10 +35,12 @@ impl Request {
     pub(super) fn of(arguments: OptimiseArguments, console: &Console) -> Result<Self, Failure> {
         let every = interval(arguments.progress_every)?;
         let stages = stages(&arguments)?;
-        let quiet = arguments.quiet;
+        let (quiet, force) = (arguments.quiet, arguments.force);
+        let picture = arguments.picture.map(|path| OutputFile::checked(path, force));
         Ok(Self {
             file: input::design(&arguments.design)?,
             stages,
+            picture: picture.transpose()?,
             destination: Destination::of(arguments.output, arguments.force),
             summary: match (quiet, arguments.json) {
                 (true, _) => Summary::None,

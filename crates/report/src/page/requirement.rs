@@ -1,0 +1,67 @@
+//! The requirement, and whether it is met: first of all.
+
+use driver::design_file::DesignFile;
+use maud::{Markup, html};
+use merit_function::assessment::Assessment;
+
+use super::parts::{number, value_cell};
+use crate::text::{as_written, verdict};
+
+/// The verdict and a row a goal.
+pub(super) fn requirement(file: &DesignFile, assessment: &Assessment) -> Markup {
+    let class = if assessment.meets { "verdict" } else { "verdict missed" };
+    let crossed = assessment.limits.iter().filter(|limit| !limit.met).count();
+    html! {
+        p class=(class) data-meets=(assessment.meets) { (verdict::closing_sentence(file, assessment)) }
+        table {
+            tr { th.word { "wanted" } th { "within" } th { "worst reached" } th.word { "where" } }
+            @for row in rows(file, assessment) {
+                tr {
+                    td.word { (row.what) }
+                    td { (row.within) }
+                    (value_cell(row.worst, row.worst.map_or_else(|| "unknown".into(), |v| number(v, 3)), row.missed))
+                    td.word { (row.place) }
+                }
+            }
+            tr {
+                td.word { "limits kept" }
+                td { "all of " (assessment.limits.len()) }
+                (value_cell(Some((assessment.limits.len() - crossed) as f64),
+                    format!("{}", assessment.limits.len() - crossed), crossed > 0))
+                td.word { }
+            }
+        }
+        @for caution in &assessment.cautions { p { strong { "Caution: " } (caution) } }
+        @for warning in &assessment.warnings { p { "Warning: " (warning) } }
+    }
+}
+
+struct Row {
+    what: &'static str,
+    within: String,
+    worst: Option<f64>,
+    missed: bool,
+    place: String,
+}
+
+/// One row a kind of goal: its worst state.
+fn rows(file: &DesignFile, assessment: &Assessment) -> Vec<Row> {
+    let marks = verdict::marks(file, assessment);
+    let kinds = [
+        ("RMS wavefront", "RMS wavefront error, waves"),
+        ("ratio error", "error of the ratio, %"),
+        ("exit slope", "exit slope at the 1/e² radius, µrad"),
+    ];
+    let row = |(begins, what): (&str, &'static str)| {
+        let of_kind = marks.iter().filter(|mark| mark.what.starts_with(begins));
+        let worst = of_kind.max_by(|a, b| a.size().total_cmp(&b.size()))?;
+        Some(Row {
+            what,
+            within: as_written(worst.within),
+            worst: worst.value,
+            missed: worst.size() > 1.0,
+            place: worst.what.split_once(" of ").map_or_else(String::new, |(_, at)| at.to_owned()),
+        })
+    };
+    kinds.into_iter().filter_map(row).collect()
+}

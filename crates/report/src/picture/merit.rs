@@ -1,0 +1,35 @@
+//! Merit against iteration.
+
+use super::axis::Axis;
+use super::chart::{Chart, Series, chart};
+use super::panel::Panel;
+
+/// Draws how the merit fell, a curve a method; `runs` are named lists of iteration and merit.
+#[must_use]
+pub fn merit_curve(runs: &[(String, Vec<(u64, f64)>)], width: f64) -> Panel {
+    let series = runs.iter().enumerate().map(|(style, (name, points))| Series {
+        name: name.clone(),
+        points: thinned(points).map(|&(k, merit)| (k as f64, Some(merit))).collect(),
+        style,
+        dots: false,
+    });
+    let drawn = Chart {
+        title: "Merit against iteration".into(),
+        x: Axis::linear("iteration", ""),
+        y: Axis::logarithmic("merit", ""),
+        series: series.collect(),
+        levels: Vec::new(),
+        marks: Vec::new(),
+    };
+    chart(&drawn, width, 240.0)
+}
+
+/// Most points that a curve is drawn through.
+const POINTS: usize = 800;
+
+/// Some of many points, the last among them.
+fn thinned(points: &[(u64, f64)]) -> impl Iterator<Item = &(u64, f64)> {
+    let each = points.len().div_ceil(POINTS).max(1);
+    let last = points.len().saturating_sub(1);
+    points.iter().enumerate().filter(move |(k, _)| k % each == 0 || *k == last).map(|(_, p)| p)
+}

@@ -1,0 +1,166 @@
+//! Charts over the ratio: positions, collimation, wavefront, sensitivities, groove angles.
+
+use driver::cam::{CurvePoint, Hold, MovementCurve, Part};
+use merit_function::wishes::Wishes;
+
+use super::axis::Axis;
+use super::chart::{Chart, Level, Series, chart};
+use super::panel::Panel;
+
+/// A curve over the ratio, interrupted where the movement curve breaks off.
+fn over_ratio(
+    curve: &MovementCurve,
+    value: impl Fn(&CurvePoint) -> Option<f64>,
+) -> Vec<(f64, Option<f64>)> {
+    let [low, high] = curve.ends();
+    // Ratios are looked at in steps of at most a 200th of the way; a wider step is a gap.
+    let gap = 1.5 * (high - low) / 200.0;
+    let mut points: Vec<(f64, Option<f64>)> = Vec::new();
+    for point in &curve.fine {
+        if let Some(&(last, _)) = points.last()
+            && point.ratio - last > gap
+        {
+            points.push((0.5 * (last + point.ratio), None));
+        }
+        points.push((point.ratio, value(point)));
+    }
+    points
+}
+
+fn over(
+    curve: &MovementCurve,
+    title: &str,
+    y: Axis,
+    series: Vec<Series>,
+    levels: Vec<Level>,
+) -> Chart {
+    let marks = curve.states.iter().map(|state| (state.ratio, state.name.clone()));
+    Chart {
+        title: title.into(),
+        x: Axis::linear("ratio", ""),
+        y,
+        series,
+        levels,
+        marks: if curve.states.len() <= 12 { marks.collect() } else { Vec::new() },
+    }
+}
+
+/// A curve for every group that moves, in the colour it has in the layout.
+fn of_groups(
+    curve: &MovementCurve,
+    value: impl Fn(&CurvePoint, usize) -> Option<f64>,
+) -> Vec<Series> {
+    let series = curve.moving().map(|group| Series {
+        name: curve.groups[group].name.clone(),
+        points: over_ratio(curve, |point| value(point, group)),
+        style: group,
+        dots: false,
+    });
+    series.collect()
+}
+
+/// Positions of the moving groups.
+#[must_use]
+pub fn positions(curve: &MovementCurve, width: f64) -> Panel {
+    let series = of_groups(curve, |point, group| Some(point.groups[group].position_mm));
+    let y = Axis::linear("first vertex from the front datum", "mm");
+    chart(&over(curve, "Movement curves", y, series, Vec::new()), width, 240.0)
+}
+
+/// Slopes of the movement curves.
+#[must_use]
+pub fn slopes(curve: &MovementCurve, width: f64) -> Panel {
+    let series = of_groups(curve, |point, group| Some(point.groups[group].slope_mm_per_ratio));
+    let y = Axis::linear("d position/d ratio", "mm");
+    chart(&over(curve, "Slopes of the movement curves", y, series, Vec::new()), width, 200.0)
+}
+
+/// Pressure angles, where a barrel is given.
+#[must_use]
+pub fn pressure_angles(curve: &MovementCurve, width: f64) -> Option<Panel> {
+    let barrel = curve.barrel?;
+    let series = of_groups(curve, |point, group| Some(point.groups[group].groove?.pressure_deg));
+    let y = Axis::linear(
+        &format!("barrel of radius {} mm turning {}°", barrel.radius_mm, barrel.turn_deg),
+        "degrees",
+    );
+    Some(chart(&over(curve, "Pressure angles", y, series, Vec::new()), width, 200.0))
+}
+
+/// Collimation: what the curve holds on exact rays, and the paraxial slope that goes with it.
+#[must_use]
+pub fn collimation(curve: &MovementCurve, wishes: &Wishes, width: f64) -> Panel {
+    let exact = Series {
+        name: "exact rays".into(),
+        points: over_ratio(curve, |point| Some(point.collimation_urad)),
+        style: 0,
+        dots: false,
+    };
+    let paraxial = Series {
+        name: "paraxial".into(),
+        points: over_ratio(curve, |point| point.exit_slope_urad),
+        style: 1,
+        dots: false,
+    };
+    let goal = goal(wishes, |goals| goals.exit_slope_urad);
+    let levels = goal.into_iter().flat_map(|within| {
+        [("goal", within), ("goal", -within)]
+            .map(|(name, value)| Level { name: name.into(), value })
+    });
+    let title = match curve.held {
+        Hold::RatioAndCollimation => "Collimation along the curve: exit slope at the 1/e² radius",
+        Hold::Ratio => "Collimation with one group moving: exit slope at the 1/e² radius",
+    };
+    let y = Axis::linear("", "µrad");
+    chart(&over(curve, title, y, vec![exact, paraxial], levels.collect()), width, 200.0)
+}
+
+/// The one value of a goal, if all states share it.
+fn goal(
+    wishes: &Wishes,
+    pick: impl Fn(&merit_function::goals::Goals) -> Option<f64>,
+) -> Option<f64> {
+    let first = pick(wishes.states.first()?)?;
+    wishes.states.iter().all(|goals| pick(goals) == Some(first)).then_some(first)
+}
+
+/// RMS wavefront error between and at the states.
+#[must_use]
+pub fn wavefront(curve: &MovementCurve, wishes: &Wishes, width: f64) -> Panel {
+    let wavelengths = curve.fine.first().map_or(&[][..], |point| &point.wavefront);
+    let series = wavelengths.iter().enumerate().map(|(w, at)| Series {
+        name: format!("{} nm", at.wavelength_nm),
+        points: over_ratio(curve, |point| point.wavefront.get(w)?.rms_waves),
+        style: w,
+        dots: false,
+    });
+    let levels = goal(wishes, |goals| goals.wavefront_rms_waves)
+        .map(|value| Level { name: "goal".into(), value });
+    let y = Axis::linear("RMS", "waves");
+    let chart_of = over(
+        curve,
+        "Wavefront error along the curve",
+        y,
+        series.collect(),
+        levels.into_iter().collect(),
+    );
+    chart(&chart_of, width, 200.0)
+}
+
+/// What the collimation changes by when a group is out of place.
+#[must_use]
+pub fn sensitivities(curve: &MovementCurve, width: f64) -> Panel {
+    let groups = 0..curve.groups.len();
+    let series = groups.map(|group| Series {
+        name: match curve.groups[group].part {
+            Part::Still => format!("{} (still)", curve.groups[group].name),
+            _ => curve.groups[group].name.clone(),
+        },
+        points: over_ratio(curve, |point| Some(point.groups[group].collimation_urad_per_um)),
+        style: group,
+        dots: false,
+    });
+    let y = Axis::linear("change of the exit slope", "µrad per µm");
+    let title = "Sensitivity of collimation to each group's position";
+    chart(&over(curve, title, y, series.collect(), Vec::new()), width, 200.0)
+}

@@ -1,0 +1,240 @@
+//! Pictures of a sweep: a curve over one axis, a map over two, and the front of a trade.
+
+use super::axis::{Axis, Scale};
+use super::chart::{Chart, Series, chart};
+use super::ink::{FAINT, INK, MISS, Stroke, map_colour};
+use super::panel::{Anchor, Panel, Word, width_of};
+
+/// A result over one swept axis.
+#[derive(Debug, Clone, PartialEq)]
+pub struct SweepCurve {
+    /// What it shows.
+    pub title: String,
+    /// What was swept.
+    pub x: Axis,
+    /// What came of it.
+    pub y: Axis,
+    /// One or more results, each with its name; a missing value is a point that failed.
+    pub results: Vec<(String, Vec<(f64, Option<f64>)>)>,
+}
+
+/// Draws a result over one swept axis.
+#[must_use]
+pub fn sweep_curve(curve: &SweepCurve, width: f64) -> Panel {
+    let series = curve.results.iter().enumerate().map(|(style, (name, points))| Series {
+        name: name.clone(),
+        points: points.clone(),
+        style,
+        dots: true,
+    });
+    let drawn = Chart {
+        title: curve.title.clone(),
+        x: curve.x.clone(),
+        y: curve.y.clone(),
+        series: series.collect(),
+        levels: Vec::new(),
+        marks: Vec::new(),
+    };
+    chart(&drawn, width, 280.0)
+}
+
+/// A result over two swept axes.
+#[derive(Debug, Clone, PartialEq)]
+pub struct SweepMap {
+    /// What it shows.
+    pub title: String,
+    /// Along the bottom.
+    pub x: Axis,
+    /// The values along the bottom, as they are to be read.
+    pub x_values: Vec<String>,
+    /// Up the side.
+    pub y: Axis,
+    /// The values up the side, from the bottom, as they are to be read.
+    pub y_values: Vec<String>,
+    /// What came of it.
+    pub value: Axis,
+    /// Row by row from the bottom; a missing value is a point that failed.
+    pub cells: Vec<Vec<Option<f64>>>,
+}
+
+/// Draws a map: dark is small, light is large, numbers written where there is room.
+#[must_use]
+pub fn sweep_map(map: &SweepMap, width: f64) -> Panel {
+    let names = map.y_values.iter().map(|name| width_of(name, 11.0));
+    let left = names.fold(30.0, f64::max) + 12.0;
+    let (top, key) = (44.0, 96.0);
+    let columns = map.x_values.len().max(1) as f64;
+    let rows = map.y_values.len().max(1) as f64;
+    let cell = [(width - left - key) / columns, ((width - left - key) / columns).clamp(14.0, 34.0)];
+    let bottom = top + cell[1] * rows;
+    let mut panel = Panel::new(width, bottom + 40.0);
+    panel.word([0.0, 12.0], &map.title, Word::TITLE);
+    panel.word([0.0, 28.0], &map.y.caption(), Word::PLAIN.in_colour(FAINT));
+    let values = || map.cells.iter().flatten().flatten().copied();
+    let shade = Scale::holding(&map.value, values(), 0.0, 1.0);
+    for (row, cells) in map.cells.iter().enumerate() {
+        let y = bottom - cell[1] * (row as f64 + 1.0);
+        for (column, value) in cells.iter().enumerate() {
+            let x = left + cell[0] * column as f64;
+            draw_cell(&mut panel, [x, y], cell, value.map(|value| (value, shade.place(value))));
+        }
+        if let Some(name) = map.y_values.get(row) {
+            let at = [left - 6.0, y + 0.5 * cell[1] + 4.0];
+            panel.word(at, name, Word::PLAIN.at(Anchor::End));
+        }
+    }
+    let widest = map.x_values.iter().map(|name| width_of(name, 10.0)).fold(1.0, f64::max);
+    let each = (widest / cell[0]).ceil().max(1.0) as usize;
+    for (column, name) in map.x_values.iter().enumerate().step_by(each) {
+        let x = left + cell[0] * (column as f64 + 0.5);
+        panel.word([x, bottom + 14.0], name, Word::SMALL.at(Anchor::Middle));
+    }
+    let caption = map.x.caption();
+    let end = width - key;
+    panel.word([end, bottom + 30.0], &caption, Word::PLAIN.at(Anchor::End).in_colour(FAINT));
+    draw_key(&mut panel, &map.value, values(), [end + 16.0, top], bottom);
+    panel
+}
+
+/// One cell: its shade and, where there is room, its number; a cross where the point failed.
+fn draw_cell(panel: &mut Panel, at: [f64; 2], size: [f64; 2], value: Option<(f64, f64)>) {
+    let Some((value, share)) = value else {
+        let cross = Stroke::solid(MISS, 1.0);
+        let (inset, end) = (4.0, [at[0] + size[0] - 4.0, at[1] + size[1] - 4.0]);
+        panel.line([at[0] + inset, at[1] + inset], end, cross);
+        panel.line([at[0] + inset, end[1]], [end[0], at[1] + inset], cross);
+        return;
+    };
+    let (colour, ink) = map_colour(share);
+    // A hair wider than the cell, so that no seam shows.
+    panel.block(at, [size[0] + 0.3, size[1] + 0.3], &colour, 1.0);
+    let told = crate::text::significant(value, 3);
+    if width_of(&told, 10.0) + 4.0 <= size[0] {
+        let middle = [at[0] + 0.5 * size[0], at[1] + 0.5 * size[1] + 3.5];
+        panel.word(middle, &told, Word::SMALL.at(Anchor::Middle).in_colour(ink));
+    }
+}
+
+fn draw_key(
+    panel: &mut Panel,
+    axis: &Axis,
+    values: impl Iterator<Item = f64>,
+    at: [f64; 2],
+    bottom: f64,
+) {
+    const STEPS: usize = 32;
+    let scale = Scale::holding(axis, values, bottom, at[1]);
+    let step = (bottom - at[1]) / STEPS as f64;
+    for k in 0..STEPS {
+        let (colour, _) = map_colour((k as f64 + 0.5) / STEPS as f64);
+        let y = bottom - step * (k as f64 + 1.0);
+        panel.block([at[0], y], [12.0, step + 0.3], &colour, 1.0);
+    }
+    for (value, label) in scale.ticks(4) {
+        let y = scale.place(value);
+        panel.line([at[0] + 12.0, y], [at[0] + 16.0, y], Stroke::solid(FAINT, 1.0));
+        panel.word([at[0] + 19.0, y + 3.5], &label, Word::SMALL);
+    }
+    panel.word([at[0], at[1] - 8.0], &axis.caption(), Word::SMALL);
+}
+
+/// Two results of many designs, and which of them no other beats in both.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Trade {
+    /// What it shows.
+    pub title: String,
+    /// One result; smaller is better.
+    pub x: Axis,
+    /// The other; smaller is better.
+    pub y: Axis,
+    /// The designs.
+    pub designs: Vec<TradedDesign>,
+}
+
+/// One design of a trade.
+#[derive(Debug, Clone, PartialEq)]
+pub struct TradedDesign {
+    /// Its name; written beside it if it is on the front.
+    pub name: String,
+    /// Both results.
+    pub at: [f64; 2],
+}
+
+/// The designs that no other is at least as good as in both results and better in one, by
+/// ascending first result.
+#[must_use]
+pub fn front(designs: &[TradedDesign]) -> Vec<usize> {
+    let beats = |a: &TradedDesign, b: &TradedDesign| {
+        a.at[0] <= b.at[0] && a.at[1] <= b.at[1] && (a.at[0] < b.at[0] || a.at[1] < b.at[1])
+    };
+    let mut front: Vec<usize> = (0..designs.len())
+        .filter(|&k| designs[k].at.iter().all(|x| x.is_finite()))
+        .filter(|&k| !designs.iter().any(|other| beats(other, &designs[k])))
+        .collect();
+    front.sort_by(|&a, &b| designs[a].at[0].total_cmp(&designs[b].at[0]).then(a.cmp(&b)));
+    front
+}
+
+/// Draws a trade: every design a dot, the front a stair.
+#[must_use]
+pub fn trade(trade: &Trade, width: f64) -> Panel {
+    let (left, top, right) = (58.0, 42.0, 24.0);
+    let height = 300.0;
+    let bottom = height - 38.0;
+    let mut panel = Panel::new(width, height);
+    panel.word([0.0, 12.0], &trade.title, Word::TITLE);
+    panel.word([0.0, 28.0], &trade.y.caption(), Word::PLAIN.in_colour(FAINT));
+    let values = |k: usize| trade.designs.iter().map(move |design| design.at[k]);
+    let x = Scale::holding(&trade.x, values(0), left, width - right).roomy(0.05);
+    let y = Scale::holding(&trade.y, values(1), bottom, top).roomy(0.05);
+    super::chart::frame(&mut panel, &x, &y, [left, bottom], width - right);
+    let caption = trade.x.caption();
+    let end = [width - right, bottom + 30.0];
+    panel.word(end, &caption, Word::PLAIN.at(Anchor::End).in_colour(FAINT));
+    let at = |k: usize| [x.place(trade.designs[k].at[0]), y.place(trade.designs[k].at[1])];
+    let front = front(&trade.designs);
+    let mut stair: Vec<[f64; 2]> = Vec::new();
+    for &k in &front {
+        let here = at(k);
+        if let Some(&[_, above]) = stair.last() {
+            stair.push([here[0], above]);
+        }
+        stair.push(here);
+    }
+    panel.polyline(&stair, Stroke { width: 1.2, ..Stroke::series(0) });
+    for k in (0..trade.designs.len()).filter(|&k| trade.designs[k].at.iter().all(|v| v.is_finite()))
+    {
+        if !front.contains(&k) {
+            panel.dot(at(k), 2.4, "#ffffff", Stroke::solid(FAINT, 1.0));
+        }
+    }
+    let mut free = f64::NEG_INFINITY;
+    for &k in &front {
+        let [px, py] = at(k);
+        panel.dot([px, py], 3.4, Stroke::series(0).colour, Stroke::solid(INK, 0.8));
+        let name = &trade.designs[k].name;
+        if px + 6.0 >= free && px + 6.0 + width_of(name, 10.0) <= width {
+            panel.word([px + 6.0, py - 5.0], name, Word::SMALL);
+            free = px + 12.0 + width_of(name, 10.0);
+        }
+    }
+    panel
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn the_front_is_what_nothing_beats() {
+        let design = |name: &str, x, y| TradedDesign { name: name.into(), at: [x, y] };
+        let designs = [
+            design("long", 3.0, 1.0),
+            design("worse", 3.0, 2.0),
+            design("short", 1.0, 4.0),
+            design("lost", f64::NAN, 0.0),
+            design("middle", 2.0, 2.0),
+        ];
+        assert_eq!(front(&designs), [2, 4, 0]);
+    }
+}
