@@ -17,7 +17,7 @@ pub(super) struct Sequence {
 
 impl Sequence {
     pub(super) fn new(dimensions: usize) -> Self {
-        let prime = |n: &u32| (2..).take_while(|d| d * d <= *n).all(|d| n % d != 0);
+        let prime = |n: &u32| (2..).take_while(|d| d * d <= *n).all(|d| !n.is_multiple_of(d));
         let primes = (2_u32..).filter(prime).take(dimensions);
         Self { steps: primes.map(|p| f64::from(p).sqrt().fract()).collect() }
     }
