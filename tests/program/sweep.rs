@@ -121,7 +121,7 @@ fn a_point_that_fails_is_told_and_the_others_stand() {
     let ended = sweep(&plan, &folder.path().join("run"), "--progress none");
     assert_eq!(ended.status, 3, "{}", ended.err);
     assert!(ended.out.contains("1 could not be optimised"), "{}", ended.out);
-    assert!(ended.out.contains("no glass is called \"N-BK8\""), "{}", ended.out);
+    assert!(ended.out.contains("there is no glass named \"N-BK8\""), "{}", ended.out);
 }
 
 #[test]

@@ -7,7 +7,7 @@
 //! - `null` drops an entry of a list or a key (as RFC 7396 does): `/states/6x=null`;
 //! - the step `-` is the place behind the last entry (as in RFC 6902): `/states/-={…}`;
 //! - a key that is not there yet is added, if the format knows it;
-//! - a glass may be given by measured indices or by a definition ([`melt`]).
+//! - a glass may be given by measured indices or by a definition (`melt.rs`).
 //!
 //! Addresses are those of the design as it was, whatever other changes there are. A number that is
 //! set is a fact from then on and no longer free: its address is added to `held`. Where fixed

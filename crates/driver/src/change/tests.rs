@@ -151,5 +151,5 @@ fn a_change_from_a_table_is_told_with_its_line_and_column() {
     let source = Source { label: "units.csv".to_owned(), position: Some(position) };
     let at: Address = "/groups/exit/elements/0/thicknesses_mm/0".parse().unwrap();
     let refused = apply(&design(&["exit"]), &[Change::new(at, json!(-5), source)]).unwrap_err();
-    insta::assert_snapshot!(refused.to_string(), @"");
+    insta::assert_snapshot!(refused.to_string());
 }

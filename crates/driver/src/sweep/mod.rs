@@ -1,7 +1,7 @@
 //! A sweep: a grid or a sample over any addresses of a design, each point optimised.
 //!
 //! What a point comes to depends on the plan, the design and its number alone: it starts from the
-//! better of its fixed neighbours ([`lattice`]), never from whichever happens to be done. Where a
+//! better of its fixed neighbours (`lattice.rs`), never from whichever happens to be done. Where a
 //! neighbour is not there (in another part, before an interruption) it is computed again. So a
 //! sweep ends in the same bytes on any number of threads, interrupted or not, whole or in parts.
 //!
