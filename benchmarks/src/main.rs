@@ -27,6 +27,7 @@ mod search;
 mod spread;
 mod sweep;
 mod threads;
+mod tolerance;
 mod zoom_states;
 
 /// Anything that stops a measurement.
@@ -48,6 +49,7 @@ fn main() -> Result<(), Failure> {
         ["trace"] => bare_loop::section()?,
         ["states"] => zoom_states::section()?,
         ["threads"] => threads::section()?,
+        ["tolerance"] => tolerance::section()?,
         ["search", names @ ..] => search::section(names)?,
         ["sweep"] => sweep::section()?,
         ["retune"] => retune::section()?,
@@ -55,7 +57,8 @@ fn main() -> Result<(), Failure> {
         ["profile"] => profile::section()?,
         _ => {
             return Err("sections: jobs [DESIGN…], more-states, derivatives, trace, states, \
-                        threads, search [DESIGN…], sweep, retune, instructions, profile; or kernel NAME CALLS, peer-input DESIGN"
+                        threads, search [DESIGN…], sweep, retune, tolerance, instructions, \
+                        profile; or kernel NAME CALLS, peer-input DESIGN"
                 .into());
         }
     };

@@ -3,9 +3,10 @@
 use crate::program::{program, run, run_on};
 use crate::readme::scene;
 
-const COMMANDS: [&str; 10] = [
+const COMMANDS: [&str; 11] = [
     "assess",
     "optimise",
+    "tolerance",
     "overnight",
     "gather",
     "sweep",

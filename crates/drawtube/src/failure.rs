@@ -8,7 +8,10 @@ use driver::retune::RetuneError;
 use driver::run::{RunError, ShareError};
 use driver::search::SearchError as DesignSearchError;
 use driver::solve::SettingsError;
+use driver::temperature::AtTemperatureError;
+use driver::tolerance::ToleranceError;
 use driver::write_whole::WriteError;
+use report::RowsError;
 use report::ray::RayError;
 use serde_json::{Value, json};
 use surface_model::document::{Complaints, nearest, quoted};
@@ -57,6 +60,12 @@ pub(crate) enum Failure {
     /// The optimisation could not begin.
     #[error(transparent)]
     Optimise(#[from] OptimiseError),
+    /// The tolerances could not be told.
+    #[error(transparent)]
+    Tolerance(#[from] ToleranceError),
+    /// The design cannot be told at a temperature.
+    #[error(transparent)]
+    Temperature(#[from] AtTemperatureError),
     /// Nothing suits.
     #[error("nothing was found: {0}")]
     NothingFound(&'static str),
@@ -104,6 +113,12 @@ pub(crate) enum Failure {
     /// A result could not be made into a document.
     #[error("the result cannot be written as JSON: {0}")]
     Document(serde_json::Error),
+    /// A result could not be made into rows.
+    #[error("the result cannot be written as CSV: {0}")]
+    Rows(RowsError),
+    /// Threads cannot be started.
+    #[error("threads cannot be started: {0}")]
+    Threads(rayon::ThreadPoolBuildError),
     /// No method was run.
     #[error("no method was run")]
     NoStage,
@@ -141,9 +156,20 @@ impl Failure {
             }
             Self::DesignSearch(_) => ExitStatus::WrongInput,
             Self::Run(error) => status_of_run(error),
+            Self::Tolerance(
+                ToleranceError::Nominal { .. }
+                | ToleranceError::Overflow { .. }
+                | ToleranceError::Spoilt { .. },
+            ) => ExitStatus::Failed,
+            Self::Tolerance(_) | Self::Temperature(AtTemperatureError::Temperature(_)) => {
+                ExitStatus::WrongInput
+            }
+            Self::Temperature(_) => ExitStatus::Failed,
             Self::Ray(RayError::Glass(_) | RayError::Direction { .. }) => ExitStatus::WrongInput,
             Self::Ray(_)
             | Self::Document(_)
+            | Self::Rows(_)
+            | Self::Threads(_)
             | Self::NoStage
             | Self::NothingFound(_)
             | Self::Table(_)
@@ -172,6 +198,8 @@ impl Failure {
             Self::NoPart(_) => {
                 Some("give the part as I/N, or auto/N where only the index is known".to_owned())
             }
+            Self::Tolerance(error) => advice_on_tolerances(error),
+            Self::Temperature(AtTemperatureError::Temperature(error)) => error.advice(),
             Self::Lookup(error) => error.advice(),
             Self::Glass(error) | Self::Ray(RayError::Glass(error)) => error.advice(),
             Self::Search(error) => error.advice(),
@@ -234,9 +262,27 @@ fn status_of(error: &OptimiseError) -> ExitStatus {
         OptimiseError::NoGoals
         | OptimiseError::NothingFree
         | OptimiseError::Variables(_)
-        | OptimiseError::Glass(_) => ExitStatus::WrongInput,
+        | OptimiseError::Glass(_)
+        | OptimiseError::Temperature(_) => ExitStatus::WrongInput,
         _ => ExitStatus::Failed,
     }
+}
+
+fn advice_on_tolerances(error: &ToleranceError) -> Option<String> {
+    let advice = match error {
+        ToleranceError::NothingRequired => {
+            "add \"goals\" to the file, or \"require\" to its \"tolerances\""
+        }
+        ToleranceError::Readjusted(_) => {
+            "give \"spacings\", an address such as \"/states/*/spacings_mm/1\", or \"none\""
+        }
+        ToleranceError::Nominal { .. } => "assess tells where rays fail",
+        ToleranceError::Spoilt { .. } => {
+            "tighten that tolerance, or make the surfaces wider than the beam"
+        }
+        _ => return None,
+    };
+    Some(advice.to_owned())
 }
 
 fn status_of_run(error: &RunError) -> ExitStatus {
@@ -275,6 +321,7 @@ fn advice_on(error: &OptimiseError) -> Option<String> {
             "begin with weaker curves or a narrower beam (traced_to); assess tells where rays fail"
         }
         OptimiseError::Glass(error) => return error.advice(),
+        OptimiseError::Temperature(error) => return error.advice(),
         _ => return None,
     };
     Some(advice.to_owned())

@@ -39,6 +39,7 @@ fn run(arguments: Arguments) -> ExitStatus {
     let result = match arguments.command {
         Command::Assess(arguments) => commands::assess::run(arguments, &console),
         Command::Optimise(arguments) => commands::optimise::run(arguments, &console),
+        Command::Tolerance(arguments) => commands::tolerance::run(arguments, &console),
         Command::Retune(arguments) => commands::retune::run(arguments, &console),
         Command::Overnight(arguments) => commands::overnight::run(arguments, &console),
         Command::Gather(arguments) => commands::gather::run(&arguments, &console),

@@ -9,6 +9,8 @@
 //! - [`brief`]: the requirement a design is begun from;
 //! - [`start`]: first-order layouts of a brief;
 //! - [`fn@optimise::optimise`]: one local optimisation from file to file;
+//! - [`mod@tolerance`]: what a workshop's errors do to a design, and the yield;
+//! - [`temperature`]: what a design does at other temperatures, and how it is brought back;
 //! - [`overnight`]: the global search as a run, and the ranked list it leaves;
 //! - [`run`]: long work in a folder, where nothing is lost;
 //! - [`sampling`]: points that fill a space evenly, random numbers keyed by a number;
@@ -42,4 +44,6 @@ pub mod search;
 pub mod solve;
 pub mod start;
 pub mod sweep;
+pub mod temperature;
+pub mod tolerance;
 pub mod write_whole;

@@ -12,6 +12,7 @@ use merit_function::wishes::Wishes;
 use serde::Serialize;
 use surface_model::document::Complaints;
 use surface_model::glass::GlassError;
+use surface_model::temperature::TemperatureError;
 
 use crate::design_file::DesignFile;
 use crate::solve::{self, Observer, Outcome, Settings, SolveError, Stopped};
@@ -78,6 +79,9 @@ pub enum OptimiseError {
     /// Not even the innermost rays get through.
     #[error("the start cannot be traced: {0}")]
     Start(EvaluationFault),
+    /// Something does not say how it changes with temperature.
+    #[error(transparent)]
+    Temperature(#[from] TemperatureError),
     /// The solver refuses.
     #[error(transparent)]
     Solve(#[from] SolveError),
@@ -132,15 +136,13 @@ pub fn merit_of(file: &DesignFile) -> Result<MeritFunction, OptimiseError> {
         return Err(OptimiseError::NothingFree);
     }
     let variables = Variables::new(&file.design, &file.wishes.limits, &file.free)?;
-    Ok(MeritFunction::new(&file.design, &file.wishes, variables, RAYS)?)
+    let merit = MeritFunction::new(&file.design, &file.wishes, variables, RAYS)?;
+    Ok(merit.with_temperatures(&file.design, &file.wishes)?)
 }
 
 /// There has to be a goal that counts.
 pub(crate) fn require_goal(wishes: &Wishes) -> Result<(), OptimiseError> {
-    let any_goal = wishes.states.iter().any(|goals| {
-        let present = [goals.wavefront_rms_waves, goals.ratio_percent, goals.exit_slope_urad];
-        present.iter().any(Option::is_some) && goals.weight > 0.0
-    });
+    let any_goal = wishes.states.iter().any(|goals| goals.any() && goals.weight > 0.0);
     if any_goal { Ok(()) } else { Err(OptimiseError::NoGoals) }
 }
 

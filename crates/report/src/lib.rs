@@ -7,4 +7,7 @@
 //! Start reading at [`text::assessment`], then [`text::optimisation`].
 
 pub mod ray;
+mod rows;
 pub mod text;
+
+pub use rows::{RowsError, tolerance_rows};

@@ -11,6 +11,7 @@ mod progress;
 mod retune;
 mod schema;
 mod sweep;
+mod tolerance;
 mod trace;
 
 use std::ffi::OsString;
@@ -28,6 +29,7 @@ pub(crate) use progress::ProgressArgument;
 pub(crate) use retune::RetuneArguments;
 pub(crate) use schema::{DocumentKind, SchemaArguments};
 pub(crate) use sweep::SweepArguments;
+pub(crate) use tolerance::{GradeArgument, ToleranceArguments};
 pub(crate) use trace::TraceArguments;
 
 use crate::console::{Console, ErrorFormat};
@@ -88,6 +90,8 @@ pub(crate) enum Command {
     Assess(AssessArguments),
     /// Improve a design: move what is free until the goals are met as well as they can be
     Optimise(OptimiseArguments),
+    /// Tell what a workshop's errors do to a design, and the yield
+    Tolerance(ToleranceArguments),
     /// Optimise a design at every point of a grid or a sample
     Sweep(SweepArguments),
     /// After a change, move only what can still move, in stages

@@ -9,4 +9,5 @@ pub(crate) mod overnight;
 pub(crate) mod retune;
 pub(crate) mod schema;
 pub(crate) mod sweep;
+pub(crate) mod tolerance;
 pub(crate) mod trace;

@@ -114,7 +114,11 @@ fn no_derivative(before: &DesignFile, after: &DesignFile) -> Option<&'static str
 
 /// |r + J δ|² − |r|² for what the change does to the trains.
 fn by_derivatives(file: &DesignFile, changed: &Design) -> Option<f64> {
-    let wishes = Wishes { states: file.wishes.states.clone(), limits: Limits::default() };
+    let wishes = Wishes {
+        states: file.wishes.states.clone(),
+        limits: Limits::default(),
+        temperatures_c: Vec::new(),
+    };
     let free = reshaped(&file.design, changed);
     let variables = Variables::new(&file.design, &wishes.limits, &free).ok()?;
     let (start, quantities) = (variables.start().to_vec(), variables.quantities());

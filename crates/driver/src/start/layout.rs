@@ -85,6 +85,7 @@ fn design(space: &Space, thin: &Thin<'_>, thick: &Thick) -> Design {
         name: plan.name.clone(),
         elements: group.elements.iter().map(|part| element(space, part)).collect(),
         airs_mm: group.airs_mm.clone(),
+        mount_expansion_per_k: None,
     };
     let state = |(ratio, spacings): (&crate::brief::RatioBrief, &Vec<f64>)| ZoomState {
         name: ratio.name.clone(),
@@ -124,5 +125,7 @@ fn reason(obstacle: Obstacle) -> NoLayout {
         LimitKind::IncidenceDeg => NoLayout::Ray,
         LimitKind::TrackMm | LimitKind::HousingMm => NoLayout::Track,
         LimitKind::InternalFocus => NoLayout::Focus,
+        LimitKind::FluenceJCm2 => NoLayout::Fluence,
+        LimitKind::GhostClearanceMm | LimitKind::DoubleGhostClearanceMm => NoLayout::Ghost,
     }
 }

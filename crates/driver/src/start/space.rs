@@ -50,7 +50,8 @@ impl Space {
     /// The housing with the fixed groups of a plan.
     pub(super) fn housing(&self, plan: &Plan) -> Housing {
         let track_mm = self.brief.written().housing.track_mm;
-        Housing { track_mm, fixed: plan.fixed.clone() }
+        let expansion_per_k = self.brief.written().housing.expansion_per_k;
+        Housing { track_mm, fixed: plan.fixed.clone(), expansion_per_k }
     }
 
     /// How far a state's ratio lies on the way from the lowest to the highest, 0 to 1 on a
