@@ -3,14 +3,15 @@
 use crate::program::{program, run, run_on};
 use crate::readme::scene;
 
-const COMMANDS: [&str; 11] = [
+const COMMANDS: [&str; 12] = [
+    "start",
     "assess",
     "optimise",
-    "tolerance",
     "overnight",
-    "gather",
     "sweep",
     "retune",
+    "tolerance",
+    "gather",
     "trace",
     "glass",
     "schema",
@@ -54,6 +55,8 @@ fn wrong_command_lines_are_put_right() {
         "optimise configs/river-lidar-2x-6x.json --target-merit nan",
         "optimise configs/river-lidar-2x-6x.json --progress-every -3",
         "optimise x --force",
+        "start configs/river-brief.json --rank 0",
+        "start configs/river-lidar-2x-6x.json",
         "assess no-such-file.json",
         "assess configs",
         "schema desing",

@@ -12,6 +12,7 @@ mod program;
 mod readme;
 mod retune;
 mod signals;
+mod start;
 mod streams;
 mod sweep;
 mod tolerance;

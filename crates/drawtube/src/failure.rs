@@ -8,11 +8,13 @@ use driver::retune::RetuneError;
 use driver::run::{RunError, ShareError};
 use driver::search::SearchError as DesignSearchError;
 use driver::solve::SettingsError;
+use driver::start::StartError;
 use driver::temperature::AtTemperatureError;
 use driver::tolerance::ToleranceError;
 use driver::write_whole::WriteError;
 use report::RowsError;
 use report::ray::RayError;
+use report::start::Impossible;
 use serde_json::{Value, json};
 use surface_model::document::{Complaints, nearest, quoted};
 use surface_model::glass::{GlassError, LookupError, SearchError};
@@ -72,6 +74,20 @@ pub(crate) enum Failure {
     /// A table could not be laid out.
     #[error("the table cannot be laid out: {0}")]
     Table(Box<dyn std::error::Error + Send + Sync>),
+    /// The brief contradicts itself.
+    #[error(transparent)]
+    Start(#[from] StartError),
+    /// No layout does what a brief asks.
+    #[error("{}", .0.message)]
+    Impossible(Impossible),
+    /// There are not so many layouts.
+    #[error("there is no layout {asked}: {found} differ enough to be told apart")]
+    NoSuchRank {
+        /// The rank asked for.
+        asked: usize,
+        /// How many layouts there are.
+        found: usize,
+    },
     /// The ray has no path.
     #[error(transparent)]
     Ray(#[from] RayError),
@@ -166,7 +182,10 @@ impl Failure {
             }
             Self::Temperature(_) => ExitStatus::Failed,
             Self::Ray(RayError::Glass(_) | RayError::Direction { .. }) => ExitStatus::WrongInput,
-            Self::Ray(_)
+            Self::Start(_)
+            | Self::Impossible(_)
+            | Self::NoSuchRank { .. }
+            | Self::Ray(_)
             | Self::Document(_)
             | Self::Rows(_)
             | Self::Threads(_)
@@ -201,6 +220,8 @@ impl Failure {
             }
             Self::Tolerance(error) => advice_on_tolerances(error),
             Self::Temperature(AtTemperatureError::Temperature(error)) => error.advice(),
+            Self::Start(error) => Some(error.advice()),
+            Self::Impossible(impossible) => Some(impossible.advice.clone()),
             Self::Lookup(error) => error.advice(),
             Self::Glass(error) | Self::Ray(RayError::Glass(error)) => error.advice(),
             Self::Search(error) => error.advice(),

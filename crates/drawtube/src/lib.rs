@@ -41,6 +41,7 @@ fn run(arguments: Arguments) -> ExitStatus {
         Command::Optimise(arguments) => commands::optimise::run(arguments, &console),
         Command::Tolerance(arguments) => commands::tolerance::run(arguments, &console),
         Command::Retune(arguments) => commands::retune::run(arguments, &console),
+        Command::Start(arguments) => commands::start::run(arguments, &console),
         Command::Overnight(arguments) => commands::overnight::run(arguments, &console),
         Command::Gather(arguments) => commands::gather::run(&arguments, &console),
         Command::Sweep(arguments) => commands::sweep::run(arguments, &console),

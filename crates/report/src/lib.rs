@@ -8,6 +8,7 @@
 
 pub mod ray;
 mod rows;
+pub mod start;
 pub mod text;
 
 pub use rows::{RowsError, tolerance_rows};

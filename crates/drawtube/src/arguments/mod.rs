@@ -10,6 +10,7 @@ mod overnight;
 mod progress;
 mod retune;
 mod schema;
+mod start;
 mod sweep;
 mod tolerance;
 mod trace;
@@ -28,6 +29,7 @@ pub(crate) use overnight::{OvernightArguments, StrategyArgument};
 pub(crate) use progress::ProgressArgument;
 pub(crate) use retune::RetuneArguments;
 pub(crate) use schema::{DocumentKind, SchemaArguments};
+pub(crate) use start::StartArguments;
 pub(crate) use sweep::SweepArguments;
 pub(crate) use tolerance::{GradeArgument, ToleranceArguments};
 pub(crate) use trace::TraceArguments;
@@ -90,6 +92,8 @@ pub(crate) enum Command {
     Assess(AssessArguments),
     /// Improve a design: move what is free until the goals are met as well as they can be
     Optimise(OptimiseArguments),
+    /// Begin: work out layouts that can do what a brief asks, and rank them
+    Start(StartArguments),
     /// Tell what a workshop's errors do to a design, and the yield
     Tolerance(ToleranceArguments),
     /// Optimise a design at every point of a grid or a sample

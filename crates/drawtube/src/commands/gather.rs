@@ -17,9 +17,8 @@ pub(crate) fn run(arguments: &GatherArguments, console: &Console) -> Result<Exit
     let output = output(arguments)?;
     let surveys: Vec<Survey> =
         arguments.folders.iter().map(|path| Survey::of(path)).collect::<Result<_, RunError>>()?;
-    if let Some(first) = surveys.first().filter(|survey| survey.run.kind == sweep::KIND) {
-        let folder = ResultsFolder::open(&output, first)?;
-        return super::sweep::gathering::gather(&surveys, &folder, arguments.json, console);
+    if surveys.first().is_some_and(|survey| survey.run.kind == sweep::KIND) {
+        return super::sweep::gathering::gather(&surveys, &output, arguments.json, console);
     }
     let gathering = Gathering::of(&surveys, usize::from(arguments.keep))?;
     let list = gathering.list();

@@ -8,6 +8,7 @@ pub(crate) mod optimise;
 pub(crate) mod overnight;
 pub(crate) mod retune;
 pub(crate) mod schema;
+pub(crate) mod start;
 pub(crate) mod sweep;
 pub(crate) mod tolerance;
 pub(crate) mod trace;

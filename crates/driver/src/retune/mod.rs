@@ -83,7 +83,7 @@ pub struct Solver {
     pub evaluations: u64,
     /// Its wall time, s.
     pub solve_seconds: f64,
-    /// Variables that ended on a bound.
+    /// Addresses of the variables that ended on a bound.
     pub on_bounds: Vec<String>,
     /// All variables.
     pub variables: usize,

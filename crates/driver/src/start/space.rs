@@ -123,6 +123,22 @@ impl Point<'_> {
         (WIDEST_FOCAL_RATIO.ln() * (2.0 * self.at(3 + group.min(MOST - 1)) - 1.0)).exp()
     }
 
+    /// Where in their ranges two heights are, 0 to 1: of three groups those at the second one, at
+    /// the highest ratio and at the lowest; of four those at the second and the third.
+    pub(super) fn heights(&self) -> (f64, f64) {
+        (self.at(4), self.at(5))
+    }
+
+    /// Where in their ranges the second and the third of three spacings are, 0 to 1.
+    pub(super) fn spacings(&self) -> (f64, f64) {
+        (self.at(6), self.at(8))
+    }
+
+    /// Where in its range the change of a tied distance is, 0 to 1.
+    pub(super) fn tie_change(&self) -> f64 {
+        self.at(9)
+    }
+
     /// Where in the range of sizes, 0 to 1.
     pub(super) fn scale(&self) -> f64 {
         self.at(7)

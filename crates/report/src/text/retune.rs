@@ -271,12 +271,8 @@ fn cautions(retuning: &Retuning) -> Vec<String> {
         if !solver.was_successful {
             cautions.push(format!("{name}: {}", solver.stopped));
         }
-        if !solver.on_bounds.is_empty() {
-            cautions.push(format!(
-                "{name}: {} of {} variables ended on a bound",
-                solver.on_bounds.len(),
-                solver.variables
-            ));
+        if let Some(told) = ended_on_bounds(&solver.on_bounds, solver.variables) {
+            cautions.push(format!("{name}: {told}"));
         }
     }
     if retuning.stage(Moving::Spacings).is_none() {

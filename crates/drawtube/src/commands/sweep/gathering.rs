@@ -1,7 +1,9 @@
 //! The parts of a sweep put together.
 
+use std::path::Path;
+
 use driver::design_file::DesignFile;
-use driver::run::{ResultsFolder, RunError, Survey};
+use driver::run::{ResultsFolder, Survey};
 use driver::sweep::{PlanFile, SweepGathering, SweepResults};
 use report::text;
 use serde_json::json;
@@ -11,10 +13,10 @@ use crate::console::Console;
 use crate::exit_status::ExitStatus;
 use crate::failure::Failure;
 
-/// Puts together what the surveys hold, writes it where `folder` is, and prints it.
+/// Puts together what the surveys hold, writes it into the folder at `output`, and prints it.
 pub(crate) fn gather(
     surveys: &[Survey],
-    folder: &ResultsFolder,
+    output: &Path,
     as_json: bool,
     console: &Console,
 ) -> Result<ExitStatus, Failure> {
@@ -30,9 +32,8 @@ pub(crate) fn gather(
         console.say("drawtube: no point is finished yet");
         return Ok(ExitStatus::NothingToDo);
     }
-    let written: Result<(), RunError> =
-        folder.write_results(&results.files().map_err(Failure::Table)?);
-    written?;
+    let folder = ResultsFolder::open(output, first)?;
+    folder.write_results(&results.files().map_err(Failure::Table)?)?;
     if as_json {
         let parts = missing
             .iter()

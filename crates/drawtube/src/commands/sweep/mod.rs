@@ -23,8 +23,8 @@ pub(crate) fn run(arguments: SweepArguments, console: &Console) -> Result<ExitSt
     let Some(run) = &request.run else {
         return dry_run(&request, console);
     };
-    let folder = RunFolder::open(&run.path, &run.ask)?;
     let signals = StopSignal::listen().map_err(Failure::Signals)?;
+    let folder = RunFolder::open(&run.path, &run.ask)?;
     let (end, points) = optimise(&request, run, &folder, &signals, console)?;
     let results = SweepResults::new(request.sweep.plan(), points);
     let files = results.files().map_err(Failure::Table)?;
@@ -33,7 +33,7 @@ pub(crate) fn run(arguments: SweepArguments, console: &Console) -> Result<ExitSt
         let source = std::io::Error::new(source.kind(), source.to_string());
         return Err(Failure::Unsaved { path: run.path.clone(), source });
     }
-    tell(&request, &folder, &end, &results, console)?;
+    tell(&request, run, &folder, &end, &results, console)?;
     Ok(status(&request, &signals, &end, &results))
 }
 
@@ -77,6 +77,7 @@ fn optimise(
 
 fn tell(
     request: &Request,
+    run: &Run,
     folder: &RunFolder,
     end: &RunEnd,
     results: &SweepResults,
@@ -86,20 +87,20 @@ fn tell(
         Told::Nothing => Ok(()),
         Told::Json => console.print_json(results),
         Told::Text => {
-            let closing = closing(folder, end, results);
+            let closing = closing(run, folder, end, results);
             console.print(&format!("{}\n\n{closing}", text::sweep::results(results)))
         }
     }
 }
 
 /// Why it ended, and where the results are.
-fn closing(folder: &RunFolder, end: &RunEnd, results: &SweepResults) -> String {
+fn closing(run: &Run, folder: &RunFolder, end: &RunEnd, results: &SweepResults) -> String {
     let (why, then) = match end.stop {
         Stop::SessionTime => ("The time limit is reached", "; the same command line goes on"),
         Stop::Interrupted => ("Stopped by the user", "; the same command line goes on"),
         _ => ("Complete", ""),
     };
-    let share = folder.share();
+    let share = run.ask.share;
     let part = if share.is_whole() { String::new() } else { format!(" Part {share}:") };
     let told = format!(
         "{why}.{part} {} of {} points are done{then}. They are in {place}/points.csv and \
