@@ -179,7 +179,7 @@ impl Failure {
             | Self::Part(_)
             | Self::NoPart(_)
             | Self::Search(_) => ExitStatus::WrongInput,
-            Self::Optimise(error) | Self::DesignSearch(DesignSearchError::Design(error)) => {
+            Self::Optimise(error) | Self::DesignSearch(DesignSearchError::Optimise(error)) => {
                 status_of(error)
             }
             Self::DesignSearch(_) => ExitStatus::WrongInput,
@@ -226,9 +226,10 @@ impl Failure {
                 })
             }
             Self::Cam(error) => advice_on_cam(error),
-            Self::Optimise(error) | Self::DesignSearch(DesignSearchError::Design(error)) => {
+            Self::Optimise(error) | Self::DesignSearch(DesignSearchError::Optimise(error)) => {
                 advice_on(error)
             }
+            Self::DesignSearch(DesignSearchError::Start(error)) => Some(error.advice()),
             Self::Run(error) => advice_on_run(error).map(str::to_owned),
             Self::NoPart(_) => {
                 Some("give the part as I/N, or auto/N where only the index is known".to_owned())

@@ -79,6 +79,7 @@ Exit status:
     2  the input or the command line is wrong
     3  done, but a goal or limit is missed (only with --require), or parts of a
        run are missing
+    4  gather: no start is finished, so there is nothing to do
     5  the run folder is in use by another process
     6  the run folder is damaged, or of another file, seed or version
     7  the result cannot be written

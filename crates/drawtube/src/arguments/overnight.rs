@@ -78,9 +78,11 @@ pub(crate) struct OvernightArguments {
 /// A strategy by its name.
 #[derive(Debug, Clone, Copy, Default, PartialEq, Eq, ValueEnum)]
 pub(crate) enum StrategyArgument {
-    /// Shake the best point of a start and improve it again
-    #[default]
-    BasinHopping,
     /// Many points, the better ones improved further
+    #[default]
     Multistart,
+    /// Shake the best point of a start and improve it again
+    BasinHopping,
+    /// Cross points with each other and keep the better ones
+    DifferentialEvolution,
 }

@@ -6,8 +6,12 @@ mod watcher;
 
 use std::path::Path;
 
+use driver::brief::BriefFile;
+use driver::design_file::DesignFile;
 use driver::overnight::{Overnight, RankedList, fetch};
 use driver::run::{RunEnd, RunFolder, Stop, Survey, perform};
+use driver::search::{SearchProblem, SearchSettings};
+use surface_model::document::Document;
 
 use crate::arguments::OvernightArguments;
 use crate::console::Console;
@@ -146,13 +150,18 @@ fn status(request: &Request, signals: &StopSignal, end: &RunEnd, list: &RankedLi
     }
 }
 
-/// The work of a run, for the request.
-pub(super) fn work(
-    document: surface_model::document::Document,
-    settings: driver::search::SearchSettings,
-    seed: u64,
-) -> Result<Overnight, Failure> {
-    let file = driver::design_file::DesignFile::read(document)?;
-    let problem = driver::search::SearchProblem::of_design(&file, settings)?;
+/// The work of a run about a design or a brief.
+fn work(document: Document, settings: SearchSettings, seed: u64) -> Result<Overnight, Failure> {
+    let problem = if is_brief(&document) {
+        SearchProblem::of_brief(&BriefFile::read(document)?, settings)?
+    } else {
+        SearchProblem::of_design(&DesignFile::read(document)?, settings)?
+    };
     Ok(Overnight { problem, seed })
+}
+
+/// Whether a document says of itself that it is a brief, of whatever version.
+fn is_brief(document: &Document) -> bool {
+    let format = document.value().get("format").and_then(|format| format.as_str());
+    format.is_some_and(|format| format.starts_with("drawtube-brief/"))
 }

@@ -25,7 +25,7 @@ pub struct JournalFacts {
     pub sessions: u64,
     /// Seconds of the run, all sessions together.
     pub seconds: f64,
-    /// The most units that were wanted of the whole run.
+    /// Units wanted of the whole run by the last session.
     pub units: Option<u64>,
     /// The merit that was good enough for the last session.
     pub target_merit: Option<f64>,
@@ -147,7 +147,7 @@ impl<'a> Reader<'a> {
         let facts = &mut self.read.facts;
         facts.sessions += 1;
         facts.complete = false;
-        facts.units = facts.units.max(begin.units);
+        facts.units = begin.units;
         facts.target_merit = begin.target_merit;
         facts.began_unix_seconds.get_or_insert(begin.unix_seconds);
         Ok(())

@@ -21,8 +21,8 @@ pub(super) fn hop(
 ) -> Result<(), Interrupted> {
     for _ in 0..HOPS {
         let share = 10.0_f64.powf(random.random_range(REACH));
-        let shaken = bench.template.shake(&best.variables, share, bench.bounds(), random);
-        let landed = bench.improve(&shaken, Effort::Steps(STEPS))?;
+        let shaken = bench.shake(best, share, random);
+        let landed = bench.improve(best.ground, &shaken, Effort::Steps(STEPS))?;
         if let Some(landed) = landed.filter(|landed| landed.is_better_than(best)) {
             *best = landed;
         }

@@ -2,9 +2,11 @@
 
 use std::cmp::Ordering;
 
-/// A point of a template's variables and how good it is.
+/// A point of a ground's variables and how good it is.
 #[derive(Debug, Clone, PartialEq)]
 pub(super) struct Candidate {
+    /// Which ground of the workbench it stands on.
+    pub(super) ground: usize,
     /// Its variables, packed.
     pub(super) variables: Vec<f64>,
     /// Sum of squares of the exact residuals; finite.

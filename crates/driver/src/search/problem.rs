@@ -2,29 +2,38 @@
 
 use std::sync::atomic::AtomicBool;
 
+use super::basin_hopping;
+use super::brief_source::BriefSource;
 use super::candidate::Candidate;
+use super::design_source::DesignSource;
+use super::differential_evolution;
+use super::multistart;
 use super::settings::{SearchSettings, Strategy};
+use super::source::{Quarry, Source};
 use super::start_result::{Found, StartResult};
-use super::template::Template;
-use super::workbench::{Effort, Interrupted, Workbench};
-use super::{basin_hopping, multistart};
+use super::workbench::{Interrupted, Workbench};
+use crate::brief::BriefFile;
 use crate::design_file::DesignFile;
 use crate::optimise::OptimiseError;
-use crate::sampling::stream;
+use crate::sampling::{RandomStream, stream};
+use crate::start::{StartError, Starts};
 
 /// Why there is nothing to search.
 #[derive(Debug, thiserror::Error)]
 #[non_exhaustive]
 pub enum SearchError {
-    /// A design that cannot be optimised.
+    /// A design that cannot be optimised, or a brief without goals.
     #[error(transparent)]
-    Design(#[from] OptimiseError),
+    Optimise(#[from] OptimiseError),
+    /// A brief that no layout can answer.
+    #[error(transparent)]
+    Start(#[from] StartError),
 }
 
 /// What is searched. Made once and shared by all threads.
 #[derive(Debug)]
 pub struct SearchProblem {
-    templates: Vec<Template>,
+    source: Source,
     settings: SearchSettings,
 }
 
@@ -35,7 +44,18 @@ impl SearchProblem {
     /// # Errors
     /// The file has no goals or nothing to change, or its ranges contradict each other.
     pub fn of_design(file: &DesignFile, settings: SearchSettings) -> Result<Self, SearchError> {
-        Ok(Self { templates: vec![Template::new(file.clone())?], settings })
+        let source = Source::Design(Box::new(DesignSource::new(file.clone())?));
+        Ok(Self { source, settings })
+    }
+
+    /// The search over everything a brief leaves open: families of group powers, the glasses
+    /// allowed, the order of elements, radii, thicknesses, airs and spacings.
+    ///
+    /// # Errors
+    /// The brief has no goals, or contradicts itself in a way that no layout gets around.
+    pub fn of_brief(brief: &BriefFile, settings: SearchSettings) -> Result<Self, SearchError> {
+        let source = Source::Brief(Box::new(BriefSource::new(Starts::of(brief)?)?));
+        Ok(Self { source, settings })
     }
 
     /// Start `number` of the search with this `seed`. The result depends on problem, settings,
@@ -43,40 +63,40 @@ impl SearchProblem {
     /// within a few milliseconds; the start is then to be run again from its beginning.
     #[must_use]
     pub fn start(&self, seed: u64, number: u64, interrupt: &AtomicBool) -> Option<StartResult> {
-        let mut result = StartResult { number, optimisations: 0, found: None };
-        let count = self.templates.len() as u64;
-        let template = &self.templates[usize::try_from(number % count).unwrap_or(0)];
-        let Ok(mut bench) = Workbench::new(template, interrupt) else { return Some(result) };
-        let candidates = self.candidates(&mut bench, seed, number).ok()?;
-        result.optimisations = bench.optimisations;
-        let files = candidates.into_iter().filter_map(|candidate| {
-            let mut design = template.file.design.clone();
-            bench.exact().variables().write(&candidate.variables, &mut design);
-            template.file.with_numbers_of(&design).ok()
-        });
-        result.found = files.into_iter().find_map(|file| Found::of(&file));
-        Some(result)
+        let nothing = StartResult { number, optimisations: 0, found: None };
+        let mut bench = Workbench::new(interrupt);
+        let Ok(mut quarry) = self.source.open(&mut bench, seed, number) else {
+            return Some(nothing);
+        };
+        let mut random = stream(seed, number);
+        let candidates = self.candidates(&mut quarry, &mut bench, &mut random).ok()?;
+        let files = candidates.iter().filter_map(|candidate| quarry.file(&bench, candidate));
+        let found = files.into_iter().find_map(|file| Found::of(&file));
+        Some(StartResult { optimisations: bench.optimisations, found, ..nothing })
     }
 
     /// The finished candidates of a start, best first.
     fn candidates(
         &self,
+        quarry: &mut Quarry<'_>,
         bench: &mut Workbench<'_>,
-        seed: u64,
-        number: u64,
+        random: &mut RandomStream,
     ) -> Result<Vec<Candidate>, Interrupted> {
-        let mut random = stream(seed, number);
-        let mut candidates = multistart::best(bench, seed, number, &mut random)?;
-        match self.settings.strategy {
-            Strategy::Multistart => {}
-            Strategy::BasinHopping => {
-                candidates.truncate(1);
-                for candidate in &mut candidates {
-                    basin_hopping::hop(bench, candidate, &mut random)?;
-                }
+        let mut candidates = match self.settings.strategy {
+            Strategy::Multistart | Strategy::BasinHopping => {
+                multistart::best(quarry, bench, random)?
+            }
+            Strategy::DifferentialEvolution => differential_evolution::best(quarry, bench, random)?,
+        };
+        if self.settings.strategy == Strategy::BasinHopping {
+            candidates.truncate(1);
+            for candidate in &mut candidates {
+                basin_hopping::hop(bench, candidate, random)?;
             }
         }
-        bench.halve(&mut candidates, Effort::Whole, usize::MAX)?;
-        Ok(candidates)
+        let finish = |candidate| quarry.finish(bench, candidate);
+        let mut finished = candidates.into_iter().map(finish).collect::<Result<Vec<_>, _>>()?;
+        finished.sort_by(Candidate::compare);
+        Ok(finished)
     }
 }

@@ -8,17 +8,20 @@ use serde::{Deserialize, Serialize};
 pub enum Strategy {
     /// It does not: multistart from low-discrepancy points (A. H. G. Rinnooy Kan and G. T. Timmer,
     /// Math. Program. 39, 27 (1987); points after Sobol), with successive halving.
+    #[default]
     Multistart,
     /// Basin hopping (D. J. Wales and J. P. K. Doye, J. Phys. Chem. A 101, 5111 (1997)) in its
     /// monotonic form (R. H. Leary, J. Global Optim. 18, 367 (2000)): shake the best, optimise
     /// locally, keep it if it is better.
-    #[default]
     BasinHopping,
+    /// It does without: differential evolution (R. Storn and K. Price, J. Global Optim. 11, 341
+    /// (1997)) over the points themselves, each improved a little before it is judged.
+    DifferentialEvolution,
 }
 
 impl Strategy {
     /// All there are.
-    pub const ALL: [Self; 2] = [Self::Multistart, Self::BasinHopping];
+    pub const ALL: [Self; 3] = [Self::Multistart, Self::BasinHopping, Self::DifferentialEvolution];
 
     /// Its name in settings and tables.
     #[must_use]
@@ -26,6 +29,7 @@ impl Strategy {
         match self {
             Self::Multistart => "multistart",
             Self::BasinHopping => "basin-hopping",
+            Self::DifferentialEvolution => "differential-evolution",
         }
     }
 }

@@ -4,11 +4,12 @@ use serde::{Deserialize, Serialize};
 use surface_model::design::Design;
 use surface_model::first_order::first_order;
 
-/// A difference in group power that counts as one unit, in units of asinh(power × track): about a
-/// tenth of a strong group's power.
-const POWER_UNIT: f64 = 0.1;
-/// A difference in steepness (clear semi-diameter over radius) that counts as one unit.
-const STEEPNESS_UNIT: f64 = 0.03;
+/// A difference in group power that counts as one unit, in units of asinh(power × track): 15 % of a
+/// strong group's power, whatever its size.
+const POWER_UNIT: f64 = 0.15;
+/// A difference in curvature that counts as one unit, in units of asinh(curvature × track): a
+/// quarter of a strong surface's curvature.
+const CURVATURE_UNIT: f64 = 0.25;
 /// A difference in refractive index that counts as one unit.
 const INDEX_UNIT: f64 = 0.03;
 
@@ -18,7 +19,7 @@ const INDEX_UNIT: f64 = 0.03;
 pub struct Shape {
     /// Per group and element, the number of glasses: designs that differ here are different.
     pub elements: Vec<Vec<usize>>,
-    /// Group powers, surface steepnesses and glass indices, each in units of a difference that
+    /// Group powers, surface curvatures and glass indices, each in units of a difference that
     /// makes another design.
     pub numbers: Vec<f64>,
 }
@@ -33,6 +34,7 @@ impl Shape {
             let nm = *state.wavelengths_nm.first()?;
             design.train(state, nm).ok()
         });
+        let track_mm = design.housing.track_mm;
         let mut numbers = Vec::new();
         for g in 0..design.groups.len() {
             let first = sequence.first_surface(g);
@@ -42,13 +44,12 @@ impl Shape {
                 .as_ref()
                 .and_then(|train| first_order(train, first..first + surfaces).ok())
                 .map_or(0.0, |data| data.power_per_mm);
-            numbers.push((power * design.housing.track_mm).asinh() / POWER_UNIT);
+            numbers.push((power * track_mm).asinh() / POWER_UNIT);
         }
         let elements = || design.groups.iter().flat_map(|group| &group.elements);
         for element in elements() {
-            let semi_mm = 0.5 * element.diameter_mm;
-            let steepness = element.surfaces.iter().map(|surface| surface.curvature * semi_mm);
-            numbers.extend(steepness.map(|steepness| steepness / STEEPNESS_UNIT));
+            let curvatures = element.surfaces.iter().map(|surface| surface.curvature * track_mm);
+            numbers.extend(curvatures.map(|curvature| curvature.asinh() / CURVATURE_UNIT));
             let nm = design.beam.wavelengths_nm.first().copied().unwrap_or(0.0);
             let indices = element.glasses.iter().map(|glass| glass.index(nm).unwrap_or(0.0));
             numbers.extend(indices.map(|index| index / INDEX_UNIT));

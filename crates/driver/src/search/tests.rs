@@ -1,6 +1,7 @@
 use std::sync::atomic::{AtomicBool, Ordering};
 use std::time::{Duration, Instant};
 
+use merit_function::assessment::assess;
 use merit_function::block::BlockProblem;
 use merit_function::problem::MeritFunction;
 use merit_function::variables::Variables;
@@ -10,6 +11,7 @@ use serde_json::{Value, json};
 use surface_model::document::Document;
 
 use super::*;
+use crate::brief::BriefFile;
 use crate::design_file::DesignFile;
 use crate::sampling::stream;
 
@@ -29,6 +31,20 @@ fn problem(strategy: Strategy) -> SearchProblem {
     SearchProblem::of_design(&river(|_| {}), SearchSettings { strategy }).unwrap()
 }
 
+fn brief_document(name: &str) -> Value {
+    let text = match name {
+        "river-brief" => include_str!("../../../../configs/river-brief.json"),
+        "two-colour-brief" => include_str!("../../../../configs/two-colour-brief.json"),
+        _ => include_str!("../../../../configs/quay-brief.json"),
+    };
+    serde_json::from_str(text).unwrap()
+}
+
+fn brief(name: &str, strategy: Strategy) -> SearchProblem {
+    let file = BriefFile::read(Document::from_value(name, brief_document(name))).unwrap();
+    SearchProblem::of_brief(&file, SearchSettings { strategy }).unwrap()
+}
+
 fn found(problem: &SearchProblem, seed: u64, number: u64) -> Found {
     problem.start(seed, number, &running()).unwrap().found.unwrap()
 }
@@ -38,16 +54,31 @@ fn a_start_depends_on_seed_and_number_alone() {
     for strategy in Strategy::ALL {
         let problem = problem(strategy);
         let alone: Vec<StartResult> =
-            [3, 1, 2].iter().map(|&number| problem.start(5, number, &running()).unwrap()).collect();
-        let together: Vec<StartResult> = (1..4_u64)
+            [2, 1].iter().map(|&number| problem.start(5, number, &running()).unwrap()).collect();
+        let together: Vec<StartResult> = (1..3_u64)
             .into_par_iter()
             .map(|number| problem.start(5, number, &running()).unwrap())
             .collect();
         assert_eq!(alone[1], together[0], "{}", strategy.name());
-        assert_eq!(alone[2], together[1], "{}", strategy.name());
-        assert_eq!(alone[0], together[2], "{}", strategy.name());
+        assert_eq!(alone[0], together[1], "{}", strategy.name());
         let other = problem.start(6, 1, &running()).unwrap();
         assert_ne!(alone[1].found, other.found, "{}", strategy.name());
+    }
+}
+
+#[test]
+fn a_start_of_a_brief_depends_on_seed_and_number_alone() {
+    for strategy in Strategy::ALL {
+        let problem = brief("two-colour-brief", strategy);
+        let alone: Vec<StartResult> =
+            (0..3).rev().map(|number| problem.start(5, number, &running()).unwrap()).collect();
+        let mut together: Vec<StartResult> = (0..3_u64)
+            .into_par_iter()
+            .map(|number| problem.start(5, number, &running()).unwrap())
+            .collect();
+        together.reverse();
+        assert_eq!(alone, together, "{}", strategy.name());
+        assert!(alone.iter().any(|result| result.found.is_some()), "{}", strategy.name());
     }
 }
 
@@ -100,27 +131,69 @@ fn what_is_held_stays_held_and_ranges_are_kept() {
     }
 }
 
-/// The best design is no child of the six rays it was found with: the same merit with twice as
-/// many, and as an assessment that integrates wavefronts to convergence tells it.
+/// The merit of a design file with so many rays.
+fn merit_with(file: &DesignFile, rays: usize) -> f64 {
+    let variables = Variables::new(&file.design, &file.wishes.limits, &file.free).unwrap();
+    let at = variables.start().to_vec();
+    let mut merit = MeritFunction::new(&file.design, &file.wishes, variables, rays).unwrap();
+    let mut residuals = vec![0.0; merit.shape().residuals()];
+    merit.residuals(&at, &mut residuals).unwrap();
+    residuals.iter().map(|r| r * r).sum()
+}
+
+/// Three singlet groups at five ratios, from five seeds: all come to the same best merit. It is no
+/// child of the six rays it was found with: it is the same with twice as many, and as an assessment
+/// that integrates wavefronts to convergence tells it.
 #[test]
-fn the_best_design_holds_at_twice_the_ray_density() {
-    let problem = problem(Strategy::BasinHopping);
-    let best =
-        (0..4).map(|number| found(&problem, 2, number)).min_by(|a, b| a.merit.total_cmp(&b.merit));
-    let best = best.unwrap();
-    let file = DesignFile::read(Document::from_value("best", best.design)).unwrap();
-    let merit_with = |rays| {
-        let variables = Variables::new(&file.design, &file.wishes.limits, &file.free).unwrap();
-        let at = variables.start().to_vec();
-        let mut merit = MeritFunction::new(&file.design, &file.wishes, variables, rays).unwrap();
-        let mut residuals = vec![0.0; merit.shape().residuals()];
-        merit.residuals(&at, &mut residuals).unwrap();
-        residuals.iter().map(|r| r * r).sum::<f64>()
+fn five_seeds_reach_one_merit_that_holds_at_twice_the_ray_density() {
+    let problem = brief("river-brief", Strategy::default());
+    let best_of = |seed| {
+        let found = (0..4).filter_map(|number| problem.start(seed, number, &running())?.found);
+        found.min_by(|a, b| a.merit.total_cmp(&b.merit)).unwrap()
     };
-    let (six, twelve) = (merit_with(6), merit_with(12));
-    assert!((six / twelve - 1.0).abs() < 1e-3, "{six} {twelve}");
-    assert!((best.merit / twelve - 1.0).abs() < 1e-3, "{} {twelve}", best.merit);
-    assert!(best.limits_kept);
+    let best: Vec<Found> = (1..6).map(best_of).collect();
+    let least = best.iter().map(|found| found.merit).fold(f64::INFINITY, f64::min);
+    for found in best {
+        assert!(found.merit <= 1.01 * least, "{} {least}", found.merit);
+        assert!(found.meets && found.limits_kept);
+        let file = DesignFile::read(Document::from_value("best", found.design)).unwrap();
+        let (six, twelve) = (merit_with(&file, 6), merit_with(&file, 12));
+        assert!((six / twelve - 1.0).abs() < 1e-3, "{six} {twelve}");
+        assert!((found.merit / twelve - 1.0).abs() < 1e-3, "{} {twelve}", found.merit);
+    }
+}
+
+/// What is found for a brief keeps to it: ratios, fixed groups, glasses allowed; and the beam goes
+/// through every lens.
+#[test]
+fn what_is_found_answers_the_brief() {
+    for name in ["two-colour-brief", "quay-brief"] {
+        let problem = brief(name, Strategy::default());
+        let written = brief_document(name);
+        let results = (0..3).filter_map(|number| problem.start(1, number, &running()));
+        let found: Vec<Found> = results.filter_map(|result| result.found).collect();
+        assert!(!found.is_empty(), "{name}");
+        for found in found {
+            assert!(found.limits_kept, "{name}");
+            let allowed = written["glasses_allowed"].as_array().unwrap();
+            for group in found.design["groups"].as_array().unwrap() {
+                for element in group["elements"].as_array().unwrap() {
+                    let glasses = element["glasses"].as_array().unwrap();
+                    assert!(glasses.iter().all(|glass| allowed.contains(glass)), "{glasses:?}");
+                }
+            }
+            for key in ["beam", "housing", "goals", "limits"] {
+                assert_eq!(found.design[key], written[key], "{name} {key}");
+            }
+            let file = DesignFile::read(Document::from_value("found", found.design)).unwrap();
+            let assessed = assess(&file.design, &file.wishes);
+            assert_eq!(assessed.warnings, Vec::<String>::new(), "{name}");
+            let elements = file.design.groups.iter().flat_map(|group| &group.elements);
+            for (element, assessed) in elements.zip(assessed.elements) {
+                assert!(assessed.footprint_mm.unwrap() <= element.diameter_mm, "{name}");
+            }
+        }
+    }
 }
 
 #[test]

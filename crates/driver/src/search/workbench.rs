@@ -1,20 +1,16 @@
-//! Where a start does its work: one template's merit functions, and the local solver on them.
+//! Where a start does its work: the grounds of its candidates, and the local solver on them.
 
 use std::sync::atomic::{AtomicBool, Ordering};
 
-use merit_function::block::{BlockProblem, Bounds};
-use merit_function::problem::{MeritFunction, RAYS};
+use merit_function::problem::MeritFunction;
 
-use super::candidate::Candidate;
-use super::template::Template;
-use crate::optimise::{OptimiseError, merit_of};
-use crate::solve::{self, Interruptible, Settings, Stopped, Unwatched};
+use super::candidate::{Candidate, keep_best};
+use super::ground::Ground;
+use crate::sampling::RandomStream;
+use crate::solve::{self, Interruptible, Outcome, Settings, Stopped, Unwatched};
 
-/// Steps in which a point must reach first order.
-const FIRST_ORDER_STEPS: u64 = 30;
-/// How far off the goals a point may still be, as a sum of squares in units of their `within`, to
-/// count as at first order.
-const FIRST_ORDER_REACHED: f64 = 1e-2;
+/// A merit at which nothing is left to gain: every goal met more than ten thousand times over.
+const NOTHING_LEFT: f64 = 1e-9;
 
 /// The user wants to stop; what is under way is worth nothing.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -29,92 +25,74 @@ pub(super) enum Effort {
     Whole,
 }
 
-/// One template's merit functions, reused from point to point.
+/// The grounds of a start, and the flag that ends it.
 pub(super) struct Workbench<'p> {
-    pub(super) template: &'p Template,
-    exact: MeritFunction,
-    first_order: MeritFunction,
+    grounds: Vec<Ground>,
     interrupt: &'p AtomicBool,
-    residuals: Vec<f64>,
     /// Local optimisations done.
     pub(super) optimisations: u64,
 }
 
 impl<'p> Workbench<'p> {
-    pub(super) fn new(
-        template: &'p Template,
-        interrupt: &'p AtomicBool,
-    ) -> Result<Self, OptimiseError> {
-        let exact = merit_of(&template.file)?;
-        let variables = exact.variables().clone();
-        let design = &template.file.design;
-        let first_order = MeritFunction::new(design, &template.first_order, variables, RAYS)?;
-        let residuals = vec![0.0; exact.shape().residuals()];
-        Ok(Self { template, exact, first_order, interrupt, residuals, optimisations: 0 })
+    pub(super) fn new(interrupt: &'p AtomicBool) -> Self {
+        Self { grounds: Vec::new(), interrupt, optimisations: 0 }
     }
 
-    pub(super) fn exact(&self) -> &MeritFunction {
-        &self.exact
+    /// Makes room for a ground and tells its place.
+    pub(super) fn lay(&mut self, ground: Ground) -> usize {
+        self.grounds.push(ground);
+        self.grounds.len() - 1
     }
 
-    pub(super) fn bounds(&self) -> &[Bounds] {
-        self.exact.bounds()
+    pub(super) fn ground(&self, candidate: &Candidate) -> &Ground {
+        &self.grounds[candidate.ground]
     }
 
-    fn watch(&self) -> Result<(), Interrupted> {
+    /// Heeds the flag.
+    pub(super) fn watch(&self) -> Result<(), Interrupted> {
         if self.interrupt.load(Ordering::Relaxed) { Err(Interrupted) } else { Ok(()) }
     }
 
-    /// Brings a point to the ratio, collimation and limits wanted, to first order, and traces it;
-    /// `None` where it does not get there, or loses rays.
-    pub(super) fn bring_to_first_order(
-        &mut self,
-        point: &[f64],
-    ) -> Result<Option<Candidate>, Interrupted> {
-        self.watch()?;
-        let settings = steps(FIRST_ORDER_STEPS).with_target(FIRST_ORDER_REACHED);
-        let Ok(settings) = settings else { return Ok(None) };
-        let mut observer = Interruptible { stop: self.interrupt, observer: Unwatched };
-        let outcome = solve::run(&mut self.first_order, point, &settings, &mut observer);
-        let Ok(outcome) = outcome else { return Ok(None) };
-        if outcome.stopped == Stopped::Interrupted {
-            return Err(Interrupted);
-        }
-        let reached = outcome.limits_kept() && outcome.sum_of_squares <= FIRST_ORDER_REACHED;
-        if !reached || self.exact.residuals(&outcome.variables, &mut self.residuals).is_err() {
-            return Ok(None);
-        }
-        let merit: f64 = self.residuals.iter().map(|r| r * r).sum();
-        let candidate = Candidate { variables: outcome.variables, merit, limits_kept: true };
-        Ok(merit.is_finite().then_some(candidate))
+    /// A point of a ground as a candidate that keeps its limits; `None` where it loses rays.
+    pub(super) fn stand(&mut self, ground: usize, variables: Vec<f64>) -> Option<Candidate> {
+        let merit = self.grounds[ground].merit(&variables)?;
+        Some(Candidate { ground, variables, merit, limits_kept: true })
     }
 
-    /// Optimises locally from a point; `None` where it cannot be evaluated.
+    /// The local solver on any problem of the start; `None` where it cannot begin.
+    pub(super) fn solve(
+        &self,
+        problem: &mut MeritFunction,
+        from: &[f64],
+        settings: &Settings,
+    ) -> Result<Option<Outcome>, Interrupted> {
+        solve(problem, from, settings, self.interrupt)
+    }
+
+    /// Optimises locally from a point of a ground; `None` where it cannot be evaluated.
     pub(super) fn improve(
         &mut self,
+        ground: usize,
         from: &[f64],
         effort: Effort,
     ) -> Result<Option<Candidate>, Interrupted> {
         self.watch()?;
         self.optimisations += 1;
         let settings = match effort {
-            Effort::Whole => Settings::default(),
-            Effort::Steps(most) => steps(most),
+            Effort::Whole => Settings::default().with_target(NOTHING_LEFT).unwrap_or_default(),
+            Effort::Steps(most) => short(most),
         };
-        let mut observer = Interruptible { stop: self.interrupt, observer: Unwatched };
-        let outcome = solve::run(&mut self.exact, from, &settings, &mut observer);
-        let Ok(outcome) = outcome else { return Ok(None) };
-        if outcome.stopped == Stopped::Interrupted {
-            return Err(Interrupted);
-        }
-        Ok(Some(Candidate {
+        let problem = &mut self.grounds[ground].exact;
+        let outcome = solve(problem, from, &settings, self.interrupt)?;
+        Ok(outcome.map(|outcome| Candidate {
+            ground,
             limits_kept: outcome.limits_kept(),
             merit: outcome.sum_of_squares,
             variables: outcome.variables,
         }))
     }
 
-    /// Improves each candidate, drops what cannot be evaluated, keeps the best `count`.
+    /// Improves each candidate and keeps the best `count`, best first.
     pub(super) fn halve(
         &mut self,
         candidates: &mut Vec<Candidate>,
@@ -122,17 +100,43 @@ impl<'p> Workbench<'p> {
         count: usize,
     ) -> Result<(), Interrupted> {
         for candidate in candidates.iter_mut() {
-            if let Some(improved) = self.improve(&candidate.variables, effort)? {
+            let improved = self.improve(candidate.ground, &candidate.variables, effort)?;
+            if let Some(improved) = improved {
                 *candidate = improved;
             }
         }
-        super::candidate::keep_best(candidates, count);
+        keep_best(candidates, count);
         Ok(())
+    }
+
+    /// A candidate's variables, shaken.
+    pub(super) fn shake(
+        &self,
+        candidate: &Candidate,
+        share: f64,
+        random: &mut RandomStream,
+    ) -> Vec<f64> {
+        self.ground(candidate).shake(&candidate.variables, share, random)
     }
 }
 
-/// A short local optimisation: three steps that bring less than a thousandth of the merit end it.
-fn steps(most: u64) -> Settings {
+fn solve(
+    problem: &mut MeritFunction,
+    from: &[f64],
+    settings: &Settings,
+    interrupt: &AtomicBool,
+) -> Result<Option<Outcome>, Interrupted> {
+    let mut observer = Interruptible { stop: interrupt, observer: Unwatched };
+    match solve::run(problem, from, settings, &mut observer) {
+        Ok(outcome) if outcome.stopped == Stopped::Interrupted => Err(Interrupted),
+        outcome => Ok(outcome.ok()),
+    }
+}
+
+/// A short local optimisation: three steps in a row that bring less than a thousandth of the merit
+/// end it.
+pub(super) fn short(most: u64) -> Settings {
     let short = Settings::default().with_max_iterations(most);
-    short.and_then(|settings| settings.with_reduction(1e-3)).unwrap_or_default()
+    let short = short.and_then(|settings| settings.with_reduction(1e-3));
+    short.and_then(|settings| settings.with_target(NOTHING_LEFT)).unwrap_or_default()
 }

@@ -41,8 +41,9 @@ impl Request {
         let share = part::share(arguments.part.as_deref(), &|name| std::env::var(name).ok())?;
         let settings = SearchSettings {
             strategy: match arguments.strategy {
-                StrategyArgument::BasinHopping => Strategy::BasinHopping,
                 StrategyArgument::Multistart => Strategy::Multistart,
+                StrategyArgument::BasinHopping => Strategy::BasinHopping,
+                StrategyArgument::DifferentialEvolution => Strategy::DifferentialEvolution,
             },
         };
         let quiet = arguments.quiet;

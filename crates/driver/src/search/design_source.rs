@@ -1,14 +1,15 @@
-//! A template: a design whose free numbers are to be found, and how points of the unit cube become
-//! values for them.
-
-use std::f64::consts::PI;
+//! Points of a design file: its free numbers throughout their ranges.
 
 use merit_function::block::Bounds;
+use merit_function::problem::{MeritFunction, RAYS};
 use merit_function::variables::{SharedVariable, Variables};
 use merit_function::wishes::Wishes;
 use rand::RngExt;
 use surface_model::place::Place;
 
+use super::candidate::Candidate;
+use super::ground::{Ground, likely_range};
+use super::workbench::{Interrupted, Workbench, short};
 use crate::design_file::DesignFile;
 use crate::optimise::{OptimiseError, merit_of};
 use crate::sampling::RandomStream;
@@ -16,26 +17,26 @@ use crate::sampling::RandomStream;
 /// Points crowd towards flat surfaces: a curvature is its bound times this power of the distance
 /// from the middle of the cube. Beam expanders are made of weak surfaces and a few strong ones.
 const CROWDING: f64 = 2.0;
-/// A length without an upper bound is sampled up to this many times its value in the file.
-const LONGEST: f64 = 3.0;
-
-/// Slope and ratio wanted to first order where a file has no such goals: what they are within
-/// matters little, as both can be met exactly.
+/// Slope wanted to first order where a file has no such goal, µrad: what it is within matters
+/// little, as it can be met exactly.
 const SLOPE_WITHIN_URAD: f64 = 20.0;
+/// Steps in which a point must reach first order.
+const FIRST_ORDER_STEPS: u64 = 30;
+/// How far off the goals a point may still be, as a sum of squares in units of their `within`, to
+/// count as at first order.
+const FIRST_ORDER_REACHED: f64 = 1e-2;
+/// Points around the file's own numbers are shaken by these powers of ten of an ordinary shake.
+const AROUND: std::ops::Range<f64> = -2.0..0.5;
 
-/// A design to be searched.
-#[derive(Debug, Clone)]
-pub(super) struct Template {
-    /// The file; its free numbers are a start among others.
+/// A design file to be searched.
+#[derive(Debug)]
+pub(super) struct DesignSource {
     pub(super) file: DesignFile,
     /// Its wishes with first-order goals alone.
-    pub(super) first_order: Wishes,
-    /// Per variable, the range points are drawn from, and how.
+    first_order: Wishes,
     draws: Vec<Draw>,
-    /// Own variables, as (state, gap) and in the order of the packed vector.
     own: Vec<OwnSpacing>,
     gaps: usize,
-    shared: usize,
 }
 
 /// How a shared variable follows from a coordinate.
@@ -58,11 +59,13 @@ struct OwnSpacing {
     bounds: Bounds,
 }
 
-impl Template {
-    /// The template of a design file.
-    ///
-    /// # Errors
-    /// The file has no goals or nothing to change, or its ranges contradict each other.
+/// The problems of a start on a design file.
+pub(super) struct DesignBench {
+    first_order: MeritFunction,
+    ground: usize,
+}
+
+impl DesignSource {
     pub(super) fn new(file: DesignFile) -> Result<Self, OptimiseError> {
         let merit = merit_of(&file)?;
         let variables = merit.variables();
@@ -70,7 +73,6 @@ impl Template {
         let draws = draws(variables, track_mm);
         let own = own_spacings(&file, variables, track_mm);
         let gaps = file.design.groups.len() - 1;
-        let shared = variables.shared().len();
         let mut first_order = file.wishes.clone();
         for goals in &mut first_order.states {
             goals.wavefront_rms_waves = None;
@@ -78,18 +80,52 @@ impl Template {
                 goals.exit_slope_urad.get_or_insert(SLOPE_WITHIN_URAD);
             }
         }
-        Ok(Self { file, first_order, draws, own, gaps, shared })
+        Ok(Self { file, first_order, draws, own, gaps })
     }
 
-    /// Coordinates of a point.
+    /// Sets up the problems of a start.
+    pub(super) fn bench(&self, bench: &mut Workbench<'_>) -> Result<DesignBench, OptimiseError> {
+        let exact = merit_of(&self.file)?;
+        let variables = exact.variables().clone();
+        let design = &self.file.design;
+        let first_order = MeritFunction::new(design, &self.first_order, variables, RAYS)?;
+        let ground = bench.lay(Ground::new(exact, design.housing.track_mm));
+        Ok(DesignBench { first_order, ground })
+    }
+
+    /// Coordinates of a point: one a shared variable, two a gap between groups.
     pub(super) fn dimensions(&self) -> usize {
         self.draws.len() + 2 * self.gaps
+    }
+
+    /// The candidate at a point of the unit cube, if there is one.
+    pub(super) fn at(
+        &self,
+        problems: &mut DesignBench,
+        bench: &mut Workbench<'_>,
+        point: &[f64],
+    ) -> Result<Option<Candidate>, Interrupted> {
+        bring_to_first_order(problems, bench, &self.place(point))
+    }
+
+    /// A candidate around the file's own numbers, if there is one.
+    pub(super) fn around(
+        &self,
+        problems: &mut DesignBench,
+        bench: &mut Workbench<'_>,
+        random: &mut RandomStream,
+    ) -> Result<Option<Candidate>, Interrupted> {
+        let share = 10.0_f64.powf(random.random_range(AROUND));
+        let variables = problems.first_order.variables().start().to_vec();
+        let Some(file) = bench.stand(problems.ground, variables) else { return Ok(None) };
+        let shaken = bench.shake(&file, share, random);
+        bring_to_first_order(problems, bench, &shaken)
     }
 
     /// The variables a point of the unit cube stands for. Each gap between groups has two
     /// coordinates: its length at the lowest ratio and at the highest. States between them lie
     /// between.
-    pub(super) fn place(&self, point: &[f64]) -> Vec<f64> {
+    fn place(&self, point: &[f64]) -> Vec<f64> {
         let (shared, gaps) = point.split_at(self.draws.len());
         let glass = self.draws.iter().zip(shared).map(|(draw, &u)| draw.at(u));
         let spacing = |own: &OwnSpacing| {
@@ -98,31 +134,23 @@ impl Template {
         };
         glass.chain(self.own.iter().map(spacing)).collect()
     }
+}
 
-    /// The variables shaken: curvatures by `share` of themselves and of what is common, lengths by
-    /// `share` of themselves and of the tube.
-    pub(super) fn shake(
-        &self,
-        variables: &[f64],
-        share: f64,
-        bounds: &[Bounds],
-        random: &mut RandomStream,
-    ) -> Vec<f64> {
-        let draw = |j: usize| -> f64 {
-            if j < self.shared {
-                self.draws[j].spread()
-            } else {
-                self.own[j - self.shared].spread()
-            }
-        };
-        let shaken = variables.iter().zip(bounds).enumerate();
-        shaken
-            .map(|(j, (&x, bounds))| {
-                let size = x.abs().min(10.0 * draw(j)) + draw(j);
-                bounds.clamp(x + share * size * normal(random))
-            })
-            .collect()
-    }
+/// Brings a point to the ratio, collimation and limits wanted, to first order, and traces it;
+/// `None` where it does not get there, or loses rays.
+fn bring_to_first_order(
+    problems: &mut DesignBench,
+    bench: &mut Workbench<'_>,
+    point: &[f64],
+) -> Result<Option<Candidate>, Interrupted> {
+    bench.watch()?;
+    let Ok(settings) = short(FIRST_ORDER_STEPS).with_target(FIRST_ORDER_REACHED) else {
+        return Ok(None);
+    };
+    let outcome = bench.solve(&mut problems.first_order, point, &settings)?;
+    let reached = outcome
+        .filter(|outcome| outcome.limits_kept() && outcome.sum_of_squares <= FIRST_ORDER_REACHED);
+    Ok(reached.and_then(|outcome| bench.stand(problems.ground, outcome.variables)))
 }
 
 impl Draw {
@@ -137,33 +165,10 @@ impl Draw {
             Self::Kept(value) => value,
         }
     }
-
-    /// How far it goes in an ordinary shake.
-    fn spread(self) -> f64 {
-        match self {
-            Self::Curvature(bounds) => 0.02 * (bounds.high - bounds.low),
-            Self::Even(bounds) => 0.1 * (bounds.high - bounds.low),
-            Self::Kept(value) => 0.1 * value.abs(),
-        }
-    }
-}
-
-impl OwnSpacing {
-    fn spread(self) -> f64 {
-        0.02 * (self.bounds.high - self.bounds.low)
-    }
 }
 
 fn between(bounds: Bounds, u: f64) -> f64 {
     bounds.clamp(bounds.low + u * (bounds.high - bounds.low))
-}
-
-/// A number of the normal distribution (G. E. P. Box and M. E. Muller, Ann. Math. Stat. 29, 610
-/// (1958)).
-fn normal(random: &mut RandomStream) -> f64 {
-    let (u, v): (f64, f64) = (random.random(), random.random());
-    // 1 − u is above 0, so the logarithm is finite.
-    (-2.0 * (1.0 - u).ln()).sqrt() * (2.0 * PI * v).cos()
 }
 
 fn draws(variables: &Variables, track_mm: f64) -> Vec<Draw> {
@@ -174,8 +179,7 @@ fn draws(variables: &Variables, track_mm: f64) -> Vec<Draw> {
         }
         SharedVariable::Glass(Place::Radius(_)) => Draw::Even(bounds),
         SharedVariable::Glass(Place::Thickness { .. } | Place::Air { .. }) => {
-            let longest = bounds.low.max(LONGEST * start).max(0.02 * track_mm);
-            Draw::Even(Bounds { low: bounds.low, high: bounds.high.min(longest) })
+            Draw::Even(likely_range(bounds, start, track_mm))
         }
         SharedVariable::FixedPosition(_) => Draw::Even(Bounds { low: 0.0, high: track_mm }),
         SharedVariable::Glass(_) | SharedVariable::TravelStart(_) => Draw::Kept(start),

@@ -1,0 +1,114 @@
+//! Points of a brief: first-order layouts of every family, glass and order of elements it allows.
+
+use merit_function::assessment::assess;
+use merit_function::block::Bounds;
+use merit_function::problem::{MeritFunction, RAYS};
+use merit_function::variables::{FreePlace, Variables};
+use serde_json::json;
+use surface_model::design::Design;
+use surface_model::document::Document;
+use surface_model::place::Place;
+
+use super::candidate::Candidate;
+use super::ground::Ground;
+use super::workbench::{Interrupted, Workbench};
+use crate::design_file::DesignFile;
+use crate::optimise::{OptimiseError, require_goal};
+use crate::start::{Layout, Starts};
+
+/// What is free in the designs of a brief, in the words of a design file.
+const FREE: [&str; 4] = ["radii", "spacings", "thicknesses", "airs"];
+
+/// Clear diameter over the diameter the traced rays take up, where it has to grow, and what it is a
+/// multiple of: common practice, no published source.
+const CLEAR: f64 = 1.1;
+const CLEAR_STEP_MM: f64 = 0.5;
+
+/// A brief to be searched.
+#[derive(Debug)]
+pub(super) struct BriefSource {
+    pub(super) starts: Starts,
+}
+
+/// The layouts that the grounds of a start were made of, by the number of the ground.
+pub(super) type Layouts = Vec<Layout>;
+
+impl BriefSource {
+    /// # Errors
+    /// The brief has no goals.
+    pub(super) fn new(starts: Starts) -> Result<Self, OptimiseError> {
+        require_goal(&starts.brief().wishes)?;
+        Ok(Self { starts })
+    }
+
+    /// The candidate at a point of the unit cube, if there is one.
+    pub(super) fn at(
+        &self,
+        layouts: &mut Layouts,
+        bench: &mut Workbench<'_>,
+        point: &[f64],
+    ) -> Result<Option<Candidate>, Interrupted> {
+        bench.watch()?;
+        Ok(self.starts.layout(point).ok().and_then(|layout| self.stand(layouts, bench, layout)))
+    }
+
+    /// A layout as a candidate.
+    pub(super) fn stand(
+        &self,
+        layouts: &mut Layouts,
+        bench: &mut Workbench<'_>,
+        layout: Layout,
+    ) -> Option<Candidate> {
+        let design = &layout.design;
+        let wishes = &self.starts.brief().wishes;
+        let variables = Variables::new(design, &wishes.limits, &free(design)).ok()?;
+        let exact = MeritFunction::new(design, wishes, variables, RAYS).ok()?;
+        let start = exact.variables().start().to_vec();
+        let ground = bench.lay(Ground::new(exact, design.housing.track_mm));
+        layouts.push(layout);
+        bench.stand(ground, start)
+    }
+
+    /// A finished candidate on a ground of its own, its clear diameters made large enough for the
+    /// beam that it has by now; `None` where they are.
+    pub(super) fn refitted(
+        &self,
+        layouts: &mut Layouts,
+        bench: &mut Workbench<'_>,
+        candidate: &Candidate,
+    ) -> Option<Candidate> {
+        let mut layout = layouts.get(candidate.ground)?.clone();
+        let variables = bench.ground(candidate).exact.variables();
+        variables.write(&candidate.variables, &mut layout.design);
+        let assessed = assess(&layout.design, &self.starts.brief().wishes).elements;
+        let elements = layout.design.groups.iter_mut().flat_map(|group| &mut group.elements);
+        let mut outgrown = false;
+        for (element, assessed) in elements.zip(assessed) {
+            let Some(footprint_mm) = assessed.footprint_mm else { continue };
+            if footprint_mm > element.diameter_mm {
+                outgrown = true;
+                let diameter_mm = (footprint_mm * CLEAR / CLEAR_STEP_MM).ceil() * CLEAR_STEP_MM;
+                element.diameter_mm = diameter_mm;
+                for surface in &mut element.surfaces {
+                    surface.semi_diameter = 0.5 * diameter_mm;
+                }
+            }
+        }
+        if outgrown { self.stand(layouts, bench, layout) } else { None }
+    }
+
+    /// The design file of a candidate.
+    pub(super) fn file(&self, layout: &Layout, design: &Design, note: &str) -> Option<DesignFile> {
+        let file = self.starts.design_file(layout, design, note).ok()?;
+        let mut document = file.document().value().clone();
+        document["free"] = json!(FREE);
+        DesignFile::read(Document::from_value(file.label(), document)).ok()
+    }
+}
+
+/// Every number that the words of [`FREE`] stand for.
+fn free(design: &Design) -> Vec<FreePlace> {
+    let places = Place::all(design).into_iter();
+    let places = places.filter(|place| !matches!(place, Place::Conic(_) | Place::Asphere(..)));
+    places.map(|place| FreePlace { place, own_range: Bounds::FREE }).collect()
+}
