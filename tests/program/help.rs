@@ -3,12 +3,16 @@
 use crate::program::{program, run, run_on};
 use crate::readme::scene;
 
-const COMMANDS: [&str; 10] = [
+const COMMANDS: [&str; 14] = [
+    "start",
     "assess",
     "optimise",
     "cam",
     "report",
     "overnight",
+    "sweep",
+    "retune",
+    "tolerance",
     "gather",
     "trace",
     "glass",
@@ -53,6 +57,8 @@ fn wrong_command_lines_are_put_right() {
         "optimise configs/river-lidar-2x-6x.json --target-merit nan",
         "optimise configs/river-lidar-2x-6x.json --progress-every -3",
         "optimise x --force",
+        "start configs/river-brief.json --rank 0",
+        "start configs/river-lidar-2x-6x.json",
         "assess no-such-file.json",
         "assess configs",
         "schema desing",

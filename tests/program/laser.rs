@@ -224,3 +224,79 @@ fn ranges_are_checked_before_anything_is_computed() {
         assert!(ended.err.contains("a range is a number of metres"), "{}", ended.err);
     }
 }
+
+/// Where the keys about the laser stand, in a design that has them all but for what contradicts
+/// another.
+fn laser_keys() -> (Value, Vec<String>) {
+    let mut design: Value = serde_json::from_str(&with(&[
+        ("/goals/divergence_mrad", json!({ "within": 0.5 })),
+        ("/goals/diameter_at_range_mm", json!({ "range_m": 50.0, "wanted": 20.0, "within": 9.0 })),
+        ("/limits/double_ghost_clearance_mm", json!({ "min": 0.5 })),
+    ]))
+    .unwrap();
+    for name in ["coating", "glass"] {
+        design["damage_thresholds"][name].as_object_mut().unwrap().shift_remove("note");
+    }
+    let ours = [
+        "/beam/m_squared",
+        "/beam/divergence_mrad",
+        "/beam/p",
+        "/coating/",
+        "/damage_thresholds/",
+        "/goals/divergence_mrad",
+        "/goals/diameter_at_range_mm",
+        "/states/3/goals/exit_focus_m",
+        "/limits/fluence_j_cm2",
+        "/limits/ghost_clearance_mm",
+        "/limits/double_ghost_clearance_mm",
+    ];
+    let pointers = crate::designs::pointers(&design).into_iter();
+    let pointers = pointers.filter(|at| ours.iter().any(|ours| at.starts_with(ours)));
+    (design, pointers.collect())
+}
+
+#[test]
+fn every_key_misspelt_is_recognised() {
+    let (whole, pointers) = laser_keys();
+    assert!(pointers.len() > 20);
+    for pointer in pointers {
+        let (parent, key) = pointer.rsplit_once('/').unwrap();
+        let (front, last) = key.split_at(key.len() - 2);
+        let slip: String = front.chars().chain(last.chars().rev()).collect();
+        if slip == key {
+            continue;
+        }
+        let mut design = whole.clone();
+        let map = design.pointer_mut(parent).unwrap().as_object_mut().unwrap();
+        let value = map.shift_remove(key).unwrap();
+        map.insert(slip, value);
+        let ended = run_on("assess -", &text(&design));
+        assert_eq!((ended.status, ended.out.as_str()), (2, ""), "{pointer}");
+        assert!(
+            ended.err.contains(&format!("did you mean \"{key}\"?")),
+            "{pointer}: {}",
+            ended.err
+        );
+    }
+}
+
+#[test]
+fn extreme_numbers_are_answered_or_refused() {
+    let (whole, pointers) = laser_keys();
+    for pointer in pointers {
+        if !whole.pointer(&pointer).is_some_and(Value::is_number) {
+            continue;
+        }
+        let mut design = whole.clone();
+        *design.pointer_mut(&pointer).unwrap() = json!("@@");
+        let written = text(&design);
+        for token in ["1e308", "5e-324", "-0.0", "-1e308"] {
+            let ended = run_on("assess - --json", &written.replace("\"@@\"", token));
+            assert!([0, 2].contains(&ended.status), "{pointer} = {token}: {}", ended.err);
+            assert!(ended.status == 2 || ended.json().is_object(), "{pointer} = {token}");
+            for word in ["NaN", "inf,"] {
+                assert!(!ended.out.contains(word), "{pointer} = {token}");
+            }
+        }
+    }
+}

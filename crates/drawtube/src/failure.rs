@@ -5,11 +5,17 @@ use std::path::PathBuf;
 
 use driver::cam::CamError;
 use driver::optimise::OptimiseError;
+use driver::retune::RetuneError;
 use driver::run::{RunError, ShareError};
 use driver::search::SearchError as DesignSearchError;
 use driver::solve::SettingsError;
+use driver::start::StartError;
+use driver::temperature::AtTemperatureError;
+use driver::tolerance::ToleranceError;
 use driver::write_whole::WriteError;
+use report::RowsError;
 use report::ray::RayError;
+use report::start::Impossible;
 use serde_json::{Value, json};
 use surface_model::document::{Complaints, nearest, quoted};
 use surface_model::glass::{GlassError, LookupError, SearchError};
@@ -60,9 +66,32 @@ pub(crate) enum Failure {
     /// The design has no movement curve.
     #[error(transparent)]
     Cam(#[from] CamError),
-    /// A table could not be put into words.
-    #[error("the table cannot be written: {0}")]
-    Table(csv::Error),
+    /// The tolerances could not be told.
+    #[error(transparent)]
+    Tolerance(#[from] ToleranceError),
+    /// The design cannot be told at a temperature.
+    #[error(transparent)]
+    Temperature(#[from] AtTemperatureError),
+    /// Nothing suits.
+    #[error("nothing was found: {0}")]
+    NothingFound(&'static str),
+    /// A table could not be laid out.
+    #[error("the table cannot be laid out: {0}")]
+    Table(Box<dyn std::error::Error + Send + Sync>),
+    /// The brief contradicts itself.
+    #[error(transparent)]
+    Start(#[from] StartError),
+    /// No layout does what a brief asks.
+    #[error("{}", .0.message)]
+    Impossible(Impossible),
+    /// There are not so many layouts.
+    #[error("there is no layout {asked}: {found} differ enough to be told apart")]
+    NoSuchRank {
+        /// The rank asked for.
+        asked: usize,
+        /// How many layouts there are.
+        found: usize,
+    },
     /// The ray has no path.
     #[error(transparent)]
     Ray(#[from] RayError),
@@ -112,12 +141,27 @@ pub(crate) enum Failure {
     /// A result could not be made into a document.
     #[error("the result cannot be written as JSON: {0}")]
     Document(serde_json::Error),
+    /// A result could not be made into rows.
+    #[error("the result cannot be written as CSV: {0}")]
+    Rows(RowsError),
+    /// Threads cannot be started.
+    #[error("threads cannot be started: {0}")]
+    Threads(rayon::ThreadPoolBuildError),
     /// No method was run.
     #[error("no method was run")]
     NoStage,
     /// Signals cannot be listened to.
     #[error("signals cannot be listened to: {0}")]
     Signals(io::Error),
+}
+
+impl From<RetuneError> for Failure {
+    fn from(error: RetuneError) -> Self {
+        match error {
+            RetuneError::Input(complaints) => Self::Input(complaints),
+            RetuneError::Optimise(error) => Self::Optimise(error),
+        }
+    }
 }
 
 impl Failure {
@@ -140,13 +184,28 @@ impl Failure {
             }
             Self::DesignSearch(_) => ExitStatus::WrongInput,
             Self::Run(error) => status_of_run(error),
-            Self::Ray(RayError::Glass(_) | RayError::Direction { .. }) => ExitStatus::WrongInput,
+            Self::Tolerance(
+                ToleranceError::Nominal { .. }
+                | ToleranceError::Overflow { .. }
+                | ToleranceError::Spoilt { .. },
+            ) => ExitStatus::Failed,
+            Self::Tolerance(_) | Self::Temperature(AtTemperatureError::Temperature(_)) => {
+                ExitStatus::WrongInput
+            }
+            Self::Temperature(_) => ExitStatus::Failed,
             Self::Cam(CamError::State { .. }) => ExitStatus::Failed,
             Self::Cam(_) => ExitStatus::WrongInput,
-            Self::Ray(_)
+            Self::Ray(RayError::Glass(_) | RayError::Direction { .. }) => ExitStatus::WrongInput,
+            Self::Start(_)
+            | Self::Impossible(_)
+            | Self::NoSuchRank { .. }
+            | Self::Ray(_)
             | Self::Document(_)
-            | Self::Table(_)
+            | Self::Rows(_)
+            | Self::Threads(_)
             | Self::NoStage
+            | Self::NothingFound(_)
+            | Self::Table(_)
             | Self::Signals(_) => ExitStatus::Failed,
             Self::Write(_)
             | Self::Folder { .. }
@@ -174,6 +233,10 @@ impl Failure {
             Self::NoPart(_) => {
                 Some("give the part as I/N, or auto/N where only the index is known".to_owned())
             }
+            Self::Tolerance(error) => advice_on_tolerances(error),
+            Self::Temperature(AtTemperatureError::Temperature(error)) => error.advice(),
+            Self::Start(error) => Some(error.advice()),
+            Self::Impossible(impossible) => Some(impossible.advice.clone()),
             Self::Lookup(error) => error.advice(),
             Self::Glass(error) | Self::Ray(RayError::Glass(error)) => error.advice(),
             Self::Search(error) => error.advice(),
@@ -236,9 +299,27 @@ fn status_of(error: &OptimiseError) -> ExitStatus {
         OptimiseError::NoGoals
         | OptimiseError::NothingFree
         | OptimiseError::Variables(_)
-        | OptimiseError::Glass(_) => ExitStatus::WrongInput,
+        | OptimiseError::Glass(_)
+        | OptimiseError::Temperature(_) => ExitStatus::WrongInput,
         _ => ExitStatus::Failed,
     }
+}
+
+fn advice_on_tolerances(error: &ToleranceError) -> Option<String> {
+    let advice = match error {
+        ToleranceError::NothingRequired => {
+            "add \"goals\" to the file, or \"require\" to its \"tolerances\""
+        }
+        ToleranceError::Readjusted(_) => {
+            "give \"spacings\", an address such as \"/states/*/spacings_mm/1\", or \"none\""
+        }
+        ToleranceError::Nominal { .. } => "assess tells where rays fail",
+        ToleranceError::Spoilt { .. } => {
+            "tighten that tolerance, or make the surfaces wider than the beam"
+        }
+        _ => return None,
+    };
+    Some(advice.to_owned())
 }
 
 fn status_of_run(error: &RunError) -> ExitStatus {
@@ -277,6 +358,7 @@ fn advice_on(error: &OptimiseError) -> Option<String> {
             "begin with weaker curves or a narrower beam (traced_to); assess tells where rays fail"
         }
         OptimiseError::Glass(error) => return error.advice(),
+        OptimiseError::Temperature(error) => return error.advice(),
         _ => return None,
     };
     Some(advice.to_owned())

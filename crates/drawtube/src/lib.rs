@@ -9,6 +9,7 @@ mod arguments;
 mod colour;
 mod commands;
 mod console;
+mod destination;
 pub mod exit_status;
 mod failure;
 mod input;
@@ -41,8 +42,12 @@ fn run(arguments: Arguments) -> ExitStatus {
         Command::Optimise(arguments) => commands::optimise::run(arguments, &console),
         Command::Cam(arguments) => commands::cam::run(arguments, &console),
         Command::Report(arguments) => commands::report::run(arguments, &console),
+        Command::Tolerance(arguments) => commands::tolerance::run(arguments, &console),
+        Command::Retune(arguments) => commands::retune::run(arguments, &console),
+        Command::Start(arguments) => commands::start::run(arguments, &console),
         Command::Overnight(arguments) => commands::overnight::run(arguments, &console),
         Command::Gather(arguments) => commands::gather::run(&arguments, &console),
+        Command::Sweep(arguments) => commands::sweep::run(arguments, &console),
         Command::Trace(arguments) => commands::trace::run(arguments, &console),
         Command::Glass(arguments) => commands::glass::run(arguments, &console),
         Command::Schema(arguments) => commands::schema::run(arguments, &console),

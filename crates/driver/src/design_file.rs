@@ -1,4 +1,4 @@
-//! A design file: the document as it was written, and what its three owners make of it.
+//! A design file: the document as it was written, and what its owners make of it.
 
 use std::sync::OnceLock;
 
@@ -7,13 +7,16 @@ use merit_function::wishes::{Wishes, WishesDocument};
 use schemars::Schema;
 use serde_json::Value;
 use surface_model::design::Design;
-use surface_model::document::{Address, Complaint, Complaints, Document, layout, union};
+use surface_model::document::{
+    Address, Complaint, Complaints, Document, Place as PlaceInFile, layout, union,
+};
 use surface_model::optics_document::OpticsDocument;
 use surface_model::place::Place;
 use surface_model::ranges::LARGEST_RADIUS_MM;
 
 use crate::document_kind::{DESIGN, part};
 use crate::freedom::{self, FreedomDocument};
+use crate::tolerance::{self, Tolerances, TolerancesDocument};
 
 /// A design file, read and checked.
 #[derive(Debug, Clone)]
@@ -25,6 +28,8 @@ pub struct DesignFile {
     pub wishes: Wishes,
     /// What may change: `free` less `held`.
     pub free: Vec<FreePlace>,
+    /// How well it can be built: `tolerances`.
+    pub tolerances: Tolerances,
 }
 
 impl DesignFile {
@@ -38,6 +43,7 @@ impl DesignFile {
         let optics: OpticsDocument = document.read()?;
         let wanted: WishesDocument = document.read()?;
         let freedom: FreedomDocument = document.read()?;
+        let workshop: TolerancesDocument = document.read()?;
 
         let (design, wishes) = match (optics.resolve(), wanted.resolve()) {
             (Ok(design), Ok(wishes)) => (design, wishes),
@@ -47,12 +53,18 @@ impl DesignFile {
                 return Err(document.refuse(optics.chain(wanted)));
             }
         };
-        if let Some(lacks) = wishes.lacks_of(&design) {
-            return Err(document.refuse([lacks]));
+        let lacks = wishes.lacks_of(&design).map(Complaint::from);
+        if let Some(complaint) = lacks.or_else(|| silent_about_temperature(&design, &wishes)) {
+            return Err(document.refuse([complaint]));
         }
-        match freedom::resolve(&freedom, &design, document.value()) {
-            Ok(free) => Ok(Self { document, design, wishes, free }),
-            Err(complaints) => Err(document.refuse(complaints)),
+        let free = freedom::resolve(&freedom, &design, document.value());
+        let tolerances = tolerance::resolve(&workshop, &design, document.value());
+        match (free, tolerances) {
+            (Ok(free), Ok(tolerances)) => Ok(Self { document, design, wishes, free, tolerances }),
+            (free, tolerances) => {
+                let free = free.err().into_iter().flatten();
+                Err(document.refuse(free.chain(tolerances.err().into_iter().flatten())))
+            }
         }
     }
 
@@ -106,6 +118,20 @@ impl DesignFile {
     }
 }
 
+/// Goals at other temperatures need to know how everything changes with temperature.
+fn silent_about_temperature(design: &Design, wishes: &Wishes) -> Option<Complaint> {
+    let listed = wishes.temperatures_c.iter().enumerate();
+    listed.into_iter().find_map(|(i, &temperature_c)| {
+        let error = design.at_temperature(temperature_c).err()?;
+        Some(Complaint {
+            place: PlaceInFile::Value(Address::root().key("temperatures_c").index(i)),
+            found: error.to_string(),
+            expected: None,
+            advice: error.advice(),
+        })
+    })
+}
+
 /// Adds addresses to `held`, with names; those that stand there already are left out.
 pub(crate) fn hold(value: &mut Value, addresses: &[Address]) {
     let words: Vec<Value> =
@@ -147,9 +173,14 @@ fn own_schema() -> &'static Schema {
     SCHEMA.get_or_init(design_schema)
 }
 
-/// JSON Schema of design files: the union of what the three owners read.
+/// JSON Schema of design files: the union of what its owners read.
 #[must_use]
 pub fn design_schema() -> Schema {
-    let parts = [part::<OpticsDocument>(), part::<WishesDocument>(), part::<FreedomDocument>()];
+    let parts = [
+        part::<OpticsDocument>(),
+        part::<WishesDocument>(),
+        part::<FreedomDocument>(),
+        part::<TolerancesDocument>(),
+    ];
     union("A drawtube design", &parts)
 }

@@ -12,6 +12,7 @@ use merit_function::wishes::Wishes;
 use serde::Serialize;
 use surface_model::document::Complaints;
 use surface_model::glass::GlassError;
+use surface_model::temperature::TemperatureError;
 
 use crate::design_file::DesignFile;
 use crate::solve::{self, Observer, Outcome, Settings, SolveError, Stopped};
@@ -78,6 +79,9 @@ pub enum OptimiseError {
     /// Not even the innermost rays get through.
     #[error("the start cannot be traced: {0}")]
     Start(EvaluationFault),
+    /// Something does not say how it changes with temperature.
+    #[error(transparent)]
+    Temperature(#[from] TemperatureError),
     /// The solver refuses.
     #[error(transparent)]
     Solve(#[from] SolveError),
@@ -132,7 +136,8 @@ pub fn merit_of(file: &DesignFile) -> Result<MeritFunction, OptimiseError> {
         return Err(OptimiseError::NothingFree);
     }
     let variables = Variables::new(&file.design, &file.wishes.limits, &file.free)?;
-    Ok(MeritFunction::new(&file.design, &file.wishes, variables, RAYS)?)
+    let merit = MeritFunction::new(&file.design, &file.wishes, variables, RAYS)?;
+    Ok(merit.with_temperatures(&file.design, &file.wishes)?)
 }
 
 /// There has to be a goal that counts.

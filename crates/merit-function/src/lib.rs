@@ -25,6 +25,7 @@ pub mod assessment;
 mod beam_rows;
 pub mod block;
 mod bounds;
+mod climates;
 mod edge;
 pub mod fault;
 mod focus_rows;

@@ -208,6 +208,13 @@ impl Limits {
         Self { ranges, forbid_internal_focus }
     }
 
+    /// The ranges of these kinds alone.
+    #[must_use]
+    pub fn only(&self, kinds: &[LimitKind]) -> Self {
+        let mine = self.ranges.iter().filter(|(kind, _)| kinds.contains(kind));
+        Self { ranges: mine.copied().collect(), forbid_internal_focus: false }
+    }
+
     /// The range of one kind of limit, if it is given.
     #[must_use]
     pub fn range(&self, kind: LimitKind) -> Option<Range> {

@@ -25,10 +25,12 @@ use surface_model::gaussian::GaussianBeam;
 use surface_model::glass::GlassError;
 use surface_model::paraxial::{ParaxialRay, ParaxialWeights};
 use surface_model::quadrature::{BeamSample, beam_sample};
+use surface_model::temperature::TemperatureError;
 use surface_model::train::Train;
 
 use crate::beam_rows::BeamRows;
 use crate::block::{BlockProblem, BlockShape, Bounds, Linearisation, StateBlock};
+use crate::climates::Climate;
 use crate::fault::EvaluationFault;
 use crate::focus_rows::FocusFan;
 use crate::goals::Goals;
@@ -96,6 +98,10 @@ pub struct MeritFunction {
     bundle: Bundle,
     paraxial: ParaxialRay,
     beam_rows: BeamRows,
+    /// The same goals at other temperatures; their rows follow a state's own.
+    climates: Vec<Climate>,
+    /// Per state, the number of its rows at 20 °C.
+    rows_here: Vec<usize>,
     paths: Vec<f64>,
     gradient: Vec<f64>,
 }
@@ -156,6 +162,8 @@ impl MeritFunction {
         let mut bundle = Bundle::new();
         bundle.load(&trains, &sample.heights_mm);
         Ok(Self {
+            rows_here: rows.clone(),
+            climates: Vec::new(),
             shape: variables.shape(rows),
             variables,
             states,
@@ -177,6 +185,24 @@ impl MeritFunction {
         })
     }
 
+    /// Adds the goals at every other temperature that `wishes` names, of the same design.
+    ///
+    /// # Errors
+    /// Something does not say how it changes with temperature.
+    pub fn with_temperatures(
+        mut self,
+        design: &Design,
+        wishes: &Wishes,
+    ) -> Result<Self, TemperatureError> {
+        self.climates = Climate::all(design, wishes, &self.variables, self.beam.rays)?;
+        for climate in &self.climates {
+            for (rows, more) in self.shape.rows.iter_mut().zip(&climate.shape().rows) {
+                *rows += more;
+            }
+        }
+        Ok(self)
+    }
+
     /// The variables.
     #[must_use]
     pub fn variables(&self) -> &Variables {
@@ -190,6 +216,9 @@ impl MeritFunction {
         self.weights = RayWeights::new(&self.sample.weights);
         self.bundle.load(&self.trains, &self.sample.heights_mm);
         self.rows.set_edge_mm(self.beam.radius_mm * self.beam.reach * fraction);
+        for climate in &mut self.climates {
+            climate.set_aperture(fraction);
+        }
     }
 
     /// Brings every train to these values of the variables. Bounds keep spheres within reach of
@@ -384,10 +413,19 @@ impl BlockProblem for MeritFunction {
     fn residuals(&mut self, variables: &[f64], out: &mut [f64]) -> Result<(), EvaluationFault> {
         self.place(variables)?;
         self.trace(false)?;
+        for climate in &mut self.climates {
+            climate.evaluate(variables)?;
+        }
         let mut rest = out;
         for k in 0..self.states.len() {
-            let (own, behind) = rest.split_at_mut(self.shape.rows[k]);
+            let (own, mut behind) = rest.split_at_mut(self.rows_here[k]);
             self.state(k, own, None)?;
+            for climate in &self.climates {
+                let warm = climate.residuals(k);
+                let (here, next) = behind.split_at_mut(warm.len());
+                here.copy_from_slice(warm);
+                behind = next;
+            }
             rest = behind;
         }
         Ok(())
@@ -403,9 +441,14 @@ impl BlockProblem for MeritFunction {
         self.bundle.differentiate(self.variables.quantities().shapes());
         for (k, block) in out.states.iter_mut().enumerate() {
             let mut residuals = std::mem::take(&mut block.residuals);
-            let done = self.state(k, residuals.as_mut_slice(), Some(block));
+            let here = &mut residuals.as_mut_slice()[..self.rows_here[k]];
+            let done = self.state(k, here, Some(block));
             block.residuals = residuals;
             done?;
+        }
+        let mut first = self.rows_here.clone();
+        for climate in &mut self.climates {
+            climate.linearise(variables, &mut first, out)?;
         }
         self.rows.linearise(&self.states, &self.variables, variables, &mut out.limits)
     }

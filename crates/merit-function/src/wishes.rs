@@ -4,6 +4,7 @@ use schemars::JsonSchema;
 use serde::{Deserialize, Serialize};
 use surface_model::design::Design;
 use surface_model::document::{Address, Complain, Place};
+use surface_model::glass::{REFERENCE_C, THERMAL_RANGE_C};
 
 use crate::goals::{Goals, GoalsDocument};
 use crate::limits::{FocusDocument, LimitKind, Limits, LimitsDocument, Range, RangeDocument};
@@ -17,6 +18,10 @@ pub struct WishesDocument {
     /// Limits.
     #[serde(default)]
     pub limits: LimitsDocument,
+    /// Temperatures in °C at which the goals hold too, nothing re-adjusted; the design is drawn at
+    /// 20 °C, which always counts.
+    #[serde(default, skip_serializing_if = "Vec::is_empty")]
+    pub temperatures_c: Vec<f64>,
     /// What single states want differently.
     pub states: Vec<StateWishesDocument>,
 }
@@ -39,6 +44,15 @@ pub struct Wishes {
     pub states: Vec<Goals>,
     /// Limits.
     pub limits: Limits,
+    /// Temperatures at which the goals hold too, °C.
+    pub temperatures_c: Vec<f64>,
+}
+
+impl Wishes {
+    /// Temperatures beside the 20 °C a design is drawn at, °C.
+    pub fn other_temperatures_c(&self) -> impl Iterator<Item = &f64> {
+        self.temperatures_c.iter().filter(|&&temperature_c| temperature_c != REFERENCE_C)
+    }
 }
 
 /// A goal or limit that makes no sense. Its place is told beside it.
@@ -145,7 +159,18 @@ impl WishesDocument {
             }
             states.push(Goals::of_state(&self.goals, state.goals.as_ref(), weight));
         }
-        if faults.is_empty() { Ok(Wishes { states, limits }) } else { Err(faults) }
+        let (low, high) = THERMAL_RANGE_C;
+        for (i, &found) in self.temperatures_c.iter().enumerate() {
+            if !(low..=high).contains(&found) || self.temperatures_c[..i].contains(&found) {
+                let what = "a temperature";
+                let allowed = "a number from -100 to 140 °C, each once";
+                let error = WishError::OutOfRange { what, found, allowed };
+                faults
+                    .push(WishFault { at: Address::root().key("temperatures_c").index(i), error });
+            }
+        }
+        let temperatures_c = self.temperatures_c.clone();
+        if faults.is_empty() { Ok(Wishes { states, limits, temperatures_c }) } else { Err(faults) }
     }
 
     fn resolve_limits(&self, faults: &mut Vec<WishFault>) -> Limits {

@@ -10,5 +10,9 @@
 pub mod page;
 pub mod picture;
 pub mod ray;
+mod rows;
 pub mod shop;
+pub mod start;
 pub mod text;
+
+pub use rows::{RowsError, tolerance_rows};

@@ -72,6 +72,8 @@ pub struct Group {
     pub elements: Vec<Element>,
     /// Air between neighbouring elements, vertex to vertex, mm.
     pub airs_mm: Vec<f64>,
+    /// Linear expansion of its mount, where it is not the housing's, 1/K.
+    pub mount_expansion_per_k: Option<f64>,
 }
 
 impl Group {

@@ -21,6 +21,8 @@ pub struct Housing {
     pub track_mm: f64,
     /// Per group, whether it is fixed.
     pub fixed: Vec<bool>,
+    /// Linear expansion of the tube and, where a group says nothing else, of its mounts, 1/K.
+    pub expansion_per_k: Option<f64>,
 }
 
 /// What positions in the housing are measured from.

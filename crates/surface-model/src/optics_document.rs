@@ -103,6 +103,9 @@ pub struct GroupDocument {
     /// Air between neighbouring elements, vertex to vertex, mm; one fewer than elements.
     #[serde(default, skip_serializing_if = "Vec::is_empty")]
     pub airs_mm: Vec<f64>,
+    /// Linear expansion of the group's mount, 1/K, where it differs from the housing's.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub mount_expansion_per_k: Option<f64>,
 }
 
 /// One piece of glass, or a cemented stack.
@@ -165,6 +168,9 @@ pub struct HousingDocument {
     /// Names of the groups that do not move.
     #[serde(default)]
     pub fixed: Vec<String>,
+    /// Linear expansion of the tube and the mounts, 1/K: what temperatures other than 20 °C need.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub expansion_per_k: Option<f64>,
 }
 
 /// One ratio with its spacings.

@@ -12,7 +12,8 @@ use crate::optics_document::{
     ElementDocument, GroupDocument, OpticsDocument, RadiusDocument, ShapeDocument, StateDocument,
 };
 use crate::ranges::{
-    LARGEST_COEFFICIENT, LARGEST_CONIC, LARGEST_RADIUS_MM, LONGEST_MM, SMALLEST_RADIUS_MM,
+    LARGEST_COEFFICIENT, LARGEST_CONIC, LARGEST_EXPANSION_PER_K, LARGEST_RADIUS_MM, LONGEST_MM,
+    SMALLEST_RADIUS_MM,
 };
 use crate::resolve_laser::{beam_fault, laser};
 use crate::surface::{ASPHERE_TERMS, Surface, asphere_power};
@@ -28,6 +29,12 @@ const RADIUS: Allowed = Allowed {
     unit: " mm either way",
 };
 const RATIO: Allowed = Allowed { low: 0.01, high: 100.0, above_low: false, unit: " either way" };
+const EXPANSION: Allowed = Allowed {
+    low: -LARGEST_EXPANSION_PER_K,
+    high: LARGEST_EXPANSION_PER_K,
+    above_low: false,
+    unit: " 1/K",
+};
 const CONIC: Allowed =
     Allowed { low: -LARGEST_CONIC, high: LARGEST_CONIC, above_low: false, unit: "" };
 const COEFFICIENT: Allowed =
@@ -150,6 +157,7 @@ impl Resolver {
             let needed = elements.saturating_sub(1);
             self.count(airs_at.clone(), "airs", group.airs_mm.len(), needed, why);
             self.check_all(&airs_at, "an air", &group.airs_mm, DISTANCE);
+            self.expansion(at.clone().key("mount_expansion_per_k"), group.mount_expansion_per_k);
             let mut names = HashSet::new();
             let mut parts = Vec::with_capacity(elements);
             for (e, element) in group.elements.iter().enumerate() {
@@ -163,6 +171,7 @@ impl Resolver {
                 name: group.name.clone(),
                 elements: parts,
                 airs_mm: group.airs_mm.clone(),
+                mount_expansion_per_k: group.mount_expansion_per_k,
             });
         }
         out
@@ -275,7 +284,15 @@ impl Resolver {
                 }
             }
         }
-        Housing { track_mm: housing.track_mm, fixed }
+        self.expansion(at.key("expansion_per_k"), housing.expansion_per_k);
+        let expansion_per_k = housing.expansion_per_k;
+        Housing { track_mm: housing.track_mm, fixed, expansion_per_k }
+    }
+
+    fn expansion(&mut self, at: Address, found: Option<f64>) {
+        if let Some(found) = found {
+            self.check(at, "an expansion", found, EXPANSION);
+        }
     }
 
     fn states(&mut self, document: &OpticsDocument) -> Vec<ZoomState> {

@@ -41,6 +41,16 @@ pub(crate) struct AssessArguments {
         conflicts_with_all = ["all", "hazards"]
     )]
     pub(crate) ranges_m: Vec<f64>,
+    /// Tell also what the design does at these temperatures, °C, untouched and re-adjusted; it is
+    /// drawn at 20
+    #[arg(
+        long,
+        value_name = "C",
+        num_args = 1..,
+        value_delimiter = ',',
+        allow_negative_numbers = true
+    )]
+    pub(crate) temperature: Vec<f64>,
     /// Leave with status 3 if a goal is missed or a limit crossed
     #[arg(long)]
     pub(crate) require: bool,

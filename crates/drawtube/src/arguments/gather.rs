@@ -4,7 +4,7 @@ use std::path::PathBuf;
 
 use clap::Args;
 
-/// Put the parts of an overnight run together into the list that one machine would have found.
+/// Put the parts of an overnight run or a sweep together into what one machine would have found.
 ///
 /// DIR is a run folder with one or more parts in it, or several of them with a part each. Neither
 /// their order nor a part that is there twice makes a difference.

@@ -10,7 +10,11 @@ mod optimise;
 mod overnight;
 mod progress;
 mod report;
+mod retune;
 mod schema;
+mod start;
+mod sweep;
+mod tolerance;
 mod trace;
 
 use std::ffi::OsString;
@@ -27,7 +31,11 @@ pub(crate) use optimise::{MethodArgument, OptimiseArguments};
 pub(crate) use overnight::{OvernightArguments, StrategyArgument};
 pub(crate) use progress::ProgressArgument;
 pub(crate) use report::ReportArguments;
+pub(crate) use retune::RetuneArguments;
 pub(crate) use schema::{DocumentKind, SchemaArguments};
+pub(crate) use start::StartArguments;
+pub(crate) use sweep::SweepArguments;
+pub(crate) use tolerance::{GradeArgument, ToleranceArguments};
 pub(crate) use trace::TraceArguments;
 
 use crate::console::{Console, ErrorFormat};
@@ -91,9 +99,17 @@ pub(crate) enum Command {
     Cam(CamArguments),
     /// Write a page about a design, or about several side by side; sheets for the shop
     Report(ReportArguments),
+    /// Begin: work out layouts that can do what a brief asks, and rank them
+    Start(StartArguments),
+    /// Tell what a workshop's errors do to a design, and the yield
+    Tolerance(ToleranceArguments),
+    /// Optimise a design at every point of a grid or a sample
+    Sweep(SweepArguments),
+    /// After a change, move only what can still move, in stages
+    Retune(RetuneArguments),
     /// Search for designs for hours, in a run folder that survives anything
     Overnight(OvernightArguments),
-    /// Put the parts of an overnight run together
+    /// Put the parts of an overnight run or a sweep together
     Gather(GatherArguments),
     /// Follow one exact ray through a design, surface by surface
     Trace(TraceArguments),

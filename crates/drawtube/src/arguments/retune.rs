@@ -16,10 +16,9 @@ use clap::Args;
 #[derive(Debug, Args)]
 #[command(after_help = "\
 Examples:
-  drawtube retune configs/river-lidar-2x-6x.json --made exit \\
-    --change /groups/exit/elements/0/thicknesses_mm/0=5.12
+  drawtube retune configs/river-as-designed.json --change /housing/track_mm=151
   drawtube retune configs/two-colour-pairs.json --equivalents N-SF6 --most 3
-  drawtube retune configs/river-lidar-2x-6x.json --batch configs/river-units.csv")]
+  drawtube retune configs/river-as-designed.json --batch configs/river-units.csv")]
 pub(crate) struct RetuneArguments {
     /// The design; "-" is standard input
     pub(crate) design: PathBuf,

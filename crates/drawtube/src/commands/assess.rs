@@ -2,10 +2,12 @@
 
 use driver::cam::{CamSettings, movement_curve};
 use driver::design_file::DesignFile;
-use merit_function::assessment::{assess, real_beam};
+use driver::temperature::{TemperatureReport, at_temperatures};
+use merit_function::assessment::{Assessment, assess, real_beam};
 use report::picture::assessment_picture;
 use report::text;
 use report::text::assessment::Scope;
+use serde::Serialize;
 
 use crate::arguments::AssessArguments;
 use crate::console::Console;
@@ -30,6 +32,7 @@ struct Request {
     /// Distances to tell the real beam at, m.
     ranges_m: Vec<f64>,
     require: bool,
+    temperatures_c: Vec<f64>,
 }
 
 impl Request {
@@ -51,12 +54,23 @@ impl Request {
             form,
             ranges_m: arguments.ranges_m,
             require: arguments.require,
+            temperatures_c: arguments.temperature,
         })
     }
 }
 
+/// The assessment, with what the design does at other temperatures where that was asked for.
+#[derive(Serialize)]
+struct Printed<'a> {
+    #[serde(flatten)]
+    assessment: &'a Assessment,
+    #[serde(flatten)]
+    warm: Option<&'a TemperatureReport>,
+}
+
 pub(crate) fn run(arguments: AssessArguments, console: &Console) -> Result<ExitStatus, Failure> {
-    let Request { file, form, picture, ranges_m, require } = Request::of(arguments)?;
+    let Request { file, form, picture, ranges_m, require, temperatures_c } =
+        Request::of(arguments)?;
     let mut assessment = assess(&file.design, &file.wishes);
     if matches!(form, Form::Beam) || !ranges_m.is_empty() {
         assessment.real_beam = Some(real_beam(&file.design, &file.wishes, &ranges_m));
@@ -65,9 +79,19 @@ pub(crate) fn run(arguments: AssessArguments, console: &Console) -> Result<ExitS
         let curve = movement_curve(&file.design, &file.wishes, &CamSettings::default());
         output.write(&assessment_picture(&file, curve.as_ref().ok()))?;
     }
+    let warm = match temperatures_c.as_slice() {
+        [] => None,
+        temperatures_c => Some(at_temperatures(&file, temperatures_c)?),
+    };
     match form {
-        Form::Json => console.print_json(&assessment)?,
+        Form::Json => {
+            console.print_json(&Printed { assessment: &assessment, warm: warm.as_ref() })?
+        }
         Form::Text(scope) => {
+            if let Some(warm) = &warm {
+                console.print(&text::temperature::temperatures(&file, warm))?;
+                console.print("")?;
+            }
             console.print(&text::assessment::assessment(&file, &assessment, scope))?;
         }
         Form::Beam => {

@@ -54,7 +54,7 @@ pub(crate) fn run(arguments: CamArguments, console: &Console) -> Result<ExitStat
     let Request { file, settings, csv, picture, json, require } = Request::of(arguments)?;
     let curve = movement_curve(&file.design, &file.wishes, &settings)?;
     if let Some(output) = csv {
-        output.write(&csv_table(&curve).map_err(Failure::Table)?)?;
+        output.write(&csv_table(&curve).map_err(|error| Failure::Table(error.into()))?)?;
     }
     if let Some(output) = picture {
         output.write(&cam_picture(&file, &curve))?;

@@ -1,9 +1,10 @@
-//! `gather`: the parts of an overnight run put together.
+//! `gather`: the parts of a run put together.
 
 use std::path::PathBuf;
 
 use driver::overnight::{Gathering, MissingPart, RankedList};
 use driver::run::{ResultsFolder, RunError, Survey};
+use driver::sweep;
 use report::text;
 use serde_json::json;
 
@@ -16,6 +17,9 @@ pub(crate) fn run(arguments: &GatherArguments, console: &Console) -> Result<Exit
     let output = output(arguments)?;
     let surveys: Vec<Survey> =
         arguments.folders.iter().map(|path| Survey::of(path)).collect::<Result<_, RunError>>()?;
+    if surveys.first().is_some_and(|survey| survey.run.kind == sweep::KIND) {
+        return super::sweep::gathering::gather(&surveys, &output, arguments.json, console);
+    }
     let gathering = Gathering::of(&surveys, usize::from(arguments.keep))?;
     let list = gathering.list();
     let missing = gathering.missing();

@@ -1,7 +1,6 @@
 //! `optimise`: from a design to a better one nearby.
 
 mod account;
-mod destination;
 mod request;
 
 use driver::cam::{CamSettings, movement_curve};
@@ -12,13 +11,13 @@ use report::picture::optimisation_picture;
 
 use crate::arguments::OptimiseArguments;
 use crate::console::Console;
+use crate::destination::Destination;
 use crate::exit_status::ExitStatus;
 use crate::failure::Failure;
 use crate::progress::Teller;
 use crate::signals::StopSignal;
 
 use account::Account;
-use destination::Destination;
 use request::{Request, Summary};
 
 pub(crate) fn run(arguments: OptimiseArguments, console: &Console) -> Result<ExitStatus, Failure> {
@@ -27,7 +26,7 @@ pub(crate) fn run(arguments: OptimiseArguments, console: &Console) -> Result<Exi
     let signals = StopSignal::listen().map_err(Failure::Signals)?;
     let (stages, history) = solve(&request, &signals, console)?;
     let account = Account::new(&request.file, stages)?;
-    let saved = request.destination.save(account.result(), console);
+    let saved = request.destination.save("design", account.result().text().as_bytes(), console);
     tell(&request, &account, saved.is_ok(), console)?;
     saved?;
     draw(&request, &account, history)?;

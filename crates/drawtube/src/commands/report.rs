@@ -115,7 +115,7 @@ fn write_sheets(
     force: bool,
     console: &Console,
 ) -> Result<(), Failure> {
-    let files = shop_files(file).map_err(Failure::Table)?;
+    let files = shop_files(file).map_err(|error| Failure::Table(error.into()))?;
     std::fs::create_dir_all(folder)
         .map_err(|source| Failure::Folder { path: folder.to_owned(), source })?;
     let checked: Vec<(OutputFile, PathBuf, String)> = files

@@ -34,6 +34,7 @@ pub(super) fn optics(brief: &BriefDocument) -> OpticsDocument {
         name,
         elements: vec![plate(glasses(g))],
         airs_mm: Vec::new(),
+        mount_expansion_per_k: None,
     };
     OpticsDocument {
         format: DesignFormat::V1,
@@ -77,6 +78,7 @@ pub(super) fn wishes(brief: &BriefDocument) -> WishesDocument {
     WishesDocument {
         goals: brief.goals,
         limits: brief.limits,
+        temperatures_c: Vec::new(),
         states: brief.ratios.iter().map(own).collect(),
     }
 }

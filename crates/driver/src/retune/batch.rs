@@ -198,7 +198,10 @@ impl Totals {
 ///
 /// # Errors
 /// The table cannot be laid out.
-pub fn spacing_table(file: &DesignFile, units: &[TunedUnit]) -> Result<Vec<u8>, csv::Error> {
+pub fn spacing_table(
+    file: &DesignFile,
+    units: &[TunedUnit],
+) -> Result<Vec<u8>, Box<dyn std::error::Error + Send + Sync>> {
     let document = file.document().value();
     let mut table = csv::Writer::from_writer(Vec::new());
     let mut heads = vec![SERIAL_HEAD.to_owned(), "meets".to_owned(), "merit".to_owned()];
@@ -219,5 +222,5 @@ pub fn spacing_table(file: &DesignFile, units: &[TunedUnit]) -> Result<Vec<u8>, 
         );
         table.write_record(&row)?;
     }
-    table.into_inner().map_err(|error| csv::Error::from(error.into_error()))
+    Ok(table.into_inner().map_err(csv::IntoInnerError::into_error)?)
 }

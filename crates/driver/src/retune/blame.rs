@@ -8,7 +8,7 @@
 //! A change without a derivative (another beam, state, ratio or wish) is traced alone instead; so
 //! is every other, for comparison.
 
-use merit_function::assessment::assess;
+use merit_function::assessment::{Merit, assess};
 use merit_function::block::Bounds;
 use merit_function::limits::Limits;
 use merit_function::problem::{MeritFunction, RAYS};
@@ -29,36 +29,47 @@ use crate::design_file::DesignFile;
 pub struct Blame {
     /// The change, as written.
     pub change: String,
-    /// Merit it adds, from exact derivatives; null where there is none.
+    /// Merit of the goals it adds, from exact derivatives; null where there is none.
     pub by_derivatives: Option<f64>,
-    /// Merit it adds, traced with this change alone; null where that is no design or rays fail.
+    /// Merit of the goals it adds, traced with this change alone; null where that is no design or
+    /// rays fail.
     pub traced: Option<f64>,
+    /// Merit it adds by limits it crosses; these have no derivative as long as they are kept.
+    pub by_limits: f64,
     /// Why there is no derivative.
     pub without_derivative: Option<&'static str>,
 }
 
 impl Blame {
-    /// What it costs: from derivatives where there are any, else traced.
+    /// What it costs: from derivatives where there are any, else traced; with what limits add.
     #[must_use]
     pub fn cost(&self) -> Option<f64> {
-        self.by_derivatives.or(self.traced)
+        Some(self.by_derivatives.or(self.traced)? + self.by_limits)
     }
 }
 
 /// What each change costs by itself.
 pub(crate) fn blame(file: &DesignFile, changes: &[Change]) -> Vec<Blame> {
-    let before = assess(&file.design, &file.wishes).merit.total;
+    let before = assess(&file.design, &file.wishes).merit;
     changes.iter().map(|change| blame_one(file, before, change)).collect()
 }
 
-fn blame_one(file: &DesignFile, before: Option<f64>, change: &Change) -> Blame {
+fn blame_one(file: &DesignFile, before: Merit, change: &Change) -> Blame {
     let written = format!("{}={}", change.at(), shown(change));
     let Ok(changed) = apply(file, std::slice::from_ref(change)) else {
         let without_derivative = Some("it makes no design by itself");
-        return Blame { change: written, by_derivatives: None, traced: None, without_derivative };
+        let (by_derivatives, traced) = (None, None);
+        return Blame {
+            change: written,
+            by_derivatives,
+            traced,
+            by_limits: 0.0,
+            without_derivative,
+        };
     };
-    let after = assess(&changed.file.design, &changed.file.wishes).merit.total;
-    let traced = after.zip(before).map(|(after, before)| after - before);
+    let after = assess(&changed.file.design, &changed.file.wishes).merit;
+    let traced = after.goals.zip(before.goals).map(|(after, before)| after - before);
+    let by_limits = after.limits - before.limits;
     let (by_derivatives, without_derivative) = match no_derivative(file, &changed.file) {
         Some(reason) => (None, Some(reason)),
         None => match by_derivatives(file, &changed.file.design) {
@@ -66,7 +77,7 @@ fn blame_one(file: &DesignFile, before: Option<f64>, change: &Change) -> Blame {
             None => (None, Some("rays fail in the design as it was")),
         },
     };
-    Blame { change: written, by_derivatives, traced, without_derivative }
+    Blame { change: written, by_derivatives, traced, by_limits, without_derivative }
 }
 
 fn shown(change: &Change) -> String {
@@ -103,7 +114,11 @@ fn no_derivative(before: &DesignFile, after: &DesignFile) -> Option<&'static str
 
 /// |r + J δ|² − |r|² for what the change does to the trains.
 fn by_derivatives(file: &DesignFile, changed: &Design) -> Option<f64> {
-    let wishes = Wishes { states: file.wishes.states.clone(), limits: Limits::default() };
+    let wishes = Wishes {
+        states: file.wishes.states.clone(),
+        limits: Limits::default(),
+        temperatures_c: Vec::new(),
+    };
     let free = reshaped(&file.design, changed);
     let variables = Variables::new(&file.design, &wishes.limits, &free).ok()?;
     let (start, quantities) = (variables.start().to_vec(), variables.quantities());

@@ -34,7 +34,6 @@ use blame::Blame;
 
 /// Why a design could not be retuned.
 #[derive(Debug, thiserror::Error)]
-#[non_exhaustive]
 pub enum RetuneError {
     /// A change, a part or a table is not right.
     #[error("{0}")]

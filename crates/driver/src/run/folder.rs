@@ -56,7 +56,8 @@ impl RunFolder {
     }
 
     /// The part that is worked on.
-    pub(super) fn share(&self) -> Share {
+    #[must_use]
+    pub fn share(&self) -> Share {
         self.share
     }
 

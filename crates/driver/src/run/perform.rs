@@ -39,6 +39,11 @@ pub fn perform<W: Work>(
         .map_err(|error| RunError::Threads(error.to_string()))?;
     let mut session = Session::take_up(folder, work, budget, watcher)?;
     if let Some(stop) = session.over(watcher) {
+        // A session that was killed at its very end could not say that it was.
+        if is_final(stop) && !session.told_complete {
+            session.begin(folder)?;
+            return Ok(session.close(stop, watcher));
+        }
         return Ok(session.end(stop, None));
     }
     session.begin(folder)?;
@@ -59,6 +64,11 @@ pub fn perform<W: Work>(
         session.record(&results, &dispenser, &interrupt, &crashed, watcher)
     });
     Ok(session.close(stop, watcher))
+}
+
+/// Whether nothing is left to do for the budget.
+fn is_final(stop: Stop) -> bool {
+    matches!(stop, Stop::Complete | Stop::Sufficed | Stop::RunTime)
 }
 
 /// What each thread does.
@@ -96,6 +106,8 @@ struct Session<'a, W> {
     began: Instant,
     /// Seconds of the run before this session.
     seconds_before: f64,
+    /// Whether the last session said that nothing was left to do.
+    told_complete: bool,
     finished: FinishedUnits,
     in_session: u64,
     /// The first unit known to suffice.
@@ -132,6 +144,7 @@ impl<'a, W: Work> Session<'a, W> {
             share: folder.share(),
             began: Instant::now(),
             seconds_before: read.facts.seconds,
+            told_complete: read.facts.complete,
             finished: read.finished,
             in_session: 0,
             sufficed,
@@ -271,7 +284,7 @@ impl<'a, W: Work> Session<'a, W> {
 
     /// The journal's last line of this session.
     fn close(&mut self, stop: Stop, watcher: &mut dyn Watcher<W::Done>) -> RunEnd {
-        let complete = matches!(stop, Stop::Complete | Stop::Sufficed | Stop::RunTime);
+        let complete = is_final(stop);
         let end = Entry::<W::Done>::End(End { seconds: self.run_seconds(), complete });
         self.told(watcher, |journal| journal.append(&end));
         let unsaved = self.journal.finish().err();

@@ -31,6 +31,18 @@ impl ResultFile {
         Self { name: Path::new(BEST).join(format!("{rank:02}.json")), contents: contents.into() }
     }
 
+    /// The points of a sweep as a table: `points.csv`.
+    #[must_use]
+    pub fn points_table(contents: impl Into<Vec<u8>>) -> Self {
+        Self { name: "points.csv".into(), contents: contents.into() }
+    }
+
+    /// The points of a sweep with their designs: `points.json`.
+    #[must_use]
+    pub fn points(contents: impl Into<Vec<u8>>) -> Self {
+        Self { name: "points.json".into(), contents: contents.into() }
+    }
+
     /// The list itself: `ranking.json`.
     #[must_use]
     pub fn ranking(contents: impl Into<Vec<u8>>) -> Self {

@@ -300,7 +300,7 @@ impl<'a> Inspector<'a> {
             laser.thresholds.glass.filter(|_| !matches!(medium, Medium::Air)),
         ];
         let shares = bears.iter().flatten().flat_map(|bears| {
-            let over = |value: Option<f64>, threshold: Option<f64>| Some(value? / threshold?);
+            let over = |value: Option<f64>, threshold: Option<f64>| finite(value? / threshold?);
             let fluence = over(fluence, of_fluence(bears, laser));
             [fluence, over(irradiance, bears.irradiance_w_cm2)]
         });

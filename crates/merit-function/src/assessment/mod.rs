@@ -46,6 +46,9 @@ pub struct Assessment {
     pub merit: Merit,
     /// One entry a zoom state.
     pub states: Vec<StateAssessment>,
+    /// One entry a temperature beside 20 °C at which the goals hold too: the states untouched.
+    #[serde(skip_serializing_if = "Vec::is_empty")]
+    pub at_temperatures: Vec<TemperatureAssessment>,
     /// One entry a group.
     pub groups: Vec<GroupAssessment>,
     /// One entry an element.
@@ -63,6 +66,26 @@ pub struct Assessment {
     pub cautions: Vec<String>,
     /// What a careful reader should know and no limit says.
     pub warnings: Vec<String>,
+}
+
+/// Every state at another temperature than 20 °C, nothing re-adjusted.
+#[derive(Debug, Clone, PartialEq, Serialize)]
+pub struct TemperatureAssessment {
+    /// Which, °C.
+    pub temperature_c: f64,
+    /// One entry a zoom state.
+    pub states: Vec<StateAssessment>,
+}
+
+impl Assessment {
+    /// Every state at every temperature: at 20 °C first.
+    pub fn all_states(&self) -> impl Iterator<Item = (Option<f64>, &StateAssessment)> {
+        let warm = self
+            .at_temperatures
+            .iter()
+            .flat_map(|at| at.states.iter().map(|state| (Some(at.temperature_c), state)));
+        self.states.iter().map(|state| (None, state)).chain(warm)
+    }
 }
 
 /// The merit function's parts; `None` where a state cannot be evaluated.
@@ -96,14 +119,20 @@ pub fn assess(design: &Design, wishes: &Wishes) -> Assessment {
         items.iter().map(|item| limit::judge(item, design, &views)).collect();
     let limits_merit: f64 = judged.iter().map(|(_, merit)| merit).sum();
     let limits: Vec<LimitAssessment> = judged.into_iter().map(|(limit, _)| limit).collect();
-    let goals: Option<f64> = states.iter().map(|state| state.merit).sum();
+    let at_temperatures: Vec<TemperatureAssessment> = wishes
+        .other_temperatures_c()
+        .filter_map(|&temperature_c| at_temperature(design, wishes, temperature_c))
+        .collect();
+    let warm = || at_temperatures.iter().flat_map(|at| &at.states);
+    let goals: Option<f64> = states.iter().chain(warm()).map(|state| state.merit).sum();
     let elements = element::assess(design, &views);
     let described = design.beam.laser.is_described();
     let hazards = hazards::hazards(design);
     Assessment {
         format: "drawtube-assessment/1",
         title: design.title.clone(),
-        meets: states.iter().all(|state| state.met) && limits.iter().all(|limit| limit.met),
+        meets: states.iter().chain(warm()).all(|state| state.met)
+            && limits.iter().all(|limit| limit.met),
         merit: Merit {
             total: goals.map(|goals| goals + limits_merit),
             goals,
@@ -117,10 +146,27 @@ pub fn assess(design: &Design, wishes: &Wishes) -> Assessment {
             .collect(),
         hazards,
         states,
+        at_temperatures,
         groups: element::assess_groups(design, &views),
         elements,
         limits,
     }
+}
+
+/// Every state at another temperature; `None` where something does not say how it changes, which
+/// a design file that names temperatures rules out.
+fn at_temperature(
+    design: &Design,
+    wishes: &Wishes,
+    temperature_c: f64,
+) -> Option<TemperatureAssessment> {
+    let warm = design.at_temperature(temperature_c).ok()?;
+    let positions = warm.all_positions_mm();
+    let states = warm.states.iter().zip(&positions).zip(&wishes.states);
+    let assessed = states
+        .map(|((state, positions), goals)| state::assess(&warm, state, positions, goals))
+        .collect();
+    Some(TemperatureAssessment { temperature_c, states: assessed })
 }
 
 fn finite(value: f64) -> Option<f64> {

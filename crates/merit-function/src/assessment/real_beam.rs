@@ -195,7 +195,8 @@ impl Looker<'_> {
         let m_squared = far.m_squared(before);
         Some(FarFieldAssessment {
             m_squared,
-            divergence_mrad: exit.map(|exit| 2e3 * exit.half_divergence_rad * m_squared / before),
+            divergence_mrad: exit
+                .and_then(|exit| finite(2e3 * exit.half_divergence_rad * m_squared / before)),
             on_axis: far.on_axis,
             on_axis_refocused: far.on_axis_refocused,
         })

@@ -3,7 +3,7 @@
 use driver::change::Difference;
 use serde_json::Value;
 
-use super::number::{NONE, as_written, fixed};
+use super::number::{NONE, as_written, fixed, significant};
 use super::table::{ARROW, Column, Table};
 
 /// A table of differences, a line each: from, to, by how much in the unit its key names and in per
@@ -24,7 +24,7 @@ pub fn differences(head: &str, differences: &[&Difference]) -> String {
             value(difference.from.as_ref()),
             ARROW.to_owned(),
             value(difference.to.as_ref()),
-            difference.by.map_or_else(|| NONE.to_owned(), |by| signed(by, decimals(by))),
+            difference.by.map_or_else(|| NONE.to_owned(), small),
             difference.by_percent.map_or_else(|| NONE.to_owned(), |percent| signed(percent, 2)),
         ]);
     }
@@ -34,12 +34,17 @@ pub fn differences(head: &str, differences: &[&Difference]) -> String {
 /// A number with its sign, the plus too.
 pub(crate) fn signed(value: f64, decimals: usize) -> String {
     let text = fixed(value, decimals);
-    if value > 0.0 && !text.starts_with('-') && text != NONE { format!("+{text}") } else { text }
+    let is_zero = text.bytes().all(|byte| matches!(byte, b'0' | b'.'));
+    if value > 0.0 && !is_zero && text != NONE { format!("+{text}") } else { text }
 }
 
-/// Enough decimals to see a small step, and no more than a length needs.
-fn decimals(by: f64) -> usize {
-    if by == 0.0 || by.abs() >= 0.0005 { 3 } else { 7 }
+/// A step: three decimals, of a very small one two digits.
+fn small(by: f64) -> String {
+    if by == 0.0 || by.abs() >= 0.0005 {
+        return signed(by, 3);
+    }
+    let digits = significant(by.abs(), 2);
+    format!("{}{digits}", if by < 0.0 { '-' } else { '+' })
 }
 
 fn value(value: Option<&Value>) -> String {

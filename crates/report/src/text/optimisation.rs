@@ -6,7 +6,7 @@ use driver::design_file::DesignFile;
 use merit_function::assessment::{Assessment, StateAssessment};
 
 use super::number::{as_written, counted, fixed_or_dash, significant_or_dash};
-use super::states::about;
+use super::states::{about, at_temperature};
 use super::table::{ARROW, Column, Table};
 use super::{WIDTH, assessment, hazards, optimised, paragraph, sections, warnings};
 
@@ -61,21 +61,27 @@ fn states(told: &Told<'_>) -> String {
         (Column::Arrow, ""),
         (Column::Right, "after"),
     ]);
-    for (before, after) in told.start.states.iter().zip(&told.end.states) {
+    for ((_, before), (temperature_c, after)) in told.start.all_states().zip(told.end.all_states())
+    {
         for k in 0..after.wavefront.len() {
-            table.row(row(before, after, k));
+            table.row(row(before, after, temperature_c, k));
         }
     }
     table.text()
 }
 
-fn row(before: &StateAssessment, after: &StateAssessment, k: usize) -> Vec<String> {
+fn row(
+    before: &StateAssessment,
+    after: &StateAssessment,
+    temperature_c: Option<f64>,
+    k: usize,
+) -> Vec<String> {
     let arrow = || ARROW.to_owned();
     let rms = |state: &StateAssessment| {
         significant_or_dash(state.wavefront.get(k).and_then(|wavefront| wavefront.rms_waves), 3)
     };
     let nm = after.wavefront.get(k).map_or_else(String::new, |w| as_written(w.wavelength_nm));
-    let name = if k == 0 { after.name.clone() } else { String::new() };
+    let name = if k == 0 { at_temperature(&after.name, temperature_c) } else { String::new() };
     let mut row = vec![name, nm, rms(before), arrow(), rms(after)];
     if k == 0 {
         let error = |state: &StateAssessment| fixed_or_dash(state.ratio_error_percent, 4);

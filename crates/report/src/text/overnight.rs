@@ -73,14 +73,16 @@ fn glasses(names: &[String]) -> String {
 }
 
 fn remarks(list: &RankedList) -> String {
-    let meet = list.best.iter().filter(|best| best.meets).count();
+    let listed = list.best.len();
+    let meeting = match list.best.iter().filter(|best| best.meets).count() {
+        0 => "None of those listed meets every goal and limit.".to_owned(),
+        all if all == listed => "Every one listed meets every goal and limit.".to_owned(),
+        some => format!("{some} of the {listed} listed meet every goal and limit."),
+    };
     let told = format!(
-        "Of {}, {} ended in the best design or one much like it. {} of the {} listed meet every \
-         goal and limit.",
+        "Of {}, {} ended in the best design or one much like it. {meeting}",
         counted(list.starts as usize, "start"),
         list.times_best_found,
-        meet,
-        list.best.len(),
     );
     paragraph(&told, WIDTH, "")
 }

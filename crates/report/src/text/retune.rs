@@ -6,7 +6,6 @@ use driver::retune::blame::Blame;
 use driver::retune::{Moving, Retuning, Stage};
 use surface_model::design::Design;
 
-use super::bounds::ended_on_bounds;
 use super::differences::{differences as table_of, signed};
 use super::number::{NONE, as_written, fixed, fixed_or_dash, significant, significant_or_dash};
 use super::states::spacing_heads;
@@ -30,10 +29,19 @@ fn changed(before: &DesignFile, retuning: &Retuning) -> String {
     let found = differences(before.document().value(), after.file.document().value());
     let told: Vec<&Difference> = found
         .iter()
-        .filter(|difference| difference.at.steps().first() != Some(&"held"))
+        .filter(|difference| !is_bookkeeping(difference))
         .filter(|difference| !is_taken_up(difference, retuning, &after.file.design))
         .collect();
     table_of("changed", &told)
+}
+
+/// What follows from a change and is told elsewhere: numbers held, glasses defined.
+fn is_bookkeeping(difference: &Difference) -> bool {
+    match difference.at.steps().first() {
+        Some(&"held") => true,
+        Some(&"glasses") => difference.from.is_none(),
+        _ => false,
+    }
 }
 
 fn is_taken_up(difference: &Difference, retuning: &Retuning, design: &Design) -> bool {
@@ -232,14 +240,16 @@ fn blamed(blame: &[Blame]) -> String {
         (Column::Left, "this change alone adds"),
         (Column::Right, "by\nderivatives"),
         (Column::Right, "traced"),
+        (Column::Right, "by limits\ncrossed"),
     ]);
     for one in blame {
-        let change = paragraph(&one.change, 50, "  ");
+        let change = paragraph(&one.change, 48, "  ");
         let by = match one.without_derivative {
             Some(_) => "none¹".to_owned(),
             None => significant_or_dash(one.by_derivatives, 4),
         };
-        table.row([change, by, significant_or_dash(one.traced, 4)]);
+        let traced = significant_or_dash(one.traced, 4);
+        table.row([change, by, traced, significant(one.by_limits, 4)]);
     }
     if table.is_empty() {
         return String::new();
@@ -280,7 +290,11 @@ fn closing(retuning: &Retuning) -> String {
         .filter(hurt)
         .max_by(|a, b| a.cost().unwrap_or(0.0).total_cmp(&b.cost().unwrap_or(0.0)));
     if let (Some(worst), true) = (worst, retuning.blame.len() > 1) {
-        let how = if worst.by_derivatives.is_some() { "from derivatives" } else { "traced alone" };
+        let how = match worst.by_derivatives {
+            Some(_) if worst.by_limits > 0.0 => "from derivatives and the limits it crosses",
+            Some(_) => "from derivatives",
+            None => "traced alone",
+        };
         let cost = significant(worst.cost().unwrap_or(0.0), 3);
         told.push(format!(
             "What hurt most is {}: it adds {cost} to the merit, {how}.",

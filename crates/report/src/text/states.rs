@@ -10,7 +10,7 @@ use super::table::{BLANK, Column, Table};
 use super::verdict::missed;
 
 /// A number with the sign that it misses its goal, or room for one.
-fn marked(text: String, missed: bool) -> String {
+pub(crate) fn marked(text: String, missed: bool) -> String {
     format!("{text}{}", if missed { '!' } else { BLANK })
 }
 
@@ -38,9 +38,12 @@ pub(crate) fn reached(file: &DesignFile, assessment: &Assessment) -> String {
         row[7] = within(goals.wavefront_rms_waves);
         table.row(row);
     }
-    for (goals, state) in file.wishes.states.iter().zip(&assessment.states) {
+    let goals = file.wishes.states.iter().cycle();
+    for (goals, (temperature_c, state)) in goals.zip(assessment.all_states()) {
+        let name = at_temperature(&state.name, temperature_c);
         for (k, wavefront) in state.wavefront.iter().enumerate() {
-            let mut row = if k == 0 { paraxial(goals, state) } else { vec![String::new(); 6] };
+            let mut row =
+                if k == 0 { paraxial(goals, state, &name) } else { vec![String::new(); 6] };
             row.extend(at_wavelength(goals, wavefront));
             table.row(row);
         }
@@ -141,9 +144,17 @@ fn shared_goals(file: &DesignFile) -> Option<Goals> {
     (same && numbers(&first).iter().any(Option::is_some)).then_some(first)
 }
 
-fn paraxial(goals: &Goals, state: &StateAssessment) -> Vec<String> {
+/// A state's name, with its temperature where that is not 20 °C.
+pub(crate) fn at_temperature(name: &str, temperature_c: Option<f64>) -> String {
+    match temperature_c {
+        None => name.to_owned(),
+        Some(temperature_c) => format!("{name} {} °C", as_written(temperature_c)),
+    }
+}
+
+fn paraxial(goals: &Goals, state: &StateAssessment, name: &str) -> Vec<String> {
     vec![
-        state.name.clone(),
+        name.to_owned(),
         as_written(state.ratio_wanted),
         fixed_or_dash(state.ratio, 4),
         marked(
@@ -175,9 +186,11 @@ pub(crate) fn any_missed(file: &DesignFile, assessment: &Assessment) -> bool {
 /// Why rays fail, a line a state.
 pub(crate) fn faults(assessment: &Assessment) -> String {
     let lines: Vec<String> = assessment
-        .states
-        .iter()
-        .filter_map(|state| Some(format!("{}: {}", state.name, state.fault.as_ref()?)))
+        .all_states()
+        .filter_map(|(temperature_c, state)| {
+            let name = at_temperature(&state.name, temperature_c);
+            Some(format!("{name}: {}", state.fault.as_ref()?))
+        })
         .map(|line| super::paragraph(&line, super::WIDTH, "  "))
         .collect();
     lines.join("\n")

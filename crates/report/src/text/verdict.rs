@@ -5,6 +5,7 @@ use merit_function::assessment::{Assessment, LimitAssessment, StateAssessment};
 use merit_function::goals::Goals;
 
 use super::number::{as_written, counted, significant};
+use super::states::at_temperature;
 
 /// One goal in one state.
 #[derive(Debug, Clone, PartialEq)]
@@ -51,12 +52,14 @@ pub(crate) fn missed(value: Option<f64>, within: Option<f64>) -> bool {
 
 /// Every goal of every state.
 pub(crate) fn marks(file: &DesignFile, assessment: &Assessment) -> Vec<Mark> {
-    let states = file.wishes.states.iter().zip(&assessment.states);
-    states.flat_map(|(goals, state)| marks_of(goals, state)).collect()
+    let states = file.wishes.states.iter().cycle().zip(assessment.all_states());
+    let marks = states.flat_map(|(goals, (temperature_c, state))| {
+        marks_of(goals, state, &at_temperature(&state.name, temperature_c))
+    });
+    marks.collect()
 }
 
-fn marks_of(goals: &Goals, state: &StateAssessment) -> Vec<Mark> {
-    let name = &state.name;
+fn marks_of(goals: &Goals, state: &StateAssessment, name: &str) -> Vec<Mark> {
     let mut marks = Vec::new();
     if let Some(within) = goals.wavefront_rms_waves {
         marks.extend(state.wavefront.iter().map(|wavefront| Mark {

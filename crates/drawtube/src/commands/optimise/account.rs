@@ -9,7 +9,7 @@ use merit_function::assessment::Assessment;
 use report::text;
 use serde_json::{Value, json};
 
-use super::destination::Destination;
+use crate::destination::Destination;
 use crate::failure::Failure;
 
 /// One or more methods run one after the other.
@@ -101,7 +101,7 @@ impl<'a> Account<'a> {
             solving: Duration::try_from_secs_f64(self.seconds()).unwrap_or_default(),
             warnings: self.warnings(),
         });
-        if saved { format!("{told}\n{}", destination.told()) } else { told }
+        if saved { format!("{told}\n{}", destination.told("design")) } else { told }
     }
 
     fn warnings(&self) -> Vec<String> {

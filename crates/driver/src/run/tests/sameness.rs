@@ -119,4 +119,7 @@ fn time_ends_a_session_or_the_run() {
     assert!(more.tally.finished > limited.tally.finished && more.tally.run_seconds > 0.11);
     let used_up = session_of(Budget { run_time: short, ..Budget::default() });
     assert_eq!((used_up.stop, used_up.tally.in_session), (Stop::RunTime, 0));
+    let survey = Survey::of(folder.path()).unwrap();
+    let facts = survey.parts[0].read::<Yield>(&mut |_| ()).unwrap();
+    assert!(facts.complete, "that the hours are used up is kept");
 }
