@@ -193,6 +193,8 @@ impl Failure {
                 ExitStatus::WrongInput
             }
             Self::Temperature(_) => ExitStatus::Failed,
+            Self::Cam(CamError::State { .. }) => ExitStatus::Failed,
+            Self::Cam(_) => ExitStatus::WrongInput,
             Self::Ray(RayError::Glass(_) | RayError::Direction { .. }) => ExitStatus::WrongInput,
             Self::Cam(CamError::State { .. }) => ExitStatus::Failed,
             Self::Cam(_) => ExitStatus::WrongInput,

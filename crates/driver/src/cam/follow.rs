@@ -23,8 +23,10 @@ use super::slide::Slide;
 const ARRIVED_MM: f64 = 1e-9;
 /// Ratio error, relative, and collimation, rad, that are left at most.
 const LEFT: (f64, f64) = (1e-9, 1e-9);
-/// Newton steps, and halvings of one.
-const NEWTON_STEPS: usize = 40;
+/// Newton steps from a designed state onto the curve, and from one point of it to the next.
+pub(super) const FROM_A_STATE: usize = 40;
+const FROM_A_POINT: usize = 8;
+/// Halvings of a Newton step.
 const HALVINGS: usize = 12;
 /// Newton's correction may be this part of a step along the curve.
 const CORRECTION: f64 = 0.2;
@@ -107,10 +109,15 @@ impl Equations<'_> {
     }
 
     /// Newton's method from a place near the curve.
-    pub(super) fn solve(&mut self, ratio: f64, from_mm: &[f64]) -> Result<Point, Stop> {
+    pub(super) fn solve(
+        &mut self,
+        ratio: f64,
+        from_mm: &[f64],
+        steps: usize,
+    ) -> Result<Point, Stop> {
         let mut moving_mm = from_mm.to_vec();
         let mut linear = self.linear(ratio, &moving_mm)?;
-        for _ in 0..NEWTON_STEPS {
+        for _ in 0..steps {
             let step = linear.jacobian.clone().lu().solve(&linear.residuals);
             let step = step.filter(|step| step.iter().all(|by| by.is_finite()));
             let step = step.ok_or(Stop::NoSolution)?;
@@ -225,7 +232,7 @@ impl Equations<'_> {
         let by = ratio - from.ratio;
         let ahead = from.moving_mm.iter().zip(&from.slopes_mm);
         let predicted: Vec<f64> = ahead.map(|(z, slope)| z + by * slope).collect();
-        let point = self.solve(ratio, &predicted)?;
+        let point = self.solve(ratio, &predicted, FROM_A_POINT)?;
         let largest =
             |a: &[f64], b: &[f64]| a.iter().zip(b).map(|(a, b)| (a - b).abs()).fold(0.0, f64::max);
         let correction = largest(&point.moving_mm, &predicted);

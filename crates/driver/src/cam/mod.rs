@@ -34,7 +34,7 @@ use surface_model::laser::Laser;
 
 use collimation::Gauge;
 use findings::Look;
-use follow::{Equations, Point, Stop};
+use follow::{Equations, FROM_A_STATE, Point, Stop};
 use guide::MonotoneCubic;
 use slide::Slide;
 use stations::{Station, knots, stations};
@@ -184,7 +184,7 @@ fn roots(
 ) -> Result<Vec<Point>, CamError> {
     let solve = |(&k, start): (&usize, &Vec<f64>)| {
         let state = &design.states[k];
-        equations.solve(state.ratio, start).map_err(|stop| CamError::State {
+        equations.solve(state.ratio, start, FROM_A_STATE).map_err(|stop| CamError::State {
             state: state.name.clone(),
             ratio: state.ratio,
             and: if equations.hold_collimation { "and collimate" } else { "" },

@@ -1,5 +1,6 @@
 //! What `retune` prints for people: the stages side by side, what moved, what hurt.
 
+use super::bounds::ended_on_bounds;
 use driver::change::{Difference, differences};
 use driver::design_file::DesignFile;
 use driver::retune::blame::Blame;
