@@ -119,7 +119,8 @@ fn descents(name: &str, strategy: Strategy) -> Result<Vec<Descent>, Failure> {
     let most = Duration::from_secs_f64(TIMES[TIMES.len() - 1]);
     let two = rayon::ThreadPoolBuilder::new().num_threads(2).build()?;
     Ok(two.install(|| {
-        let seeds = (1..=SEEDS).into_par_iter().with_max_len(1);
+        let seeds: Vec<u64> = (1..=SEEDS).collect();
+        let seeds = seeds.into_par_iter().with_max_len(1);
         seeds.map(|seed| Descent::of(&problem, seed, most)).collect()
     }))
 }
