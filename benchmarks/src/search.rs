@@ -21,8 +21,8 @@ const SEEDS: u64 = 5;
 /// Times the merit is told at, s of one thread.
 const TIMES: [f64; 5] = [0.3, 1.0, 2.0, 5.0, 10.0];
 /// Starts that are timed on one thread and on two, and how often.
-const STARTS: u64 = 60;
-const ROUNDS: usize = 7;
+const STARTS: u64 = 40;
+const ROUNDS: usize = 5;
 
 const INTRODUCTION: &str = "## Global search
 
