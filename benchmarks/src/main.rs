@@ -22,9 +22,12 @@ mod page;
 mod peer_input;
 mod peers;
 mod profile;
+mod retune;
 mod search;
 mod spread;
+mod sweep;
 mod threads;
+mod tolerance;
 mod zoom_states;
 
 /// Anything that stops a measurement.
@@ -46,12 +49,16 @@ fn main() -> Result<(), Failure> {
         ["trace"] => bare_loop::section()?,
         ["states"] => zoom_states::section()?,
         ["threads"] => threads::section()?,
+        ["tolerance"] => tolerance::section()?,
         ["search", names @ ..] => search::section(names)?,
+        ["sweep"] => sweep::section()?,
+        ["retune"] => retune::section()?,
         ["instructions"] => instructions::section()?,
         ["profile"] => profile::section()?,
         _ => {
             return Err("sections: jobs [DESIGN…], more-states, derivatives, trace, states, \
-                        threads, search [DESIGN…], instructions, profile; or kernel NAME CALLS, peer-input DESIGN"
+                        threads, search [DESIGN…], sweep, retune, tolerance, instructions, \
+                        profile; or kernel NAME CALLS, peer-input DESIGN"
                 .into());
         }
     };

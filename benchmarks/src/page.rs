@@ -7,8 +7,8 @@ use driver::write_whole::{Existing, write_whole};
 
 use crate::spread::Spread;
 use crate::{
-    Failure, bare_loop, derivatives, design, instructions, jobs, more_states, profile, search,
-    threads, zoom_states,
+    Failure, bare_loop, derivatives, design, instructions, jobs, more_states, profile, retune,
+    search, sweep, threads, tolerance, zoom_states,
 };
 
 const HEAD: &str = "# Numbers
@@ -16,7 +16,8 @@ const HEAD: &str = "# Numbers
 Made by `cargo run --release -p benchmarks`; what stands here is what that run measured, targets missed
 included. One section alone: `cargo run --release -p benchmarks SECTION`, where SECTION is `jobs` (with
 names of designs, to measure only those), `more-states`, `derivatives`, `trace`, `states`, `threads`,
-`search` (with names likewise), `instructions` or `profile`. All figures are median (min … max).
+`search` (with names likewise), `sweep`, `retune`, `tolerance`, `instructions` or `profile`. All figures
+are median (min … max).
 
 The peers: `pip install numpy scipy` for SciPy; `apt-get install libceres-dev` and a C++ compiler for
 Ceres, whose program `peers/ceres/build.sh` builds into `target/peers/` on the way (the library as it
@@ -80,7 +81,7 @@ type Measure = fn() -> Result<Section, Failure>;
 pub(crate) fn write() -> Result<(), Failure> {
     let machine = machine()?;
     let (mut verdicts, mut rest) = (String::from(VERDICTS), String::new());
-    let sections: [(&str, Measure); 9] = [
+    let sections: [(&str, Measure); 12] = [
         ("jobs", || jobs::section(&[])),
         ("more-states", more_states::section),
         ("derivatives", derivatives::section),
@@ -88,6 +89,9 @@ pub(crate) fn write() -> Result<(), Failure> {
         ("states", zoom_states::section),
         ("threads", threads::section),
         ("search", || search::section(&[])),
+        ("sweep", sweep::section),
+        ("retune", retune::section),
+        ("tolerance", tolerance::section),
         ("instructions", instructions::section),
         ("profile", profile::section),
     ];

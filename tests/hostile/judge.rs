@@ -50,7 +50,7 @@ fn holds(truth: bool, otherwise: impl FnOnce() -> String) -> Result<(), String> 
 }
 
 /// Every complaint has a line and a column, and nothing that upsets a terminal.
-fn refusal(complaints: &Complaints) -> Result<(), String> {
+pub(crate) fn refusal(complaints: &Complaints) -> Result<(), String> {
     let json = complaints.to_json();
     let problems = json["problems"].as_array().ok_or("no list of problems")?;
     holds(!problems.is_empty(), || "refused without a complaint".into())?;
@@ -69,7 +69,7 @@ fn refusal(complaints: &Complaints) -> Result<(), String> {
 }
 
 /// The words `NaN` and `inf` outside quotes in what `Debug` writes: unlike JSON, it hides none.
-fn finite(what: &str, value: &impl Debug) -> Result<(), String> {
+pub(crate) fn finite(what: &str, value: &impl Debug) -> Result<(), String> {
     let text = format!("{value:?}");
     let mut quoted = false;
     let mut escaped = false;

@@ -1,6 +1,7 @@
 //! Files as a careless or hostile user writes them: whatever a file says, the library answers
 //! with a place in the text, a typed error, or finite numbers.
 
+mod briefs;
 mod bytes;
 mod judge;
 mod limits;

@@ -5,7 +5,8 @@ use serde_json::{Value, json};
 /// A shipped design.
 pub const RIVER: &str = "configs/river-lidar-2x-6x.json";
 
-/// A design in which every key that a design file knows stands once.
+/// A design in which every key that a design file knows stands once, but for those about the laser:
+/// the shipped design of `laser.rs` has them.
 pub fn every_key() -> Value {
     json!({
         "$schema": "drawtube.schema.json",
@@ -15,7 +16,8 @@ pub fn every_key() -> Value {
         "beam": { "wavelengths_nm": [532.0], "diameter_mm": 2.4, "traced_to": 1.5 },
         "glasses": {
             "melt": { "from": "N-BK7", "index_shift": 0.00021 },
-            "medium": { "index": 1.62, "density_g_cm3": 3.0 }
+            "medium": { "index": 1.62, "density_g_cm3": 3.0, "expansion_per_k": 8e-6,
+                        "index_per_k": 2e-6 }
         },
         "groups": [
             { "name": "entry", "elements": [ { "radii_mm": [75.0, -20.0],
@@ -28,9 +30,9 @@ pub fn every_key() -> Value {
                 { "radii_mm": ["flat", -300.0], "glasses": ["fused-silica"],
                   "thicknesses_mm": [4.0], "diameter_mm": 26.0,
                   "shapes": [ null, { "conic": -1.2, "asphere": { "4": 1.1e-7 } } ] } ],
-              "airs_mm": [1.0] }
+              "airs_mm": [1.0], "mount_expansion_per_k": 1.2e-5 }
         ],
-        "housing": { "track_mm": 160.0, "fixed": ["exit"] },
+        "housing": { "track_mm": 160.0, "fixed": ["exit"], "expansion_per_k": 2.3e-5 },
         "states": [
             { "name": "2x", "ratio": 2.0, "spacings_mm": [13.0, 107.0], "weight": 1.0 },
             { "name": "6x", "ratio": 6.0, "spacings_mm": [1.0, 128.0],
@@ -44,7 +46,25 @@ pub fn every_key() -> Value {
         },
         "free": ["radii", "spacings",
                  { "at": "/groups/exit/elements/pair/thicknesses_mm/0", "min": 3.0, "max": 8.0 }],
-        "held": ["/groups/entry/elements/0/radii_mm/1"]
+        "held": ["/groups/entry/elements/0/radii_mm/1"],
+        "tolerances": {
+            "grade": "fine", "spread": "uniform",
+            "own": [
+                { "at": "/groups/exit", "radius_percent": 0.05, "irregularity_fringes": 0.4,
+                  "thickness_mm": 0.03, "air_mm": 0.02, "index": 0.0003, "abbe_percent": 0.3,
+                  "wedge_mrad": 0.2, "element_decentre_mm": 0.01, "element_tilt_mrad": 0.2,
+                  "group_decentre_mm": 0.01, "group_tilt_mrad": 0.2 },
+                { "at": "/groups/entry", "radius_fringes": 2.0 },
+                { "at": "/states/6x", "spacing_mm": 0.01 }
+            ],
+            "readjusted": ["/states/*/spacings_mm/1"],
+            "rotating": [ { "group": "runner", "lead_mm": 40.0 } ],
+            "require": { "wavefront_rms_waves": { "within": 0.07 },
+                         "ratio_percent": { "within": 0.5 },
+                         "exit_slope_urad": { "within": 50.0 },
+                         "boresight_urad": { "within": 400.0 },
+                         "boresight_wander_urad": { "within": 300.0 } }
+        }
     })
 }
 

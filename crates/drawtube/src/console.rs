@@ -40,8 +40,13 @@ impl Console {
 
     /// Prints a document as it is.
     pub(crate) fn print_exactly(&self, text: &str) -> Result<(), Failure> {
+        self.print_bytes(text.as_bytes())
+    }
+
+    /// Prints a file as it is.
+    pub(crate) fn print_bytes(&self, bytes: &[u8]) -> Result<(), Failure> {
         let mut out = io::stdout().lock();
-        let written = out.write_all(text.as_bytes()).and_then(|()| out.flush());
+        let written = out.write_all(bytes).and_then(|()| out.flush());
         match written {
             // The reader has seen enough (`| head`).
             Err(error) if error.kind() == io::ErrorKind::BrokenPipe => Ok(()),

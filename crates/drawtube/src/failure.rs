@@ -1,11 +1,20 @@
 //! What can go wrong, how it is told, and which exit status it has.
 
 use std::io;
+use std::path::PathBuf;
 
 use driver::optimise::OptimiseError;
+use driver::retune::RetuneError;
+use driver::run::{RunError, ShareError};
+use driver::search::SearchError as DesignSearchError;
 use driver::solve::SettingsError;
+use driver::start::StartError;
+use driver::temperature::AtTemperatureError;
+use driver::tolerance::ToleranceError;
 use driver::write_whole::WriteError;
+use report::RowsError;
 use report::ray::RayError;
+use report::start::Impossible;
 use serde_json::{Value, json};
 use surface_model::document::{Complaints, nearest, quoted};
 use surface_model::glass::{GlassError, LookupError, SearchError};
@@ -53,6 +62,32 @@ pub(crate) enum Failure {
     /// The optimisation could not begin.
     #[error(transparent)]
     Optimise(#[from] OptimiseError),
+    /// The tolerances could not be told.
+    #[error(transparent)]
+    Tolerance(#[from] ToleranceError),
+    /// The design cannot be told at a temperature.
+    #[error(transparent)]
+    Temperature(#[from] AtTemperatureError),
+    /// Nothing suits.
+    #[error("nothing was found: {0}")]
+    NothingFound(&'static str),
+    /// A table could not be laid out.
+    #[error("the table cannot be laid out: {0}")]
+    Table(Box<dyn std::error::Error + Send + Sync>),
+    /// The brief contradicts itself.
+    #[error(transparent)]
+    Start(#[from] StartError),
+    /// No layout does what a brief asks.
+    #[error("{}", .0.message)]
+    Impossible(Impossible),
+    /// There are not so many layouts.
+    #[error("there is no layout {asked}: {found} differ enough to be told apart")]
+    NoSuchRank {
+        /// The rank asked for.
+        asked: usize,
+        /// How many layouts there are.
+        found: usize,
+    },
     /// The ray has no path.
     #[error(transparent)]
     Ray(#[from] RayError),
@@ -65,6 +100,26 @@ pub(crate) enum Failure {
     /// A glass search that cannot be understood.
     #[error(transparent)]
     Search(#[from] SearchError),
+    /// There is nothing to search for designs.
+    #[error(transparent)]
+    DesignSearch(#[from] DesignSearchError),
+    /// A run folder cannot be used.
+    #[error(transparent)]
+    Run(#[from] RunError),
+    /// Not a part of a run.
+    #[error("--part: {0}")]
+    Part(#[from] ShareError),
+    /// The job engine's variables do not say which part this is.
+    #[error("--part auto: {0}")]
+    NoPart(String),
+    /// The journal of a run could not be written to its end.
+    #[error("{} could not be written to its end: {source}", .path.display())]
+    Unsaved {
+        /// The run folder.
+        path: PathBuf,
+        /// What the system says.
+        source: io::Error,
+    },
     /// A file cannot be written.
     #[error(transparent)]
     Write(#[from] WriteError),
@@ -74,12 +129,27 @@ pub(crate) enum Failure {
     /// A result could not be made into a document.
     #[error("the result cannot be written as JSON: {0}")]
     Document(serde_json::Error),
+    /// A result could not be made into rows.
+    #[error("the result cannot be written as CSV: {0}")]
+    Rows(RowsError),
+    /// Threads cannot be started.
+    #[error("threads cannot be started: {0}")]
+    Threads(rayon::ThreadPoolBuildError),
     /// No method was run.
     #[error("no method was run")]
     NoStage,
     /// Signals cannot be listened to.
     #[error("signals cannot be listened to: {0}")]
     Signals(io::Error),
+}
+
+impl From<RetuneError> for Failure {
+    fn from(error: RetuneError) -> Self {
+        match error {
+            RetuneError::Input(complaints) => Self::Input(complaints),
+            RetuneError::Optimise(error) => Self::Optimise(error),
+        }
+    }
 }
 
 impl Failure {
@@ -94,13 +164,38 @@ impl Failure {
             | Self::NoState { .. }
             | Self::Lookup(_)
             | Self::Glass(_)
+            | Self::Part(_)
+            | Self::NoPart(_)
             | Self::Search(_) => ExitStatus::WrongInput,
-            Self::Optimise(error) => status_of(error),
-            Self::Ray(RayError::Glass(_) | RayError::Direction { .. }) => ExitStatus::WrongInput,
-            Self::Ray(_) | Self::Document(_) | Self::NoStage | Self::Signals(_) => {
-                ExitStatus::Failed
+            Self::Optimise(error) | Self::DesignSearch(DesignSearchError::Optimise(error)) => {
+                status_of(error)
             }
-            Self::Write(_) | Self::StandardOutput(_) => ExitStatus::CannotWrite,
+            Self::DesignSearch(_) => ExitStatus::WrongInput,
+            Self::Run(error) => status_of_run(error),
+            Self::Tolerance(
+                ToleranceError::Nominal { .. }
+                | ToleranceError::Overflow { .. }
+                | ToleranceError::Spoilt { .. },
+            ) => ExitStatus::Failed,
+            Self::Tolerance(_) | Self::Temperature(AtTemperatureError::Temperature(_)) => {
+                ExitStatus::WrongInput
+            }
+            Self::Temperature(_) => ExitStatus::Failed,
+            Self::Ray(RayError::Glass(_) | RayError::Direction { .. }) => ExitStatus::WrongInput,
+            Self::Start(_)
+            | Self::Impossible(_)
+            | Self::NoSuchRank { .. }
+            | Self::Ray(_)
+            | Self::Document(_)
+            | Self::Rows(_)
+            | Self::Threads(_)
+            | Self::NoStage
+            | Self::NothingFound(_)
+            | Self::Table(_)
+            | Self::Signals(_) => ExitStatus::Failed,
+            Self::Write(_) | Self::Unsaved { .. } | Self::StandardOutput(_) => {
+                ExitStatus::CannotWrite
+            }
         }
     }
 
@@ -115,7 +210,18 @@ impl Failure {
                     None => format!("its states are {}", all.join(", ")),
                 })
             }
-            Self::Optimise(error) => advice_on(error),
+            Self::Optimise(error) | Self::DesignSearch(DesignSearchError::Optimise(error)) => {
+                advice_on(error)
+            }
+            Self::DesignSearch(DesignSearchError::Start(error)) => Some(error.advice()),
+            Self::Run(error) => advice_on_run(error).map(str::to_owned),
+            Self::NoPart(_) => {
+                Some("give the part as I/N, or auto/N where only the index is known".to_owned())
+            }
+            Self::Tolerance(error) => advice_on_tolerances(error),
+            Self::Temperature(AtTemperatureError::Temperature(error)) => error.advice(),
+            Self::Start(error) => Some(error.advice()),
+            Self::Impossible(impossible) => Some(impossible.advice.clone()),
             Self::Lookup(error) => error.advice(),
             Self::Glass(error) | Self::Ray(RayError::Glass(error)) => error.advice(),
             Self::Search(error) => error.advice(),
@@ -178,8 +284,52 @@ fn status_of(error: &OptimiseError) -> ExitStatus {
         OptimiseError::NoGoals
         | OptimiseError::NothingFree
         | OptimiseError::Variables(_)
-        | OptimiseError::Glass(_) => ExitStatus::WrongInput,
+        | OptimiseError::Glass(_)
+        | OptimiseError::Temperature(_) => ExitStatus::WrongInput,
         _ => ExitStatus::Failed,
+    }
+}
+
+fn advice_on_tolerances(error: &ToleranceError) -> Option<String> {
+    let advice = match error {
+        ToleranceError::NothingRequired => {
+            "add \"goals\" to the file, or \"require\" to its \"tolerances\""
+        }
+        ToleranceError::Readjusted(_) => {
+            "give \"spacings\", an address such as \"/states/*/spacings_mm/1\", or \"none\""
+        }
+        ToleranceError::Nominal { .. } => "assess tells where rays fail",
+        ToleranceError::Spoilt { .. } => {
+            "tighten that tolerance, or make the surfaces wider than the beam"
+        }
+        _ => return None,
+    };
+    Some(advice.to_owned())
+}
+
+fn status_of_run(error: &RunError) -> ExitStatus {
+    match error {
+        RunError::InUse { .. } => ExitStatus::InUse,
+        RunError::NotARun { .. }
+        | RunError::AnotherRun { .. }
+        | RunError::Newer { .. }
+        | RunError::Damaged { .. } => ExitStatus::Damaged,
+        RunError::System { .. } | RunError::Write(_) => ExitStatus::CannotWrite,
+        _ => ExitStatus::Failed,
+    }
+}
+
+fn advice_on_run(error: &RunError) -> Option<&'static str> {
+    match error {
+        RunError::InUse { .. } => Some("wait for it, stop it, or look at it with --show"),
+        RunError::NotARun { .. } => Some("name a run folder, or one that is new or empty"),
+        RunError::AnotherRun { .. } => {
+            Some("go on with what was asked there, or name another folder")
+        }
+        RunError::Damaged { path, .. } if path.ends_with("journal.jsonl") => Some(
+            "take the damaged line out of the file (keep a copy): what it held is computed again",
+        ),
+        _ => None,
     }
 }
 
@@ -193,6 +343,7 @@ fn advice_on(error: &OptimiseError) -> Option<String> {
             "begin with weaker curves or a narrower beam (traced_to); assess tells where rays fail"
         }
         OptimiseError::Glass(error) => return error.advice(),
+        OptimiseError::Temperature(error) => return error.advice(),
         _ => return None,
     };
     Some(advice.to_owned())

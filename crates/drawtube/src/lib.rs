@@ -9,10 +9,13 @@ mod arguments;
 mod colour;
 mod commands;
 mod console;
+mod destination;
 pub mod exit_status;
 mod failure;
 mod input;
+mod part;
 mod progress;
+mod run_progress;
 mod signals;
 
 use std::process::ExitCode;
@@ -36,6 +39,12 @@ fn run(arguments: Arguments) -> ExitStatus {
     let result = match arguments.command {
         Command::Assess(arguments) => commands::assess::run(arguments, &console),
         Command::Optimise(arguments) => commands::optimise::run(arguments, &console),
+        Command::Tolerance(arguments) => commands::tolerance::run(arguments, &console),
+        Command::Retune(arguments) => commands::retune::run(arguments, &console),
+        Command::Start(arguments) => commands::start::run(arguments, &console),
+        Command::Overnight(arguments) => commands::overnight::run(arguments, &console),
+        Command::Gather(arguments) => commands::gather::run(&arguments, &console),
+        Command::Sweep(arguments) => commands::sweep::run(arguments, &console),
         Command::Trace(arguments) => commands::trace::run(arguments, &console),
         Command::Glass(arguments) => commands::glass::run(arguments, &console),
         Command::Schema(arguments) => commands::schema::run(arguments, &console),

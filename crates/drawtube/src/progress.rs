@@ -5,10 +5,12 @@ use std::sync::atomic::{AtomicBool, Ordering};
 use std::time::{Duration, Instant};
 
 use driver::solve::{Observer, Progress};
+use driver::tolerance::Watcher;
 use indicatif::{ProgressBar, ProgressStyle};
 
 use crate::arguments::ProgressArgument;
 use crate::console::Console;
+use crate::failure::Failure;
 
 /// How often a line is redrawn.
 const REDRAW: Duration = Duration::from_millis(100);
@@ -34,6 +36,15 @@ impl Manner {
             ProgressArgument::Auto | ProgressArgument::Bar => Self::Bar,
         }
     }
+}
+
+/// The time between two plain lines, from `--progress-every`.
+pub(crate) fn interval(seconds: f64) -> Result<Duration, Failure> {
+    Duration::try_from_secs_f64(seconds).map_err(|_| Failure::Argument {
+        option: "--progress-every",
+        found: seconds.to_string(),
+        constraint: "a number of seconds, zero or positive",
+    })
 }
 
 /// Tells how far the solver is, and passes on the wish to stop.
@@ -103,5 +114,60 @@ impl Observer for Teller<'_> {
 
     fn interrupted(&self) -> bool {
         self.stop.load(Ordering::Relaxed)
+    }
+}
+
+/// Tells how many of a known number of things are done, and passes on the wish to stop.
+pub(crate) struct Counter<'a> {
+    things: &'static str,
+    console: &'a Console,
+    stop: &'a AtomicBool,
+    bar: Option<ProgressBar>,
+    every: Option<Duration>,
+    began: Instant,
+    last: Instant,
+}
+
+impl<'a> Counter<'a> {
+    pub(crate) fn new(
+        things: &'static str,
+        manner: Manner,
+        console: &'a Console,
+        stop: &'a AtomicBool,
+    ) -> Self {
+        let (bar, every) = match manner {
+            Manner::Bar => (Some(bar()), Some(REDRAW)),
+            Manner::Plain(every) => (None, Some(every)),
+            Manner::Nothing => (None, None),
+        };
+        let now = Instant::now();
+        Self { things, console, stop, bar, every, began: now, last: now }
+    }
+
+    /// Takes the line off the terminal.
+    pub(crate) fn finish(&self) {
+        if let Some(bar) = &self.bar {
+            bar.finish_and_clear();
+        }
+    }
+}
+
+impl Watcher for Counter<'_> {
+    fn built(&mut self, done: u64, of: u64) -> ControlFlow<()> {
+        let now = Instant::now();
+        if self.every.is_some_and(|every| now - self.last >= every) {
+            self.last = now;
+            let seconds = (now - self.began).as_secs_f64();
+            let told = format!("{done} of {of} {}", self.things);
+            match &self.bar {
+                Some(bar) => bar.set_message(told),
+                None => self.console.say(&format!("{seconds:.0} s: {told}")),
+            }
+        }
+        if self.stop.load(Ordering::Relaxed) {
+            ControlFlow::Break(())
+        } else {
+            ControlFlow::Continue(())
+        }
     }
 }

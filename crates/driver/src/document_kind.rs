@@ -25,7 +25,11 @@ pub(crate) const DESIGN: DocumentKind =
 pub(crate) const BRIEF: DocumentKind =
     DocumentKind { stem: "drawtube-brief", newest: 1, called: "a brief" };
 
-const KINDS: [DocumentKind; 2] = [DESIGN, BRIEF];
+/// Sweep plans.
+pub(crate) const PLAN: DocumentKind =
+    DocumentKind { stem: "drawtube-plan", newest: 1, called: "a sweep plan" };
+
+const KINDS: [DocumentKind; 3] = [DESIGN, BRIEF, PLAN];
 
 impl DocumentKind {
     /// Refuses a document of a newer format, or of another kind, by name, before anything else is

@@ -164,6 +164,18 @@ pub(crate) fn resolve(
     Ok(in_order.collect())
 }
 
+/// The numbers that a word of `free`, or an address, means.
+///
+/// # Errors
+/// It leads nowhere, or to nothing that could be free.
+pub(crate) fn places_of(
+    words: &str,
+    design: &Design,
+    file: &Value,
+) -> Result<Vec<Place>, FreedomError> {
+    Resolver::new(design, file).places(words)
+}
+
 struct Resolver<'a> {
     file: &'a Value,
     /// Every number of the design that the file writes out, with its address.

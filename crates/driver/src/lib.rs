@@ -9,8 +9,14 @@
 //! - [`brief`]: the requirement a design is begun from;
 //! - [`start`]: first-order layouts of a brief;
 //! - [`fn@optimise::optimise`]: one local optimisation from file to file;
+//! - [`mod@tolerance`]: what a workshop's errors do to a design, and the yield;
+//! - [`temperature`]: what a design does at other temperatures, and how it is brought back;
+//! - [`overnight`]: the global search as a run, and the ranked list it leaves;
+//! - [`run`]: long work in a folder, where nothing is lost;
 //! - [`sampling`]: points that fill a space evenly, random numbers keyed by a number;
 //! - [`search`]: the global search, from a problem to many finished designs;
+//! - [`change`]: what came back different, in a design file; [`retune`]: then moving only what can
+//!   still move; [`sweep`]: a grid or a sample over any addresses, each point optimised;
 //! - [`write_whole`]: the one function of the program that writes files.
 //!
 //! # What it refuses to know
@@ -23,12 +29,21 @@
 //! blocks, one a zoom state. Start reading at [`solve`].
 
 pub mod brief;
+#[doc(hidden)]
+pub mod careless;
+pub mod change;
 pub mod design_file;
 mod document_kind;
 pub mod freedom;
 pub mod optimise;
+pub mod overnight;
+pub mod retune;
+pub mod run;
 pub mod sampling;
 pub mod search;
 pub mod solve;
 pub mod start;
+pub mod sweep;
+pub mod temperature;
+pub mod tolerance;
 pub mod write_whole;

@@ -12,6 +12,7 @@ use merit_function::wishes::Wishes;
 use serde::Serialize;
 use surface_model::document::Complaints;
 use surface_model::glass::GlassError;
+use surface_model::temperature::TemperatureError;
 
 use crate::design_file::DesignFile;
 use crate::solve::{self, Observer, Outcome, Settings, SolveError, Stopped};
@@ -49,8 +50,8 @@ pub struct OptimisationReport {
     pub evaluations: u64,
     /// Wall time of the solver alone, s.
     pub solve_seconds: f64,
-    /// Free numbers that ended on a bound of their own.
-    pub on_bounds: usize,
+    /// Addresses of the free numbers that ended on a bound.
+    pub on_bounds: Vec<String>,
     /// Number of variables.
     pub variables: usize,
     /// The design as it was.
@@ -78,6 +79,9 @@ pub enum OptimiseError {
     /// Not even the innermost rays get through.
     #[error("the start cannot be traced: {0}")]
     Start(EvaluationFault),
+    /// Something does not say how it changes with temperature.
+    #[error(transparent)]
+    Temperature(#[from] TemperatureError),
     /// The solver refuses.
     #[error(transparent)]
     Solve(#[from] SolveError),
@@ -114,7 +118,7 @@ pub fn optimise(
         iterations: outcome.iterations + widened.iterations,
         evaluations: outcome.evaluations + widened.evaluations,
         solve_seconds: outcome.time.as_secs_f64() + widened.seconds,
-        on_bounds: on_bounds(&merit, &outcome.variables),
+        on_bounds: on_bounds(file, &merit, &outcome.variables),
         variables: outcome.variables.len(),
         start,
         end,
@@ -132,21 +136,25 @@ pub fn merit_of(file: &DesignFile) -> Result<MeritFunction, OptimiseError> {
         return Err(OptimiseError::NothingFree);
     }
     let variables = Variables::new(&file.design, &file.wishes.limits, &file.free)?;
-    Ok(MeritFunction::new(&file.design, &file.wishes, variables, RAYS)?)
+    let merit = MeritFunction::new(&file.design, &file.wishes, variables, RAYS)?;
+    Ok(merit.with_temperatures(&file.design, &file.wishes)?)
 }
 
 /// There has to be a goal that counts.
 pub(crate) fn require_goal(wishes: &Wishes) -> Result<(), OptimiseError> {
-    let any_goal = wishes.states.iter().any(|goals| {
-        let present = [goals.wavefront_rms_waves, goals.ratio_percent, goals.exit_slope_urad];
-        present.iter().any(Option::is_some) && goals.weight > 0.0
-    });
+    let any_goal = wishes.states.iter().any(|goals| goals.any() && goals.weight > 0.0);
     if any_goal { Ok(()) } else { Err(OptimiseError::NoGoals) }
 }
 
-fn on_bounds(merit: &MeritFunction, variables: &[f64]) -> usize {
-    let bounds = merit.bounds().iter().zip(variables);
-    bounds.filter(|(bounds, value)| **value <= bounds.low || **value >= bounds.high).count()
+/// Free numbers that stand on a bound, by their addresses in the file.
+fn on_bounds(file: &DesignFile, merit: &MeritFunction, variables: &[f64]) -> Vec<String> {
+    let document = file.document().value();
+    let bounds = merit.bounds().iter().zip(variables).enumerate();
+    bounds
+        .filter(|(_, (bounds, value))| **value <= bounds.low || **value >= bounds.high)
+        .filter_map(|(variable, _)| merit.variables().address(variable))
+        .map(|address| address.with_names(document).to_string())
+        .collect()
 }
 
 /// A start through which the whole beam passes.

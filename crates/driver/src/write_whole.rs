@@ -9,6 +9,11 @@ use std::path::{Path, PathBuf};
 
 use tempfile::NamedTempFile;
 
+use crate::careless;
+
+/// How the names of temporary files begin.
+pub(crate) const TEMPORARY_PREFIX: &str = ".drawtube-";
+
 /// What to do with a file that is there already.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
 pub enum Existing {
@@ -56,8 +61,11 @@ pub fn write_whole(path: &Path, contents: &[u8], existing: Existing) -> Result<(
     check_target(path, existing)?;
     let folder = folder_of(path);
     let refused = |source| system(path, source);
+    if careless::is_wanted() {
+        return careless::write(path, contents).map_err(refused);
+    }
     let mut file =
-        tempfile::Builder::new().prefix(".drawtube-").tempfile_in(folder).map_err(refused)?;
+        tempfile::Builder::new().prefix(TEMPORARY_PREFIX).tempfile_in(folder).map_err(refused)?;
     let permissions = permissions_for(path);
     file.write_all(contents).map_err(refused)?;
     if let Some(permissions) = permissions {
@@ -72,7 +80,12 @@ pub fn write_whole(path: &Path, contents: &[u8], existing: Existing) -> Result<(
         io::ErrorKind::AlreadyExists => WriteError::Exists(path.into()),
         _ => system(path, error.error),
     })?;
-    File::open(folder).and_then(|folder| folder.sync_all()).map_err(refused)
+    sync_folder_of(path).map_err(refused)
+}
+
+/// Brings to the disk that a file is there.
+pub(crate) fn sync_folder_of(path: &Path) -> io::Result<()> {
+    File::open(folder_of(path)).and_then(|folder| folder.sync_all())
 }
 
 fn check_target(path: &Path, existing: Existing) -> Result<(), WriteError> {

@@ -11,10 +11,12 @@
 //! of its way.
 
 use surface_model::design::Design;
+use surface_model::document::Address;
 use surface_model::housing::Anchor;
 use surface_model::place::Place;
-use surface_model::reverse::{Quantities, Shapes};
+use surface_model::reverse::{Quantities, Quantity, Shapes};
 use surface_model::sequence::{GapId, Sequence};
+use surface_model::temperature::Growth;
 
 use crate::block::{BlockShape, Bounds};
 use crate::bounds::bounds_of;
@@ -58,6 +60,14 @@ pub struct Binding {
     pub offset: f64,
     /// The variables it depends on, and how strongly.
     pub terms: Vec<(Column, f64)>,
+}
+
+impl Binding {
+    /// Adds `by` times another.
+    fn add(&mut self, by: f64, other: &Self) {
+        self.offset += by * other.offset;
+        self.terms.extend(other.terms.iter().map(|&(column, factor)| (column, by * factor)));
+    }
 }
 
 /// A dependent spacing.
@@ -119,6 +129,49 @@ impl Variables {
         Builder::new(design, limits, free).build()
     }
 
+    /// The same variables where they act on the trains of the design at another temperature, which
+    /// has grown by `growth` from `design` at 20 °C.
+    #[must_use]
+    pub fn grown(&self, design: &Design, growth: &Growth) -> Self {
+        let mut warm = self.clone();
+        let sequence = design.sequence();
+        for (state, zoom) in warm.states.iter_mut().zip(&design.states) {
+            let cold = std::mem::take(&mut state.bindings);
+            let in_gap = |gap: usize| {
+                let quantity = self.quantities.gap(gap);
+                cold.iter().find(|binding| binding.quantity == quantity)
+            };
+            for gap in 0..sequence.gaps.len() {
+                let follows = growth.gap(gap);
+                if follows.iter().all(|&(cold, _)| in_gap(cold).is_none()) {
+                    continue;
+                }
+                let mut grown =
+                    Binding { quantity: self.quantities.gap(gap), offset: 0.0, terms: Vec::new() };
+                for &(cold, by) in follows {
+                    match in_gap(cold) {
+                        Some(binding) => grown.add(by, binding),
+                        None => grown.offset += by * design.gap_mm(zoom, sequence.gaps[cold]),
+                    }
+                }
+                state.bindings.push(grown);
+            }
+            for binding in &cold {
+                let by = match self.quantities.at(binding.quantity) {
+                    Quantity::Gap(_) => continue,
+                    Quantity::Curvature(surface) => growth.curvature(surface),
+                    Quantity::Asphere(surface, term) => growth.asphere(surface, term),
+                    Quantity::Conic(_) | Quantity::Index(_) => 1.0,
+                };
+                let mut grown =
+                    Binding { quantity: binding.quantity, offset: 0.0, terms: Vec::new() };
+                grown.add(by, binding);
+                state.bindings.push(grown);
+            }
+        }
+        warm
+    }
+
     /// Sizes of the blocks; `rows` is the number of residuals of each state.
     #[must_use]
     pub fn shape(&self, rows: Vec<usize>) -> BlockShape {
@@ -148,6 +201,24 @@ impl Variables {
     #[must_use]
     pub fn start(&self) -> &[f64] {
         &self.start
+    }
+
+    /// Where a variable stands in the file, by its place in the packed vector; for a position in
+    /// the tube, the group that takes it.
+    #[must_use]
+    pub fn address(&self, variable: usize) -> Option<Address> {
+        if let Some(shared) = self.shared.get(variable) {
+            return Some(match *shared {
+                SharedVariable::Glass(place) => place.address(),
+                SharedVariable::FixedPosition(group) | SharedVariable::TravelStart(group) => {
+                    Address::root().key("groups").index(group)
+                }
+            });
+        }
+        let own = |state: &StateVariables| {
+            state.own.get(variable.checked_sub(state.own_start)?).map(|place| place.address())
+        };
+        self.states.iter().find_map(own)
     }
 
     /// How the quantities of a state's train follow from the variables.

@@ -7,4 +7,8 @@
 //! Start reading at [`text::assessment`], then [`text::optimisation`].
 
 pub mod ray;
+mod rows;
+pub mod start;
 pub mod text;
+
+pub use rows::{RowsError, tolerance_rows};

@@ -21,6 +21,8 @@ pub struct Housing {
     pub track_mm: f64,
     /// Per group, whether it is fixed.
     pub fixed: Vec<bool>,
+    /// Linear expansion of the tube and, where a group says nothing else, of its mounts, 1/K.
+    pub expansion_per_k: Option<f64>,
 }
 
 /// What positions in the housing are measured from.
@@ -148,6 +150,44 @@ impl Design {
         self.ends_mismatch(&fixed)
     }
 
+    /// Fits the spacings of every state to the fixed groups after a part or the track has changed:
+    /// between two neighbouring fixed groups one spacing takes up the difference, the one that
+    /// `gives_way` names for the state and the groups from `from` to `to` (the spacing behind
+    /// group `from` to the one before group `to`). Without one nothing is done. Returns what was
+    /// changed.
+    pub fn fit_to_housing(
+        &mut self,
+        gives_way: impl Fn(usize, std::ops::Range<usize>) -> Option<usize>,
+    ) -> Vec<TakenUp> {
+        let fixed: Vec<usize> = self.housing.fixed_groups().collect();
+        let last = self.groups.len() - 1;
+        let mut taken_up = Vec::new();
+        for pair in fixed.windows(2) {
+            let (from, to) = (pair[0], pair[1]);
+            let span = |design: &Self, state: usize| {
+                let offsets = design.offsets_mm(&design.states[state]);
+                offsets[to] - offsets[from]
+            };
+            let wanted = if fixed.first() == Some(&0) && to == last {
+                // The front of the first group stands at z = 0, so what is behind it is known.
+                let before = self.offsets_mm(&self.states[0])[from];
+                self.housing.track_mm - self.groups[to].length_mm() - before
+            } else {
+                span(self, 0)
+            };
+            for state in 0..self.states.len() {
+                let excess = span(self, state) - wanted;
+                if excess.abs() <= HOUSING_TOLERANCE_MM {
+                    continue;
+                }
+                let Some(after) = gives_way(state, from..to) else { continue };
+                self.states[state].spacings_mm[after] -= excess;
+                taken_up.push(TakenUp { state, after, by_mm: -excess });
+            }
+        }
+        taken_up
+    }
+
     /// First and last group fixed with others fixed between them: the whole must fill the track.
     fn ends_mismatch(&self, fixed: &[usize]) -> Option<HousingMismatch> {
         let last = self.groups.len() - 1;
@@ -161,6 +201,17 @@ impl Design {
             HousingMismatch { state: 0, spacing: last - 1, found_mm, needed_mm: found_mm - excess }
         })
     }
+}
+
+/// A spacing that took up what a part or the track lost or gained.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct TakenUp {
+    /// Which state.
+    pub state: usize,
+    /// The group it follows.
+    pub after: usize,
+    /// By how much it grew, mm.
+    pub by_mm: f64,
 }
 
 /// A spacing that contradicts the fixed groups.

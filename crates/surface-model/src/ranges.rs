@@ -14,3 +14,7 @@ pub const LARGEST_CONIC: f64 = 1e6;
 
 /// Largest asphere coefficient, mm^(1−power), whatever its sign.
 pub const LARGEST_COEFFICIENT: f64 = 1e6;
+
+/// Largest linear expansion of a tube or mount, 1/K, whatever its sign: ten times that of the
+/// metals that expand most. Beyond it is a slip of the pen.
+pub const LARGEST_EXPANSION_PER_K: f64 = 3e-4;

@@ -12,8 +12,10 @@ use crate::optics_document::{
     ElementDocument, GroupDocument, OpticsDocument, RadiusDocument, ShapeDocument, StateDocument,
 };
 use crate::ranges::{
-    LARGEST_COEFFICIENT, LARGEST_CONIC, LARGEST_RADIUS_MM, LONGEST_MM, SMALLEST_RADIUS_MM,
+    LARGEST_COEFFICIENT, LARGEST_CONIC, LARGEST_EXPANSION_PER_K, LARGEST_RADIUS_MM, LONGEST_MM,
+    SMALLEST_RADIUS_MM,
 };
+use crate::resolve_laser::{beam_fault, laser};
 use crate::surface::{ASPHERE_TERMS, Surface, asphere_power};
 
 const LENGTH: Allowed = Allowed { low: 0.0, high: LONGEST_MM, above_low: true, unit: " mm" };
@@ -27,6 +29,12 @@ const RADIUS: Allowed = Allowed {
     unit: " mm either way",
 };
 const RATIO: Allowed = Allowed { low: 0.01, high: 100.0, above_low: false, unit: " either way" };
+const EXPANSION: Allowed = Allowed {
+    low: -LARGEST_EXPANSION_PER_K,
+    high: LARGEST_EXPANSION_PER_K,
+    above_low: false,
+    unit: " 1/K",
+};
 const CONIC: Allowed =
     Allowed { low: -LARGEST_CONIC, high: LARGEST_CONIC, above_low: false, unit: "" };
 const COEFFICIENT: Allowed =
@@ -44,6 +52,19 @@ impl OpticsDocument {
     /// # Errors
     /// Every fault found, each with its address.
     pub fn resolve(&self) -> Result<Design, Vec<DesignFault>> {
+        let design = self.resolve_unfitted()?;
+        let mut faults = Vec::new();
+        fit(&design, &mut faults);
+        if faults.is_empty() { Ok(design) } else { Err(faults) }
+    }
+
+    /// As [`Self::resolve`], but the spacings need not fit the fixed groups: for a design whose
+    /// parts have changed and whose spacings are still to be fitted
+    /// ([`Design::fit_to_housing`]).
+    ///
+    /// # Errors
+    /// Every other fault found, each with its address.
+    pub fn resolve_unfitted(&self) -> Result<Design, Vec<DesignFault>> {
         let definitions = self.glasses.iter().map(|(name, glass)| (name.as_str(), glass));
         let (shelf, glass_faults) = GlassShelf::resolve(definitions);
         let mut resolver = Resolver { shelf, faults: Vec::new() };
@@ -62,7 +83,7 @@ impl OpticsDocument {
         }
         let design = Design { title: self.title.clone(), beam, groups, housing, states };
         resolver.indices(&design);
-        resolver.fit(&design);
+        resolver.faults.extend(beam_fault(&design));
         if resolver.faults.is_empty() { Ok(design) } else { Err(resolver.faults) }
     }
 }
@@ -114,10 +135,13 @@ impl Resolver {
         self.wavelengths(&at.clone().key("wavelengths_nm"), &beam.wavelengths_nm);
         self.check(at.clone().key("diameter_mm"), "the beam diameter", beam.diameter_mm, LENGTH);
         self.check(at.key("traced_to"), "the reach of the traced rays", beam.traced_to, REACH);
+        let (laser, faults) = laser(document);
+        self.faults.extend(faults);
         Beam {
             wavelengths_nm: beam.wavelengths_nm.clone(),
             diameter_mm: beam.diameter_mm,
             traced_to: beam.traced_to,
+            laser,
         }
     }
 
@@ -133,6 +157,7 @@ impl Resolver {
             let needed = elements.saturating_sub(1);
             self.count(airs_at.clone(), "airs", group.airs_mm.len(), needed, why);
             self.check_all(&airs_at, "an air", &group.airs_mm, DISTANCE);
+            self.expansion(at.clone().key("mount_expansion_per_k"), group.mount_expansion_per_k);
             let mut names = HashSet::new();
             let mut parts = Vec::with_capacity(elements);
             for (e, element) in group.elements.iter().enumerate() {
@@ -146,6 +171,7 @@ impl Resolver {
                 name: group.name.clone(),
                 elements: parts,
                 airs_mm: group.airs_mm.clone(),
+                mount_expansion_per_k: group.mount_expansion_per_k,
             });
         }
         out
@@ -258,7 +284,15 @@ impl Resolver {
                 }
             }
         }
-        Housing { track_mm: housing.track_mm, fixed }
+        self.expansion(at.key("expansion_per_k"), housing.expansion_per_k);
+        let expansion_per_k = housing.expansion_per_k;
+        Housing { track_mm: housing.track_mm, fixed, expansion_per_k }
+    }
+
+    fn expansion(&mut self, at: Address, found: Option<f64>) {
+        if let Some(found) = found {
+            self.check(at, "an expansion", found, EXPANSION);
+        }
     }
 
     fn states(&mut self, document: &OpticsDocument) -> Vec<ZoomState> {
@@ -317,16 +351,16 @@ impl Resolver {
             }
         }
     }
+}
 
-    fn fit(&mut self, design: &Design) {
-        if let Some(mismatch) = design.housing_mismatch() {
-            let at = Address::root().key("states").index(mismatch.state);
-            let error = DesignError::Housing {
-                state: design.states[mismatch.state].name.clone(),
-                found_mm: mismatch.found_mm,
-                needed_mm: mismatch.needed_mm,
-            };
-            self.fault(at.key("spacings_mm").index(mismatch.spacing), error);
-        }
+fn fit(design: &Design, faults: &mut Vec<DesignFault>) {
+    if let Some(mismatch) = design.housing_mismatch() {
+        let at = Address::root().key("states").index(mismatch.state);
+        let error = DesignError::Housing {
+            state: design.states[mismatch.state].name.clone(),
+            found_mm: mismatch.found_mm,
+            needed_mm: mismatch.needed_mm,
+        };
+        faults.push(DesignFault { at: at.key("spacings_mm").index(mismatch.spacing), error });
     }
 }

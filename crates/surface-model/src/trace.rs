@@ -45,6 +45,36 @@ pub(crate) struct Stage<N> {
     pub(crate) ratio: N,
 }
 
+impl<N: Real> Stage<N> {
+    /// A surface between two media, with no gap before it.
+    pub(crate) fn alone(surface: Surface, before: f64, behind: f64) -> Self {
+        Self {
+            surface,
+            sphere: surface.is_sphere(),
+            gap: N::splat(0.0),
+            index: N::splat(before),
+            ratio: N::splat(before / behind),
+        }
+    }
+
+    /// Step 3 with the normal that is given.
+    #[inline(always)]
+    pub(crate) fn refracted<const D: usize>(
+        &self,
+        met: Meeting<N, D>,
+        n: &[N; D],
+        nz: N,
+    ) -> (Crossing<N, D>, Ray<N, D>) {
+        let (one, mu) = (N::splat(1.0), self.ratio);
+        let Meeting { at, path, cos_in, cos_in_squared } = met;
+        let cos_out = (one - mu * mu * (one - cos_in_squared)).sqrt();
+        let gamma = cos_out - mu * cos_in;
+        let behind =
+            Ray { d: along(&at.d.map(|d| mu * d), gamma, n), dz: mu * at.dz + gamma * nz, ..at };
+        (Crossing { ray: at, path, cos_in, cos_out }, behind)
+    }
+}
+
 /// A train as the kernels take it.
 #[derive(Debug, Clone)]
 pub(crate) struct Stages<N> {
@@ -59,11 +89,8 @@ impl<N: Real> Stages<N> {
         let gaps = std::iter::once(&0.0).chain(train.gaps());
         let media = train.indices().windows(2);
         let stage = |((surface, &gap), media): ((&Surface, &f64), &[f64])| Stage {
-            surface: *surface,
-            sphere: surface.is_sphere(),
             gap: N::splat(gap),
-            index: N::splat(media[0]),
-            ratio: N::splat(media[0] / media[1]),
+            ..Stage::alone(*surface, media[0], media[1])
         };
         let list = train.surfaces().iter().zip(gaps).zip(media).map(stage).collect();
         Self { list, last_index: N::splat(train.indices()[train.len()]) }
@@ -155,18 +182,18 @@ pub(crate) fn normal<N: Real, const D: usize>(
 }
 
 /// A ray on a surface.
-struct Meeting<N, const D: usize> {
-    at: Ray<N, D>,
+pub(crate) struct Meeting<N, const D: usize> {
+    pub(crate) at: Ray<N, D>,
     /// Path from the surface before, mm.
-    path: N,
-    cos_in: N,
+    pub(crate) path: N,
+    pub(crate) cos_in: N,
     /// Its square, which on a sphere is there before the root is drawn.
-    cos_in_squared: N,
+    pub(crate) cos_in_squared: N,
 }
 
 /// Steps 1 and 2: carries a ray over the gap to the surface.
 #[inline(always)]
-fn meet<N: Real, const D: usize>(stage: &Stage<N>, ray: &Ray<N, D>) -> Meeting<N, D> {
+pub(crate) fn meet<N: Real, const D: usize>(stage: &Stage<N>, ray: &Ray<N, D>) -> Meeting<N, D> {
     let Stage { surface, sphere, gap, .. } = stage;
     let two = N::splat(2.0);
     let ahead = *gap - ray.z;
@@ -220,18 +247,12 @@ fn polished<N: Real, const D: usize>(surface: &Surface, start: Ray<N, D>) -> (Ra
 
 /// Step 3: the crossing and the ray behind it.
 #[inline(always)]
-fn cross<N: Real, const D: usize>(
+pub(crate) fn refract<N: Real, const D: usize>(
     stage: &Stage<N>,
-    ray: &Ray<N, D>,
+    met: Meeting<N, D>,
 ) -> (Crossing<N, D>, Ray<N, D>) {
-    let (one, mu) = (N::splat(1.0), stage.ratio);
-    let Meeting { at, path, cos_in, cos_in_squared } = meet(stage, ray);
-    let (n, nz) = normal(stage, &at);
-    let cos_out = (one - mu * mu * (one - cos_in_squared)).sqrt();
-    let gamma = cos_out - mu * cos_in;
-    let behind =
-        Ray { d: along(&at.d.map(|d| mu * d), gamma, &n), dz: mu * at.dz + gamma * nz, ..at };
-    (Crossing { ray: at, path, cos_in, cos_out }, behind)
+    let (n, nz) = normal(stage, &met.at);
+    stage.refracted(met, &n, nz)
 }
 
 /// Traces a ray that starts in the plane through the first vertex. `keep` is given each crossing
@@ -245,7 +266,7 @@ fn forward<N: Real, const D: usize>(
     let mut ray = *start;
     let mut excess = N::splat(0.0);
     for (i, stage) in stages.list.iter().enumerate() {
-        let (crossing, behind) = cross(stage, &ray);
+        let (crossing, behind) = refract(stage, meet(stage, &ray));
         excess = excess + stage.index * (crossing.path - stage.gap);
         keep(i, crossing);
         ray = behind;

@@ -141,6 +141,12 @@ impl Train {
         &self.indices
     }
 
+    /// Sets the refractive index of a medium; medium `i` stands before surface `i`.
+    #[inline]
+    pub fn set_index(&mut self, medium: usize, index: f64) {
+        self.indices[medium] = index;
+    }
+
     /// Sets the quantity at `place` (see [`Quantities`]).
     #[inline]
     pub fn set_quantity(&mut self, quantities: Quantities, place: usize, value: f64) {

@@ -3,10 +3,16 @@
 
 mod assess;
 mod completions;
+mod gather;
 mod glass;
 mod optimise;
+mod overnight;
 mod progress;
+mod retune;
 mod schema;
+mod start;
+mod sweep;
+mod tolerance;
 mod trace;
 
 use std::ffi::OsString;
@@ -16,10 +22,16 @@ use clap::{CommandFactory, Parser, Subcommand};
 
 pub(crate) use assess::AssessArguments;
 pub(crate) use completions::CompletionsArguments;
+pub(crate) use gather::GatherArguments;
 pub(crate) use glass::GlassArguments;
 pub(crate) use optimise::{MethodArgument, OptimiseArguments};
+pub(crate) use overnight::{OvernightArguments, StrategyArgument};
 pub(crate) use progress::ProgressArgument;
+pub(crate) use retune::RetuneArguments;
 pub(crate) use schema::{DocumentKind, SchemaArguments};
+pub(crate) use start::StartArguments;
+pub(crate) use sweep::SweepArguments;
+pub(crate) use tolerance::{GradeArgument, ToleranceArguments};
 pub(crate) use trace::TraceArguments;
 
 use crate::console::{Console, ErrorFormat};
@@ -61,8 +73,13 @@ Exit status:
     0  done
     1  the work failed: a ray does not get through, nothing was found
     2  the input or the command line is wrong
-    3  done, but a goal or limit is missed (only with --require)
+    3  done, but a goal or limit is missed (only with --require), or parts of a
+       run are missing
+    4  gather: no start is finished, so there is nothing to do
+    5  the run folder is in use by another process
+    6  the run folder is damaged, or of another file, seed or version
     7  the result cannot be written
+   75  stopped by --time-limit; run again, it goes on
   130  stopped by Ctrl-C, the best so far saved; 143 the same by SIGTERM
 
 Example:
@@ -75,6 +92,18 @@ pub(crate) enum Command {
     Assess(AssessArguments),
     /// Improve a design: move what is free until the goals are met as well as they can be
     Optimise(OptimiseArguments),
+    /// Begin: work out layouts that can do what a brief asks, and rank them
+    Start(StartArguments),
+    /// Tell what a workshop's errors do to a design, and the yield
+    Tolerance(ToleranceArguments),
+    /// Optimise a design at every point of a grid or a sample
+    Sweep(SweepArguments),
+    /// After a change, move only what can still move, in stages
+    Retune(RetuneArguments),
+    /// Search for designs for hours, in a run folder that survives anything
+    Overnight(OvernightArguments),
+    /// Put the parts of an overnight run or a sweep together
+    Gather(GatherArguments),
     /// Follow one exact ray through a design, surface by surface
     Trace(TraceArguments),
     /// Look through the glass catalogue, or find equivalents of a glass

@@ -18,6 +18,8 @@ pub(crate) struct SchemaArguments {
 pub(crate) enum DocumentKind {
     /// A design file
     Design,
+    /// A sweep plan
+    Plan,
     /// A brief: the requirement a design is begun from
     Brief,
 }

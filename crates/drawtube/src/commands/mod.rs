@@ -2,7 +2,13 @@
 
 pub(crate) mod assess;
 pub(crate) mod completions;
+pub(crate) mod gather;
 pub(crate) mod glass;
 pub(crate) mod optimise;
+pub(crate) mod overnight;
+pub(crate) mod retune;
 pub(crate) mod schema;
+pub(crate) mod start;
+pub(crate) mod sweep;
+pub(crate) mod tolerance;
 pub(crate) mod trace;

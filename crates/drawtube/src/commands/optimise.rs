@@ -1,7 +1,6 @@
 //! `optimise`: from a design to a better one nearby.
 
 mod account;
-mod destination;
 mod request;
 
 use driver::optimise::{Optimisation, optimise};
@@ -9,13 +8,13 @@ use driver::solve::Stopped;
 
 use crate::arguments::OptimiseArguments;
 use crate::console::Console;
+use crate::destination::Destination;
 use crate::exit_status::ExitStatus;
 use crate::failure::Failure;
 use crate::progress::Teller;
 use crate::signals::StopSignal;
 
 use account::Account;
-use destination::Destination;
 use request::{Request, Summary};
 
 pub(crate) fn run(arguments: OptimiseArguments, console: &Console) -> Result<ExitStatus, Failure> {
@@ -24,7 +23,7 @@ pub(crate) fn run(arguments: OptimiseArguments, console: &Console) -> Result<Exi
     let signals = StopSignal::listen().map_err(Failure::Signals)?;
     let stages = solve(&request, &signals, console)?;
     let account = Account::new(&request.file, stages)?;
-    let saved = request.destination.save(account.result(), console);
+    let saved = request.destination.save("design", account.result().text().as_bytes(), console);
     tell(&request, &account, saved.is_ok(), console)?;
     saved?;
     Ok(signals.status().unwrap_or(if request.require && !account.meets() {

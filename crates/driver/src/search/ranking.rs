@@ -59,8 +59,14 @@ impl Ranking {
     /// all before it: the best, then the best of those unlike it, and so on.
     #[must_use]
     pub fn best(&self, count: usize) -> Vec<u64> {
+        self.best_below(count, None)
+    }
+
+    /// As [`Self::best`], of the starts with numbers below `below` alone.
+    #[must_use]
+    pub fn best_below(&self, count: usize, below: Option<u64>) -> Vec<u64> {
         let mut kept: Vec<(&Rank, &Shape)> = Vec::with_capacity(count);
-        for (rank, shape) in &self.results {
+        for (rank, shape) in self.counted(below) {
             if kept.len() == count {
                 break;
             }
@@ -74,7 +80,17 @@ impl Ranking {
     /// How many starts ended in the design of rank 1 or one that does not really differ from it.
     #[must_use]
     pub fn times_best_found(&self) -> usize {
-        let Some(best) = self.results.values().next() else { return 0 };
-        self.results.values().filter(|shape| shape.distance(best) < DIFFERENT).count()
+        self.times_best_found_below(None)
+    }
+
+    /// As [`Self::times_best_found`], of the starts with numbers below `below` alone.
+    #[must_use]
+    pub fn times_best_found_below(&self, below: Option<u64>) -> usize {
+        let Some((_, best)) = self.counted(below).next() else { return 0 };
+        self.counted(below).filter(|(_, shape)| shape.distance(best) < DIFFERENT).count()
+    }
+
+    fn counted(&self, below: Option<u64>) -> impl Iterator<Item = (&Rank, &Shape)> {
+        self.results.iter().filter(move |(rank, _)| below.is_none_or(|below| rank.number < below))
     }
 }

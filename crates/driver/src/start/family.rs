@@ -22,6 +22,14 @@ impl Sign {
         }
     }
 
+    /// The opposite sign.
+    pub(super) fn other(self) -> Self {
+        match self {
+            Self::Positive => Self::Negative,
+            Self::Negative => Self::Positive,
+        }
+    }
+
     /// The word for it.
     #[must_use]
     pub fn word(self) -> &'static str {
@@ -38,15 +46,23 @@ impl Sign {
 pub struct Family(pub Vec<Sign>);
 
 impl Family {
+    /// The signs of some powers.
+    pub(super) fn of(powers: &[f64]) -> Self {
+        let sign = |&power: &f64| if power > 0.0 { Sign::Positive } else { Sign::Negative };
+        Self(powers.iter().map(sign).collect())
+    }
+
     /// Every pattern of signs that could keep a beam collimated, upright or, where `inverted`,
     /// with a focus inside. Groups of negative power alone spread it for good; groups of positive
     /// power alone make it cross the axis, which an upright beam without internal focus must not.
     pub(super) fn all(groups: usize, inverted: bool) -> Vec<Self> {
         let pattern = |bits: usize| {
-            let sign = |g: usize| if bits >> g & 1 == 0 { Sign::Positive } else { Sign::Negative };
+            let sign =
+                |g: usize| if (bits >> g) & 1 == 0 { Sign::Positive } else { Sign::Negative };
             Self((0..groups).map(sign).collect())
         };
-        let all = (0..1_usize << groups).map(pattern);
+        let count = 1_usize << groups;
+        let all = (0..count).map(pattern);
         all.filter(|family| {
             let any = |sign| family.0.contains(&sign);
             any(Sign::Positive) && (inverted || any(Sign::Negative))

@@ -3,6 +3,7 @@
 use merit_function::assessment::{Obstacle, obstacle};
 use merit_function::limits::LimitKind;
 use surface_model::design::{Design, Element, Group, ZoomState};
+use surface_model::paraxial::ParaxialRay;
 use surface_model::surface::Surface;
 
 use super::family::Family;
@@ -67,6 +68,26 @@ impl Layout {
         groups.map(way).map(|(low, high)| high - low).collect()
     }
 
+    /// Largest diameter, over all states, that the traced rays take up in each group, paraxial, mm.
+    #[must_use]
+    pub fn ray_diameters_mm(&self) -> Vec<f64> {
+        let mut diameters = vec![0.0_f64; self.design.groups.len()];
+        let sequence = self.design.sequence();
+        let mut ray = ParaxialRay::new();
+        for state in &self.design.states {
+            let train =
+                state.wavelengths_nm.first().and_then(|&nm| self.design.train(state, nm).ok());
+            let traced = train.map(|train| ray.trace(&train, self.design.beam.edge_mm(), 0.0));
+            if !matches!(traced, Some(Ok(()))) {
+                continue;
+            }
+            for (id, height) in sequence.surfaces.iter().zip(ray.heights()) {
+                diameters[id.group] = diameters[id.group].max(2.0 * height.abs());
+            }
+        }
+        diameters
+    }
+
     /// First vertex to last vertex, the shortest and the longest of all states, mm.
     #[must_use]
     pub fn lengths_mm(&self) -> (f64, f64) {
@@ -85,6 +106,7 @@ fn design(space: &Space, thin: &Thin<'_>, thick: &Thick) -> Design {
         name: plan.name.clone(),
         elements: group.elements.iter().map(|part| element(space, part)).collect(),
         airs_mm: group.airs_mm.clone(),
+        mount_expansion_per_k: None,
     };
     let state = |(ratio, spacings): (&crate::brief::RatioBrief, &Vec<f64>)| ZoomState {
         name: ratio.name.clone(),
@@ -124,5 +146,7 @@ fn reason(obstacle: Obstacle) -> NoLayout {
         LimitKind::IncidenceDeg => NoLayout::Ray,
         LimitKind::TrackMm | LimitKind::HousingMm => NoLayout::Track,
         LimitKind::InternalFocus => NoLayout::Focus,
+        LimitKind::FluenceJCm2 => NoLayout::Fluence,
+        LimitKind::GhostClearanceMm | LimitKind::DoubleGhostClearanceMm => NoLayout::Ghost,
     }
 }

@@ -173,8 +173,8 @@ impl ThickGroup {
         }
     }
 
-    /// The smaller of the axial and the edge gap to the next group over their axial gap, mm: by
-    /// how much the facing surfaces come nearer towards their edges.
+    /// By how much the surfaces that face each other across the gap to the next group come nearer
+    /// towards their edges, mm; negative where they part.
     pub(super) fn closing_mm(&self, next: &Self) -> Result<f64, NoLayout> {
         let (Some(last), Some(first)) = (self.elements.last(), next.elements.first()) else {
             return Ok(0.0);

@@ -12,7 +12,7 @@
 //! |---|---|
 //! | number and seed → point | `sequence` |
 //! | fixed groups and counts → how spacings follow | `plan`, `family` |
-//! | point → powers, spacings of thin groups in closed form, screened | `thin`, `spacings` |
+//! | point → powers, spacings of thin groups in closed form, screened | `thin` (`by_heights`, `four_groups`), `spacings` |
 //! | powers → glasses, bendings of least spherical aberration | `shape`, `glasses`, `bending` |
 //! | thin → thick, exact by principal planes | `thick`, `lens` |
 //! | thick → design, every limit held against it | `layout` |
@@ -21,15 +21,17 @@
 //! | many points → the best that differ | `ranking`; none at all: `relaxation` |
 //!
 //! For a search: [`Starts::of`] once; then for start number k [`Starts::point`]`(k, seed)` or a
-//! point of one's own, [`Starts::layout`] (some ten microseconds; what has no layout says why in
-//! a fraction of one), [`Starts::merit`] over the layout's design for a local solver,
+//! point of one's own, [`Starts::layout`] (a fraction of a millisecond; what has no layout mostly says why
+//! in a microsecond), [`Starts::merit`] over the layout's design for a local solver,
 //! [`Starts::design_file`] for what is kept (milliseconds: it is read as any file is). Nothing
 //! depends on threads or order: the same brief, number and seed give the same bits.
 
 mod bending;
+mod by_heights;
 mod error;
 mod family;
 mod file;
+mod four_groups;
 mod glasses;
 mod layout;
 mod lens;
@@ -65,6 +67,9 @@ pub use relaxation::{Relaxation, Relaxed};
 pub use score::Score;
 
 use space::{Point, Space};
+
+/// Points that `start` looks at: enough for several layouts of every family that fits, in seconds.
+pub const LOOKED_AT: u64 = 1 << 13;
 
 /// The layouts that a brief allows.
 #[derive(Debug, Clone)]

@@ -114,10 +114,9 @@ fn plan(brief: &BriefFile, groups: Vec<GroupPlan>, inverted: bool) -> Result<Pla
     if groups.len() == 2 {
         families.retain(|family| two_groups_do(family, ratios[0]));
     }
-    if groups.len() == 3 && movement == Movement::Filling && ratios.len() == 2 {
-        if ratios[0] * ratios[1] <= 0.0 {
-            return Err(StartError::TooFewMovers { groups: 3, fixed: 2, ratios: 2 });
-        }
+    let one_way = ratios.iter().all(|ratio| ratio * ratios[0] > 0.0);
+    if groups.len() == 3 && movement == Movement::Filling && !one_way {
+        return Err(StartError::TooFewMovers { groups: 3, fixed: 2, ratios: ratios.len() });
     }
     Ok(Plan { groups, fixed, movement, families })
 }

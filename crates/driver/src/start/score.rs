@@ -22,6 +22,8 @@ use surface_model::design::{Design, ZoomState};
 use surface_model::paraxial::ParaxialRay;
 use surface_model::train::Train;
 
+use super::shape::{MARECHAL_WAVES, RMS_OF_FOURTH_POWER};
+
 /// What first and third order foretell of a layout.
 #[derive(Debug, Clone, Copy, PartialEq, serde::Serialize)]
 pub struct Score {
@@ -41,15 +43,12 @@ pub struct Score {
 
 /// Shares of the sums in the total: what the optimiser can be expected to leave of each. Found by
 /// optimising layouts of the shipped briefs.
-const THIRD_ORDER_LEFT: f64 = 0.05;
+const THIRD_ORDER_LEFT: f64 = 0.2;
 const HIGHER_ORDERS_LEFT: f64 = 1.0;
 const COLOUR_LEFT: f64 = 0.3;
 /// Units of the goal a mrad of bending counts as.
 const OF_BENDING_MRAD: f64 = 0.002;
-/// The wavefront goal where there is none, waves: a fourteenth (Maréchal).
-const USUAL_GOAL_WAVES: f64 = 1.0 / 14.0;
-/// Weighted RMS over the beam of (r/edge)⁴ and of (r/edge)², for a beam traced to 1.5.
-const RMS_OF_FOURTH_POWER: f64 = 0.1445;
+/// Weighted RMS over the beam of (r/edge)², for a beam traced to 1.5.
 const RMS_OF_SQUARE: f64 = 0.195;
 
 /// Sums over the surfaces of one state.
@@ -66,7 +65,7 @@ pub(super) fn score(design: &Design, wishes: &Wishes) -> Option<Score> {
     let (mut third, mut higher, mut colour, mut weights) = (0.0, 0.0, 0.0, 0.0);
     let (mut bending, mut surfaces) = (0.0, 0);
     for (state, goals) in design.states.iter().zip(&wishes.states) {
-        let goal = goals.wavefront_rms_waves.unwrap_or(USUAL_GOAL_WAVES);
+        let goal = goals.wavefront_rms_waves.unwrap_or(MARECHAL_WAVES);
         let &first_nm = state.wavelengths_nm.first()?;
         let sums = sums(&design.train(state, first_nm).ok()?, design.beam.edge_mm())?;
         let unit = 1.0 / (first_nm * 1e-6 * goal);

@@ -33,7 +33,7 @@ const CURVE_MARGIN: f64 = 0.95;
 const SHAPE_FACTORS: (f64, f64) = (-3.0, 3.0);
 /// The goal where a brief has none for the wavefront: a fourteenth of a wave, after A. Maréchal
 /// (M. Born and E. Wolf, *Principles of Optics*, section 9.3).
-const MARECHAL_WAVES: f64 = 1.0 / 14.0;
+pub(super) const MARECHAL_WAVES: f64 = 1.0 / 14.0;
 
 /// The elements of every group.
 pub(super) fn shapes(
@@ -65,6 +65,44 @@ pub(super) fn shapes(
     Ok(counts.map(|count| bent.by_ref().take(count).collect()).collect())
 }
 
+/// The smallest size, over that of `thin`, at which every element can be bent at all within the
+/// limits on curves.
+pub(super) fn least_size(
+    space: &Space,
+    thin: &Thin<'_>,
+    point: Point<'_>,
+) -> Result<f64, NoLayout> {
+    let (mut least, mut number) = (0.0_f64, 0);
+    for (g, group) in thin.plan.groups.iter().enumerate() {
+        let power_per_mm = thin.powers_per_mm[g] / group.elements.len() as f64;
+        let strongest = strongest_curvature(space, diameter_mm(space, thin, g));
+        for &kind in &group.elements {
+            let (_, lenses) = glass(space, kind, power_per_mm, point, number)?;
+            let steps = curvature_steps(&lenses);
+            let ends = steps
+                .iter()
+                .fold((0.0_f64, 0.0_f64), |(low, high), &step| (low.min(step), high.max(step)));
+            least = least.max((ends.1 - ends.0) / (2.0 * strongest));
+            number += 1;
+        }
+    }
+    Ok(least)
+}
+
+/// Clear diameter of a group's elements, mm.
+fn diameter_mm(space: &Space, thin: &Thin<'_>, group: usize) -> f64 {
+    let heights = thin.passages.iter().map(|passage| passage.heights[group].abs());
+    let highest = space.brief.beam.edge_mm() * heights.fold(0.0, f64::max);
+    ((2.0 * highest * CLEAR + CLEAR_MORE_MM) / CLEAR_STEP_MM).ceil() * CLEAR_STEP_MM
+}
+
+/// Strongest curvature of a thin lens of this clear diameter, 1/mm.
+fn strongest_curvature(space: &Space, diameter_mm: f64) -> f64 {
+    let radius = space.range(LimitKind::RadiusMm).min;
+    let steep = space.range(LimitKind::Steepness).max.min(STEEPEST);
+    CURVE_MARGIN * (2.0 * steep / diameter_mm).min(1.0 / radius.max(1e-9))
+}
+
 /// Units of the goal a mm of S_I at the outermost ray is, per state: W = S_I/8 there, and the
 /// weighted RMS of (r/edge)⁴ over the beam is about a fifth of that.
 fn weights(space: &Space) -> Vec<f64> {
@@ -79,7 +117,7 @@ fn weights(space: &Space) -> Vec<f64> {
 
 /// RMS of (r/edge)⁴ for a beam traced to 1.5 of its 1/e² radius, weighted by its intensity: with
 /// x = (r/edge)² the square root of ⟨x⁴⟩ − ⟨x²⟩² under exp(−4.5x) from 0 to 1.
-const RMS_OF_FOURTH_POWER: f64 = 0.1445;
+pub(super) const RMS_OF_FOURTH_POWER: f64 = 0.1445;
 
 /// An element before it is bent.
 struct Raw {
@@ -114,9 +152,7 @@ impl Raw {
                 (edge_mm * h, edge_mm * (u - h * power_before))
             })
             .collect();
-        let highest = rays.iter().map(|ray| ray.0.abs()).fold(0.0, f64::max);
-        let diameter_mm = (2.0 * highest * CLEAR + CLEAR_MORE_MM) / CLEAR_STEP_MM;
-        let diameter_mm = diameter_mm.ceil() * CLEAR_STEP_MM;
+        let diameter_mm = diameter_mm(space, thin, group);
         let (glasses, lenses) = glass(space, kind, power_per_mm, point, number)?;
         let range = kappa_range(space, &lenses, diameter_mm)?;
         let q = SHAPE_FACTORS.0 + (SHAPE_FACTORS.1 - SHAPE_FACTORS.0) * point.bending(number);
@@ -166,9 +202,7 @@ fn kappa_range(
     lenses: &[ThinLens],
     diameter_mm: f64,
 ) -> Result<(f64, f64), NoLayout> {
-    let radius = space.range(LimitKind::RadiusMm).min;
-    let steep = space.range(LimitKind::Steepness).max.min(STEEPEST);
-    let strongest = CURVE_MARGIN * (2.0 * steep / diameter_mm).min(1.0 / radius.max(1e-9));
+    let strongest = strongest_curvature(space, diameter_mm);
     let steps = curvature_steps(lenses);
     let low = steps.iter().map(|step| -strongest - step).fold(f64::NEG_INFINITY, f64::max);
     let high = steps.iter().map(|step| strongest - step).fold(f64::INFINITY, f64::min);

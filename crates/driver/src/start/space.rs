@@ -50,7 +50,8 @@ impl Space {
     /// The housing with the fixed groups of a plan.
     pub(super) fn housing(&self, plan: &Plan) -> Housing {
         let track_mm = self.brief.written().housing.track_mm;
-        Housing { track_mm, fixed: plan.fixed.clone() }
+        let expansion_per_k = self.brief.written().housing.expansion_per_k;
+        Housing { track_mm, fixed: plan.fixed.clone(), expansion_per_k }
     }
 
     /// How far a state's ratio lies on the way from the lowest to the highest, 0 to 1 on a
@@ -120,6 +121,22 @@ impl Point<'_> {
     /// Focal length of a group behind the first over that of the first, its sign apart.
     pub(super) fn focal_ratio(&self, group: usize) -> f64 {
         (WIDEST_FOCAL_RATIO.ln() * (2.0 * self.at(3 + group.min(MOST - 1)) - 1.0)).exp()
+    }
+
+    /// Where in their ranges two heights are, 0 to 1: of three groups those at the second one, at
+    /// the highest ratio and at the lowest; of four those at the second and the third.
+    pub(super) fn heights(&self) -> (f64, f64) {
+        (self.at(4), self.at(5))
+    }
+
+    /// Where in their ranges the second and the third of three spacings are, 0 to 1.
+    pub(super) fn spacings(&self) -> (f64, f64) {
+        (self.at(6), self.at(8))
+    }
+
+    /// Where in its range the change of a tied distance is, 0 to 1.
+    pub(super) fn tie_change(&self) -> f64 {
+        self.at(9)
     }
 
     /// Where in the range of sizes, 0 to 1.

@@ -3,9 +3,12 @@
 use merit_function::limits::{LimitKind, Range};
 use surface_model::housing::Anchor;
 
+use super::by_heights::by_heights;
 use super::family::Family;
+use super::four_groups::four_groups;
 use super::no_layout::NoLayout;
 use super::plan::{Movement, Plan};
+use super::shape::least_size;
 use super::space::{Point, Space};
 use super::spacings::{MOST, Passage, Tie, four, three, two};
 
@@ -13,7 +16,7 @@ use super::spacings::{MOST, Passage, Tie, four, three, two};
 #[derive(Debug, Clone, PartialEq)]
 pub(super) struct Thin<'a> {
     pub(super) plan: &'a Plan,
-    pub(super) family: &'a Family,
+    pub(super) family: Family,
     pub(super) powers_per_mm: [f64; MOST],
     /// One entry a state.
     pub(super) passages: Vec<Passage>,
@@ -30,47 +33,29 @@ pub(super) struct Tied {
 
 /// The smallest height, over that at entry, at which a beam is still no focus; in a design file
 /// that forbids one it is a hundredth.
-const NO_FOCUS: f64 = 0.05;
+pub(super) const NO_FOCUS: f64 = 0.05;
 
 /// The distances tied where that is open.
-const TIES: [Tie; 6] =
+pub(super) const TIES: [Tie; 6] =
     [Tie::First, Tie::Second, Tie::Third, Tie::FirstTwo, Tie::LastTwo, Tie::Whole];
 
 impl<'a> Thin<'a> {
     /// The layout at a point.
     pub(super) fn at(space: &'a Space, point: Point<'_>) -> Result<Self, NoLayout> {
         let plan = &space.plans[point.plan(space.plans.len())];
-        let family = plan.families.get(point.family(plan.families.len()));
-        let family = family.ok_or(NoLayout::Passing)?;
-        let shape = Self::shape(space, plan, family, point)?;
+        let shape = Self::shape(space, plan, point)?;
         for (passage, ratio) in shape.passages.iter().zip(&space.brief.ratios) {
             no_focus(&passage.heights[..plan.groups.len()], ratio.ratio)?;
         }
-        let scale = Sizes::of(space, &shape).pick(&shape, point.scale())?;
+        let scale = Sizes::of(space, &shape, point)?.pick(&shape, point.scale())?;
         Ok(shape.scaled(scale))
     }
 
-    /// The layout whose first group has a focal length of ±1 mm.
-    fn shape(
-        space: &Space,
-        plan: &'a Plan,
-        family: &'a Family,
-        point: Point<'_>,
-    ) -> Result<Self, NoLayout> {
+    /// The layout at some size or other.
+    fn shape(space: &Space, plan: &'a Plan, point: Point<'_>) -> Result<Self, NoLayout> {
         let count = plan.groups.len();
         let ratios: Vec<f64> = space.brief.ratios.iter().map(|ratio| ratio.ratio).collect();
-        let mut powers_per_mm = [0.0; MOST];
-        for (g, sign) in family.0.iter().enumerate() {
-            powers_per_mm[g] = sign.factor() / if g == 0 { 1.0 } else { point.focal_ratio(g) };
-        }
-        match (count, &plan.movement, ratios.as_slice()) {
-            (2, _, [ratio, ..]) => powers_per_mm[1] = -powers_per_mm[0] / ratio,
-            (3, Movement::Filling, [one, other]) => {
-                powers_per_mm[2] = family.0[2].factor() / (one * other).sqrt();
-            }
-            _ => {}
-        }
-        let mut tied = Self::tied(space, plan, point);
+        let (powers_per_mm, mut tied) = Self::powers(space, plan, &ratios, point)?;
         let passages = passages(&powers_per_mm, count, &ratios, tied.as_ref());
         let passages = match (passages, &mut tied) {
             (None, Some(tied)) => {
@@ -80,7 +65,30 @@ impl<'a> Thin<'a> {
             (passages, _) => passages,
         };
         let passages = passages.ok_or(NoLayout::Passing)?;
+        let family = Family::of(&powers_per_mm[..count]);
         Ok(Self { plan, family, powers_per_mm, passages, tied })
+    }
+
+    /// Powers, and what ties the spacings of four groups.
+    fn powers(
+        space: &Space,
+        plan: &Plan,
+        ratios: &[f64],
+        point: Point<'_>,
+    ) -> Result<([f64; MOST], Option<Tied>), NoLayout> {
+        let found = match (plan.groups.len(), &plan.movement) {
+            (3, Movement::Determined) => {
+                by_heights(plan, ratios, point)?.map(|found| (found, None))
+            }
+            (MOST, _) => four_groups(space, plan, ratios, point)
+                .map(|(powers_per_mm, tied)| (powers_per_mm, Some(tied))),
+            _ => None,
+        };
+        if let Some(found) = found {
+            return Ok(found);
+        }
+        let powers_per_mm = by_family(plan, ratios, point).ok_or(NoLayout::Passing)?;
+        Ok((powers_per_mm, Self::tied(space, plan, point)))
     }
 
     fn tied(space: &Space, plan: &Plan, point: Point<'_>) -> Option<Tied> {
@@ -122,6 +130,23 @@ impl<'a> Thin<'a> {
         };
         positions.map(|position| position - still)
     }
+}
+
+/// Powers of the family a point names, the first focal length ±1 mm; `None` without a family.
+fn by_family(plan: &Plan, ratios: &[f64], point: Point<'_>) -> Option<[f64; MOST]> {
+    let family = plan.families.get(point.family(plan.families.len()))?;
+    let mut powers_per_mm = [0.0; MOST];
+    for (g, sign) in family.0.iter().enumerate() {
+        powers_per_mm[g] = sign.factor() / if g == 0 { 1.0 } else { point.focal_ratio(g) };
+    }
+    match (family.0.len(), &plan.movement, ratios) {
+        (2, _, [ratio, ..]) => powers_per_mm[1] = -powers_per_mm[0] / ratio,
+        (3, Movement::Filling, [one, other]) => {
+            powers_per_mm[2] = family.0[2].factor() / (one * other).sqrt();
+        }
+        _ => {}
+    }
+    Some(powers_per_mm)
 }
 
 /// Spacings of all states, all positive; `None` where a state has none.
@@ -170,6 +195,7 @@ fn no_focus(heights: &[f64], ratio: f64) -> Result<(), NoLayout> {
 /// The sizes in which a shape fits its housing and limits.
 struct Sizes {
     least: f64,
+    by_curves: f64,
     by_track: f64,
     by_travel: f64,
     by_spacing: f64,
@@ -178,7 +204,7 @@ struct Sizes {
 }
 
 impl Sizes {
-    fn of(space: &Space, shape: &Thin<'_>) -> Self {
+    fn of(space: &Space, shape: &Thin<'_>, point: Point<'_>) -> Result<Self, NoLayout> {
         let (plan, count) = (shape.plan, shape.plan.groups.len());
         let glass: Vec<f64> = (0..count).map(|g| space.likely_length_mm(plan, g)).collect();
         let spacing = space.range(LimitKind::SpacingMm);
@@ -212,27 +238,32 @@ impl Sizes {
             }
         };
         let filling = matches!(plan.movement, Movement::Filling | Movement::Whole);
-        Self {
+        Ok(Self {
             least,
+            by_curves: least_size(space, shape, point)?,
             by_track: track_mm / extent,
             by_travel: if way > 0.0 { travel.max / way } else { f64::INFINITY },
             by_spacing,
             shortest: (length.min - ends) / shortest,
             filling: filling.then_some(track_mm / longest),
-        }
+        })
     }
 
     /// A size, the largest that fits at 1.
     fn pick(&self, shape: &Thin<'_>, place: f64) -> Result<f64, NoLayout> {
         let most = self.by_track.min(self.by_travel).min(self.by_spacing);
+        let least = self.least.max(self.by_curves);
         let size = match self.filling {
             Some(size) => size,
-            None => self.least + (most - self.least) * place,
+            None => least + (most - least) * place,
         };
         let sound = size.is_finite() && size > 0.0;
         if most < self.least || (self.filling.is_some() && size < self.least) || !sound {
             let travel = self.by_travel < self.by_track.min(self.by_spacing);
             return Err(if travel { NoLayout::Travel } else { NoLayout::Track });
+        }
+        if most < least || size < least {
+            return Err(NoLayout::Curvature);
         }
         if self.filling.is_some() && size > self.by_travel {
             return Err(NoLayout::Travel);
@@ -245,7 +276,7 @@ impl Sizes {
 }
 
 /// Smallest and largest of some numbers.
-fn ends_of(numbers: impl Iterator<Item = f64>) -> Range {
+pub(super) fn ends_of(numbers: impl Iterator<Item = f64>) -> Range {
     let none = Range { min: f64::INFINITY, max: f64::NEG_INFINITY };
     numbers.fold(none, |range, number| Range {
         min: range.min.min(number),

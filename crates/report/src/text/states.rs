@@ -10,7 +10,7 @@ use super::table::{BLANK, Column, Table};
 use super::verdict::missed;
 
 /// A number with the sign that it misses its goal, or room for one.
-fn marked(text: String, missed: bool) -> String {
+pub(crate) fn marked(text: String, missed: bool) -> String {
     format!("{text}{}", if missed { '!' } else { BLANK })
 }
 
@@ -23,7 +23,7 @@ pub(crate) fn reached(file: &DesignFile, assessment: &Assessment) -> String {
         (Column::Right, "ratio \nerror % "),
         (Column::Right, "exit slope \nµrad "),
         (Column::Right, "exit\nbeam mm"),
-        (Column::Right, "wave-\nlength nm"),
+        (Column::Right, "wave-\nlength\nnm"),
         (Column::Right, "RMS \nwaves "),
         (Column::Right, "PV\nwaves"),
     ]);
@@ -38,14 +38,101 @@ pub(crate) fn reached(file: &DesignFile, assessment: &Assessment) -> String {
         row[7] = within(goals.wavefront_rms_waves);
         table.row(row);
     }
-    for (goals, state) in file.wishes.states.iter().zip(&assessment.states) {
+    let goals = file.wishes.states.iter().cycle();
+    for (goals, (temperature_c, state)) in goals.zip(assessment.all_states()) {
+        let name = at_temperature(&state.name, temperature_c);
         for (k, wavefront) in state.wavefront.iter().enumerate() {
-            let mut row = if k == 0 { paraxial(goals, state) } else { vec![String::new(); 6] };
+            let mut row =
+                if k == 0 { paraxial(goals, state, &name) } else { vec![String::new(); 6] };
             row.extend(at_wavelength(goals, wavefront));
             table.row(row);
         }
     }
     table.text()
+}
+
+/// The goals about the real beam in every state that has any; empty if none has.
+pub(crate) fn of_the_beam(file: &DesignFile, assessment: &Assessment) -> String {
+    let goals = || file.wishes.states.iter();
+    let divergence = goals().any(|goals| goals.divergence_mrad.is_some());
+    let range = goals().any(|goals| goals.diameter_at_range_mm.is_some());
+    let focus = goals().any(|goals| goals.exit_focus_m.is_some());
+    let mut heads = vec![(Column::Left, "state")];
+    if divergence {
+        heads.extend([(Column::Right, "divergence \nmrad "), (Column::Right, "goal")]);
+    }
+    if range {
+        heads.extend([
+            (Column::Right, "at\nrange m"),
+            (Column::Right, "beam \nmm "),
+            (Column::Right, "goal"),
+        ]);
+    }
+    if focus {
+        heads.extend([(Column::Right, "focus \nat m "), (Column::Right, "goal")]);
+    }
+    if heads.len() == 1 {
+        return String::new();
+    }
+    let mut table = Table::new(heads);
+    for (goals, state) in file.wishes.states.iter().zip(&assessment.states) {
+        let mut row = vec![state.name.clone()];
+        let any = goals.divergence_mrad.is_some()
+            || goals.diameter_at_range_mm.is_some()
+            || goals.exit_focus_m.is_some();
+        if !any {
+            continue;
+        }
+        if divergence {
+            row.extend(divergence_cells(goals, state));
+        }
+        if range {
+            row.extend(range_cells(goals, state));
+        }
+        if focus {
+            row.extend(focus_cells(goals, state));
+        }
+        table.row(row);
+    }
+    table.text()
+}
+
+/// A value wanted and how far off it may be.
+pub(crate) fn about(wanted: f64, within: f64) -> String {
+    format!("{} ± {}", as_written(wanted), as_written(within))
+}
+
+fn divergence_cells(goals: &Goals, state: &StateAssessment) -> [String; 2] {
+    let within = goals.divergence_mrad;
+    if within.is_none() {
+        return [const { String::new() }; 2];
+    }
+    let value = state.divergence_mrad;
+    [
+        marked(significant_or_dash(value, 4), missed(value, within)),
+        within.map_or_else(String::new, |within| format!("≤ {}", as_written(within))),
+    ]
+}
+
+fn range_cells(goals: &Goals, state: &StateAssessment) -> [String; 3] {
+    let Some(goal) = goals.diameter_at_range_mm else { return [const { String::new() }; 3] };
+    let off = state.diameter_at_range_mm.map(|diameter| diameter - goal.wanted_mm);
+    [
+        as_written(goal.range_m),
+        marked(fixed_or_dash(state.diameter_at_range_mm, 2), missed(off, Some(goal.within_mm))),
+        about(goal.wanted_mm, goal.within_mm),
+    ]
+}
+
+fn focus_cells(goals: &Goals, state: &StateAssessment) -> [String; 2] {
+    let Some(goal) = goals.exit_focus_m else { return [const { String::new() }; 2] };
+    [
+        marked(
+            significant_or_dash(state.exit_focus_m, 4),
+            missed(state.exit_focus_error_m, Some(goal.within_m)),
+        ),
+        about(goal.wanted_m, goal.within_m),
+    ]
 }
 
 /// The goals, where they are the same in all states and there are any.
@@ -57,9 +144,17 @@ fn shared_goals(file: &DesignFile) -> Option<Goals> {
     (same && numbers(&first).iter().any(Option::is_some)).then_some(first)
 }
 
-fn paraxial(goals: &Goals, state: &StateAssessment) -> Vec<String> {
+/// A state's name, with its temperature where that is not 20 °C.
+pub(crate) fn at_temperature(name: &str, temperature_c: Option<f64>) -> String {
+    match temperature_c {
+        None => name.to_owned(),
+        Some(temperature_c) => format!("{name} {} °C", as_written(temperature_c)),
+    }
+}
+
+fn paraxial(goals: &Goals, state: &StateAssessment, name: &str) -> Vec<String> {
     vec![
-        state.name.clone(),
+        name.to_owned(),
         as_written(state.ratio_wanted),
         fixed_or_dash(state.ratio, 4),
         marked(
@@ -91,9 +186,11 @@ pub(crate) fn any_missed(file: &DesignFile, assessment: &Assessment) -> bool {
 /// Why rays fail, a line a state.
 pub(crate) fn faults(assessment: &Assessment) -> String {
     let lines: Vec<String> = assessment
-        .states
-        .iter()
-        .filter_map(|state| Some(format!("{}: {}", state.name, state.fault.as_ref()?)))
+        .all_states()
+        .filter_map(|(temperature_c, state)| {
+            let name = at_temperature(&state.name, temperature_c);
+            Some(format!("{name}: {}", state.fault.as_ref()?))
+        })
         .map(|line| super::paragraph(&line, super::WIDTH, "  "))
         .collect();
     lines.join("\n")

@@ -5,6 +5,7 @@ use merit_function::assessment::{Assessment, LimitAssessment, StateAssessment};
 use merit_function::goals::Goals;
 
 use super::number::{as_written, counted, significant};
+use super::states::at_temperature;
 
 /// One goal in one state.
 #[derive(Debug, Clone, PartialEq)]
@@ -51,12 +52,14 @@ pub(crate) fn missed(value: Option<f64>, within: Option<f64>) -> bool {
 
 /// Every goal of every state.
 pub(crate) fn marks(file: &DesignFile, assessment: &Assessment) -> Vec<Mark> {
-    let states = file.wishes.states.iter().zip(&assessment.states);
-    states.flat_map(|(goals, state)| marks_of(goals, state)).collect()
+    let states = file.wishes.states.iter().cycle().zip(assessment.all_states());
+    let marks = states.flat_map(|(goals, (temperature_c, state))| {
+        marks_of(goals, state, &at_temperature(&state.name, temperature_c))
+    });
+    marks.collect()
 }
 
-fn marks_of(goals: &Goals, state: &StateAssessment) -> Vec<Mark> {
-    let name = &state.name;
+fn marks_of(goals: &Goals, state: &StateAssessment, name: &str) -> Vec<Mark> {
     let mut marks = Vec::new();
     if let Some(within) = goals.wavefront_rms_waves {
         marks.extend(state.wavefront.iter().map(|wavefront| Mark {
@@ -66,12 +69,20 @@ fn marks_of(goals: &Goals, state: &StateAssessment) -> Vec<Mark> {
             unit: " waves",
         }));
     }
-    let mut push = |what, value, within: Option<f64>, unit| {
+    let mut push = |what: &str, value, within: Option<f64>, unit| {
         let what = format!("{what} of {name}");
         marks.extend(within.map(|within| Mark { what, value, within, unit }));
     };
     push("ratio error", state.ratio_error_percent, goals.ratio_percent, " %");
     push("exit slope", state.exit_slope_urad, goals.exit_slope_urad, " µrad");
+    push("divergence", state.divergence_mrad, goals.divergence_mrad, " mrad");
+    if let Some(goal) = goals.diameter_at_range_mm {
+        let what = format!("error of the diameter at {} m", as_written(goal.range_m));
+        let off = state.diameter_at_range_mm.map(|diameter| diameter - goal.wanted_mm);
+        push(&what, off, Some(goal.within_mm), " mm");
+    }
+    let focus = goals.exit_focus_m.map(|goal| goal.within_m);
+    push("error of the focus", state.exit_focus_error_m, focus, " m");
     marks
 }
 

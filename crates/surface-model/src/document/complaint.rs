@@ -81,9 +81,20 @@ pub struct Complaints {
     untold: usize,
 }
 
-/// A complaint and where in the file it belongs.
+/// Where words stand that are no document: on the command line, in a table.
+#[derive(Debug, Clone, PartialEq, Eq)]
+pub struct Source {
+    /// What messages call it: an option with its value, the path of a table.
+    pub label: String,
+    /// Line and column in it, where it has any.
+    pub position: Option<Position>,
+}
+
+/// A complaint and where it belongs.
 #[derive(Debug, Clone, PartialEq, Eq)]
 struct Placed {
+    /// What to call the place where that is not the file all complaints are about.
+    label: Option<String>,
     position: Option<Position>,
     /// The address with names for people.
     at: Option<Address>,
@@ -94,6 +105,7 @@ impl Complaints {
     /// About a file that could not be read as a document.
     pub(super) fn unread(label: &str, list: Vec<Complaint>) -> Self {
         Self::sorted(label, list, 0, |complaint| Placed {
+            label: None,
             position: match &complaint.place {
                 Place::Position(position) => Some(*position),
                 _ => None,
@@ -101,6 +113,22 @@ impl Complaints {
             at: None,
             complaint,
         })
+    }
+
+    /// About words that are no document, each complaint with its source; `label` is what the whole
+    /// is called where more are found than are listed. A place that is an address is one of
+    /// `document`, and told with its names.
+    pub fn elsewhere(label: &str, list: Vec<(Source, Complaint)>, document: &Value) -> Self {
+        let untold = list.len().saturating_sub(MOST_COMPLAINTS);
+        let place = |(source, complaint): (Source, Complaint)| {
+            let at = match &complaint.place {
+                Place::Value(at) | Place::Key(at) => Some(at.with_names(document)),
+                Place::Position(_) | Place::File => None,
+            };
+            Placed { label: Some(source.label), position: source.position, at, complaint }
+        };
+        let told = list.into_iter().take(MOST_COMPLAINTS).map(place).collect();
+        Self { label: label.to_owned(), told, untold }
     }
 
     /// About a document; `untold` more were found and not listed.
@@ -137,7 +165,7 @@ impl Complaints {
     pub fn to_json(&self) -> Value {
         let problem = |placed: &Placed| {
             json!({
-                "file": self.label,
+                "file": placed.label.as_ref().unwrap_or(&self.label),
                 "line": placed.position.map(|position| position.line),
                 "column": placed.position.map(|position| position.column),
                 "at": placed.at,
@@ -158,7 +186,7 @@ fn placed(document: &Document, complaint: Complaint) -> Placed {
         Place::File => (None, None),
     };
     let at = at.map(|at| at.with_names(document.value()));
-    Placed { position, at, complaint }
+    Placed { label: None, position, at, complaint }
 }
 
 impl Document {
@@ -184,7 +212,10 @@ impl fmt::Display for Complaints {
             if index > 0 {
                 writeln!(f)?;
             }
-            write!(f, "{label}:")?;
+            match &placed.label {
+                Some(label) => write!(f, "{}:", printable(label, LONGEST_LINE))?,
+                None => write!(f, "{label}:")?,
+            }
             if let Some(Position { line, column }) = placed.position {
                 write!(f, "{line}:{column}:")?;
             }

@@ -1,7 +1,8 @@
 //! From a glass as written to a definition that holds: one way, every number in bounds.
 
 use super::error::{
-    CLOSEST_POINTS_NM, DefinitionError, INDEX_ABOVE, INDEX_BELOW, MOST_SHIFT, SHORTEST_NM,
+    CLOSEST_POINTS_NM, DefinitionError, INDEX_ABOVE, INDEX_BELOW, MOST_PER_K, MOST_SHIFT,
+    SHORTEST_NM,
 };
 use super::law::{DispersionLaw, SellmeierTerm};
 use super::points::PointSeries;
@@ -74,6 +75,15 @@ pub(super) fn define(document: &GlassDocument) -> Result<Definition<'_>, Faults>
         && !(found.is_finite() && found > 0.0)
     {
         faults.add("/density_g_cm3", DefinitionError::Density { found });
+    }
+    let per_k =
+        [("/expansion_per_k", document.expansion_per_k), ("/index_per_k", document.index_per_k)];
+    for (at, found) in per_k {
+        if let Some(found) = found
+            && !(found.abs() <= MOST_PER_K)
+        {
+            faults.add(at, DefinitionError::PerKelvin { found });
+        }
     }
     let definition = definition(document, &mut faults);
     match definition {

@@ -32,6 +32,13 @@ pub struct GlassDocument {
     /// Density, g/cm^3. A melt that does not give it has that of `from`.
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub density_g_cm3: Option<f64>,
+    /// Linear expansion, 1/K. A melt that does not give it has that of `from`.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub expansion_per_k: Option<f64>,
+    /// Change of the index relative to air, 1/K, the same at every wavelength and temperature. A melt that does not
+    /// give it changes as `from`.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub index_per_k: Option<f64>,
     /// Anything worth remembering; not read by the program.
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub note: Option<String>,

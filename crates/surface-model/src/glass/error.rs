@@ -34,6 +34,26 @@ pub enum GlassError {
         /// What was asked for, nm.
         wavelength_nm: f64,
     },
+    /// Nothing says how the index changes with temperature.
+    #[error("nothing is known of how the index of {glass} changes with temperature")]
+    NoThermalTerms {
+        /// Name of the glass.
+        glass: String,
+    },
+    /// Nothing says how it expands.
+    #[error("nothing is known of how {glass} expands with temperature")]
+    NoExpansion {
+        /// Name of the glass.
+        glass: String,
+    },
+    /// A temperature at which no maker vouches for an index.
+    #[error("{glass} is known from -100 °C to 140 °C; {temperature_c} °C is outside")]
+    OutsideTemperatures {
+        /// Name of the glass.
+        glass: String,
+        /// What was asked for, °C.
+        temperature_c: f64,
+    },
     /// The name leads to no single glass.
     #[error(transparent)]
     Lookup(#[from] LookupError),
@@ -56,6 +76,17 @@ impl GlassError {
             Self::NotAWavelength { .. } => Some(IN_NANOMETRES.to_owned()),
             Self::NoRealIndex { .. } => {
                 Some("check the coefficients and the range of the glass".to_owned())
+            }
+            Self::NoThermalTerms { glass } => Some(format!(
+                "choose a glass whose maker tells it, or define your own in \"glasses\": \
+                 {{ \"from\": \"{glass}\", \"index_shift\": 0, \"index_per_k\": … }}"
+            )),
+            Self::NoExpansion { glass } => Some(format!(
+                "choose a glass whose maker tells it, or define your own in \"glasses\": \
+                 {{ \"from\": \"{glass}\", \"index_shift\": 0, \"expansion_per_k\": … }}"
+            )),
+            Self::OutsideTemperatures { .. } => {
+                Some("temperatures are in °C; 20 is what designs are drawn at".to_owned())
             }
             Self::Lookup(error) => error.advice(),
             Self::Definition(error) => error.advice(),
@@ -127,6 +158,10 @@ pub(super) const INDEX_BELOW: f64 = 5.0;
 /// The largest index shift taken for a melt. Makers hold melts to a few times 0.001 (common practice, no published
 /// source); a larger number is a slip of the pen.
 pub(super) const MOST_SHIFT: f64 = 0.05;
+
+/// The largest change a kelvin taken for a glass or a metal, 1/K: ten times that of the metals that expand most
+/// (common practice, no published source); a larger number is a slip of the pen.
+pub(super) const MOST_PER_K: f64 = 3e-4;
 
 /// Measured points must be at least this far apart, nm: closer ones are one measurement.
 pub(super) const CLOSEST_POINTS_NM: f64 = 0.001;
@@ -258,6 +293,12 @@ pub enum DefinitionError {
         /// The range as given.
         range: WavelengthRange,
     },
+    /// Nothing changes so much a kelvin.
+    #[error("{found} a kelvin is too large; at most {MOST_PER_K} either way is taken")]
+    PerKelvin {
+        /// What was given, 1/K.
+        found: f64,
+    },
     /// Nothing has such a density.
     #[error("a density must be positive and finite, not {found} g/cm^3")]
     Density {
@@ -301,6 +342,7 @@ impl DefinitionError {
             Self::ResonanceInside { .. } => {
                 "check that C is the squared wavelength in um^2, or end the range short of it"
             }
+            Self::PerKelvin { .. } => "give 1/K, such as 7.1e-6, or leave it out",
             Self::Density { .. } => "give g/cm^3, such as 2.51, or leave it out",
         };
         Some(advice.to_owned())

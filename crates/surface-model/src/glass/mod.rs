@@ -34,7 +34,7 @@ pub use search::search;
 pub use shelf::{GlassFault, GlassShelf};
 pub use status::GlassStatus;
 pub use summary::GlassSummary;
-pub use thermal::ThermalTerms;
+pub use thermal::{REFERENCE_C, THERMAL_RANGE_C, ThermalTerms, air_index};
 
 use law::DispersionLaw;
 
@@ -49,6 +49,8 @@ pub const C_LINE_NM: f64 = 656.2725;
 #[derive(Clone, Debug, PartialEq)]
 pub struct Glass {
     data: Arc<GlassData>,
+    /// Where it is not at 20 °C, its temperature.
+    temperature_c: Option<f64>,
 }
 
 #[derive(Clone, Debug, PartialEq)]
@@ -66,11 +68,43 @@ struct GlassData {
     density_g_cm3: Option<f64>,
     expansion_per_k: Option<f64>,
     thermal: Option<ThermalTerms>,
+    /// Change of the index relative to air, 1/K, where the design file gives it.
+    index_per_k: Option<f64>,
 }
 
 impl Glass {
     fn new(data: GlassData) -> Self {
-        Self { data: Arc::new(data) }
+        Self { data: Arc::new(data), temperature_c: None }
+    }
+
+    /// The same glass at another temperature than 20 °C: its index changes by the maker's terms,
+    /// or by the `index_per_k` of the design file.
+    ///
+    /// # Errors
+    /// Nothing is known of how it changes, or not at this temperature.
+    pub fn at_temperature(&self, temperature_c: f64) -> Result<Self, GlassError> {
+        let glass = || self.data.name.clone();
+        let (low, high) = THERMAL_RANGE_C;
+        if !(low..=high).contains(&temperature_c) {
+            return Err(GlassError::OutsideTemperatures { glass: glass(), temperature_c });
+        }
+        if self.data.thermal.is_none() && self.data.index_per_k.is_none() {
+            return Err(GlassError::NoThermalTerms { glass: glass() });
+        }
+        Ok(Self { data: Arc::clone(&self.data), temperature_c: Some(temperature_c) })
+    }
+
+    /// What its temperature makes of an index.
+    fn warmed(&self, index: f64, wavelength_um: f64) -> f64 {
+        let Some(temperature_c) = self.temperature_c else { return index };
+        match (self.data.index_per_k, &self.data.thermal) {
+            (Some(per_k), _) => index + per_k * (temperature_c - REFERENCE_C),
+            (None, Some(terms)) => {
+                let at_c = self.data.measured_at_c.unwrap_or(REFERENCE_C);
+                thermal::relative_index(terms, (index, at_c), wavelength_um, temperature_c)
+            }
+            (None, None) => index,
+        }
     }
 
     /// Refractive index at a wavelength in air, nm.
@@ -89,6 +123,7 @@ impl Glass {
             return Err(GlassError::OutsideRange { glass: glass(), wavelength_nm, range });
         }
         let index = self.data.law.index(wavelength_nm / 1000.0) + self.data.index_shift;
+        let index = self.warmed(index, wavelength_nm / 1000.0);
         if index.is_finite() {
             Ok(index)
         } else {

@@ -46,6 +46,7 @@ pub(super) fn read(json: &str) -> Option<Glass> {
         density_g_cm3: record.density_g_cm3,
         expansion_per_k: record.expansion_per_k,
         thermal: record.thermal.map(thermal),
+        index_per_k: None,
     }))
 }
 

@@ -164,8 +164,9 @@ impl<'a> Resolution<'a> {
                 range,
                 measured_at_c: None,
                 density_g_cm3: self.density(name),
-                expansion_per_k: None,
+                expansion_per_k: self.documents.get(name).and_then(|own| own.expansion_per_k),
                 thermal: None,
+                index_per_k: self.documents.get(name).and_then(|own| own.index_per_k),
             })),
             Definition::Melt { from, index_shift } => self.melt(name, from, index_shift),
         }
@@ -194,6 +195,10 @@ impl<'a> Resolution<'a> {
         data.status = GlassStatus::Own;
         data.index_shift += index_shift;
         data.density_g_cm3 = self.density(name).or(data.density_g_cm3);
+        if let Some(own) = self.documents.get(name) {
+            data.expansion_per_k = own.expansion_per_k.or(data.expansion_per_k);
+            data.index_per_k = own.index_per_k.or(data.index_per_k);
+        }
         let index = |nm: f64| data.law.index(nm / 1000.0) + data.index_shift;
         // A constant index has no range; one wavelength stands for all.
         let range = data.range.or_else(|| WavelengthRange::new(F_LINE_NM, C_LINE_NM))?;

@@ -9,7 +9,7 @@ use merit_function::assessment::Assessment;
 use report::text;
 use serde_json::{Value, json};
 
-use super::destination::Destination;
+use crate::destination::Destination;
 use crate::failure::Failure;
 
 /// One or more methods run one after the other.
@@ -101,18 +101,18 @@ impl<'a> Account<'a> {
             solving: Duration::try_from_secs_f64(self.seconds()).unwrap_or_default(),
             warnings: self.warnings(),
         });
-        if saved { format!("{told}\n{}", destination.told()) } else { told }
+        if saved { format!("{told}\n{}", destination.told("design")) } else { told }
     }
 
     fn warnings(&self) -> Vec<String> {
         let mut warnings = Vec::new();
         let last = self.stages.last();
-        let (on_bounds, variables) =
-            last.map_or((0, 0), |stage| (stage.on_bounds, stage.variables));
-        if on_bounds > 0 {
+        if let Some(told) =
+            last.and_then(|stage| text::bounds::ended_on_bounds(&stage.on_bounds, stage.variables))
+        {
             warnings.push(format!(
-                "{on_bounds} of {variables} variables ended on a bound: widen the limits or ranges \
-                 that hold them, if the design can bear it, and optimise again"
+                "{told}: widen the limits or ranges that hold them, if the design can bear it, and \
+                 optimise again"
             ));
         }
         match self.stopped {

@@ -1,16 +1,14 @@
 //! What `optimise` is asked for, with everything decided.
 
-use std::time::Duration;
-
 use driver::design_file::DesignFile;
 use driver::solve::{Method, Settings};
 
-use super::destination::Destination;
 use crate::arguments::{MethodArgument, OptimiseArguments, ProgressArgument};
 use crate::console::Console;
+use crate::destination::Destination;
 use crate::failure::Failure;
 use crate::input;
-use crate::progress::Manner;
+use crate::progress::{Manner, interval};
 
 /// What is printed at the end.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -53,14 +51,6 @@ impl Request {
             require: arguments.require,
         })
     }
-}
-
-fn interval(seconds: f64) -> Result<Duration, Failure> {
-    Duration::try_from_secs_f64(seconds).map_err(|_| Failure::Argument {
-        option: "--progress-every",
-        found: seconds.to_string(),
-        constraint: "a number of seconds, zero or positive",
-    })
 }
 
 fn stages(arguments: &OptimiseArguments) -> Result<Vec<Settings>, Failure> {

@@ -1,0 +1,89 @@
+//! Watches the night: takes what the starts find, and tells how far it is.
+
+use std::sync::atomic::{AtomicBool, Ordering};
+
+use driver::overnight::Finds;
+use driver::run::{Finished, Saving, TakenUp, Tally, Watcher};
+use driver::search::StartResult;
+use report::text::overnight::time;
+
+use super::request::{Request, Told};
+use crate::run_progress::RunTeller;
+
+/// How many merits a line of progress tells.
+const BEST_FEW: usize = 3;
+
+/// Takes what the starts find.
+pub(super) struct NightWatch<'a> {
+    teller: RunTeller<'a>,
+    stop: &'a AtomicBool,
+    finds: Finds,
+    quiet: bool,
+    run: String,
+}
+
+impl<'a> NightWatch<'a> {
+    pub(super) fn new(teller: RunTeller<'a>, stop: &'a AtomicBool, request: &Request) -> Self {
+        Self {
+            teller,
+            stop,
+            finds: Finds::new(usize::from(request.keep)),
+            quiet: request.told == Told::Nothing,
+            run: request.run.display().to_string(),
+        }
+    }
+
+    /// What was found, when the run is over.
+    pub(super) fn over(self) -> (Finds, RunTeller<'a>) {
+        (self.finds, self.teller)
+    }
+}
+
+impl Watcher<StartResult> for NightWatch<'_> {
+    fn taken_up(&mut self, taken_up: &TakenUp) {
+        let TakenUp { finished, sessions, seconds, dropped_bytes } = *taken_up;
+        if dropped_bytes > 0 {
+            self.teller.say(&format!(
+                "notice: the last line of the journal in {} was torn; its {dropped_bytes} bytes are \
+                 dropped, and what they held is computed again",
+                self.run
+            ));
+        }
+        if sessions > 0 && !self.quiet {
+            self.teller.say(&format!(
+                "{} goes on: {finished} starts were done in {}.",
+                self.run,
+                time(seconds)
+            ));
+        }
+    }
+
+    fn found(&mut self, finished: Finished<StartResult>) {
+        self.finds.insert(finished);
+    }
+
+    fn tick(&mut self, tally: &Tally) {
+        let finds = &self.finds;
+        self.teller.tick(tally, || {
+            finds.best_merits(BEST_FEW).into_iter().map(|merit| format!("{merit:.4}")).collect()
+        });
+    }
+
+    fn saving(&mut self, saving: Saving<'_>) {
+        match saving {
+            Saving::Failed(error) => self.teller.say(&format!(
+                "warning: the journal in {} CANNOT BE WRITTEN: {error}; the search goes on and \
+                 writing is tried again",
+                self.run
+            )),
+            Saving::Recovered => self.teller.say(&format!(
+                "The journal in {} can be written again; nothing is missing.",
+                self.run
+            )),
+        }
+    }
+
+    fn interrupted(&self) -> bool {
+        self.stop.load(Ordering::Relaxed)
+    }
+}

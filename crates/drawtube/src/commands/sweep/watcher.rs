@@ -1,0 +1,98 @@
+//! Watches a sweep: takes what the points come to, and tells how far it is.
+
+use std::collections::BTreeMap;
+use std::path::Path;
+use std::sync::atomic::{AtomicBool, Ordering};
+
+use driver::run::{Finished, Saving, TakenUp, Tally, Watcher};
+use driver::sweep::{PointResult, Sweep};
+use report::text::overnight::time;
+
+use super::request::{Request, Told};
+use crate::run_progress::RunTeller;
+
+/// Takes what the points come to.
+pub(super) struct SweepWatch<'a> {
+    teller: RunTeller<'a>,
+    stop: &'a AtomicBool,
+    sweep: &'a Sweep,
+    points: BTreeMap<u64, PointResult>,
+    best: Option<f64>,
+    quiet: bool,
+    run: String,
+}
+
+impl<'a> SweepWatch<'a> {
+    pub(super) fn new(
+        teller: RunTeller<'a>,
+        stop: &'a AtomicBool,
+        request: &'a Request,
+        run: &Path,
+    ) -> Self {
+        Self {
+            teller,
+            stop,
+            sweep: &request.sweep,
+            points: BTreeMap::new(),
+            best: None,
+            quiet: request.told == Told::Nothing,
+            run: run.display().to_string(),
+        }
+    }
+
+    /// All finished points, in order of their numbers.
+    pub(super) fn over(self) -> Vec<(u64, PointResult)> {
+        self.teller.finish();
+        self.points.into_iter().collect()
+    }
+}
+
+impl Watcher<PointResult> for SweepWatch<'_> {
+    fn taken_up(&mut self, taken_up: &TakenUp) {
+        let TakenUp { finished, sessions, seconds, dropped_bytes } = *taken_up;
+        if dropped_bytes > 0 {
+            self.teller.say(&format!(
+                "notice: the last line of the journal in {} was torn; its {dropped_bytes} bytes are \
+                 dropped, and what they held is computed again",
+                self.run
+            ));
+        }
+        if sessions > 0 && !self.quiet {
+            self.teller.say(&format!(
+                "{} goes on: {finished} points were done in {}.",
+                self.run,
+                time(seconds)
+            ));
+        }
+    }
+
+    fn found(&mut self, finished: Finished<PointResult>) {
+        self.sweep.note(finished.number, &finished.done);
+        let merit = finished.done.reached.as_ref().map(|reached| reached.merit);
+        self.best = [self.best, merit].into_iter().flatten().reduce(f64::min);
+        self.points.insert(finished.number, finished.done);
+    }
+
+    fn tick(&mut self, tally: &Tally) {
+        let best = self.best;
+        self.teller.tick(tally, || best.iter().map(|merit| format!("{merit:.4}")).collect());
+    }
+
+    fn saving(&mut self, saving: Saving<'_>) {
+        match saving {
+            Saving::Failed(error) => self.teller.say(&format!(
+                "warning: the journal in {} CANNOT BE WRITTEN: {error}; the sweep goes on and \
+                 writing is tried again",
+                self.run
+            )),
+            Saving::Recovered => self.teller.say(&format!(
+                "The journal in {} can be written again; nothing is missing.",
+                self.run
+            )),
+        }
+    }
+
+    fn interrupted(&self) -> bool {
+        self.stop.load(Ordering::Relaxed)
+    }
+}

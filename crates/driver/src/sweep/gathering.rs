@@ -1,0 +1,77 @@
+//! Putting together what the parts of a sweep have come to.
+
+use std::collections::BTreeMap;
+
+use super::KIND;
+use super::point::PointResult;
+use crate::run::{RunError, Share, Survey};
+
+/// The parts of one sweep, from one folder or several. The order of folders does not matter, and a
+/// part that is there twice counts once.
+#[derive(Debug)]
+pub struct SweepGathering {
+    points: BTreeMap<u64, PointResult>,
+    of: u64,
+    wanted: u64,
+}
+
+impl SweepGathering {
+    /// Reads the parts in these folders, of a sweep of so many points.
+    ///
+    /// # Errors
+    /// They are not of the same sweep, or one is damaged, or two disagree about a point.
+    pub fn of(surveys: &[Survey], wanted: u64) -> Result<Self, RunError> {
+        let of = surveys.first().map_or(1, |survey| survey.run.parts);
+        let mut gathering = Self { points: BTreeMap::new(), of, wanted };
+        for survey in surveys {
+            if survey.run.kind != KIND {
+                let reason = format!("it holds work of another kind, {:?}", survey.run.kind);
+                return Err(RunError::NotARun { path: survey.path.clone(), reason });
+            }
+            if let Some(difference) = surveys[0].run.difference(&survey.run) {
+                return Err(RunError::AnotherRun { path: survey.path.clone(), difference });
+            }
+            for part in &survey.parts {
+                let mut disagree = None;
+                part.read::<PointResult>(&mut |unit| match gathering.points.get(&unit.number) {
+                    None => {
+                        gathering.points.insert(unit.number, unit.done);
+                    }
+                    Some(there) if *there == unit.done => {}
+                    Some(_) => disagree = disagree.or(Some(unit.number)),
+                })?;
+                if let Some(point) = disagree {
+                    let reason =
+                        format!("it has another result of point {point} than another folder");
+                    return Err(RunError::Damaged { path: part.place.clone(), reason });
+                }
+            }
+        }
+        Ok(gathering)
+    }
+
+    /// Into how many parts the sweep is split.
+    #[must_use]
+    pub fn of_parts(&self) -> u64 {
+        self.of
+    }
+
+    /// Parts of which points are missing, and how many.
+    #[must_use]
+    pub fn missing(&self) -> Vec<(Share, u64)> {
+        let there = |share: Share| {
+            let counted = self.points.keys().filter(|&&number| number < self.wanted);
+            counted.filter(|&&number| share.holds(number)).count() as u64
+        };
+        Share::all(self.of)
+            .map(|share| (share, share.count(self.wanted) - there(share)))
+            .filter(|(_, missing)| *missing > 0)
+            .collect()
+    }
+
+    /// The finished points, in order of their numbers.
+    #[must_use]
+    pub fn into_points(self) -> Vec<(u64, PointResult)> {
+        self.points.into_iter().filter(|(number, _)| *number < self.wanted).collect()
+    }
+}

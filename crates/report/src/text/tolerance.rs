@@ -1,0 +1,262 @@
+//! What `tolerance` prints for people.
+
+use driver::design_file::DesignFile;
+use driver::tolerance::{
+    Balance, Distribution, MonteCarlo, Quantity, Sensitivity, Spread, StateSensitivity,
+    ToleranceReport,
+};
+use surface_model::document::Address;
+
+use super::number::{as_written, counted, fixed, significant, significant_or_dash};
+use super::table::{ARROW, Column, Table};
+use super::{WIDTH, assessment, paragraph, sections, warnings};
+
+/// Which tolerances are listed.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, Default)]
+pub enum Listed {
+    /// The worst.
+    #[default]
+    Worst,
+    /// Every one.
+    All,
+}
+
+/// How many are the worst.
+const WORST: usize = 12;
+
+/// The whole result.
+#[must_use]
+pub fn told(file: &DesignFile, report: &ToleranceReport, listed: Listed) -> String {
+    sections([
+        assessment::heading(file),
+        premises(file, report),
+        distributions(&report.monte_carlo),
+        wander(&report.monte_carlo),
+        sensitivities(file, report, listed),
+        balance(file, report.balance.as_ref()),
+        warnings(&cautions(report)),
+        verdict(report),
+    ])
+}
+
+fn premises(file: &DesignFile, report: &ToleranceReport) -> String {
+    let spread = match report.spread {
+        Spread::Normal => "normal, cut off at the tolerance, which is two sigma",
+        Spread::Uniform => "uniform within the tolerance",
+    };
+    let spacings: Vec<String> = report.readjusted.iter().map(|at| label(file, at)).collect();
+    let followed = if spacings.is_empty() {
+        "Nothing is re-adjusted.".to_owned()
+    } else {
+        let states = file.design.states.len();
+        format!(
+            "Re-adjusted: {} in {}.",
+            counted(spacings.len(), "spacing"),
+            counted(states, "state")
+        )
+    };
+    let told = format!("Grade {}; errors are {spread}. {followed}", report.grade.word());
+    paragraph(&told, WIDTH, "")
+}
+
+/// How the systems are spread in every state.
+fn distributions(monte_carlo: &MonteCarlo) -> String {
+    let mut table = Table::new([
+        (Column::Left, "state"),
+        (Column::Left, "quantity"),
+        (Column::Right, "within"),
+        (Column::Right, "as\ndrawn"),
+        (Column::Right, "expected\nrms"),
+        (Column::Right, "rms"),
+        (Column::Right, "50 %"),
+        (Column::Right, "90 %"),
+        (Column::Right, "98 %"),
+        (Column::Right, "met\n%"),
+    ]);
+    for state in &monte_carlo.states {
+        for (i, quantity) in state.quantities.iter().enumerate() {
+            let sizes = &quantity.sizes;
+            table.row([
+                if i == 0 { state.state.clone() } else { String::new() },
+                name(quantity.quantity).to_owned(),
+                quantity.within.map_or_else(String::new, as_written),
+                significant(quantity.nominal, 3),
+                significant(quantity.predicted_rms, 3),
+                significant(sizes.rms, 3),
+                significant_or_dash(sizes.percent_50, 3),
+                significant_or_dash(sizes.percent_90, 3),
+                significant_or_dash(sizes.percent_98, 3),
+                quantity.within_percent.map_or_else(String::new, |percent| fixed(percent, 1)),
+            ]);
+        }
+    }
+    table.text()
+}
+
+fn name(quantity: Quantity) -> &'static str {
+    match quantity {
+        Quantity::WavefrontRmsWaves => "RMS waves",
+        Quantity::RatioPercent => "ratio %",
+        Quantity::ExitSlopeUrad => "slope µrad",
+        Quantity::BoresightUrad => "boresight µrad",
+    }
+}
+
+/// How far the beam wanders through the zoom.
+fn wander(monte_carlo: &MonteCarlo) -> String {
+    let mut table = Table::new([
+        (Column::Left, "boresight through the zoom, µrad"),
+        (Column::Right, "rms"),
+        (Column::Right, "50 %"),
+        (Column::Right, "90 %"),
+        (Column::Right, "98 %"),
+    ]);
+    let mut row = |what: &str, sizes: &Distribution| {
+        table.row([
+            what.to_owned(),
+            significant(sizes.rms, 3),
+            significant_or_dash(sizes.percent_50, 3),
+            significant_or_dash(sizes.percent_90, 3),
+            significant_or_dash(sizes.percent_98, 3),
+        ]);
+    };
+    match &monte_carlo.boresight_wander_sliding_urad {
+        None => row("all mounts slide", &monte_carlo.boresight_wander_urad),
+        Some(sliding) => {
+            row("mounts as given, some turn", &monte_carlo.boresight_wander_urad);
+            row("if all mounts slid", sliding);
+        }
+    }
+    table.text()
+}
+
+/// What single tolerances do, the worst state each.
+fn sensitivities(file: &DesignFile, report: &ToleranceReport, listed: Listed) -> String {
+    let mut table = Table::new([
+        (Column::Right, "share\n%"),
+        (Column::Left, "tolerance"),
+        (Column::Left, "at"),
+        (Column::Right, "±"),
+        (Column::Right, "RMS\nwaves"),
+        (Column::Right, "ratio\n%"),
+        (Column::Right, "slope\nµrad"),
+        (Column::Right, "bore-\nsight µrad"),
+    ]);
+    let most = if listed == Listed::All { usize::MAX } else { WORST };
+    for sensitivity in report.sensitivities.iter().take(most) {
+        let mut row = vec![
+            fixed(sensitivity.share_percent, 1),
+            sensitivity.kind.word().to_owned(),
+            label(file, &sensitivity.at),
+            as_written(sensitivity.tolerance),
+        ];
+        let worst = |quantity| {
+            let sizes = sensitivity.states.iter();
+            sizes.map(|state: &StateSensitivity| state.size(quantity)).fold(0.0, f64::max)
+        };
+        row.extend(Quantity::ALL.map(|quantity| effect(worst(quantity))));
+        table.row(row);
+    }
+    let rest = report.sensitivities.len().saturating_sub(most);
+    let note = format!(
+        "The effect at the full tolerance in the worst state, spacings re-adjusted; its share of \
+         all expected misses.{}",
+        if rest > 0 { format!(" {rest} more: --all.") } else { String::new() }
+    );
+    format!("{}\n{}", table.text(), paragraph(&note, WIDTH, ""))
+}
+
+/// An effect; what is nothing but rounding is nothing.
+fn effect(size: f64) -> String {
+    if size < 1e-9 { "0".to_owned() } else { significant(size, 2) }
+}
+
+/// A place in few words: the names and numbers of its address.
+fn label(file: &DesignFile, at: &Address) -> String {
+    let at = at.with_names(file.document().value());
+    let steps = at.steps();
+    let names = steps.iter().enumerate().filter(|(i, _)| i % 2 == 1).map(|(_, step)| *step);
+    names.collect::<Vec<_>>().join(" ")
+}
+
+fn balance(file: &DesignFile, balance: Option<&Balance>) -> String {
+    let Some(balance) = balance else { return String::new() };
+    let mut table = Table::new([
+        (Column::Left, "tolerance"),
+        (Column::Left, "at"),
+        (Column::From, "from"),
+        (Column::Arrow, ""),
+        (Column::Right, "to"),
+    ]);
+    for tolerance in &balance.tolerances {
+        table.row([
+            tolerance.kind.word().to_owned(),
+            label(file, &tolerance.at),
+            as_written(tolerance.from),
+            ARROW.to_owned(),
+            as_written(tolerance.to),
+        ]);
+    }
+    let reached = if balance.reached {
+        format!(
+            "With these tolerances {} % of the same systems come out right ({} % wanted)",
+            fixed(balance.yield_percent, 1),
+            as_written(balance.wanted_percent)
+        )
+    } else {
+        format!(
+            "Even a tenth of every tolerance gives {} %, not {} %",
+            fixed(balance.yield_percent, 1),
+            as_written(balance.wanted_percent)
+        )
+    };
+    let told = format!(
+        "{reached}, at {} times the cost, if a tolerance half as wide costs twice as much.",
+        significant(balance.relative_cost, 2)
+    );
+    format!("{}\n{}", table.text(), paragraph(&told, WIDTH, ""))
+}
+
+fn cautions(report: &ToleranceReport) -> Vec<String> {
+    let monte_carlo = &report.monte_carlo;
+    let mut cautions = Vec::new();
+    if let Some(fault) = &monte_carlo.first_fault {
+        let failed = counted(monte_carlo.failed as usize, "system");
+        cautions.push(format!("in {failed} a ray does not get through; first: {fault}"));
+    }
+    if monte_carlo.readjustment_at_bound > 0 {
+        let systems = counted(monte_carlo.readjustment_at_bound as usize, "system");
+        cautions.push(format!(
+            "in {systems} a re-adjusted spacing stopped at its limit: leave it more room"
+        ));
+    }
+    if monte_carlo.systems < monte_carlo.systems_wanted {
+        cautions.push(format!(
+            "stopped after {} of {} systems",
+            monte_carlo.systems, monte_carlo.systems_wanted
+        ));
+    }
+    cautions
+}
+
+fn verdict(report: &ToleranceReport) -> String {
+    let monte_carlo = &report.monte_carlo;
+    let [low, high] = monte_carlo.yield_between_percent.map(|percent| fixed(percent, 1));
+    let mut told = format!(
+        "{} of {} come out right: a yield of {} % (95 % sure: {low} to {high} %)",
+        monte_carlo.passed,
+        counted(monte_carlo.systems as usize, "system"),
+        fixed(monte_carlo.yield_percent, 1),
+    );
+    let worst: Option<&Sensitivity> = report.sensitivities.first();
+    if let Some(worst) = worst.filter(|worst| worst.share_percent > 0.0) {
+        told.push_str(&format!(
+            "; the worst offender is {} of {}, {} % of all expected misses",
+            worst.kind.word(),
+            worst.at,
+            fixed(worst.share_percent, 0)
+        ));
+    }
+    told.push('.');
+    paragraph(&told, WIDTH, "")
+}
