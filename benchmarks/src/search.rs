@@ -21,8 +21,8 @@ const SEEDS: u64 = 5;
 /// Times the merit is told at, s of one thread.
 const TIMES: [f64; 5] = [0.3, 1.0, 2.0, 5.0, 10.0];
 /// Starts that are timed on one thread and on two, and how often.
-const STARTS: u64 = 60;
-const ROUNDS: usize = 7;
+const STARTS: u64 = 40;
+const ROUNDS: usize = 5;
 
 const INTRODUCTION: &str = "## Global search
 
@@ -119,7 +119,8 @@ fn descents(name: &str, strategy: Strategy) -> Result<Vec<Descent>, Failure> {
     let most = Duration::from_secs_f64(TIMES[TIMES.len() - 1]);
     let two = rayon::ThreadPoolBuilder::new().num_threads(2).build()?;
     Ok(two.install(|| {
-        let seeds = (1..=SEEDS).into_par_iter().with_max_len(1);
+        let seeds: Vec<u64> = (1..=SEEDS).collect();
+        let seeds = seeds.into_par_iter().with_max_len(1);
         seeds.map(|seed| Descent::of(&problem, seed, most)).collect()
     }))
 }
