@@ -81,7 +81,7 @@ type Measure = fn() -> Result<Section, Failure>;
 pub(crate) fn write() -> Result<(), Failure> {
     let machine = machine()?;
     let (mut verdicts, mut rest) = (String::from(VERDICTS), String::new());
-    let sections: [(&str, Measure); 9] = [
+    let sections: [(&str, Measure); 10] = [
         ("jobs", || jobs::section(&[])),
         ("more-states", more_states::section),
         ("derivatives", derivatives::section),

@@ -67,6 +67,26 @@ fn every_limit_is_kept_from_a_start_that_crosses_it() {
     assert!(failures.is_empty(), "{}", failures.join("\n"));
 }
 
+/// Limits on what a pulse may damage, from a start that crosses them.
+#[test]
+fn fluence_and_ghosts_are_kept_off_glass() {
+    for (kind, limit) in [
+        ("fluence_j_cm2", json!({ "max": 1.2 })),
+        ("ghost_clearance_mm", json!({ "min": 4.0 })),
+        ("double_ghost_clearance_mm", json!({ "min": 3.0 })),
+    ] {
+        let root = limited("gorge", kind, &limit);
+        let file = read(root.clone()).unwrap();
+        let start = assess(&file.design, &file.wishes);
+        assert!(start.limits.iter().any(|limit| !limit.met), "the start keeps {kind} {limit}");
+        let optimised = optimised(root);
+        let end = &optimised.report.end;
+        let crossed: Vec<_> = end.limits.iter().filter(|limit| !limit.met).collect();
+        assert!(crossed.is_empty(), "{kind} {limit}: {crossed:?} ({})", optimised.stopped);
+        assert!(end.meets, "{kind} {limit}: {:?} ({})", end.merit, optimised.stopped);
+    }
+}
+
 #[test]
 fn a_focus_that_is_forbidden_goes_away() {
     let mut root = changed("river", &[("/limits", json!({ "internal_focus": "forbid" }))]);

@@ -5,11 +5,12 @@ use serde_json::Value;
 use surface_model::document::{Complaints, Document};
 
 /// Name and text of each.
-pub(crate) const DESIGNS: [(&str, &str); 4] = [
+pub(crate) const DESIGNS: [(&str, &str); 5] = [
     ("river", include_str!("../../configs/river-lidar-2x-6x.json")),
     ("pairs", include_str!("../../configs/two-colour-pairs.json")),
     ("collimator", include_str!("../../configs/moving-collimator.json")),
     ("asphere", include_str!("../../configs/four-groups-asphere.json")),
+    ("gorge", include_str!("../../configs/gorge-lidar-pulsed.json")),
 ];
 
 /// A shipped design's document.

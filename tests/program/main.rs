@@ -5,6 +5,7 @@ mod designs;
 mod extremes;
 mod glass;
 mod help;
+mod laser;
 mod mistakes;
 mod optimise;
 mod program;

@@ -80,6 +80,8 @@ pub fn without_effort(text: &str) -> String {
     let line = |line: &str| {
         if line.ends_with(" of solving.") {
             "* iterations, * evaluations, * of solving.".to_owned()
+        } else if let Some((done, _)) = line.split_once(" starts are done in ") {
+            format!("{done} starts are done in *")
         } else {
             line.to_owned()
         }

@@ -24,7 +24,7 @@ fn blocks(readme: &str) -> Vec<Block> {
 }
 
 /// The folder the tour is taken in: the shipped designs, and one with a slip of the pen.
-fn scene(folder: &Path) {
+pub fn scene(folder: &Path) {
     let configs = folder.join("configs");
     std::fs::create_dir(&configs).unwrap();
     for file in std::fs::read_dir(root().join("configs")).unwrap() {

@@ -5,6 +5,7 @@ mod certified_regression;
 mod first_order;
 mod glass;
 mod least_squares;
+mod real_beam;
 mod scipy;
 mod smooth;
 mod temperature;

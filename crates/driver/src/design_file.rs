@@ -53,7 +53,8 @@ impl DesignFile {
                 return Err(document.refuse(optics.chain(wanted)));
             }
         };
-        if let Some(complaint) = silent_about_temperature(&design, &wishes) {
+        let lacks = wishes.lacks_of(&design).map(Complaint::from);
+        if let Some(complaint) = lacks.or_else(|| silent_about_temperature(&design, &wishes)) {
             return Err(document.refuse([complaint]));
         }
         let free = freedom::resolve(&freedom, &design, document.value());

@@ -27,6 +27,8 @@
 //! blocks, one a zoom state. Start reading at [`solve`].
 
 pub mod brief;
+#[doc(hidden)]
+pub mod careless;
 pub mod change;
 pub mod design_file;
 mod document_kind;

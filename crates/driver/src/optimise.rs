@@ -142,10 +142,7 @@ pub fn merit_of(file: &DesignFile) -> Result<MeritFunction, OptimiseError> {
 
 /// There has to be a goal that counts.
 pub(crate) fn require_goal(wishes: &Wishes) -> Result<(), OptimiseError> {
-    let any_goal = wishes.states.iter().any(|goals| {
-        let present = [goals.wavefront_rms_waves, goals.ratio_percent, goals.exit_slope_urad];
-        present.iter().any(Option::is_some) && goals.weight > 0.0
-    });
+    let any_goal = wishes.states.iter().any(|goals| goals.any() && goals.weight > 0.0);
     if any_goal { Ok(()) } else { Err(OptimiseError::NoGoals) }
 }
 

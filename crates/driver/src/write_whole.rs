@@ -6,9 +6,10 @@
 use std::fs::File;
 use std::io::{self, Write};
 use std::path::{Path, PathBuf};
-use std::sync::atomic::{AtomicBool, Ordering};
 
 use tempfile::NamedTempFile;
+
+use crate::careless;
 
 /// How the names of temporary files begin.
 pub(crate) const TEMPORARY_PREFIX: &str = ".drawtube-";
@@ -60,8 +61,8 @@ pub fn write_whole(path: &Path, contents: &[u8], existing: Existing) -> Result<(
     check_target(path, existing)?;
     let folder = folder_of(path);
     let refused = |source| system(path, source);
-    if careless() {
-        return write_carelessly(path, contents).map_err(refused);
+    if careless::is_wanted() {
+        return careless::write(path, contents).map_err(refused);
     }
     let mut file =
         tempfile::Builder::new().prefix(TEMPORARY_PREFIX).tempfile_in(folder).map_err(refused)?;
@@ -117,26 +118,6 @@ fn permissions_for(path: &Path) -> Option<std::fs::Permissions> {
 #[cfg(not(unix))]
 fn permissions_for(_: &Path) -> Option<std::fs::Permissions> {
     None
-}
-
-static CARELESS: AtomicBool = AtomicBool::new(false);
-
-/// From now on this process writes as it must not: in place and piece by piece, and goes on after a
-/// torn line of a journal as if it were whole. The tests run such a program of their own to prove
-/// that they would notice; no argument and no variable of the real one leads here.
-pub fn write_carelessly_from_now_on() {
-    CARELESS.store(true, Ordering::Relaxed);
-}
-
-/// See [`write_carelessly_from_now_on`].
-pub(crate) fn careless() -> bool {
-    CARELESS.load(Ordering::Relaxed)
-}
-
-fn write_carelessly(path: &Path, contents: &[u8]) -> io::Result<()> {
-    let mut file =
-        std::fs::OpenOptions::new().write(true).create(true).truncate(true).open(path)?;
-    contents.chunks(256).try_for_each(|piece| file.write_all(piece))
 }
 
 #[cfg(test)]

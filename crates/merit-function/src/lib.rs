@@ -17,16 +17,18 @@
 //! # The one equation it exists for
 //!
 //! merit = Σ over states of weight × [ Σ over wavelengths (RMS/within)² + (ratio error/within)² +
-//! (exit slope/within)² ]
+//! (exit slope/within)² + the same for the goals about the real beam ]
 //!
 //! One unit of merit is one goal missed by exactly its `within`. Start reading at [`problem`].
 
 pub mod assessment;
+mod beam_rows;
 pub mod block;
 mod bounds;
 mod climates;
 mod edge;
 pub mod fault;
+mod focus_rows;
 pub mod goals;
 mod limit_item;
 mod limit_rows;

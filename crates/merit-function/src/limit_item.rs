@@ -2,6 +2,8 @@
 
 use surface_model::design::Design;
 use surface_model::document::Address;
+use surface_model::gaussian::{GaussianBeam, GaussianPath, peak_per_cm2};
+use surface_model::ghost::{Ghost, GhostWay};
 use surface_model::housing::Anchor;
 use surface_model::place::Place;
 use surface_model::sequence::{GapId, Sequence, SurfaceId};
@@ -47,12 +49,35 @@ pub(crate) enum Measure {
     Rear,
     /// Smallest height of the marginal ray, paraxial and exact, over its height at entry.
     Focus,
+    /// Peak energy density of a pulse at a surface, J/cm².
+    Fluence(usize),
+    /// Least distance of a ghost's focus from glass, over all ghosts of this kind.
+    Ghosts(GhostKind),
+}
+
+/// How often a surface reflects the light of a ghost.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub(crate) enum GhostKind {
+    Single,
+    Double,
+}
+
+impl GhostKind {
+    /// Every ghost of this kind in a train of so many surfaces.
+    pub(crate) fn all(self, surfaces: usize) -> Vec<Ghost> {
+        match self {
+            Self::Single => Ghost::singles(surfaces).collect(),
+            Self::Double => Ghost::doubles(surfaces).collect(),
+        }
+    }
 }
 
 /// What is measured of one state: its train at the first wavelength, and the rays in it.
 #[derive(Debug, Clone)]
 pub(crate) struct StateView {
     pub(crate) train: Train,
+    /// The real beam at the first wavelength; `None` where its keys make none.
+    pub(crate) beam: Option<GaussianBeam>,
     /// Where each group's first vertex stands in the housing, mm.
     pub(crate) positions_mm: Vec<f64>,
     /// Paraxial marginal height at every surface for unit height at entry.
@@ -102,6 +127,21 @@ impl LimitItem {
             Measure::Focus => {
                 let exact = view.edge_ray.as_ref()?;
                 Some(view.marginal.iter().chain(exact).copied().fold(f64::INFINITY, f64::min))
+            }
+            Measure::Fluence(place) => {
+                let mut path = GaussianPath::default();
+                path.trace(&view.train, &view.beam?).ok()?;
+                let energy_j = 1e-3 * design.beam.laser.pulse_energy_mj?;
+                Some(peak_per_cm2(energy_j, path.radius_squared(place).sqrt()))
+            }
+            Measure::Ghosts(kind) => {
+                let mut least = f64::INFINITY;
+                for ghost in kind.all(view.train.len()) {
+                    let mut way = GhostWay::new(&view.train, ghost);
+                    way.trace(&view.beam?).ok()?;
+                    least = least.min(way.closest().map_or(least, |focus| focus.clearance_mm));
+                }
+                Some(least)
             }
         }
     }
@@ -172,6 +212,7 @@ impl Lister<'_> {
         push(LimitKind::Steepness, None, Measure::Steepness(place));
         for state in 0..self.design.states.len() {
             push(LimitKind::IncidenceDeg, Some(state), Measure::Incidence(place));
+            push(LimitKind::FluenceJCm2, Some(state), Measure::Fluence(place));
         }
     }
 
@@ -182,6 +223,14 @@ impl Lister<'_> {
         };
         if let Some(range) = self.limits.range(LimitKind::TrackMm) {
             push(LimitKind::TrackMm, range, Measure::Length);
+        }
+        for (kind, ghosts) in [
+            (LimitKind::GhostClearanceMm, GhostKind::Single),
+            (LimitKind::DoubleGhostClearanceMm, GhostKind::Double),
+        ] {
+            if let Some(range) = self.limits.range(kind) {
+                push(kind, range, Measure::Ghosts(ghosts));
+            }
         }
         if self.limits.forbid_internal_focus {
             let range = Range { min: FOCUS_MARGIN, max: f64::INFINITY };

@@ -4,6 +4,7 @@
 //! none either.
 
 use surface_model::design::Design;
+use surface_model::ghost::Ghost;
 use surface_model::housing::Anchor;
 use surface_model::sequence::{GapId, Sequence};
 
@@ -32,6 +33,10 @@ pub(crate) enum Measured {
     Incidence(usize),
     /// Paraxial marginal height at a surface, over that at entry.
     MarginalHeight(usize),
+    /// Peak energy density of a pulse at a surface, J/cm².
+    Fluence(usize),
+    /// Distance from glass of the nearest focus of a ghost, mm.
+    GhostClearance(Ghost),
 }
 
 impl RowRule {
@@ -90,6 +95,13 @@ impl Maker<'_> {
                 }
                 return;
             }
+            Measure::Fluence(surface) => Measured::Fluence(surface),
+            Measure::Ghosts(kind) => {
+                for ghost in kind.all(self.sequence.surfaces.len()) {
+                    push_both(item, Measured::GhostClearance(ghost), rows);
+                }
+                return;
+            }
             Measure::Gap(_) | Measure::Radius(_) | Measure::Steepness(_) => return,
         };
         // A limit on an edge between groups names the state; one inside a group holds in all.
@@ -111,7 +123,10 @@ impl Maker<'_> {
                     .any(bound)
             }
             Measured::Sum { gaps, .. } => gaps.iter().any(|&(gap, _)| bound(quantities.gap(gap))),
-            Measured::Incidence(_) | Measured::MarginalHeight(_) => true,
+            Measured::Incidence(_)
+            | Measured::MarginalHeight(_)
+            | Measured::Fluence(_)
+            | Measured::GhostClearance(_) => true,
         }
     }
 

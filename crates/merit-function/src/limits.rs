@@ -36,6 +36,17 @@ pub struct LimitsDocument {
     /// First vertex to last vertex in every state, mm.
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub track_mm: Option<RangeDocument>,
+    /// Peak energy density of a pulse, 2E/(πw²), at every surface in every state, J/cm²; needs
+    /// `pulse_energy_mj` in the beam.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub fluence_j_cm2: Option<AtMostDocument>,
+    /// Distance from glass of every focus of light that one surface reflects back, mm; a focus in
+    /// glass counts as negative by its depth.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub ghost_clearance_mm: Option<AtLeastDocument>,
+    /// The same of light that two surfaces reflect, on its way to the exit.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub double_ghost_clearance_mm: Option<AtLeastDocument>,
     /// "forbid": no real focus between the first and the last surface, where a pulsed or strong
     /// beam would ionise the air or burn dust.
     #[serde(default, skip_serializing_if = "Option::is_none")]
@@ -51,6 +62,32 @@ pub struct RangeDocument {
     /// Largest value allowed.
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub max: Option<f64>,
+}
+
+/// A range without an upper end.
+#[derive(Debug, Clone, Copy, PartialEq, Deserialize, Serialize, JsonSchema)]
+pub struct AtLeastDocument {
+    /// Smallest value allowed.
+    pub min: f64,
+}
+
+/// A range without a lower end.
+#[derive(Debug, Clone, Copy, PartialEq, Deserialize, Serialize, JsonSchema)]
+pub struct AtMostDocument {
+    /// Largest value allowed.
+    pub max: f64,
+}
+
+impl From<AtLeastDocument> for RangeDocument {
+    fn from(AtLeastDocument { min }: AtLeastDocument) -> Self {
+        Self { min: Some(min), max: None }
+    }
+}
+
+impl From<AtMostDocument> for RangeDocument {
+    fn from(AtMostDocument { max }: AtMostDocument) -> Self {
+        Self { min: None, max: Some(max) }
+    }
 }
 
 /// Whether a real focus inside the expander is allowed.
@@ -87,6 +124,13 @@ pub enum LimitKind {
     IncidenceDeg,
     /// Length of the train.
     TrackMm,
+    /// Peak energy density of a pulse.
+    #[serde(rename = "fluence_j_cm2")]
+    FluenceJCm2,
+    /// Distance from glass of ghosts of one reflection.
+    GhostClearanceMm,
+    /// Distance from glass of ghosts of two reflections.
+    DoubleGhostClearanceMm,
     /// No real focus inside.
     InternalFocus,
     /// Clearance between the groups and the ends of the housing; always kept.
@@ -108,13 +152,16 @@ impl LimitKind {
             Self::TravelMm => "travel_mm",
             Self::IncidenceDeg => "incidence_deg",
             Self::TrackMm => "track_mm",
+            Self::FluenceJCm2 => "fluence_j_cm2",
+            Self::GhostClearanceMm => "ghost_clearance_mm",
+            Self::DoubleGhostClearanceMm => "double_ghost_clearance_mm",
             Self::InternalFocus => "internal_focus",
             Self::HousingMm => "housing_mm",
         }
     }
 
     /// How far a limit may be crossed and still counts as met, in its own unit: 1 µm for lengths,
-    /// 0.001° for angles, 0.00001 for pure numbers.
+    /// 0.001° for angles, 0.001 J/cm², 0.00001 for pure numbers.
     #[must_use]
     pub fn tolerance(self) -> f64 {
         match self {
@@ -177,7 +224,7 @@ impl Limits {
 
 impl LimitsDocument {
     /// The ranges as written, by kind.
-    pub(crate) fn ranges(&self) -> [(LimitKind, Option<RangeDocument>); 10] {
+    pub(crate) fn ranges(&self) -> [(LimitKind, Option<RangeDocument>); 13] {
         [
             (LimitKind::EdgeThicknessMm, self.edge_thickness_mm),
             (LimitKind::CentreThicknessMm, self.centre_thickness_mm),
@@ -189,6 +236,12 @@ impl LimitsDocument {
             (LimitKind::TravelMm, self.travel_mm),
             (LimitKind::IncidenceDeg, self.incidence_deg),
             (LimitKind::TrackMm, self.track_mm),
+            (LimitKind::FluenceJCm2, self.fluence_j_cm2.map(RangeDocument::from)),
+            (LimitKind::GhostClearanceMm, self.ghost_clearance_mm.map(RangeDocument::from)),
+            (
+                LimitKind::DoubleGhostClearanceMm,
+                self.double_ghost_clearance_mm.map(RangeDocument::from),
+            ),
         ]
     }
 }

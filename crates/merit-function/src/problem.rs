@@ -9,6 +9,9 @@
 //! exit slope  √v/within · slope in µrad
 //! ```
 //!
+//! and those about the real beam in `beam_rows`; the wavefront of a beam that should come to a
+//! focus in `focus_rows`.
+//!
 //! with wⱼ the share of the beam's power that ray stands for.
 
 mod along;
@@ -18,15 +21,18 @@ use std::ops::Range;
 use nalgebra::DVector;
 use surface_model::bundle::Bundle;
 use surface_model::design::Design;
+use surface_model::gaussian::GaussianBeam;
 use surface_model::glass::GlassError;
 use surface_model::paraxial::{ParaxialRay, ParaxialWeights};
 use surface_model::quadrature::{BeamSample, beam_sample};
 use surface_model::temperature::TemperatureError;
 use surface_model::train::Train;
 
+use crate::beam_rows::BeamRows;
 use crate::block::{BlockProblem, BlockShape, Bounds, Linearisation, StateBlock};
 use crate::climates::Climate;
 use crate::fault::EvaluationFault;
+use crate::focus_rows::FocusFan;
 use crate::goals::Goals;
 use crate::limit_rows::RowRule;
 use crate::ray_weights::RayWeights;
@@ -44,14 +50,19 @@ pub(crate) struct StateOptics {
     /// The train at the first wavelength, for what is paraxial and for limits.
     pub(crate) train: Train,
     wavelengths_nm: Vec<f64>,
+    /// The real beam at the first wavelength; `None` where its keys make none, which a resolved
+    /// design rules out.
+    beam: Option<GaussianBeam>,
+    /// The trains at every wavelength where a wavefront goal is about the sphere around a focus.
+    pub(crate) focused: Vec<Train>,
     /// The state's trains in the bundle, one a wavelength; none without a goal on the wavefront.
     bundled: Range<usize>,
-    goals: Goals,
+    pub(crate) goals: Goals,
     ratio_wanted: f64,
     /// Per shared variable, the quantities that follow it, with factors.
-    by_shared: Vec<Vec<(usize, f64)>>,
+    pub(crate) by_shared: Vec<Vec<(usize, f64)>>,
     /// The same per own variable.
-    by_own: Vec<Vec<(usize, f64)>>,
+    pub(crate) by_own: Vec<Vec<(usize, f64)>>,
     /// The other way round: per quantity, the variables it follows, with factors.
     followed: Vec<Vec<(Column, f64)>>,
 }
@@ -86,6 +97,7 @@ pub struct MeritFunction {
     pub(crate) rows: RowEvaluator,
     bundle: Bundle,
     paraxial: ParaxialRay,
+    beam_rows: BeamRows,
     /// The same goals at other temperatures; their rows follow a state's own.
     climates: Vec<Climate>,
     /// Per state, the number of its rows at 20 °C.
@@ -115,17 +127,27 @@ impl MeritFunction {
                 trains.push(design.train(state, nm)?);
             }
             let train = trains[first].clone();
+            let mut focused = Vec::new();
             if goals.wavefront_rms_waves.is_none() {
                 trains.truncate(first);
+            } else if goals.exit_focus_m.is_some() {
+                focused = trains.split_off(first);
             }
             let bundled = first..trains.len();
             traced_in.extend(bundled.clone().zip(&state.wavelengths_nm).map(|(_, &nm)| (k, nm)));
             let paraxial = [goals.ratio_percent, goals.exit_slope_urad];
-            rows.push(rays * bundled.len() + paraxial.iter().flatten().count());
+            rows.push(
+                rays * (bundled.len() + focused.len())
+                    + paraxial.iter().flatten().count()
+                    + goals.of_the_real_beam(),
+            );
+            let first_nm = state.wavelengths_nm[0];
             states.push(StateOptics {
                 name: state.name.clone(),
                 train,
                 wavelengths_nm: state.wavelengths_nm.clone(),
+                beam: design.beam.gaussian(first_nm).ok(),
+                focused,
                 bundled,
                 goals: *goals,
                 ratio_wanted: state.ratio,
@@ -151,9 +173,14 @@ impl MeritFunction {
             beam,
             weights: RayWeights::new(&sample.weights),
             sample,
-            rows: RowEvaluator::new(rules, design.beam.edge_mm()),
+            rows: RowEvaluator::new(
+                rules,
+                design.beam.edge_mm(),
+                1e-3 * design.beam.laser.pulse_energy_mj.unwrap_or(0.0),
+            ),
             bundle,
             paraxial: ParaxialRay::default(),
+            beam_rows: BeamRows::default(),
             gradient: Vec::new(),
         })
     }
@@ -205,6 +232,9 @@ impl MeritFunction {
                     value += factor * self.variables.value(variables, k, column);
                 }
                 state.train.set_quantity(quantities, binding.quantity, value);
+                for train in &mut state.focused {
+                    train.set_quantity(quantities, binding.quantity, value);
+                }
                 for train in state.bundled.clone() {
                     self.bundle.set_quantity(train, quantities.at(binding.quantity), value);
                 }
@@ -261,7 +291,35 @@ impl MeritFunction {
             }
             row += rays;
         }
-        self.paraxial_rows(k, &mut residuals[row..], row, block)
+        if !state.focused.is_empty() {
+            row += self.focus_rows(k, residuals, block.as_deref_mut())?;
+        }
+        let beam_rows = state.goals.of_the_real_beam();
+        let (paraxial, beam) = residuals.split_at_mut(residuals.len() - beam_rows);
+        if beam_rows > 0 {
+            let first = paraxial.len();
+            let quantities = self.variables.quantities();
+            self.beam_rows.evaluate(state, beam, quantities, first, block.as_deref_mut())?;
+        }
+        self.paraxial_rows(k, &mut paraxial[row..], row, block)
+    }
+
+    /// Residuals of the wavefronts about a focus, from row 0 on; how many there are.
+    fn focus_rows(
+        &self,
+        k: usize,
+        residuals: &mut [f64],
+        mut block: Option<&mut StateBlock>,
+    ) -> Result<usize, EvaluationFault> {
+        let state = &self.states[k];
+        let mut row = 0;
+        for (train, &nm) in state.focused.iter().zip(&state.wavelengths_nm) {
+            let fan = FocusFan { state, train, wavelength_nm: nm, sample: &self.sample };
+            let shapes = self.variables.quantities().shapes();
+            fan.evaluate(&mut residuals[row..], row, shapes, block.as_deref_mut())?;
+            row += self.beam.rays;
+        }
+        Ok(row)
     }
 
     /// Residuals of ratio and exit slope, from row `first` on.
@@ -402,6 +460,11 @@ impl BlockProblem for MeritFunction {
 }
 
 impl StateOptics {
+    /// The real beam at the first wavelength.
+    pub(crate) fn beam(&self) -> Result<&GaussianBeam, EvaluationFault> {
+        self.beam.as_ref().ok_or_else(|| EvaluationFault::overflow(&self.name))
+    }
+
     pub(crate) fn first_wavelength_nm(&self) -> f64 {
         self.wavelengths_nm[0]
     }

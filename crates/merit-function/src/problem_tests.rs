@@ -14,12 +14,15 @@ use crate::wishes::{Wishes, WishesDocument};
 const LIMITS: &str = r#"{
     "edge_thickness_mm": { "min": 1.0, "max": 9.0 }, "edge_gap_mm": { "min": 0.2 },
     "spacing_mm": { "min": 0.5, "max": 200.0 }, "travel_mm": { "min": 1.0, "max": 30.0 },
-    "incidence_deg": { "max": 20.0 }, "track_mm": { "max": 149.0 }, "internal_focus": "forbid" }"#;
+    "incidence_deg": { "max": 20.0 }, "track_mm": { "max": 149.0 }, "internal_focus": "forbid",
+    "fluence_j_cm2": { "max": 1.0 }, "ghost_clearance_mm": { "min": 1.0 },
+    "double_ghost_clearance_mm": { "min": 0.5 } }"#;
 
 fn design(fixed: &str, track: f64, last: [f64; 2]) -> (Design, Wishes) {
     let text = format!(
         r#"{{ "format": "drawtube/1", "title": "test",
-        "beam": {{ "wavelengths_nm": [532.0, 1064.0], "diameter_mm": 2.4, "traced_to": 1.5 }},
+        "beam": {{ "wavelengths_nm": [532.0, 1064.0], "diameter_mm": 2.4, "traced_to": 1.5,
+                   "m_squared": 1.3, "waist_distance_mm": 700.0, "pulse_energy_mj": 3.0 }},
         "groups": [
           {{ "name": "entry", "elements": [
             {{ "radii_mm": [74.76, -20.16], "glasses": ["fused-silica"], "thicknesses_mm": [3.0],
@@ -38,9 +41,11 @@ fn design(fixed: &str, track: f64, last: [f64; 2]) -> (Design, Wishes) {
         "states": [
           {{ "name": "2x", "ratio": 2.0, "spacings_mm": [13.39, {a}] }},
           {{ "name": "3x", "ratio": 3.0, "spacings_mm": [10.39, {b}], "weight": 2.0,
-             "goals": {{ "ratio_percent": {{ "within": 0.5 }} }} }} ],
+             "goals": {{ "ratio_percent": {{ "within": 0.5 }},
+                        "exit_focus_m": {{ "wanted": 40.0, "within": 2.0 }} }} }} ],
         "goals": {{ "wavefront_rms_waves": {{ "within": 0.05 }}, "ratio_percent": {{ "within": 0.2 }},
-                    "exit_slope_urad": {{ "within": 20.0 }} }},
+                    "exit_slope_urad": {{ "within": 20.0 }}, "divergence_mrad": {{ "within": 0.2 }},
+                    "diameter_at_range_mm": {{ "range_m": 30.0, "wanted": 9.0, "within": 1.0 }} }},
         "limits": {LIMITS} }}"#,
         a = last[0],
         b = last[1],

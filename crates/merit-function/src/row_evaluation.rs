@@ -1,6 +1,8 @@
 //! Values and gradients of the limit rows at a point.
 
 use nalgebra::DVector;
+use surface_model::gaussian::{GaussianPath, GaussianWeights, peak_per_cm2};
+use surface_model::ghost::GhostWay;
 use surface_model::paraxial::{ParaxialRay, ParaxialWeights};
 use surface_model::reverse::Shapes;
 use surface_model::skew::{RayPath, RayStart, trace_ray};
@@ -18,8 +20,12 @@ use crate::variables::Variables;
 pub(crate) struct RowEvaluator {
     rules: Vec<RowRule>,
     edge_mm: f64,
+    pulse_energy_j: f64,
     focus_in_sight: f64,
+    ghost_in_sight_mm: f64,
     rays: Vec<StateRays>,
+    /// Per rule, the way of its ghost, once it has been looked at.
+    ways: Vec<Option<GhostWay>>,
     gradient: Vec<f64>,
     values: Vec<f64>,
 }
@@ -29,19 +35,31 @@ pub(crate) struct RowEvaluator {
 /// whole way is seen by the limit's value, and rejected.
 const FOCUS_IN_SIGHT: f64 = 0.3;
 
+/// Distance of a ghost's focus beyond its limit, mm, from on which it counts as far: the same, for
+/// ghosts.
+const GHOST_IN_SIGHT_MM: f64 = 20.0;
+
+/// What stands for the distance of a focus that there is not, mm.
+const NO_FOCUS_MM: f64 = 1e6;
+
 /// The rays that the rows of one state have in common, traced once a point.
 #[derive(Debug, Default)]
 struct StateRays {
     paraxial: ParaxialRay,
+    gaussian: GaussianPath,
     edge: Option<RayPath>,
 }
 
 impl RowEvaluator {
-    pub(crate) fn new(rules: Vec<RowRule>, edge_mm: f64) -> Self {
+    /// Rows by these rules; the edge ray enters at `edge_mm`, a pulse has `pulse_energy_j`.
+    pub(crate) fn new(rules: Vec<RowRule>, edge_mm: f64, pulse_energy_j: f64) -> Self {
         Self {
+            ways: vec![None; rules.len()],
             rules,
             edge_mm,
+            pulse_energy_j,
             focus_in_sight: FOCUS_IN_SIGHT,
+            ghost_in_sight_mm: GHOST_IN_SIGHT_MM,
             rays: Vec::new(),
             gradient: Vec::new(),
             values: Vec::new(),
@@ -57,6 +75,7 @@ impl RowEvaluator {
     #[cfg(test)]
     pub(crate) fn see_every_focus(&mut self) {
         self.focus_in_sight = f64::INFINITY;
+        self.ghost_in_sight_mm = f64::INFINITY;
     }
 
     /// Values of all rows.
@@ -68,7 +87,7 @@ impl RowEvaluator {
     ) -> Result<(), EvaluationFault> {
         out.clear();
         self.trace(states)?;
-        for rule in &self.rules {
+        for (rule, way) in self.rules.iter().zip(&mut self.ways) {
             let k = rule.state.unwrap_or(0);
             let train = &states[k].train;
             let measured = match &rule.measured {
@@ -76,6 +95,17 @@ impl RowEvaluator {
                 Measured::Edge(gap) => edge_mm_or_fault(train, *gap)?,
                 Measured::Incidence(surface) => incidence_deg(self.rays[k].edge.as_ref(), *surface),
                 Measured::MarginalHeight(surface) => self.rays[k].paraxial.heights()[*surface],
+                Measured::Fluence(surface) => {
+                    let radius_squared = self.rays[k].gaussian.radius_squared(*surface);
+                    peak_per_cm2(self.pulse_energy_j, radius_squared.sqrt())
+                }
+                Measured::GhostClearance(ghost) => {
+                    let way = way.get_or_insert_with(|| GhostWay::new(train, *ghost));
+                    way.follow(train);
+                    let beam = states[k].beam()?;
+                    way.trace(beam).map_err(|_| EvaluationFault::overflow(&states[k].name))?;
+                    way.closest().map_or(NO_FOCUS_MM, |focus| focus.clearance_mm.min(NO_FOCUS_MM))
+                }
             };
             out.push(rule.constant + rule.sign * measured);
         }
@@ -89,11 +119,17 @@ impl RowEvaluator {
             |wanted: fn(&Measured) -> bool| self.rules.iter().any(|rule| wanted(&rule.measured));
         let paraxial = any(|measured| matches!(measured, Measured::MarginalHeight(_)));
         let exact = any(|measured| matches!(measured, Measured::Incidence(_)));
+        let gaussian = any(|measured| matches!(measured, Measured::Fluence(_)));
         for (state, rays) in states.iter().zip(&mut self.rays) {
             let train = &state.train;
             if paraxial {
                 rays.paraxial
                     .trace(train, 1.0, 0.0)
+                    .map_err(|_| EvaluationFault::overflow(&state.name))?;
+            }
+            if gaussian {
+                rays.gaussian
+                    .trace(train, state.beam()?)
                     .map_err(|_| EvaluationFault::overflow(&state.name))?;
             }
             if exact {
@@ -140,7 +176,7 @@ impl RowEvaluator {
         variables: &Variables,
         row: &mut LimitRow,
     ) -> Result<(), EvaluationFault> {
-        let Self { rules, rays, gradient, focus_in_sight, .. } = self;
+        let Self { rules, rays, ways, gradient, focus_in_sight, ghost_in_sight_mm, .. } = self;
         let rule = &rules[i];
         let k = rule.state.unwrap_or(0);
         let state = &states[k];
@@ -152,7 +188,7 @@ impl RowEvaluator {
         reset(&mut row.by_own, own);
 
         let quantities = variables.quantities();
-        let StateRays { paraxial, edge } = &mut rays[k];
+        let StateRays { paraxial, gaussian, edge } = &mut rays[k];
         let LimitRow { by_shared, by_own, .. } = row;
         let mut put = |quantity: usize, by: f64| {
             state.follow(quantity, rule.sign * by, by_shared, by_own);
@@ -183,6 +219,30 @@ impl RowEvaluator {
                     .differentiate(train, weights, quantities, gradient)
                     .map_err(|_| EvaluationFault::overflow(&state.name))?;
                 gradient.iter().enumerate().for_each(|(quantity, &by)| put(quantity, by));
+            }
+            // F = 2E/(πw²) with w² = a² + b²
+            Measured::Fluence(surface) => {
+                let [a, b] = gaussian.heights(*surface);
+                let radius_squared = a * a + b * b;
+                let fluence = peak_per_cm2(self.pulse_energy_j, radius_squared.sqrt());
+                let factor = -2.0 * fluence / radius_squared;
+                let heights = Some((*surface, [factor * a, factor * b]));
+                let weights = GaussianWeights { heights, exit_slopes: [0.0; 2] };
+                gradient.resize(quantities.count(), 0.0);
+                gaussian
+                    .differentiate(train, weights, quantities, gradient)
+                    .map_err(|_| EvaluationFault::overflow(&state.name))?;
+                gradient.iter().enumerate().for_each(|(quantity, &by)| put(quantity, by));
+            }
+            // A ghost far from glass is left alone.
+            Measured::GhostClearance(_) if row.value > *ghost_in_sight_mm => {}
+            Measured::GhostClearance(_) => {
+                if let Some(way) = &mut ways[i]
+                    && let Some(focus) = way.closest()
+                {
+                    way.differentiate(&focus, quantities, put)
+                        .map_err(|_| EvaluationFault::overflow(&state.name))?;
+                }
             }
         }
         Ok(())

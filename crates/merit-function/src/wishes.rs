@@ -2,6 +2,7 @@
 
 use schemars::JsonSchema;
 use serde::{Deserialize, Serialize};
+use surface_model::design::Design;
 use surface_model::document::{Address, Complain, Place};
 use surface_model::glass::{REFERENCE_C, THERMAL_RANGE_C};
 
@@ -71,6 +72,12 @@ pub enum WishError {
     /// A range without ends.
     #[error("the limit {} has neither \"min\" nor \"max\"", .0.word())]
     NoEnds(LimitKind),
+    /// A beam that should be collimated and come to a focus.
+    #[error("exit_focus_m and exit_slope_urad cannot be wanted together")]
+    FocusAndSlope,
+    /// A limit on what the beam does not say.
+    #[error("the limit {} needs the energy of a pulse", .0.word())]
+    NoEnergy(LimitKind),
     /// A range whose ends are the wrong way round.
     #[error("the limit {} has min {min} above max {max}", .kind.word())]
     Reversed {
@@ -91,6 +98,8 @@ impl WishError {
             Self::OutOfRange { allowed, .. } => (*allowed).into(),
             Self::NoEnds(_) => "\"min\", \"max\" or both".into(),
             Self::Reversed { .. } => "min at most max".into(),
+            Self::FocusAndSlope => "one of them; a state of its own may want the other".into(),
+            Self::NoEnergy(_) => "\"pulse_energy_mj\" in \"beam\"".into(),
         }
     }
 }
@@ -112,6 +121,18 @@ impl Complain for WishFault {
 
     fn expected(&self) -> Option<String> {
         Some(self.error.expected())
+    }
+}
+
+impl Wishes {
+    /// What the design does not say and a limit needs to know.
+    #[must_use]
+    pub fn lacks_of(&self, design: &Design) -> Option<WishFault> {
+        let kind = LimitKind::FluenceJCm2;
+        let wanted = self.limits.range(kind).is_some();
+        let lacks = wanted && design.beam.laser.pulse_energy_mj.is_none();
+        let at = Address::root().key("limits").key(kind.word());
+        lacks.then_some(WishFault { at, error: WishError::NoEnergy(kind) })
     }
 }
 
@@ -171,14 +192,40 @@ fn check_goals(at: &Address, goals: &GoalsDocument, faults: &mut Vec<WishFault>)
         ("wavefront_rms_waves", goals.wavefront_rms_waves),
         ("ratio_percent", goals.ratio_percent),
         ("exit_slope_urad", goals.exit_slope_urad),
+        ("divergence_mrad", goals.divergence_mrad),
     ];
-    for (word, goal) in all {
-        let Some(goal) = goal else { continue };
-        if !(goal.within > 1e-12 && goal.within <= 1e12) {
-            let (what, allowed) = ("a goal's \"within\"", "a number above 0");
-            let error = WishError::OutOfRange { what, found: goal.within, allowed };
-            faults.push(WishFault { at: at.clone().key(word).key("within"), error });
+    let mut check = |word: &str, key: &str, what, found: f64, sound: bool, allowed| {
+        if !sound {
+            let error = WishError::OutOfRange { what, found, allowed };
+            faults.push(WishFault { at: at.clone().key(word).key(key), error });
         }
+    };
+    let within = all.into_iter().filter_map(|(word, goal)| Some((word, goal?.within)));
+    let range = goals.diameter_at_range_mm;
+    let focus = goals.exit_focus_m;
+    let within = within
+        .chain(range.map(|goal| ("diameter_at_range_mm", goal.within)))
+        .chain(focus.map(|goal| ("exit_focus_m", goal.within)));
+    for (word, found) in within {
+        let sound = found > 1e-12 && found <= 1e12;
+        check(word, "within", "a goal's \"within\"", found, sound, "a number above 0");
+    }
+    if let Some(goal) = range {
+        let word = "diameter_at_range_mm";
+        let far = "a number of metres above 0 and at most 1 000 000 000";
+        let sound = goal.range_m > 0.0 && goal.range_m <= 1e9;
+        check(word, "range_m", "the range", goal.range_m, sound, far);
+        let sound = (0.0..=1e9).contains(&goal.wanted);
+        check(word, "wanted", "the diameter wanted", goal.wanted, sound, "a number of mm from 0");
+    }
+    if let Some(goal) = focus {
+        let sound = (1e-3..=1e9).contains(&goal.wanted.abs());
+        let allowed = "a number of metres other than 0; for a collimated beam use exit_slope_urad";
+        check("exit_focus_m", "wanted", "the focus wanted", goal.wanted, sound, allowed);
+    }
+    if focus.is_some() && goals.exit_slope_urad.is_some() {
+        let error = WishError::FocusAndSlope;
+        faults.push(WishFault { at: at.clone().key("exit_focus_m"), error });
     }
 }
 

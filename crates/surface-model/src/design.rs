@@ -4,8 +4,10 @@
 //! finite and possible. It is made by [`OpticsDocument::resolve`](crate::optics_document::OpticsDocument::resolve).
 
 use crate::document::Address;
+use crate::gaussian::GaussianBeam;
 use crate::glass::{Glass, GlassError};
 use crate::housing::Housing;
+use crate::laser::{BeamFormError, Laser};
 use crate::sequence::Sequence;
 use crate::surface::Surface;
 use crate::train::Train;
@@ -19,9 +21,20 @@ pub struct Beam {
     pub diameter_mm: f64,
     /// How far out rays are traced, in 1/e² radii.
     pub traced_to: f64,
+    /// What else is known of the laser.
+    pub laser: Laser,
 }
 
 impl Beam {
+    /// The real beam at a wavelength; its plane of reference is the first vertex.
+    ///
+    /// # Errors
+    /// The laser's keys contradict diffraction at this wavelength; at those of a resolved design's
+    /// states they do not.
+    pub fn gaussian(&self, wavelength_nm: f64) -> Result<GaussianBeam, BeamFormError> {
+        self.laser.form.beam(self.diameter_mm, wavelength_nm)
+    }
+
     /// 1/e² radius, mm.
     #[must_use]
     pub fn radius_mm(&self) -> f64 {

@@ -4,6 +4,7 @@ use std::fmt;
 
 use crate::document::{Address, Complain, Place, nearest, one_of};
 use crate::glass::{GlassError, LookupError};
+use crate::laser::BeamFormError;
 use crate::surface::ASPHERE_TERMS;
 
 /// A fault of a design file that its structure does not show. The place is told beside it, as an
@@ -72,6 +73,17 @@ pub enum DesignError {
     /// A power of r that is not a term of the sag.
     #[error("\"{0}\" is not a power of an even asphere")]
     AspherePower(String),
+    /// Keys of the beam that contradict each other or diffraction.
+    #[error(transparent)]
+    BeamForm(#[from] BeamFormError),
+    /// A key that means nothing without another.
+    #[error("{key} means nothing without {needed}")]
+    Needs {
+        /// The key found.
+        key: &'static str,
+        /// The key that is missing.
+        needed: &'static str,
+    },
     /// Spacings that contradict the fixed groups.
     #[error("the spacings of state \"{state}\" do not fit between the fixed groups")]
     Housing {
@@ -134,6 +146,8 @@ impl DesignError {
             Self::AspherePower(_) => {
                 format!("an even number from \"4\" to \"{}\"", 2 * ASPHERE_TERMS + 2)
             }
+            Self::BeamForm(error) => error.expected(),
+            Self::Needs { key, needed } => format!("{key} together with {needed}, or neither"),
             Self::Housing { needed_mm, .. } => {
                 format!("with the others as they are, {needed_mm} mm here")
             }
@@ -148,6 +162,7 @@ impl DesignError {
                 .map(|near| format!("did you mean \"{near}\"?")),
             Self::Glass(error) => error.advice(),
             Self::Index(error) | Self::OwnGlass(error) => error.advice(),
+            Self::BeamForm(error) => error.advice(),
             Self::AspherePower(power) if power == "2" => {
                 Some("r² is the curvature: change the radius instead".into())
             }

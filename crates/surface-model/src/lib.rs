@@ -13,6 +13,9 @@
 //!   gap, index, conic constant and asphere coefficient, in one backward sweep;
 //! - [`paraxial`], [`first_order`], [`seidel`]: what theory says to first and third order;
 //! - [`wavefront`]: the wavefront error behind the last surface, integrated to convergence;
+//!   [`far_field`] and [`pointing`]: what it does to the beam far away, and what a tilted beam does;
+//! - [`gaussian`]: the real beam with M²; [`ghost`]: light that surfaces reflect; [`laser`]: what
+//!   the laser's data sheet says;
 //! - [`spoilt`]: the exact trace with surfaces shifted, turned and uneven, as a workshop leaves
 //!   them; [`pupil`]: the wavefront over a beam of such rays, its tilt told apart;
 //! - [`solid`]: thickness at the edge, volume, mass; [`glass`]: the catalogue and own glasses.
@@ -45,19 +48,25 @@ pub mod bundle;
 pub mod design;
 pub mod design_error;
 pub mod document;
+pub mod far_field;
 pub mod fault;
 pub mod first_order;
+pub mod gaussian;
+pub mod ghost;
 pub mod glass;
 pub mod housing;
+pub mod laser;
 pub mod optics_document;
 pub mod paraxial;
 pub mod place;
+pub mod pointing;
 pub mod pose;
 pub mod pupil;
 pub mod quadrature;
 pub mod ranges;
 pub mod real;
 mod resolve;
+mod resolve_laser;
 pub mod reverse;
 pub mod seidel;
 pub mod sequence;

@@ -10,6 +10,7 @@ use schemars::JsonSchema;
 use serde::{Deserialize, Serialize};
 
 use crate::glass::GlassDocument;
+use crate::laser::{CoatingDocument, ThresholdsDocument};
 
 /// The optics of a zoom beam expander: beam, glass, groups, housing and zoom states.
 #[derive(Debug, Clone, PartialEq, Deserialize, Serialize, JsonSchema)]
@@ -21,6 +22,12 @@ pub struct OpticsDocument {
     pub title: String,
     /// The laser beam that enters, collimated.
     pub beam: BeamDocument,
+    /// The coating of every surface that faces air; without it they are taken as uncoated.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub coating: Option<CoatingDocument>,
+    /// What coatings and glass bear, from their maker's damage data.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub damage_thresholds: Option<ThresholdsDocument>,
     /// Glasses of this design's own: melts, measured or constant indices.
     #[serde(default)]
     pub glasses: BTreeMap<String, GlassDocument>,
@@ -53,6 +60,32 @@ pub struct BeamDocument {
     /// How far out rays are traced, in 1/e² radii; 1.5 holds 98.9 % of a Gaussian beam's power.
     #[serde(default = "default_reach")]
     pub traced_to: f64,
+    /// Beam propagation factor M² (ISO 11146-1), at least 1. Of `m_squared`, `divergence_mrad`,
+    /// `waist_diameter_mm` and `waist_distance_mm` at most two may stand: the rest follows. With
+    /// none, M² is 1 and the waist is at the first surface.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub m_squared: Option<f64>,
+    /// Divergence as the data sheet gives it: full angle between 1/e² points far away, mrad.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub divergence_mrad: Option<f64>,
+    /// 1/e² diameter of the waist, mm.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub waist_diameter_mm: Option<f64>,
+    /// From the waist to the first surface, mm; negative when the beam converges as it enters.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub waist_distance_mm: Option<f64>,
+    /// Mean power, W.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub power_w: Option<f64>,
+    /// Energy of a pulse, mJ.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub pulse_energy_mj: Option<f64>,
+    /// Effective length of a pulse, ns: its energy over its peak power (ISO 21254-1).
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub pulse_length_ns: Option<f64>,
+    /// Largest angle between beam and axis, mrad; the beam turns about the first vertex.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub pointing_mrad: Option<f64>,
 }
 
 fn default_reach() -> f64 {

@@ -15,6 +15,7 @@ use crate::ranges::{
     LARGEST_COEFFICIENT, LARGEST_CONIC, LARGEST_EXPANSION_PER_K, LARGEST_RADIUS_MM, LONGEST_MM,
     SMALLEST_RADIUS_MM,
 };
+use crate::resolve_laser::{beam_fault, laser};
 use crate::surface::{ASPHERE_TERMS, Surface, asphere_power};
 
 const LENGTH: Allowed = Allowed { low: 0.0, high: LONGEST_MM, above_low: true, unit: " mm" };
@@ -82,6 +83,7 @@ impl OpticsDocument {
         }
         let design = Design { title: self.title.clone(), beam, groups, housing, states };
         resolver.indices(&design);
+        resolver.faults.extend(beam_fault(&design));
         if resolver.faults.is_empty() { Ok(design) } else { Err(resolver.faults) }
     }
 }
@@ -133,10 +135,13 @@ impl Resolver {
         self.wavelengths(&at.clone().key("wavelengths_nm"), &beam.wavelengths_nm);
         self.check(at.clone().key("diameter_mm"), "the beam diameter", beam.diameter_mm, LENGTH);
         self.check(at.key("traced_to"), "the reach of the traced rays", beam.traced_to, REACH);
+        let (laser, faults) = laser(document);
+        self.faults.extend(faults);
         Beam {
             wavelengths_nm: beam.wavelengths_nm.clone(),
             diameter_mm: beam.diameter_mm,
             traced_to: beam.traced_to,
+            laser,
         }
     }
 

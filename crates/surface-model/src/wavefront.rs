@@ -14,6 +14,7 @@
 use crate::bundle::Bundle;
 use crate::fault::RayFault;
 use crate::quadrature::beam_sample;
+use crate::skew::{RayStart, trace_ray};
 use crate::train::Train;
 
 /// Change, in waves or as a part of the value, below which a result has converged.
@@ -30,6 +31,8 @@ pub struct TracedBeam {
     radius_mm: f64,
     reach: f64,
     wavelength_nm: f64,
+    /// Where the beam should come to a focus, mm behind the last vertex; `None`: nowhere.
+    focus_mm: Option<f64>,
 }
 
 /// RMS and peak-to-valley wavefront error.
@@ -116,7 +119,39 @@ impl TracedBeam {
                 return Err(WavefrontFault::Beam { what, value });
             }
         }
-        Ok(Self { radius_mm, reach, wavelength_nm })
+        Ok(Self { radius_mm, reach, wavelength_nm, focus_mm: None })
+    }
+
+    /// The same beam, which should not leave collimated but towards (or, with a negative distance,
+    /// from) a point on the axis `focus_mm` behind the last vertex: its wavefront error is the
+    /// departure from the sphere around that point.
+    #[must_use]
+    pub fn focused(self, focus_mm: f64) -> Self {
+        Self { focus_mm: Some(focus_mm), ..self }
+    }
+
+    /// 1/e² radius where it enters, mm.
+    #[must_use]
+    pub fn radius_mm(&self) -> f64 {
+        self.radius_mm
+    }
+
+    /// How far out it is traced, in radii.
+    #[must_use]
+    pub fn reach(&self) -> f64 {
+        self.reach
+    }
+
+    /// Wavelength, nm.
+    #[must_use]
+    pub fn wavelength_nm(&self) -> f64 {
+        self.wavelength_nm
+    }
+
+    /// Optical path, in mm, that a ray at height `exit_mm` in the plane through the last vertex has
+    /// too much or too little where it should go to the focus; 0 for a collimated beam.
+    pub(crate) fn path_to_focus_mm(&self, exit_mm: f64) -> f64 {
+        self.focus_mm.map_or(0.0, |focus_mm| sphere_path_mm(focus_mm, exit_mm))
     }
 
     /// Height of the outermost ray, mm.
@@ -130,7 +165,7 @@ impl TracedBeam {
         part.sqrt() * self.edge_mm()
     }
 
-    fn waves_per_mm(&self) -> f64 {
+    pub(crate) fn waves_per_mm(&self) -> f64 {
         1e6 / self.wavelength_nm
     }
 }
@@ -165,6 +200,13 @@ pub fn wavefront_samples(
     paths.trace(&heights)?;
     let samples = heights.iter().zip(&paths.waves);
     Ok(samples.map(|(&height_mm, &waves)| WavefrontSample { height_mm, waves }).collect())
+}
+
+/// From a point at height `exit_mm` of a plane to a point on the axis `focus_mm` behind it, less the
+/// way along the axis: √(f² + y²) − |f|, with the sign of f, mm.
+#[must_use]
+pub fn sphere_path_mm(focus_mm: f64, exit_mm: f64) -> f64 {
+    exit_mm * exit_mm / (focus_mm + focus_mm.signum() * focus_mm.hypot(exit_mm))
 }
 
 /// Doubles the number of rays from `first` to at most `last` until two values in a row agree.
@@ -208,6 +250,13 @@ impl Paths<'_> {
         })?;
         let scale = self.beam.waves_per_mm();
         self.waves.iter_mut().for_each(|path| *path *= scale);
+        if self.beam.focus_mm.is_some() {
+            for (waves, &height_mm) in self.waves.iter_mut().zip(heights_mm) {
+                let ray = trace_ray(self.train, RayStart::parallel(height_mm))
+                    .map_err(|fault| WavefrontFault::Ray { height_mm, fault })?;
+                *waves += scale * self.beam.path_to_focus_mm(ray.exit().position_mm[1]);
+            }
+        }
         Ok(())
     }
 
@@ -315,6 +364,27 @@ mod tests {
         let alone = wavefront_samples(&window(1e-6, 0.0), &beam(), 1).unwrap();
         assert_eq!(alone, samples[..1]);
         assert_eq!(wavefront_samples(&window(1e-6, 0.0), &beam(), 0), Ok(vec![]));
+    }
+
+    /// A concave mirror image of a wave from a point: a hyperboloid of conic constant −n² focuses a
+    /// parallel beam from glass without any error (R. Descartes, *La Dioptrique* (1637); Hecht,
+    /// *Optics*, §5.2).
+    #[test]
+    fn a_perfect_focus_has_no_error_about_its_own_point() {
+        let (n, focus) = (1.5, 80.0);
+        let mut back = Surface::sphere(-1.0 / (focus * (n - 1.0)), 6.0);
+        back.conic = -n * n;
+        let surfaces = vec![Surface::sphere(0.0, 6.0), back];
+        let lens = Train::new(surfaces, vec![5.0], vec![1.0, n, 1.0]).unwrap();
+        let focused = wavefront_error(&lens, &beam().focused(focus)).unwrap();
+        assert!(focused.pv_waves < 1e-8, "{focused:?}");
+        assert!(wavefront_error(&lens, &beam()).unwrap().rms_waves > 10.0);
+        let beside = wavefront_error(&lens, &beam().focused(focus + 0.1)).unwrap();
+        // A shift dz of the focus is y² dz/(2f²) of path at height y.
+        let expected = 9.0 * 0.1 / (2.0 * focus * focus) * 1e6 / 532.0;
+        assert!((beside.pv_waves / expected - 1.0).abs() < 0.01, "{beside:?} {expected}");
+        let diverging = sphere_path_mm(-80.0, 3.0);
+        assert!((diverging + (80.0_f64.hypot(3.0) - 80.0)).abs() < 1e-13);
     }
 
     #[test]

@@ -2,7 +2,7 @@
 
 use driver::design_file::DesignFile;
 use driver::temperature::{TemperatureReport, at_temperatures};
-use merit_function::assessment::{Assessment, assess};
+use merit_function::assessment::{Assessment, assess, real_beam};
 use report::text;
 use report::text::assessment::Scope;
 use serde::Serialize;
@@ -17,22 +17,35 @@ use crate::input;
 enum Form {
     Json,
     Text(Scope),
+    Beam,
+    Hazards,
 }
 
 /// What is asked for.
 struct Request {
     file: DesignFile,
     form: Form,
+    /// Distances to tell the real beam at, m.
+    ranges_m: Vec<f64>,
     require: bool,
     temperatures_c: Vec<f64>,
 }
 
 impl Request {
     fn of(arguments: AssessArguments) -> Result<Self, Failure> {
-        let scope = if arguments.all { Scope::All } else { Scope::Tightest };
+        let form = if arguments.json {
+            Form::Json
+        } else if arguments.beam || !arguments.ranges_m.is_empty() {
+            Form::Beam
+        } else if arguments.hazards {
+            Form::Hazards
+        } else {
+            Form::Text(if arguments.all { Scope::All } else { Scope::Tightest })
+        };
         Ok(Self {
             file: input::design(&arguments.design)?,
-            form: if arguments.json { Form::Json } else { Form::Text(scope) },
+            form,
+            ranges_m: arguments.ranges_m,
             require: arguments.require,
             temperatures_c: arguments.temperature,
         })
@@ -49,8 +62,11 @@ struct Printed<'a> {
 }
 
 pub(crate) fn run(arguments: AssessArguments, console: &Console) -> Result<ExitStatus, Failure> {
-    let Request { file, form, require, temperatures_c } = Request::of(arguments)?;
-    let assessment = assess(&file.design, &file.wishes);
+    let Request { file, form, ranges_m, require, temperatures_c } = Request::of(arguments)?;
+    let mut assessment = assess(&file.design, &file.wishes);
+    if matches!(form, Form::Beam) || !ranges_m.is_empty() {
+        assessment.real_beam = Some(real_beam(&file.design, &file.wishes, &ranges_m));
+    }
     let warm = match temperatures_c.as_slice() {
         [] => None,
         temperatures_c => Some(at_temperatures(&file, temperatures_c)?),
@@ -66,6 +82,11 @@ pub(crate) fn run(arguments: AssessArguments, console: &Console) -> Result<ExitS
             }
             console.print(&text::assessment::assessment(&file, &assessment, scope))?;
         }
+        Form::Beam => {
+            let beams = assessment.real_beam.as_deref().unwrap_or_default();
+            console.print(&text::beam::beam(&file, beams, &assessment))?;
+        }
+        Form::Hazards => console.print(&text::hazards::hazards(&file, &assessment))?,
     }
     Ok(if require && !assessment.meets { ExitStatus::Missed } else { ExitStatus::Done })
 }

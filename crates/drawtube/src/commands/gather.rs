@@ -16,7 +16,6 @@ pub(crate) fn run(arguments: &GatherArguments, console: &Console) -> Result<Exit
     let output = output(arguments)?;
     let surveys: Vec<Survey> =
         arguments.folders.iter().map(|path| Survey::of(path)).collect::<Result<_, RunError>>()?;
-    let folder = ResultsFolder::open(&output)?;
     let gathering = Gathering::of(&surveys, usize::from(arguments.keep))?;
     let list = gathering.list();
     let missing = gathering.missing();
@@ -24,6 +23,8 @@ pub(crate) fn run(arguments: &GatherArguments, console: &Console) -> Result<Exit
         tell(&list, &missing, &gathering, arguments, console)?;
         return Ok(ExitStatus::NothingToDo);
     }
+    let Some(first) = surveys.first() else { return Ok(ExitStatus::NothingToDo) };
+    let folder = ResultsFolder::open(&output, first)?;
     folder.write_results(&list.files().map_err(Failure::Document)?)?;
     tell(&list, &missing, &gathering, arguments, console)?;
     if !arguments.json {

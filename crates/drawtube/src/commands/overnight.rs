@@ -4,6 +4,8 @@ mod request;
 mod state;
 mod watcher;
 
+use std::path::Path;
+
 use driver::overnight::{Overnight, RankedList, fetch};
 use driver::run::{RunEnd, RunFolder, Stop, Survey, perform};
 
@@ -22,11 +24,14 @@ pub(crate) fn run(arguments: OvernightArguments, console: &Console) -> Result<Ex
         return state::show(&arguments.run, usize::from(arguments.keep), arguments.json, console);
     }
     let request = Request::of(arguments, console)?;
-    let folder = RunFolder::open(&request.run, &request.ask)?;
     let signals = StopSignal::listen().map_err(Failure::Signals)?;
+    let folder = RunFolder::open(&request.run, &request.ask)?;
     let (end, list) = search(&request, &folder, &signals, console)?;
     let kept = keep(&request, &folder, &end, &list, console);
-    tell(&request, &folder, &end, &list, kept.is_ok(), console)?;
+    let place = folder.place().to_owned();
+    // Whoever looks from now on, this program included, sees that no one is at work.
+    drop(folder);
+    tell(&request, &place, &end, &list, kept.is_ok(), console)?;
     kept?;
     Ok(status(&request, &signals, &end, &list))
 }
@@ -81,7 +86,7 @@ fn keep(
 /// Prints the list: on standard output, unless a design had to go there.
 fn tell(
     request: &Request,
-    folder: &RunFolder,
+    place: &Path,
     end: &RunEnd,
     list: &RankedList,
     kept: bool,
@@ -96,15 +101,15 @@ fn tell(
         Told::Text if kept => console.print(&format!(
             "{}\n\n{}",
             report::text::overnight::ranking(list),
-            closing(request, folder, end, list)
+            closing(request, place, end, list)
         )),
         Told::Json | Told::Text => Ok(()),
     }
 }
 
 /// Why it ended, what is done and what to do next.
-fn closing(request: &Request, folder: &RunFolder, end: &RunEnd, list: &RankedList) -> String {
-    let share = folder.share();
+fn closing(request: &Request, place: &Path, end: &RunEnd, list: &RankedList) -> String {
+    let share = request.ask.share;
     let of = end.tally.wanted.map_or_else(String::new, |wanted| format!(" of {wanted}"));
     let part = if share.is_whole() { String::new() } else { format!(" Part {share} of the run:") };
     let (why, then) = match end.stop {
@@ -119,7 +124,7 @@ fn closing(request: &Request, folder: &RunFolder, end: &RunEnd, list: &RankedLis
         end.tally.finished,
         report::text::overnight::time(end.tally.run_seconds)
     );
-    let place = folder.place().display();
+    let place = place.display();
     let kept = match (list.best.len(), share.is_whole()) {
         (0, _) => String::new(),
         (_, true) => format!(" The designs are in {place}/best."),

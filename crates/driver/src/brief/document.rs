@@ -7,6 +7,7 @@ use merit_function::limits::LimitsDocument;
 use schemars::JsonSchema;
 use serde::{Deserialize, Serialize};
 use surface_model::glass::GlassDocument;
+use surface_model::laser::{CoatingDocument, ThresholdsDocument};
 use surface_model::optics_document::{BeamDocument, HousingDocument};
 
 /// A requirement: what a zoom beam expander has to do, without a lens.
@@ -19,6 +20,12 @@ pub struct BriefDocument {
     pub title: String,
     /// The laser beam that enters, collimated.
     pub beam: BeamDocument,
+    /// The coating of every surface that faces air; without it they are taken as uncoated.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub coating: Option<CoatingDocument>,
+    /// What coatings and glass bear, from their maker's damage data.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub damage_thresholds: Option<ThresholdsDocument>,
     /// Glasses of this brief's own: melts, measured or constant indices.
     #[serde(default)]
     pub glasses: BTreeMap<String, GlassDocument>,

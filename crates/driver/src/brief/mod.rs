@@ -67,6 +67,9 @@ impl BriefFile {
             error::faults(&written).into_iter().map(Complaint::from).collect();
         match (probe::optics(&written).resolve(), probe::wishes(&written).resolve()) {
             (Ok(design), Ok(wishes)) if own.is_empty() => {
+                if let Some(lacks) = wishes.lacks_of(&design) {
+                    return Err(document.refuse([lacks]));
+                }
                 let glasses = design.groups.into_iter().next().map(|group| group.elements);
                 let stack = glasses.into_iter().flatten().next();
                 let glasses = stack.map(|element| element.glasses).unwrap_or_default();

@@ -40,6 +40,8 @@ pub(super) fn optics(brief: &BriefDocument) -> OpticsDocument {
         format: DesignFormat::V1,
         title: brief.title.clone(),
         beam: brief.beam.clone(),
+        coating: brief.coating,
+        damage_thresholds: brief.damage_thresholds,
         glasses: brief.glasses.clone(),
         groups: names.into_iter().enumerate().map(group).collect(),
         housing: brief.housing.clone(),
@@ -86,7 +88,10 @@ pub(super) fn wishes(brief: &BriefDocument) -> WishesDocument {
 pub(super) fn place_in_brief(at: &Address, brief: &BriefDocument) -> Option<Address> {
     let steps = at.steps();
     let (front, rest) = match steps.as_slice() {
-        ["beam" | "glasses" | "housing" | "goals" | "limits", ..] => return Some(at.clone()),
+        [
+            "beam" | "coating" | "damage_thresholds" | "glasses" | "housing" | "goals" | "limits",
+            ..,
+        ] => return Some(at.clone()),
         ["groups", _, "name"] if brief.groups.is_some() => return Some(at.clone()),
         ["groups", "0", "elements", "0", "glasses", rest @ ..] => {
             (Address::root().key("glasses_allowed"), rest)

@@ -8,7 +8,9 @@ use super::ask::{Ask, RUN_FORMAT, RunDocument, hash};
 use super::error::RunError;
 use super::lock::Lock;
 use super::share::Share;
-use crate::write_whole::{Existing, TEMPORARY_PREFIX, WriteError, check_writable, write_whole};
+use crate::write_whole::{
+    Existing, TEMPORARY_PREFIX, WriteError, check_writable, sync_folder_of, write_whole,
+};
 
 /// Names of a run folder.
 pub(super) const ASKED: &str = "asked.json";
@@ -17,7 +19,6 @@ pub(super) const LOCK: &str = "lock";
 pub(super) const JOURNAL: &str = "journal.jsonl";
 pub(super) const PARTS: &str = "parts";
 pub(super) const BEST: &str = "best";
-pub(super) const RANKING: &str = "ranking.json";
 
 /// A run folder that this process may work in until it is dropped.
 #[derive(Debug)]
@@ -48,15 +49,14 @@ impl RunFolder {
         let lock = Lock::take(&place.join(LOCK), &place)?;
         remove_leftovers(&place);
         if !known {
-            begin(path, ask, &asked)?;
+            begin(path, &ask.text, &asked)?;
         }
         check_results(&place)?;
         Ok(Self { place, run: asked, share: ask.share, _lock: lock })
     }
 
     /// The part that is worked on.
-    #[must_use]
-    pub fn share(&self) -> Share {
+    pub(super) fn share(&self) -> Share {
         self.share
     }
 
@@ -87,7 +87,7 @@ pub(super) fn name_of(share: Share) -> String {
 }
 
 /// Whether the folder holds the run that is asked for already; if not, it must be empty.
-fn recognise(path: &Path, asked: &RunDocument) -> Result<bool, RunError> {
+pub(super) fn recognise(path: &Path, asked: &RunDocument) -> Result<bool, RunError> {
     match path.metadata() {
         Err(error) if error.kind() == ErrorKind::NotFound => return Ok(false),
         Err(error) => return Err(RunError::system(path)(error)),
@@ -113,20 +113,6 @@ fn refuse_strangers(path: &Path) -> Result<(), RunError> {
         None => Ok(()),
         Some(name) => {
             let reason = format!("it has no {RUN} and holds other things, such as {name:?}");
-            Err(RunError::NotARun { path: path.into(), reason })
-        }
-    }
-}
-
-/// A folder for results may hold a run or earlier results, nothing else.
-pub(super) fn admit(path: &Path) -> Result<(), RunError> {
-    if !path.exists() || path.join(RUN).exists() {
-        return Ok(());
-    }
-    match first_stranger(path, &[LOCK, BEST, RANKING])? {
-        None => Ok(()),
-        Some(name) => {
-            let reason = format!("it holds other things, such as {name:?}; nothing was written");
             Err(RunError::NotARun { path: path.into(), reason })
         }
     }
@@ -179,7 +165,7 @@ pub(super) fn read_asked(path: &Path) -> Result<Vec<u8>, RunError> {
 }
 
 pub(super) fn make(path: &Path) -> Result<(), RunError> {
-    match DirBuilder::new().create(path) {
+    match DirBuilder::new().create(path).and_then(|()| sync_folder_of(path)) {
         Err(error) if error.kind() != ErrorKind::AlreadyExists => {
             Err(RunError::system(path)(error))
         }
@@ -189,20 +175,20 @@ pub(super) fn make(path: &Path) -> Result<(), RunError> {
 
 /// Writes what was asked, `run.json` last. Of several parts that begin at once one comes first;
 /// the others find that it has written what they would have.
-fn begin(path: &Path, ask: &Ask, asked: &RunDocument) -> Result<(), RunError> {
+pub(super) fn begin(path: &Path, text: &[u8], asked: &RunDocument) -> Result<(), RunError> {
     let file = path.join(ASKED);
-    match write_whole(&file, &ask.text, Existing::Keep) {
-        Err(WriteError::Exists(_)) if read_asked(path)? != ask.text => {
+    match write_whole(&file, text, Existing::Keep) {
+        Err(WriteError::Exists(_)) if read_asked(path)? != text => {
             let reason = format!("it has no {RUN} and an {ASKED} of another run");
             return Err(RunError::NotARun { path: path.into(), reason });
         }
         Ok(()) | Err(WriteError::Exists(_)) => {}
         Err(error) => return Err(error.into()),
     }
-    let mut text = serde_json::to_vec_pretty(asked)
+    let mut run = serde_json::to_vec_pretty(asked)
         .map_err(|error| RunError::damaged(&path.join(RUN), error.to_string()))?;
-    text.push(b'\n');
-    match write_whole(&path.join(RUN), &text, Existing::Keep) {
+    run.push(b'\n');
+    match write_whole(&path.join(RUN), &run, Existing::Keep) {
         Err(WriteError::Exists(_)) => recognise(path, asked).map(|_| ()),
         written => Ok(written?),
     }

@@ -9,7 +9,8 @@ use serde::Serialize;
 
 use super::entry::{Entry, encode};
 use super::error::RunError;
-use crate::write_whole::{careless, sync_folder_of};
+use crate::careless;
+use crate::write_whole::sync_folder_of;
 
 /// How long entries may lie in the system's memory, where a loss of power takes them but the end
 /// of the process does not.
@@ -50,7 +51,7 @@ impl Journal {
         let file =
             OpenOptions::new().read(true).append(true).create(true).open(path).map_err(&refused)?;
         let mut safe = file.metadata().map_err(&refused)?.len();
-        if safe != valid_bytes && !careless() {
+        if safe != valid_bytes && !careless::is_wanted() {
             file.set_len(valid_bytes).map_err(&refused)?;
             safe = valid_bytes;
         }
@@ -69,7 +70,12 @@ impl Journal {
         if self.failed.is_some() {
             return Kept::Well;
         }
-        match self.file.write_all(&line) {
+        let written = if careless::is_wanted() {
+            careless::append(&self.file, &line)
+        } else {
+            self.file.write_all(&line)
+        };
+        match written {
             Ok(()) => Kept::Well,
             Err(error) => self.fail(error),
         }

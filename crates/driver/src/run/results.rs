@@ -5,8 +5,11 @@ use std::path::{Path, PathBuf};
 use std::time::Duration;
 
 use super::error::RunError;
-use super::folder::{BEST, LOCK, RANKING, RunFolder, admit, check_results, make, remove_leftovers};
+use super::folder::{
+    BEST, LOCK, RunFolder, begin, check_results, make, recognise, remove_leftovers,
+};
 use super::lock::Lock;
+use super::survey::Survey;
 use crate::write_whole::{Existing, WriteError, write_whole};
 
 /// How often a file is tried, and with what pause.
@@ -31,11 +34,11 @@ impl ResultFile {
     /// The list itself: `ranking.json`.
     #[must_use]
     pub fn ranking(contents: impl Into<Vec<u8>>) -> Self {
-        Self { name: RANKING.into(), contents: contents.into() }
+        Self { name: "ranking.json".into(), contents: contents.into() }
     }
 }
 
-/// A folder for results alone, such as those merged from several run folders.
+/// A folder for the results of a run whose parts are elsewhere, or in it.
 #[derive(Debug)]
 pub struct ResultsFolder {
     place: PathBuf,
@@ -43,16 +46,19 @@ pub struct ResultsFolder {
 }
 
 impl ResultsFolder {
-    /// Opens the folder at `path`, and makes it if it is not there; the folder it lies in must
-    /// exist. It may hold earlier results or a run, nothing else.
+    /// Opens the folder at `path` for results of this run, and makes it if it is not there; the
+    /// folder it lies in must exist. It says of which run its results are, as a run folder does.
     ///
     /// # Errors
-    /// It is in use, holds something else, or the system refuses.
-    pub fn open(path: &Path) -> Result<Self, RunError> {
-        admit(path)?;
+    /// It is in use, holds another run or something else, or the system refuses.
+    pub fn open(path: &Path, of: &Survey) -> Result<Self, RunError> {
+        let known = recognise(path, &of.run)?;
         make(path)?;
         let lock = Lock::take(&path.join(LOCK), path)?;
         remove_leftovers(path);
+        if !known {
+            begin(path, &of.asked, &of.run)?;
+        }
         check_results(path)?;
         Ok(Self { place: path.to_owned(), _lock: lock })
     }

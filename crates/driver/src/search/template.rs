@@ -74,7 +74,9 @@ impl Template {
         let mut first_order = file.wishes.clone();
         for goals in &mut first_order.states {
             goals.wavefront_rms_waves = None;
-            goals.exit_slope_urad.get_or_insert(SLOPE_WITHIN_URAD);
+            if goals.exit_focus_m.is_none() {
+                goals.exit_slope_urad.get_or_insert(SLOPE_WITHIN_URAD);
+            }
         }
         Ok(Self { file, first_order, draws, own, gaps, shared })
     }

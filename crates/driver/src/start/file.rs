@@ -11,7 +11,8 @@ use crate::design_file::DesignFile;
 use super::layout::Layout;
 
 /// What a design file has of its brief as it stands there, remarks included.
-const CARRIED_OVER: [&str; 5] = ["beam", "glasses", "housing", "goals", "limits"];
+const CARRIED_OVER: [&str; 7] =
+    ["beam", "coating", "damage_thresholds", "glasses", "housing", "goals", "limits"];
 
 /// The design file of a layout, with the numbers of `design` (the layout's own, or what an
 /// optimiser made of them).
@@ -31,7 +32,7 @@ pub(super) fn design_file(
     file.insert("format".into(), "drawtube/1".into());
     file.insert("title".into(), design.title.clone().into());
     file.insert("note".into(), note.into());
-    for key in ["beam", "glasses"] {
+    for key in ["beam", "coating", "damage_thresholds", "glasses"] {
         file.extend(carried.shift_remove(key).map(|value| (key.to_owned(), value)));
     }
     file.insert("groups".into(), groups(brief, layout, design));

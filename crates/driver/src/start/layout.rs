@@ -125,5 +125,7 @@ fn reason(obstacle: Obstacle) -> NoLayout {
         LimitKind::IncidenceDeg => NoLayout::Ray,
         LimitKind::TrackMm | LimitKind::HousingMm => NoLayout::Track,
         LimitKind::InternalFocus => NoLayout::Focus,
+        LimitKind::FluenceJCm2 => NoLayout::Fluence,
+        LimitKind::GhostClearanceMm | LimitKind::DoubleGhostClearanceMm => NoLayout::Ghost,
     }
 }

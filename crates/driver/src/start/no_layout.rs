@@ -37,11 +37,17 @@ pub enum NoLayout {
     /// No pair of allowed glasses corrects colour.
     #[error("no two allowed glasses make an achromatic pair")]
     NoPair,
+    /// A pulse would be too strong for a surface.
+    #[error("a pulse would be too strong for a surface")]
+    Fluence,
+    /// Reflected light would come to a focus in glass or too near to it.
+    #[error("reflected light would come to a focus too near to glass")]
+    Ghost,
 }
 
 impl NoLayout {
     /// Every reason.
-    pub(super) const ALL: [Self; 11] = [
+    pub(super) const ALL: [Self; 13] = [
         Self::Passing,
         Self::Focus,
         Self::Track,
@@ -53,5 +59,7 @@ impl NoLayout {
         Self::Ray,
         Self::Housing,
         Self::NoPair,
+        Self::Fluence,
+        Self::Ghost,
     ];
 }

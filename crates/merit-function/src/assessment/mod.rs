@@ -2,9 +2,13 @@
 //!
 //! Nothing here is sampled as the optimiser samples: wavefronts are integrated to convergence.
 
+mod cautions;
 mod element;
+mod hazards;
 mod limit;
 mod obstacle;
+mod readjust;
+mod real_beam;
 mod state;
 mod surface;
 mod warnings;
@@ -16,8 +20,16 @@ use crate::limit_item::{LimitItem, StateView};
 use crate::wishes::Wishes;
 
 pub use element::{ElementAssessment, GroupAssessment};
+pub use hazards::{
+    Exposure, FocusHazard, GhostFocusHazard, GhostHazard, StateHazards, SurfaceHazard,
+};
 pub use limit::LimitAssessment;
 pub use obstacle::{Obstacle, obstacle};
+pub use readjust::Readjustment;
+pub use real_beam::{
+    BeamAssessment, BeamNumbers, FarFieldAssessment, PointingAssessment, RangeBeam, SurfaceBeam,
+    real_beam,
+};
 pub use state::{StateAssessment, WavefrontAssessment};
 pub use surface::SurfaceAssessment;
 
@@ -43,6 +55,15 @@ pub struct Assessment {
     pub elements: Vec<ElementAssessment>,
     /// One entry a limited quantity.
     pub limits: Vec<LimitAssessment>,
+    /// The real beam in every state at every wavelength, where the file describes the laser.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub real_beam: Option<Vec<BeamAssessment>>,
+    /// What every state's beam may damage, where power or pulse energy is given.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub hazards: Option<Vec<StateHazards>>,
+    /// What must be said wherever power is; empty where none is given.
+    #[serde(skip_serializing_if = "Vec::is_empty")]
+    pub cautions: Vec<String>,
     /// What a careful reader should know and no limit says.
     pub warnings: Vec<String>,
 }
@@ -105,6 +126,8 @@ pub fn assess(design: &Design, wishes: &Wishes) -> Assessment {
     let warm = || at_temperatures.iter().flat_map(|at| &at.states);
     let goals: Option<f64> = states.iter().chain(warm()).map(|state| state.merit).sum();
     let elements = element::assess(design, &views);
+    let described = design.beam.laser.is_described();
+    let hazards = hazards::hazards(design);
     Assessment {
         format: "drawtube-assessment/1",
         title: design.title.clone(),
@@ -115,7 +138,13 @@ pub fn assess(design: &Design, wishes: &Wishes) -> Assessment {
             goals,
             limits: limits_merit,
         },
-        warnings: warnings::warnings(design, &elements, &states),
+        real_beam: described.then(|| real_beam(design, wishes, &[])),
+        cautions: cautions::cautions(&design.beam.laser),
+        warnings: warnings::warnings(design, &elements, &states)
+            .into_iter()
+            .chain(cautions::warnings(design, hazards.as_deref().unwrap_or_default()))
+            .collect(),
+        hazards,
         states,
         at_temperatures,
         groups: element::assess_groups(design, &views),

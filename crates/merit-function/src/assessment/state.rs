@@ -3,6 +3,7 @@
 use serde::Serialize;
 use surface_model::design::{Design, ZoomState};
 use surface_model::fault::RayFault;
+use surface_model::gaussian::{GaussianBeam, GaussianPath};
 use surface_model::paraxial::ParaxialRay;
 use surface_model::skew::{RayStart, trace_ray};
 use surface_model::train::Train;
@@ -26,6 +27,19 @@ pub struct StateAssessment {
     pub ratio_error_percent: Option<f64>,
     /// Paraxial exit slope of the ray that enters at the 1/e² radius, µrad.
     pub exit_slope_urad: Option<f64>,
+    /// Divergence of the real beam behind the last surface, full angle, mrad, without the design's
+    /// aberration.
+    pub divergence_mrad: Option<f64>,
+    /// 1/e² diameter of the real beam at the range of the goal, mm; absent without that goal.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub diameter_at_range_mm: Option<f64>,
+    /// Where the ray at the 1/e² radius meets the axis, m behind the last vertex, negative before
+    /// it; absent unless a focus is wanted.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub exit_focus_m: Option<f64>,
+    /// Miss of that focus by vergence, in m at the focus wanted; absent likewise.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub exit_focus_error_m: Option<f64>,
     /// First vertex to last vertex, mm.
     pub track_mm: f64,
     /// Air between the groups, mm.
@@ -78,6 +92,7 @@ pub(super) fn view(
         .map(|ray| ray.points().iter().map(|point| point.incidence_rad.to_degrees()).collect());
     Some(StateView {
         train,
+        beam: design.beam.gaussian(*state.wavelengths_nm.first()?).ok(),
         positions_mm,
         marginal: marginal.unwrap_or_default(),
         edge_ray: heights,
@@ -102,8 +117,12 @@ pub(super) fn assess(
     let exit_slope_urad =
         paraxial.as_ref().and_then(|ray| finite(ray.exit_slope()? * radius_mm * 1e6));
     let ratio_error_percent = ratio.map(|ratio| (ratio / state.ratio - 1.0) * 100.0);
-    let (wavefront, fault) = wavefronts(design, state);
-    let misses = misses(goals, ratio_error_percent, exit_slope_urad, &wavefront);
+    let (wavefront, fault) = wavefronts(design, state, goals);
+    let beam = first.as_ref().and_then(|train| ExitBeam::of(design, state, train));
+    let mut misses = misses(goals, ratio_error_percent, exit_slope_urad, &wavefront);
+    misses.extend(beam_misses(goals, beam.as_ref()));
+    let at_range = goals.diameter_at_range_mm.zip(beam.as_ref());
+    let focus = goals.exit_focus_m.zip(beam.as_ref());
     let positions = design.groups.iter().zip(positions_mm);
     StateAssessment {
         name: state.name.clone(),
@@ -111,6 +130,12 @@ pub(super) fn assess(
         ratio,
         ratio_error_percent,
         exit_slope_urad,
+        divergence_mrad: beam.as_ref().map(ExitBeam::divergence_mrad),
+        diameter_at_range_mm: at_range
+            .and_then(|(goal, beam)| finite(beam.diameter_mm(goal.range_m))),
+        exit_focus_m: focus.and_then(|(_, beam)| finite(1.0 / beam.vergence_per_m)),
+        exit_focus_error_m: focus
+            .and_then(|(goal, beam)| finite(goal.miss(beam.vergence_per_m) * goal.within_m)),
         track_mm: design.length_mm(state),
         spacings_mm: state.spacings_mm.clone(),
         positions_mm: positions.map(|(group, &z)| (group.name.clone(), z.into())).collect(),
@@ -148,7 +173,50 @@ fn misses(
     misses
 }
 
-fn wavefronts(design: &Design, state: &ZoomState) -> (Vec<WavefrontAssessment>, Option<String>) {
+/// The real beam behind the last surface, at the first wavelength.
+struct ExitBeam {
+    beam: GaussianBeam,
+    /// Vergence of the ray at the 1/e² radius, 1/m, positive when it converges.
+    vergence_per_m: f64,
+}
+
+impl ExitBeam {
+    fn of(design: &Design, state: &ZoomState, train: &Train) -> Option<Self> {
+        let entrance = design.beam.gaussian(*state.wavelengths_nm.first()?).ok()?;
+        let mut path = GaussianPath::default();
+        path.trace(train, &entrance).ok()?;
+        let (height, slope) = entrance.edge_ray();
+        let mut edge = ParaxialRay::default();
+        edge.trace(train, height, slope).ok()?;
+        let vergence = -1e3 * edge.exit_slope()? / edge.heights().last()?;
+        Some(Self { beam: path.exit()?, vergence_per_m: finite(vergence)? })
+    }
+
+    fn divergence_mrad(&self) -> f64 {
+        2e3 * self.beam.half_divergence_rad
+    }
+
+    fn diameter_mm(&self, range_m: f64) -> f64 {
+        2.0 * self.beam.radius_mm(1e3 * range_m)
+    }
+}
+
+/// The same misses for the goals about the real beam.
+fn beam_misses(goals: &Goals, beam: Option<&ExitBeam>) -> Vec<Option<f64>> {
+    let divergence =
+        goals.divergence_mrad.map(|within| beam.map(|beam| beam.divergence_mrad() / within));
+    let range = goals
+        .diameter_at_range_mm
+        .map(|goal| beam.map(|beam| goal.miss(beam.diameter_mm(goal.range_m))));
+    let focus = goals.exit_focus_m.map(|goal| beam.map(|beam| goal.miss(beam.vergence_per_m)));
+    [divergence, range, focus].into_iter().flatten().collect()
+}
+
+fn wavefronts(
+    design: &Design,
+    state: &ZoomState,
+    goals: &Goals,
+) -> (Vec<WavefrontAssessment>, Option<String>) {
     let mut fault = None;
     let mut of = |nm: f64| -> WavefrontAssessment {
         let mut tell = |reason: String| {
@@ -163,6 +231,10 @@ fn wavefronts(design: &Design, state: &ZoomState) -> (Vec<WavefrontAssessment>, 
         };
         let error = train.and_then(|train| {
             TracedBeam::new(design.beam.radius_mm(), design.beam.traced_to, nm)
+                .map(|beam| match goals.exit_focus_m {
+                    Some(focus) => beam.focused(1e3 * focus.wanted_m),
+                    None => beam,
+                })
                 .and_then(|beam| wavefront_error(&train, &beam))
                 .map_err(|error| tell(reason(design, &error)))
                 .ok()

@@ -4,7 +4,9 @@ use driver::design_file::DesignFile;
 use merit_function::assessment::Assessment;
 
 use super::number::{as_written, counted, significant, significant_or_dash};
-use super::{WIDTH, elements, layout, limits, paragraph, sections, states, verdict, warnings};
+use super::{
+    WIDTH, beam, elements, hazards, layout, limits, paragraph, sections, states, verdict, warnings,
+};
 
 pub use super::limits::Scope;
 
@@ -14,13 +16,17 @@ pub fn assessment(file: &DesignFile, assessment: &Assessment, scope: Scope) -> S
     sections([
         heading(file),
         states::reached(file, assessment),
+        states::of_the_beam(file, assessment),
         states::faults(assessment),
         states::spacings(file, assessment),
         layout::layout(file),
         limits::limits(file, assessment, scope),
         elements::elements(file, assessment),
+        beam::summary(assessment),
+        hazards::summary(file, assessment),
         signs(file, assessment),
         warnings(&assessment.warnings),
+        hazards::cautions(assessment),
         format!("{}\n{}", merit(assessment), closing(file, assessment)),
     ])
 }

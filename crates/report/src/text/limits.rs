@@ -56,7 +56,8 @@ fn chosen(limits: &[LimitAssessment], scope: Scope) -> Vec<&LimitAssessment> {
 /// Distance to the nearest end of what is allowed, negative outside.
 fn margin(limit: &LimitAssessment) -> f64 {
     let Some(value) = limit.value else {
-        // The radius of a flat keeps every minimum; what cannot be measured keeps none.
+        // The radius of a flat and a ghost without a focus keep every minimum; what cannot be
+        // measured keeps none.
         return if limit.met { f64::INFINITY } else { f64::NEG_INFINITY };
     };
     let below = limit.min.map_or(f64::INFINITY, |min| value - min);
@@ -76,7 +77,8 @@ fn allowed(limit: &LimitAssessment) -> String {
 fn value(limit: &LimitAssessment) -> String {
     match limit.value {
         Some(value) => fixed(value, 4),
-        None if limit.met => "flat".to_owned(),
+        None if limit.met && limit.limit == LimitKind::RadiusMm => "flat".to_owned(),
+        None if limit.met => "none".to_owned(),
         None => "unknown".to_owned(),
     }
 }

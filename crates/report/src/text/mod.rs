@@ -1,10 +1,12 @@
 //! Text for a terminal: tables at most 80 columns wide where names allow it, units in the heads.
 
 pub mod assessment;
+pub mod beam;
 pub mod bounds;
 pub mod differences;
 mod elements;
 pub mod glass;
+pub mod hazards;
 mod layout;
 mod limits;
 mod number;
@@ -19,6 +21,9 @@ mod table;
 pub mod temperature;
 pub mod tolerance;
 mod verdict;
+
+use driver::design_file::DesignFile;
+use surface_model::document::Address;
 
 /// Widest line that running text is broken into, in characters.
 pub const WIDTH: usize = 80;
@@ -47,4 +52,12 @@ pub fn warnings(warnings: &[String]) -> String {
         .map(|warning| paragraph(&format!("warning: {warning}"), WIDTH, "  "))
         .collect();
     lines.join("\n")
+}
+
+/// A surface's address in short: group, element and surface, each by name or number.
+fn surface_name(file: &DesignFile, at: &Address) -> String {
+    let named = at.with_names(file.document().value());
+    let steps = named.steps();
+    let short = [1, 3, 5].map(|step| steps.get(step).copied().unwrap_or_default());
+    short.join(" ")
 }

@@ -6,9 +6,9 @@ use driver::design_file::DesignFile;
 use merit_function::assessment::{Assessment, StateAssessment};
 
 use super::number::{as_written, counted, fixed_or_dash, significant_or_dash};
-use super::states::at_temperature;
+use super::states::{about, at_temperature};
 use super::table::{ARROW, Column, Table};
-use super::{WIDTH, assessment, optimised, paragraph, sections, warnings};
+use super::{WIDTH, assessment, hazards, optimised, paragraph, sections, warnings};
 
 /// What is told about an optimisation.
 #[derive(Debug)]
@@ -36,11 +36,13 @@ pub struct Told<'a> {
 /// The whole account of an optimisation.
 #[must_use]
 pub fn optimisation(told: &Told<'_>) -> String {
-    let mut parts = vec![assessment::heading(told.before), states(told), totals(told)];
+    let mut parts =
+        vec![assessment::heading(told.before), states(told), of_the_beam(told), totals(told)];
     parts.extend(optimised::moved(told.before, told.after));
     parts.push(how(told));
     let all: Vec<String> = told.warnings.iter().chain(&told.end.warnings).cloned().collect();
     parts.push(warnings(&all));
+    parts.push(hazards::first_caution(told.end));
     parts.push(assessment::closing(told.after, told.end));
     sections(parts)
 }
@@ -89,6 +91,39 @@ fn row(
         row.resize(11, String::new());
     }
     row
+}
+
+/// The goals about the real beam, one a line; empty if there are none.
+fn of_the_beam(told: &Told<'_>) -> String {
+    let mut table = Table::new([
+        (Column::Left, "state"),
+        (Column::Left, "goal of the real beam"),
+        (Column::From, "before"),
+        (Column::Arrow, ""),
+        (Column::Right, "after"),
+    ]);
+    let states = told.start.states.iter().zip(&told.end.states);
+    for (goals, (before, after)) in told.after.wishes.states.iter().zip(states) {
+        let mut row = |what: String, of: &dyn Fn(&StateAssessment) -> Option<f64>| {
+            let value = |state| significant_or_dash(of(state), 5);
+            let arrow = ARROW.to_owned();
+            table.row([after.name.clone(), what, value(before), arrow, value(after)]);
+        };
+        if let Some(within) = goals.divergence_mrad {
+            let what = format!("divergence mrad, ≤ {}", as_written(within));
+            row(what, &|state| state.divergence_mrad);
+        }
+        if let Some(goal) = goals.diameter_at_range_mm {
+            let wanted = about(goal.wanted_mm, goal.within_mm);
+            let what = format!("diameter mm at {} m, {wanted}", as_written(goal.range_m));
+            row(what, &|state| state.diameter_at_range_mm);
+        }
+        if let Some(goal) = goals.exit_focus_m {
+            let what = format!("focus at m, {}", about(goal.wanted_m, goal.within_m));
+            row(what, &|state| state.exit_focus_m);
+        }
+    }
+    if table.is_empty() { String::new() } else { table.text() }
 }
 
 fn totals(told: &Told<'_>) -> String {

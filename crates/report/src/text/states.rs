@@ -23,7 +23,7 @@ pub(crate) fn reached(file: &DesignFile, assessment: &Assessment) -> String {
         (Column::Right, "ratio \nerror % "),
         (Column::Right, "exit slope \nµrad "),
         (Column::Right, "exit\nbeam mm"),
-        (Column::Right, "wave-\nlength nm"),
+        (Column::Right, "wave-\nlength\nnm"),
         (Column::Right, "RMS \nwaves "),
         (Column::Right, "PV\nwaves"),
     ]);
@@ -49,6 +49,90 @@ pub(crate) fn reached(file: &DesignFile, assessment: &Assessment) -> String {
         }
     }
     table.text()
+}
+
+/// The goals about the real beam in every state that has any; empty if none has.
+pub(crate) fn of_the_beam(file: &DesignFile, assessment: &Assessment) -> String {
+    let goals = || file.wishes.states.iter();
+    let divergence = goals().any(|goals| goals.divergence_mrad.is_some());
+    let range = goals().any(|goals| goals.diameter_at_range_mm.is_some());
+    let focus = goals().any(|goals| goals.exit_focus_m.is_some());
+    let mut heads = vec![(Column::Left, "state")];
+    if divergence {
+        heads.extend([(Column::Right, "divergence \nmrad "), (Column::Right, "goal")]);
+    }
+    if range {
+        heads.extend([
+            (Column::Right, "at\nrange m"),
+            (Column::Right, "beam \nmm "),
+            (Column::Right, "goal"),
+        ]);
+    }
+    if focus {
+        heads.extend([(Column::Right, "focus \nat m "), (Column::Right, "goal")]);
+    }
+    if heads.len() == 1 {
+        return String::new();
+    }
+    let mut table = Table::new(heads);
+    for (goals, state) in file.wishes.states.iter().zip(&assessment.states) {
+        let mut row = vec![state.name.clone()];
+        let any = goals.divergence_mrad.is_some()
+            || goals.diameter_at_range_mm.is_some()
+            || goals.exit_focus_m.is_some();
+        if !any {
+            continue;
+        }
+        if divergence {
+            row.extend(divergence_cells(goals, state));
+        }
+        if range {
+            row.extend(range_cells(goals, state));
+        }
+        if focus {
+            row.extend(focus_cells(goals, state));
+        }
+        table.row(row);
+    }
+    table.text()
+}
+
+/// A value wanted and how far off it may be.
+pub(crate) fn about(wanted: f64, within: f64) -> String {
+    format!("{} ± {}", as_written(wanted), as_written(within))
+}
+
+fn divergence_cells(goals: &Goals, state: &StateAssessment) -> [String; 2] {
+    let within = goals.divergence_mrad;
+    if within.is_none() {
+        return [const { String::new() }; 2];
+    }
+    let value = state.divergence_mrad;
+    [
+        marked(significant_or_dash(value, 4), missed(value, within)),
+        within.map_or_else(String::new, |within| format!("≤ {}", as_written(within))),
+    ]
+}
+
+fn range_cells(goals: &Goals, state: &StateAssessment) -> [String; 3] {
+    let Some(goal) = goals.diameter_at_range_mm else { return [const { String::new() }; 3] };
+    let off = state.diameter_at_range_mm.map(|diameter| diameter - goal.wanted_mm);
+    [
+        as_written(goal.range_m),
+        marked(fixed_or_dash(state.diameter_at_range_mm, 2), missed(off, Some(goal.within_mm))),
+        about(goal.wanted_mm, goal.within_mm),
+    ]
+}
+
+fn focus_cells(goals: &Goals, state: &StateAssessment) -> [String; 2] {
+    let Some(goal) = goals.exit_focus_m else { return [const { String::new() }; 2] };
+    [
+        marked(
+            significant_or_dash(state.exit_focus_m, 4),
+            missed(state.exit_focus_error_m, Some(goal.within_m)),
+        ),
+        about(goal.wanted_m, goal.within_m),
+    ]
 }
 
 /// The goals, where they are the same in all states and there are any.

@@ -69,12 +69,20 @@ fn marks_of(goals: &Goals, state: &StateAssessment, name: &str) -> Vec<Mark> {
             unit: " waves",
         }));
     }
-    let mut push = |what, value, within: Option<f64>, unit| {
+    let mut push = |what: &str, value, within: Option<f64>, unit| {
         let what = format!("{what} of {name}");
         marks.extend(within.map(|within| Mark { what, value, within, unit }));
     };
     push("ratio error", state.ratio_error_percent, goals.ratio_percent, " %");
     push("exit slope", state.exit_slope_urad, goals.exit_slope_urad, " µrad");
+    push("divergence", state.divergence_mrad, goals.divergence_mrad, " mrad");
+    if let Some(goal) = goals.diameter_at_range_mm {
+        let what = format!("error of the diameter at {} m", as_written(goal.range_m));
+        let off = state.diameter_at_range_mm.map(|diameter| diameter - goal.wanted_mm);
+        push(&what, off, Some(goal.within_mm), " mm");
+    }
+    let focus = goals.exit_focus_m.map(|goal| goal.within_m);
+    push("error of the focus", state.exit_focus_error_m, focus, " m");
     marks
 }
 
