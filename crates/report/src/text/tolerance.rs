@@ -156,7 +156,7 @@ fn sensitivities(file: &DesignFile, report: &ToleranceReport, listed: Listed) ->
     let rest = report.sensitivities.len().saturating_sub(most);
     let note = format!(
         "The effect at the full tolerance in the worst state, spacings re-adjusted; its share of \
-         all expected misses.{}",
+         all expected misses, the wander through the zoom aside.{}",
         if rest > 0 { format!(" {rest} more: --all.") } else { String::new() }
     );
     format!("{}\n{}", table.text(), paragraph(&note, WIDTH, ""))
