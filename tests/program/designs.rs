@@ -38,6 +38,7 @@ pub fn every_key() -> Value {
             { "name": "6x", "ratio": 6.0, "spacings_mm": [1.0, 128.0],
               "wavelengths_nm": [532.0], "goals": { "ratio_percent": { "within": 0.5 } } }
         ],
+        "temperatures_c": [20.0],
         "goals": { "wavefront_rms_waves": { "within": 0.05 }, "ratio_percent": { "within": 0.2 },
                    "exit_slope_urad": { "within": 20.0 } },
         "limits": {

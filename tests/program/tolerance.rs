@@ -10,7 +10,7 @@ const BUILT: &str = "configs/survey-lidar-to-build.json";
 
 #[test]
 fn a_shipped_design_as_a_table() {
-    let ended = run(&format!("tolerance {BUILT} --systems 120 --progress none"));
+    let ended = run(&format!("tolerance {BUILT} --systems 40 --progress none"));
     assert_eq!((ended.status, ended.err.as_str()), (0, ""));
     let wide = ended.out.lines().filter(|line| line.chars().count() > 80).count();
     assert_eq!(wide, 0, "{}", ended.out);
@@ -26,9 +26,9 @@ fn every_tolerance_when_asked() {
 
 #[test]
 fn the_document_has_the_fields_that_are_promised() {
-    let document = run(&format!("tolerance {BUILT} --systems 20 --yield 70 --json")).json();
+    let document = run(&format!("tolerance {BUILT} --systems 6 --yield 70 --json")).json();
     assert_eq!(document["format"], "drawtube-tolerance/1");
-    assert_eq!(document["monte_carlo"]["systems"], 20);
+    assert_eq!(document["monte_carlo"]["systems"], 6);
     let states = document["monte_carlo"]["states"].as_array().unwrap();
     assert_eq!(states.len(), 5);
     for key in ["quantity", "nominal", "predicted_rms", "within", "percent_90"] {
@@ -61,7 +61,7 @@ fn rows_for_other_programs() {
 
 #[test]
 fn threads_and_runs_give_the_same_bits_and_seeds_do_not() {
-    let line = format!("tolerance {BUILT} --systems 30 --json");
+    let line = format!("tolerance {BUILT} --systems 6 --json");
     let one = run(&format!("{line} --threads 1")).out;
     assert_eq!(one, run(&format!("{line} --threads 3")).out);
     assert_ne!(one, run(&format!("{line} --seed 2")).out);

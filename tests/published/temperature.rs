@@ -89,3 +89,106 @@ fn a_lens_of_constant_index_grows_as_a_whole() {
     let (focal, expected) = (-1.0 / ray.exit_slope().unwrap(), lens(1.0 + 50.0 * 9e-6));
     assert!((focal / expected - 1.0).abs() < 1e-13);
 }
+
+/// Two groups with air inside, a cemented interface and an asphere, both ends of the tube fixed
+/// but for a middle group, wanted at three temperatures.
+fn wanted_warm_and_cold() -> driver::design_file::DesignFile {
+    let document = serde_json::json!({
+        "format": "drawtube/1",
+        "beam": { "wavelengths_nm": [532.0, 633.0], "diameter_mm": 2.0 },
+        "groups": [
+            { "name": "entry", "elements": [ { "radii_mm": [60.0, -30.0, -200.0],
+                "glasses": ["N-BK7", "N-SF6"], "thicknesses_mm": [4.0, 2.0], "diameter_mm": 9.0 },
+                { "radii_mm": ["flat", 300.0], "glasses": ["N-BK7"], "thicknesses_mm": [2.0],
+                  "diameter_mm": 9.0, "shapes": [null, { "asphere": { "4": 1e-6 } }] } ],
+              "airs_mm": [1.5], "mount_expansion_per_k": 1.2e-5 },
+            { "name": "runner", "elements": [ { "radii_mm": [-40.0, 30.0], "glasses": ["N-SF6"],
+                "thicknesses_mm": [2.0], "diameter_mm": 9.0 } ] },
+            { "name": "exit", "elements": [ { "radii_mm": [300.0, -90.0], "glasses": ["N-BK7"],
+                "thicknesses_mm": [5.0], "diameter_mm": 25.0 } ] }
+        ],
+        "housing": { "track_mm": 120.0, "fixed": ["entry", "exit"], "expansion_per_k": 2.3e-5 },
+        "states": [
+            { "name": "low", "ratio": 2.0, "spacings_mm": [20.0, 83.5] },
+            { "name": "high", "ratio": 3.0, "spacings_mm": [10.0, 93.5] }
+        ],
+        "temperatures_c": [-20.0, 20.0, 60.0],
+        "goals": { "wavefront_rms_waves": { "within": 0.05 }, "ratio_percent": { "within": 0.2 },
+                   "exit_slope_urad": { "within": 20.0 } },
+        "free": ["radii", "thicknesses", "airs", "spacings", "aspheres"]
+    });
+    let document = surface_model::document::Document::from_value("warm", document);
+    driver::design_file::DesignFile::read(document).unwrap()
+}
+
+/// The merit over several temperatures is the sum of the merits of the design at each, and its
+/// derivatives are those of central differences.
+#[test]
+fn goals_at_several_temperatures() {
+    use driver::optimise::merit_of;
+    use merit_function::assessment::assess;
+    use merit_function::block::{BlockProblem, Linearisation};
+    let file = wanted_warm_and_cold();
+    let mut merit = merit_of(&file).unwrap();
+    let at = merit.variables().start().to_vec();
+    let mut residuals = vec![0.0; merit.shape().residuals()];
+    merit.residuals(&at, &mut residuals).unwrap();
+    let sum: f64 = residuals.iter().map(|r| r * r).sum();
+    let whole = assess(&file.design, &file.wishes);
+    assert_eq!(whole.at_temperatures.len(), 2);
+    assert!((sum / whole.merit.goals.unwrap() - 1.0).abs() < 1e-4, "{sum} {:?}", whole.merit);
+    let alone = |temperature_c: f64| {
+        let mut wishes = file.wishes.clone();
+        wishes.temperatures_c.clear();
+        let design = file.design.at_temperature(temperature_c).unwrap();
+        assess(&design, &wishes).merit.goals.unwrap()
+    };
+    let each: f64 = [-20.0, 20.0, 60.0].into_iter().map(alone).sum();
+    assert!((each / whole.merit.goals.unwrap() - 1.0).abs() < 1e-12);
+
+    let shape = merit.shape().clone();
+    let mut linear = Linearisation::zeros(&shape);
+    merit.linearise(&at, &mut linear).unwrap();
+    for (j, &x) in at.iter().enumerate() {
+        let step = 1e-5 * x.abs().max(1e-3);
+        let mut moved = |to: f64| {
+            let mut there = at.clone();
+            there[j] = to;
+            let mut out = vec![0.0; residuals.len()];
+            merit.residuals(&there, &mut out).unwrap();
+            out
+        };
+        let (above, below) = (moved(x + step), moved(x - step));
+        let mut row = 0;
+        for (k, block) in linear.states.iter().enumerate() {
+            let own = shape.own_range(k);
+            for i in 0..shape.rows[k] {
+                let by = match (j < shape.shared, own.contains(&j)) {
+                    (true, _) => block.by_shared[(i, j)],
+                    (_, true) => block.by_own[(i, j - own.start)],
+                    _ => 0.0,
+                };
+                assert!((block.residuals[i] - residuals[row]).abs() < 1e-9);
+                let difference = (above[row] - below[row]) / (2.0 * step);
+                let size = by.abs().max(1e-6 * residuals[row].abs() / step);
+                assert!(
+                    (difference - by).abs() < 5e-5 * size.max(1.0),
+                    "variable {j}, state {k}, row {i}: {by} {difference}"
+                );
+                row += 1;
+            }
+        }
+    }
+}
+
+/// What has not been told is not taken for nothing.
+#[test]
+fn goals_at_temperatures_need_to_know_how_everything_changes() {
+    let file = wanted_warm_and_cold();
+    let mut value = file.document().value().clone();
+    value["groups"][1]["elements"][0]["glasses"][0] = "fused-silica".into();
+    let document = surface_model::document::Document::from_value("warm", value);
+    let told = driver::design_file::DesignFile::read(document).unwrap_err().to_string();
+    assert!(told.contains("nothing is known of how fused-silica expands"), "{told}");
+    assert!(told.contains("/temperatures_c/0"), "{told}");
+}

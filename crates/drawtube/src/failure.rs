@@ -196,8 +196,6 @@ impl Failure {
             Self::Cam(CamError::State { .. }) => ExitStatus::Failed,
             Self::Cam(_) => ExitStatus::WrongInput,
             Self::Ray(RayError::Glass(_) | RayError::Direction { .. }) => ExitStatus::WrongInput,
-            Self::Cam(CamError::State { .. }) => ExitStatus::Failed,
-            Self::Cam(_) => ExitStatus::WrongInput,
             Self::Start(_)
             | Self::Impossible(_)
             | Self::NoSuchRank { .. }

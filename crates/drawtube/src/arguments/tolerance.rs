@@ -18,7 +18,7 @@ use super::ProgressArgument;
 The first Ctrl-C tells what has been built so far, the second leaves at once.
 
 Example:
-  drawtube tolerance configs/two-colour-pairs.json --systems 200")]
+  drawtube tolerance configs/survey-lidar-to-build.json --systems 200")]
 pub(crate) struct ToleranceArguments {
     /// The design; "-" is standard input
     pub(crate) design: PathBuf,

@@ -1,22 +1,21 @@
 //! Drawing the errors of a system: keyed by its number, so that it does not matter which thread
 //! draws it, or when.
 
-use rand_chacha::ChaCha8Rng;
-use rand_chacha::rand_core::{Rng, SeedableRng};
+use rand::Rng;
 
 use super::bench::Bench;
 use super::built::Error;
 use super::kind::{Form, Spread};
+use crate::sampling::{RandomStream, stream};
 
 /// Draws the errors of system `number`, one an item, in units of their tolerances.
 pub(crate) fn draw(bench: &Bench<'_>, seed: u64, number: u64) -> Vec<Error> {
-    let mut source = ChaCha8Rng::seed_from_u64(seed);
-    source.set_stream(number);
+    let mut source = stream(seed, number);
     let forms = bench.items.iter().map(|item| item.item.kind.form());
     forms.map(|form| error(form, bench.spread, &mut source)).collect()
 }
 
-fn error(form: Form, spread: Spread, source: &mut ChaCha8Rng) -> Error {
+fn error(form: Form, spread: Spread, source: &mut RandomStream) -> Error {
     match (form, spread) {
         (Form::Round, _) => [number(spread, source), 0.0],
         (Form::TwoFold, _) => [number(spread, source), std::f64::consts::PI * uniform(source)],
@@ -34,7 +33,7 @@ fn error(form: Form, spread: Spread, source: &mut ChaCha8Rng) -> Error {
 }
 
 /// From −1 to 1.
-fn number(spread: Spread, source: &mut ChaCha8Rng) -> f64 {
+fn number(spread: Spread, source: &mut RandomStream) -> f64 {
     match spread {
         Spread::Uniform => 2.0 * uniform(source) - 1.0,
         Spread::Normal => loop {
@@ -47,12 +46,12 @@ fn number(spread: Spread, source: &mut ChaCha8Rng) -> f64 {
 }
 
 /// From 0 to 1 in steps of 2⁻⁵³.
-fn uniform(source: &mut ChaCha8Rng) -> f64 {
+fn uniform(source: &mut RandomStream) -> f64 {
     (source.next_u64() >> 11) as f64 / (1_u64 << 53) as f64
 }
 
 /// Two normal numbers (G. E. P. Box and M. E. Muller, Ann. Math. Stat. 29, 610 (1958)).
-fn normal_pair(source: &mut ChaCha8Rng) -> [f64; 2] {
+fn normal_pair(source: &mut RandomStream) -> [f64; 2] {
     let (radius, angle) = (1.0 - uniform(source), std::f64::consts::TAU * uniform(source));
     let radius = (-2.0 * radius.ln()).sqrt();
     [radius * angle.cos(), radius * angle.sin()]
@@ -64,7 +63,7 @@ mod tests {
 
     #[test]
     fn mean_squares_are_what_is_told_of_them() {
-        let mut source = ChaCha8Rng::seed_from_u64(7);
+        let mut source = stream(7, 0);
         for spread in [Spread::Normal, Spread::Uniform] {
             let (mut single, mut across) = (0.0, 0.0);
             let draws = 100_000;

@@ -7,7 +7,6 @@ use driver::retune::blame::Blame;
 use driver::retune::{Moving, Retuning, Stage};
 use surface_model::design::Design;
 
-use super::bounds::ended_on_bounds;
 use super::differences::{differences as table_of, signed};
 use super::number::{NONE, as_written, fixed, fixed_or_dash, significant, significant_or_dash};
 use super::states::spacing_heads;

@@ -60,11 +60,11 @@ fn states(file: &DesignFile, report: &TemperatureReport) -> String {
         (Column::Right, "°C"),
         (Column::Left, "state"),
         (Column::Right, "ratio \nerror % "),
-        (Column::Right, "exit slope \nµrad "),
+        (Column::Right, "slope \nµrad "),
         (Column::Right, "RMS \nwaves "),
         (Column::Right, "re-adjusted\nby mm"),
         (Column::Right, "ratio \nerror % "),
-        (Column::Right, "exit slope \nµrad "),
+        (Column::Right, "slope \nµrad "),
         (Column::Right, "RMS \nwaves "),
     ]);
     for at in &report.temperatures {
@@ -89,7 +89,7 @@ fn numbers(goals: &Goals, numbers: &TemperatureNumbers) -> [String; 3] {
         marked(fixed(ratio_percent, 3), missed(Some(ratio_percent), goals.ratio_percent)),
         marked(fixed(exit_slope_urad, 1), missed(Some(exit_slope_urad), goals.exit_slope_urad)),
         marked(
-            significant(wavefront_rms_waves, 3),
+            significant(wavefront_rms_waves, 2),
             missed(Some(wavefront_rms_waves), goals.wavefront_rms_waves),
         ),
     ]

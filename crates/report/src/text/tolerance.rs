@@ -35,7 +35,7 @@ pub fn told(file: &DesignFile, report: &ToleranceReport, listed: Listed) -> Stri
         sensitivities(file, report, listed),
         balance(file, report.balance.as_ref()),
         warnings(&cautions(report)),
-        verdict(report),
+        verdict(file, report),
     ])
 }
 
@@ -66,8 +66,6 @@ fn distributions(monte_carlo: &MonteCarlo) -> String {
         (Column::Left, "quantity"),
         (Column::Right, "within"),
         (Column::Right, "as\ndrawn"),
-        (Column::Right, "expected\nrms"),
-        (Column::Right, "rms"),
         (Column::Right, "50 %"),
         (Column::Right, "90 %"),
         (Column::Right, "98 %"),
@@ -81,8 +79,6 @@ fn distributions(monte_carlo: &MonteCarlo) -> String {
                 name(quantity.quantity).to_owned(),
                 quantity.within.map_or_else(String::new, as_written),
                 significant(quantity.nominal, 3),
-                significant(quantity.predicted_rms, 3),
-                significant(sizes.rms, 3),
                 significant_or_dash(sizes.percent_50, 3),
                 significant_or_dash(sizes.percent_90, 3),
                 significant_or_dash(sizes.percent_98, 3),
@@ -160,15 +156,15 @@ fn sensitivities(file: &DesignFile, report: &ToleranceReport, listed: Listed) ->
     let rest = report.sensitivities.len().saturating_sub(most);
     let note = format!(
         "The effect at the full tolerance in the worst state, spacings re-adjusted; its share of \
-         all expected misses.{}",
+         all expected misses, the wander through the zoom aside.{}",
         if rest > 0 { format!(" {rest} more: --all.") } else { String::new() }
     );
     format!("{}\n{}", table.text(), paragraph(&note, WIDTH, ""))
 }
 
-/// An effect; what is nothing but rounding is nothing.
+/// An effect; what no one could measure is nothing.
 fn effect(size: f64) -> String {
-    if size < 1e-9 { "0".to_owned() } else { significant(size, 2) }
+    if size < 5e-5 { "0".to_owned() } else { significant(size, 2) }
 }
 
 /// A place in few words: the names and numbers of its address.
@@ -239,7 +235,7 @@ fn cautions(report: &ToleranceReport) -> Vec<String> {
     cautions
 }
 
-fn verdict(report: &ToleranceReport) -> String {
+fn verdict(file: &DesignFile, report: &ToleranceReport) -> String {
     let monte_carlo = &report.monte_carlo;
     let [low, high] = monte_carlo.yield_between_percent.map(|percent| fixed(percent, 1));
     let mut told = format!(
@@ -253,7 +249,7 @@ fn verdict(report: &ToleranceReport) -> String {
         told.push_str(&format!(
             "; the worst offender is {} of {}, {} % of all expected misses",
             worst.kind.word(),
-            worst.at,
+            worst.at.with_names(file.document().value()),
             fixed(worst.share_percent, 0)
         ));
     }

@@ -80,7 +80,7 @@ pub(super) fn define(document: &GlassDocument) -> Result<Definition<'_>, Faults>
         [("/expansion_per_k", document.expansion_per_k), ("/index_per_k", document.index_per_k)];
     for (at, found) in per_k {
         if let Some(found) = found
-            && !(found.abs() <= MOST_PER_K)
+            && !(0.0..=MOST_PER_K).contains(&found.abs())
         {
             faults.add(at, DefinitionError::PerKelvin { found });
         }
