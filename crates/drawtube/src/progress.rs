@@ -47,6 +47,9 @@ pub(crate) fn interval(seconds: f64) -> Result<Duration, Failure> {
     })
 }
 
+/// How the merit fell: iteration and merit.
+pub(crate) type MeritHistory = Vec<(u64, f64)>;
+
 /// Tells how far the solver is, and passes on the wish to stop.
 pub(crate) struct Teller<'a> {
     console: &'a Console,
@@ -57,7 +60,7 @@ pub(crate) struct Teller<'a> {
     last: Instant,
     iterations: u64,
     /// Iteration and merit, for a picture; the latest run last.
-    history: Vec<Vec<(u64, f64)>>,
+    history: Vec<MeritHistory>,
 }
 
 impl<'a> Teller<'a> {
@@ -86,7 +89,7 @@ impl<'a> Teller<'a> {
     }
 
     /// Iteration and merit of every run.
-    pub(crate) fn into_history(self) -> Vec<Vec<(u64, f64)>> {
+    pub(crate) fn into_history(self) -> Vec<MeritHistory> {
         self.history
     }
 

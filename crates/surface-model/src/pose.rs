@@ -1,7 +1,7 @@
 //! Where a surface stands and how it is turned: a rigid motion of the place it was drawn at.
 //!
 //! A turn is a vector along its axis whose length is its angle, so that turns about x and y keep
-//! their meaning when both happen: R = exp([v]×), by the formula of Rodrigues (R. M. Murray, Z. Li,
+//! their meaning when both happen: R = exp(\[v\]×), by the formula of Rodrigues (R. M. Murray, Z. Li,
 //! S. S. Sastry, *A Mathematical Introduction to Robotic Manipulation*, CRC Press 1994, eq. 2.14).
 
 /// A point or direction, x, y, z.

@@ -14,7 +14,7 @@ use crate::console::Console;
 use crate::destination::Destination;
 use crate::exit_status::ExitStatus;
 use crate::failure::Failure;
-use crate::progress::Teller;
+use crate::progress::{MeritHistory, Teller};
 use crate::signals::StopSignal;
 
 use account::Account;
@@ -42,7 +42,7 @@ fn solve(
     request: &Request,
     signals: &StopSignal,
     console: &Console,
-) -> Result<(Vec<Optimisation>, Vec<Vec<(u64, f64)>>), Failure> {
+) -> Result<(Vec<Optimisation>, Vec<MeritHistory>), Failure> {
     let mut stages: Vec<Optimisation> = Vec::new();
     let mut teller = Teller::new(request.progress, console, signals.flag());
     for settings in &request.stages {
@@ -67,10 +67,10 @@ fn solve(
 fn draw(
     request: &Request,
     account: &Account<'_>,
-    history: Vec<Vec<(u64, f64)>>,
+    history: Vec<MeritHistory>,
 ) -> Result<(), Failure> {
     let Some(output) = &request.picture else { return Ok(()) };
-    let runs: Vec<(String, Vec<(u64, f64)>)> =
+    let runs: Vec<(String, MeritHistory)> =
         request.stages.iter().map(|stage| stage.method().name().to_owned()).zip(history).collect();
     let file = account.result();
     let curve = movement_curve(&file.design, &file.wishes, &CamSettings::default());

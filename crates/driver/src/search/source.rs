@@ -36,7 +36,7 @@ pub(super) struct Quarry<'p> {
 }
 
 enum Kind<'p> {
-    Design(&'p DesignSource, DesignBench),
+    Design(&'p DesignSource, Box<DesignBench>),
     Brief(&'p BriefSource, Layouts),
 }
 
@@ -52,7 +52,7 @@ impl Source {
             Self::Design(source) => {
                 let dimensions = source.dimensions().min(MOST_DIMENSIONS);
                 let sobol = Sobol::shifted(dimensions, seed).ok();
-                (Kind::Design(source, source.bench(bench)?), sobol)
+                (Kind::Design(source, Box::new(source.bench(bench)?)), sobol)
             }
             Self::Brief(source) => (Kind::Brief(source, Layouts::new()), None),
         };

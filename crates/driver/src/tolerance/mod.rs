@@ -3,7 +3,7 @@
 //! # The way of an error
 //!
 //! 1. *Built.* Radii, irregularities, thicknesses, glass, wedges, decentres and tilts are drawn
-//!    within their tolerances ([`kind`], [`document`]); one draw is one system in all its states.
+//!    within their tolerances (`kind.rs`, `document.rs`); one draw is one system in all its states.
 //!    Between two fixed groups a length that comes out wrong is made up by the last free spacing,
 //!    elsewhere it shifts what follows.
 //! 2. *Re-adjusted.* In every state the user turns the spacings that can be turned until the state

@@ -54,7 +54,9 @@ pub use layout::layout;
 pub use merit::merit_curve;
 pub use panel::Panel;
 pub use sheets::{assessment_picture, cam_picture, optimisation_picture};
-pub use sweep::{SweepCurve, SweepMap, Trade, TradedDesign, front, sweep_curve, sweep_map, trade};
+pub use sweep::{
+    Readings, SweepCurve, SweepMap, Trade, TradedDesign, front, sweep_curve, sweep_map, trade,
+};
 pub use wavefront::wavefronts;
 
 /// Width that files are drawn at, px: as wide as a page of A4 between its margins, at 96 px an

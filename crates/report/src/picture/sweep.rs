@@ -5,6 +5,9 @@ use super::chart::{Chart, Series, chart};
 use super::ink::{FAINT, INK, MISS, Stroke, map_colour};
 use super::panel::{Anchor, Panel, Word, width_of};
 
+/// A result along an axis: value of the axis and of the result, `None` where there is none.
+pub type Readings = Vec<(f64, Option<f64>)>;
+
 /// A result over one swept axis.
 #[derive(Debug, Clone, PartialEq)]
 pub struct SweepCurve {
@@ -15,7 +18,7 @@ pub struct SweepCurve {
     /// What came of it.
     pub y: Axis,
     /// One or more results, each with its name; a missing value is a point that failed.
-    pub results: Vec<(String, Vec<(f64, Option<f64>)>)>,
+    pub results: Vec<(String, Readings)>,
 }
 
 /// Draws a result over one swept axis.
