@@ -92,30 +92,30 @@ Example:
 /// What the program can do.
 #[derive(Debug, Subcommand)]
 pub(crate) enum Command {
+    /// Begin: work out layouts that can do what a brief asks, and rank them
+    Start(StartArguments),
     /// Tell every zoom state's numbers and every limit of a design
     Assess(AssessArguments),
     /// Improve a design: move what is free until the goals are met as well as they can be
     Optimise(OptimiseArguments),
-    /// Begin: work out layouts that can do what a brief asks, and rank them
-    Start(StartArguments),
-    /// Tell what a workshop's errors do to a design, and the yield
-    Tolerance(ToleranceArguments),
+    /// Search for designs for hours, in a run folder that survives anything
+    Overnight(OvernightArguments),
     /// Optimise a design at every point of a grid or a sample
     Sweep(SweepArguments),
     /// After a change, move only what can still move, in stages
     Retune(RetuneArguments),
     /// Work out the movement curves: where every group stands at any ratio
     Cam(CamArguments),
+    /// Tell what a workshop's errors do to a design, and the yield
+    Tolerance(ToleranceArguments),
     /// Write a page about a design, or about several side by side; sheets for the shop
     Report(ReportArguments),
-    /// Search for designs for hours, in a run folder that survives anything
-    Overnight(OvernightArguments),
-    /// Put the parts of an overnight run or a sweep together
-    Gather(GatherArguments),
     /// Follow one exact ray through a design, surface by surface
     Trace(TraceArguments),
     /// Look through the glass catalogue, or find equivalents of a glass
     Glass(GlassArguments),
+    /// Put the parts of an overnight run or a sweep together
+    Gather(GatherArguments),
     /// Print the JSON Schema of a kind of document
     Schema(SchemaArguments),
     /// Print the completions for a shell

@@ -12,7 +12,7 @@ use clap::builder::RangedU64ValueParser;
 #[derive(Debug, Args)]
 #[command(after_help = "\
 Example:
-  drawtube start configs/river-brief.json -o better.json")]
+  drawtube start configs/river-brief.json -o first.json")]
 pub(crate) struct StartArguments {
     /// The brief; "-" is standard input
     pub(crate) brief: PathBuf,

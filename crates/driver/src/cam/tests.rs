@@ -77,7 +77,14 @@ fn three_thin_groups_move_as_the_closed_form_says() {
         }
         assert!(point.collimation_urad.abs() < 1e-3 && point.ratio_error_percent.unwrap() < 1e-6);
     }
-    assert!(curve.findings.is_empty(), "{:?}", curve.findings);
+    // The entry's slope f₂f₃/(f₁ m²) − f₁f₂/f₃ vanishes at m = f₃/f₁: there, and only there, it
+    // turns back.
+    let [turning] = curve.findings.as_slice() else { panic!("{:?}", curve.findings) };
+    assert_eq!(
+        (turning.kind, turning.what.as_str(), turning.wrong),
+        (FindingKind::Reversal, "g0", false)
+    );
+    assert!((turning.ratios[0] - f3 / f1).abs() < 1e-4, "{turning:?}");
 }
 
 /// Distances of four thin groups with both ends fixed: with μ₂μ₃ = P = −f₄/(f₁ m) the track asks

@@ -21,7 +21,7 @@ pub(crate) fn reached(file: &DesignFile, assessment: &Assessment) -> String {
         (Column::Right, "ratio\nwanted"),
         (Column::Right, "ratio"),
         (Column::Right, "ratio \nerror % "),
-        (Column::Right, "exit slope \nµrad "),
+        (Column::Right, "exit \nslope \nµrad "),
         (Column::Right, "exit\nbeam mm"),
         (Column::Right, "wave-\nlength\nnm"),
         (Column::Right, "RMS \nwaves "),
