@@ -75,6 +75,9 @@ impl Verdict {
     }
 }
 
+/// What was tried on the steps, with figures: kept by hand.
+const TRIED: &str = include_str!("tried.md");
+
 type Measure = fn() -> Result<Section, Failure>;
 
 /// Measures everything and writes the page.
@@ -106,7 +109,7 @@ pub(crate) fn write() -> Result<(), Failure> {
             writeln!(verdicts, "| {what} | {wanted} | {measured} | {met} |")?;
         }
     }
-    let page = format!("{HEAD}\n{machine}\n{verdicts}{rest}");
+    let page = format!("{HEAD}\n{machine}\n{verdicts}{rest}\n{TRIED}");
     Ok(write_whole(&design::home().join("README.md"), page.as_bytes(), Existing::Replace)?)
 }
 
