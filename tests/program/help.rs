@@ -3,7 +3,7 @@
 use crate::program::{program, run, run_on};
 use crate::readme::scene;
 
-const COMMANDS: [&str; 14] = [
+const COMMANDS: [&str; 15] = [
     "start",
     "assess",
     "optimise",
@@ -17,6 +17,7 @@ const COMMANDS: [&str; 14] = [
     "trace",
     "glass",
     "schema",
+    "man",
     "completions",
 ];
 
@@ -112,4 +113,18 @@ fn completions_for_every_shell() {
             assert!(ended.out.contains(command), "{shell} {command}");
         }
     }
+}
+
+#[test]
+fn a_manual_page_of_every_command() {
+    let whole = run("man").out;
+    assert!(whole.contains(".TH drawtube 1"), "{whole}");
+    for command in COMMANDS {
+        assert!(whole.contains(&format!("drawtube\\-{command}(1)")), "{command}: {whole}");
+        let page = run(&format!("man {command}"));
+        assert_eq!(page.status, 0);
+        assert!(page.out.contains(".SH SYNOPSIS"), "{}", page.out);
+    }
+    let unknown = run("man optimize");
+    assert_eq!(unknown.status, 2, "{}", unknown.err);
 }

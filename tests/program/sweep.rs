@@ -170,3 +170,40 @@ fn another_plan_in_the_same_folder_is_refused() {
     assert_eq!(sweep(&small, &place, "--quiet").status, 0);
     assert_eq!(sweep(&plan(), &place, "--quiet").status, 6);
 }
+
+#[test]
+fn pictures_show_a_curve_a_map_a_trade_or_names() {
+    let folder = tempfile::tempdir().unwrap();
+    let drawn = |name: &str, change: &dyn Fn(&mut Value)| {
+        let mut plan = plan();
+        change(&mut plan);
+        let file = folder.path().join(format!("{name}.svg"));
+        let more = format!("--quiet --picture {}", file.display());
+        let ended = sweep(&plan, &folder.path().join(name), &more);
+        assert_eq!(ended.status, 0, "{}", ended.err);
+        std::fs::read_to_string(file).unwrap()
+    };
+    let map = drawn("map", &|_| {});
+    for word in ["140", "160", "5.5", "/states/6x/ratio", "/housing/track_mm against merit"] {
+        assert!(map.contains(word), "{word}: {map}");
+    }
+    let curve = drawn("curve", &|plan| {
+        plan["axes"].as_array_mut().unwrap().truncate(1);
+        plan.as_object_mut().unwrap().remove("front");
+    });
+    assert!(curve.contains("/housing/track_mm") && !curve.contains("against"), "{curve}");
+    let names = drawn("names", &|plan| {
+        plan["axes"] = json!([
+            { "at": "/groups/exit/elements/0/glasses/0", "values": ["fused-silica", "N-BK7"] }
+        ]);
+        plan.as_object_mut().unwrap().remove("front");
+    });
+    assert!(names.contains("N-BK7"), "{names}");
+    let again = sweep(
+        &plan(),
+        &folder.path().join("other"),
+        &format!("--picture {}", folder.path().join("map.svg").display()),
+    );
+    assert_eq!(again.status, 7, "{}", again.err);
+    assert!(!folder.path().join("other").exists());
+}

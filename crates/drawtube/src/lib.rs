@@ -51,6 +51,7 @@ fn run(arguments: Arguments) -> ExitStatus {
         Command::Trace(arguments) => commands::trace::run(arguments, &console),
         Command::Glass(arguments) => commands::glass::run(arguments, &console),
         Command::Schema(arguments) => commands::schema::run(arguments, &console),
+        Command::Man(arguments) => commands::man::run(&arguments, &console),
         Command::Completions(arguments) => commands::completions::run(arguments, &console),
     };
     result.unwrap_or_else(|failure| console.fail(&failure))

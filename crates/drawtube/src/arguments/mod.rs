@@ -6,6 +6,7 @@ mod cam;
 mod completions;
 mod gather;
 mod glass;
+mod man;
 mod optimise;
 mod overnight;
 mod progress;
@@ -27,6 +28,7 @@ pub(crate) use cam::CamArguments;
 pub(crate) use completions::CompletionsArguments;
 pub(crate) use gather::GatherArguments;
 pub(crate) use glass::GlassArguments;
+pub(crate) use man::ManArguments;
 pub(crate) use optimise::{MethodArgument, OptimiseArguments};
 pub(crate) use overnight::{OvernightArguments, StrategyArgument};
 pub(crate) use progress::ProgressArgument;
@@ -118,6 +120,8 @@ pub(crate) enum Command {
     Gather(GatherArguments),
     /// Print the JSON Schema of a kind of document
     Schema(SchemaArguments),
+    /// Print the manual page, of the program or of one command
+    Man(ManArguments),
     /// Print the completions for a shell
     Completions(CompletionsArguments),
 }

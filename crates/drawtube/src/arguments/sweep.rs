@@ -41,6 +41,12 @@ pub(crate) struct SweepArguments {
     /// of a job engine, "auto/N" only I
     #[arg(long, value_name = "I/N")]
     pub(crate) part: Option<String>,
+    /// Draw the points as SVG: a curve over one axis, a map over two, the trade that the plan asks for
+    #[arg(long, value_name = "FILE", conflicts_with = "dry_run")]
+    pub(crate) picture: Option<PathBuf>,
+    /// Replace the picture if it is there already
+    #[arg(long, requires = "picture")]
+    pub(crate) force: bool,
     /// Print every point with its design as JSON
     #[arg(long)]
     pub(crate) json: bool,

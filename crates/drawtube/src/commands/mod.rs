@@ -5,6 +5,7 @@ pub(crate) mod cam;
 pub(crate) mod completions;
 pub(crate) mod gather;
 pub(crate) mod glass;
+pub(crate) mod man;
 pub(crate) mod optimise;
 pub(crate) mod overnight;
 pub(crate) mod report;

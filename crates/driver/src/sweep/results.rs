@@ -96,10 +96,8 @@ impl Quantity {
 /// to the least of the second; of points that are equal in both the first counts.
 #[must_use]
 pub fn front(points: &[(u64, PointResult)], by: &[Quantity; 2]) -> Vec<u64> {
-    let mut placed: Vec<(f64, f64, u64)> = points
-        .iter()
-        .filter_map(|(number, point)| Some((by[0].of(point)?, by[1].of(point)?, *number)))
-        .collect();
+    let mut placed: Vec<(f64, f64, u64)> =
+        weighed(points, by).into_iter().map(|(number, [a, b])| (a, b, number)).collect();
     placed.sort_by(|a, b| a.0.total_cmp(&b.0).then(a.1.total_cmp(&b.1)).then(a.2.cmp(&b.2)));
     let mut least = f64::INFINITY;
     let mut front = Vec::new();
@@ -110,6 +108,12 @@ pub fn front(points: &[(u64, PointResult)], by: &[Quantity; 2]) -> Vec<u64> {
         }
     }
     front
+}
+
+/// Both quantities of every point that has them, by its number.
+fn weighed(points: &[(u64, PointResult)], by: &[Quantity; 2]) -> Vec<(u64, [f64; 2])> {
+    let both = |point| Some([by[0].of(point)?, by[1].of(point)?]);
+    points.iter().filter_map(|(number, point)| Some((*number, both(point)?))).collect()
 }
 
 /// A sweep with its results, as JSON and as a table. Points stand in the order of their numbers.
@@ -131,6 +135,9 @@ pub struct SweepResults {
     pub front: Vec<u64>,
     /// Every finished point.
     pub points: Vec<NumberedPoint>,
+    /// By number, the two results weighed against each other, of the points that have both.
+    #[serde(skip)]
+    pub weighed: Vec<(u64, [f64; 2])>,
 }
 
 /// A point and its number.
@@ -151,7 +158,9 @@ impl SweepResults {
     #[must_use]
     pub fn new(plan: &Plan, points: Vec<(u64, PointResult)>) -> Self {
         let front = plan.front.as_ref().map(|by| front(&points, by)).unwrap_or_default();
+        let weighed = plan.front.as_ref().map(|by| weighed(&points, by)).unwrap_or_default();
         Self {
+            weighed,
             format: "drawtube-sweep/1",
             title: plan.title.clone(),
             axes: plan.axes.clone(),

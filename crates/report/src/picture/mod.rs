@@ -10,7 +10,7 @@
 //! | exit wavefronts | [`wavefronts`] |
 //! | over the ratio | [`movement`] |
 //! | merit against iteration | [`merit_curve`] |
-//! | a sweep | [`sweep_curve`], [`sweep_map`], [`trade`]: axes have a name and a unit, the values are yours, a missing one is a point that failed |
+//! | a sweep | [`sweep_curve`], [`sweep_map`], [`trade`]: axes have a name and a unit, the values are yours, a missing one is a point that failed; [`sweep_picture`] for the results of `sweep` |
 //! | what counts how much | [`fn@bars`] |
 //! | any curve | [`fn@chart`] |
 //!
@@ -43,6 +43,7 @@ pub mod movement;
 mod panel;
 mod sheets;
 mod sweep;
+mod sweep_sheet;
 pub mod train;
 mod wavefront;
 
@@ -57,6 +58,7 @@ pub use sheets::{assessment_picture, cam_picture, optimisation_picture};
 pub use sweep::{
     Readings, SweepCurve, SweepMap, Trade, TradedDesign, front, sweep_curve, sweep_map, trade,
 };
+pub use sweep_sheet::sweep_picture;
 pub use wavefront::wavefronts;
 
 /// Width that files are drawn at, px: as wide as a page of A4 between its margins, at 96 px an

@@ -6,6 +6,7 @@ mod watcher;
 
 use driver::run::{RunEnd, RunFolder, Stop, perform};
 use driver::sweep::{PointResult, SweepResults};
+use report::picture::sweep_picture;
 use report::text;
 
 use crate::arguments::SweepArguments;
@@ -32,6 +33,12 @@ pub(crate) fn run(arguments: SweepArguments, console: &Console) -> Result<ExitSt
     if let Some(source) = &end.unsaved {
         let source = std::io::Error::new(source.kind(), source.to_string());
         return Err(Failure::Unsaved { path: run.path.clone(), source });
+    }
+    if let Some(output) = &request.picture {
+        match sweep_picture(&results) {
+            Some(picture) => output.write(&picture)?,
+            None => console.say("drawtube: no picture: it takes one or two axes, or a front"),
+        }
     }
     tell(&request, run, &folder, &end, &results, console)?;
     Ok(status(&request, &signals, &end, &results))

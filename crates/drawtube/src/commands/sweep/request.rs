@@ -10,6 +10,7 @@ use crate::arguments::{ProgressArgument, SweepArguments};
 use crate::console::Console;
 use crate::failure::Failure;
 use crate::input::{self, STANDARD_STREAM};
+use crate::output_file::OutputFile;
 use crate::part;
 use crate::progress::Manner;
 
@@ -35,6 +36,7 @@ pub(super) struct Request {
     /// None if the points are only to be listed.
     pub(super) run: Option<Run>,
     pub(super) told: Told,
+    pub(super) picture: Option<OutputFile>,
     pub(super) progress: Manner,
     pub(super) require: bool,
 }
@@ -62,6 +64,10 @@ impl Request {
         Ok(Self {
             sweep: Sweep::new(plan, design),
             run,
+            picture: arguments
+                .picture
+                .map(|path| OutputFile::checked(path, arguments.force))
+                .transpose()?,
             told: match (quiet, arguments.json) {
                 (true, _) => Told::Nothing,
                 (false, true) => Told::Json,

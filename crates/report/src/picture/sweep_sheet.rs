@@ -1,0 +1,108 @@
+//! The picture of a sweep: a curve over one axis, a map over two, and the trade that was asked for.
+
+use driver::sweep::{NumberedPoint, SweepResults};
+use serde_json::Value;
+use surface_model::document::Address;
+
+use super::axis::Axis;
+use super::bars::{Bar, bars};
+use super::panel::Panel;
+use super::sweep::{SweepCurve, SweepMap, Trade, TradedDesign, sweep_curve, sweep_map, trade};
+use super::{PICTURE_WIDTH, Readings};
+
+/// Space between two panels, px.
+const BETWEEN: f64 = 24.0;
+
+/// Draws the finished points of a sweep, as SVG; `None` where neither one or two axes nor a trade
+/// gives anything to draw.
+#[must_use]
+pub fn sweep_picture(results: &SweepResults) -> Option<String> {
+    let over_axes = match results.axes.as_slice() {
+        [only] => Some(over_one(results, only)),
+        [across, up] => Some(over_two(results, across, up)),
+        _ => None,
+    };
+    let panels: Vec<Panel> = over_axes.into_iter().chain(traded(results)).collect();
+    (!panels.is_empty()).then(|| Panel::stack(panels, BETWEEN).to_file())
+}
+
+fn merit(point: &NumberedPoint) -> Option<f64> {
+    point.reached.as_ref().map(|reached| reached.merit)
+}
+
+/// A curve where the axis has numbers, bars where it has names.
+fn over_one(results: &SweepResults, axis: &Address) -> Panel {
+    let title = format!("{}: merit", results.title);
+    let at = |point: &NumberedPoint| point.values.first().and_then(Value::as_f64);
+    let mut readings: Readings =
+        results.points.iter().filter_map(|point| Some((at(point)?, merit(point)))).collect();
+    if readings.len() < results.points.len() {
+        let named = results.points.iter().filter_map(|point| {
+            Some(Bar { name: point.values.first().map(shown)?, value: merit(point)? })
+        });
+        let named: Vec<Bar> = named.collect();
+        let most = named.len();
+        return bars(&title, &Axis::linear("merit", ""), &named, most, PICTURE_WIDTH);
+    }
+    readings.sort_by(|a, b| a.0.total_cmp(&b.0));
+    let curve = SweepCurve {
+        title,
+        x: Axis::linear(&axis.to_string(), ""),
+        y: Axis::logarithmic("merit", ""),
+        results: vec![("merit".to_owned(), readings)],
+    };
+    sweep_curve(&curve, PICTURE_WIDTH)
+}
+
+/// A map with a cell for every pair of values that occurs.
+fn over_two(results: &SweepResults, across: &Address, up: &Address) -> Panel {
+    let (xs, ys) = (distinct(results, 0), distinct(results, 1));
+    let cell = |x: &Value, y: &Value| {
+        let here = |point: &&NumberedPoint| point.values.iter().eq([x, y]);
+        results.points.iter().find(here).and_then(merit)
+    };
+    let map = SweepMap {
+        title: format!("{}: merit", results.title),
+        x: Axis::linear(&across.to_string(), ""),
+        x_values: xs.iter().map(shown).collect(),
+        y: Axis::linear(&up.to_string(), ""),
+        y_values: ys.iter().map(shown).collect(),
+        value: Axis::logarithmic("merit", ""),
+        cells: ys.iter().map(|y| xs.iter().map(|x| cell(x, y)).collect()).collect(),
+    };
+    sweep_map(&map, PICTURE_WIDTH)
+}
+
+/// Values along an axis, numbers in their order, anything else as it comes.
+fn distinct(results: &SweepResults, axis: usize) -> Vec<Value> {
+    let mut values: Vec<Value> = Vec::new();
+    for value in results.points.iter().filter_map(|point| point.values.get(axis)) {
+        if !values.contains(value) {
+            values.push(value.clone());
+        }
+    }
+    if values.iter().all(Value::is_number) {
+        let number = |value: &Value| value.as_f64().unwrap_or(f64::INFINITY);
+        values.sort_by(|a, b| number(a).total_cmp(&number(b)));
+    }
+    values
+}
+
+fn traded(results: &SweepResults) -> Option<Panel> {
+    let [x, y] = results.front_of.as_ref()?;
+    let designs = results
+        .weighed
+        .iter()
+        .map(|(number, at)| TradedDesign { name: number.to_string(), at: *at });
+    let picture = Trade {
+        title: format!("{}: {x} against {y}", results.title),
+        x: Axis::linear(x, ""),
+        y: Axis::linear(y, ""),
+        designs: designs.collect(),
+    };
+    (!picture.designs.is_empty()).then(|| trade(&picture, PICTURE_WIDTH))
+}
+
+fn shown(value: &Value) -> String {
+    value.as_str().map_or_else(|| value.to_string(), str::to_owned)
+}
