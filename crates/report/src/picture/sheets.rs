@@ -9,8 +9,7 @@ use super::{PICTURE_WIDTH, layout, merit_curve, movement, wavefronts};
 /// Between two panels of a file, px.
 const GAP: f64 = 26.0;
 
-fn title(file: &DesignFile) -> Option<Panel> {
-    let title = &file.design.title;
+pub(super) fn heading(title: &str) -> Option<Panel> {
     if title.is_empty() {
         return None;
     }
@@ -19,7 +18,7 @@ fn title(file: &DesignFile) -> Option<Panel> {
     Some(panel)
 }
 
-fn file_of(panels: impl IntoIterator<Item = Panel>) -> String {
+pub(super) fn file_of(panels: impl IntoIterator<Item = Panel>) -> String {
     Panel::stack(panels, GAP).to_file()
 }
 
@@ -28,7 +27,7 @@ fn file_of(panels: impl IntoIterator<Item = Panel>) -> String {
 pub fn assessment_picture(file: &DesignFile, curve: Option<&MovementCurve>) -> String {
     let panels =
         [layout(&file.design, curve, PICTURE_WIDTH), wavefronts(&file.design, PICTURE_WIDTH)];
-    file_of(title(file).into_iter().chain(panels))
+    file_of(heading(&file.design.title).into_iter().chain(panels))
 }
 
 /// What `cam --picture` writes: layout, and everything over the ratio.
@@ -45,7 +44,7 @@ pub fn cam_picture(file: &DesignFile, curve: &MovementCurve) -> String {
         movement::wavefront(curve, &file.wishes, PICTURE_WIDTH),
         movement::sensitivities(curve, PICTURE_WIDTH),
     ]);
-    file_of(title(file).into_iter().chain(panels))
+    file_of(heading(&file.design.title).into_iter().chain(panels))
 }
 
 /// What `optimise --picture` writes: how the merit fell, and what the design looks like now.
@@ -60,5 +59,5 @@ pub fn optimisation_picture(
         layout(&after.design, curve, PICTURE_WIDTH),
         wavefronts(&after.design, PICTURE_WIDTH),
     ];
-    file_of(title(after).into_iter().chain(panels))
+    file_of(heading(&after.design.title).into_iter().chain(panels))
 }

@@ -7,11 +7,9 @@ use surface_model::document::Address;
 use super::axis::Axis;
 use super::bars::{Bar, bars};
 use super::panel::Panel;
+use super::sheets::{file_of, heading};
 use super::sweep::{SweepCurve, SweepMap, Trade, TradedDesign, sweep_curve, sweep_map, trade};
 use super::{PICTURE_WIDTH, Readings};
-
-/// Space between two panels, px.
-const BETWEEN: f64 = 24.0;
 
 /// Draws the finished points of a sweep, as SVG; `None` where neither one or two axes nor a trade
 /// gives anything to draw.
@@ -23,7 +21,17 @@ pub fn sweep_picture(results: &SweepResults) -> Option<String> {
         _ => None,
     };
     let panels: Vec<Panel> = over_axes.into_iter().chain(traded(results)).collect();
-    (!panels.is_empty()).then(|| Panel::stack(panels, BETWEEN).to_file())
+    (!panels.is_empty()).then(|| file_of(heading(&results.title).into_iter().chain(panels)))
+}
+
+const MERIT: &str = "Merit at every point";
+
+/// By factors where the values are positive and span more than one power of ten.
+fn axis_of(name: &str, values: impl Iterator<Item = f64> + Clone) -> Axis {
+    let least = values.clone().fold(f64::INFINITY, f64::min);
+    let most = values.fold(f64::NEG_INFINITY, f64::max);
+    let far = least > 0.0 && most > 10.0 * least;
+    if far { Axis::logarithmic(name, "") } else { Axis::linear(name, "") }
 }
 
 fn merit(point: &NumberedPoint) -> Option<f64> {
@@ -32,7 +40,6 @@ fn merit(point: &NumberedPoint) -> Option<f64> {
 
 /// A curve where the axis has numbers, bars where it has names.
 fn over_one(results: &SweepResults, axis: &Address) -> Panel {
-    let title = format!("{}: merit", results.title);
     let at = |point: &NumberedPoint| point.values.first().and_then(Value::as_f64);
     let mut readings: Readings =
         results.points.iter().filter_map(|point| Some((at(point)?, merit(point)))).collect();
@@ -42,11 +49,11 @@ fn over_one(results: &SweepResults, axis: &Address) -> Panel {
         });
         let named: Vec<Bar> = named.collect();
         let most = named.len();
-        return bars(&title, &Axis::linear("merit", ""), &named, most, PICTURE_WIDTH);
+        return bars(MERIT, &Axis::linear("merit", ""), &named, most, PICTURE_WIDTH);
     }
     readings.sort_by(|a, b| a.0.total_cmp(&b.0));
     let curve = SweepCurve {
-        title,
+        title: MERIT.to_owned(),
         x: Axis::linear(&axis.to_string(), ""),
         y: Axis::logarithmic("merit", ""),
         results: vec![("merit".to_owned(), readings)],
@@ -62,7 +69,7 @@ fn over_two(results: &SweepResults, across: &Address, up: &Address) -> Panel {
         results.points.iter().find(here).and_then(merit)
     };
     let map = SweepMap {
-        title: format!("{}: merit", results.title),
+        title: MERIT.to_owned(),
         x: Axis::linear(&across.to_string(), ""),
         x_values: xs.iter().map(shown).collect(),
         y: Axis::linear(&up.to_string(), ""),
@@ -95,9 +102,9 @@ fn traded(results: &SweepResults) -> Option<Panel> {
         .iter()
         .map(|(number, at)| TradedDesign { name: number.to_string(), at: *at });
     let picture = Trade {
-        title: format!("{}: {x} against {y}", results.title),
-        x: Axis::linear(x, ""),
-        y: Axis::linear(y, ""),
+        title: "The trade; points that no other beats are numbered".to_owned(),
+        x: axis_of(x, results.weighed.iter().map(|(_, at)| at[0])),
+        y: axis_of(y, results.weighed.iter().map(|(_, at)| at[1])),
         designs: designs.collect(),
     };
     (!picture.designs.is_empty()).then(|| trade(&picture, PICTURE_WIDTH))
