@@ -6,7 +6,7 @@ use std::sync::Arc;
 use std::sync::atomic::{AtomicBool, Ordering};
 use std::time::{Duration, Instant};
 
-use driver::run::Tally;
+use driver::run::{Saving, TakenUp, Tally};
 use indicatif::{ProgressBar, ProgressStyle};
 use report::text::overnight::time;
 
@@ -53,6 +53,36 @@ impl<'a> RunTeller<'a> {
         match &self.bar {
             Some(bar) => bar.suspend(|| self.console.say(text)),
             None => self.console.say(text),
+        }
+    }
+
+    /// Tells what an earlier session left in the folder `run`; of a run that only goes on, nothing
+    /// if `quiet`.
+    pub(crate) fn taken_up(&self, run: &str, taken_up: &TakenUp, quiet: bool) {
+        let TakenUp { finished, sessions, seconds, dropped_bytes } = *taken_up;
+        if dropped_bytes > 0 {
+            self.say(&format!(
+                "notice: the last line of the journal in {run} was torn; its {dropped_bytes} bytes \
+                 are dropped, and what they held is computed again"
+            ));
+        }
+        if sessions > 0 && !quiet {
+            let units = self.units;
+            self.say(&format!("{run} goes on: {finished} {units} were done in {}.", time(seconds)));
+        }
+    }
+
+    /// Tells whether the journal in `run` can be written, while `work`, such as "the search", goes
+    /// on.
+    pub(crate) fn saving(&self, run: &str, saving: &Saving<'_>, work: &str) {
+        match saving {
+            Saving::Failed(error) => self.say(&format!(
+                "warning: the journal in {run} CANNOT BE WRITTEN: {error}; {work} goes on and \
+                 writing is tried again"
+            )),
+            Saving::Recovered => {
+                self.say(&format!("The journal in {run} can be written again; nothing is missing."))
+            }
         }
     }
 

@@ -5,7 +5,6 @@ use std::sync::atomic::{AtomicBool, Ordering};
 use driver::overnight::Finds;
 use driver::run::{Finished, Saving, TakenUp, Tally, Watcher};
 use driver::search::StartResult;
-use report::text::overnight::time;
 
 use super::request::{Request, Told};
 use crate::run_progress::RunTeller;
@@ -41,21 +40,7 @@ impl<'a> NightWatch<'a> {
 
 impl Watcher<StartResult> for NightWatch<'_> {
     fn taken_up(&mut self, taken_up: &TakenUp) {
-        let TakenUp { finished, sessions, seconds, dropped_bytes } = *taken_up;
-        if dropped_bytes > 0 {
-            self.teller.say(&format!(
-                "notice: the last line of the journal in {} was torn; its {dropped_bytes} bytes are \
-                 dropped, and what they held is computed again",
-                self.run
-            ));
-        }
-        if sessions > 0 && !self.quiet {
-            self.teller.say(&format!(
-                "{} goes on: {finished} starts were done in {}.",
-                self.run,
-                time(seconds)
-            ));
-        }
+        self.teller.taken_up(&self.run, taken_up, self.quiet);
     }
 
     fn found(&mut self, finished: Finished<StartResult>) {
@@ -70,17 +55,7 @@ impl Watcher<StartResult> for NightWatch<'_> {
     }
 
     fn saving(&mut self, saving: Saving<'_>) {
-        match saving {
-            Saving::Failed(error) => self.teller.say(&format!(
-                "warning: the journal in {} CANNOT BE WRITTEN: {error}; the search goes on and \
-                 writing is tried again",
-                self.run
-            )),
-            Saving::Recovered => self.teller.say(&format!(
-                "The journal in {} can be written again; nothing is missing.",
-                self.run
-            )),
-        }
+        self.teller.saving(&self.run, &saving, "the search");
     }
 
     fn interrupted(&self) -> bool {

@@ -6,7 +6,6 @@ use std::sync::atomic::{AtomicBool, Ordering};
 
 use driver::run::{Finished, Saving, TakenUp, Tally, Watcher};
 use driver::sweep::{PointResult, Sweep};
-use report::text::overnight::time;
 
 use super::request::{Request, Told};
 use crate::run_progress::RunTeller;
@@ -49,21 +48,7 @@ impl<'a> SweepWatch<'a> {
 
 impl Watcher<PointResult> for SweepWatch<'_> {
     fn taken_up(&mut self, taken_up: &TakenUp) {
-        let TakenUp { finished, sessions, seconds, dropped_bytes } = *taken_up;
-        if dropped_bytes > 0 {
-            self.teller.say(&format!(
-                "notice: the last line of the journal in {} was torn; its {dropped_bytes} bytes are \
-                 dropped, and what they held is computed again",
-                self.run
-            ));
-        }
-        if sessions > 0 && !self.quiet {
-            self.teller.say(&format!(
-                "{} goes on: {finished} points were done in {}.",
-                self.run,
-                time(seconds)
-            ));
-        }
+        self.teller.taken_up(&self.run, taken_up, self.quiet);
     }
 
     fn found(&mut self, finished: Finished<PointResult>) {
@@ -79,17 +64,7 @@ impl Watcher<PointResult> for SweepWatch<'_> {
     }
 
     fn saving(&mut self, saving: Saving<'_>) {
-        match saving {
-            Saving::Failed(error) => self.teller.say(&format!(
-                "warning: the journal in {} CANNOT BE WRITTEN: {error}; the sweep goes on and \
-                 writing is tried again",
-                self.run
-            )),
-            Saving::Recovered => self.teller.say(&format!(
-                "The journal in {} can be written again; nothing is missing.",
-                self.run
-            )),
-        }
+        self.teller.saving(&self.run, &saving, "the sweep");
     }
 
     fn interrupted(&self) -> bool {
