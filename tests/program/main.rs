@@ -14,6 +14,7 @@ mod program;
 mod quantities;
 mod readme;
 mod retune;
+mod shop;
 mod signals;
 mod start;
 mod streams;

@@ -51,8 +51,8 @@ pub(crate) fn reached(file: &DesignFile, assessment: &Assessment) -> String {
     table.text()
 }
 
-/// The goals about the real beam in every state that has any; empty if none has.
-pub(crate) fn of_the_beam(file: &DesignFile, assessment: &Assessment) -> String {
+/// The goals about the real beam in every state that has any; nothing if none has.
+pub(crate) fn of_the_beam(file: &DesignFile, assessment: &Assessment) -> Option<Table> {
     let goals = || file.wishes.states.iter();
     let divergence = goals().any(|goals| goals.divergence_mrad.is_some());
     let range = goals().any(|goals| goals.diameter_at_range_mm.is_some());
@@ -72,7 +72,7 @@ pub(crate) fn of_the_beam(file: &DesignFile, assessment: &Assessment) -> String 
         heads.extend([(Column::Right, "focus \nat m "), (Column::Right, "goal")]);
     }
     if heads.len() == 1 {
-        return String::new();
+        return None;
     }
     let mut table = Table::new(heads);
     for (goals, state) in file.wishes.states.iter().zip(&assessment.states) {
@@ -94,7 +94,7 @@ pub(crate) fn of_the_beam(file: &DesignFile, assessment: &Assessment) -> String 
         }
         table.row(row);
     }
-    table.text()
+    Some(table)
 }
 
 /// A value wanted and how far off it may be.
