@@ -1,5 +1,6 @@
 //! The program run as a user runs it.
 
+mod alone;
 mod assess;
 mod cam;
 mod designs;
@@ -13,6 +14,7 @@ mod page;
 mod program;
 mod readme;
 mod retune;
+mod shipped;
 mod signals;
 mod start;
 mod streams;
