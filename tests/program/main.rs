@@ -12,6 +12,7 @@ mod mistakes;
 mod optimise;
 mod page;
 mod program;
+mod quantities;
 mod readme;
 mod retune;
 mod shipped;
