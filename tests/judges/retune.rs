@@ -86,7 +86,14 @@ pub fn judge(bytes: &[u8]) -> Result<bool, String> {
             };
             match replacements(&changed.file, &made, glass, 2, &settings) {
                 Ok(found) => {
-                    finite("the replacements", &found)?;
+                    for other in &found {
+                        let [a, b, c] = [
+                            other.merit_nothing_moved,
+                            other.merit_spacings,
+                            other.merit_unmade,
+                        ];
+                        finite("a replacement", &(a, b, c, &other.file.design))?;
+                    }
                     printed("them", &text::retune_lists::replacements(glass, &found))?;
                     Ok(true)
                 }
@@ -95,7 +102,11 @@ pub fn judge(bytes: &[u8]) -> Result<bool, String> {
         }
         (None, None) => match retune(&file, &changes, &asked.made, &settings, &mut Unwatched) {
             Ok(retuning) => {
-                finite("the retuning", &retuning)?;
+                // Of the file's own wishes, those without an end are infinite.
+                for stage in &retuning.stages {
+                    finite("a stage", &(&stage.file.design, &stage.assessment, &stage.solver))?;
+                }
+                finite("the blame", &(&retuning.blame, &retuning.taken_up))?;
                 printed("the retuning", &text::retune::retuning(&file, &retuning))?;
                 Ok(true)
             }
@@ -144,7 +155,7 @@ fn tools(
     changed.free.truncate(2);
     match move_to_tools(&changed, &tools, settings) {
         Ok(done) => {
-            finite("the tools", &done)?;
+            finite("the tools", &(&done.moves, done.merit_before, &done.file.design))?;
             printed("the tools", &text::retune_lists::tool_radii(&done))?;
             Ok(true)
         }

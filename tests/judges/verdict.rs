@@ -18,8 +18,9 @@ pub fn refusal(complaints: &Complaints) -> Result<(), String> {
     for problem in problems {
         // What is wrong with the whole of a file has no place of its own.
         let placed = problem["line"].is_u64() && problem["column"].is_u64()
-            || problem["found"] == "the text is in UTF-16"
-            || problem["found"] == "the file is empty";
+            || ["the text is in UTF-16", "the text is in UTF-32", "the file is empty"]
+                .iter()
+                .any(|whole| problem["found"] == *whole);
         holds(placed, || format!("no place: {problem}"))?;
     }
     complaint(complaints)

@@ -43,7 +43,8 @@ pub fn mutated(bytes: &mut [u8], size: usize, most: usize, seed: u32) -> usize {
 
 /// A number of 64 bits from one of 32 (the finaliser of splitmix64).
 fn mixed(seed: u32, shift: u32) -> u64 {
-    let mut x = u64::from(seed).wrapping_add(0x9E37_79B9_7F4A_7C15_u64.wrapping_mul(u64::from(shift) + 1));
+    let mut x =
+        u64::from(seed).wrapping_add(0x9E37_79B9_7F4A_7C15_u64.wrapping_mul(u64::from(shift) + 1));
     x = (x ^ (x >> 30)).wrapping_mul(0xBF58_476D_1CE4_E5B9);
     x = (x ^ (x >> 27)).wrapping_mul(0x94D0_49BB_1331_11EB);
     x ^ (x >> 31)
