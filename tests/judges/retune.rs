@@ -87,11 +87,8 @@ pub fn judge(bytes: &[u8]) -> Result<bool, String> {
             match replacements(&changed.file, &made, glass, 2, &settings) {
                 Ok(found) => {
                     for other in &found {
-                        let [a, b, c] = [
-                            other.merit_nothing_moved,
-                            other.merit_spacings,
-                            other.merit_unmade,
-                        ];
+                        let [a, b, c] =
+                            [other.merit_nothing_moved, other.merit_spacings, other.merit_unmade];
                         finite("a replacement", &(a, b, c, &other.file.design))?;
                     }
                     printed("them", &text::retune_lists::replacements(glass, &found))?;
