@@ -1,5 +1,6 @@
 //! The program run as a user runs it.
 
+mod alone;
 mod assess;
 mod cam;
 mod designs;
@@ -15,6 +16,7 @@ mod quantities;
 mod readme;
 mod retune;
 mod shop;
+mod shipped;
 mod signals;
 mod start;
 mod streams;

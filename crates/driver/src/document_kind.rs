@@ -66,3 +66,20 @@ pub(crate) fn part<T: JsonSchema>() -> Schema {
         SchemaSettings::draft2020_12().with(|settings| settings.inline_subschemas = true);
     settings.into_generator().into_root_schema_for::<T>()
 }
+
+#[cfg(test)]
+mod tests {
+    use surface_model::document::unchecked_keywords;
+
+    /// A schema may say more than the check understands; then the check would be laxer than it.
+    #[test]
+    fn nothing_that_the_schemas_say_is_passed_over() {
+        for schema in [
+            crate::design_file::design_schema(),
+            crate::brief::brief_schema(),
+            crate::sweep::plan_schema(),
+        ] {
+            assert_eq!(unchecked_keywords(&schema), []);
+        }
+    }
+}

@@ -62,25 +62,46 @@ impl Lattice {
     }
 }
 
-impl Neighbours {
-    /// For points without an order, numbered as drawn: the two nearest among those with numbers
-    /// below the last power of two, of which there are at least half as many.
-    pub(super) fn of_cloud(points: &[Vec<f64>]) -> Vec<Self> {
-        let of = |number: usize| {
-            let Some(below) = number.checked_ilog2().map(|bits| 1_usize << bits) else {
-                return Self::default();
-            };
-            let distance = |other: &usize| -> f64 {
-                let pairs = points[*other].iter().zip(&points[number]);
-                pairs.map(|(a, b)| (a - b) * (a - b)).sum()
-            };
-            let mut others: Vec<usize> = (0..below.min(number)).collect();
-            others.sort_by(|a, b| distance(a).total_cmp(&distance(b)));
-            others.truncate(2);
-            Self(others)
-        };
-        (0..points.len()).map(of).collect()
+/// Which points a point may start from.
+#[derive(Debug, Clone)]
+pub(super) enum Neighbourhood {
+    /// In a grid, worked out beforehand.
+    Grid(Vec<Neighbours>),
+    /// Among points without an order, numbered as drawn: looked for when they are wanted, for to
+    /// look for those of all takes time in proportion to the square of their number.
+    Cloud(Vec<Vec<f64>>),
+}
+
+impl Neighbourhood {
+    /// The numbers of the points that a point may start from, all smaller than its own.
+    pub(super) fn of(&self, number: usize) -> Vec<usize> {
+        match self {
+            Self::Grid(neighbours) => neighbours[number].0.clone(),
+            Self::Cloud(points) => nearest_two(points, number),
+        }
     }
+}
+
+/// The two points nearest to one, nearest first, among those with numbers below the last power of
+/// two, of which there are at least half as many; of equals the first.
+fn nearest_two(points: &[Vec<f64>], number: usize) -> Vec<usize> {
+    let Some(below) = number.checked_ilog2().map(|bits| (1_usize << bits).min(number)) else {
+        return Vec::new();
+    };
+    let distance = |other: usize| -> f64 {
+        let pairs = points[other].iter().zip(&points[number]);
+        pairs.map(|(a, b)| (a - b) * (a - b)).sum()
+    };
+    let mut nearest: Vec<(f64, usize)> = Vec::with_capacity(3);
+    for other in 0..below {
+        let apart = distance(other);
+        let place = nearest.partition_point(|(nearer, _)| *nearer <= apart);
+        if place < 2 {
+            nearest.insert(place, (apart, other));
+            nearest.truncate(2);
+        }
+    }
+    nearest.into_iter().map(|(_, other)| other).collect()
 }
 
 /// Zero bits behind the last one bit.
@@ -144,12 +165,12 @@ mod tests {
 
     #[test]
     fn a_cloud_grows_by_doubling() {
-        let points: Vec<Vec<f64>> = (0..9).map(|i| vec![f64::from(i * 7 % 9) / 9.0]).collect();
-        let neighbours = Neighbours::of_cloud(&points);
-        assert!(neighbours[0].0.is_empty());
-        for (number, near) in neighbours.iter().enumerate().skip(1) {
-            assert!(near.0.iter().all(|&other| other < number && 2 * other < 2 * number));
-        }
-        assert_eq!(neighbours[1].0, [0]);
+        let points: Vec<Vec<f64>> = (0..9).map(|i| vec![f64::from(i * 7 % 9)]).collect();
+        let cloud = Neighbourhood::Cloud(points.clone());
+        let near: Vec<Vec<usize>> = (0..points.len()).map(|number| cloud.of(number)).collect();
+        // They stand at 0 7 5 3 1 8 6 4 2; each looks below its last power of two.
+        let expected: [&[usize]; 9] =
+            [&[], &[0], &[1, 0], &[0, 1], &[0, 3], &[1, 2], &[1, 2], &[2, 3], &[3, 4]];
+        assert_eq!(near, expected);
     }
 }

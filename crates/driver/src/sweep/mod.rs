@@ -108,7 +108,7 @@ impl Sweep {
             return Ok(Arc::clone(point));
         }
         let mut best: Option<(u64, Arc<PointResult>)> = None;
-        for &near in &self.plan.neighbours[number].0 {
+        for near in self.plan.neighbours.of(number) {
             let point = self.point(near, interrupt)?;
             let merit = |point: &PointResult| point.reached.as_ref().map(|reached| reached.merit);
             let better = merit(&point).is_some_and(|merit_here| {

@@ -8,7 +8,7 @@ use super::document::{
     AxisDocument, PlanDocument, RangeDocument, SampleDocument, SampleKind, ScaleDocument,
     plan_schema,
 };
-use super::lattice::{Lattice, Neighbours};
+use super::lattice::{Lattice, Neighbourhood};
 use super::results::Quantity;
 use crate::change::{Change, apply};
 use crate::design_file::DesignFile;
@@ -17,6 +17,9 @@ use crate::sampling::{LatinHypercube, Sobol};
 
 /// Most points of a sweep.
 pub const MOST_POINTS: usize = 100_000;
+
+/// Most values of all axes in all points: some hundred megabytes.
+const MOST_VALUES: usize = 1_000_000;
 
 /// Most starts of a point.
 const MOST_STARTS: u32 = 1000;
@@ -102,41 +105,52 @@ impl PlanFile {
         &self,
         axes: &[Axis],
         seed: u64,
-    ) -> Result<(Vec<Vec<Value>>, Vec<Neighbours>), Complaints> {
+    ) -> Result<(Vec<Vec<Value>>, Neighbourhood), Complaints> {
         match self.written.sample {
             None => {
-                let counts: Vec<usize> = axes.iter().map(|axis| axis.values.len()).collect();
+                let counts: Vec<usize> = axes.iter().map(Axis::count).collect();
                 let total =
                     counts.iter().try_fold(1_usize, |total, &count| total.checked_mul(count));
-                self.admit(total, Address::root().key("axes"))?;
+                self.admit(total, axes.len(), Address::root().key("axes"))?;
                 let lattice = Lattice::new(&counts);
                 let value = |index: &Vec<usize>| {
-                    index.iter().zip(axes).map(|(&i, axis)| axis.values[i].clone()).collect()
+                    index.iter().zip(axes).map(|(&i, axis)| axis.value(i)).collect()
                 };
-                Ok((lattice.points().iter().map(value).collect(), lattice.neighbours()))
+                let neighbours = Neighbourhood::Grid(lattice.neighbours());
+                Ok((lattice.points().iter().map(value).collect(), neighbours))
             }
             Some(sample) => {
                 let at = Address::root().key("sample");
-                self.admit(Some(sample.points as usize), at.clone().key("points"))?;
+                let points = Some(sample.points as usize);
+                self.admit(points, axes.len(), at.clone().key("points"))?;
                 let cube = drawn(sample, axes.len(), seed)
                     .map_err(|error| self.document.refuse([complaint(at, error.0, error.1)]))?;
                 let value = |point: &Vec<f64>| {
-                    point.iter().zip(axes).map(|(&t, axis)| Value::from(axis.at_share(t))).collect()
+                    point.iter().zip(axes).map(|(&t, axis)| axis.at_share(t)).collect()
                 };
-                Ok((cube.iter().map(value).collect(), Neighbours::of_cloud(&cube)))
+                Ok((cube.iter().map(value).collect(), Neighbourhood::Cloud(cube)))
             }
         }
     }
 
-    fn admit(&self, points: Option<usize>, at: Address) -> Result<(), Complaints> {
-        if points.is_some_and(|points| (1..=MOST_POINTS).contains(&points)) {
+    fn admit(&self, points: Option<usize>, axes: usize, at: Address) -> Result<(), Complaints> {
+        let Some(count) = points.filter(|points| (1..=MOST_POINTS).contains(points)) else {
+            let found = points.map_or_else(
+                || "more points than can be counted".to_owned(),
+                |points| format!("{points} points"),
+            );
+            return Err(self.document.refuse([complaint(
+                at,
+                found,
+                format!("1 to {MOST_POINTS}"),
+            )]));
+        };
+        if count.checked_mul(axes).is_some_and(|values| values <= MOST_VALUES) {
             return Ok(());
         }
-        let found = points.map_or_else(
-            || "more points than can be counted".to_owned(),
-            |points| format!("{points} points"),
-        );
-        Err(self.document.refuse([complaint(at, found, format!("1 to {MOST_POINTS}"))]))
+        let found = format!("{count} points of {axes} axes each");
+        let expected = format!("fewer of either: {MOST_VALUES} values in all at most");
+        Err(self.document.refuse([complaint(at, found, expected)]))
     }
 }
 
@@ -168,7 +182,7 @@ pub struct Plan {
     pub axes: Vec<Address>,
     /// The values of every point by its number, one an axis.
     pub points: Vec<Vec<Value>>,
-    pub(super) neighbours: Vec<Neighbours>,
+    pub(super) neighbours: Neighbourhood,
     pub(super) starts: u32,
     pub(super) seed: u64,
     /// Two results to weigh against each other.
@@ -178,15 +192,37 @@ pub struct Plan {
 /// One axis, read.
 struct Axis {
     at: Address,
-    /// Its values; none where points are drawn.
-    values: Vec<Value>,
-    range: Option<RangeDocument>,
+    values: AxisValues,
+}
+
+enum AxisValues {
+    Listed(Vec<Value>),
+    /// A range in so many steps; in none where points are drawn.
+    Range(RangeDocument, usize),
 }
 
 impl Axis {
+    fn count(&self) -> usize {
+        match &self.values {
+            AxisValues::Listed(values) => values.len(),
+            AxisValues::Range(_, steps) => *steps,
+        }
+    }
+
+    /// One of its values.
+    fn value(&self, i: usize) -> Value {
+        match &self.values {
+            AxisValues::Listed(values) => values[i].clone(),
+            AxisValues::Range(_, steps) => self.at_share(i as f64 / ((*steps).max(2) - 1) as f64),
+        }
+    }
+
     /// The number at a share (0 to 1) of the range.
-    fn at_share(&self, share: f64) -> f64 {
-        self.range.map_or(f64::NAN, |range| between(&range, share))
+    fn at_share(&self, share: f64) -> Value {
+        match &self.values {
+            AxisValues::Listed(values) => values.first().cloned().unwrap_or_default(),
+            AxisValues::Range(range, _) => between(range, share).into(),
+        }
     }
 }
 
@@ -233,16 +269,16 @@ fn axis(
     let refuse = |key: &str, found: &str, expected: &str| {
         Err(complaint(here.clone().key(key), found.to_owned(), expected.to_owned()))
     };
-    let (values, range) = match (&axis.values, &axis.range) {
+    let values = match (&axis.values, &axis.range) {
         (Some(_), _) if drawn => {
             return refuse("values", "points are drawn from ranges, not from values", "a range");
         }
-        (Some(values), None) => (values.clone(), None),
-        (None, Some(range)) => (steps(here, range, drawn)?, Some(*range)),
+        (Some(values), None) => AxisValues::Listed(values.clone()),
+        (None, Some(range)) => AxisValues::Range(*range, steps(here, range, drawn)?),
         (Some(_), Some(_)) => return refuse("range", "the axis has values too", "one of the two"),
         (None, None) => return refuse("at", "the axis has no values", "\"values\" or \"range\""),
     };
-    let axis = Axis { at, values, range };
+    let axis = Axis { at, values };
     if axis.at.resolve(file).is_err() {
         try_key(&axis, here, design)?;
     }
@@ -251,7 +287,7 @@ fn axis(
 
 /// A key that the design lacks is tried once: whether the format knows it shows then.
 fn try_key(axis: &Axis, here: &Address, design: &DesignFile) -> Result<(), Complaint> {
-    let value = axis.values.first().cloned().unwrap_or_else(|| Value::from(axis.at_share(0.0)));
+    let value = axis.at_share(0.0);
     let source = Source { label: axis.at.to_string(), position: None };
     let Err(complaints) = apply(design, &[Change::new(axis.at.clone(), value, source)]) else {
         return Ok(());
@@ -266,8 +302,8 @@ fn try_key(axis: &Axis, here: &Address, design: &DesignFile) -> Result<(), Compl
     }
 }
 
-/// The numbers of a range; none where points are drawn.
-fn steps(here: &Address, range: &RangeDocument, drawn: bool) -> Result<Vec<Value>, Complaint> {
+/// In how many steps a range is gone through; in none where points are drawn.
+fn steps(here: &Address, range: &RangeDocument, drawn: bool) -> Result<usize, Complaint> {
     let at = here.clone().key("range");
     let refuse = |key: &str, found: String, expected: &str| {
         Err(complaint(at.clone().key(key), found, expected.to_owned()))
@@ -276,19 +312,25 @@ fn steps(here: &Address, range: &RangeDocument, drawn: bool) -> Result<Vec<Value
     if !(from.is_finite() && to.is_finite()) {
         return refuse("from", "the range has no ends".to_owned(), "two numbers");
     }
-    if scale == Some(ScaleDocument::Logarithmic) && from * to <= 0.0 {
-        let found = format!("equal ratios do not lead from {from} to {to}");
-        return refuse("scale", found, "two ends of the same sign, neither of them 0");
+    if scale == Some(ScaleDocument::Logarithmic) {
+        if from == 0.0 || to == 0.0 || from.signum() != to.signum() {
+            let found = format!("equal ratios do not lead from {from} to {to}");
+            return refuse("scale", found, "two ends of the same sign, neither of them 0");
+        }
+        if !(to / from).is_normal() {
+            let found = format!("the ratio of {from} and {to} is out of the range of numbers");
+            return refuse("from", found, "two ends nearer to each other");
+        }
+    } else if !(to - from).is_finite() {
+        let found = format!("from {from} to {to} is out of the range of numbers");
+        return refuse("from", found, "two ends nearer to each other");
     }
     match steps {
-        None if drawn => Ok(Vec::new()),
+        None if drawn => Ok(0),
         Some(steps) if drawn => {
             refuse("steps", format!("{steps} steps, but points are drawn"), "no steps")
         }
-        Some(steps) if (1..=MOST_POINTS).contains(&(steps as usize)) => {
-            let last = f64::from(steps.max(2) - 1);
-            Ok((0..steps).map(|i| Value::from(between(range, f64::from(i) / last))).collect())
-        }
+        Some(steps) if (1..=MOST_POINTS).contains(&(steps as usize)) => Ok(steps as usize),
         Some(steps) => refuse("steps", format!("{steps} steps"), "1 to 100000"),
         None => refuse(
             "from",

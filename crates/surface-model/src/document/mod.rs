@@ -53,7 +53,7 @@ use serde::de::DeserializeOwned;
 use serde_json::Value;
 
 pub use address::{Address, AddressSyntaxError};
-pub use complaint::{Complain, Complaint, Complaints, MOST_COMPLAINTS, Place, Source};
+pub use complaint::{Complain, Complaint, Complaints, Place, Source};
 pub use layout::layout;
 pub use parse::ParseError;
 pub use resolve::{AddressError, Present};

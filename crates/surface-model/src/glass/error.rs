@@ -3,6 +3,7 @@
 use thiserror::Error;
 
 use super::range::WavelengthRange;
+use crate::document::quoted;
 
 /// Anything that can be wrong with a glass.
 #[derive(Clone, Debug, PartialEq, Error)]
@@ -99,7 +100,7 @@ impl GlassError {
 #[non_exhaustive]
 pub enum LookupError {
     /// Nothing has this name.
-    #[error("there is no glass named \"{name}\"")]
+    #[error("there is no glass named {}", quoted(name))]
     Unknown {
         /// What was asked for.
         name: String,
@@ -123,7 +124,7 @@ pub enum LookupError {
         choices: Vec<String>,
     },
     /// The design file defines this glass, but its definition has a fault of its own.
-    #[error("the glass \"{name}\" is defined with a fault")]
+    #[error("the glass {} is defined with a fault", quoted(name))]
     Faulty {
         /// The glass in question.
         name: String,
@@ -182,7 +183,7 @@ pub enum DefinitionError {
         name: String,
     },
     /// Two definitions have one name.
-    #[error("the glass \"{name}\" is defined more than once")]
+    #[error("the glass {} is defined more than once", quoted(name))]
     Repeated {
         /// The name.
         name: String,
@@ -354,7 +355,7 @@ impl DefinitionError {
 #[non_exhaustive]
 pub enum SearchError {
     /// Compares something that cannot be compared.
-    #[error("\"{found}\" in \"{word}\" cannot be compared; nd and vd can")]
+    #[error("{} in {} cannot be compared; nd and vd can", quoted(found), quoted(word))]
     Quantity {
         /// The whole word.
         word: String,
@@ -362,7 +363,7 @@ pub enum SearchError {
         found: String,
     },
     /// Compares with something that is no number.
-    #[error("\"{found}\" in \"{word}\" is not a number")]
+    #[error("{} in {} is not a number", quoted(found), quoted(word))]
     Number {
         /// The whole word.
         word: String,
