@@ -15,6 +15,7 @@ mod quantities;
 mod readme;
 mod retune;
 mod signals;
+mod slips;
 mod start;
 mod streams;
 mod sweep;
