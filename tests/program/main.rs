@@ -18,6 +18,7 @@ mod retune;
 mod shop;
 mod shipped;
 mod signals;
+mod slips;
 mod start;
 mod streams;
 mod sweep;

@@ -108,7 +108,7 @@ pub(crate) fn run(arguments: ReportArguments, console: &Console) -> Result<ExitS
     let destination = match output {
         None => Destination::Nowhere,
         Some(path) if path.as_os_str() == STANDARD_STREAM => Destination::StandardOutput,
-        Some(path) => Destination::File(OutputFile::checked(path, force)?),
+        Some(path) => Destination::File(OutputFile::page(path, force)?),
     };
     if sheets.is_some() && designs.len() > 1 {
         return Err(Failure::Argument {

@@ -120,16 +120,27 @@ impl<'a> Account<'a> {
             evaluations: self.evaluations(),
             solving: Duration::try_from_secs_f64(self.seconds()).unwrap_or_default(),
             warnings: self.warnings(),
+            notes: self.notes(),
         });
         if saved { format!("{told}\n{}", destination.told("design")) } else { told }
     }
 
+    /// The variables that ended on a bound.
+    fn on_bounds(&self) -> Option<String> {
+        let last = self.stages.last()?;
+        text::bounds::ended_on_bounds(&last.on_bounds, last.variables)
+    }
+
+    /// A bound is no reason to worry where everything is met.
+    fn notes(&self) -> Vec<String> {
+        let told = self.on_bounds().filter(|_| self.end().meets);
+        let told = told.map(|told| format!("{told}: a wider limit or range may do still better"));
+        told.into_iter().collect()
+    }
+
     fn warnings(&self) -> Vec<String> {
         let mut warnings = Vec::new();
-        let last = self.stages.last();
-        if let Some(told) =
-            last.and_then(|stage| text::bounds::ended_on_bounds(&stage.on_bounds, stage.variables))
-        {
+        if let Some(told) = self.on_bounds().filter(|_| !self.end().meets) {
             warnings.push(format!(
                 "{told}: widen the limits or ranges that hold them, if the design can bear it, and \
                  optimise again"
