@@ -101,6 +101,7 @@ impl Look<'_> {
         found.extend(self.limits());
         found.extend(self.goals());
         found.extend(self.steep());
+        found.extend(self.steeper_than_the_limit());
         found.extend(self.reversals());
         found
     }
@@ -293,6 +294,22 @@ impl Look<'_> {
         found
     }
 
+    /// Slopes beyond the limit of the design file.
+    fn steeper_than_the_limit(&self) -> Vec<Finding> {
+        let kind = LimitKind::SlopeMmPerRatio;
+        let Some(range) = self.wishes.limits.range(kind) else { return Vec::new() };
+        let mut found = Vec::new();
+        for (g, group) in self.groups.iter().enumerate().filter(|(_, g)| g.part != Part::Still) {
+            let bad = runs(self.points, |k| {
+                let slope = self.points[k].groups[g].slope_mm_per_ratio.abs();
+                Some((slope - range.max - kind.tolerance(), slope))
+            });
+            let wanted = format!("at most {}", range.max);
+            found.extend(bad.iter().map(|run| crossing(kind, &group.name, run, &wanted)));
+        }
+        found
+    }
+
     fn reversals(&self) -> Vec<Finding> {
         let mut found = Vec::new();
         for (g, group) in self.groups.iter().enumerate() {
@@ -308,13 +325,18 @@ impl Look<'_> {
                 }
                 let share = before / (before - behind);
                 let at = pair[0].ratio + share * (pair[1].ratio - pair[0].ratio);
+                let must_not = self.wishes.limits.is_monotonic(self.design, g);
                 found.push(Finding {
                     kind: FindingKind::Reversal,
-                    wrong: false,
+                    wrong: must_not,
                     ratios: [at, at],
                     what: group.name.clone(),
                     worst: None,
-                    told: format!("{} turns back at {at:.4}x", group.name),
+                    told: format!(
+                        "{} turns back at {at:.4}x{}",
+                        group.name,
+                        if must_not { ", which the limit monotonic does not allow" } else { "" }
+                    ),
                 });
             }
         }
@@ -349,7 +371,11 @@ fn limit_finding(limit: &LimitAssessment, place: &str, run: &Run) -> Finding {
         (_, Some(max)) => format!("at most {max}"),
         (min, None) => format!("at least {}", min.unwrap_or(0.0)),
     };
-    let word = limit.limit.word();
+    crossing(limit.limit, place, run, &wanted)
+}
+
+fn crossing(kind: LimitKind, place: &str, run: &Run, wanted: &str) -> Finding {
+    let word = kind.word();
     Finding {
         kind: FindingKind::Limit,
         wrong: true,

@@ -1,13 +1,12 @@
 //! What is told of each point of a curve, and of each group over all of it.
 
 use merit_function::assessment::Assessment;
+use merit_function::movement::{Point, Slide};
 use surface_model::design::{Design, Group};
 
 use super::document::{CurvePoint, GroupAtRatio, GroupWay, Part};
 use super::exit::Exit;
-use super::follow::Point;
 use super::settings::CamSettings;
-use super::slide::Slide;
 use super::stations::Station;
 
 /// Puts together what is told of each point.

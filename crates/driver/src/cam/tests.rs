@@ -9,6 +9,8 @@
 use serde_json::{Value, json};
 use surface_model::document::Document;
 
+use merit_function::movement::Gauge;
+
 use super::*;
 use crate::design_file::DesignFile;
 

@@ -45,20 +45,20 @@ const RAYS: usize = 16;
 
 /// Ratio and collimation of a train, with their derivatives by its spacings.
 #[derive(Debug, Clone, PartialEq)]
-pub(super) struct Held {
+pub struct Held {
     /// Paraxial ratio.
-    pub(super) ratio: f64,
+    pub ratio: f64,
     /// Its derivative by every spacing, 1/mm.
-    pub(super) ratio_by_spacing: Vec<f64>,
+    pub ratio_by_spacing: Vec<f64>,
     /// Collimation, rad.
-    pub(super) collimation_rad: f64,
+    pub collimation_rad: f64,
     /// Its derivative by every spacing, rad/mm.
-    pub(super) collimation_by_spacing: Vec<f64>,
+    pub collimation_by_spacing: Vec<f64>,
 }
 
 /// Why ratio and collimation cannot be told.
 #[derive(Debug, Clone, Copy, PartialEq, thiserror::Error)]
-pub(super) enum HeldFault {
+pub enum HeldFault {
     /// A ray does not get through.
     #[error("{0}")]
     Ray(RayFault),
@@ -74,7 +74,8 @@ impl From<ParaxialError> for HeldFault {
 }
 
 /// Measures ratio and collimation of one design at one wavelength, at any spacings.
-pub(super) struct Gauge {
+#[derive(Debug)]
+pub struct Gauge {
     train: Train,
     /// Place in the train of the gap behind each group but the last.
     gaps: Vec<usize>,
@@ -91,11 +92,7 @@ pub(super) struct Gauge {
 impl Gauge {
     /// # Errors
     /// A glass is not known at the wavelength.
-    pub(super) fn new(
-        design: &Design,
-        state: &ZoomState,
-        wavelength_nm: f64,
-    ) -> Result<Self, GlassError> {
+    pub fn new(design: &Design, state: &ZoomState, wavelength_nm: f64) -> Result<Self, GlassError> {
         let train = design.train(state, wavelength_nm)?;
         let sequence = design.sequence();
         let spacings = 0..state.spacings_mm.len();
@@ -111,48 +108,47 @@ impl Gauge {
 
     /// From now on a focus is wanted, at one over this distance behind the last vertex, 1/mm; zero
     /// is collimation again.
-    pub(super) fn want_vergence(&mut self, per_mm: f64) {
+    pub fn want_vergence(&mut self, per_mm: f64) {
         self.vergence_per_mm = per_mm;
+    }
+
+    /// Takes the shapes of another train of the same design, and the gaps within its groups.
+    pub(crate) fn take_shape(&mut self, train: &Train) {
+        self.train.surfaces_mut().copy_from_slice(train.surfaces());
+        self.train.gaps_mut().copy_from_slice(train.gaps());
+    }
+
+    /// Fits collimation over the inner `fraction` (0 to 1) of the traced beam from now on.
+    pub(crate) fn set_aperture(&mut self, traced_to: f64, fraction: f64) {
+        self.sample = beam_sample(self.radius_mm, traced_to * fraction, RAYS);
+        self.counts = defocus_counts(&self.sample);
     }
 
     /// Ratio and collimation at these spacings, mm.
     ///
     /// # Errors
     /// A ray does not get through.
-    pub(super) fn measure(&mut self, spacings_mm: &[f64]) -> Result<Held, HeldFault> {
-        for (&gap, &spacing) in self.gaps.iter().zip(spacings_mm) {
-            self.train.gaps_mut()[gap] = spacing;
-        }
-        self.paraxial.trace(&self.train, 1.0, 0.0)?;
-        let ratio = self.paraxial.ratio().filter(|ratio| *ratio != 0.0);
-        let ratio = ratio.ok_or(HeldFault::Paraxial)?;
+    pub fn measure(&mut self, spacings_mm: &[f64]) -> Result<Held, HeldFault> {
+        let (ratio, row) = self.ratio(spacings_mm, Shapes::None)?;
         let quantities = Quantities::new(self.train.len(), Shapes::None);
-        let mut row = vec![0.0; quantities.count()];
-        let last = [(self.train.len() - 1, 1.0)];
-        let weights = ParaxialWeights { heights: &last, exit_slope: 0.0 };
-        self.paraxial.differentiate(&self.train, weights, quantities, &mut row)?;
         let ratio_by_spacing: Vec<f64> =
             self.gaps.iter().map(|&gap| row[quantities.gap(gap)]).collect();
-
-        let (paths, by_gap) =
-            if self.vergence_per_mm == 0.0 { self.paths()? } else { self.paths_to_the_focus()? };
-        let slope = 2.0 * self.radius_mm / ratio;
-        let sum = |values: &[f64]| {
-            slope * self.counts.iter().zip(values).map(|(count, path)| count * path).sum::<f64>()
+        let (paths, by_gap) = if self.vergence_per_mm == 0.0 {
+            self.paths_by_gap()?
+        } else {
+            self.paths_to_the_focus()?
         };
-        let collimation_rad = sum(&paths);
-        let by_gap = by_gap.iter().zip(&ratio_by_spacing);
-        let collimation_by_spacing =
-            by_gap.map(|(by, ratio_by)| sum(by) - collimation_rad * ratio_by / ratio).collect();
+        let collimation_rad = self.slope(ratio, paths.into_iter());
+        let by_gap = by_gap.into_iter().zip(&ratio_by_spacing).map(|(by, ratio_by)| {
+            self.slope(ratio, by.into_iter()) - collimation_rad * ratio_by / ratio
+        });
+        let collimation_by_spacing = by_gap.collect();
         Ok(Held { ratio, ratio_by_spacing, collimation_rad, collimation_by_spacing })
     }
 
     /// W of every ray, and per spacing its derivatives.
-    fn paths(&mut self) -> Result<(Vec<f64>, Vec<Vec<f64>>), HeldFault> {
-        let mut paths = vec![0.0; self.sample.heights_mm.len()];
-        self.bundle.load([&self.train], &self.sample.heights_mm);
-        self.bundle.trace_kept(&mut paths).map_err(|failed| HeldFault::Ray(failed.fault))?;
-        let quantities = self.bundle.differentiate(Shapes::None);
+    fn paths_by_gap(&mut self) -> Result<(Vec<f64>, Vec<Vec<f64>>), HeldFault> {
+        let (paths, quantities) = self.paths(Shapes::None)?;
         let by_gap = self
             .gaps
             .iter()
@@ -182,6 +178,57 @@ impl Gauge {
             }
         }
         Ok((paths, by_gap))
+    }
+
+    /// Derivatives of ratio and collimation by every quantity of the train at these spacings, mm,
+    /// for a collimated beam.
+    ///
+    /// # Errors
+    /// A ray does not get through.
+    pub(crate) fn gradients(
+        &mut self,
+        spacings_mm: &[f64],
+        shapes: Shapes,
+    ) -> Result<[Vec<f64>; 2], HeldFault> {
+        let (ratio, ratio_by) = self.ratio(spacings_mm, shapes)?;
+        let (paths, quantities) = self.paths(shapes)?;
+        let collimation_rad = self.slope(ratio, paths.iter().copied());
+        let by = |place: usize| {
+            self.slope(ratio, self.bundle.path_derivatives(0, place))
+                - collimation_rad * ratio_by[place] / ratio
+        };
+        let collimation_by = (0..quantities.count()).map(by).collect();
+        Ok([ratio_by, collimation_by])
+    }
+
+    /// Sets the spacings. The ratio, and its derivatives by every quantity.
+    fn ratio(&mut self, spacings_mm: &[f64], shapes: Shapes) -> Result<(f64, Vec<f64>), HeldFault> {
+        for (&gap, &spacing) in self.gaps.iter().zip(spacings_mm) {
+            self.train.gaps_mut()[gap] = spacing;
+        }
+        self.paraxial.trace(&self.train, 1.0, 0.0)?;
+        let ratio = self.paraxial.ratio().filter(|ratio| *ratio != 0.0);
+        let ratio = ratio.ok_or(HeldFault::Paraxial)?;
+        let quantities = Quantities::new(self.train.len(), shapes);
+        let mut row = vec![0.0; quantities.count()];
+        let last = [(self.train.len() - 1, 1.0)];
+        let weights = ParaxialWeights { heights: &last, exit_slope: 0.0 };
+        self.paraxial.differentiate(&self.train, weights, quantities, &mut row)?;
+        Ok((ratio, row))
+    }
+
+    /// Paths of the rays of the fit, which can then be differentiated by these quantities.
+    fn paths(&mut self, shapes: Shapes) -> Result<(Vec<f64>, Quantities), HeldFault> {
+        let mut paths = vec![0.0; self.sample.heights_mm.len()];
+        self.bundle.load([&self.train], &self.sample.heights_mm);
+        self.bundle.trace_kept(&mut paths).map_err(|failed| HeldFault::Ray(failed.fault))?;
+        Ok((paths, self.bundle.differentiate(shapes)))
+    }
+
+    /// The slope that these paths' best sphere gives the ray at the 1/e² radius, rad.
+    fn slope(&self, ratio: f64, paths: impl Iterator<Item = f64>) -> f64 {
+        let b: f64 = self.counts.iter().zip(paths).map(|(count, path)| count * path).sum();
+        2.0 * self.radius_mm / ratio * b
     }
 }
 
