@@ -10,4 +10,5 @@ mod mutants;
 mod once_broken;
 mod one_change;
 mod shipped;
+mod way;
 mod words;

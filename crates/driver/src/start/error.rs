@@ -20,6 +20,17 @@ pub enum StartError {
         /// Number of ratios.
         ratios: usize,
     },
+    /// Limits between the states where ratio and collimation leave a group free.
+    #[error(
+        "limits between the states are asked for, but of {groups} groups with {fixed} of them \
+         fixed more than two move"
+    )]
+    TooManyMovers {
+        /// Number of groups.
+        groups: usize,
+        /// How many are fixed.
+        fixed: usize,
+    },
     /// Cemented pairs are asked for of glasses that do not pair.
     #[error("cemented pairs are asked for, but no two allowed glasses differ enough in dispersion")]
     NoPair,
@@ -40,6 +51,11 @@ impl StartError {
                 "take a group out of \"housing\" \"fixed\", or ask for four groups".into()
             }
             Self::TooFewMovers { .. } => "take a group out of \"housing\" \"fixed\"".into(),
+            Self::TooManyMovers { .. } => {
+                "fix two of four groups, or take \"monotonic\", \"slope_mm_per_ratio\" and \
+                 \"between_states\" out of \"limits\""
+                    .into()
+            }
             Self::NoPair => {
                 "allow a second glass of another dispersion under \"glasses_allowed\"".into()
             }

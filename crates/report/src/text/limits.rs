@@ -85,8 +85,9 @@ fn value(limit: &LimitAssessment) -> String {
 
 pub(crate) fn place(file: &DesignFile, limit: &LimitAssessment) -> String {
     let at = limit.at.with_names(file.document().value());
-    match &limit.state {
-        Some(state) => format!("{at} in {state}"),
-        None => at.to_string(),
+    match (&limit.state, limit.at_ratio) {
+        (Some(state), _) => format!("{at} in {state}"),
+        (None, Some(ratio)) => format!("{at} at {}x", fixed(ratio, 2)),
+        (None, None) => at.to_string(),
     }
 }
