@@ -52,10 +52,12 @@ pub use document::{
 };
 pub use kind::{Grade, Kind, Spread};
 pub use monte_carlo::{
-    Distribution, MonteCarlo, QuantityDistribution, StateDistribution, Unwatched, Watcher,
+    Distribution, MissCount, MonteCarlo, QuantityDistribution, StateDistribution, Unwatched,
+    Watcher,
 };
 pub use requirement::{Quantity, Requirement};
 pub use sensitivity::{By, Sensitivity, StateSensitivity};
+pub use system::Miss;
 
 /// The most systems that are built: what is kept of each is a few hundred bytes a state.
 pub const MOST_SYSTEMS: u64 = 100_000;

@@ -41,7 +41,8 @@ pub fn paragraph(text: &str, width: usize, indent: &str) -> String {
         .subsequent_indent(indent)
         .break_words(false)
         .word_splitter(textwrap::WordSplitter::NoHyphenation);
-    textwrap::fill(text, options)
+    // A number stays with its per cent sign.
+    textwrap::fill(&text.replace(" %", "\u{a0}%"), options).replace('\u{a0}', " ")
 }
 
 /// Paragraphs, tables and sections with an empty line between them; empty ones are left out.
