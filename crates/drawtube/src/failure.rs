@@ -13,6 +13,7 @@ use driver::start::StartError;
 use driver::temperature::AtTemperatureError;
 use driver::tolerance::ToleranceError;
 use driver::write_whole::WriteError;
+use merit_function::movement::NoWay;
 use report::RowsError;
 use report::ray::RayError;
 use report::start::Impossible;
@@ -368,7 +369,7 @@ fn advice_on(error: &OptimiseError) -> Option<String> {
 fn advice_on_cam(error: &CamError) -> Option<String> {
     let advice = match error {
         CamError::NothingMoves => "take a group out of the housing's \"fixed\"",
-        CamError::OneRatio => "give at least two states with different ratios",
+        CamError::Way(NoWay::OneRatio) => "give at least two states with different ratios",
         CamError::State { .. } => "optimise the design first; assess tells how far off it is",
         CamError::Glass(error) => return error.advice(),
         _ => return None,
