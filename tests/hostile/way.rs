@@ -6,7 +6,7 @@ use driver::optimise::optimise;
 use driver::solve::{Settings, Unwatched};
 use serde_json::{Value, json};
 
-use super::shipped::{changed, read};
+use super::shipped::{changed, read, told};
 
 /// The river design with these limits beside its own, optimised.
 fn river(limits: &[(&str, Value)]) -> DesignFile {
@@ -28,6 +28,60 @@ fn curve(file: &DesignFile) -> MovementCurve {
 fn turning(curve: &MovementCurve) -> Vec<&str> {
     let turns = curve.findings.iter().filter(|finding| finding.kind == FindingKind::Reversal);
     turns.map(|finding| finding.what.as_str()).collect()
+}
+
+#[test]
+fn nonsense_is_told_at_its_place() {
+    let keep = || ("/limits/between_states", json!("keep"));
+    let lone = read(changed("river", &[])).unwrap().document().value()["states"][0].clone();
+    for (name, changes, place, words) in [
+        (
+            "river",
+            vec![("/limits/monotonic", json!(["/groups/exit"]))],
+            "/limits/monotonic/0",
+            "does not move",
+        ),
+        (
+            "river",
+            vec![("/limits/monotonic", json!(["/groups/none"]))],
+            "/limits/monotonic/0",
+            "is no group",
+        ),
+        (
+            "river",
+            vec![("/limits/monotonic", json!(["runner"]))],
+            "/limits/monotonic/0",
+            "does not begin with",
+        ),
+        (
+            "river",
+            vec![("/limits/slope_mm_per_ratio", json!({ "max": -1.0 }))],
+            "/limits/slope_mm_per_ratio",
+            "a limit is -1",
+        ),
+        (
+            "river",
+            vec![("/limits/between_states", json!("kept"))],
+            "/limits/between_states",
+            "keep",
+        ),
+        (
+            "river",
+            vec![("/states", json!([lone])), keep()],
+            "/limits/between_states",
+            "has only one",
+        ),
+        ("gorge", vec![keep()], "/limits/between_states", "wanted focused"),
+        (
+            "asphere",
+            vec![("/housing/fixed", json!([])), keep()],
+            "/limits/between_states",
+            "3 groups move",
+        ),
+    ] {
+        let told = told(changed(name, &changes));
+        assert!(told.contains(place) && told.contains(words), "{changes:?}: {told}");
+    }
 }
 
 #[test]

@@ -204,3 +204,70 @@ impl Bench<'_> {
         Ok((numbers, Readjusted { moved_mm, at_bound }))
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use surface_model::document::Document;
+
+    use super::super::built::Mounts;
+    use super::super::draw::draw;
+    use super::super::item::Item;
+    use super::super::kind::Form;
+    use super::*;
+    use crate::design_file::DesignFile;
+
+    /// |p − (3, 1)|².
+    fn levers() -> (Levers, DVector<f64>) {
+        let levers = Levers {
+            jacobian: DMatrix::identity(2, 2),
+            normal: DMatrix::identity(2, 2),
+            row_weights: vec![1.0; 2],
+        };
+        (levers, DVector::from_vec(vec![-3.0, -1.0]))
+    }
+
+    #[test]
+    fn a_step_stops_at_an_end_of_the_housing_and_slides_along_it() {
+        let (levers, residuals) = levers();
+        let room = Room { left_mm: 2.0, by_spacing: vec![-1.0, -1.0] };
+        let open = [Bounds::FREE; 2];
+        // The point nearest to (3, 1) with p₁ + p₂ ≤ 2 is (2, 0).
+        let step = levers.step(&residuals, &open, std::slice::from_ref(&room));
+        assert!((step[0] - 2.0).abs() < 1e-12 && step[1].abs() < 1e-12, "{step}");
+        // … and with p₂ ≥ 0.5 it is (1.5, 0.5).
+        let reach = [Bounds::FREE, Bounds { low: 0.5, high: f64::INFINITY }];
+        let step = levers.step(&residuals, &reach, &[room]);
+        assert!((step[0] - 1.5).abs() < 1e-12 && (step[1] - 0.5).abs() < 1e-12, "{step}");
+    }
+
+    #[test]
+    fn re_adjusted_groups_stay_in_the_tube() {
+        // In two of its states the entry lens touches the front of the tube.
+        let text = include_str!("../../../../configs/river-as-designed.json");
+        let file = DesignFile::read(Document::parse("d", text.as_bytes()).unwrap()).unwrap();
+        let items = Item::all(&file.design, &file.tolerances);
+        let bench = Bench::new(&file, &file.tolerances, items).unwrap();
+        let (mut gauges, mut at_an_end) = (Gauges::default(), 0);
+        for number in 0..20 {
+            let mut errors = draw(&bench, 1, number);
+            for (error, item) in errors.iter_mut().zip(&bench.items) {
+                error[0] *= item.item.tolerance;
+                if item.item.kind.form() == Form::Across {
+                    error[1] *= item.item.tolerance;
+                }
+            }
+            let built = bench.build(&errors);
+            for k in 0..bench.states.len() {
+                let levers = Levers::of(&bench, k);
+                let mut packed = built.packed.clone();
+                let mut state = bench.state_of(&built, k, Mounts::AsGiven);
+                bench.readjust(k, &levers, &mut packed, &mut state, &mut gauges).unwrap();
+                for room in bench.rooms(k, &packed) {
+                    assert!(room.left_mm > -1e-9, "{number} {k}: {room:?}");
+                    at_an_end += usize::from(room.left_mm < AT_END_MM);
+                }
+            }
+        }
+        assert!(at_an_end > 0, "no system was stopped by the tube");
+    }
+}
