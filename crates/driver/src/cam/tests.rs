@@ -112,16 +112,16 @@ fn limits_along_the_way_have_the_values_of_the_closed_form() {
     let exit = 170.0 - THICKNESS_MM;
     let entry = |m: f64| exit - state(m).1.iter().sum::<f64>() - 2.0 * THICKNESS_MM;
     for (kind, at, value, ratio) in [
-        // On the whole the entry goes back, so that its way up from 2x to 3x is against it.
+        // On the whole the entry goes to the rear, so that its way from 2x to 3x is against it.
         (LimitKind::Monotonic, "/groups/0", -(30.0 / 4.0 - 10.0 / 3.0), 2.0),
         (LimitKind::Monotonic, "/groups/1", 30.0 / 36.0, 6.0),
         (LimitKind::SlopeMmPerRatio, "/groups/0", 30.0 / 4.0 - 10.0 / 3.0, 2.0),
         (LimitKind::SlopeMmPerRatio, "/groups/1", 7.5, 2.0),
-        (LimitKind::TravelMm, "/groups/0", entry(3.0) - entry(6.0), 3.0),
-        (LimitKind::TravelMm, "/groups/1", 10.0, 6.0),
+        (LimitKind::TravelMm, "/groups/0", entry(6.0) - entry(3.0), 6.0),
+        (LimitKind::TravelMm, "/groups/1", 10.0, 2.0),
         (LimitKind::SpacingMm, "/states/*/spacings_mm/1", 135.0, 6.0),
-        (LimitKind::SpacingMm, "/states/*/spacings_mm/0", 20.0, 6.0),
-        (LimitKind::HousingMm, "/states/*", entry(6.0), 6.0),
+        (LimitKind::SpacingMm, "/states/*/spacings_mm/0", 40.0 - 20.0 / 3.0, 2.0),
+        (LimitKind::HousingMm, "/states/*", entry(3.0), 3.0),
     ] {
         let found = told(kind, at);
         assert!((found.0 - value).abs() < 1e-3, "{kind:?} {at}: {found:?} {value}");

@@ -173,16 +173,18 @@ impl Bench<'_> {
                     high: high - packed[at],
                 })
                 .collect();
-            let step = levers.step(&residuals, &room, &self.rooms(k, packed));
+            let rooms = self.rooms(k, packed);
+            let outside = rooms.iter().any(|room| room.left_mm < -AT_END_MM);
+            let step = levers.step(&residuals, &room, &rooms);
             let before: Vec<f64> = spacings.iter().map(|&(at, _)| packed[at]).collect();
             for (&(at, bounds), moved) in spacings.iter().zip(&step) {
                 packed[at] = bounds.clamp(packed[at] + moved);
             }
             self.move_to(k, packed, state);
             let tried = self.measure(k, state, gauges);
-            let better = tried
-                .ok()
-                .filter(|_| levers.weighted(&gauges.row).norm_squared() < residuals.norm_squared());
+            // What errors have pushed out of the tube comes back at any cost.
+            let falls = || levers.weighted(&gauges.row).norm_squared() < residuals.norm_squared();
+            let better = tried.ok().filter(|_| outside || falls());
             let Some(better) = better else {
                 for (&(at, _), before) in spacings.iter().zip(before) {
                     packed[at] = before;
