@@ -51,7 +51,7 @@ fn every_limit_is_kept_from_a_start_that_crosses_it() {
         ("river", "slope_mm_per_ratio", json!({ "max": 7.0 })),
         ("river", "monotonic", json!(["/groups/entry"])),
         ("river", "monotonic", json!(["/groups/*"])),
-        ("asphere", "slope_mm_per_ratio", json!({ "max": 15.0 })),
+        ("asphere", "slope_mm_per_ratio", json!({ "max": 12.0 })),
         ("river", "incidence_deg", json!({ "max": 4.0 })),
         ("river", "track_mm", json!({ "max": 125.0 })),
         ("river", "track_mm", json!({ "min": 140.0 })),
