@@ -8,6 +8,7 @@ mod limits;
 mod many_states;
 mod once_broken;
 mod one_change;
+mod way;
 mod words;
 
 /// Memory that all tests together may hold at once; who asks for more is ended.

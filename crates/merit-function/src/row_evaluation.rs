@@ -86,6 +86,16 @@ impl RowEvaluator {
         self.edge_mm = edge_mm;
     }
 
+    /// Per row, what it tells of the way between the states, if it is about that.
+    #[cfg(test)]
+    pub(crate) fn on_the_way(&self) -> Vec<Option<crate::movement::Aspect>> {
+        let aspect = |rule: &RowRule| match &rule.measured {
+            Measured::OnTheWay(row) => Some(row.measure.aspect()),
+            _ => None,
+        };
+        self.rules.iter().map(aspect).collect()
+    }
+
     /// Whether rows about the way between the states are looked at; else they count as kept.
     pub(crate) fn look_at_the_way(&mut self, looked_at: bool) {
         if let Some(way) = &mut self.way {

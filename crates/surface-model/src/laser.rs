@@ -257,8 +257,8 @@ pub struct ThresholdDocument {
 #[derive(Debug, Clone, Copy, PartialEq, Eq, Deserialize, Serialize, JsonSchema)]
 pub enum ScalingDocument {
     /// In proportion to the square root of the pulse length: heat that diffuses away. Holds from
-    /// about 20 ps up (B. C. Stuart et al., Phys. Rev. Lett. 74, 2248 (1995)) to about 100 ns
-    /// (common practice, no published source).
+    /// about 20 ps up (B. C. Stuart et al., Phys. Rev. Lett. 74, 2248 (1995); from memory)
+    /// to about 100 ns (common practice, no published source).
     #[serde(rename = "square-root")]
     SquareRoot,
 }

@@ -9,6 +9,8 @@
 use serde_json::{Value, json};
 use surface_model::document::Document;
 
+use merit_function::assessment::LimitAssessment;
+use merit_function::limits::LimitKind;
 use merit_function::movement::Gauge;
 
 use super::*;
@@ -169,6 +171,44 @@ fn a_focus_is_held_through_the_sphere_around_it() {
     gauge.want_vergence(1e-15);
     let nearly = gauge.measure(&state.spacings_mm).unwrap().collimation_rad;
     assert!((nearly - collimated).abs() < 1e-12, "{nearly} {collimated}");
+}
+
+#[test]
+fn limits_along_the_way_have_the_values_of_the_closed_form() {
+    // f₃/f₁ = 3: with the exit at rest the entry's slope is 30/m² − 10/3, the runner's 30/m².
+    let (f1, f2, f3) = (50.0, -10.0, 150.0);
+    let state = |m: f64| (m, vec![f1 + f2 + f1 * f2 * m / f3, f2 + f3 + f2 * f3 / (f1 * m)]);
+    let mut value =
+        thin(&[f1, f2, f3], 170.0, &[2], &[2.0, 4.0, 6.0].map(state)).document().value().clone();
+    value["limits"] = json!({ "monotonic": ["/groups/*"], "slope_mm_per_ratio": { "max": 8.0 },
+        "travel_mm": { "max": 3.0 }, "spacing_mm": { "max": 130.0 }, "between_states": "keep" });
+    let file = read(value);
+    let assessment = merit_function::assessment::assess(&file.design, &file.wishes);
+    let told = |limit: LimitKind, at: &str| {
+        let same = |other: &&LimitAssessment| {
+            other.limit == limit && other.at_ratio.is_some() && other.at.to_string() == at
+        };
+        let limit = assessment.limits.iter().find(same).unwrap();
+        (limit.value.unwrap(), limit.at_ratio.unwrap())
+    };
+    let exit = 170.0 - THICKNESS_MM;
+    let entry = |m: f64| exit - state(m).1.iter().sum::<f64>() - 2.0 * THICKNESS_MM;
+    for (kind, at, value, ratio) in [
+        // On the whole the entry goes to the rear, so that its way from 2x to 3x is against it.
+        (LimitKind::Monotonic, "/groups/0", -(30.0 / 4.0 - 10.0 / 3.0), 2.0),
+        (LimitKind::Monotonic, "/groups/1", 30.0 / 36.0, 6.0),
+        (LimitKind::SlopeMmPerRatio, "/groups/0", 30.0 / 4.0 - 10.0 / 3.0, 2.0),
+        (LimitKind::SlopeMmPerRatio, "/groups/1", 7.5, 2.0),
+        (LimitKind::TravelMm, "/groups/0", entry(6.0) - entry(3.0), 6.0),
+        (LimitKind::TravelMm, "/groups/1", 10.0, 2.0),
+        (LimitKind::SpacingMm, "/states/*/spacings_mm/1", 135.0, 6.0),
+        (LimitKind::SpacingMm, "/states/*/spacings_mm/0", 40.0 - 20.0 / 3.0, 2.0),
+        (LimitKind::HousingMm, "/states/*", entry(3.0), 3.0),
+    ] {
+        let found = told(kind, at);
+        assert!((found.0 - value).abs() < 1e-3, "{kind:?} {at}: {found:?} {value}");
+        assert!((found.1 - ratio).abs() < 1e-2, "{kind:?} {at}: {found:?} {ratio}");
+    }
 }
 
 /// Distances of four thin groups with both ends fixed: with μ₂μ₃ = P = −f₄/(f₁ m) the track asks

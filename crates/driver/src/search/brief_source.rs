@@ -63,6 +63,7 @@ impl BriefSource {
         let wishes = &self.starts.brief().wishes;
         let variables = Variables::new(design, &wishes.limits, &free(design)).ok()?;
         let exact = MeritFunction::new(design, wishes, variables, RAYS).ok()?;
+        let exact = exact.with_temperatures(design, wishes).ok()?;
         let start = exact.variables().start().to_vec();
         let ground = bench.lay(Ground::new(exact, design.housing.track_mm));
         layouts.push(layout);

@@ -24,6 +24,17 @@ pub enum StartError {
         /// Number of ratios.
         ratios: usize,
     },
+    /// Limits between the states where ratio and collimation leave a group free.
+    #[error(
+        "limits between the states are asked for, but of {groups} groups with {fixed} of them \
+         fixed more than two move"
+    )]
+    TooManyMovers {
+        /// Number of groups.
+        groups: usize,
+        /// How many are fixed.
+        fixed: usize,
+    },
     /// Cemented pairs are asked for of glasses that do not pair.
     #[error("cemented pairs are asked for, but no two allowed glasses differ enough in dispersion")]
     NoPair,
@@ -53,6 +64,7 @@ impl StartError {
                 root().key("ratios").index(first.unwrap_or_default())
             }
             Self::TooFewMovers { .. } => root().key("housing").key("fixed"),
+            Self::TooManyMovers { .. } => root().key("limits"),
             Self::NoPair => root().key("glasses_allowed"),
             Self::Entrance { .. } => root().key("limits").key("fluence_j_cm2"),
         };
@@ -83,6 +95,11 @@ impl StartError {
                 "a weaker pulse, or a beam of at least {} mm; no lens changes what enters",
                 rounded(*wide_enough_mm)
             ),
+            Self::TooManyMovers { .. } => {
+                "fix two of four groups, or take \"monotonic\", \"slope_mm_per_ratio\" and \
+                 \"between_states\" out of \"limits\""
+                    .into()
+            }
             Self::NoPair => {
                 "allow a second glass of another dispersion under \"glasses_allowed\"".into()
             }

@@ -11,8 +11,16 @@ use crate::design_file::DesignFile;
 use super::layout::Layout;
 
 /// What a design file has of its brief as it stands there, remarks included.
-const CARRIED_OVER: [&str; 7] =
-    ["beam", "coating", "damage_thresholds", "glasses", "housing", "goals", "limits"];
+const CARRIED_OVER: [&str; 8] = [
+    "beam",
+    "coating",
+    "damage_thresholds",
+    "glasses",
+    "housing",
+    "goals",
+    "limits",
+    "temperatures_c",
+];
 
 /// The design file of a layout, with the numbers of `design` (the layout's own, or what an
 /// optimiser made of them).

@@ -125,6 +125,10 @@ fn plan(brief: &BriefFile, groups: Vec<GroupPlan>, inverted: bool) -> Result<Pla
     let names = brief.written().housing.fixed.as_slice();
     let fixed: Vec<bool> = groups.iter().map(|group| names.contains(&group.name)).collect();
     let movement = movement(&fixed, brief.ratios.len())?;
+    if movement == Movement::Chosen && brief.wishes.limits.about_the_way() {
+        let standing = fixed.iter().filter(|&&fixed| fixed).count();
+        return Err(StartError::TooManyMovers { groups: groups.len(), fixed: standing });
+    }
     let mut families = Family::all(groups.len(), inverted);
     let ratios: Vec<f64> = brief.ratios.iter().map(|ratio| ratio.ratio).collect();
     if groups.len() == 2 {

@@ -10,8 +10,9 @@ use serde::Serialize;
 use surface_model::document::Address;
 
 use super::ToleranceError;
-use super::bench::{Bench, Effect};
+use super::bench::Bench;
 use super::built::{Gauges, Mounts};
+use super::effect::Effect;
 use super::kind::{Form, Kind, Spread};
 use super::readjust::Levers;
 use super::requirement::Quantity;

@@ -110,8 +110,9 @@ pub(crate) fn place(file: &DesignFile, limit: &LimitAssessment) -> String {
         ["states", state] => (*state).to_owned(),
         _ => at.to_string(),
     };
-    match &limit.state {
-        Some(state) if at.steps().first() != Some(&"states") => format!("{short} in {state}"),
+    match (&limit.state, limit.at_ratio) {
+        (Some(state), _) if at.steps().first() != Some(&"states") => format!("{short} in {state}"),
+        (None, Some(ratio)) => format!("{short} at {}x", fixed(ratio, 2)),
         _ => short,
     }
 }
