@@ -17,7 +17,9 @@ mod output_file;
 mod part;
 mod progress;
 mod run_progress;
+mod run_request;
 mod signals;
+mod told;
 
 use std::process::ExitCode;
 

@@ -1,6 +1,6 @@
 //! The picture of a sweep: a curve over one axis, a map over two, and the trade that was asked for.
 
-use driver::sweep::{NumberedPoint, SweepResults};
+use driver::sweep::{PointResult, SweepResults};
 use serde_json::Value;
 use surface_model::document::Address;
 
@@ -34,13 +34,13 @@ fn axis_of(name: &str, values: impl Iterator<Item = f64> + Clone) -> Axis {
     if far { Axis::logarithmic(name, "") } else { Axis::linear(name, "") }
 }
 
-fn merit(point: &NumberedPoint) -> Option<f64> {
+fn merit(point: &PointResult) -> Option<f64> {
     point.reached.as_ref().map(|reached| reached.merit)
 }
 
 /// A curve where the axis has numbers, bars where it has names.
 fn over_one(results: &SweepResults, axis: &Address) -> Panel {
-    let at = |point: &NumberedPoint| point.values.first().and_then(Value::as_f64);
+    let at = |point: &PointResult| point.values.first().and_then(Value::as_f64);
     let mut readings: Readings =
         results.points.iter().filter_map(|point| Some((at(point)?, merit(point)))).collect();
     if readings.len() < results.points.len() {
@@ -65,7 +65,7 @@ fn over_one(results: &SweepResults, axis: &Address) -> Panel {
 fn over_two(results: &SweepResults, across: &Address, up: &Address) -> Panel {
     let (xs, ys) = (distinct(results, 0), distinct(results, 1));
     let cell = |x: &Value, y: &Value| {
-        let here = |point: &&NumberedPoint| point.values.iter().eq([x, y]);
+        let here = |point: &&PointResult| point.values.iter().eq([x, y]);
         results.points.iter().find(here).and_then(merit)
     };
     let map = SweepMap {
