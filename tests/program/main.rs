@@ -11,6 +11,7 @@ mod mistakes;
 mod optimise;
 mod page;
 mod program;
+mod quantities;
 mod readme;
 mod retune;
 mod signals;
