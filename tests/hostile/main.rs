@@ -9,5 +9,6 @@ mod many_states;
 mod mutants;
 mod once_broken;
 mod one_change;
+mod plans;
 mod shipped;
 mod words;

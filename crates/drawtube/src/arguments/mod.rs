@@ -104,7 +104,7 @@ pub(crate) enum Command {
     Optimise(OptimiseArguments),
     /// Search for designs for hours, in a run folder that survives anything
     Overnight(OvernightArguments),
-    /// Optimise a design, or answer a brief, at every point of a grid or a sample
+    /// Optimise a design or brief at every point of a grid or sample
     Sweep(SweepArguments),
     /// After a change, move only what can still move, in stages
     Retune(RetuneArguments),

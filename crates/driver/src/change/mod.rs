@@ -94,9 +94,12 @@ pub fn apply_to_brief(file: &BriefFile, changes: &[Change]) -> Result<BriefFile,
     })
 }
 
+/// Places, each with the number of the change it is of, and complaints about other changes.
+type Aims = (Vec<(usize, Target)>, Vec<(Source, Complaint)>);
+
 /// The places that changes are about, each with the number of its change, and what is wrong with
 /// the others.
-fn aims(changes: &[Change], before: &Value) -> (Vec<(usize, Target)>, Vec<(Source, Complaint)>) {
+fn aims(changes: &[Change], before: &Value) -> Aims {
     let (mut targets, mut wrong) = (Vec::new(), Vec::new());
     for (number, change) in changes.iter().enumerate() {
         match target::targets(change, before) {

@@ -9,14 +9,23 @@ use super::point::{Neighbour, Outcome, Reached};
 use crate::brief::BriefFile;
 use crate::design_file::DesignFile;
 use crate::run::{Interrupt, Interrupted};
-use crate::search::{Attempt, SearchError, SearchProblem, SearchSettings};
+use crate::search::{Attempt, Found, SearchError, SearchProblem, SearchSettings};
 use crate::start::Refusals;
 
-/// The design with the lowest merit.
+/// The best design so far: one that keeps its limits before one that does not, then by merit.
 struct Best {
+    meets: bool,
+    limits_kept: bool,
     merit: f64,
     from_point: Option<u64>,
     design: Value,
+}
+
+impl Best {
+    fn is_better_than(&self, other: &Self) -> bool {
+        let crossed = |best: &Self| !best.limits_kept;
+        crossed(self).cmp(&crossed(other)).then(self.merit.total_cmp(&other.merit)).is_lt()
+    }
 }
 
 /// What the best design of a point comes to. Its starts are those of the search that the plan's
@@ -41,9 +50,10 @@ pub(super) fn answered(
         if refusals.reasons.is_empty() {
             refusals = attempt.refusals;
         }
-        let Some(found) = attempt.found else { return };
-        if best.as_ref().is_none_or(|best| found.merit < best.merit) {
-            best = Some(Best { merit: found.merit, from_point, design: found.design });
+        let Some(Found { meets, limits_kept, merit, design, .. }) = attempt.found else { return };
+        let new = Best { meets, limits_kept, merit, from_point, design };
+        if best.as_ref().is_none_or(|best| new.is_better_than(best)) {
+            best = Some(new);
         }
     };
     if let Some(neighbour) = neighbour
@@ -58,6 +68,9 @@ pub(super) fn answered(
     for start in first..first + starts {
         take(problem.attempt(plan.seed, start, interrupt.flag()).ok_or(Interrupted)?, None);
     }
+    // Where there is no layout the lenses of a neighbour always become something, but only what
+    // meets everything is an answer.
+    let best = best.filter(|best| best.meets || layouts > 0);
     let reached = best.and_then(|Best { from_point, design, .. }| {
         Reached::of(&read(brief, &design)?, from_point, iterations)
     });

@@ -93,11 +93,11 @@ fn key(panel: &mut Panel, ends: &[StartEnd], starts: u64, right: f64) {
     }
     let mut x = right;
     for (limits_kept, told) in words.iter().rev() {
-        panel.word([x, 28.0], told, Word::SMALL.at(Anchor::End));
-        x -= width_of(told, WORDS - 1.0) + 8.0;
+        x -= width_of(told, WORDS - 1.0);
+        panel.word([x, 28.0], told, Word::SMALL);
         if let Some(limits_kept) = limits_kept {
-            mark(panel, [x, 24.5], *limits_kept);
+            mark(panel, [x - 8.0, 24.5], *limits_kept);
         }
-        x -= 16.0;
+        x -= 24.0;
     }
 }

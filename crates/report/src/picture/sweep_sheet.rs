@@ -10,6 +10,7 @@ use super::panel::Panel;
 use super::sheets::{file_of, heading};
 use super::sweep::{SweepCurve, SweepMap, Trade, TradedDesign, sweep_curve, sweep_map, trade};
 use super::{PICTURE_WIDTH, Readings};
+use crate::text::sweep::value;
 
 /// Draws the finished points of a sweep, as SVG; `None` where neither one or two axes nor a trade
 /// gives anything to draw.
@@ -45,7 +46,7 @@ fn over_one(results: &SweepResults, axis: &Address) -> Panel {
         results.points.iter().filter_map(|point| Some((at(point)?, merit(point)))).collect();
     if readings.len() < results.points.len() {
         let named = results.points.iter().filter_map(|point| {
-            Some(Bar { name: point.values.first().map(shown)?, value: merit(point)? })
+            Some(Bar { name: point.values.first().map(value)?, value: merit(point)? })
         });
         let named: Vec<Bar> = named.collect();
         let most = named.len();
@@ -71,9 +72,9 @@ fn over_two(results: &SweepResults, across: &Address, up: &Address) -> Panel {
     let map = SweepMap {
         title: MERIT.to_owned(),
         x: Axis::linear(&across.to_string(), ""),
-        x_values: xs.iter().map(shown).collect(),
+        x_values: xs.iter().map(value).collect(),
         y: Axis::linear(&up.to_string(), ""),
-        y_values: ys.iter().map(shown).collect(),
+        y_values: ys.iter().map(value).collect(),
         value: Axis::logarithmic("merit", ""),
         cells: ys.iter().map(|y| xs.iter().map(|x| cell(x, y)).collect()).collect(),
     };
@@ -108,8 +109,4 @@ fn traded(results: &SweepResults) -> Option<Panel> {
         designs: designs.collect(),
     };
     (!picture.designs.is_empty()).then(|| trade(&picture, PICTURE_WIDTH))
-}
-
-fn shown(value: &Value) -> String {
-    value.as_str().map_or_else(|| value.to_string(), str::to_owned)
 }

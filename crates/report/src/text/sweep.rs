@@ -155,7 +155,8 @@ fn closing(results: &SweepResults, listed: usize) -> String {
         told.push_str(&format!("; {} could not be optimised", results.failed));
     }
     if results.without_layout > 0 {
-        told.push_str(&format!("; {} have no layout", results.without_layout));
+        let have = if results.without_layout == 1 { "has" } else { "have" };
+        told.push_str(&format!("; {} {have} no layout", results.without_layout));
     }
     if let Some(best) = results.best()
         && let Some(reached) = &best.reached
@@ -181,9 +182,11 @@ fn axis_head(at: &Address) -> String {
     steps[from..].join("\n")
 }
 
-fn value(value: &Value) -> String {
+/// A value of an axis as people read it.
+pub(crate) fn value(value: &Value) -> String {
     match value {
         Value::String(text) => text.clone(),
+        Value::Array(list) => list.iter().map(self::value).collect::<Vec<_>>().join(", "),
         Value::Number(number) => number.as_f64().map_or_else(|| number.to_string(), short),
         other => other.to_string(),
     }
