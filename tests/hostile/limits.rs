@@ -5,7 +5,7 @@ use driver::solve::{Settings, Unwatched};
 use merit_function::assessment::assess;
 use serde_json::{Value, json};
 
-use super::shipped::{changed, read};
+use checks::judges::shipped::{changed, read};
 
 /// A shipped design with nothing limited but this, everything free that may be.
 fn limited(name: &str, kind: &str, range: &Value) -> Value {

@@ -1,5 +1,6 @@
 //! The program run as a user runs it.
 
+mod alone;
 mod assess;
 mod cam;
 mod designs;
@@ -14,7 +15,10 @@ mod program;
 mod quantities;
 mod readme;
 mod retune;
+mod shipped;
+mod shop;
 mod signals;
+mod slips;
 mod start;
 mod streams;
 mod sweep;

@@ -16,7 +16,7 @@ use crate::output_file::OutputFile;
 
 pub(crate) fn run(arguments: &GatherArguments, console: &Console) -> Result<ExitStatus, Failure> {
     let output = output(arguments)?;
-    let picture = arguments.picture.clone().map(|path| OutputFile::checked(path, arguments.force));
+    let picture = arguments.picture.clone().map(|path| OutputFile::picture(path, arguments.force));
     let picture = picture.transpose()?;
     let surveys: Vec<Survey> =
         arguments.folders.iter().map(|path| Survey::of(path)).collect::<Result<_, RunError>>()?;

@@ -15,6 +15,18 @@
 //! what a shear plate or an autocollimator is adjusted for; the paraxial slope differs from it by
 //! the balance against spherical aberration.
 //!
+//! A beam that should come to a **focus** at the distance f = 1/V behind the last vertex (V is
+//! negative where it should spread from a point before it) is held against the sphere around that
+//! point: W + S takes the place of W, with S the way from the place of exit to the focus less that
+//! along the axis,
+//!
+//! ```text
+//! S(y) = (√(1 + V² y²) − 1)/V = V y²/(1 + √(1 + V² y²))
+//! ```
+//!
+//! for the exact height y of exit. The slope told is then the one by which the beam misses the
+//! focus.
+//!
 //! The **ratio** is the paraxial one, as everywhere in the program.
 
 use surface_model::bundle::Bundle;
@@ -25,6 +37,7 @@ use surface_model::paraxial::{ParaxialError, ParaxialRay, ParaxialWeights};
 use surface_model::quadrature::{BeamSample, beam_sample};
 use surface_model::reverse::{Quantities, Shapes};
 use surface_model::sequence::GapId;
+use surface_model::skew::{ExitSum, RayStart, trace_ray};
 use surface_model::train::Train;
 
 /// Rays of the fit: with these, twice as many change the slope by less than 1e-9 µrad.
@@ -71,6 +84,8 @@ pub(super) struct Gauge {
     radius_mm: f64,
     bundle: Bundle,
     paraxial: ParaxialRay,
+    /// One over the distance of the focus that is wanted, 1/mm; zero for a collimated beam.
+    vergence_per_mm: f64,
 }
 
 impl Gauge {
@@ -90,7 +105,14 @@ impl Gauge {
         let sample = beam_sample(radius_mm, design.beam.traced_to, RAYS);
         let counts = defocus_counts(&sample);
         let (bundle, paraxial) = (Bundle::new(), ParaxialRay::new());
-        Ok(Self { train, gaps, sample, counts, radius_mm, bundle, paraxial })
+        let vergence_per_mm = 0.0;
+        Ok(Self { train, gaps, sample, counts, radius_mm, bundle, paraxial, vergence_per_mm })
+    }
+
+    /// From now on a focus is wanted, at one over this distance behind the last vertex, 1/mm; zero
+    /// is collimation again.
+    pub(super) fn want_vergence(&mut self, per_mm: f64) {
+        self.vergence_per_mm = per_mm;
     }
 
     /// Ratio and collimation at these spacings, mm.
@@ -112,21 +134,54 @@ impl Gauge {
         let ratio_by_spacing: Vec<f64> =
             self.gaps.iter().map(|&gap| row[quantities.gap(gap)]).collect();
 
+        let (paths, by_gap) =
+            if self.vergence_per_mm == 0.0 { self.paths()? } else { self.paths_to_the_focus()? };
+        let slope = 2.0 * self.radius_mm / ratio;
+        let sum = |values: &[f64]| {
+            slope * self.counts.iter().zip(values).map(|(count, path)| count * path).sum::<f64>()
+        };
+        let collimation_rad = sum(&paths);
+        let by_gap = by_gap.iter().zip(&ratio_by_spacing);
+        let collimation_by_spacing =
+            by_gap.map(|(by, ratio_by)| sum(by) - collimation_rad * ratio_by / ratio).collect();
+        Ok(Held { ratio, ratio_by_spacing, collimation_rad, collimation_by_spacing })
+    }
+
+    /// W of every ray, and per spacing its derivatives.
+    fn paths(&mut self) -> Result<(Vec<f64>, Vec<Vec<f64>>), HeldFault> {
         let mut paths = vec![0.0; self.sample.heights_mm.len()];
         self.bundle.load([&self.train], &self.sample.heights_mm);
         self.bundle.trace_kept(&mut paths).map_err(|failed| HeldFault::Ray(failed.fault))?;
         let quantities = self.bundle.differentiate(Shapes::None);
-        let slope = 2.0 * self.radius_mm / ratio;
-        let sum = |values: &mut dyn Iterator<Item = f64>| {
-            slope * self.counts.iter().zip(values).map(|(count, path)| count * path).sum::<f64>()
-        };
-        let collimation_rad = sum(&mut paths.iter().copied());
-        let by_gap = self.gaps.iter().zip(&ratio_by_spacing).map(|(&gap, ratio_by)| {
-            let by_path = sum(&mut self.bundle.path_derivatives(0, quantities.gap(gap)));
-            by_path - collimation_rad * ratio_by / ratio
-        });
-        let collimation_by_spacing = by_gap.collect();
-        Ok(Held { ratio, ratio_by_spacing, collimation_rad, collimation_by_spacing })
+        let by_gap = self
+            .gaps
+            .iter()
+            .map(|&gap| self.bundle.path_derivatives(0, quantities.gap(gap)).collect::<Vec<f64>>());
+        Ok((paths, by_gap.collect()))
+    }
+
+    /// W + S of every ray, and per spacing its derivatives: S depends on the place of exit, so each
+    /// ray is traced by itself and one reverse sweep gives both.
+    fn paths_to_the_focus(&self) -> Result<(Vec<f64>, Vec<Vec<f64>>), HeldFault> {
+        let quantities = Quantities::new(self.train.len(), Shapes::None);
+        let v = self.vergence_per_mm;
+        let mut paths = Vec::with_capacity(self.sample.heights_mm.len());
+        let mut by_gap = vec![Vec::new(); self.gaps.len()];
+        for &height_mm in &self.sample.heights_mm {
+            let start = RayStart::parallel(height_mm);
+            let ray = trace_ray(&self.train, start).map_err(HeldFault::Ray)?;
+            let exit = ray.exit();
+            let y = exit.position_mm[1];
+            let root = (v * y).hypot(1.0);
+            paths.push(exit.path_mm + v * y * y / (1.0 + root));
+            let weights =
+                ExitSum { path_mm: 1.0, position_mm: [0.0, v * y / root], ..ExitSum::default() };
+            let row = ray.differentiate(&weights, Shapes::None);
+            for (by, &gap) in by_gap.iter_mut().zip(&self.gaps) {
+                by.push(row[quantities.gap(gap)]);
+            }
+        }
+        Ok((paths, by_gap))
     }
 }
 

@@ -23,11 +23,6 @@ pub enum CamError {
         /// Largest ratio.
         high: f64,
     },
-    /// A state is wanted focused.
-    #[error(
-        "state {0} is wanted focused (exit_focus_m); movement curves are of collimated beams alone"
-    )]
-    Focused(String),
     /// No positions near a state's hold its ratio and collimation.
     #[error("near state {state} no positions hold the ratio {ratio} {and}: {reason}")]
     State {

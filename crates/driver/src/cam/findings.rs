@@ -28,6 +28,8 @@ pub enum FindingKind {
     Steep,
     /// A group turns back.
     Reversal,
+    /// The curve does not go through a state.
+    LeftOut,
 }
 
 /// One finding.
@@ -84,6 +86,8 @@ pub(super) struct Look<'a> {
     pub(super) design: &'a Design,
     pub(super) wishes: &'a Wishes,
     pub(super) settings: &'a CamSettings,
+    /// The states that the curve goes through.
+    pub(super) knots: &'a [usize],
     pub(super) groups: &'a [GroupWay],
     pub(super) points: &'a [CurvePoint],
     /// The points as zoom states of the design, assessed; state k is point k and is called so.
@@ -240,15 +244,19 @@ impl Look<'_> {
             Some((slope / self.goals_at(k)?.exit_slope_urad? - 1.0, slope))
         });
         found.extend(bad.iter().map(|run| goal_finding("the paraxial exit slope", run, "µrad")));
+        let bad = runs(self.points, |k| {
+            let off = self.assessment.states[k].exit_focus_error_m?.abs();
+            Some((off / self.goals_at(k)?.exit_focus_m?.within_m - 1.0, off))
+        });
+        found.extend(bad.iter().map(|run| goal_finding("the paraxial focus", run, "m off")));
         found
     }
 
-    /// The goals of the designed state nearest in ratio.
+    /// The goals of the state nearest in ratio, of those that the curve goes through.
     fn goals_at(&self, k: usize) -> Option<&merit_function::goals::Goals> {
         let ratio = self.points[k].ratio;
         let away = |state: usize| (self.design.states[state].ratio - ratio).abs();
-        let states = 0..self.design.states.len();
-        let nearest = states.min_by(|&a, &b| away(a).total_cmp(&away(b)))?;
+        let nearest = self.knots.iter().copied().min_by(|&a, &b| away(a).total_cmp(&away(b)))?;
         self.wishes.states.get(nearest)
     }
 

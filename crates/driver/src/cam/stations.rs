@@ -20,13 +20,14 @@ pub(super) struct Station {
     pub(super) told: bool,
 }
 
-/// The states that the curve goes through, by ascending ratio; of those with one ratio the first.
+/// Those of `states` that the curve goes through, by ascending ratio; of those with one ratio the
+/// first.
 ///
 /// # Errors
 /// There are not two ratios, or a beam would have to turn from inverted to upright.
-pub(super) fn knots(design: &Design) -> Result<Vec<usize>, CamError> {
+pub(super) fn knots(design: &Design, states: &[usize]) -> Result<Vec<usize>, CamError> {
     let ratio = |&k: &usize| design.states[k].ratio;
-    let mut knots: Vec<usize> = (0..design.states.len()).collect();
+    let mut knots = states.to_vec();
     knots.sort_by(|a, b| ratio(a).total_cmp(&ratio(b)).then(a.cmp(b)));
     let (Some(low), Some(high)) = (knots.first().map(ratio), knots.last().map(ratio)) else {
         return Err(CamError::OneRatio);

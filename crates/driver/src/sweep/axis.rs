@@ -11,15 +11,38 @@ use crate::change::Change;
 /// One axis, read.
 pub(super) struct Axis {
     pub(super) at: Address,
-    /// Its values; none where points are drawn.
-    pub(super) values: Vec<Value>,
-    range: Option<RangeDocument>,
+    values: AxisValues,
+}
+
+enum AxisValues {
+    Listed(Vec<Value>),
+    /// A range in so many steps; in none where points are drawn.
+    Range(RangeDocument, usize),
 }
 
 impl Axis {
+    /// How many values it has; none where points are drawn.
+    pub(super) fn count(&self) -> usize {
+        match &self.values {
+            AxisValues::Listed(values) => values.len(),
+            AxisValues::Range(_, steps) => *steps,
+        }
+    }
+
+    /// One of its values.
+    pub(super) fn value(&self, i: usize) -> Value {
+        match &self.values {
+            AxisValues::Listed(values) => values[i].clone(),
+            AxisValues::Range(_, steps) => self.at_share(i as f64 / ((*steps).max(2) - 1) as f64),
+        }
+    }
+
     /// The number at a share (0 to 1) of the range.
-    pub(super) fn at_share(&self, share: f64) -> f64 {
-        self.range.map_or(f64::NAN, |range| between(&range, share))
+    pub(super) fn at_share(&self, share: f64) -> Value {
+        match &self.values {
+            AxisValues::Listed(values) => values.first().cloned().unwrap_or_default(),
+            AxisValues::Range(range, _) => between(range, share).into(),
+        }
     }
 }
 
@@ -67,16 +90,16 @@ pub(super) fn axis(
     let refuse = |key: &str, found: &str, expected: &str| {
         Err(complaint(here.clone().key(key), found.to_owned(), expected.to_owned()))
     };
-    let (values, range) = match (&axis.values, &axis.range) {
+    let values = match (&axis.values, &axis.range) {
         (Some(_), _) if drawn => {
             return refuse("values", "points are drawn from ranges, not from values", "a range");
         }
-        (Some(values), None) => (values.clone(), None),
-        (None, Some(range)) => (steps(here, range, drawn)?, Some(*range)),
+        (Some(values), None) => AxisValues::Listed(values.clone()),
+        (None, Some(range)) => AxisValues::Range(*range, steps(here, range, drawn)?),
         (Some(_), Some(_)) => return refuse("range", "the axis has values too", "one of the two"),
         (None, None) => return refuse("at", "the axis has no values", "\"values\" or \"range\""),
     };
-    let axis = Axis { at, values, range };
+    let axis = Axis { at, values };
     if axis.at.resolve(file).is_err() {
         try_key(&axis, here, subject)?;
     }
@@ -85,7 +108,7 @@ pub(super) fn axis(
 
 /// A key that the file lacks is tried once: whether the format knows it shows then.
 fn try_key(axis: &Axis, here: &Address, subject: &Subject) -> Result<(), Complaint> {
-    let value = axis.values.first().cloned().unwrap_or_else(|| Value::from(axis.at_share(0.0)));
+    let value = axis.at_share(0.0);
     let source = Source { label: axis.at.to_string(), position: None };
     let Err(complaints) = subject.with(&[Change::new(axis.at.clone(), value, source)]) else {
         return Ok(());
@@ -100,8 +123,8 @@ fn try_key(axis: &Axis, here: &Address, subject: &Subject) -> Result<(), Complai
     }
 }
 
-/// The numbers of a range; none where points are drawn.
-fn steps(here: &Address, range: &RangeDocument, drawn: bool) -> Result<Vec<Value>, Complaint> {
+/// In how many steps a range is gone through; in none where points are drawn.
+fn steps(here: &Address, range: &RangeDocument, drawn: bool) -> Result<usize, Complaint> {
     let at = here.clone().key("range");
     let refuse = |key: &str, found: String, expected: &str| {
         Err(complaint(at.clone().key(key), found, expected.to_owned()))
@@ -110,19 +133,25 @@ fn steps(here: &Address, range: &RangeDocument, drawn: bool) -> Result<Vec<Value
     if !(from.is_finite() && to.is_finite()) {
         return refuse("from", "the range has no ends".to_owned(), "two numbers");
     }
-    if scale == Some(ScaleDocument::Logarithmic) && from * to <= 0.0 {
-        let found = format!("equal ratios do not lead from {from} to {to}");
-        return refuse("scale", found, "two ends of the same sign, neither of them 0");
+    if scale == Some(ScaleDocument::Logarithmic) {
+        if from == 0.0 || to == 0.0 || from.signum() != to.signum() {
+            let found = format!("equal ratios do not lead from {from} to {to}");
+            return refuse("scale", found, "two ends of the same sign, neither of them 0");
+        }
+        if !(to / from).is_normal() {
+            let found = format!("the ratio of {from} and {to} is out of the range of numbers");
+            return refuse("from", found, "two ends nearer to each other");
+        }
+    } else if !(to - from).is_finite() {
+        let found = format!("from {from} to {to} is out of the range of numbers");
+        return refuse("from", found, "two ends nearer to each other");
     }
     match steps {
-        None if drawn => Ok(Vec::new()),
+        None if drawn => Ok(0),
         Some(steps) if drawn => {
             refuse("steps", format!("{steps} steps, but points are drawn"), "no steps")
         }
-        Some(steps) if (1..=MOST_POINTS).contains(&(steps as usize)) => {
-            let last = f64::from(steps.max(2) - 1);
-            Ok((0..steps).map(|i| Value::from(between(range, f64::from(i) / last))).collect())
-        }
+        Some(steps) if (1..=MOST_POINTS).contains(&(steps as usize)) => Ok(steps as usize),
         Some(steps) => refuse("steps", format!("{steps} steps"), "1 to 100000"),
         None => refuse(
             "from",

@@ -24,7 +24,7 @@ pub(super) struct PlanDocument {
     pub(super) brief: Option<String>,
     /// What is varied. Without `sample` every value of each axis is combined with every value of
     /// the others.
-    #[schemars(length(min = 1))]
+    #[schemars(length(min = 1, max = 64))]
     pub(super) axes: Vec<AxisDocument>,
     /// Draw points from the ranges of all axes together instead of combining their steps.
     #[serde(default, skip_serializing_if = "Option::is_none")]

@@ -17,6 +17,9 @@ use crate::sampling::{LatinHypercube, Sobol};
 /// Most points of a sweep.
 pub const MOST_POINTS: usize = 100_000;
 
+/// Most values of all axes in all points: some hundred megabytes.
+const MOST_VALUES: usize = 1_000_000;
+
 /// Most starts of a point.
 const MOST_STARTS: u32 = 1000;
 
@@ -142,41 +145,51 @@ impl PlanFile {
     fn points(&self, axes: &[Axis], seed: u64) -> Result<(Vec<Vec<Value>>, Order), Complaints> {
         match self.written.sample {
             None => {
-                let counts: Vec<usize> = axes.iter().map(|axis| axis.values.len()).collect();
+                let counts: Vec<usize> = axes.iter().map(Axis::count).collect();
                 let total =
                     counts.iter().try_fold(1_usize, |total, &count| total.checked_mul(count));
-                self.admit(total, Address::root().key("axes"))?;
+                self.admit(total, axes.len(), Address::root().key("axes"))?;
                 let order = Order::of_grid(&counts);
                 let values = |&point: &usize| {
                     let indices = unfold(point, &counts);
-                    indices.iter().zip(axes).map(|(&i, axis)| axis.values[i].clone()).collect()
+                    indices.iter().zip(axes).map(|(&i, axis)| axis.value(i)).collect()
                 };
                 Ok((order.points.iter().map(values).collect(), order))
             }
             Some(sample) => {
                 let at = Address::root().key("sample");
-                self.admit(Some(sample.points as usize), at.clone().key("points"))?;
+                let points = Some(sample.points as usize);
+                self.admit(points, axes.len(), at.clone().key("points"))?;
                 let cube = drawn(sample, axes.len(), seed)
                     .map_err(|error| self.document.refuse([complaint(at, error.0, error.1)]))?;
                 let order = Order::of(&cube);
                 let values = |&point: &usize| {
                     let shares = cube[point].iter().zip(axes);
-                    shares.map(|(&share, axis)| Value::from(axis.at_share(share))).collect()
+                    shares.map(|(&share, axis)| axis.at_share(share)).collect()
                 };
                 Ok((order.points.iter().map(values).collect(), order))
             }
         }
     }
 
-    fn admit(&self, points: Option<usize>, at: Address) -> Result<(), Complaints> {
-        if points.is_some_and(|points| (1..=MOST_POINTS).contains(&points)) {
+    fn admit(&self, points: Option<usize>, axes: usize, at: Address) -> Result<(), Complaints> {
+        let Some(count) = points.filter(|points| (1..=MOST_POINTS).contains(points)) else {
+            let found = points.map_or_else(
+                || "more points than can be counted".to_owned(),
+                |points| format!("{points} points"),
+            );
+            return Err(self.document.refuse([complaint(
+                at,
+                found,
+                format!("1 to {MOST_POINTS}"),
+            )]));
+        };
+        if count.checked_mul(axes).is_some_and(|values| values <= MOST_VALUES) {
             return Ok(());
         }
-        let found = points.map_or_else(
-            || "more points than can be counted".to_owned(),
-            |points| format!("{points} points"),
-        );
-        Err(self.document.refuse([complaint(at, found, format!("1 to {MOST_POINTS}"))]))
+        let found = format!("{count} points of {axes} axes each");
+        let expected = format!("fewer of either: {MOST_VALUES} values in all at most");
+        Err(self.document.refuse([complaint(at, found, expected)]))
     }
 }
 

@@ -29,7 +29,7 @@ impl Request {
         let every = duration("--progress-every", arguments.progress_every, 1.0)?;
         let stages = stages(&arguments)?;
         let (quiet, force) = (arguments.quiet, arguments.force);
-        let picture = arguments.picture.map(|path| OutputFile::checked(path, force));
+        let picture = arguments.picture.map(|path| OutputFile::picture(path, force));
         Ok(Self {
             file: input::design(&arguments.design)?,
             stages,

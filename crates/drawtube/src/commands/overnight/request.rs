@@ -30,7 +30,7 @@ impl Request {
     pub(super) fn of(arguments: OvernightArguments, console: &Console) -> Result<Self, Failure> {
         let run_as = RunRequest::of(&arguments.run_as, arguments.json, console)?;
         let budget = Budget { session_time: run_as.session_time, ..budget(&arguments)? };
-        let picture = arguments.picture.map(|path| OutputFile::checked(path, arguments.force));
+        let picture = arguments.picture.map(|path| OutputFile::picture(path, arguments.force));
         let settings = SearchSettings {
             strategy: match arguments.strategy {
                 StrategyArgument::Multistart => Strategy::Multistart,

@@ -25,7 +25,7 @@ pub(super) fn show(
     console: &Console,
 ) -> Result<ExitStatus, Failure> {
     let OvernightArguments { run, keep, json, picture, force, .. } = arguments;
-    let output = picture.map(|path| OutputFile::checked(path, force)).transpose()?;
+    let output = picture.map(|path| OutputFile::picture(path, force)).transpose()?;
     let state = State::of(&run, usize::from(keep))?;
     if let Some(output) = output {
         super::picture::draw(&state.list, state.gathering.finds(), &output, console)?;

@@ -44,7 +44,7 @@ impl Request {
             ask: ask(&plan_file, &subject, share),
             budget: Budget { units, session_time, ..Budget::default() },
         });
-        let picture = arguments.picture.map(|path| OutputFile::checked(path, arguments.force));
+        let picture = arguments.picture.map(|path| OutputFile::picture(path, arguments.force));
         Ok(Self {
             sweep: Sweep::new(plan, subject, share.of()),
             run,
