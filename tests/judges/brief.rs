@@ -38,8 +38,9 @@ pub fn judge(bytes: &[u8]) -> Result<Option<usize>, String> {
         Err(error) => return quiet(&error.to_string()).map(|()| Some(0)),
     };
     let mut found = 0;
+    let points = starts.points(1);
     for number in 0..POINTS {
-        if let Ok(layout) = starts.layout(&starts.point(number, 1)) {
+        if let Ok(layout) = starts.layout(&points.point(number)) {
             found += 1;
             finite("the layout", &layout)?;
             let file = starts.design_file(&layout, &layout.design, "");

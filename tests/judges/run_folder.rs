@@ -14,7 +14,7 @@ use driver::run::{
     TakenUp, Tally, Watcher, perform,
 };
 use driver::search::{SearchProblem, SearchSettings, StartResult};
-use driver::sweep::{PlanFile, Sweep, SweepGathering, SweepResults};
+use driver::sweep::{PlanFile, Subject, Sweep, SweepGathering, SweepResults};
 use report::text;
 use serde_json::{Value, json};
 use surface_model::document::Document;
@@ -173,16 +173,17 @@ fn write(
     }
 }
 
-/// The plan and the design of a sweep.
-fn swept(survey: &Survey) -> Result<Option<(PlanFile, DesignFile)>, String> {
+/// The plan of a sweep and what it is about.
+fn swept(survey: &Survey) -> Result<Option<(PlanFile, Subject)>, String> {
     let plan = Document::parse("asked.json", &survey.asked).and_then(PlanFile::read);
-    let design = survey.run.settings.get("design").cloned().unwrap_or_default();
-    let design = DesignFile::read(Document::from_value("design.json", design));
-    match (plan, design) {
-        (Ok(plan), Ok(design)) => Ok(Some((plan, design))),
-        (Err(complaints), _) | (_, Err(complaints)) => {
-            quiet(&complaints.to_string()).map(|()| None)
-        }
+    let swept = plan.and_then(|plan| {
+        let about = survey.run.settings.get(plan.subject_key()).cloned().unwrap_or_default();
+        let subject = plan.read_subject(Document::from_value("subject.json", about))?;
+        Ok((plan, subject))
+    });
+    match swept {
+        Ok(swept) => Ok(Some(swept)),
+        Err(complaints) => quiet(&complaints.to_string()).map(|()| None),
     }
 }
 
@@ -194,7 +195,8 @@ fn go_on(folder: &Path, survey: &Survey) -> Result<(), String> {
         let Ok(plan) = plan_file.resolve(&design) else { return Ok(()) };
         let ask = driver::sweep::ask(&plan_file, &design, share);
         return session(folder, &ask, |folder, budget| {
-            perform(folder, &Sweep::new(plan, design), budget, 1, &mut Quiet).map(|_| ())
+            perform(folder, &Sweep::new(plan, design, share.of()), budget, 1, &mut Quiet)
+                .map(|_| ())
         });
     }
     let Ok(text) = std::str::from_utf8(&survey.asked) else { return Ok(()) };

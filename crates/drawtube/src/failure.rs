@@ -339,6 +339,10 @@ fn advice_on_run(error: &RunError) -> Option<&'static str> {
         RunError::AnotherRun { .. } => {
             Some("go on with what was asked there, or name another folder")
         }
+        RunError::BrokenOff { .. } => Some(
+            "what is finished is kept there; please send its asked.json and run.json to whoever \
+             makes the program",
+        ),
         RunError::Damaged { path, .. } if path.ends_with("journal.jsonl") => Some(
             "take the damaged line out of the file (keep a copy): what it held is computed again",
         ),

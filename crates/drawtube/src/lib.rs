@@ -18,7 +18,9 @@ mod part;
 mod progress;
 mod refusal;
 mod run_progress;
+mod run_request;
 mod signals;
+mod told;
 
 use std::process::ExitCode;
 

@@ -19,6 +19,7 @@
 //! - [`search`]: the global search, from a problem to many finished designs;
 //! - [`change`]: what came back different, in a design file; [`retune`]: then moving only what can
 //!   still move; [`sweep`]: a grid or a sample over any addresses, each point optimised;
+//!   [`mod@front`]: the best trade between two results;
 //! - [`write_whole`]: the one function of the program that writes files.
 //!
 //! # What it refuses to know
@@ -38,6 +39,7 @@ pub mod change;
 pub mod design_file;
 mod document_kind;
 pub mod freedom;
+pub mod front;
 pub mod optimise;
 pub mod origin;
 pub mod overnight;

@@ -12,6 +12,7 @@ mod overnight;
 mod progress;
 mod report;
 mod retune;
+mod run;
 mod schema;
 mod start;
 mod sweep;
@@ -34,6 +35,7 @@ pub(crate) use overnight::{OvernightArguments, StrategyArgument};
 pub(crate) use progress::ProgressArgument;
 pub(crate) use report::ReportArguments;
 pub(crate) use retune::RetuneArguments;
+pub(crate) use run::RunArguments;
 pub(crate) use schema::{DocumentKind, SchemaArguments};
 pub(crate) use start::StartArguments;
 pub(crate) use sweep::SweepArguments;
@@ -103,7 +105,7 @@ pub(crate) enum Command {
     Optimise(OptimiseArguments),
     /// Search for designs for hours, in a run folder that survives anything
     Overnight(OvernightArguments),
-    /// Optimise a design at every point of a grid or a sample
+    /// Optimise a design or brief at every point of a grid or sample
     Sweep(SweepArguments),
     /// After a change, move only what can still move, in stages
     Retune(RetuneArguments),

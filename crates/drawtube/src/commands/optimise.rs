@@ -17,8 +17,9 @@ use crate::failure::Failure;
 use crate::progress::{MeritHistory, Teller};
 use crate::signals::StopSignal;
 
+use crate::told::Told;
 use account::Account;
-use request::{Request, Summary};
+use request::Request;
 
 pub(crate) fn run(arguments: OptimiseArguments, console: &Console) -> Result<ExitStatus, Failure> {
     let request = Request::of(arguments, console)?;
@@ -78,10 +79,10 @@ fn tell(
     saved: bool,
     console: &Console,
 ) -> Result<(), Failure> {
-    let text = match request.summary {
-        Summary::None => return Ok(()),
-        Summary::Json => account.document()?,
-        Summary::Text => account.text(&request.destination, saved),
+    let text = match request.told {
+        Told::Nothing => return Ok(()),
+        Told::Json => account.document()?,
+        Told::Text => account.text(&request.destination, saved),
     };
     if saved && request.destination != Destination::StandardOutput {
         console.print(&text)

@@ -13,7 +13,7 @@ use serde_json::json;
 use crate::run::{Ask, Interrupt, Interrupted, Share, Work};
 use crate::search::{SearchProblem, SearchSettings, StartResult};
 
-pub use finds::{Fall, Finds};
+pub use finds::{Fall, Finds, StartEnd};
 pub use gathering::{Gathering, MissingPart, fetch};
 pub use ranked::{RANKING_FORMAT, Ranked, RankedList};
 
@@ -34,6 +34,10 @@ impl Work for Overnight {
 
     fn perform(&self, number: u64, interrupt: &Interrupt) -> Result<StartResult, Interrupted> {
         self.problem.start(self.seed, number, interrupt.flag()).ok_or(Interrupted)
+    }
+
+    fn called(&self, number: u64) -> String {
+        format!("start {number}")
     }
 
     fn merit(&self, done: &StartResult) -> Option<f64> {

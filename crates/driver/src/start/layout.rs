@@ -6,6 +6,7 @@ use surface_model::design::{Design, Element, Group, ZoomState};
 use surface_model::paraxial::ParaxialRay;
 use surface_model::surface::Surface;
 
+use super::begun::GlassesOfGroups;
 use super::family::Family;
 use super::lens::ThickElement;
 use super::no_layout::NoLayout;
@@ -27,7 +28,7 @@ pub struct Layout {
     /// What first and third order foretell.
     pub score: Score,
     /// Per group and element, the places of its glasses among the allowed ones of the brief.
-    pub glasses: Vec<Vec<Vec<usize>>>,
+    pub glasses: GlassesOfGroups,
 }
 
 impl Layout {

@@ -230,7 +230,7 @@ fn an_impossible_brief_is_told_what_would_have_to_give() {
 fn a_point_can_be_moved_by_hand() {
     let starts = Starts::of(&brief(SHIPPED[0])).unwrap();
     let number = starts.ranked(2048, 0, 1).best[0].number;
-    let mut point = starts.point(number, 0);
+    let mut point = starts.points(0).point(number);
     let layout = starts.layout(&point).unwrap();
     // A little smaller: another layout of the same family.
     point[7] *= 0.999;
