@@ -56,7 +56,7 @@ fn told(starts: &Starts) -> Result<(), String> {
     let ranking = starts.ranked(POINTS, 1, 3);
     if ranking.best.is_empty() {
         // A few points are enough to look for what could be relaxed.
-        let told = impossible(&ranking, &starts.relaxations(2, 1));
+        let told = impossible(starts, &ranking, &starts.relaxations(2, 1));
         return quiet(&told.message).and_then(|()| quiet(&told.advice));
     }
     finite("the list of layouts", &StartDocument::of(starts, &ranking, 1))?;

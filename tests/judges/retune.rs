@@ -68,7 +68,8 @@ pub fn judge(bytes: &[u8]) -> Result<bool, String> {
     let text = DESIGNS[asked.design].1;
     let file = Document::parse("design.json", text.as_bytes()).and_then(DesignFile::read);
     let file = file.map_err(|complaints| complaints.to_string())?;
-    let changes = asked.changes.iter().map(|text| Change::read("--change", text));
+    let changes =
+        asked.changes.iter().map(|text| Change::read("--change", text, file.document().value()));
     let changes: Vec<Change> = match changes.collect::<Result<_, _>>() {
         Ok(changes) => changes,
         Err(complaints) => return refused(&complaints),

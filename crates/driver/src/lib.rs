@@ -13,7 +13,8 @@
 //! - [`mod@tolerance`]: what a workshop's errors do to a design, and the yield;
 //! - [`temperature`]: what a design does at other temperatures, and how it is brought back;
 //! - [`overnight`]: the global search as a run, and the ranked list it leaves;
-//! - [`run`]: long work in a folder, where nothing is lost;
+//! - [`run`]: long work in a folder, where nothing is lost; [`origin`]: which unit of it found a
+//!   design;
 //! - [`sampling`]: points that fill a space evenly, random numbers keyed by a number;
 //! - [`search`]: the global search, from a problem to many finished designs;
 //! - [`change`]: what came back different, in a design file; [`retune`]: then moving only what can
@@ -38,6 +39,7 @@ pub mod design_file;
 mod document_kind;
 pub mod freedom;
 pub mod optimise;
+pub mod origin;
 pub mod overnight;
 pub mod retune;
 pub mod run;

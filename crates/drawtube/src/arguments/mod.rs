@@ -43,6 +43,7 @@ pub(crate) use trace::TraceArguments;
 use crate::console::{Console, ErrorFormat};
 use crate::exit_status::ExitStatus;
 use crate::failure::Failure;
+use crate::refusal::Refusal;
 
 /// Design zoom laser-beam expanders: lens groups that slide in a tube of fixed length.
 ///
@@ -130,14 +131,19 @@ pub(crate) enum Command {
 pub(crate) struct Refused {
     error: clap::Error,
     errors: ErrorFormat,
+    /// The command that was named.
+    command: Option<String>,
 }
 
 impl Arguments {
     /// Reads a command line.
     pub(crate) fn read(words: impl IntoIterator<Item = OsString>) -> Result<Self, Refused> {
         let words: Vec<OsString> = words.into_iter().collect();
-        Self::try_parse_from(&words)
-            .map_err(|error| Refused { error, errors: errors_asked(&words) })
+        Self::try_parse_from(&words).map_err(|error| Refused {
+            error,
+            errors: errors_asked(&words),
+            command: command_asked(&words),
+        })
     }
 
     /// The command line as the shell completions need it.
@@ -153,10 +159,17 @@ fn errors_asked(words: &[OsString]) -> ErrorFormat {
     if spaced || joined { ErrorFormat::Json } else { ErrorFormat::Text }
 }
 
+/// The command that is named on a command line that could not be taken as a whole.
+fn command_asked(words: &[OsString]) -> Option<String> {
+    let grammar = Arguments::grammar();
+    let mut words = words.iter().skip(1).filter_map(|word| word.to_str());
+    words.find(|word| grammar.find_subcommand(word).is_some()).map(str::to_owned)
+}
+
 impl Refused {
     /// Prints the help that was asked for, or what is wrong.
     pub(crate) fn tell(self) -> ExitStatus {
-        let Self { error, errors } = self;
+        let Self { error, errors, command } = self;
         let console = Console::new(errors);
         match error.kind() {
             ErrorKind::DisplayHelp | ErrorKind::DisplayVersion => {
@@ -167,10 +180,9 @@ impl Refused {
                 console.say_help(&error.render());
                 ExitStatus::WrongInput
             }
-            _ if errors == ErrorFormat::Json => console.fail(&Failure::CommandLine(error)),
             _ => {
-                console.say_help(&error.render());
-                ExitStatus::WrongInput
+                let refusal = Refusal::of(&error, command.as_deref());
+                console.fail(&Failure::CommandLine(refusal))
             }
         }
     }

@@ -77,7 +77,7 @@ pub(super) fn wishes(brief: &BriefDocument) -> WishesDocument {
     };
     WishesDocument {
         goals: brief.goals,
-        limits: brief.limits,
+        limits: brief.limits.clone(),
         temperatures_c: Vec::new(),
         states: brief.ratios.iter().map(own).collect(),
     }

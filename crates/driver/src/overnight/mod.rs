@@ -42,7 +42,7 @@ impl Work for Overnight {
 }
 
 /// The merit of a start that counts towards a target: one that crosses a limit does not.
-fn merit_with_limits_kept(result: &StartResult) -> Option<f64> {
+pub(crate) fn merit_with_limits_kept(result: &StartResult) -> Option<f64> {
     result.found.as_ref().filter(|found| found.limits_kept).map(|found| found.merit)
 }
 

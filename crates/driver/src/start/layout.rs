@@ -142,7 +142,7 @@ fn reason(obstacle: Obstacle) -> NoLayout {
         LimitKind::EdgeThicknessMm | LimitKind::CentreThicknessMm => NoLayout::Thickness,
         LimitKind::SpacingMm | LimitKind::AirMm | LimitKind::EdgeGapMm => NoLayout::Air,
         LimitKind::RadiusMm | LimitKind::Steepness => NoLayout::Curvature,
-        LimitKind::TravelMm => NoLayout::Travel,
+        LimitKind::TravelMm | LimitKind::SlopeMmPerRatio | LimitKind::Monotonic => NoLayout::Travel,
         LimitKind::IncidenceDeg => NoLayout::Ray,
         LimitKind::TrackMm | LimitKind::HousingMm => NoLayout::Track,
         LimitKind::InternalFocus => NoLayout::Focus,

@@ -63,7 +63,7 @@ pub use family::{Family, Sign};
 pub use layout::Layout;
 pub use no_layout::NoLayout;
 pub use ranking::{Ranked, Ranking, Refusals};
-pub use relaxation::{Relaxation, Relaxed};
+pub use relaxation::{InVain, Relaxation, Relaxations, Relaxed};
 pub use score::Score;
 
 use space::{Point, Space};

@@ -9,7 +9,7 @@
 //! | glass, rays, movement | [`layout()`], [`train`] for the geometry alone |
 //! | exit wavefronts | [`wavefronts`] |
 //! | over the ratio | [`movement`] |
-//! | merit against iteration | [`merit_curve`] |
+//! | merit against iteration or start | [`merit_curve`] |
 //! | a sweep | [`sweep_curve`], [`sweep_map`], [`trade`]: axes have a name and a unit, the values are yours, a missing one is a point that failed; [`sweep_picture`] for the results of `sweep` |
 //! | what counts how much | [`fn@bars`] |
 //! | any curve | [`fn@chart`] |

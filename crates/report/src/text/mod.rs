@@ -18,9 +18,9 @@ pub mod ray;
 pub mod retune;
 pub mod retune_lists;
 pub mod start;
-mod states;
+pub(crate) mod states;
 pub mod sweep;
-mod table;
+pub(crate) mod table;
 pub mod temperature;
 pub mod tolerance;
 pub(crate) mod verdict;
@@ -54,10 +54,17 @@ fn sections(parts: impl IntoIterator<Item = String>) -> String {
 /// One warning a paragraph, marked as such.
 #[must_use]
 pub fn warnings(warnings: &[String]) -> String {
-    let lines: Vec<String> = warnings
-        .iter()
-        .map(|warning| paragraph(&format!("warning: {warning}"), WIDTH, "  "))
-        .collect();
+    headed("warning", warnings)
+}
+
+/// One remark a paragraph, on what is well but could be better.
+fn notes(notes: &[String]) -> String {
+    headed("note", notes)
+}
+
+fn headed(head: &str, list: &[String]) -> String {
+    let lines: Vec<String> =
+        list.iter().map(|text| paragraph(&format!("{head}: {text}"), WIDTH, "  ")).collect();
     lines.join("\n")
 }
 

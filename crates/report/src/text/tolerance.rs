@@ -29,17 +29,18 @@ const WORST: usize = 12;
 pub fn told(file: &DesignFile, report: &ToleranceReport, listed: Listed) -> String {
     sections([
         assessment::heading(file),
-        premises(file, report),
-        distributions(&report.monte_carlo),
-        wander(&report.monte_carlo),
-        sensitivities(file, report, listed),
+        paragraph(&premises(file, report), WIDTH, ""),
+        distributions(&report.monte_carlo).text(),
+        wander(&report.monte_carlo).text(),
+        sensitivities_told(file, report, listed),
         balance(file, report.balance.as_ref()),
         warnings(&cautions(report)),
-        verdict(file, report),
+        paragraph(&verdict(file, report), WIDTH, ""),
     ])
 }
 
-fn premises(file: &DesignFile, report: &ToleranceReport) -> String {
+/// What was taken for granted: grade, spread, what is re-adjusted.
+pub(crate) fn premises(file: &DesignFile, report: &ToleranceReport) -> String {
     let spread = match report.spread {
         Spread::Normal => "normal, cut off at the tolerance, which is two sigma",
         Spread::Uniform => "uniform within the tolerance",
@@ -55,12 +56,11 @@ fn premises(file: &DesignFile, report: &ToleranceReport) -> String {
             counted(states, "state")
         )
     };
-    let told = format!("Grade {}; errors are {spread}. {followed}", report.grade.word());
-    paragraph(&told, WIDTH, "")
+    format!("Grade {}; errors are {spread}. {followed}", report.grade.word())
 }
 
 /// How the systems are spread in every state.
-fn distributions(monte_carlo: &MonteCarlo) -> String {
+pub(crate) fn distributions(monte_carlo: &MonteCarlo) -> Table {
     let mut table = Table::new([
         (Column::Left, "state"),
         (Column::Left, "quantity"),
@@ -86,7 +86,7 @@ fn distributions(monte_carlo: &MonteCarlo) -> String {
             ]);
         }
     }
-    table.text()
+    table
 }
 
 fn name(quantity: Quantity) -> &'static str {
@@ -99,7 +99,7 @@ fn name(quantity: Quantity) -> &'static str {
 }
 
 /// How far the beam wanders through the zoom.
-fn wander(monte_carlo: &MonteCarlo) -> String {
+pub(crate) fn wander(monte_carlo: &MonteCarlo) -> Table {
     let mut table = Table::new([
         (Column::Left, "boresight through the zoom, µrad"),
         (Column::Right, "within"),
@@ -131,11 +131,28 @@ fn wander(monte_carlo: &MonteCarlo) -> String {
             row("if all mounts slid", sliding, false);
         }
     }
-    table.text()
+    table
+}
+
+/// What single tolerances do, the worst state each, and what that means.
+fn sensitivities_told(file: &DesignFile, report: &ToleranceReport, listed: Listed) -> String {
+    let table = sensitivities(file, report, listed);
+    let rest = report.sensitivities.len() - table.rows().len();
+    let more = if rest > 0 { format!(" {rest} more: --all.") } else { String::new() };
+    format!("{}\n{}", table.text(), paragraph(&format!("{}{more}", effects(report)), WIDTH, ""))
+}
+
+/// What the numbers of a sensitivity are.
+pub(crate) fn effects(report: &ToleranceReport) -> String {
+    let followed = if report.readjusted.is_empty() { "" } else { ", spacings re-adjusted" };
+    format!(
+        "The effect at the full tolerance in the worst state{followed}; its share of all that is \
+         expected to go amiss, squares in units of what is allowed."
+    )
 }
 
 /// What single tolerances do, the worst state each.
-fn sensitivities(file: &DesignFile, report: &ToleranceReport, listed: Listed) -> String {
+pub(crate) fn sensitivities(file: &DesignFile, report: &ToleranceReport, listed: Listed) -> Table {
     // Of the two about the beam's direction, the one that is required.
     let wander = report.monte_carlo.boresight_wander_within_urad.is_some();
     let mut table = Table::new([
@@ -166,14 +183,7 @@ fn sensitivities(file: &DesignFile, report: &ToleranceReport, listed: Listed) ->
         }));
         table.row(row);
     }
-    let rest = report.sensitivities.len().saturating_sub(most);
-    let followed = if report.readjusted.is_empty() { "" } else { ", spacings re-adjusted" };
-    let note = format!(
-        "The effect at the full tolerance in the worst state{followed}; its share of all that is \
-         expected to go amiss, squares in units of what is allowed.{}",
-        if rest > 0 { format!(" {rest} more: --all.") } else { String::new() }
-    );
-    format!("{}\n{}", table.text(), paragraph(&note, WIDTH, ""))
+    table
 }
 
 /// An effect; what no one could measure is nothing.
@@ -182,7 +192,7 @@ fn effect(size: f64) -> String {
 }
 
 /// A place in few words: the names and numbers of its address.
-fn label(file: &DesignFile, at: &Address) -> String {
+pub(crate) fn label(file: &DesignFile, at: &Address) -> String {
     let at = at.with_names(file.document().value());
     let steps = at.steps();
     let names = steps.iter().enumerate().filter(|(i, _)| i % 2 == 1).map(|(_, step)| *step);
@@ -231,7 +241,8 @@ fn balance(file: &DesignFile, balance: Option<&Balance>) -> String {
     format!("{}\n{}", table.text(), paragraph(&told, WIDTH, ""))
 }
 
-fn cautions(report: &ToleranceReport) -> Vec<String> {
+/// What should be known of the systems that were built.
+pub(crate) fn cautions(report: &ToleranceReport) -> Vec<String> {
     let monte_carlo = &report.monte_carlo;
     let mut cautions = Vec::new();
     if let Some(fault) = &monte_carlo.first_fault {
@@ -253,7 +264,8 @@ fn cautions(report: &ToleranceReport) -> Vec<String> {
     cautions
 }
 
-fn verdict(file: &DesignFile, report: &ToleranceReport) -> String {
+/// The yield, and what costs it most.
+pub(crate) fn verdict(file: &DesignFile, report: &ToleranceReport) -> String {
     let monte_carlo = &report.monte_carlo;
     let [low, high] = monte_carlo.yield_between_percent.map(|percent| fixed(percent, 1));
     let as_given = if report.balance.is_some() { "With the tolerances as given " } else { "" };
@@ -278,7 +290,7 @@ fn verdict(file: &DesignFile, report: &ToleranceReport) -> String {
             fixed(largest.share_percent, 0)
         ));
     }
-    paragraph(&told, WIDTH, "")
+    told
 }
 
 fn shortfall(what: Miss) -> &'static str {

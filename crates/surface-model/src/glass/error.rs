@@ -78,13 +78,10 @@ impl GlassError {
             Self::NoRealIndex { .. } => {
                 Some("check the coefficients and the range of the glass".to_owned())
             }
-            Self::NoThermalTerms { glass } => Some(format!(
-                "choose a glass whose maker tells it, or define your own in \"glasses\": \
-                 {{ \"from\": \"{glass}\", \"index_shift\": 0, \"index_per_k\": … }}"
-            )),
-            Self::NoExpansion { glass } => Some(format!(
-                "choose a glass whose maker tells it, or define your own in \"glasses\": \
-                 {{ \"from\": \"{glass}\", \"index_shift\": 0, \"expansion_per_k\": … }}"
+            Self::NoThermalTerms { glass } | Self::NoExpansion { glass } => Some(format!(
+                "choose a glass whose maker tells it, or define one from your maker's data sheet: \
+                 \"glasses\": {{ \"my-{glass}\": {{ \"from\": \"{glass}\", \"index_shift\": 0, \
+                 \"index_per_k\": …, \"expansion_per_k\": …, \"density_g_cm3\": … }} }}"
             )),
             Self::OutsideTemperatures { .. } => {
                 Some("temperatures are in °C; 20 is what designs are drawn at".to_owned())
@@ -151,7 +148,7 @@ impl LookupError {
 
 /// Shortest wavelength taken for one, nm: no lens material passes light below lithium fluoride's edge near 105 nm
 /// (common practice, no published source for the round figure).
-pub(super) const SHORTEST_NM: f64 = 100.0;
+pub const SHORTEST_NM: f64 = 100.0;
 /// The index of a glass lies above this.
 pub(super) const INDEX_ABOVE: f64 = 1.0;
 /// The index of a glass lies below this; germanium, the highest in use, is near 4.
@@ -362,6 +359,16 @@ pub enum SearchError {
         /// The part before the sign.
         found: String,
     },
+    /// A range whose first end is the larger.
+    #[error("the range in \"{word}\" runs downwards, from {low} to {high}")]
+    Downwards {
+        /// The whole word.
+        word: String,
+        /// Its first end.
+        low: f64,
+        /// Its last end.
+        high: f64,
+    },
     /// Compares with something that is no number.
     #[error("{} in {} is not a number", quoted(found), quoted(word))]
     Number {
@@ -376,6 +383,7 @@ impl SearchError {
     /// What to do about it.
     pub fn advice(&self) -> Option<String> {
         Some(match self {
+            Self::Downwards { low, high, .. } => format!("write {high}..{low}"),
             Self::Quantity { .. } => {
                 "write nd=1.7..1.8 or \"vd<30\"; a maker, a name, a code or a status is given as a plain word"
                     .to_owned()

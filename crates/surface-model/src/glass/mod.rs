@@ -8,6 +8,7 @@
 //! Wavelengths are in air, in nanometres; the dispersion laws themselves take micrometres, as they are published.
 
 mod catalogue;
+mod common_names;
 mod definition;
 mod document;
 mod equivalents;
@@ -28,7 +29,7 @@ use std::sync::Arc;
 pub use catalogue::find;
 pub use document::GlassDocument;
 pub use equivalents::{Equivalent, equivalents};
-pub use error::{DefinitionError, GlassError, LookupError, SearchError};
+pub use error::{DefinitionError, GlassError, LookupError, SHORTEST_NM, SearchError};
 pub use range::WavelengthRange;
 pub use search::search;
 pub(crate) use shelf::GlassShelf;

@@ -36,7 +36,7 @@ impl Request {
         let every = interval(arguments.progress_every)?;
         let stages = stages(&arguments)?;
         let (quiet, force) = (arguments.quiet, arguments.force);
-        let picture = arguments.picture.map(|path| OutputFile::checked(path, force));
+        let picture = arguments.picture.map(|path| OutputFile::picture(path, force));
         Ok(Self {
             file: input::design(&arguments.design)?,
             stages,

@@ -66,7 +66,7 @@ impl Request {
             run,
             picture: arguments
                 .picture
-                .map(|path| OutputFile::checked(path, arguments.force))
+                .map(|path| OutputFile::picture(path, arguments.force))
                 .transpose()?,
             told: match (quiet, arguments.json) {
                 (true, _) => Told::Nothing,
