@@ -113,7 +113,8 @@ impl Parts<'_> {
             told => format!("{option}: {quoted} was given, but {told}"),
         };
         let several = self.one(ContextKind::InvalidArg).ends_with("...");
-        (message, number_advice(&value, several))
+        let is_number = message.ends_with(" is not a number");
+        (message, number_advice(&value, several).filter(|_| is_number))
     }
 
     fn no_choice(&self) -> (String, Option<String>) {
