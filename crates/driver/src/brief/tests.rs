@@ -42,7 +42,8 @@ fn temperatures_go_to_the_designs() {
     let brief = read(value).unwrap();
     assert_eq!(brief.wishes.temperatures_c, [0.0, 40.0]);
     let starts = crate::start::Starts::of(&brief).unwrap();
-    let layout = (0..4096).find_map(|number| starts.layout(&starts.point(number, 1)).ok()).unwrap();
+    let points = starts.points(1);
+    let layout = (0..4096).find_map(|number| starts.layout(&points.point(number)).ok()).unwrap();
     let file = starts.design_file(&layout, &layout.design, "warm and cold").unwrap();
     assert_eq!(file.wishes.temperatures_c, [0.0, 40.0]);
     let outcome = crate::optimise::merit_of(&file);
