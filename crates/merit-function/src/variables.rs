@@ -14,7 +14,7 @@ use surface_model::design::Design;
 use surface_model::document::Address;
 use surface_model::housing::Anchor;
 use surface_model::place::Place;
-use surface_model::reverse::{Quantities, Quantity, Shapes};
+use surface_model::quantities::{Quantities, Quantity, Shapes};
 use surface_model::sequence::{GapId, Sequence};
 use surface_model::temperature::Growth;
 

@@ -14,7 +14,7 @@ use surface_model::document::Address;
 use surface_model::paraxial::{ParaxialRay, ParaxialWeights};
 use surface_model::place::Place;
 use surface_model::pupil::Pupil;
-use surface_model::reverse::{Quantities, Quantity, Shapes};
+use surface_model::quantities::{Quantities, Quantity, Shapes};
 use surface_model::sequence::{Sequence, SurfaceId};
 use surface_model::skew::{ExitSum, RayStart, trace_ray};
 use surface_model::spoilt::FRINGE_NM;
