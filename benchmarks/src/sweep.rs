@@ -4,9 +4,8 @@ use std::fmt::Write;
 use std::path::{Path, PathBuf};
 use std::time::Instant;
 
-use driver::design_file::DesignFile;
 use driver::run::{Budget, Finished, RunFolder, Saving, Share, TakenUp, Tally, Watcher, perform};
-use driver::sweep::{PlanFile, PointResult, Sweep, ask};
+use driver::sweep::{PlanFile, PointResult, Subject, Sweep, ask};
 use surface_model::document::Document;
 
 use crate::page::{Section, Verdict};
@@ -56,8 +55,8 @@ fn run(threads: usize) -> Result<(f64, usize), Failure> {
         Ok(Document::parse(path.display().to_string(), &std::fs::read(&path)?)?)
     };
     let plan = PlanFile::read(read(configs.join("track-and-ratio.json"))?)?;
-    let design = DesignFile::read(read(configs.join(plan.design()))?)?;
-    let sweep = Sweep::new(plan.resolve(&design)?, design.clone());
+    let design = plan.read_subject(read(configs.join(plan.subject_name()))?)?;
+    let sweep = Sweep::new(plan.resolve(&design)?, design.clone(), 1);
     let points = sweep.plan().points.len();
     let place = std::env::temp_dir().join(format!("drawtube-sweep-{}", std::process::id()));
     let began = Instant::now();
@@ -71,7 +70,7 @@ fn run(threads: usize) -> Result<(f64, usize), Failure> {
 fn in_folder(
     place: &Path,
     plan: &PlanFile,
-    design: &DesignFile,
+    design: &Subject,
     sweep: &Sweep,
     threads: usize,
 ) -> Result<(), Failure> {

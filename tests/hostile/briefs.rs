@@ -1,53 +1,9 @@
 //! One value of a shipped brief spoilt at a time.
 
 use std::panic::catch_unwind;
-use std::time::{Duration, Instant};
 
-use driver::brief::BriefFile;
-use driver::start::Starts;
-use surface_model::document::Document;
-
-use super::judge::{finite, refusal};
-use super::mutants::all;
-
-const BRIEFS: [(&str, &str); 3] = [
-    ("river", include_str!("../../configs/river-brief.json")),
-    ("two colours", include_str!("../../configs/two-colour-brief.json")),
-    ("quay", include_str!("../../configs/quay-brief.json")),
-];
-
-/// Points of the space that are looked at.
-const POINTS: u64 = 40;
-/// Longest a brief may take, with room for a slow or busy machine.
-const LONGEST: Duration = Duration::from_secs(10);
-
-/// Reads a brief and looks at some of its layouts; how many there were, or `None` if it was
-/// refused.
-fn judge(bytes: &[u8]) -> Result<Option<usize>, String> {
-    let began = Instant::now();
-    let brief = match Document::parse("spoilt.json", bytes).and_then(BriefFile::read) {
-        Ok(brief) => brief,
-        Err(complaints) => return refusal(&complaints).map(|()| None),
-    };
-    let starts = match Starts::of(&brief) {
-        Ok(starts) => starts,
-        Err(error) if error.to_string().is_empty() => return Err("an error without words".into()),
-        Err(_) => return Ok(Some(0)),
-    };
-    let mut found = 0;
-    for number in 0..POINTS {
-        if let Ok(layout) = starts.layout(&starts.point(number, 1)) {
-            found += 1;
-            finite("the layout", &layout)?;
-            let file = starts.design_file(&layout, &layout.design, "");
-            file.map_err(|complaints| format!("no design file: {complaints}"))?;
-        }
-    }
-    if began.elapsed() > LONGEST {
-        return Err(format!("took {:?}", began.elapsed()));
-    }
-    Ok(Some(found))
-}
+use checks::judges::brief::{BRIEFS, judge};
+use checks::judges::mutants::all;
 
 /// Judges every `stride`-th mutant; how many were refused, and how many layouts there were.
 fn judged(stride: usize) -> (usize, usize) {

@@ -6,9 +6,9 @@ use proptest::prelude::*;
 use proptest::sample::Index;
 use serde_json::{Value, json};
 
-use super::judge::judge;
-use super::mutants::one;
-use super::shipped::{DESIGNS, changed};
+use checks::judges::design::judge;
+use checks::judges::mutants::one;
+use checks::judges::shipped::{DESIGNS, changed};
 
 /// A shipped design with every kind of number free and every surface shaped.
 fn all_free(name: &str) -> String {
@@ -91,7 +91,7 @@ proptest! {
         for (place, change) in wounds {
             // What is JSON no longer cannot be spoilt further.
             let Ok(root) = serde_json::from_str(&text) else { break };
-            text = one(&root, place, change);
+            text = one(&root, |of| place.index(of), |of| change.index(of));
         }
         let verdict = catch_unwind(|| judge(text.as_bytes(), 6));
         let verdict = verdict.unwrap_or_else(|_| Err("a panic".into()));

@@ -5,7 +5,7 @@ use driver::solve::{Settings, Unwatched};
 use merit_function::assessment::assess;
 use serde_json::{Value, json};
 
-use super::shipped::{changed, read};
+use checks::judges::shipped::{changed, read};
 
 /// A shipped design with nothing limited but this, everything free that may be.
 fn limited(name: &str, kind: &str, range: &Value) -> Value {
@@ -48,6 +48,10 @@ fn every_limit_is_kept_from_a_start_that_crosses_it() {
         ("river", "travel_mm", json!({ "min": 15.0 })),
         ("asphere", "travel_mm", json!({ "max": 30.0 })),
         ("asphere", "travel_mm", json!({ "min": 60.0 })),
+        ("river", "slope_mm_per_ratio", json!({ "max": 7.0 })),
+        ("river", "monotonic", json!(["/groups/entry"])),
+        ("river", "monotonic", json!(["/groups/*"])),
+        ("asphere", "slope_mm_per_ratio", json!({ "max": 12.0 })),
         ("river", "incidence_deg", json!({ "max": 4.0 })),
         ("river", "track_mm", json!({ "max": 125.0 })),
         ("river", "track_mm", json!({ "min": 140.0 })),

@@ -10,7 +10,7 @@ use merit_function::block::BlockProblem;
 use serde_json::{Value, json};
 use surface_model::document::Document;
 
-use super::shipped::changed;
+use checks::judges::shipped::changed;
 
 /// A shipped design with `count` states from its first to its last, under as many kinds of limit as
 /// there are.

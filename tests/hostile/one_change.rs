@@ -3,9 +3,9 @@
 use std::collections::HashMap;
 use std::panic::catch_unwind;
 
-use super::judge::{Came, judge};
-use super::mutants::all;
-use super::shipped::DESIGNS;
+use checks::judges::design::{Came, judge};
+use checks::judges::mutants::all;
+use checks::judges::shipped::DESIGNS;
 
 /// Judges every `stride`-th mutant, the first of them `phase`.
 fn judged(stride: usize, phase: usize, iterations: u64) -> HashMap<Came, usize> {

@@ -7,7 +7,7 @@ use merit_function::assessment::assess;
 use serde_json::{Value, json};
 use surface_model::place::Place;
 
-use super::shipped::{changed, read, told, value};
+use checks::judges::shipped::{changed, read, told, value};
 
 fn optimised(value: Value, iterations: u64) -> Result<Optimisation, OptimiseError> {
     let settings = Settings::default().with_max_iterations(iterations).unwrap();

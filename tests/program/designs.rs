@@ -58,6 +58,15 @@ pub fn every_key() -> Value {
                 { "at": "/groups/entry", "radius_fringes": 2.0 },
                 { "at": "/states/6x", "spacing_mm": 0.01 }
             ],
+            "shop": [
+                { "at": "/groups/exit", "outer_diameter_mm": 28.0,
+                  "outer_diameter_off_mm": [-0.05, 0.0], "chamfer_mm": { "min": 0.2, "max": 0.4 },
+                  "imperfections": { "count": 3, "grade_mm": 0.1 },
+                  "scratches": { "count": 1, "width_mm": 0.006 }, "edge_chips_mm": 0.3,
+                  "coating": "as agreed", "stress_birefringence_nm_cm": 10.0,
+                  "bubbles": { "count": 2, "grade_mm": 0.1 }, "inhomogeneity_class": 2,
+                  "striae_class": 3 }
+            ],
             "readjusted": ["/states/*/spacings_mm/1"],
             "rotating": [ { "group": "runner", "lead_mm": 40.0 } ],
             "require": { "wavefront_rms_waves": { "within": 0.07 },

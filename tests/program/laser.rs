@@ -300,3 +300,37 @@ fn extreme_numbers_are_answered_or_refused() {
         }
     }
 }
+
+/// Reflected light that comes to a focus in glass is warned of whether or not a limit asks for it.
+#[test]
+fn a_ghost_in_glass_is_never_passed_over() {
+    let mut seen = [false; 2];
+    for radius in [-118.8063, -14.0, -9.0] {
+        let entry = json!([162.2499, radius]);
+        let changes = [("/groups/0/elements/0/radii_mm", entry), ("/limits", Value::Null)];
+        let document = run_on("assess - --json", &with(&changes)).json();
+        let states = document["hazards"].as_array().unwrap();
+        let ghosts = states.iter().flat_map(|state| state["ghosts"].as_array().unwrap());
+        let deep = ghosts
+            .filter_map(|ghost| ghost["clearance_mm"].as_f64())
+            .any(|clearance| clearance < 0.0);
+        let warnings = document["warnings"].to_string();
+        assert_eq!(warnings.contains("focus inside glass"), deep, "{radius}: {warnings}");
+        seen[usize::from(deep)] = true;
+    }
+    assert!(seen[1], "no ghost of these has its focus in glass");
+}
+
+/// A laser that gives no pulses is told by irradiance.
+#[test]
+fn a_steady_laser_is_told_by_irradiance() {
+    let steady = with(&[
+        ("/beam/pulse_energy_mj", Value::Null),
+        ("/beam/pulse_length_ns", Value::Null),
+        ("/damage_thresholds", Value::Null),
+        ("/limits", Value::Null),
+    ]);
+    let told = run_on("assess -", &steady).out;
+    let ghosts = told.split("ghost reflected").nth(1).unwrap();
+    assert!(ghosts.contains("W/cm²") && !ghosts.contains("J/cm²"), "{ghosts}");
+}

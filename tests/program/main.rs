@@ -1,5 +1,6 @@
 //! The program run as a user runs it.
 
+mod alone;
 mod assess;
 mod cam;
 mod designs;
@@ -11,9 +12,13 @@ mod mistakes;
 mod optimise;
 mod page;
 mod program;
+mod quantities;
 mod readme;
 mod retune;
+mod shipped;
+mod shop;
 mod signals;
+mod slips;
 mod start;
 mod streams;
 mod sweep;

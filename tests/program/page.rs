@@ -16,22 +16,28 @@ struct Shown {
     console: Vec<String>,
 }
 
-fn show(page: &Path) -> Shown {
+/// Runs the browser on a page.
+fn browse(page: &Path, arguments: &[&str]) -> std::process::Output {
     let browser = std::env::var("CHROMIUM").unwrap_or_else(|_| "chromium".into());
     let profile = tempfile::tempdir().unwrap();
-    let output = Command::new(&browser)
+    Command::new(&browser)
         .args(["--headless", "--no-sandbox", "--disable-gpu", "--disable-quic", "--no-first-run"])
         .args(["--disable-background-networking", "--disable-component-update", "--disable-sync"])
-        .args(["--enable-logging=stderr", "--v=0", "--virtual-time-budget=5000", "--dump-dom"])
+        .args(["--enable-logging=stderr", "--v=0", "--virtual-time-budget=5000"])
+        .args(arguments)
         .arg(format!("--user-data-dir={}", profile.path().display()))
         .arg(format!("file://{}", page.display()))
         .output()
         .unwrap_or_else(|error| {
             panic!("the page cannot be tested without a browser: {browser}: {error}")
-        });
+        })
+}
+
+fn show(page: &Path) -> Shown {
+    let output = browse(page, &["--dump-dom"]);
     let document = String::from_utf8_lossy(&output.stdout).into_owned();
     let told = String::from_utf8_lossy(&output.stderr).into_owned();
-    assert!(document.contains("</html>"), "{browser} showed nothing:\n{told}");
+    assert!(document.contains("</html>"), "the browser showed nothing:\n{told}");
     let console = told.lines().filter(|line| line.contains("CONSOLE")).map(str::to_owned);
     Shown { document, console: console.collect() }
 }
@@ -161,4 +167,101 @@ fn the_page_as_it_is_says_nothing_on_the_console() {
     let shown = show(&page);
     assert!(shown.console.is_empty(), "{:?}", shown.console);
     assert!(shown.document.contains("Side by side"));
+}
+
+/// The pages a browser prints of a file: the sizes of their paper, in points.
+fn printed(file: &Path) -> Vec<[f64; 2]> {
+    let pdf = file.with_extension("pdf");
+    browse(file, &["--no-pdf-header-footer", &format!("--print-to-pdf={}", pdf.display())]);
+    let bytes = std::fs::read(&pdf).expect("the browser prints");
+    // The browser writes the objects of pages as plain text: /Type /Page, /MediaBox [0 0 w h].
+    let text = String::from_utf8_lossy(&bytes);
+    let pages = text.split("/Type /Page").skip(1).filter(|rest| !rest.starts_with('s'));
+    let size = |page: &str| {
+        let numbers = page.split("/MediaBox [").nth(1).and_then(|rest| rest.split(']').next());
+        let numbers: Vec<f64> =
+            numbers.unwrap().split_whitespace().map(|n| n.parse().unwrap()).collect();
+        [numbers[2], numbers[3]]
+    };
+    pages.map(size).collect()
+}
+
+/// A4 is 210 mm by 297 mm (ISO 216); a point is 1/72 inch.
+fn is_a4([width, height]: [f64; 2]) -> bool {
+    let near = |points: f64, mm: f64| (points * 25.4 / 72.0 - mm).abs() < 0.5;
+    near(width, 210.0) && near(height, 297.0)
+}
+
+#[test]
+fn every_sheet_prints_on_one_page_of_a4() {
+    let folder = tempfile::tempdir().unwrap();
+    for (design, elements) in
+        [("survey-lidar-to-build", 3), ("two-colour-pairs", 3), ("four-groups-asphere", 4)]
+    {
+        let sheets = folder.path().join(design);
+        let line = format!("report configs/{design}.json --sheets {}", sheets.display());
+        assert_eq!(run(&line).status, 0);
+        let pages = printed(&sheets.join("elements.html"));
+        assert_eq!(pages.len(), elements, "{design}: a page an element");
+        assert!(pages.into_iter().all(is_a4), "{design}");
+    }
+}
+
+#[test]
+fn a_page_tells_the_yield_the_temperatures_and_where_the_design_comes_from() {
+    let folder = tempfile::tempdir().unwrap();
+    let at = |name: &str| folder.path().join(name).display().to_string();
+    // A search from a design that has tolerances, goals at two temperatures, and few starts.
+    let built = std::fs::read_to_string(crate::program::root().join(BUILT)).unwrap();
+    let mut design: Value = serde_json::from_str(&built).unwrap();
+    design["temperatures_c"] = serde_json::json!([20.0, 35.0]);
+    let asked = folder.path().join("asked.json");
+    write_whole(&asked, design.to_string().as_bytes(), Existing::Keep).unwrap();
+    let (night, page) = (at("night"), at("page.html"));
+    let search = format!("overnight {} --run {night} --starts 2 --seed 7", asked.display());
+    assert_eq!(run(&search).status, 0);
+    let best = format!("{night}/best/01.json");
+    assert_eq!(run(&format!("report {best} --systems 30 --seed 3 -o {page}")).status, 0);
+    let shown = show(Path::new(&page));
+    assert!(shown.console.is_empty(), "{:?}", shown.console);
+    let tolerances = run(&format!("tolerance {best} --systems 30 --seed 3 --json")).json();
+    let passed = &tolerances["monte_carlo"]["passed"];
+    for told in [
+        format!("{passed} of 30 systems come out right"),
+        "30 systems built at random, seed 3.".to_owned(),
+        "<h2>Temperature</h2>".to_owned(),
+        "overnight, drawtube ".to_owned(),
+        "multistart".to_owned(),
+        "of 2 finished".to_owned(),
+        "Merit against starts".to_owned(),
+    ] {
+        assert!(shown.document.contains(&told), "{told}");
+    }
+    // A wrong origin is no origin.
+    let other = run(&format!("report {BUILT} --found {night} -o {}", at("other.html")));
+    assert_eq!(other.status, 2, "{}", other.err);
+    assert!(other.err.contains("--found") && !Path::new(&at("other.html")).exists());
+}
+
+/// A shipped design with tolerances.
+const BUILT: &str = "configs/survey-lidar-to-build.json";
+
+#[test]
+fn an_optimisation_is_told_as_its_document_tells_it() {
+    let folder = tempfile::tempdir().unwrap();
+    let at = |name: &str| folder.path().join(name).display().to_string();
+    let (better, page) = (at("better.json"), at("page.html"));
+    let ended = run(&format!("optimise {RIVER} -o {better} --json"));
+    let document = ended.json();
+    let told = folder.path().join("told.json");
+    write_whole(&told, ended.out.as_bytes(), Existing::Keep).unwrap();
+    let told = told.display();
+    assert_eq!(run(&format!("report {better} --found {told} -o {page}")).status, 0);
+    let html = std::fs::read_to_string(&page).unwrap();
+    let history = document["merit_history"][0]["iteration_and_merit"].as_array().unwrap();
+    assert!(history.len() as u64 >= document["iterations"].as_u64().unwrap() / 2);
+    for word in [&document["stopped"], &document["method"]] {
+        assert!(html.contains(word.as_str().unwrap()), "{word}");
+    }
+    assert!(html.contains("Merit against iteration"));
 }

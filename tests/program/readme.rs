@@ -5,7 +5,7 @@ use std::process::Command;
 
 use driver::write_whole::{Existing, write_whole};
 
-use crate::program::{root, without_effort};
+use crate::program::{root, run_on, without_effort};
 
 /// A command line of the README and what it says the program prints.
 struct Block {
@@ -54,5 +54,41 @@ fn every_block_is_what_the_program_prints() {
             .unwrap();
         let told = String::from_utf8([output.stdout, output.stderr].concat()).unwrap();
         assert_eq!(without_effort(told.trim_end()), without_effort(&printed), "$ {line}");
+    }
+}
+
+/// What stands in the README as a whole file is one that works.
+#[test]
+fn every_file_that_is_shown_works() {
+    let readme = std::fs::read_to_string(root().join("README.md")).unwrap();
+    let shown: Vec<&str> = readme
+        .split("```json\n")
+        .skip(1)
+        .map(|rest| rest.split("```").next().unwrap_or_default())
+        .collect();
+    assert!(!shown.is_empty());
+    for file in shown {
+        let ended = run_on("start - --count 1", file);
+        assert_eq!(ended.status, 0, "{}", ended.err);
+    }
+}
+
+/// The table of tolerances says what the grades are.
+#[test]
+fn the_grades_are_those_of_the_program() {
+    use driver::tolerance::{Grade, Kind};
+    let readme = std::fs::read_to_string(root().join("README.md")).unwrap();
+    for kind in Kind::ALL {
+        let word = format!("`{}`", kind.word());
+        let row = readme.lines().find(|line| line.starts_with('|') && line.contains(&word));
+        let row = row.unwrap_or_else(|| panic!("{word} is not in the README"));
+        let cells: Vec<&str> = row.split('|').map(str::trim).collect();
+        for (grade, cell) in
+            [Grade::Ordinary, Grade::Fine, Grade::Finest].into_iter().zip(&cells[3..])
+        {
+            let Some(value) = grade.tolerance(kind) else { continue };
+            let told = cell.split(", ").any(|told| told.parse() == Ok(value));
+            assert!(told, "{word} {}: {cell}, {value}", grade.word());
+        }
     }
 }

@@ -19,6 +19,17 @@ fn plan() -> Value {
     })
 }
 
+/// The river brief in three tubes, the first too short for any layout.
+fn brief_plan() -> Value {
+    json!({
+        "format": "drawtube-plan/1",
+        "title": "Which tube?",
+        "brief": "configs/river-brief.json",
+        "axes": [{ "at": "/housing/track_mm", "values": [20.0, 130.0, 150.0] }],
+        "front": ["/housing/track_mm", "merit"]
+    })
+}
+
 fn sweep(plan: &Value, folder: &Path, more: &str) -> crate::program::Ended {
     run_on(&format!("sweep - --run {} {more}", folder.display()), &plan.to_string())
 }
@@ -50,46 +61,87 @@ fn every_point_is_optimised_and_told() {
 }
 
 #[test]
+fn a_brief_is_answered_at_every_point_or_told_to_have_no_layout() {
+    let folder = tempfile::tempdir().unwrap();
+    let run_folder = folder.path().join("run");
+    let ended = sweep(&brief_plan(), &run_folder, "--progress none");
+    // That there is no layout is an answer, not a failure.
+    assert_eq!(ended.status, 0, "{}", ended.err);
+    insta::assert_snapshot!(ended.out.replace(&run_folder.display().to_string(), "RUN"));
+    let (json, table) = points(&run_folder);
+    let document: Value = serde_json::from_slice(&json).unwrap();
+    assert_eq!((&document["failed"], &document["without_layout"]), (&json!(0), &json!(1)));
+    assert!(String::from_utf8(table).unwrap().contains(",no layout: "));
+    for point in document["points"].as_array().unwrap() {
+        let design = &point["reached"]["design"];
+        if design.is_null() {
+            assert!(point["no_layout"].is_string() && point["fault"].is_null(), "{point}");
+            continue;
+        }
+        assert_eq!(design["housing"]["track_mm"], point["values"][0]);
+        let ended = run_on("assess - --json", &design.to_string());
+        assert_eq!(ended.json()["merit"]["total"], point["reached"]["merit"]);
+        assert_eq!(ended.json()["meets"], true, "{point}");
+    }
+    let required = sweep(&brief_plan(), &run_folder, "--quiet --require");
+    assert_eq!(required.status, 3, "{}", required.err);
+}
+
+#[test]
 fn threads_parts_and_interruptions_change_nothing() {
+    end_in_the_same_bytes(&plan(), 5);
+    end_in_the_same_bytes(&brief_plan(), 2);
+}
+
+/// Runs a plan in many ways; `first_half` points are in part 1 of 2.
+fn end_in_the_same_bytes(plan: &Value, first_half: u64) {
     let folder = tempfile::tempdir().unwrap();
     let at = |name: &str| folder.path().join(name);
-    sweep(&plan(), &at("one"), "--threads 1 --quiet");
+    sweep(plan, &at("one"), "--threads 1 --quiet");
     let whole = points(&at("one"));
-    sweep(&plan(), &at("three"), "--threads 3 --quiet");
+    sweep(plan, &at("three"), "--threads 3 --quiet");
     assert_eq!(points(&at("three")), whole);
 
     // Left at once, again and again; then to the end.
     for _ in 0..3 {
-        let ended = sweep(&plan(), &at("left"), "--time-limit 0 --quiet");
+        let ended = sweep(plan, &at("left"), "--time-limit 0 --quiet");
         assert!(matches!(ended.status, 75 | 0), "{}", ended.err);
     }
-    assert_eq!(sweep(&plan(), &at("left"), "--quiet").status, 0);
+    assert_eq!(sweep(plan, &at("left"), "--quiet").status, 0);
     assert_eq!(points(&at("left")), whole);
 
     // In parts, of which the second begins first.
-    assert_eq!(sweep(&plan(), &at("parts"), "--part 2/2 --quiet").status, 0);
+    assert_eq!(sweep(plan, &at("parts"), "--part 2/2 --quiet").status, 0);
     let gather = format!("gather {} -o {}", at("parts").display(), at("all").display());
     let early = run(&gather);
     assert_eq!(early.status, 3, "{}", early.err);
-    assert!(early.out.contains("--part 1/2  5 points missing"), "{}", early.out);
-    assert_eq!(sweep(&plan(), &at("parts"), "--part 1/2 --quiet").status, 0);
-    assert_eq!(run(&gather).status, 0);
+    let missing = format!("--part 1/2  {first_half} points missing");
+    assert!(early.out.contains(&missing), "{}", early.out);
+    assert_eq!(sweep(plan, &at("parts"), "--part 1/2 --quiet").status, 0);
+    let picture = format!("--picture {}", at("all.svg").display());
+    assert_eq!(run(&format!("{gather} {picture}")).status, 0);
+    assert!(std::fs::read_to_string(at("all.svg")).unwrap().contains("The trade"));
     assert_eq!(points(&at("all")), whole);
 }
 
 #[test]
 fn killed_it_goes_on_and_ends_in_the_same_bytes() {
+    let mut of_design = plan();
+    of_design["axes"][0]["range"]["steps"] = json!(6);
+    of_design["starts"] = json!(3);
+    survives_kills(of_design, "design");
+    survives_kills(brief_plan(), "brief");
+}
+
+/// `about` is what the plan names.
+fn survives_kills(mut plan: Value, about: &str) {
     let folder = tempfile::tempdir().unwrap();
-    let mut plan = plan();
-    plan["axes"][0]["range"]["steps"] = json!(6);
-    plan["starts"] = json!(3);
     let whole = folder.path().join("whole");
     assert_eq!(sweep(&plan, &whole, "--quiet").status, 0);
     let file = folder.path().join("plan.json");
-    plan["design"] = json!(root().join("configs/river-lidar-2x-6x.json"));
-    std::fs::copy(root().join("configs/river-lidar-2x-6x.json"), folder.path().join("d.json"))
-        .unwrap();
-    plan["design"] = json!("d.json");
+    let named = root().join(plan[about].as_str().unwrap());
+    std::fs::copy(named, folder.path().join("named.json")).unwrap();
+    plan[about] = json!("named.json");
     driver::write_whole::write_whole(
         &file,
         plan.to_string().as_bytes(),
@@ -154,6 +206,14 @@ fn what_is_wrong_in_a_plan_is_told_with_its_place() {
         wrong(&|plan| plan["sample"] = json!({ "kind": "sobol", "points": 4 })),
         wrong(&|plan| plan["front"] = json!(["merit", "worst_rms_wave"])),
         wrong(&|plan| plan["starts"] = json!(0)),
+        wrong(&|plan| plan["brief"] = json!("configs/river-brief.json")),
+        wrong(&|plan| drop(plan.as_object_mut().unwrap().remove("design"))),
+        wrong(&|plan| plan["design"] = json!("configs/river-brief.json")),
+        wrong(&|plan| {
+            *plan = brief_plan();
+            plan["axes"][0]["at"] = json!("/housing/trak_mm");
+            plan["front"][0] = json!("/beam/diameter_mm");
+        }),
         wrong(&|plan| plan["format"] = json!("drawtube/1")),
         wrong(&|plan| plan["design"] = json!("configs/none.json")),
         wrong(&|plan| plan["axes"][0]["range"]["steps"] = json!(100_000)),

@@ -1,6 +1,7 @@
 //! Checks against published values; each names its source.
 
 mod aberration;
+mod by_hand;
 mod certified_regression;
 mod first_order;
 mod glass;

@@ -5,7 +5,7 @@ use std::f64::consts::{PI, TAU};
 use merit_function::assessment::assess;
 use surface_model::far_field::far_field;
 use surface_model::gaussian::{GaussianBeam, GaussianPath, clipped, peak_per_cm2};
-use surface_model::ghost::{Ghost, GhostFocus, GhostWay};
+use surface_model::ghost::{Ghost, GhostFocus, GhostWay, fresnel_reflectance, mode_overlap};
 use surface_model::pointing::pointing;
 use surface_model::quadrature::gauss_legendre;
 use surface_model::surface::Surface;
@@ -225,4 +225,84 @@ fn a_tilted_beam_leaves_tilted_by_the_ratio() {
     // The beam turns about the first vertex and is off the axis by the angle times the distance.
     assert!((turned.exit_shift_mm - 160.0 * 1e-3).abs() < 1e-4, "{turned:?}");
     assert!(turned.rms_waves < 1e-4 && turned.vignetted == 0.0);
+}
+
+/// Past its waist a beam widens as d² = d₀² + θ²z², with θ = 4λM²/(πd₀) (ISO 11146-1): what is told
+/// of the beam behind an expander and at a range.
+#[test]
+fn a_beam_widens_with_its_range() {
+    for (waist, m_squared, at) in [(0.4, 1.0, 0.0), (3.0, 1.4, -2000.0), (8.0, 2.2, 5000.0)] {
+        let beam = beam(waist, m_squared, -at);
+        let full_angle = 4.0 * NM * 1e-6 * m_squared / (PI * 2.0 * waist);
+        assert!((2.0 * beam.half_divergence_rad / full_angle - 1.0).abs() < 1e-12);
+        for range in [0.0, 1e3, 1e5, 1e6] {
+            let diameter = (4.0 * waist * waist + (full_angle * (range - at)).powi(2)).sqrt();
+            assert!((2.0 * beam.radius_mm(range) / diameter - 1.0).abs() < 1e-12);
+        }
+    }
+}
+
+/// Uncoated glass of index 1.5 reflects 4 % (E. Hecht, *Optics*, §4.6); light that two surfaces
+/// reflect is at most the product.
+#[test]
+fn a_ghost_is_as_strong_as_its_reflections() {
+    assert!((fresnel_reflectance(1.0, 1.5) - 0.04).abs() < 1e-15);
+    assert!((fresnel_reflectance(1.5, 1.0) - 0.04).abs() < 1e-15);
+    assert!((Ghost::Single { at: 1 }.strength(&[0.04, 0.01]) - 0.01).abs() < 1e-15);
+    assert!((Ghost::Double { first: 1, second: 0 }.strength(&[0.04, 0.01]) - 4e-4).abs() < 1e-15);
+}
+
+/// The share that couples back, against the overlap integral |∫E₁E₂* 2πr dr|² of two Gaussian
+/// fields of unit power (H. Kogelnik, *Coupling and conversion coefficients for optical modes*,
+/// 1964) by quadrature.
+#[test]
+fn mode_overlap_by_quadrature() {
+    let wavenumber = TAU / (NM * 1e-6);
+    for ((w1, c1), (w2, c2)) in
+        [((1.0, 0.0), (2.0, 0.0)), ((1.0, 1e-4), (1.5, -3e-4)), ((0.3, 2e-3), (0.25, 5e-4))]
+    {
+        let (mut real, mut imaginary) = (0.0, 0.0);
+        let reach = 8.0 * f64::min(w1, w2);
+        for (x, weight) in gauss_legendre(400) {
+            let r = x * reach;
+            let size = 4.0 * r * weight * reach / (w1 * w2);
+            let size = size * (-r * r * (1.0 / (w1 * w1) + 1.0 / (w2 * w2))).exp();
+            let (sin, cos) = (0.5 * wavenumber * r * r * (c1 - c2)).sin_cos();
+            real += size * cos;
+            imaginary += size * sin;
+        }
+        let share = real * real + imaginary * imaginary;
+        let told = mode_overlap((w1, c1), (w2, c2), NM);
+        assert!((told - share).abs() < 1e-9, "{told} {share}");
+    }
+}
+
+/// A tilted beam is off the axis behind a long tube of air, where a clear diameter cuts it: its
+/// share by summing the cross-section over a fine square grid.
+#[test]
+fn a_displaced_beam_is_vignetted() {
+    let (radius, clear, length, angle) = (1.0, 1.6, 400.0, 2e-3_f64);
+    let surfaces = vec![Surface::sphere(0.0, 20.0), Surface::sphere(0.0, clear)];
+    let train = Train::new(surfaces, vec![length], vec![1.0, 1.0, 1.0]).unwrap();
+    let traced = TracedBeam::new(radius, 1.5, NM).unwrap();
+    let told = pointing(&train, &traced, angle).unwrap();
+    let (mut all, mut missing) = (0.0, 0.0);
+    let cells = 1500;
+    for i in 0..cells {
+        for k in 0..cells {
+            let at = |n: i32| 1.5 * (2.0 * (f64::from(n) + 0.5) / f64::from(cells) - 1.0);
+            let (x, y) = (at(i), at(k));
+            let r2 = x * x + y * y;
+            if r2 > 1.5 * 1.5 {
+                continue;
+            }
+            let power = (-2.0 * r2 / (radius * radius)).exp();
+            all += power;
+            if x.hypot(y + length * angle.tan()) > clear {
+                missing += power;
+            }
+        }
+    }
+    assert!((told.vignetted - missing / all).abs() < 3e-4, "{told:?} {}", missing / all);
+    assert!((told.exit_shift_mm - length * angle.tan()).abs() < 1e-6);
 }

@@ -15,7 +15,7 @@ fn read(value: Value) -> DesignFile {
 }
 
 fn changed(file: &DesignFile, text: &str) -> DesignFile {
-    apply(file, &[Change::read("--change", text).unwrap()]).unwrap().file
+    apply(file, &[Change::read("--change", text, file.document().value()).unwrap()]).unwrap().file
 }
 
 /// One lens in collimated light.
@@ -48,7 +48,7 @@ fn a_melt_shifts_collimation_as_the_lensmakers_equation_says() {
         let n = find("N-BK7").unwrap().index(587.5618).unwrap();
         let shift = 2e-4;
         let change = format!("/groups/lens/elements/0/glasses/0={}@587.5618", n + shift);
-        let changes = [Change::read("--change", &change).unwrap()];
+        let changes = [Change::read("--change", &change, file.document().value()).unwrap()];
         let told = retune(&file, &changes, &[], &Settings::default(), &mut Unwatched).unwrap();
         let slope_urad =
             |moving| told.stage(moving).unwrap().assessment.states[0].exit_slope_urad.unwrap();
@@ -115,7 +115,8 @@ fn a_glass_of_the_same_code_costs_what_its_index_difference_says() {
     assert!((cost - expected).abs() < 1e-2 * expected.abs(), "{cost:e}, {expected:e} predicted");
 
     // The program's own account of it, from the reverse sweep.
-    let changes = [Change::read("--change", &format!("{all}=H-K9L")).unwrap()];
+    let changes =
+        [Change::read("--change", &format!("{all}=H-K9L"), file.document().value()).unwrap()];
     let told = retune(&file, &changes, &[], &settings, &mut Unwatched).unwrap();
     let by_derivatives = told.blame[0].by_derivatives.unwrap();
     assert!((by_derivatives / expected - 1.0).abs() < 1e-4, "{by_derivatives:e}, {expected:e}");

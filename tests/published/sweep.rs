@@ -29,8 +29,8 @@ fn every_point_is_the_minimum_that_scipy_finds() {
     let reference = read("tests/published/data/scipy-sweep.json").value().clone();
     let plan_file =
         PlanFile::read(Document::from_value("plan", reference["plan"].clone())).unwrap();
-    let design = DesignFile::read(read(plan_file.design())).unwrap();
-    let sweep = Sweep::new(plan_file.resolve(&design).unwrap(), design);
+    let design = plan_file.read_subject(read(plan_file.subject_name())).unwrap();
+    let sweep = Sweep::new(plan_file.resolve(&design).unwrap(), design, 1);
     let theirs = reference["points"].as_array().unwrap();
     assert_eq!(sweep.plan().points.len(), theirs.len());
     for (number, values) in sweep.plan().points.iter().enumerate() {

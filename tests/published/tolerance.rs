@@ -220,6 +220,48 @@ fn a_rotating_mount_carries_its_decentre_round() {
     assert!((same / sliding - 1.0).abs() < 1e-3, "{same} {sliding}");
 }
 
+/// The same sum of squares for the change of direction between two states: no larger one than
+/// these tolerances foretell for the two furthest apart, and hardly a smaller one.
+#[test]
+fn the_beam_wanders_as_the_sensitivities_say() {
+    let file = river(json!({
+        "grade": "finest", "spread": "uniform", "readjusted": [],
+        "own": [ { "at": "/groups", "radius_percent": 0.002, "thickness_mm": 0.0005,
+                   "index": 0.000005, "irregularity_fringes": 0.0, "wedge_mrad": 0.02,
+                   "element_tilt_mrad": 0.05, "group_tilt_mrad": 0.05,
+                   "element_decentre_mm": 0.002, "group_decentre_mm": 0.002 },
+                 { "at": "/states", "spacing_mm": 0.0005 } ]
+    }));
+    let report = tolerance(&file, &settings(1500), &mut Unwatched).unwrap();
+    let squares = report.sensitivities.iter().map(|sensitivity| sensitivity.wander_urad.powi(2));
+    let foretold = (0.5 * squares.sum::<f64>()).sqrt();
+    let built = report.monte_carlo.boresight_wander_urad.rms;
+    // The widest of three changes is that between the outer states but for a few systems.
+    assert!((built / foretold - 1.0).abs() < 0.06, "{built} {foretold}");
+}
+
+/// Balanced tolerances never cost more than those given and yield less, and what is told of the
+/// yield is what the same systems do with them.
+#[test]
+fn balancing_never_costs_more_for_less() {
+    for (grade, wanted) in [("finest", 50.0), ("fine", 90.0), ("ordinary", 90.0)] {
+        let file = river(json!({ "grade": grade }));
+        let asked = ToleranceSettings { balance_percent: Some(wanted), ..settings(40) };
+        let report = tolerance(&file, &asked, &mut Unwatched).unwrap();
+        let balance = report.balance.unwrap();
+        assert_eq!(balance.given_percent, report.monte_carlo.yield_percent);
+        if balance.given_percent >= wanted {
+            assert!(balance.reached && balance.relative_cost <= 1.0, "{grade}: {balance:?}");
+        } else {
+            assert!(balance.yield_percent > balance.given_percent, "{grade}: {balance:?}");
+        }
+        assert_eq!(balance.reached, balance.yield_percent >= wanted);
+        let costs = balance.tolerances.iter().map(|each| each.from / each.to);
+        let cost = costs.sum::<f64>() / balance.tolerances.len() as f64;
+        assert!((balance.relative_cost - cost).abs() < 1e-12);
+    }
+}
+
 /// The bits do not depend on the number of threads.
 #[test]
 fn any_number_of_threads_builds_the_same_systems() {

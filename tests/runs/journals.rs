@@ -76,7 +76,7 @@ fn a_run_of_something_else_is_told_by_what_differs() {
     let run = scene.run_folder().join("run.json");
     let text = std::fs::read_to_string(&run).unwrap();
     for (from, to, told) in [
-        ("\"version\": \"", "\"version\": \"9", "the program's version is 9"),
+        ("\"version\": \"", "\"version\": \"9", "the program's version is \"9"),
         ("drawtube-run/1", "drawtube-run/7", "it was written for a newer drawtube"),
         ("\"seed\": 0", "\"seed\": x", "run.json: "),
     ] {

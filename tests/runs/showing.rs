@@ -31,6 +31,31 @@ fn a_finished_run_is_shown_and_left_alone() {
 }
 
 #[test]
+fn a_search_is_drawn_when_it_ends_when_it_is_shown_and_when_it_is_gathered() {
+    let scene = Scene::new();
+    let read = |name: &str| std::fs::read_to_string(scene.path().join(name)).unwrap();
+    let output = scene.command(Program::Drawtube, "--picture end.svg").output().unwrap();
+    assert_eq!(output.status.code(), Some(0), "{}", said(&output));
+    let drawn = read("end.svg");
+    for word in ["Quay gauge, 2x", "Merit against time", "best so far", "Layout, to scale"] {
+        assert!(drawn.contains(word), "{word}: {drawn}");
+    }
+    let rings = drawn.matches("<circle").count();
+    assert_eq!(rings as u64, STARTS + 1, "a ring a start and one for the key: {drawn}");
+    for line in [
+        "overnight --run run --show --picture shown.svg",
+        "gather run -o all --picture gathered.svg",
+    ] {
+        let output = scene.other(line);
+        assert_eq!(output.status.code(), Some(0), "{}", said(&output));
+        let again = scene.other(line);
+        assert_eq!(again.status.code(), Some(7), "{}", said(&again));
+        assert_eq!(scene.other(&format!("{line} --force")).status.code(), Some(0));
+    }
+    assert_eq!((read("shown.svg"), read("gathered.svg")), (drawn.clone(), drawn));
+}
+
+#[test]
 fn a_log_gets_plain_lines() {
     let scene = Scene::new();
     let more = "--progress plain --progress-every 0 --threads 1";

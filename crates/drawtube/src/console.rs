@@ -32,8 +32,9 @@ impl Console {
 
     /// Prints a result for people, with a newline at its end.
     pub(crate) fn print(&self, text: &str) -> Result<(), Failure> {
+        let text = harmless(text);
         let mut painted =
-            if colour::is_wanted(&io::stdout()) { colour::paint(text) } else { text.to_owned() };
+            if colour::is_wanted(&io::stdout()) { colour::paint(&text) } else { text };
         painted.push('\n');
         self.print_exactly(&painted)
     }
@@ -64,7 +65,8 @@ impl Console {
     /// Says something on standard error. There is no one to tell if that fails.
     pub(crate) fn say(&self, text: &str) {
         let err = io::stderr();
-        let text = if colour::is_wanted(&err) { colour::paint(text) } else { text.to_owned() };
+        let text = harmless(text);
+        let text = if colour::is_wanted(&err) { colour::paint(&text) } else { text };
         let _ = writeln!(err.lock(), "{text}");
     }
 
@@ -100,5 +102,29 @@ impl Console {
             }
         }
         failure.status()
+    }
+}
+
+/// A text for people without anything that a terminal would act upon: the names in somebody else's
+/// file or folder may hold it.
+fn harmless(text: &str) -> String {
+    let mut out = String::with_capacity(text.len());
+    for c in text.chars() {
+        if c.is_control() && !matches!(c, '\n' | '\t') {
+            out.extend(c.escape_default());
+        } else {
+            out.push(c);
+        }
+    }
+    out
+}
+
+#[cfg(test)]
+mod tests {
+    use super::harmless;
+
+    #[test]
+    fn what_a_terminal_would_act_upon_is_told_instead() {
+        assert_eq!(harmless("a\tµ\n\u{1b}[31m\r\u{9b}"), "a\tµ\n\\u{1b}[31m\\r\\u{9b}");
     }
 }

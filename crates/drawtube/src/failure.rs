@@ -9,25 +9,27 @@ use driver::retune::RetuneError;
 use driver::run::{RunError, ShareError};
 use driver::search::SearchError as DesignSearchError;
 use driver::solve::SettingsError;
-use driver::start::StartError;
 use driver::temperature::AtTemperatureError;
 use driver::tolerance::ToleranceError;
 use driver::write_whole::WriteError;
+use merit_function::movement::NoWay;
 use report::RowsError;
 use report::ray::RayError;
 use report::start::Impossible;
+use report::text::{WIDTH, paragraph};
 use serde_json::{Value, json};
-use surface_model::document::{Complaints, nearest, quoted};
+use surface_model::document::{Complaints, nearest, quoted, system_words};
 use surface_model::glass::{GlassError, LookupError, SearchError};
 
 use crate::exit_status::ExitStatus;
+use crate::refusal::Refusal;
 
 /// Why a command could not do what it was asked.
 #[derive(Debug, thiserror::Error)]
 pub(crate) enum Failure {
     /// Not a command line of this program.
-    #[error("{}", message_of(.0))]
-    CommandLine(clap::Error),
+    #[error(transparent)]
+    CommandLine(Refusal),
     /// A value on the command line is out of range.
     #[error("{option}: {found}, but it must be {constraint}")]
     Argument {
@@ -42,7 +44,7 @@ pub(crate) enum Failure {
     #[error(transparent)]
     Settings(#[from] SettingsError),
     /// The file cannot be opened.
-    #[error("{label} cannot be opened: {source}")]
+    #[error("{label} cannot be opened: {}", system_words(.source))]
     Open {
         /// What the file is called.
         label: String,
@@ -75,9 +77,6 @@ pub(crate) enum Failure {
     /// A table could not be laid out.
     #[error("the table cannot be laid out: {0}")]
     Table(Box<dyn std::error::Error + Send + Sync>),
-    /// The brief contradicts itself.
-    #[error(transparent)]
-    Start(#[from] StartError),
     /// No layout does what a brief asks.
     #[error("{}", .0.message)]
     Impossible(Impossible),
@@ -117,7 +116,7 @@ pub(crate) enum Failure {
     #[error("--part auto: {0}")]
     NoPart(String),
     /// The journal of a run could not be written to its end.
-    #[error("{} could not be written to its end: {source}", .path.display())]
+    #[error("{} could not be written to its end: {}", .path.display(), system_words(.source))]
     Unsaved {
         /// The run folder.
         path: PathBuf,
@@ -128,7 +127,7 @@ pub(crate) enum Failure {
     #[error(transparent)]
     Write(#[from] WriteError),
     /// A folder cannot be made.
-    #[error("the folder {} cannot be made: {source}", .path.display())]
+    #[error("the folder {} cannot be made: {}", .path.display(), system_words(.source))]
     Folder {
         /// Which.
         path: std::path::PathBuf,
@@ -136,7 +135,7 @@ pub(crate) enum Failure {
         source: io::Error,
     },
     /// Standard output takes nothing more.
-    #[error("standard output cannot be written: {0}")]
+    #[error("standard output cannot be written: {}", system_words(.0))]
     StandardOutput(io::Error),
     /// A result could not be made into a document.
     #[error("the result cannot be written as JSON: {0}")]
@@ -151,7 +150,7 @@ pub(crate) enum Failure {
     #[error("no method was run")]
     NoStage,
     /// Signals cannot be listened to.
-    #[error("signals cannot be listened to: {0}")]
+    #[error("signals cannot be listened to: {}", system_words(.0))]
     Signals(io::Error),
 }
 
@@ -196,8 +195,7 @@ impl Failure {
             Self::Cam(CamError::State { .. }) => ExitStatus::Failed,
             Self::Cam(_) => ExitStatus::WrongInput,
             Self::Ray(RayError::Glass(_) | RayError::Direction { .. }) => ExitStatus::WrongInput,
-            Self::Start(_)
-            | Self::Impossible(_)
+            Self::Impossible(_)
             | Self::NoSuchRank { .. }
             | Self::Ray(_)
             | Self::Document(_)
@@ -217,7 +215,7 @@ impl Failure {
     /// What to do about it.
     fn advice(&self) -> Option<String> {
         match self {
-            Self::CommandLine(error) => tip_of(error),
+            Self::CommandLine(refusal) => refusal.advice.clone(),
             Self::NoState { asked, names } => {
                 let all: Vec<&str> = names.iter().map(String::as_str).collect();
                 Some(match nearest(asked, all.iter().copied()) {
@@ -236,11 +234,13 @@ impl Failure {
             }
             Self::Tolerance(error) => advice_on_tolerances(error),
             Self::Temperature(AtTemperatureError::Temperature(error)) => error.advice(),
-            Self::Start(error) => Some(error.advice()),
             Self::Impossible(impossible) => Some(impossible.advice.clone()),
             Self::Lookup(error) => error.advice(),
             Self::Glass(error) | Self::Ray(RayError::Glass(error)) => error.advice(),
             Self::Search(error) => error.advice(),
+            Self::Write(WriteError::NoFolder { .. }) => {
+                Some("make the folder first, or choose another place".to_owned())
+            }
             Self::Write(WriteError::Exists(_)) => {
                 Some("give --force to replace it, or choose another name".to_owned())
             }
@@ -252,6 +252,9 @@ impl Failure {
     pub(crate) fn text(&self) -> String {
         if let Self::Input(complaints) = self {
             return complaints.to_string();
+        }
+        if let Self::Impossible(impossible) = self {
+            return told_at_length(impossible);
         }
         match self.advice() {
             Some(advice) => format!("drawtube: {self}\n  {advice}"),
@@ -281,18 +284,12 @@ impl Failure {
     }
 }
 
-/// What clap found, in one line.
-fn message_of(error: &clap::Error) -> String {
-    let told = error.render().to_string();
-    let first = told.split("\n\n").next().unwrap_or_default();
-    let words: Vec<&str> = first.split_whitespace().collect();
-    words.join(" ").trim_start_matches("error: ").to_owned()
-}
-
-/// What clap advises.
-fn tip_of(error: &clap::Error) -> Option<String> {
-    let told = error.render().to_string();
-    told.lines().find_map(|line| Some(line.trim().strip_prefix("tip: ")?.to_owned()))
+/// A failure of many words, in lines that fit a terminal.
+fn told_at_length(impossible: &Impossible) -> String {
+    let message = paragraph(&format!("drawtube: {}", impossible.message), WIDTH, "");
+    let advice = impossible.advice.lines();
+    let advice = advice.map(|line| paragraph(&format!("  {}", line.trim()), WIDTH, "    "));
+    std::iter::once(message).chain(advice).collect::<Vec<_>>().join("\n")
 }
 
 fn status_of(error: &OptimiseError) -> ExitStatus {
@@ -342,6 +339,10 @@ fn advice_on_run(error: &RunError) -> Option<&'static str> {
         RunError::AnotherRun { .. } => {
             Some("go on with what was asked there, or name another folder")
         }
+        RunError::BrokenOff { .. } => Some(
+            "what is finished is kept there; please send its asked.json and run.json to whoever \
+             makes the program",
+        ),
         RunError::Damaged { path, .. } if path.ends_with("journal.jsonl") => Some(
             "take the damaged line out of the file (keep a copy): what it held is computed again",
         ),
@@ -368,7 +369,7 @@ fn advice_on(error: &OptimiseError) -> Option<String> {
 fn advice_on_cam(error: &CamError) -> Option<String> {
     let advice = match error {
         CamError::NothingMoves => "take a group out of the housing's \"fixed\"",
-        CamError::OneRatio => "give at least two states with different ratios",
+        CamError::Way(NoWay::OneRatio) => "give at least two states with different ratios",
         CamError::State { .. } => "optimise the design first; assess tells how far off it is",
         CamError::Glass(error) => return error.advice(),
         _ => return None,

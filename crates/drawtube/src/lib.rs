@@ -16,8 +16,11 @@ mod input;
 mod output_file;
 mod part;
 mod progress;
+mod refusal;
 mod run_progress;
+mod run_request;
 mod signals;
+mod told;
 
 use std::process::ExitCode;
 

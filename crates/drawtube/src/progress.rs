@@ -38,14 +38,21 @@ impl Manner {
     }
 }
 
-/// The time between two plain lines, from `--progress-every`.
-pub(crate) fn interval(seconds: f64) -> Result<Duration, Failure> {
-    Duration::try_from_secs_f64(seconds).map_err(|_| Failure::Argument {
-        option: "--progress-every",
-        found: seconds.to_string(),
-        constraint: "a number of seconds, zero or positive",
+/// A time given with an option, in units of so many seconds.
+pub(crate) fn duration(
+    option: &'static str,
+    value: f64,
+    seconds: f64,
+) -> Result<Duration, Failure> {
+    Duration::try_from_secs_f64(value * seconds).map_err(|_| Failure::Argument {
+        option,
+        found: value.to_string(),
+        constraint: ZERO_OR_MORE,
     })
 }
+
+/// What a time or a merit given with an option has to be.
+pub(crate) const ZERO_OR_MORE: &str = "a number, zero or positive";
 
 /// How the merit fell: iteration and merit.
 pub(crate) type MeritHistory = Vec<(u64, f64)>;

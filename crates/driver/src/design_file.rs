@@ -119,7 +119,7 @@ impl DesignFile {
 }
 
 /// Goals at other temperatures need to know how everything changes with temperature.
-fn silent_about_temperature(design: &Design, wishes: &Wishes) -> Option<Complaint> {
+pub(crate) fn silent_about_temperature(design: &Design, wishes: &Wishes) -> Option<Complaint> {
     let listed = wishes.temperatures_c.iter().enumerate();
     listed.into_iter().find_map(|(i, &temperature_c)| {
         let error = design.at_temperature(temperature_c).err()?;

@@ -15,19 +15,33 @@ pub(crate) struct DocumentKind {
     stem: &'static str,
     newest: u32,
     called: &'static str,
+    /// The commands that take one.
+    taken_by: &'static str,
 }
 
 /// Design files.
-pub(crate) const DESIGN: DocumentKind =
-    DocumentKind { stem: "drawtube", newest: 1, called: "a design" };
+pub(crate) const DESIGN: DocumentKind = DocumentKind {
+    stem: "drawtube",
+    newest: 1,
+    called: "a design",
+    taken_by: "assess and optimise take it",
+};
 
 /// Briefs.
-pub(crate) const BRIEF: DocumentKind =
-    DocumentKind { stem: "drawtube-brief", newest: 1, called: "a brief" };
+pub(crate) const BRIEF: DocumentKind = DocumentKind {
+    stem: "drawtube-brief",
+    newest: 1,
+    called: "a brief",
+    taken_by: "start makes designs of it",
+};
 
 /// Sweep plans.
-pub(crate) const PLAN: DocumentKind =
-    DocumentKind { stem: "drawtube-plan", newest: 1, called: "a sweep plan" };
+pub(crate) const PLAN: DocumentKind = DocumentKind {
+    stem: "drawtube-plan",
+    newest: 1,
+    called: "a sweep plan",
+    taken_by: "sweep takes it",
+};
 
 const KINDS: [DocumentKind; 3] = [DESIGN, BRIEF, PLAN];
 
@@ -47,7 +61,9 @@ impl DocumentKind {
             newer.then(|| "this file was written for a newer drawtube".to_owned())
         } else {
             let other = KINDS.iter().find(|kind| kind.stem == stem);
-            other.map(|other| format!("this is {}, not {}", other.called, self.called))
+            other.map(|other| {
+                format!("this is {}, not {}: {}", other.called, self.called, other.taken_by)
+            })
         };
         let at = Address::root().key("format");
         Err(document.refuse([Complaint {
@@ -65,4 +81,21 @@ pub(crate) fn part<T: JsonSchema>() -> Schema {
     let settings =
         SchemaSettings::draft2020_12().with(|settings| settings.inline_subschemas = true);
     settings.into_generator().into_root_schema_for::<T>()
+}
+
+#[cfg(test)]
+mod tests {
+    use surface_model::document::unchecked_keywords;
+
+    /// A schema may say more than the check understands; then the check would be laxer than it.
+    #[test]
+    fn nothing_that_the_schemas_say_is_passed_over() {
+        for schema in [
+            crate::design_file::design_schema(),
+            crate::brief::brief_schema(),
+            crate::sweep::plan_schema(),
+        ] {
+            assert_eq!(unchecked_keywords(&schema), []);
+        }
+    }
 }

@@ -13,11 +13,13 @@
 //! - [`mod@tolerance`]: what a workshop's errors do to a design, and the yield;
 //! - [`temperature`]: what a design does at other temperatures, and how it is brought back;
 //! - [`overnight`]: the global search as a run, and the ranked list it leaves;
-//! - [`run`]: long work in a folder, where nothing is lost;
+//! - [`run`]: long work in a folder, where nothing is lost; [`origin`]: which unit of it found a
+//!   design;
 //! - [`sampling`]: points that fill a space evenly, random numbers keyed by a number;
 //! - [`search`]: the global search, from a problem to many finished designs;
 //! - [`change`]: what came back different, in a design file; [`retune`]: then moving only what can
 //!   still move; [`sweep`]: a grid or a sample over any addresses, each point optimised;
+//!   [`mod@front`]: the best trade between two results;
 //! - [`write_whole`]: the one function of the program that writes files.
 //!
 //! # What it refuses to know
@@ -37,7 +39,9 @@ pub mod change;
 pub mod design_file;
 mod document_kind;
 pub mod freedom;
+pub mod front;
 pub mod optimise;
+pub mod origin;
 pub mod overnight;
 pub mod retune;
 pub mod run;

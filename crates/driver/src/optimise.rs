@@ -23,6 +23,8 @@ const NARROWEST: f64 = 0.02;
 const WIDENING: f64 = 1.25;
 /// Steps spent at each width on the way to the whole beam.
 const STEPS_A_WIDTH: u64 = 25;
+/// How often that is tried where there is no way between the states.
+const MOST_WAYS: u64 = 8;
 
 /// What became of an optimisation.
 #[derive(Debug, Clone)]
@@ -102,7 +104,8 @@ pub fn optimise(
     let start = assess(&file.design, &file.wishes);
     let mut merit = merit_of(file)?;
     let from = merit.variables().start().to_vec();
-    let widened = bring_in(&mut merit, from, settings, observer)?;
+    let mut widened = bring_in(&mut merit, from, settings, observer)?;
+    find_a_way(&mut merit, &mut widened, settings, observer)?;
     let outcome = match widened.stopped_early {
         Some(outcome) => outcome,
         None => solve::run(&mut merit, &widened.variables, settings, observer)?,
@@ -167,6 +170,18 @@ struct Widened {
     seconds: f64,
 }
 
+impl Widened {
+    /// Goes on from where the solver ended.
+    fn take(&mut self, outcome: Outcome) {
+        self.iterations += outcome.iterations;
+        self.evaluations += outcome.evaluations;
+        self.seconds += outcome.time.as_secs_f64();
+        self.variables.clone_from(&outcome.variables);
+        let asked = matches!(outcome.stopped, Stopped::Interrupted | Stopped::Observer);
+        self.stopped_early = asked.then_some(outcome);
+    }
+}
+
 /// Where outer rays fail at the start, traces only as much of the beam as gets through, optimises
 /// a little, and widens step by step until the whole beam does.
 fn bring_in(
@@ -193,12 +208,8 @@ fn bring_in(
             Ok(()) if aperture >= 1.0 => return Ok(widened),
             Ok(()) => {
                 let outcome = solve::run(merit, &widened.variables, &few, observer)?;
-                widened.iterations += outcome.iterations;
-                widened.evaluations += outcome.evaluations;
-                widened.seconds += outcome.time.as_secs_f64();
-                widened.variables.clone_from(&outcome.variables);
-                if outcome.stopped == Stopped::Interrupted || outcome.stopped == Stopped::Observer {
-                    widened.stopped_early = Some(outcome);
+                widened.take(outcome);
+                if widened.stopped_early.is_some() {
                     merit.set_aperture(1.0);
                     return Ok(widened);
                 }
@@ -208,6 +219,32 @@ fn bring_in(
             Err(_) => aperture = (aperture / WIDENING).max(NARROWEST),
         }
     }
+}
+
+/// Where no movement leads over the states of a start, optimises without what is asked of the way
+/// between them, a few steps at a time, until one does.
+fn find_a_way(
+    merit: &mut MeritFunction,
+    widened: &mut Widened,
+    settings: &Settings,
+    observer: &mut dyn Observer,
+) -> Result<(), OptimiseError> {
+    let few = Settings::new(settings.method()).with_max_iterations(STEPS_A_WIDTH);
+    let few = few.unwrap_or_else(|_| settings.clone());
+    for tried in 0..=MOST_WAYS {
+        let fault = match merit.limits(&widened.variables, &mut Vec::new()) {
+            Err(fault @ EvaluationFault::Way(_)) if widened.stopped_early.is_none() => fault,
+            _ => return Ok(()),
+        };
+        if tried == MOST_WAYS {
+            return Err(OptimiseError::Start(fault));
+        }
+        merit.look_at_the_way(false);
+        let outcome = solve::run(merit, &widened.variables, &few, observer);
+        merit.look_at_the_way(true);
+        widened.take(outcome?);
+    }
+    Ok(())
 }
 
 /// The widest part of the beam, up to [`WIDENING`] times the last, that gets through; a start that

@@ -7,6 +7,7 @@ use std::fs::File;
 use std::io::{self, Write};
 use std::path::{Path, PathBuf};
 
+use surface_model::document::system_words;
 use tempfile::NamedTempFile;
 
 use crate::careless;
@@ -33,8 +34,16 @@ pub enum WriteError {
     /// A folder stands where the file should be.
     #[error("{} is a folder; nothing was written", .0.display())]
     Folder(PathBuf),
+    /// There is no folder it could be in.
+    #[error("{} cannot be written: there is no folder {}", .path.display(), .folder.display())]
+    NoFolder {
+        /// The file.
+        path: PathBuf,
+        /// The folder it would be in.
+        folder: PathBuf,
+    },
     /// The system refuses.
-    #[error("{} cannot be written: {source}", .path.display())]
+    #[error("{} cannot be written: {}", .path.display(), system_words(.source))]
     System {
         /// The file.
         path: PathBuf,
@@ -99,6 +108,10 @@ fn check_target(path: &Path, existing: Existing) -> Result<(), WriteError> {
 }
 
 fn system(path: &Path, source: io::Error) -> WriteError {
+    let folder = folder_of(path);
+    if source.kind() == io::ErrorKind::NotFound && !folder.exists() {
+        return WriteError::NoFolder { path: path.into(), folder: folder.into() };
+    }
     WriteError::System { path: path.into(), source }
 }
 
@@ -142,7 +155,9 @@ mod tests {
     fn a_place_that_takes_no_file_is_told_beforehand() {
         let folder = tempfile::tempdir().unwrap();
         let missing = folder.path().join("nowhere/design.json");
-        assert!(matches!(check_writable(&missing, Existing::Keep), Err(WriteError::System { .. })));
+        let refused = check_writable(&missing, Existing::Keep).unwrap_err();
+        assert!(matches!(refused, WriteError::NoFolder { .. }));
+        assert!(refused.to_string().ends_with("nowhere"), "no temporary name: {refused}");
         assert!(matches!(
             check_writable(folder.path(), Existing::Replace),
             Err(WriteError::Folder(_))

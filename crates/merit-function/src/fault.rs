@@ -2,6 +2,8 @@
 
 use surface_model::fault::RayFault;
 
+use crate::movement::Stop;
+
 /// A point at which the merit does not exist.
 #[derive(Debug, Clone, PartialEq, thiserror::Error)]
 #[non_exhaustive]
@@ -24,6 +26,9 @@ pub enum EvaluationFault {
         /// Name of the state.
         state: String,
     },
+    /// No movement holds ratio and collimation from the first state to the last.
+    #[error("no continuous movement leads over all states: {0}")]
+    Way(Stop),
     /// A surface does not reach the height at which its edge is measured.
     #[error("surface {} does not reach its clear diameter", .surface + 1)]
     Edge {

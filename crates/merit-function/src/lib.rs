@@ -8,6 +8,7 @@
 //!   housing's conditions solved and not penalised;
 //! - [`problem::MeritFunction`]: residuals, block Jacobian and limits with gradients, as a
 //!   [`block::BlockProblem`];
+//! - [`movement`]: where groups stand between the states, and how that follows from the glass;
 //! - [`assessment`]: every state's numbers and every limit, wavefronts integrated to convergence.
 //!
 //! # What it refuses to know
@@ -33,10 +34,12 @@ pub mod goals;
 mod limit_item;
 mod limit_rows;
 pub mod limits;
+pub mod movement;
 pub mod problem;
 #[cfg(test)]
 mod problem_tests;
 mod ray_weights;
 mod row_evaluation;
 pub mod variables;
+mod way_rows;
 pub mod wishes;

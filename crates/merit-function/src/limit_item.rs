@@ -11,6 +11,7 @@ use surface_model::train::Train;
 
 use crate::edge::edge_mm;
 use crate::limits::{LimitKind, Limits, Range};
+use crate::movement::{Slide, Way, WayMeasure};
 
 /// One limited quantity of a design.
 #[derive(Debug, Clone, PartialEq)]
@@ -53,6 +54,8 @@ pub(crate) enum Measure {
     Fluence(usize),
     /// Least distance of a ghost's focus from glass, over all ghosts of this kind.
     Ghosts(GhostKind),
+    /// Something along the way between the states.
+    Way(WayMeasure),
 }
 
 /// How often a surface reflects the light of a ghost.
@@ -143,8 +146,57 @@ impl LimitItem {
                 }
                 Some(least)
             }
+            // Told by `worst_on_the_way`.
+            Measure::Way(_) => None,
         }
     }
+
+    /// Whether it is about the way between the states.
+    pub(crate) fn is_of_the_way(&self) -> bool {
+        matches!(self.measure, Measure::Way(_))
+    }
+
+    /// Its value nearest to what is not allowed, or farthest beyond, on the way between the states,
+    /// and the ratio at which it is met.
+    pub(crate) fn worst_on_the_way(
+        &self,
+        design: &Design,
+        views: &[StateView],
+        way: &Way,
+    ) -> Option<(f64, f64)> {
+        let Measure::Way(measure) = self.measure else { return None };
+        let constant_mm = match measure {
+            WayMeasure::EdgeGap(after) => {
+                edge_constant_mm(&views.first()?.train, &design.sequence(), after)?
+            }
+            WayMeasure::Rear => design.housing.track_mm,
+            _ => 0.0,
+        };
+        let seek = |sign: f64| {
+            let (value, ratio) = way.lowest(measure, constant_mm, sign);
+            (sign * value, ratio)
+        };
+        if let WayMeasure::OneWay(group) = measure {
+            let sign = way.direction(group);
+            let (value, ratio) = way.lowest(measure, constant_mm, sign);
+            return Some((value, ratio));
+        }
+        let (least, most) = (seek(1.0), seek(-1.0));
+        if let WayMeasure::Position(_) = measure {
+            return Some((most.0 - least.0, most.1));
+        }
+        if let WayMeasure::Slope(_) = measure {
+            return Some(if -least.0 > most.0 { (-least.0, least.1) } else { most });
+        }
+        let nearer = least.0 - self.range.min < self.range.max - most.0;
+        Some(if nearer { least } else { most })
+    }
+}
+
+/// Air at the edge less that on the axis, between a group and the next one, mm.
+pub(crate) fn edge_constant_mm(train: &Train, sequence: &Sequence, after: usize) -> Option<f64> {
+    let gap = sequence.place_of_gap(GapId::Spacing { after })?;
+    Some(edge_mm(train, gap)? - train.gaps()[gap])
 }
 
 struct Lister<'a> {
@@ -171,7 +223,70 @@ impl Lister<'_> {
         for state in 0..self.design.states.len() {
             self.state(state, &mut items);
         }
+        if self.limits.about_the_way() {
+            self.way(&mut items);
+        }
         items
+    }
+
+    /// What is limited along the way between the states.
+    fn way(&self, items: &mut Vec<LimitItem>) {
+        let limits = self.limits;
+        let slide = Slide::of(self.design);
+        let any = Range { min: 0.0, max: f64::INFINITY };
+        let mut push = |kind, at: Address, range, measure| {
+            items.push(item(kind, at, None, range, Measure::Way(measure)));
+        };
+        for &group in slide.moving() {
+            let at = Address::root().key("groups").index(group);
+            if let Some(range) = limits.range(LimitKind::TravelMm).filter(|_| limits.between_states)
+            {
+                let measure = WayMeasure::Position(group);
+                push(LimitKind::TravelMm, at.clone(), range, measure);
+            }
+            if let Some(range) = limits.range(LimitKind::SlopeMmPerRatio) {
+                let measure = WayMeasure::Slope(group);
+                push(LimitKind::SlopeMmPerRatio, at.clone(), range, measure);
+            }
+            if limits.is_monotonic(self.design, group) {
+                push(LimitKind::Monotonic, at, any, WayMeasure::OneWay(group));
+            }
+        }
+        if !limits.between_states {
+            return;
+        }
+        let states = || Address::root().key("states").every();
+        for after in 0..self.design.groups.len() - 1 {
+            let at = states().key("spacings_mm").index(after);
+            for (kind, measure) in [
+                (LimitKind::SpacingMm, WayMeasure::Spacing(after)),
+                (LimitKind::EdgeGapMm, WayMeasure::EdgeGap(after)),
+            ] {
+                push(kind, at.clone(), limits.range(kind).unwrap_or(any), measure);
+            }
+        }
+        if let Some(range) = limits.range(LimitKind::TrackMm) {
+            push(LimitKind::TrackMm, states(), range, WayMeasure::Length);
+        }
+        for end in self.open_ends() {
+            let measure = match end {
+                Measure::Front => WayMeasure::Front,
+                _ => WayMeasure::Rear,
+            };
+            push(LimitKind::HousingMm, states(), any, measure);
+        }
+    }
+
+    /// The ends of the housing that the train could leave.
+    fn open_ends(&self) -> &'static [Measure] {
+        let housing = &self.design.housing;
+        let filled = housing.fixed.first() == Some(&true) && housing.fixed.last() == Some(&true);
+        match housing.anchor() {
+            Anchor::Rear if filled => &[],
+            Anchor::Rear => &[Measure::Front],
+            Anchor::Front => &[Measure::Rear],
+            Anchor::Middle(_) => &[Measure::Front, Measure::Rear],
+        }
     }
 
     fn gap(&self, gap: usize, id: GapId, items: &mut Vec<LimitItem>) {
@@ -236,17 +351,9 @@ impl Lister<'_> {
             let range = Range { min: FOCUS_MARGIN, max: f64::INFINITY };
             push(LimitKind::InternalFocus, range, Measure::Focus);
         }
-        let housing = &self.design.housing;
         let inside = Range { min: 0.0, max: f64::INFINITY };
-        let filled = housing.fixed.first() == Some(&true) && housing.fixed.last() == Some(&true);
-        match housing.anchor() {
-            Anchor::Rear if filled => {}
-            Anchor::Rear => push(LimitKind::HousingMm, inside, Measure::Front),
-            Anchor::Front => push(LimitKind::HousingMm, inside, Measure::Rear),
-            Anchor::Middle(_) => {
-                push(LimitKind::HousingMm, inside, Measure::Front);
-                push(LimitKind::HousingMm, inside, Measure::Rear);
-            }
+        for &end in self.open_ends() {
+            push(LimitKind::HousingMm, inside, end);
         }
     }
 }

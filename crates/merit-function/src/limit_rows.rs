@@ -9,8 +9,10 @@ use surface_model::housing::Anchor;
 use surface_model::sequence::{GapId, Sequence};
 
 use crate::limit_item::{FOCUS_MARGIN, LimitItem, Measure};
-use crate::limits::{LimitKind, Limits};
+use crate::limits::{LimitKind, Limits, Range};
+use crate::movement::{Slide, WayMeasure, direction, knots};
 use crate::variables::{SharedVariable, Variables};
+use crate::way_rows::{MOST_MOVERS, OnTheWay};
 
 /// A limit row: value = constant + sign × measured, kept at or above zero.
 #[derive(Debug, Clone, PartialEq)]
@@ -37,6 +39,8 @@ pub(crate) enum Measured {
     Fluence(usize),
     /// Distance from glass of the nearest focus of a ghost, mm.
     GhostClearance(Ghost),
+    /// Something on the way between two neighbouring states.
+    OnTheWay(OnTheWay),
 }
 
 impl RowRule {
@@ -52,6 +56,10 @@ impl RowRule {
         rows
     }
 }
+
+/// The least slope, mm a unit of ratio, that a group is kept to which must not turn back: beyond
+/// the tolerance, so that it does not turn back by what the limit may be crossed.
+const ONE_WAY_MARGIN: f64 = 2e-3;
 
 /// A position in the housing: constant + Σ factor × gap + Σ factor × shared variable.
 struct Position {
@@ -102,6 +110,10 @@ impl Maker<'_> {
                 }
                 return;
             }
+            Measure::Way(measure) => {
+                self.way_rows(item, measure, rows);
+                return;
+            }
             Measure::Gap(_) | Measure::Radius(_) | Measure::Steepness(_) => return,
         };
         // A limit on an edge between groups names the state; one inside a group holds in all.
@@ -126,7 +138,8 @@ impl Maker<'_> {
             Measured::Incidence(_)
             | Measured::MarginalHeight(_)
             | Measured::Fluence(_)
-            | Measured::GhostClearance(_) => true,
+            | Measured::GhostClearance(_)
+            | Measured::OnTheWay(_) => true,
         }
     }
 
@@ -225,6 +238,52 @@ impl Maker<'_> {
             if let (Some(first), Some(last)) = (order.first(), order.last()) {
                 push(first.0, -1.0, 0.0);
                 push(last.0, 1.0, item.range.min);
+            }
+        }
+    }
+
+    /// The rows of a limit along the way, one or two between each state and the next.
+    fn way_rows(&self, item: &LimitItem, measure: WayMeasure, rows: &mut Vec<RowRule>) {
+        let Ok(knots) = knots(self.design) else { return };
+        let moving = Slide::of(self.design).moving().len();
+        let follows = self.variables.shared().iter().any(|shared| match shared {
+            SharedVariable::Glass(_) | SharedVariable::FixedPosition(_) => true,
+            SharedVariable::TravelStart(_) => false,
+        });
+        if !follows || moving > MOST_MOVERS {
+            return;
+        }
+        let tolerance = item.kind.tolerance();
+        for panel in 0..knots.len() - 1 {
+            let mut push = |constant: f64, sign: f64, less: Option<usize>| {
+                let measured = Measured::OnTheWay(OnTheWay { measure, panel, less });
+                rows.push(RowRule { state: None, tolerance, constant, sign, measured });
+            };
+            let Range { min, max } = item.range;
+            match measure {
+                WayMeasure::Position(group) => {
+                    let start = self.shared(SharedVariable::TravelStart(group));
+                    if start.is_some() && max.is_finite() {
+                        push(0.0, 1.0, start);
+                        push(max, -1.0, start);
+                    }
+                }
+                WayMeasure::Slope(_) => {
+                    push(max, 1.0, None);
+                    push(max, -1.0, None);
+                }
+                WayMeasure::OneWay(group) => {
+                    let at = |k: Option<&usize>| k.map_or(0.0, |&k| self.positions_mm[k][group]);
+                    push(-ONE_WAY_MARGIN, direction(at(knots.first()), at(knots.last())), None);
+                }
+                _ => {
+                    if min.is_finite() {
+                        push(-min, 1.0, None);
+                    }
+                    if max.is_finite() {
+                        push(max, -1.0, None);
+                    }
+                }
             }
         }
     }

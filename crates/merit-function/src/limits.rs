@@ -2,9 +2,11 @@
 
 use schemars::JsonSchema;
 use serde::{Deserialize, Serialize};
+use surface_model::design::Design;
+use surface_model::document::Address;
 
 /// Limits as a design file writes them; each is optional.
-#[derive(Debug, Clone, Copy, Default, PartialEq, Deserialize, Serialize, JsonSchema)]
+#[derive(Debug, Clone, Default, PartialEq, Deserialize, Serialize, JsonSchema)]
 pub struct LimitsDocument {
     /// Axial distance between neighbouring surfaces of an element at its clear radius, mm.
     #[serde(default, skip_serializing_if = "Option::is_none")]
@@ -30,6 +32,18 @@ pub struct LimitsDocument {
     /// Way of each group in the housing over all states, mm.
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub travel_mm: Option<RangeDocument>,
+    /// Slope of each group's movement curve, without its sign, at every ratio from the smallest to
+    /// the largest: d position/d ratio, mm a unit of ratio.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub slope_mm_per_ratio: Option<AtMostDocument>,
+    /// Groups that never turn back on the way from the smallest ratio to the largest, by their
+    /// addresses: `/groups/runner`, or `/groups/*` for every group that moves.
+    #[serde(default, skip_serializing_if = "Vec::is_empty")]
+    pub monotonic: Vec<String>,
+    /// "keep": the housing and the limits `spacing_mm`, `edge_gap_mm`, `travel_mm` and `track_mm`
+    /// hold along the whole movement curve, not only in the states; and groups never touch.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub between_states: Option<BetweenDocument>,
     /// Angle of incidence of the outermost traced ray at every surface, degrees.
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub incidence_deg: Option<RangeDocument>,
@@ -100,6 +114,16 @@ pub enum FocusDocument {
     Allow,
 }
 
+/// Whether limits on where groups stand hold between the states too.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, Deserialize, Serialize, JsonSchema)]
+#[serde(rename_all = "lowercase")]
+pub enum BetweenDocument {
+    /// They hold along the whole movement curve.
+    Keep,
+    /// As if not given.
+    Open,
+}
+
 /// The kinds of limit.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, Serialize)]
 #[serde(rename_all = "snake_case")]
@@ -120,6 +144,10 @@ pub enum LimitKind {
     Steepness,
     /// Way of a group.
     TravelMm,
+    /// Steepest slope of a group's movement curve.
+    SlopeMmPerRatio,
+    /// Least slope of a group that must not turn back, in the direction it moves.
+    Monotonic,
     /// Angle of incidence.
     IncidenceDeg,
     /// Length of the train.
@@ -150,6 +178,8 @@ impl LimitKind {
             Self::RadiusMm => "radius_mm",
             Self::Steepness => "steepness",
             Self::TravelMm => "travel_mm",
+            Self::SlopeMmPerRatio => "slope_mm_per_ratio",
+            Self::Monotonic => "monotonic",
             Self::IncidenceDeg => "incidence_deg",
             Self::TrackMm => "track_mm",
             Self::FluenceJCm2 => "fluence_j_cm2",
@@ -160,8 +190,8 @@ impl LimitKind {
         }
     }
 
-    /// How far a limit may be crossed and still counts as met, in its own unit: 1 µm for lengths,
-    /// 0.001° for angles, 0.001 J/cm², 0.00001 for pure numbers.
+    /// How far a limit may be crossed and still counts as met, in its own unit: 1 µm for lengths
+    /// (and a unit of ratio), 0.001° for angles, 0.001 J/cm², 0.00001 for pure numbers.
     #[must_use]
     pub fn tolerance(self) -> f64 {
         match self {
@@ -201,18 +231,44 @@ pub struct Limits {
     ranges: Vec<(LimitKind, Range)>,
     /// Whether a real focus between the first and the last surface is forbidden.
     pub forbid_internal_focus: bool,
+    /// Addresses of groups that must not turn back.
+    pub monotonic: Vec<Address>,
+    /// Whether limits on where groups stand hold between the states too.
+    pub between_states: bool,
 }
 
 impl Limits {
-    pub(crate) fn new(ranges: Vec<(LimitKind, Range)>, forbid_internal_focus: bool) -> Self {
-        Self { ranges, forbid_internal_focus }
+    pub(crate) fn new(ranges: Vec<(LimitKind, Range)>) -> Self {
+        Self { ranges, ..Self::default() }
     }
 
     /// The ranges of these kinds alone.
     #[must_use]
     pub fn only(&self, kinds: &[LimitKind]) -> Self {
         let mine = self.ranges.iter().filter(|(kind, _)| kinds.contains(kind));
-        Self { ranges: mine.copied().collect(), forbid_internal_focus: false }
+        Self::new(mine.copied().collect())
+    }
+
+    /// What these limits ask for in the states, without what is about the way between them.
+    #[must_use]
+    pub fn in_the_states(&self) -> Self {
+        let mut ranges = self.ranges.clone();
+        ranges.retain(|(kind, _)| *kind != LimitKind::SlopeMmPerRatio);
+        let forbid_internal_focus = self.forbid_internal_focus;
+        Self { forbid_internal_focus, ..Self::new(ranges) }
+    }
+
+    /// Whether anything is asked for between the states.
+    #[must_use]
+    pub fn about_the_way(&self) -> bool {
+        let slope = self.range(LimitKind::SlopeMmPerRatio).is_some();
+        self.between_states || slope || !self.monotonic.is_empty()
+    }
+
+    /// Whether a group must not turn back.
+    #[must_use]
+    pub fn is_monotonic(&self, design: &Design, group: usize) -> bool {
+        self.monotonic.iter().any(|at| groups_at(design, at).contains(&group))
     }
 
     /// The range of one kind of limit, if it is given.
@@ -222,9 +278,22 @@ impl Limits {
     }
 }
 
+/// The groups of a design that an address names; none where it names something else.
+pub(crate) fn groups_at(design: &Design, at: &Address) -> Vec<usize> {
+    let steps = at.steps();
+    let ["groups", step] = steps.as_slice() else { return Vec::new() };
+    let count = design.groups.len();
+    if *step == "*" {
+        return (0..count).collect();
+    }
+    let index = step.parse().ok().filter(|&index: &usize| index < count);
+    let named = || design.groups.iter().position(|group| group.name == *step);
+    index.or_else(named).into_iter().collect()
+}
+
 impl LimitsDocument {
     /// The ranges as written, by kind.
-    pub(crate) fn ranges(&self) -> [(LimitKind, Option<RangeDocument>); 13] {
+    pub(crate) fn ranges(&self) -> [(LimitKind, Option<RangeDocument>); 14] {
         [
             (LimitKind::EdgeThicknessMm, self.edge_thickness_mm),
             (LimitKind::CentreThicknessMm, self.centre_thickness_mm),
@@ -234,6 +303,7 @@ impl LimitsDocument {
             (LimitKind::RadiusMm, self.radius_mm),
             (LimitKind::Steepness, self.steepness),
             (LimitKind::TravelMm, self.travel_mm),
+            (LimitKind::SlopeMmPerRatio, self.slope_mm_per_ratio.map(RangeDocument::from)),
             (LimitKind::IncidenceDeg, self.incidence_deg),
             (LimitKind::TrackMm, self.track_mm),
             (LimitKind::FluenceJCm2, self.fluence_j_cm2.map(RangeDocument::from)),

@@ -34,10 +34,11 @@ use crate::climates::Climate;
 use crate::fault::EvaluationFault;
 use crate::focus_rows::FocusFan;
 use crate::goals::Goals;
-use crate::limit_rows::RowRule;
+use crate::limit_rows::{Measured, RowRule};
 use crate::ray_weights::RayWeights;
 use crate::row_evaluation::RowEvaluator;
 use crate::variables::{Column, Variables};
+use crate::way_rows::WayRows;
 use crate::wishes::Wishes;
 
 /// Rays from the axis to the edge of the beam, if nothing else is asked for.
@@ -119,6 +120,8 @@ impl MeritFunction {
         rays: usize,
     ) -> Result<Self, GlassError> {
         let rules = RowRule::all(design, &wishes.limits, &variables);
+        let on_the_way = rules.iter().any(|rule| matches!(rule.measured, Measured::OnTheWay(_)));
+        let way = if on_the_way { WayRows::of(design, &variables)? } else { None };
         let mut states = Vec::with_capacity(design.states.len());
         let mut rows = Vec::with_capacity(design.states.len());
         let (mut trains, mut traced_in) = (Vec::new(), Vec::new());
@@ -177,6 +180,7 @@ impl MeritFunction {
             sample,
             rows: RowEvaluator::new(
                 rules,
+                way,
                 design.beam.edge_mm(),
                 1e-3 * design.beam.laser.pulse_energy_mj.unwrap_or(0.0),
             ),
@@ -218,9 +222,16 @@ impl MeritFunction {
         self.weights = RayWeights::new(&self.sample.weights);
         self.bundle.load(&self.trains, &self.sample.heights_mm);
         self.rows.set_edge_mm(self.beam.radius_mm * self.beam.reach * fraction);
+        self.rows.set_aperture_of_the_way(fraction);
         for climate in &mut self.climates {
             climate.set_aperture(fraction);
         }
+    }
+
+    /// Whether limits along the way between the states are looked at from now on, or count as kept,
+    /// so that a start can be brought to where there is a way.
+    pub fn look_at_the_way(&mut self, looked_at: bool) {
+        self.rows.look_at_the_way(looked_at);
     }
 
     /// Brings every train to these values of the variables. Bounds keep spheres within reach of

@@ -14,6 +14,7 @@ use crate::fault::EvaluationFault;
 use crate::limit_rows::{Measured, RowRule};
 use crate::problem::StateOptics;
 use crate::variables::Variables;
+use crate::way_rows::WayRows;
 
 /// Evaluates the limit rows of a problem. Buffers are kept from call to call.
 #[derive(Debug)]
@@ -26,6 +27,10 @@ pub(crate) struct RowEvaluator {
     rays: Vec<StateRays>,
     /// Per rule, the way of its ghost, once it has been looked at.
     ways: Vec<Option<GhostWay>>,
+    /// The way between the states, where a row is about it.
+    way: Option<WayRows>,
+    /// Per rule, where on the way its value is met.
+    places: Vec<f64>,
     gradient: Vec<f64>,
     values: Vec<f64>,
 }
@@ -42,6 +47,9 @@ const GHOST_IN_SIGHT_MM: f64 = 20.0;
 /// What stands for the distance of a focus that there is not, mm.
 const NO_FOCUS_MM: f64 = 1e6;
 
+/// The value of a row about the way while that is not looked at.
+const NOT_LOOKED_AT: f64 = 1.0;
+
 /// The rays that the rows of one state have in common, traced once a point.
 #[derive(Debug, Default)]
 struct StateRays {
@@ -52,8 +60,15 @@ struct StateRays {
 
 impl RowEvaluator {
     /// Rows by these rules; the edge ray enters at `edge_mm`, a pulse has `pulse_energy_j`.
-    pub(crate) fn new(rules: Vec<RowRule>, edge_mm: f64, pulse_energy_j: f64) -> Self {
+    pub(crate) fn new(
+        rules: Vec<RowRule>,
+        way: Option<WayRows>,
+        edge_mm: f64,
+        pulse_energy_j: f64,
+    ) -> Self {
         Self {
+            way,
+            places: vec![0.0; rules.len()],
             ways: vec![None; rules.len()],
             rules,
             edge_mm,
@@ -69,6 +84,30 @@ impl RowEvaluator {
     /// Height of the ray whose incidence is limited, mm.
     pub(crate) fn set_edge_mm(&mut self, edge_mm: f64) {
         self.edge_mm = edge_mm;
+    }
+
+    /// Per row, what it tells of the way between the states, if it is about that.
+    #[cfg(test)]
+    pub(crate) fn on_the_way(&self) -> Vec<Option<crate::movement::Aspect>> {
+        let aspect = |rule: &RowRule| match &rule.measured {
+            Measured::OnTheWay(row) => Some(row.measure.aspect()),
+            _ => None,
+        };
+        self.rules.iter().map(aspect).collect()
+    }
+
+    /// Whether rows about the way between the states are looked at; else they count as kept.
+    pub(crate) fn look_at_the_way(&mut self, looked_at: bool) {
+        if let Some(way) = &mut self.way {
+            way.look(looked_at);
+        }
+    }
+
+    /// Holds collimation along the way over the inner `fraction` of the beam.
+    pub(crate) fn set_aperture_of_the_way(&mut self, fraction: f64) {
+        if let Some(way) = &mut self.way {
+            way.set_aperture(fraction);
+        }
     }
 
     /// Gives every row its gradient, however far from its limit.
@@ -87,7 +126,11 @@ impl RowEvaluator {
     ) -> Result<(), EvaluationFault> {
         out.clear();
         self.trace(states)?;
-        for (rule, way) in self.rules.iter().zip(&mut self.ways) {
+        if let Some(way) = &mut self.way {
+            way.solve(states, variables)?;
+        }
+        let places = self.ways.iter_mut().zip(&mut self.places);
+        for (rule, (way, place)) in self.rules.iter().zip(places) {
             let k = rule.state.unwrap_or(0);
             let train = &states[k].train;
             let measured = match &rule.measured {
@@ -105,6 +148,15 @@ impl RowEvaluator {
                     let beam = states[k].beam()?;
                     way.trace(beam).map_err(|_| EvaluationFault::overflow(&states[k].name))?;
                     way.closest().map_or(NO_FOCUS_MM, |focus| focus.clearance_mm.min(NO_FOCUS_MM))
+                }
+                Measured::OnTheWay(row) => {
+                    let way = self.way.as_ref();
+                    let met = way.map(|way| way.measured(*row, rule.sign, states, variables));
+                    // What is not looked at is kept.
+                    let kept = (rule.sign * (NOT_LOOKED_AT - rule.constant), f64::NAN);
+                    let (value, at) = met.transpose()?.flatten().unwrap_or(kept);
+                    *place = at;
+                    value
                 }
             };
             out.push(rule.constant + rule.sign * measured);
@@ -155,6 +207,9 @@ impl RowEvaluator {
         let done = self.values(states, at, &mut values);
         self.values = values;
         done?;
+        if let Some(way) = &mut self.way {
+            way.differentiate(variables)?;
+        }
         out.resize_with(self.rules.len(), || LimitRow {
             value: 0.0,
             tolerance: 0.0,
@@ -176,7 +231,7 @@ impl RowEvaluator {
         variables: &Variables,
         row: &mut LimitRow,
     ) -> Result<(), EvaluationFault> {
-        let Self { rules, rays, ways, gradient, focus_in_sight, ghost_in_sight_mm, .. } = self;
+        let Self { rules, rays, ways, way, gradient, focus_in_sight, ghost_in_sight_mm, .. } = self;
         let rule = &rules[i];
         let k = rule.state.unwrap_or(0);
         let state = &states[k];
@@ -187,6 +242,16 @@ impl RowEvaluator {
         reset(&mut row.by_shared, variables.shared().len());
         reset(&mut row.by_own, own);
 
+        if let Measured::OnTheWay(measured) = &rule.measured {
+            let at = self.places[i];
+            return match way {
+                Some(way) if at.is_finite() => {
+                    let place = (rule.sign, at);
+                    way.gradient(*measured, place, states, variables, &mut row.by_shared)
+                }
+                _ => Ok(()),
+            };
+        }
         let quantities = variables.quantities();
         let StateRays { paraxial, gaussian, edge } = &mut rays[k];
         let LimitRow { by_shared, by_own, .. } = row;
@@ -234,6 +299,8 @@ impl RowEvaluator {
                     .map_err(|_| EvaluationFault::overflow(&state.name))?;
                 gradient.iter().enumerate().for_each(|(quantity, &by)| put(quantity, by));
             }
+            // Done above.
+            Measured::OnTheWay(_) => {}
             // A ghost far from glass is left alone.
             Measured::GhostClearance(_) if row.value > *ghost_in_sight_mm => {}
             Measured::GhostClearance(_) => {

@@ -3,11 +3,16 @@
 use schemars::JsonSchema;
 use serde::{Deserialize, Serialize};
 use surface_model::design::Design;
-use surface_model::document::{Address, Complain, Place};
+use surface_model::document::{Address, AddressSyntaxError, Complain, Place};
 use surface_model::glass::{REFERENCE_C, THERMAL_RANGE_C};
 
 use crate::goals::{Goals, GoalsDocument};
-use crate::limits::{FocusDocument, LimitKind, Limits, LimitsDocument, Range, RangeDocument};
+use crate::limits::{
+    BetweenDocument, FocusDocument, LimitKind, Limits, LimitsDocument, Range, RangeDocument,
+    groups_at,
+};
+use crate::movement::{NoWay, Slide, knots};
+use crate::way_rows::MOST_MOVERS;
 
 /// The part of a design file that says what is wanted.
 #[derive(Debug, Clone, Default, PartialEq, Deserialize, Serialize, JsonSchema)]
@@ -78,6 +83,24 @@ pub enum WishError {
     /// A limit on what the beam does not say.
     #[error("the limit {} needs the energy of a pulse", .0.word())]
     NoEnergy(LimitKind),
+    /// Not written as an address.
+    #[error(transparent)]
+    Syntax(AddressSyntaxError),
+    /// An address that names no group.
+    #[error("\"{0}\" is no group")]
+    NoGroup(Address),
+    /// A group that does not move.
+    #[error("\"{0}\" does not move")]
+    Still(Address),
+    /// There is no way between the states.
+    #[error(transparent)]
+    NoWay(NoWay),
+    /// More groups move than ratio and collimation fix, or none.
+    #[error("{0} groups move")]
+    Movers(usize),
+    /// A state that is not collimated.
+    #[error("state \"{0}\" is wanted focused, and movement curves are of collimated beams alone")]
+    Focused(String),
     /// A range whose ends are the wrong way round.
     #[error("the limit {} has min {min} above max {max}", .kind.word())]
     Reversed {
@@ -100,6 +123,16 @@ impl WishError {
             Self::Reversed { .. } => "min at most max".into(),
             Self::FocusAndSlope => "one of them; a state of its own may want the other".into(),
             Self::NoEnergy(_) => "\"pulse_energy_mj\" in \"beam\"".into(),
+            Self::Syntax(_) | Self::NoGroup(_) | Self::Still(_) => {
+                "a group that moves, such as \"/groups/runner\", or \"/groups/*\"".into()
+            }
+            Self::NoWay(_) => "states at two or more ratios of the same sign".into(),
+            Self::Movers(_) => {
+                "one or two groups that move, so that ratio and collimation fix where they stand \
+                 between the states"
+                    .into()
+            }
+            Self::Focused(_) => "collimated states".into(),
         }
     }
 }
@@ -132,7 +165,42 @@ impl Wishes {
         let wanted = self.limits.range(kind).is_some();
         let lacks = wanted && design.beam.laser.pulse_energy_mj.is_none();
         let at = Address::root().key("limits").key(kind.word());
-        lacks.then_some(WishFault { at, error: WishError::NoEnergy(kind) })
+        let lacks = lacks.then_some(WishFault { at, error: WishError::NoEnergy(kind) });
+        lacks.or_else(|| self.no_way_of(design))
+    }
+
+    /// Why what is asked of the way between the states makes no sense for a design.
+    fn no_way_of(&self, design: &Design) -> Option<WishFault> {
+        let limits = &self.limits;
+        if !limits.about_the_way() {
+            return None;
+        }
+        let at = Address::root().key("limits");
+        let slide = Slide::of(design);
+        for (i, group) in limits.monotonic.iter().enumerate() {
+            let named = groups_at(design, group);
+            let error = match named.iter().find(|group| slide.moving().contains(group)) {
+                Some(_) => continue,
+                None if named.is_empty() => WishError::NoGroup(group.clone()),
+                None => WishError::Still(group.clone()),
+            };
+            return Some(WishFault { at: at.key("monotonic").index(i), error });
+        }
+        let at = if limits.between_states {
+            at.key("between_states")
+        } else if limits.monotonic.is_empty() {
+            at.key(LimitKind::SlopeMmPerRatio.word())
+        } else {
+            at.key("monotonic")
+        };
+        let moving = slide.moving().len();
+        let focused = self.states.iter().position(|goals| goals.exit_focus_m.is_some());
+        let error = match knots(design) {
+            Err(no_way) => WishError::NoWay(no_way),
+            Ok(_) if !(1..=MOST_MOVERS).contains(&moving) => WishError::Movers(moving),
+            Ok(_) => WishError::Focused(design.states.get(focused?)?.name.clone()),
+        };
+        Some(WishFault { at, error })
     }
 }
 
@@ -183,7 +251,25 @@ impl WishesDocument {
                 Err(error) => faults.push(WishFault { at, error }),
             }
         }
-        Limits::new(ranges, self.limits.internal_focus == Some(FocusDocument::Forbid))
+        let mut limits = Limits::new(ranges);
+        limits.forbid_internal_focus = self.limits.internal_focus == Some(FocusDocument::Forbid);
+        limits.between_states = self.limits.between_states == Some(BetweenDocument::Keep);
+        limits.monotonic = self.resolve_monotonic(faults);
+        limits
+    }
+
+    fn resolve_monotonic(&self, faults: &mut Vec<WishFault>) -> Vec<Address> {
+        let mut groups = Vec::new();
+        for (i, text) in self.limits.monotonic.iter().enumerate() {
+            match text.parse() {
+                Ok(at) => groups.push(at),
+                Err(error) => {
+                    let at = Address::root().key("limits").key("monotonic").index(i);
+                    faults.push(WishFault { at, error: WishError::Syntax(error) });
+                }
+            }
+        }
+        groups
     }
 }
 

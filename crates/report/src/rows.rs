@@ -31,6 +31,7 @@ pub fn tolerance_rows(report: &ToleranceReport) -> Result<String, RowsError> {
         "exit_slope_urad",
         "boresight_urad",
         "readjustment_mm",
+        "wander_urad",
     ])?;
     for sensitivity in &report.sensitivities {
         for state in &sensitivity.states {
@@ -48,6 +49,7 @@ pub fn tolerance_rows(report: &ToleranceReport) -> Result<String, RowsError> {
                 state.exit_slope_urad.to_string(),
                 state.boresight_urad.to_string(),
                 readjustment.join(" "),
+                sensitivity.wander_urad.to_string(),
             ])?;
         }
     }

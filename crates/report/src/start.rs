@@ -1,6 +1,6 @@
 //! Layouts of a brief as a document, and what stands against a brief that has none.
 
-use driver::start::{Family, Layout, Ranked, Ranking, Relaxed, Score, Starts};
+use driver::start::{Family, InVain, Layout, Ranked, Ranking, Relaxations, Score, Starts};
 use serde::Serialize;
 
 use crate::text::number::{as_written, significant};
@@ -118,9 +118,9 @@ pub struct Impossible {
 /// How many relaxations are told.
 const MOST_RELAXATIONS: usize = 3;
 
-/// Words for a ranking without a layout, and for the relaxations that would admit one.
+/// Words for a ranking without a layout, and for what relaxing one number of the brief does.
 #[must_use]
-pub fn impossible(ranking: &Ranking, relaxed: &[Relaxed]) -> Impossible {
+pub fn impossible(starts: &Starts, ranking: &Ranking, tried: &Relaxations) -> Impossible {
     let share = |points: usize| significant(100.0 * points as f64 / ranking.tried as f64, 2);
     let mut reasons = ranking.refusals.reasons.iter();
     let mut message = format!("no layout fits: all {} looked at fail", ranking.tried);
@@ -130,12 +130,26 @@ pub fn impossible(ranking: &Ranking, relaxed: &[Relaxed]) -> Impossible {
     if let Some((reason, points)) = reasons.next() {
         message.push_str(&format!(", then ({} %) because {reason}", share(*points)));
     }
-    let lines: Vec<String> = relaxed
+    let mut lines = admitting(tried);
+    let in_vain: Vec<String> = tried.in_vain.iter().map(in_vain).collect();
+    if !in_vain.is_empty() {
+        lines.push(format!("not enough by itself: {}", in_vain.join("; ")));
+    }
+    lines.extend(narrowing(starts));
+    Impossible { message, advice: lines.join("\n  ") }
+}
+
+/// What admits a layout, a line each.
+fn admitting(tried: &Relaxations) -> Vec<String> {
+    let mut lines: Vec<String> = tried
+        .admitting
         .iter()
         .take(MOST_RELAXATIONS)
-        .map(|relaxed| {
+        .enumerate()
+        .map(|(place, relaxed)| {
+            let front = if place == 0 { "a layout was found with" } else { "or with" };
             format!(
-                "{}: {} instead of {} (\"{}\")",
+                "{front} {}: {} instead of {} (\"{}\")",
                 relaxed.relaxation.what,
                 as_written(relaxed.to),
                 as_written(relaxed.from),
@@ -143,14 +157,35 @@ pub fn impossible(ranking: &Ranking, relaxed: &[Relaxed]) -> Impossible {
             )
         })
         .collect();
-    let advice = match lines.as_slice() {
-        [] => "no single number of the brief, relaxed up to eightfold, admits one: relax several, \
-               or ask for another number of groups"
-            .to_owned(),
-        [first] => format!("a layout was found with {first}"),
-        [first, rest @ ..] => {
-            format!("a layout was found with {first}\n  or with {}", rest.join("\n  or with "))
-        }
-    };
-    Impossible { message, advice }
+    if lines.is_empty() {
+        lines.push(
+            "no single number of the brief, relaxed up to eightfold, admits one: relax several, \
+             or ask for another number of groups"
+                .to_owned(),
+        );
+    }
+    lines
+}
+
+fn in_vain(in_vain: &InVain) -> String {
+    let furthest = as_written(in_vain.furthest);
+    match in_vain.relaxation.what.rsplit_once(", ") {
+        Some((what, unit)) => format!("{what}, even at {furthest} {unit}"),
+        None => format!("{}, even at {furthest}", in_vain.relaxation.what),
+    }
+}
+
+/// A ratio below 1 is allowed, and seldom meant.
+pub(crate) fn narrowing(starts: &Starts) -> Option<String> {
+    let ratios = starts.brief().ratios.iter().map(|ratio| ratio.ratio);
+    let narrow =
+        ratios.filter(|ratio| ratio.abs() < 1.0).min_by(|a, b| a.abs().total_cmp(&b.abs()));
+    narrow.map(|ratio| {
+        format!(
+            "A ratio below 1 narrows the beam, and makes a pulse stronger: {} is out over in, {} \
+             would widen it as much.",
+            as_written(ratio),
+            significant(1.0 / ratio, 3)
+        )
+    })
 }

@@ -2,7 +2,7 @@
 
 use std::fmt;
 
-use crate::document::{Address, Complain, Place, nearest, one_of};
+use crate::document::{Address, Complain, Place, nearest, one_of, rounded};
 use crate::glass::{GlassError, LookupError};
 use crate::laser::BeamFormError;
 use crate::surface::ASPHERE_TERMS;
@@ -62,7 +62,8 @@ pub enum DesignError {
     OwnGlass(GlassError),
     /// A surface that does not reach its clear diameter.
     #[error(
-        "a surface of radius {radius_mm} mm does not reach the clear diameter {diameter_mm} mm"
+        "a surface of radius {} mm does not reach the clear diameter {diameter_mm} mm",
+        rounded(*.radius_mm)
     )]
     Reach {
         /// Vertex radius, mm.
@@ -149,7 +150,7 @@ impl DesignError {
             Self::BeamForm(error) => error.expected(),
             Self::Needs { key, needed } => format!("{key} together with {needed}, or neither"),
             Self::Housing { needed_mm, .. } => {
-                format!("with the others as they are, {needed_mm} mm here")
+                format!("with the others as they are, {} mm here", to_a_nanometre(*needed_mm))
             }
         }
     }
@@ -172,6 +173,11 @@ impl DesignError {
             _ => None,
         }
     }
+}
+
+/// A spacing as precise as the housing has to be kept, and no more.
+fn to_a_nanometre(spacing_mm: f64) -> f64 {
+    format!("{spacing_mm:.6}").parse().unwrap_or(spacing_mm)
 }
 
 /// A fault of a design file and its place.

@@ -9,8 +9,9 @@
 //!
 //! the *waist ray*, parallel to the axis at the waist radius where the waist is, and the
 //! *divergence ray*, which crosses the axis there with slope Θ/2 (J. Arnaud, Appl. Opt. 24, 538
-//! (1985)). Both go through a train as any paraxial ray does, so the beam follows from exactly the
-//! same surfaces and gaps, inside glass too, and its derivatives from those of the two rays.
+//! (1985); from memory). Both go through a train as any paraxial ray does, so the beam follows from
+//! exactly the same surfaces and gaps, inside glass too, and its derivatives from those of the two
+//! rays.
 //! aᵤb − abᵤ = M²λ/π behind every surface that faces air: the invariant.
 
 use crate::paraxial::{ParaxialError, ParaxialRay, ParaxialWeights};

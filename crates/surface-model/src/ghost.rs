@@ -286,7 +286,7 @@ impl GhostWay {
 
 /// Share of a ghost's power that couples back into the mode it came from: both Gaussian beams of
 /// one wavelength and M² of 1, on one axis, by radius (mm) and wavefront curvature (1/mm) in one
-/// plane (W. B. Joyce and B. C. DeLoach, Appl. Opt. 23, 4187 (1984)).
+/// plane (W. B. Joyce and B. C. DeLoach, Appl. Opt. 23, 4187 (1984); from memory).
 #[must_use]
 pub fn mode_overlap(one: (f64, f64), other: (f64, f64), wavelength_nm: f64) -> f64 {
     let ((w1, c1), (w2, c2)) = (one, other);

@@ -31,9 +31,25 @@ pub enum BeamFormError {
     )]
     TooMany,
     /// A waist wider than the beam elsewhere.
-    #[error("the waist of {waist_diameter_mm} mm is wider than the beam of {diameter_mm} mm")]
+    #[error("the waist of {} mm is wider than the beam of {diameter_mm} mm", digits(*.waist_diameter_mm))]
     WaistTooWide {
         /// The waist given or found, mm.
+        waist_diameter_mm: f64,
+        /// Diameter at the first surface, mm.
+        diameter_mm: f64,
+    },
+    /// M² and divergence whose waist is wider than the beam.
+    #[error(
+        "M² {m_squared} and a divergence of {divergence_mrad} mrad contradict the diameter: they \
+         make a waist of {} mm, wider than the beam of {diameter_mm} mm",
+        digits(*.waist_diameter_mm)
+    )]
+    TooNarrow {
+        /// M² given.
+        m_squared: f64,
+        /// Full angle given, mrad.
+        divergence_mrad: f64,
+        /// The waist they make, mm.
         waist_diameter_mm: f64,
         /// Diameter at the first surface, mm.
         diameter_mm: f64,
@@ -65,6 +81,14 @@ impl BeamFormError {
             Self::WaistTooWide { .. } => {
                 "a waist no wider than diameter_mm, the diameter at the first surface".into()
             }
+            Self::TooNarrow { m_squared, waist_diameter_mm, diameter_mm, divergence_mrad } => {
+                let ratio = waist_diameter_mm / diameter_mm;
+                format!(
+                    "M² of at most {}, or a divergence of at least {} mrad",
+                    digits(m_squared / ratio),
+                    digits(divergence_mrad * ratio)
+                )
+            }
             Self::BelowDiffraction { .. } => "M² of at least 1: no beam is better".into(),
             Self::TooFar { .. } => {
                 "a waist so near, or a beam so good, that diffraction allows it".into()
@@ -82,9 +106,17 @@ impl BeamFormError {
                  times as large",
                 1.0 / m_squared
             )),
+            Self::TooNarrow { .. } => {
+                Some("divergences are full angles: a data sheet may give half of them".into())
+            }
             Self::WaistTooWide { .. } | Self::TooFar { .. } => None,
         }
     }
+}
+
+/// A computed number with as many digits as somebody would compare it by.
+fn digits(number: f64) -> String {
+    crate::document::rounded(number).to_string()
 }
 
 /// How far below 1 a computed M² may be from rounding alone.
@@ -129,7 +161,13 @@ impl BeamForm {
             (Some(divergence), None, None) if m_squared.is_none() => (diameter_mm, divergence, 0.0),
             (Some(divergence), None, None) => {
                 let waist = product * quality / divergence;
-                (waist, divergence, narrower(waist)? / divergence)
+                let contradicted = |_| BeamFormError::TooNarrow {
+                    m_squared: quality,
+                    divergence_mrad: divergence * 1e3,
+                    waist_diameter_mm: waist,
+                    diameter_mm,
+                };
+                (waist, divergence, narrower(waist).map_err(contradicted)? / divergence)
             }
             (None, Some(waist), None) => {
                 let divergence = product * quality / waist;
@@ -219,8 +257,8 @@ pub struct ThresholdDocument {
 #[derive(Debug, Clone, Copy, PartialEq, Eq, Deserialize, Serialize, JsonSchema)]
 pub enum ScalingDocument {
     /// In proportion to the square root of the pulse length: heat that diffuses away. Holds from
-    /// about 20 ps up (B. C. Stuart et al., Phys. Rev. Lett. 74, 2248 (1995)) to about 100 ns
-    /// (common practice, no published source).
+    /// about 20 ps up (B. C. Stuart et al., Phys. Rev. Lett. 74, 2248 (1995); from memory)
+    /// to about 100 ns (common practice, no published source).
     #[serde(rename = "square-root")]
     SquareRoot,
 }

@@ -14,9 +14,12 @@ use crate::train::Train;
 
 /// Rays along the radius and around half of the beam (the other half is its mirror image) to
 /// begin with, and at most.
-const RAYS: (usize, usize) = (12, 96);
+const RAYS: (usize, usize) = (12, 384);
 /// Change of the RMS, in waves or as a part of it, below which it has converged.
 const CONVERGED: f64 = 1e-5;
+/// Change of the vignetted share below which it has converged: the edge of a clear diameter is
+/// sharp, and rays find it slowly.
+const SHARE_CONVERGED: f64 = 1e-4;
 
 /// What a beam at an angle becomes.
 #[derive(Debug, Clone, Copy, PartialEq)]
@@ -41,7 +44,9 @@ pub fn pointing(train: &Train, beam: &TracedBeam, angle_rad: f64) -> Option<Poin
         rays *= 2;
         let now = Section::trace(train, beam, angle_rad, rays).result()?;
         let change = (now.rms_waves - before.rms_waves).abs();
-        if change <= CONVERGED * now.rms_waves.max(1.0) || rays >= RAYS.1 {
+        let settled = change <= CONVERGED * now.rms_waves.max(1.0)
+            && (now.vignetted - before.vignetted).abs() <= SHARE_CONVERGED;
+        if settled || rays >= RAYS.1 {
             return Some(now);
         }
         before = now;

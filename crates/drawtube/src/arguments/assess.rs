@@ -14,11 +14,11 @@ Example:
 pub(crate) struct AssessArguments {
     /// The design; "-" is standard input
     pub(crate) design: PathBuf,
-    /// Print the assessment as JSON
+    /// Print the assessment as JSON: everything, whatever else is asked to be printed
     #[arg(long)]
     pub(crate) json: bool,
     /// List every limited quantity, not only the tightest of each kind and those crossed
-    #[arg(long, conflicts_with = "json")]
+    #[arg(long)]
     pub(crate) all: bool,
     /// Write a picture as SVG: layout and wavefronts
     #[arg(long, value_name = "FILE")]
@@ -27,10 +27,10 @@ pub(crate) struct AssessArguments {
     #[arg(long, requires = "picture")]
     pub(crate) force: bool,
     /// Print all about the real beam instead: as it leaves, far off, at every surface, re-adjusted
-    #[arg(long, conflicts_with_all = ["json", "all"])]
+    #[arg(long, conflicts_with = "all")]
     pub(crate) beam: bool,
     /// Print all about hazards instead: every surface, focus and ghost
-    #[arg(long, conflicts_with_all = ["json", "all", "beam"])]
+    #[arg(long, conflicts_with_all = ["all", "beam"])]
     pub(crate) hazards: bool,
     /// Distances behind the last vertex to tell the real beam's diameter at, in m
     #[arg(
@@ -38,6 +38,7 @@ pub(crate) struct AssessArguments {
         value_name = "M",
         value_delimiter = ',',
         value_parser = range_m,
+        allow_negative_numbers = true,
         conflicts_with_all = ["all", "hazards"]
     )]
     pub(crate) ranges_m: Vec<f64>,

@@ -18,12 +18,13 @@ pub(crate) struct CamArguments {
     /// The design; "-" is standard input
     pub(crate) design: PathBuf,
     /// Number of ratios told, in equal steps; those of the states are told as well [default: 21]
-    #[arg(long, value_name = "N", conflicts_with = "step")]
+    #[arg(long, value_name = "N", conflicts_with = "step", value_parser = count)]
     pub(crate) ratios: Option<usize>,
     /// Step between two ratios told
     #[arg(long, value_name = "X", allow_negative_numbers = true)]
     pub(crate) step: Option<f64>,
-    /// Write the curves as CSV, for the cam maker or the stepper
+    /// Write the curves as CSV, for the cam maker or the stepper; "-" is standard output, the
+    /// table then goes to standard error
     #[arg(long, value_name = "OUT")]
     pub(crate) csv: Option<PathBuf>,
     /// Write a picture as SVG
@@ -50,4 +51,10 @@ pub(crate) struct CamArguments {
     /// Leave with status 3 if anything along the curve is wrong
     #[arg(long)]
     pub(crate) require: bool,
+}
+
+fn count(text: &str) -> Result<usize, &'static str> {
+    text.parse().map_err(|_| {
+        "it counts the ratios told, in a whole number; --step sets the way from one to the next"
+    })
 }

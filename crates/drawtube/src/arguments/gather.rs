@@ -26,6 +26,12 @@ pub(crate) struct GatherArguments {
     #[arg(long, value_name = "N", default_value_t = 10,
         value_parser = clap::value_parser!(u16).range(1..=99))]
     pub(crate) keep: u16,
+    /// Draw the result as SVG, as `overnight` and `sweep` do
+    #[arg(long, value_name = "FILE")]
+    pub(crate) picture: Option<PathBuf>,
+    /// Replace the picture if it is there already
+    #[arg(long, requires = "picture")]
+    pub(crate) force: bool,
     /// Print the list as JSON
     #[arg(long)]
     pub(crate) json: bool,

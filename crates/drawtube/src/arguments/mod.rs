@@ -12,6 +12,7 @@ mod overnight;
 mod progress;
 mod report;
 mod retune;
+mod run;
 mod schema;
 mod start;
 mod sweep;
@@ -34,6 +35,7 @@ pub(crate) use overnight::{OvernightArguments, StrategyArgument};
 pub(crate) use progress::ProgressArgument;
 pub(crate) use report::ReportArguments;
 pub(crate) use retune::RetuneArguments;
+pub(crate) use run::RunArguments;
 pub(crate) use schema::{DocumentKind, SchemaArguments};
 pub(crate) use start::StartArguments;
 pub(crate) use sweep::SweepArguments;
@@ -43,6 +45,7 @@ pub(crate) use trace::TraceArguments;
 use crate::console::{Console, ErrorFormat};
 use crate::exit_status::ExitStatus;
 use crate::failure::Failure;
+use crate::refusal::Refusal;
 
 /// Design zoom laser-beam expanders: lens groups that slide in a tube of fixed length.
 ///
@@ -102,7 +105,7 @@ pub(crate) enum Command {
     Optimise(OptimiseArguments),
     /// Search for designs for hours, in a run folder that survives anything
     Overnight(OvernightArguments),
-    /// Optimise a design at every point of a grid or a sample
+    /// Optimise a design or brief at every point of a grid or sample
     Sweep(SweepArguments),
     /// After a change, move only what can still move, in stages
     Retune(RetuneArguments),
@@ -130,14 +133,19 @@ pub(crate) enum Command {
 pub(crate) struct Refused {
     error: clap::Error,
     errors: ErrorFormat,
+    /// The command that was named.
+    command: Option<String>,
 }
 
 impl Arguments {
     /// Reads a command line.
     pub(crate) fn read(words: impl IntoIterator<Item = OsString>) -> Result<Self, Refused> {
         let words: Vec<OsString> = words.into_iter().collect();
-        Self::try_parse_from(&words)
-            .map_err(|error| Refused { error, errors: errors_asked(&words) })
+        Self::try_parse_from(&words).map_err(|error| Refused {
+            error,
+            errors: errors_asked(&words),
+            command: command_asked(&words),
+        })
     }
 
     /// The command line as the shell completions need it.
@@ -153,10 +161,17 @@ fn errors_asked(words: &[OsString]) -> ErrorFormat {
     if spaced || joined { ErrorFormat::Json } else { ErrorFormat::Text }
 }
 
+/// The command that is named on a command line that could not be taken as a whole.
+fn command_asked(words: &[OsString]) -> Option<String> {
+    let grammar = Arguments::grammar();
+    let mut words = words.iter().skip(1).filter_map(|word| word.to_str());
+    words.find(|word| grammar.find_subcommand(word).is_some()).map(str::to_owned)
+}
+
 impl Refused {
     /// Prints the help that was asked for, or what is wrong.
     pub(crate) fn tell(self) -> ExitStatus {
-        let Self { error, errors } = self;
+        let Self { error, errors, command } = self;
         let console = Console::new(errors);
         match error.kind() {
             ErrorKind::DisplayHelp | ErrorKind::DisplayVersion => {
@@ -167,10 +182,9 @@ impl Refused {
                 console.say_help(&error.render());
                 ExitStatus::WrongInput
             }
-            _ if errors == ErrorFormat::Json => console.fail(&Failure::CommandLine(error)),
             _ => {
-                console.say_help(&error.render());
-                ExitStatus::WrongInput
+                let refusal = Refusal::of(&error, command.as_deref());
+                console.fail(&Failure::CommandLine(refusal))
             }
         }
     }

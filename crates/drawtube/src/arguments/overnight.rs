@@ -4,7 +4,7 @@ use std::path::PathBuf;
 
 use clap::{Args, ValueEnum};
 
-use super::ProgressArgument;
+use super::RunArguments;
 
 /// Search for designs for hours, in a run folder that survives anything.
 ///
@@ -19,8 +19,9 @@ start found) and, when a session ends, the best designs as best/01.json, … wit
 their list in ranking.json. Ctrl-C and SIGTERM stop within a second, saved;
 SIGUSR1 prints a line of progress.
 
-Example:
-  drawtube overnight configs/river-lidar-2x-6x.json --run night --starts 4")]
+Examples:
+  drawtube overnight configs/river-lidar-2x-6x.json --run night --starts 4
+  drawtube overnight --run night --show --picture night.svg")]
 pub(crate) struct OvernightArguments {
     /// The design or brief; "-" is standard input
     #[arg(required_unless_present = "show")]
@@ -37,19 +38,9 @@ pub(crate) struct OvernightArguments {
     /// The run is done when a start reaches this merit with every limit kept
     #[arg(long, value_name = "X", allow_negative_numbers = true)]
     pub(crate) target_merit: Option<f64>,
-    /// Leave after so many minutes with status 75; run again, it goes on
-    #[arg(long, value_name = "MINUTES", allow_negative_numbers = true)]
-    pub(crate) time_limit: Option<f64>,
     /// Seed of the random numbers
     #[arg(long, value_name = "N", default_value_t = 0)]
     pub(crate) seed: u64,
-    /// Threads to compute on [default: all the machine has]
-    #[arg(long, value_name = "N", value_parser = clap::value_parser!(u16).range(1..=4096))]
-    pub(crate) threads: Option<u16>,
-    /// Take part I of N: every N-th start, into DIR/parts. "auto" reads I and N from the variables
-    /// of a job engine, "auto/N" only I
-    #[arg(long, value_name = "I/N")]
-    pub(crate) part: Option<String>,
     /// How a start searches
     #[arg(long, value_enum, default_value_t)]
     pub(crate) strategy: StrategyArgument,
@@ -64,15 +55,14 @@ pub(crate) struct OvernightArguments {
     /// Print the state as JSON
     #[arg(long)]
     pub(crate) json: bool,
-    /// Print no list and no progress, only errors
-    #[arg(short, long, conflicts_with = "json")]
-    pub(crate) quiet: bool,
-    /// How progress is told on standard error
-    #[arg(long, value_enum, default_value_t, env = "DRAWTUBE_PROGRESS", value_name = "FORM")]
-    pub(crate) progress: ProgressArgument,
-    /// Least time between two plain lines of progress
-    #[arg(long, value_name = "SECONDS", default_value_t = 60.0, allow_negative_numbers = true)]
-    pub(crate) progress_every: f64,
+    /// Draw the merit against time and the best design as SVG
+    #[arg(long, value_name = "FILE")]
+    pub(crate) picture: Option<PathBuf>,
+    /// Replace the picture if it is there already, as in a run that goes on
+    #[arg(long, requires = "picture")]
+    pub(crate) force: bool,
+    #[command(flatten)]
+    pub(crate) run_as: RunArguments,
 }
 
 /// A strategy by its name.

@@ -23,7 +23,7 @@ pub(crate) struct StartArguments {
     /// Replace OUT if it is there already
     #[arg(long, requires = "output")]
     pub(crate) force: bool,
-    /// Which layout of the table is written
+    /// Which layout of the table is written where -o says
     #[arg(long, value_name = "N", default_value_t = 1,
         value_parser = RangedU64ValueParser::<usize>::new().range(1..=1000))]
     pub(crate) rank: usize,

@@ -7,6 +7,11 @@ use clap::{Args, ValueEnum};
 
 use super::ProgressArgument;
 
+/// Systems that are built where nothing else is asked for, here and for a report.
+pub(super) const DEFAULT_SYSTEMS: u64 = 1000;
+/// The sequence of random numbers they are drawn from.
+pub(super) const DEFAULT_SEED: u64 = 1;
+
 /// Tell what a workshop's errors do to a design, and how many systems come out right.
 ///
 /// Every system is built with errors drawn within its tolerances ("tolerances" in the design, or a
@@ -23,10 +28,10 @@ pub(crate) struct ToleranceArguments {
     /// The design; "-" is standard input
     pub(crate) design: PathBuf,
     /// How many systems are built at random
-    #[arg(long, value_name = "N", default_value_t = 1000)]
+    #[arg(long, value_name = "N", default_value_t = DEFAULT_SYSTEMS)]
     pub(crate) systems: u64,
     /// Which sequence of random numbers
-    #[arg(long, value_name = "N", default_value_t = 1)]
+    #[arg(long, value_name = "N", default_value_t = DEFAULT_SEED)]
     pub(crate) seed: u64,
     /// Threads that work [default: as many as the machine runs at once]
     #[arg(long, value_name = "N")]

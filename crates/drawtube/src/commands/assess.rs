@@ -28,6 +28,8 @@ enum Form {
 struct Request {
     file: DesignFile,
     form: Form,
+    /// Whether the real beam is told anew, at the ranges.
+    beam: bool,
     picture: Option<OutputFile>,
     /// Distances to tell the real beam at, m.
     ranges_m: Vec<f64>,
@@ -47,11 +49,12 @@ impl Request {
             Form::Text(if arguments.all { Scope::All } else { Scope::Tightest })
         };
         let force = arguments.force;
-        let picture = arguments.picture.map(|path| OutputFile::checked(path, force));
+        let picture = arguments.picture.map(|path| OutputFile::picture(path, force));
         Ok(Self {
             picture: picture.transpose()?,
             file: input::design(&arguments.design)?,
             form,
+            beam: arguments.beam || !arguments.ranges_m.is_empty(),
             ranges_m: arguments.ranges_m,
             require: arguments.require,
             temperatures_c: arguments.temperature,
@@ -69,10 +72,10 @@ struct Printed<'a> {
 }
 
 pub(crate) fn run(arguments: AssessArguments, console: &Console) -> Result<ExitStatus, Failure> {
-    let Request { file, form, picture, ranges_m, require, temperatures_c } =
+    let Request { file, form, beam, picture, ranges_m, require, temperatures_c } =
         Request::of(arguments)?;
     let mut assessment = assess(&file.design, &file.wishes);
-    if matches!(form, Form::Beam) || !ranges_m.is_empty() {
+    if beam {
         assessment.real_beam = Some(real_beam(&file.design, &file.wishes, &ranges_m));
     }
     let warm = match temperatures_c.as_slice() {

@@ -7,6 +7,7 @@ use report::text;
 
 use crate::arguments::CamArguments;
 use crate::console::Console;
+use crate::destination::Destination;
 use crate::exit_status::ExitStatus;
 use crate::failure::Failure;
 use crate::input;
@@ -16,7 +17,7 @@ use crate::output_file::OutputFile;
 struct Request {
     file: DesignFile,
     settings: CamSettings,
-    csv: Option<OutputFile>,
+    csv: Destination,
     picture: Option<OutputFile>,
     json: bool,
     require: bool,
@@ -38,12 +39,15 @@ impl Request {
             steepest_deg: arguments.steepest_deg,
         };
         let file = input::design(&arguments.design)?;
-        let output = |path| OutputFile::checked(path, arguments.force);
+        let force = arguments.force;
+        let csv = Destination::of(arguments.csv, force);
+        csv.check()?;
+        let picture = arguments.picture.map(|path| OutputFile::picture(path, force));
         Ok(Self {
             file,
             settings,
-            csv: arguments.csv.map(output).transpose()?,
-            picture: arguments.picture.map(output).transpose()?,
+            csv,
+            picture: picture.transpose()?,
             json: arguments.json,
             require: arguments.require,
         })
@@ -53,16 +57,21 @@ impl Request {
 pub(crate) fn run(arguments: CamArguments, console: &Console) -> Result<ExitStatus, Failure> {
     let Request { file, settings, csv, picture, json, require } = Request::of(arguments)?;
     let curve = movement_curve(&file.design, &file.wishes, &settings)?;
-    if let Some(output) = csv {
-        output.write(&csv_table(&curve).map_err(|error| Failure::Table(error.into()))?)?;
+    if csv != Destination::Nowhere {
+        let table = csv_table(&curve).map_err(|error| Failure::Table(error.into()))?;
+        csv.save("table of curves", table.as_bytes(), console)?;
     }
     if let Some(output) = picture {
         output.write(&cam_picture(&file, &curve))?;
     }
-    if json {
-        console.print_json(&curve)?;
-    } else {
-        console.print(&text::cam::cam(&file, &curve))?;
+    let aside = csv == Destination::StandardOutput;
+    match (json, aside) {
+        (true, false) => console.print_json(&curve)?,
+        (true, true) => {
+            console.say(&serde_json::to_string_pretty(&curve).map_err(Failure::Document)?);
+        }
+        (false, false) => console.print(&text::cam::cam(&file, &curve))?,
+        (false, true) => console.say(&text::cam::cam(&file, &curve)),
     }
     Ok(if require && !curve.sound { ExitStatus::Missed } else { ExitStatus::Done })
 }

@@ -12,13 +12,22 @@ use crate::arguments::GatherArguments;
 use crate::console::Console;
 use crate::exit_status::ExitStatus;
 use crate::failure::Failure;
+use crate::output_file::OutputFile;
 
 pub(crate) fn run(arguments: &GatherArguments, console: &Console) -> Result<ExitStatus, Failure> {
     let output = output(arguments)?;
+    let picture = arguments.picture.clone().map(|path| OutputFile::picture(path, arguments.force));
+    let picture = picture.transpose()?;
     let surveys: Vec<Survey> =
         arguments.folders.iter().map(|path| Survey::of(path)).collect::<Result<_, RunError>>()?;
     if surveys.first().is_some_and(|survey| survey.run.kind == sweep::KIND) {
-        return super::sweep::gathering::gather(&surveys, &output, arguments.json, console);
+        return super::sweep::gathering::gather(
+            &surveys,
+            &output,
+            arguments.json,
+            picture.as_ref(),
+            console,
+        );
     }
     let gathering = Gathering::of(&surveys, usize::from(arguments.keep))?;
     let list = gathering.list();
@@ -30,6 +39,9 @@ pub(crate) fn run(arguments: &GatherArguments, console: &Console) -> Result<Exit
     let Some(first) = surveys.first() else { return Ok(ExitStatus::NothingToDo) };
     let folder = ResultsFolder::open(&output, first)?;
     folder.write_results(&list.files().map_err(Failure::Document)?)?;
+    if let Some(picture) = picture {
+        super::overnight::picture::draw(&list, gathering.finds(), &picture, console)?;
+    }
     tell(&list, &missing, &gathering, arguments, console)?;
     if !arguments.json {
         let told = format!("\nThe designs are in {}/best.", output.display());

@@ -2,7 +2,7 @@
 
 use report::text;
 use serde_json::{Map, Value, json};
-use surface_model::glass::{Equivalent, Glass, equivalents, find, search};
+use surface_model::glass::{Equivalent, Glass, SHORTEST_NM, equivalents, find, search};
 
 use crate::arguments::GlassArguments;
 use crate::console::Console;
@@ -18,11 +18,11 @@ enum Request {
 impl Request {
     fn of(arguments: &mut GlassArguments) -> Result<Self, Failure> {
         for &nm in &arguments.at_nm {
-            if !(nm.is_finite() && nm > 0.0) {
+            if !(nm.is_finite() && nm >= SHORTEST_NM) {
                 return Err(Failure::Argument {
                     option: "--at-nm",
                     found: nm.to_string(),
-                    constraint: "a positive number of nanometres",
+                    constraint: "at least 100: it is in nanometres, 0.532 µm is 532",
                 });
             }
         }

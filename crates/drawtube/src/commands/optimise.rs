@@ -17,19 +17,20 @@ use crate::failure::Failure;
 use crate::progress::{MeritHistory, Teller};
 use crate::signals::StopSignal;
 
+use crate::told::Told;
 use account::Account;
-use request::{Request, Summary};
+use request::Request;
 
 pub(crate) fn run(arguments: OptimiseArguments, console: &Console) -> Result<ExitStatus, Failure> {
     let request = Request::of(arguments, console)?;
     request.destination.check()?;
     let signals = StopSignal::listen().map_err(Failure::Signals)?;
     let (stages, history) = solve(&request, &signals, console)?;
-    let account = Account::new(&request.file, stages)?;
+    let account = Account::new(&request.file, stages, history)?;
     let saved = request.destination.save("design", account.result().text().as_bytes(), console);
     tell(&request, &account, saved.is_ok(), console)?;
     saved?;
-    draw(&request, &account, history)?;
+    draw(&request, &account)?;
     Ok(signals.status().unwrap_or(if request.require && !account.meets() {
         ExitStatus::Missed
     } else {
@@ -64,17 +65,11 @@ fn solve(
 }
 
 /// Writes the picture that was asked for.
-fn draw(
-    request: &Request,
-    account: &Account<'_>,
-    history: Vec<MeritHistory>,
-) -> Result<(), Failure> {
+fn draw(request: &Request, account: &Account<'_>) -> Result<(), Failure> {
     let Some(output) = &request.picture else { return Ok(()) };
-    let runs: Vec<(String, MeritHistory)> =
-        request.stages.iter().map(|stage| stage.method().name().to_owned()).zip(history).collect();
     let file = account.result();
     let curve = movement_curve(&file.design, &file.wishes, &CamSettings::default());
-    output.write(&optimisation_picture(file, curve.as_ref().ok(), &runs))
+    output.write(&optimisation_picture(file, curve.as_ref().ok(), &account.merit_runs()))
 }
 
 /// Prints the summary: on standard output, unless a design is or has to be there.
@@ -84,10 +79,10 @@ fn tell(
     saved: bool,
     console: &Console,
 ) -> Result<(), Failure> {
-    let text = match request.summary {
-        Summary::None => return Ok(()),
-        Summary::Json => account.document()?,
-        Summary::Text => account.text(&request.destination, saved),
+    let text = match request.told {
+        Told::Nothing => return Ok(()),
+        Told::Json => account.document()?,
+        Told::Text => account.text(&request.destination, saved),
     };
     if saved && request.destination != Destination::StandardOutput {
         console.print(&text)

@@ -1,5 +1,6 @@
 //! `overnight`: a search of hours in a run folder.
 
+pub(super) mod picture;
 mod request;
 mod state;
 mod watcher;
@@ -8,7 +9,7 @@ use std::path::Path;
 
 use driver::brief::BriefFile;
 use driver::design_file::DesignFile;
-use driver::overnight::{Overnight, RankedList, fetch};
+use driver::overnight::{Finds, Overnight, RankedList, fetch};
 use driver::run::{RunEnd, RunFolder, Stop, Survey, perform};
 use driver::search::{SearchProblem, SearchSettings};
 use surface_model::document::Document;
@@ -20,23 +21,27 @@ use crate::failure::Failure;
 use crate::run_progress::RunTeller;
 use crate::signals::StopSignal;
 
-use request::{Request, Told};
+use crate::told::Told;
+use request::Request;
 use watcher::NightWatch;
 
 pub(crate) fn run(arguments: OvernightArguments, console: &Console) -> Result<ExitStatus, Failure> {
     if arguments.show {
-        return state::show(&arguments.run, usize::from(arguments.keep), arguments.json, console);
+        return state::show(arguments, console);
     }
     let request = Request::of(arguments, console)?;
     let signals = StopSignal::listen().map_err(Failure::Signals)?;
     let folder = RunFolder::open(&request.run, &request.ask)?;
-    let (end, list) = search(&request, &folder, &signals, console)?;
+    let (end, list, finds) = search(&request, &folder, &signals, console)?;
     let kept = keep(&request, &folder, &end, &list, console);
     let place = folder.place().to_owned();
     // Whoever looks from now on, this program included, sees that no one is at work.
     drop(folder);
     tell(&request, &place, &end, &list, kept.is_ok(), console)?;
     kept?;
+    if let Some(output) = &request.picture {
+        picture::draw(&list, &finds, output, console)?;
+    }
     Ok(status(&request, &signals, &end, &list))
 }
 
@@ -46,11 +51,12 @@ fn search(
     folder: &RunFolder,
     signals: &StopSignal,
     console: &Console,
-) -> Result<(RunEnd, RankedList), Failure> {
-    let teller = RunTeller::new(request.progress, console, "starts", request.budget.run_time)
-        .map_err(Failure::Signals)?;
+) -> Result<(RunEnd, RankedList, Finds), Failure> {
+    let teller =
+        RunTeller::new(request.run_as.progress, console, "starts", request.budget.run_time)
+            .map_err(Failure::Signals)?;
     let mut watch = NightWatch::new(teller, signals.flag(), request);
-    let end = perform(folder, &request.work, &request.budget, request.threads, &mut watch);
+    let end = perform(folder, &request.work, &request.budget, request.run_as.threads, &mut watch);
     let (mut finds, teller) = watch.over();
     teller.finish();
     let end = end?;
@@ -58,7 +64,7 @@ fn search(
         fetch(&mut finds, end.counted_below, &[Survey::of(&request.run)?])?;
     }
     let list = finds.list(end.counted_below, end.tally.finished);
-    Ok((end, list))
+    Ok((end, list, finds))
 }
 
 /// Writes the results. Where that fails, the best design goes to standard output as the last
@@ -96,7 +102,7 @@ fn tell(
     kept: bool,
     console: &Console,
 ) -> Result<(), Failure> {
-    match request.told {
+    match request.run_as.told {
         Told::Nothing => Ok(()),
         Told::Json if kept => {
             let state = state::State::of(&request.run, usize::from(request.keep))?;

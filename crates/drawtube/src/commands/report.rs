@@ -1,11 +1,18 @@
 //! `report`: the page, and the sheets for the shop.
 
+mod found;
+
 use std::path::{Path, PathBuf};
 
 use driver::cam::{CamError, CamSettings, MovementCurve, movement_curve};
 use driver::design_file::DesignFile;
+use driver::temperature::at_temperatures;
+use driver::tolerance::{ToleranceSettings, Unwatched, tolerance};
 use merit_function::assessment::{Assessment, assess};
-use report::page::{Found, Section, Subject, page, preformatted};
+use report::page::{
+    Found, Section, Subject, page, preformatted, silent_section, temperature_section,
+    tolerance_section,
+};
 use report::shop::shop_files;
 use report::text;
 
@@ -15,6 +22,8 @@ use crate::exit_status::ExitStatus;
 use crate::failure::Failure;
 use crate::input::{self, STANDARD_STREAM};
 use crate::output_file::OutputFile;
+
+use found::{Source, found};
 
 /// Where the page goes.
 enum Destination {
@@ -40,19 +49,20 @@ impl Told {
         Ok(Self { name, file, assessment, curve })
     }
 
-    fn subject(&self) -> Subject<'_> {
+    fn subject(&self, found: Found, systems: &ToleranceSettings) -> Subject<'_> {
         Subject {
             name: self.name.clone(),
             file: &self.file,
             assessment: &self.assessment,
             curve: self.curve.as_ref().map_err(ToString::to_string),
-            found: self.found(),
-            sections: self.sections(),
+            found,
+            sections: self.sections(systems),
         }
     }
 
-    /// What the assessment tells of the laser, where the design describes one.
-    fn sections(&self) -> Vec<Section> {
+    /// What is told of the laser, of the workshop and of temperature, where the design says
+    /// anything of them.
+    fn sections(&self, systems: &ToleranceSettings) -> Vec<Section> {
         let Self { file, assessment, .. } = self;
         let section = |title: &str, text: String| Section {
             title: title.to_owned(),
@@ -66,27 +76,39 @@ impl Told {
             .hazards
             .as_ref()
             .map(|_| section("Hazards", text::hazards::hazards(file, assessment)));
-        beam.into_iter().chain(hazards).collect()
+        let sections = [beam, hazards, self.tolerances(systems), self.temperatures()];
+        sections.into_iter().flatten().collect()
     }
 
-    /// What is known of how the design was found: what its file says of itself.
-    fn found(&self) -> Found {
-        let note = self.file.document().value().get("note").and_then(|note| note.as_str());
-        let mut settings = vec![
-            ("design file".to_owned(), self.file.label().to_owned()),
-            ("told by".to_owned(), concat!("drawtube ", env!("CARGO_PKG_VERSION")).to_owned()),
-        ];
-        settings.extend(note.map(|note| ("note in the file".to_owned(), note.to_owned())));
-        Found { settings, runs: Vec::new() }
+    fn tolerances(&self, settings: &ToleranceSettings) -> Option<Section> {
+        let file = &self.file;
+        file.document().value().get("tolerances")?;
+        Some(match tolerance(file, settings, &mut Unwatched) {
+            Ok(report) => tolerance_section(file, &report),
+            Err(error) => silent_section("Tolerances", &error.to_string()),
+        })
+    }
+
+    fn temperatures(&self) -> Option<Section> {
+        let file = &self.file;
+        let temperatures_c = file.wishes.temperatures_c.as_slice();
+        if temperatures_c.is_empty() {
+            return None;
+        }
+        Some(match at_temperatures(file, temperatures_c) {
+            Ok(report) => temperature_section(file, &report),
+            Err(error) => silent_section("Temperature", &error.to_string()),
+        })
     }
 }
 
 pub(crate) fn run(arguments: ReportArguments, console: &Console) -> Result<ExitStatus, Failure> {
-    let ReportArguments { designs, output, sheets, force } = arguments;
+    let ReportArguments { designs, output, sheets, found: sources, systems, seed, force } =
+        arguments;
     let destination = match output {
         None => Destination::Nowhere,
         Some(path) if path.as_os_str() == STANDARD_STREAM => Destination::StandardOutput,
-        Some(path) => Destination::File(OutputFile::checked(path, force)?),
+        Some(path) => Destination::File(OutputFile::page(path, force)?),
     };
     if sheets.is_some() && designs.len() > 1 {
         return Err(Failure::Argument {
@@ -95,17 +117,34 @@ pub(crate) fn run(arguments: ReportArguments, console: &Console) -> Result<ExitS
             constraint: "given with one design",
         });
     }
+    let sources: Vec<Source> = sources.into_iter().map(Source::of).collect::<Result<_, _>>()?;
+    let systems =
+        ToleranceSettings { systems, seed, grade: None, readjusted: None, balance_percent: None };
     let told: Vec<Told> = designs.iter().map(|path| Told::of(path)).collect::<Result<_, _>>()?;
     if let (Some(folder), Some(told)) = (&sheets, told.first()) {
         write_sheets(folder, &told.file, force, console)?;
     }
-    let subjects: Vec<Subject<'_>> = told.iter().map(Told::subject).collect();
     match destination {
         Destination::Nowhere => {}
-        Destination::StandardOutput => console.print_exactly(&page(&subjects))?,
-        Destination::File(file) => file.write(&page(&subjects))?,
+        Destination::StandardOutput => {
+            console.print_exactly(&page_of(&told, &sources, &systems)?)?;
+        }
+        Destination::File(file) => file.write(&page_of(&told, &sources, &systems)?)?,
     }
     Ok(ExitStatus::Done)
+}
+
+fn page_of(
+    told: &[Told],
+    sources: &[Source],
+    systems: &ToleranceSettings,
+) -> Result<String, Failure> {
+    let designs: Vec<_> = told.iter().map(|told| (&told.file, &told.assessment)).collect();
+    let found = found(sources, &designs)?;
+    let pairs = told.iter().zip(found);
+    let subjects: Vec<Subject<'_>> =
+        pairs.map(|(told, found)| told.subject(found, systems)).collect();
+    Ok(page(&subjects))
 }
 
 /// Every sheet and table, once all are known to be writable.

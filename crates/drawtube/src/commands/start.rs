@@ -1,7 +1,7 @@
 //! `start`: from a brief to ranked first-order layouts.
 
 use driver::brief::BriefFile;
-use driver::start::{LOOKED_AT, Ranking, Starts};
+use driver::start::{LOOKED_AT, Ranking, StartError, Starts};
 use report::start::{StartDocument, impossible};
 use report::text;
 
@@ -29,7 +29,8 @@ impl Request {
             brief: input::brief(&arguments.brief)?,
             destination: Destination::of(arguments.output, arguments.force),
             place: arguments.rank - 1,
-            count: arguments.count,
+            // The one that is written is told as well.
+            count: arguments.count.max(arguments.rank),
             seed: arguments.seed,
             json: arguments.json,
         })
@@ -39,19 +40,19 @@ impl Request {
 pub(crate) fn run(arguments: StartArguments, console: &Console) -> Result<ExitStatus, Failure> {
     let request = Request::of(arguments)?;
     request.destination.check()?;
-    let starts = Starts::of(&request.brief)?;
-    let most = request.count.max(request.place + 1);
-    let mut ranking = starts.ranked(LOOKED_AT, request.seed, most);
+    let refused = |error: StartError| Failure::Input(error.in_brief(&request.brief));
+    let starts = Starts::of(&request.brief).map_err(refused)?;
+    let most = request.count;
+    let ranking = starts.ranked(LOOKED_AT, request.seed, most);
     if ranking.best.is_empty() {
         let relaxed = starts.relaxations(LOOKED_AT, request.seed);
-        return Err(Failure::Impossible(impossible(&ranking, &relaxed)));
+        return Err(Failure::Impossible(impossible(&starts, &ranking, &relaxed)));
     }
     if ranking.best.len() <= request.place {
         let (asked, found) = (request.place + 1, ranking.best.len());
         return Err(Failure::NoSuchRank { asked, found });
     }
     let saved = save(&request, &starts, &ranking, console);
-    ranking.best.truncate(request.count);
     tell(&request, &starts, &ranking, saved.is_ok(), console)?;
     saved?;
     Ok(ExitStatus::Done)
@@ -92,6 +93,9 @@ fn tell(
     if saved {
         let rank = request.place + 1;
         told.push_str(&match &request.destination {
+            Destination::Nowhere if rank > 1 => {
+                format!("\nLayout {rank} was not kept: give -o OUT to write it.")
+            }
             Destination::Nowhere => {
                 "\nNone was kept: give -o OUT to write the first, --rank N for another.".to_owned()
             }

@@ -12,7 +12,7 @@ use crate::console::Console;
 use crate::exit_status::ExitStatus;
 use crate::failure::Failure;
 use crate::input;
-use crate::progress::{Counter, Manner, interval};
+use crate::progress::{Counter, Manner, duration};
 use crate::signals::StopSignal;
 
 /// The word for re-adjusting nothing.
@@ -37,7 +37,7 @@ struct Request {
 
 impl Request {
     fn of(arguments: ToleranceArguments, console: &Console) -> Result<Self, Failure> {
-        let every = interval(arguments.progress_every)?;
+        let every = duration("--progress-every", arguments.progress_every, 1.0)?;
         if let Some(percent) = arguments.require
             && !(0.0..=100.0).contains(&percent)
         {

@@ -49,6 +49,10 @@ pub struct BriefDocument {
     /// Limits.
     #[serde(default)]
     pub limits: LimitsDocument,
+    /// Temperatures in °C at which the goals hold too, nothing re-adjusted; designs are drawn at
+    /// 20 °C, which always counts.
+    #[serde(default, skip_serializing_if = "Vec::is_empty")]
+    pub temperatures_c: Vec<f64>,
 }
 
 /// The version of the brief format.

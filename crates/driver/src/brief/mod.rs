@@ -12,6 +12,7 @@ use surface_model::design::Beam;
 use surface_model::document::{Address, Complain, Complaint, Complaints, Document, union};
 use surface_model::glass::Glass;
 
+use crate::design_file::silent_about_temperature;
 use crate::document_kind::{BRIEF, part};
 
 pub use document::{
@@ -69,6 +70,9 @@ impl BriefFile {
             (Ok(design), Ok(wishes)) if own.is_empty() => {
                 if let Some(lacks) = wishes.lacks_of(&design) {
                     return Err(document.refuse([lacks]));
+                }
+                if let Some(silent) = silent_about_temperature(&design, &wishes) {
+                    return Err(document.refuse([silent]));
                 }
                 let glasses = design.groups.into_iter().next().map(|group| group.elements);
                 let stack = glasses.into_iter().flatten().next();

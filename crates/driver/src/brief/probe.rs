@@ -77,8 +77,8 @@ pub(super) fn wishes(brief: &BriefDocument) -> WishesDocument {
     };
     WishesDocument {
         goals: brief.goals,
-        limits: brief.limits,
-        temperatures_c: Vec::new(),
+        limits: brief.limits.clone(),
+        temperatures_c: brief.temperatures_c.clone(),
         states: brief.ratios.iter().map(own).collect(),
     }
 }
@@ -89,7 +89,8 @@ pub(super) fn place_in_brief(at: &Address, brief: &BriefDocument) -> Option<Addr
     let steps = at.steps();
     let (front, rest) = match steps.as_slice() {
         [
-            "beam" | "coating" | "damage_thresholds" | "glasses" | "housing" | "goals" | "limits",
+            "beam" | "coating" | "damage_thresholds" | "glasses" | "housing" | "goals" | "limits"
+            | "temperatures_c",
             ..,
         ] => return Some(at.clone()),
         ["groups", _, "name"] if brief.groups.is_some() => return Some(at.clone()),

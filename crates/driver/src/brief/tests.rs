@@ -32,6 +32,36 @@ fn the_shipped_briefs_are_read() {
 }
 
 #[test]
+fn temperatures_go_to_the_designs() {
+    let mut value = river();
+    value["temperatures_c"] = json!([0.0, 40.0]);
+    let silent = read(value.clone()).unwrap_err();
+    assert!(silent.contains("/temperatures_c/0"), "{silent}");
+    value["housing"]["expansion_per_k"] = json!(2.3e-5);
+    value["glasses_allowed"] = json!(["N-BK7"]);
+    let brief = read(value).unwrap();
+    assert_eq!(brief.wishes.temperatures_c, [0.0, 40.0]);
+    let starts = crate::start::Starts::of(&brief).unwrap();
+    let points = starts.points(1);
+    let layout = (0..4096).find_map(|number| starts.layout(&points.point(number)).ok()).unwrap();
+    let file = starts.design_file(&layout, &layout.design, "warm and cold").unwrap();
+    assert_eq!(file.wishes.temperatures_c, [0.0, 40.0]);
+    let outcome = crate::optimise::merit_of(&file);
+    assert!(outcome.is_ok(), "{:?}", outcome.err());
+}
+
+#[test]
+fn limits_between_the_states_are_for_two_moving_groups() {
+    let limit = |v: &mut Value| v["limits"]["between_states"] = json!("keep");
+    assert_eq!(told(limit), "read without complaint");
+    let one_ratio = told(|v| {
+        limit(v);
+        v["ratios"] = json!([2]);
+    });
+    assert!(one_ratio.contains("/limits/between_states"), "{one_ratio}");
+}
+
+#[test]
 fn a_ratio_can_have_wishes_of_its_own() {
     let brief = read({
         let mut value = river();

@@ -17,6 +17,10 @@ pub struct MovementCurve {
     pub wavelength_nm: f64,
     /// What is held along the curve.
     pub held: Hold,
+    /// Where the beam should come to a focus all along the curve, m behind the last vertex; absent
+    /// for a collimated beam.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub exit_focus_m: Option<f64>,
     /// The barrel the grooves are cut in, if one was given.
     #[serde(skip_serializing_if = "Option::is_none")]
     pub barrel: Option<Barrel>,
@@ -42,6 +46,8 @@ pub struct MovementCurve {
 pub enum Hold {
     /// Ratio and collimation.
     RatioAndCollimation,
+    /// Ratio and the focus that the states want.
+    RatioAndFocus,
     /// The ratio alone: only one group moves.
     Ratio,
 }
@@ -99,12 +105,20 @@ pub struct CurvePoint {
     pub groups: Vec<GroupAtRatio>,
     /// Air between the groups, mm.
     pub spacings_mm: Vec<f64>,
-    /// Slope that the best sphere of the exit wavefront gives the ray at the 1/e² radius, µrad.
+    /// Slope that the best sphere of the exit wavefront gives the ray at the 1/e² radius, µrad;
+    /// where a focus is wanted, less the slope that leads there.
     pub collimation_urad: f64,
     /// Paraxial ratio less the one wanted, per cent.
     pub ratio_error_percent: Option<f64>,
     /// Paraxial exit slope, µrad.
     pub exit_slope_urad: Option<f64>,
+    /// The same less the slope that leads to the focus that is wanted, µrad.
+    #[serde(skip)]
+    pub paraxial_off_urad: Option<f64>,
+    /// Where the paraxial ray at the 1/e² radius crosses the axis, m behind the last vertex, where
+    /// a focus is wanted.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub exit_focus_m: Option<f64>,
     /// One entry a wavelength.
     pub wavefront: Vec<WavefrontAssessment>,
 }

@@ -1,5 +1,6 @@
 //! Why a design has no movement curve.
 
+use merit_function::movement::NoWay;
 use surface_model::glass::GlassError;
 
 /// Why a design has no movement curve.
@@ -9,25 +10,9 @@ pub enum CamError {
     /// Every group is fixed.
     #[error("no group moves, so there is no movement curve")]
     NothingMoves,
-    /// There are not two ratios to go between.
-    #[error("a movement curve goes from ratio to ratio; the design has only one")]
-    OneRatio,
-    /// Upright and inverted states.
-    #[error(
-        "the states go from a ratio of {low} to one of {high}: no movement leads from an inverted \
-         beam to an upright one"
-    )]
-    BothSigns {
-        /// Smallest ratio.
-        low: f64,
-        /// Largest ratio.
-        high: f64,
-    },
-    /// A state is wanted focused.
-    #[error(
-        "state {0} is wanted focused (exit_focus_m); movement curves are of collimated beams alone"
-    )]
-    Focused(String),
+    /// There are not two ratios to go between, or no way leads from one to the other.
+    #[error(transparent)]
+    Way(#[from] NoWay),
     /// No positions near a state's hold its ratio and collimation.
     #[error("near state {state} no positions hold the ratio {ratio} {and}: {reason}")]
     State {

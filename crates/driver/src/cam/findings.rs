@@ -28,6 +28,8 @@ pub enum FindingKind {
     Steep,
     /// A group turns back.
     Reversal,
+    /// The curve does not go through a state.
+    LeftOut,
 }
 
 /// One finding.
@@ -84,6 +86,8 @@ pub(super) struct Look<'a> {
     pub(super) design: &'a Design,
     pub(super) wishes: &'a Wishes,
     pub(super) settings: &'a CamSettings,
+    /// The states that the curve goes through.
+    pub(super) knots: &'a [usize],
     pub(super) groups: &'a [GroupWay],
     pub(super) points: &'a [CurvePoint],
     /// The points as zoom states of the design, assessed; state k is point k and is called so.
@@ -97,6 +101,7 @@ impl Look<'_> {
         found.extend(self.limits());
         found.extend(self.goals());
         found.extend(self.steep());
+        found.extend(self.steeper_than_the_limit());
         found.extend(self.reversals());
         found
     }
@@ -240,15 +245,19 @@ impl Look<'_> {
             Some((slope / self.goals_at(k)?.exit_slope_urad? - 1.0, slope))
         });
         found.extend(bad.iter().map(|run| goal_finding("the paraxial exit slope", run, "µrad")));
+        let bad = runs(self.points, |k| {
+            let off = self.assessment.states[k].exit_focus_error_m?.abs();
+            Some((off / self.goals_at(k)?.exit_focus_m?.within_m - 1.0, off))
+        });
+        found.extend(bad.iter().map(|run| goal_finding("the paraxial focus", run, "m off")));
         found
     }
 
-    /// The goals of the designed state nearest in ratio.
+    /// The goals of the state nearest in ratio, of those that the curve goes through.
     fn goals_at(&self, k: usize) -> Option<&merit_function::goals::Goals> {
         let ratio = self.points[k].ratio;
         let away = |state: usize| (self.design.states[state].ratio - ratio).abs();
-        let states = 0..self.design.states.len();
-        let nearest = states.min_by(|&a, &b| away(a).total_cmp(&away(b)))?;
+        let nearest = self.knots.iter().copied().min_by(|&a, &b| away(a).total_cmp(&away(b)))?;
         self.wishes.states.get(nearest)
     }
 
@@ -285,6 +294,22 @@ impl Look<'_> {
         found
     }
 
+    /// Slopes beyond the limit of the design file.
+    fn steeper_than_the_limit(&self) -> Vec<Finding> {
+        let kind = LimitKind::SlopeMmPerRatio;
+        let Some(range) = self.wishes.limits.range(kind) else { return Vec::new() };
+        let mut found = Vec::new();
+        for (g, group) in self.groups.iter().enumerate().filter(|(_, g)| g.part != Part::Still) {
+            let bad = runs(self.points, |k| {
+                let slope = self.points[k].groups[g].slope_mm_per_ratio.abs();
+                Some((slope - range.max - kind.tolerance(), slope))
+            });
+            let wanted = format!("at most {}", range.max);
+            found.extend(bad.iter().map(|run| crossing(kind, &group.name, run, &wanted)));
+        }
+        found
+    }
+
     fn reversals(&self) -> Vec<Finding> {
         let mut found = Vec::new();
         for (g, group) in self.groups.iter().enumerate() {
@@ -300,13 +325,18 @@ impl Look<'_> {
                 }
                 let share = before / (before - behind);
                 let at = pair[0].ratio + share * (pair[1].ratio - pair[0].ratio);
+                let must_not = self.wishes.limits.is_monotonic(self.design, g);
                 found.push(Finding {
                     kind: FindingKind::Reversal,
-                    wrong: false,
+                    wrong: must_not,
                     ratios: [at, at],
                     what: group.name.clone(),
                     worst: None,
-                    told: format!("{} turns back at {at:.4}x", group.name),
+                    told: format!(
+                        "{} turns back at {at:.4}x{}",
+                        group.name,
+                        if must_not { ", which the limit monotonic does not allow" } else { "" }
+                    ),
                 });
             }
         }
@@ -341,7 +371,11 @@ fn limit_finding(limit: &LimitAssessment, place: &str, run: &Run) -> Finding {
         (_, Some(max)) => format!("at most {max}"),
         (min, None) => format!("at least {}", min.unwrap_or(0.0)),
     };
-    let word = limit.limit.word();
+    crossing(limit.limit, place, run, &wanted)
+}
+
+fn crossing(kind: LimitKind, place: &str, run: &Run, wanted: &str) -> Finding {
+    let word = kind.word();
     Finding {
         kind: FindingKind::Limit,
         wrong: true,

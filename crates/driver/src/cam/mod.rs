@@ -1,24 +1,20 @@
 //! Movement curves: where every group stands at any ratio between the designed states.
 //!
 //! A zoom is designed at a few ratios and used at all of them. Between two states the positions
-//! of the groups are those that hold ratio and collimation (`collimation.rs` says of what), found
-//! by continuation from state to state (`follow.rs`). Two moving groups are just enough for the
-//! two conditions; where more move, the ones whose help is needed least follow the monotone cubic
-//! through the designed states (`guide.rs`), and the other two are solved for. Where only one
-//! moves, the ratio alone is held and the collimation is what comes of it.
+//! of the groups are those that hold ratio and collimation ([`merit_function::movement`] says
+//! of what), found by continuation from state to state. Where only one group moves, the ratio alone
+//! is held and the collimation is what comes of it. Where the states are wanted focused, the focus
+//! is held in its place (`exit.rs`).
 //!
 //! Each point is then assessed as a zoom state of its own: wavefronts, limits, goals. Start
 //! reading at [`movement_curve`].
 
 mod barrel;
-mod collimation;
 mod document;
 mod error;
+mod exit;
 mod findings;
-mod follow;
-mod guide;
 mod settings;
-mod slide;
 mod stations;
 mod table;
 mod telling;
@@ -27,17 +23,17 @@ mod tests;
 mod walk;
 
 use merit_function::assessment::{Assessment, assess};
-use merit_function::goals::{Goals, GoalsDocument};
+use merit_function::goals::{FocusGoalDocument, Goals, GoalsDocument};
+use merit_function::movement::{
+    Equations, FROM_A_STATE, Point, Slide, Stop, knots_of, wavelengths_nm,
+};
 use merit_function::wishes::Wishes;
 use surface_model::design::{Design, ZoomState};
 use surface_model::laser::Laser;
 
-use collimation::Gauge;
+use exit::{Exit, left_out};
 use findings::Look;
-use follow::{Equations, FROM_A_STATE, Point, Stop};
-use guide::MonotoneCubic;
-use slide::Slide;
-use stations::{Station, knots, stations};
+use stations::{Station, stations};
 use telling::Teller;
 use walk::walk;
 
@@ -50,7 +46,8 @@ pub use table::csv_table;
 
 /// Works out the movement curve of a design.
 ///
-/// Ratio and collimation are held at the beam's first wavelength, or at the states' own first one
+/// Ratio and collimation (or, where the states want `exit_focus_m`, that focus) are held at the
+/// beam's first wavelength, or at the states' own first one
 /// where they all share another. At the designed states the curve holds both exactly, which the
 /// designed positions do to within the goals; the difference is told.
 ///
@@ -63,34 +60,44 @@ pub fn movement_curve(
     settings: &CamSettings,
 ) -> Result<MovementCurve, CamError> {
     settings.check()?;
-    let focused = wishes.states.iter().position(|goals| goals.exit_focus_m.is_some());
-    if let Some(state) = focused.and_then(|k| design.states.get(k)) {
-        return Err(CamError::Focused(state.name.clone()));
-    }
-    let knots = knots(design)?;
+    let (exit, alike) = Exit::of_the_first(wishes);
+    let knots = knots_of(design, &alike)?;
     let stations = stations(design, &knots, settings)?;
-    let wavelengths_nm = wavelengths(design);
+    let wavelengths_nm = wavelengths_nm(design);
     let slide = Slide::of(design);
     let positions = design.all_positions_mm();
     let starts: Vec<Vec<f64>> = knots.iter().map(|&k| slide.pick(&positions[k])).collect();
-    let mut equations = equations(design, &slide, &knots, &starts, wavelengths_nm[0])?;
-    let roots = roots(design, &mut equations, &knots, &starts)?;
+    let mut equations = Equations::leaving_with(design, &knots, exit.vergence_per_mm())?
+        .ok_or(CamError::NothingMoves)?;
+    let roots = roots(design, &mut equations, exit, &knots, &starts)?;
     let (reached, mut findings) = walk(design, &mut equations, &knots, &roots, &stations);
-    let hold = if equations.hold_collimation { Hold::RatioAndCollimation } else { Hold::Ratio };
+    let hold = match (equations.hold_collimation, exit.focus_m()) {
+        (true, None) => Hold::RatioAndCollimation,
+        (true, Some(_)) => Hold::RatioAndFocus,
+        (false, _) => Hold::Ratio,
+    };
     let guided: Vec<usize> = equations.guides.iter().map(|(j, _)| slide.moving()[*j]).collect();
 
-    let assessment = assess_points(design, wishes, &slide, &reached, &wavelengths_nm);
+    let assessment = assess_points(design, wishes, exit, &slide, &reached, &wavelengths_nm);
     let ends = [stations[0].ratio, stations[stations.len() - 1].ratio];
-    let teller = Teller { design, slide: &slide, settings, ends };
+    let teller = Teller { design, slide: &slide, settings, ends, exit };
     let fine: Vec<CurvePoint> = reached
         .iter()
         .enumerate()
         .map(|(k, (station, point))| teller.point(station, point, &assessment, k))
         .collect();
     let groups = teller.ways(&fine, &guided);
-    let look =
-        Look { design, wishes, settings, groups: &groups, points: &fine, assessment: &assessment };
+    let look = Look {
+        design,
+        wishes,
+        settings,
+        knots: &knots,
+        groups: &groups,
+        points: &fine,
+        assessment: &assessment,
+    };
     findings.extend(look.findings());
+    findings.extend(left_out(design, wishes, exit, &knots));
     let told = reached.iter().zip(&fine).filter(|((station, _), _)| station.told);
     let points = told.map(|(_, point)| point.clone()).collect();
     let states = knots.iter().zip(&roots).map(|(&k, root)| {
@@ -106,6 +113,7 @@ pub fn movement_curve(
         title: design.title.clone(),
         wavelength_nm: wavelengths_nm[0],
         held: hold,
+        exit_focus_m: exit.focus_m(),
         barrel: settings.barrel,
         states: states.collect(),
         groups,
@@ -116,69 +124,11 @@ pub fn movement_curve(
     })
 }
 
-/// The wavelengths all states share, or those of the beam.
-fn wavelengths(design: &Design) -> Vec<f64> {
-    let first = design.states.first().map(|state| &state.wavelengths_nm);
-    match first {
-        Some(own) if design.states.iter().all(|state| state.wavelengths_nm == *own) => own.clone(),
-        _ => design.beam.wavelengths_nm.clone(),
-    }
-}
-
-/// As many equations as groups that move.
-fn equations<'a>(
-    design: &Design,
-    slide: &'a Slide,
-    knots: &[usize],
-    starts: &[Vec<f64>],
-    wavelength_nm: f64,
-) -> Result<Equations<'a>, CamError> {
-    let moving = slide.moving().len();
-    if moving == 0 {
-        return Err(CamError::NothingMoves);
-    }
-    let gauge = Gauge::new(design, &design.states[knots[0]], wavelength_nm)?;
-    let mut equations =
-        Equations { slide, gauge, hold_collimation: moving > 1, guides: Vec::new() };
-    if moving > 2 {
-        let solved = best_pair(&mut equations, starts, moving);
-        let ratios: Vec<f64> = knots.iter().map(|&k| design.states[k].ratio).collect();
-        let guided = (0..moving).filter(|j| !solved.contains(j));
-        equations.guides = guided
-            .map(|j| {
-                let at_states: Vec<f64> = starts.iter().map(|start| start[j]).collect();
-                (j, MonotoneCubic::through(&ratios, &at_states))
-            })
-            .collect();
-    }
-    Ok(equations)
-}
-
-/// The two moving groups that command ratio and collimation best: those whose determinant of
-/// derivatives is largest at the state where it is smallest.
-fn best_pair(equations: &mut Equations<'_>, starts: &[Vec<f64>], moving: usize) -> [usize; 2] {
-    let slide = equations.slide;
-    let mut derivatives = Vec::new();
-    for start in starts {
-        if let Ok(held) = equations.gauge.measure(&slide.spacings_mm(start)) {
-            let by_ratio = slide.pick(&slide.by_position(&held.ratio_by_spacing));
-            let by_slope = slide.pick(&slide.by_position(&held.collimation_by_spacing));
-            derivatives.push((by_ratio, by_slope));
-        }
-    }
-    let command = |i: usize, j: usize| {
-        let determinants = derivatives.iter().map(|(r, c)| (r[i] * c[j] - r[j] * c[i]).abs());
-        determinants.fold(f64::INFINITY, f64::min)
-    };
-    let pairs = (0..moving).flat_map(|i| (i + 1..moving).map(move |j| [i, j]));
-    let best = pairs.max_by(|a, b| command(a[0], a[1]).total_cmp(&command(b[0], b[1])));
-    best.unwrap_or([0, 1])
-}
-
 /// The point of the curve at every designed state.
 fn roots(
     design: &Design,
-    equations: &mut Equations<'_>,
+    equations: &mut Equations,
+    exit: Exit,
     knots: &[usize],
     starts: &[Vec<f64>],
 ) -> Result<Vec<Point>, CamError> {
@@ -187,7 +137,11 @@ fn roots(
         equations.solve(state.ratio, start, FROM_A_STATE).map_err(|stop| CamError::State {
             state: state.name.clone(),
             ratio: state.ratio,
-            and: if equations.hold_collimation { "and collimate" } else { "" },
+            and: match (equations.hold_collimation, exit.focus_m()) {
+                (false, _) => "",
+                (true, None) => "and collimate",
+                (true, Some(_)) => "and focus where it is wanted",
+            },
             reason: reason(stop),
         })
     };
@@ -205,6 +159,7 @@ fn reason(stop: Stop) -> String {
 fn assess_points(
     design: &Design,
     wishes: &Wishes,
+    exit: Exit,
     slide: &Slide,
     reached: &[(Station, Point)],
     wavelengths_nm: &[f64],
@@ -219,7 +174,11 @@ fn assess_points(
     let mut between = Design { states, ..design.clone() };
     // The real beam and its hazards are told of the designed states.
     between.beam.laser = Laser::default();
-    let none = Goals::of_state(&GoalsDocument::default(), None, 1.0);
-    let wishes = Wishes { states: vec![none; reached.len()], ..wishes.clone() };
+    // A focus alone is wanted here: wavefronts are told about it.
+    let exit_focus_m = exit.focus_m().map(|wanted| FocusGoalDocument { wanted, within: 1.0 });
+    let goals = GoalsDocument { exit_focus_m, ..GoalsDocument::default() };
+    let goals = Goals::of_state(&goals, None, 1.0);
+    let limits = wishes.limits.in_the_states();
+    let wishes = Wishes { states: vec![goals; reached.len()], limits, ..wishes.clone() };
     assess(&between, &wishes)
 }

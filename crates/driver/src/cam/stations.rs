@@ -1,4 +1,4 @@
-//! The designed states in the order of their ratios, and the ratios between them.
+//! The ratios that are looked at: those of the designed states, and between them.
 
 use surface_model::design::Design;
 
@@ -18,27 +18,6 @@ pub(super) struct Station {
     pub(super) state: Option<usize>,
     /// Whether it is told, and not only looked at.
     pub(super) told: bool,
-}
-
-/// The states that the curve goes through, by ascending ratio; of those with one ratio the first.
-///
-/// # Errors
-/// There are not two ratios, or a beam would have to turn from inverted to upright.
-pub(super) fn knots(design: &Design) -> Result<Vec<usize>, CamError> {
-    let ratio = |&k: &usize| design.states[k].ratio;
-    let mut knots: Vec<usize> = (0..design.states.len()).collect();
-    knots.sort_by(|a, b| ratio(a).total_cmp(&ratio(b)).then(a.cmp(b)));
-    let (Some(low), Some(high)) = (knots.first().map(ratio), knots.last().map(ratio)) else {
-        return Err(CamError::OneRatio);
-    };
-    knots.dedup_by(|b, a| (ratio(b) - ratio(a)) <= SAME * (high - low));
-    if knots.len() < 2 {
-        return Err(CamError::OneRatio);
-    }
-    if low < 0.0 && high > 0.0 {
-        return Err(CamError::BothSigns { low, high });
-    }
-    Ok(knots)
 }
 
 /// Every ratio that is looked at, ascending.

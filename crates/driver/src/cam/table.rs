@@ -29,6 +29,9 @@ fn heads(curve: &MovementCurve) -> Vec<String> {
     let pairs = curve.groups.windows(2);
     heads.extend(pairs.map(|pair| format!("{} to {} spacing_mm", pair[0].name, pair[1].name)));
     heads.extend(["collimation_urad", "exit_slope_urad", "ratio_error_percent"].map(str::to_owned));
+    if curve.exit_focus_m.is_some() {
+        heads.push("exit_focus_m".to_owned());
+    }
     if let Some(point) = curve.points.first() {
         for wavefront in &point.wavefront {
             let nm = wavefront.wavelength_nm;
@@ -56,6 +59,9 @@ fn row(curve: &MovementCurve, point: &CurvePoint) -> Vec<String> {
     row.push(number(point.collimation_urad));
     row.push(or_empty(point.exit_slope_urad));
     row.push(or_empty(point.ratio_error_percent));
+    if curve.exit_focus_m.is_some() {
+        row.push(or_empty(point.exit_focus_m));
+    }
     for wavefront in &point.wavefront {
         row.extend([or_empty(wavefront.rms_waves), or_empty(wavefront.pv_waves)]);
     }

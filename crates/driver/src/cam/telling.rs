@@ -1,12 +1,12 @@
 //! What is told of each point of a curve, and of each group over all of it.
 
 use merit_function::assessment::Assessment;
+use merit_function::movement::{Point, Slide};
 use surface_model::design::{Design, Group};
 
 use super::document::{CurvePoint, GroupAtRatio, GroupWay, Part};
-use super::follow::Point;
+use super::exit::Exit;
 use super::settings::CamSettings;
-use super::slide::Slide;
 use super::stations::Station;
 
 /// Puts together what is told of each point.
@@ -16,6 +16,8 @@ pub(super) struct Teller<'a> {
     pub(super) settings: &'a CamSettings,
     /// Smallest and largest ratio.
     pub(super) ends: [f64; 2],
+    /// How the beam should leave.
+    pub(super) exit: Exit,
 }
 
 impl Teller<'_> {
@@ -52,6 +54,12 @@ impl Teller<'_> {
             collimation_urad: point.held.collimation_rad * 1e6,
             ratio_error_percent: state.ratio_error_percent,
             exit_slope_urad: state.exit_slope_urad,
+            // A ray at the height h comes to the focus with the slope −h V.
+            paraxial_off_urad: state.exit_slope_urad.zip(state.ratio).map(|(slope, ratio)| {
+                let height_mm = ratio * self.design.beam.radius_mm();
+                slope + 1e6 * height_mm * self.exit.vergence_per_mm()
+            }),
+            exit_focus_m: state.exit_focus_m,
             wavefront: state.wavefront.clone(),
         }
     }

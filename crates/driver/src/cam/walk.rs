@@ -1,10 +1,9 @@
 //! The way over all designed states, and where no continuous movement leads from one to the next.
 
+use merit_function::movement::{Equations, Point, Slide, Stop};
 use surface_model::design::Design;
 
 use super::findings::{Finding, FindingKind};
-use super::follow::{Equations, Point, Stop};
-use super::slide::Slide;
 use super::stations::Station;
 
 /// Two solutions at one ratio are the same when no group is farther off than this, mm.
@@ -13,7 +12,7 @@ const SAME_PLACE_MM: f64 = 1e-4;
 /// Goes from state to state; where the way forward ends, comes back from the next one.
 pub(super) fn walk(
     design: &Design,
-    equations: &mut Equations<'_>,
+    equations: &mut Equations,
     knots: &[usize],
     roots: &[Point],
     stations: &[Station],
@@ -34,7 +33,7 @@ pub(super) fn walk(
         if stopped.is_none() {
             let end = points.pop();
             if let Some(end) = end.filter(|end| away_mm(end, to) > SAME_PLACE_MM) {
-                findings.push(other_branch(names, from, to, &end, equations.slide, design));
+                findings.push(other_branch(names, from, to, &end, &equations.slide, design));
             }
         }
         reached.extend(inner.iter().copied().zip(points.iter().cloned()));

@@ -6,8 +6,9 @@
 //! glass it replaces by the same amount at every wavelength, as makers' melt sheets are commonly
 //! applied (common practice, no published source); from two on the law goes through the points.
 
-use serde_json::{Value, json};
+use serde_json::{Number, Value, json};
 use surface_model::document::{Address, Complaint, Place, quoted};
+use surface_model::glass::D_LINE_NM;
 
 use super::glasses_of;
 use super::target::{Edit, Target};
@@ -26,6 +27,7 @@ pub(super) fn define(
     let Some(replaced) = glass_at(&target.at, file) else { return Ok(()) };
     let definition = match wanted {
         Value::Object(_) => wanted.clone(),
+        Value::Number(index) => return Err(no_wavelength(index, &target.at, file)),
         Value::String(text) if text.contains('@') => measured(text, &target.at, &replaced, file)?,
         _ => return Ok(()),
     };
@@ -41,6 +43,17 @@ pub(super) fn define(
     glasses.insert(name.clone(), definition);
     target.edit = Edit::Set(Value::from(name));
     Ok(())
+}
+
+/// A measured index that does not say where it was measured.
+fn no_wavelength(index: &Number, at: &Address, file: &DesignFile) -> Complaint {
+    let first = file.design.beam.wavelengths_nm.first().copied().unwrap_or(D_LINE_NM);
+    Complaint {
+        place: Place::Value(at.clone()),
+        found: format!("the glass is the number {index}"),
+        expected: Some("a glass by name, or its measured index at a wavelength in nm".to_owned()),
+        advice: Some(format!("write {index}@{first} if it was measured at {first} nm")),
+    }
 }
 
 /// The name of the glass at an address, if it is that of an element's glass.

@@ -27,6 +27,7 @@ use surface_model::housing::TakenUp;
 use surface_model::optics_document::OpticsDocument;
 use surface_model::place::Place;
 
+use crate::brief::BriefFile;
 use crate::design_file::{DesignFile, hold};
 use target::{Edit, Target};
 
@@ -49,14 +50,7 @@ pub struct Changed {
 /// Everything that is wrong with them, each complaint with the source of the change it is about.
 pub fn apply(file: &DesignFile, changes: &[Change]) -> Result<Changed, Complaints> {
     let before = file.document().value();
-    let mut targets: Vec<(usize, Target)> = Vec::new();
-    let mut wrong: Vec<(Source, Complaint)> = Vec::new();
-    for (number, change) in changes.iter().enumerate() {
-        match target::targets(change, before) {
-            Ok(found) => targets.extend(found.into_iter().map(|target| (number, target))),
-            Err(complaint) => wrong.push((change.source().clone(), complaint)),
-        }
-    }
+    let (mut targets, mut wrong) = aims(changes, before);
     let mut value = before.clone();
     for (number, target) in &mut targets {
         let change = &changes[*number];
@@ -81,6 +75,39 @@ pub fn apply(file: &DesignFile, changes: &[Change]) -> Result<Changed, Complaint
             Err(attribution::attribute(file.label(), &complaints, changes, &targets, &value))
         }
     }
+}
+
+/// Makes changes in a brief.
+///
+/// # Errors
+/// As for [`apply`].
+pub fn apply_to_brief(file: &BriefFile, changes: &[Change]) -> Result<BriefFile, Complaints> {
+    let before = file.document().value();
+    let (mut targets, wrong) = aims(changes, before);
+    if !wrong.is_empty() {
+        return Err(Complaints::elsewhere(file.label(), wrong, before));
+    }
+    let mut value = before.clone();
+    edit(&mut value, &mut targets);
+    BriefFile::read(Document::from_value(file.label(), value.clone())).map_err(|complaints| {
+        attribution::attribute(file.label(), &complaints, changes, &targets, &value)
+    })
+}
+
+/// Places, each with the number of the change it is of, and complaints about other changes.
+type Aims = (Vec<(usize, Target)>, Vec<(Source, Complaint)>);
+
+/// The places that changes are about, each with the number of its change, and what is wrong with
+/// the others.
+fn aims(changes: &[Change], before: &Value) -> Aims {
+    let (mut targets, mut wrong) = (Vec::new(), Vec::new());
+    for (number, change) in changes.iter().enumerate() {
+        match target::targets(change, before) {
+            Ok(found) => targets.extend(found.into_iter().map(|target| (number, target))),
+            Err(complaint) => wrong.push((change.source().clone(), complaint)),
+        }
+    }
+    (targets, wrong)
 }
 
 /// Sets first, drops then, from the back, so that every address still means what it meant; entries

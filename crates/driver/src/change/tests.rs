@@ -29,9 +29,10 @@ fn design(fixed: &[&str]) -> DesignFile {
 }
 
 fn changed(fixed: &[&str], changes: &[&str]) -> Result<Changed, Complaints> {
-    let changes: Vec<Change> =
-        changes.iter().map(|text| Change::read("--change", text)).collect::<Result<_, _>>()?;
-    apply(&design(fixed), &changes)
+    let file = design(fixed);
+    let changes = changes.iter();
+    let changes = changes.map(|text| Change::read("--change", text, file.document().value()));
+    apply(&file, &changes.collect::<Result<Vec<_>, _>>()?)
 }
 
 /// What differs, a line a difference.

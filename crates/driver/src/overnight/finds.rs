@@ -20,7 +20,26 @@ pub struct Finds {
     keep: usize,
     held: BTreeMap<u64, Found>,
     falls: Vec<Fall>,
+    ends: Vec<StartEnd>,
+    /// How often the ends that are kept were halved.
+    halvings: u32,
     starts: u64,
+}
+
+/// Most ends of starts that are kept, for a picture.
+const ENDS: usize = 2000;
+
+/// Where a start ended.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct StartEnd {
+    /// When: seconds of the run, all sessions together.
+    pub seconds: f64,
+    /// Which.
+    pub start: u64,
+    /// The merit of its design.
+    pub merit: f64,
+    /// Whether that keeps every limit.
+    pub limits_kept: bool,
 }
 
 /// The best merit fell.
@@ -38,7 +57,15 @@ impl Finds {
     /// Nothing yet; the best `keep` designs are wanted.
     #[must_use]
     pub fn new(keep: usize) -> Self {
-        Self { ranking: Ranking::new(), keep, held: BTreeMap::new(), falls: Vec::new(), starts: 0 }
+        Self {
+            ranking: Ranking::new(),
+            keep,
+            held: BTreeMap::new(),
+            falls: Vec::new(),
+            ends: Vec::new(),
+            halvings: 0,
+            starts: 0,
+        }
     }
 
     /// Takes note of a finished start.
@@ -52,12 +79,35 @@ impl Finds {
                 self.falls = self.falls();
             }
         }
+        if let Some(found) = &done.found {
+            let Found { merit, limits_kept, .. } = *found;
+            self.end(StartEnd { seconds, start: done.number, merit, limits_kept });
+        }
         if let Some(found) = done.found {
             self.held.insert(done.number, found);
             if self.held.len() > self.keep + 2 * SPARE {
                 self.let_go();
             }
         }
+    }
+
+    /// Keeps the end of a start; of many, those of a half, a quarter, … of all starts.
+    fn end(&mut self, end: StartEnd) {
+        if is_kept(end.start, self.halvings) {
+            self.ends.push(end);
+        }
+        while self.ends.len() > ENDS {
+            self.halvings += 1;
+            self.ends.retain(|end| is_kept(end.start, self.halvings));
+        }
+    }
+
+    /// Where starts ended, in order of time: all of them, or of many an even part.
+    #[must_use]
+    pub fn ends(&self) -> Vec<StartEnd> {
+        let mut ends = self.ends.clone();
+        ends.sort_by(|a, b| a.seconds.total_cmp(&b.seconds).then(a.start.cmp(&b.start)));
+        ends
     }
 
     /// Keeps the designs that rank and, as spare, those with the best merits.
@@ -119,5 +169,34 @@ impl Finds {
         let held = best.iter().filter_map(|number| Some((*number, self.held.get(number)?)));
         let ranked = held.zip(1..).map(|((number, found), rank)| Ranked::of(rank, number, found));
         RankedList::new(starts, self.ranking.times_best_found_below(below) as u64, ranked.collect())
+    }
+}
+
+/// Whether a start is still among those that are kept after so many halvings. Fibonacci hashing
+/// (D. E. Knuth, The Art of Computer Programming 3, section 6.4) scatters the numbers, so that
+/// every second start is not all of one part of a run.
+fn is_kept(start: u64, halvings: u32) -> bool {
+    start.wrapping_mul(0x9E37_79B9_7F4A_7C15).leading_zeros() >= halvings
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn of_many_ends_an_even_part_is_kept_whatever_their_order() {
+        let end =
+            |start: u64| StartEnd { seconds: start as f64, start, merit: 1.0, limits_kept: true };
+        let kept = |numbers: &mut dyn Iterator<Item = u64>| {
+            let mut finds = Finds::new(1);
+            numbers.for_each(|number| finds.end(end(number)));
+            finds.ends().iter().map(|end| end.start).collect::<Vec<_>>()
+        };
+        let forward = kept(&mut (0..20_000));
+        assert_eq!(kept(&mut (0..20_000).rev()), forward);
+        assert!((ENDS / 3..=ENDS).contains(&forward.len()), "{}", forward.len());
+        let of_a_part = kept(&mut (0..5000).map(|nth| 4 * nth + 3));
+        assert!((ENDS / 3..=ENDS).contains(&of_a_part.len()), "{}", of_a_part.len());
+        assert_eq!(kept(&mut (0..100)).len(), 100);
     }
 }

@@ -2,6 +2,8 @@
 
 use std::collections::BTreeMap;
 
+use surface_model::document::quoted;
+
 use super::finds::Finds;
 use super::ranked::RankedList;
 use super::{KIND, merit_with_limits_kept};
@@ -213,7 +215,7 @@ fn each(surveys: &[Survey], found: &mut dyn FnMut(Finished<StartResult>)) -> Res
 fn refuse_others(first: &Survey, survey: &Survey) -> Result<(), RunError> {
     let path = survey.path.clone();
     if survey.run.kind != KIND {
-        let reason = format!("it holds a run of {}, not of {KIND}", survey.run.kind);
+        let reason = format!("it holds a run of {}, not of {KIND}", quoted(&survey.run.kind));
         return Err(RunError::NotARun { path, reason });
     }
     match survey.run.difference(&first.run) {

@@ -13,7 +13,7 @@ use serde_json::json;
 use crate::run::{Ask, Interrupt, Interrupted, Share, Work};
 use crate::search::{SearchProblem, SearchSettings, StartResult};
 
-pub use finds::{Fall, Finds};
+pub use finds::{Fall, Finds, StartEnd};
 pub use gathering::{Gathering, MissingPart, fetch};
 pub use ranked::{RANKING_FORMAT, Ranked, RankedList};
 
@@ -36,13 +36,17 @@ impl Work for Overnight {
         self.problem.start(self.seed, number, interrupt.flag()).ok_or(Interrupted)
     }
 
+    fn called(&self, number: u64) -> String {
+        format!("start {number}")
+    }
+
     fn merit(&self, done: &StartResult) -> Option<f64> {
         merit_with_limits_kept(done)
     }
 }
 
 /// The merit of a start that counts towards a target: one that crosses a limit does not.
-fn merit_with_limits_kept(result: &StartResult) -> Option<f64> {
+pub(crate) fn merit_with_limits_kept(result: &StartResult) -> Option<f64> {
     result.found.as_ref().filter(|found| found.limits_kept).map(|found| found.merit)
 }
 

@@ -18,6 +18,9 @@ use crate::solve::{Settings, Unwatched};
 /// The head of the column of serial numbers.
 pub const SERIAL_HEAD: &str = "serial";
 
+/// Most units of a table: each is a design of its own, some ten kilobytes of it.
+pub const MOST_UNITS: usize = 10_000;
+
 /// One unit as measured.
 #[derive(Debug, Clone)]
 pub struct Unit {
@@ -72,6 +75,15 @@ pub fn units(file: &DesignFile, table: &Table) -> Result<Vec<Unit>, Complaints> 
             table.refuse(vec![(table.heads().first().map(|head| head.position), complaint)])
         );
     };
+    if table.rows().len() > MOST_UNITS {
+        let complaint = Complaint {
+            place: Place::File,
+            found: format!("the table has {} units", table.rows().len()),
+            expected: Some(format!("at most {MOST_UNITS}: split the table")),
+            advice: None,
+        };
+        return Err(table.refuse(vec![(None, complaint)]));
+    }
     let columns = columns(file, table, serial)?;
     refuse_twins(table, serial)?;
     let read: Vec<Result<Unit, Complaints>> = table

@@ -3,6 +3,12 @@
 
 use surface_model::document::{Complaint, Complaints, Place, Position, Source};
 
+/// Most cells of a table, heads and all: some tens of megabytes.
+const MOST_CELLS: usize = 1_000_000;
+
+/// After so many wrong rows no more are looked for.
+const MOST_WRONG: usize = 1000;
+
 /// One cell, blanks around it taken off.
 #[derive(Debug, Clone, PartialEq, Eq)]
 pub struct Cell {
@@ -40,6 +46,7 @@ impl Table {
             .from_reader(text.as_bytes());
         let mut places = Places::new(text);
         let mut wrong = Vec::new();
+        let mut count = 0;
         for record in reader.records() {
             let record = record.map_err(|error| {
                 table.refuse(vec![(
@@ -52,6 +59,13 @@ impl Table {
             })?;
             let start = record.position().map_or(0, |position| position.byte());
             let cells = places.cells(usize::try_from(start).unwrap_or(usize::MAX), &record);
+            count += cells.len();
+            if count > MOST_CELLS {
+                let position = cells.first().map(|cell| cell.position);
+                let found = format!("up to here the table has {count} cells");
+                let expected = format!("at most {MOST_CELLS}: split the table");
+                return Err(table.refuse(vec![(position, plain(&found, &expected))]));
+            }
             if table.heads.is_empty() {
                 table.heads = cells;
                 continue;
@@ -61,6 +75,9 @@ impl Table {
                 let expected = format!("{}, one for each head", counted(table.heads.len()));
                 let position = cells.first().map(|cell| cell.position);
                 wrong.push((position, plain(&found, &expected)));
+                if wrong.len() == MOST_WRONG {
+                    break;
+                }
             }
             table.rows.push(cells);
         }

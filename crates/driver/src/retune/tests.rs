@@ -10,7 +10,7 @@ fn river() -> DesignFile {
 }
 
 fn change(text: &str) -> Change {
-    Change::read("--change", text).unwrap()
+    Change::read("--change", text, &serde_json::Value::Null).unwrap()
 }
 
 /// The derivative of what a change costs is the limit of what it costs traced, for every kind of

@@ -2,6 +2,7 @@
 
 use serde::{Deserialize, Serialize};
 use serde_json::Value;
+use surface_model::document::quoted;
 
 use super::share::Share;
 
@@ -85,9 +86,9 @@ impl RunDocument {
             Some(format!("{what} is {there} there and {here} here"))
         };
         if self.kind != asked.kind {
-            told("the kind of run", &self.kind, &asked.kind)
+            told("the kind of run", &quoted(&self.kind), &quoted(&asked.kind))
         } else if self.version != asked.version {
-            told("the program's version", &self.version, &asked.version)
+            told("the program's version", &quoted(&self.version), &quoted(&asked.version))
         } else if self.asked.blake3 != asked.asked.blake3 {
             Some(format!("it was asked about another file, {:?} as it was then", self.asked.name))
         } else if self.seed != asked.seed {

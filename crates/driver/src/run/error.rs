@@ -67,6 +67,16 @@ pub enum RunError {
     /// A file cannot be written.
     #[error(transparent)]
     Write(#[from] WriteError),
+    /// A unit ended in a panic. Everything that was finished is in the journal.
+    #[error("{unit} of {} broke off by a fault of the program: {told}", .path.display())]
+    BrokenOff {
+        /// The folder.
+        path: PathBuf,
+        /// Which unit.
+        unit: String,
+        /// What the panic said.
+        told: String,
+    },
     /// The units cannot be worked on by several threads.
     #[error("threads cannot be started: {0}")]
     Threads(String),

@@ -1,8 +1,10 @@
 //! A run folder, opened for work: made if it is new, recognised if it is not, locked.
 
-use std::fs::DirBuilder;
-use std::io::ErrorKind;
+use std::fs::{DirBuilder, File};
+use std::io::{self, ErrorKind, Read};
 use std::path::{Path, PathBuf};
+
+use surface_model::document::LARGEST_BYTES;
 
 use super::ask::{Ask, RUN_FORMAT, RunDocument, hash};
 use super::error::RunError;
@@ -134,7 +136,7 @@ fn first_stranger(path: &Path, known: &[&str]) -> Result<Option<String>, RunErro
 /// Reads `run.json` and holds the copy of the ask against it; `None` if there is none.
 pub(super) fn read_run(path: &Path) -> Result<Option<RunDocument>, RunError> {
     let file = path.join(RUN);
-    let text = match std::fs::read(&file) {
+    let text = match bounded(&file) {
         Ok(text) => text,
         Err(error) if error.kind() == ErrorKind::NotFound => return Ok(None),
         Err(error) => return Err(RunError::system(&file)(error)),
@@ -148,6 +150,7 @@ pub(super) fn read_run(path: &Path) -> Result<Option<RunDocument>, RunError> {
         });
     }
     let run: RunDocument = serde_json::from_value(value).map_err(damaged)?;
+    Share::new(1, run.parts).map_err(|error| RunError::damaged(&file, error.to_string()))?;
     let asked = read_asked(path)?;
     if hash(&asked) != run.asked.blake3 {
         let reason = format!("it is not the file that {RUN} speaks of");
@@ -159,10 +162,18 @@ pub(super) fn read_run(path: &Path) -> Result<Option<RunDocument>, RunError> {
 /// The copy of what was asked.
 pub(super) fn read_asked(path: &Path) -> Result<Vec<u8>, RunError> {
     let file = path.join(ASKED);
-    std::fs::read(&file).map_err(|error| match error.kind() {
+    bounded(&file).map_err(|error| match error.kind() {
         ErrorKind::NotFound => RunError::damaged(&file, "it is missing"),
         _ => RunError::system(&file)(error),
     })
+}
+
+/// A whole file, no larger than what a run says of the largest document it could be asked about.
+fn bounded(path: &Path) -> io::Result<Vec<u8>> {
+    const MOST: usize = 8 * LARGEST_BYTES;
+    let mut bytes = Vec::new();
+    File::open(path)?.take(MOST as u64 + 1).read_to_end(&mut bytes)?;
+    if bytes.len() > MOST { Err(ErrorKind::FileTooLarge.into()) } else { Ok(bytes) }
 }
 
 pub(super) fn make(path: &Path) -> Result<(), RunError> {

@@ -60,7 +60,10 @@ fn holder(file: &File) -> String {
     let mut name = String::new();
     let read = file.take(1000).read_to_string(&mut name);
     match read {
-        Ok(_) if !name.trim().is_empty() => name.trim().to_owned(),
+        // What the file holds is another's word.
+        Ok(_) if !name.trim().is_empty() => {
+            name.trim().chars().filter(|c| !c.is_control()).collect()
+        }
         _ => "another process".to_owned(),
     }
 }

@@ -1,7 +1,8 @@
 //! The run: units handed out in order, results recorded as they arrive, until the budget is used up
 //! or the user wants to stop.
 
-use std::sync::atomic::{AtomicBool, Ordering};
+use std::any::Any;
+use std::panic::{AssertUnwindSafe, catch_unwind};
 use std::sync::mpsc::{Receiver, RecvTimeoutError, Sender, channel};
 use std::time::{Duration, Instant, SystemTime, UNIX_EPOCH};
 
@@ -11,7 +12,7 @@ use super::entry::{Begin, End, Entry, Unit};
 use super::error::RunError;
 use super::finished::FinishedUnits;
 use super::folder::RunFolder;
-use super::interrupt::Interrupt;
+use super::interrupt::{Interrupt, Interrupted};
 use super::journal::{Journal, Kept};
 use super::reading;
 use super::share::Share;
@@ -24,8 +25,9 @@ const TICK: Duration = Duration::from_millis(50);
 /// suffices, or the user wants to stop; goes on where earlier sessions ended.
 ///
 /// # Errors
-/// The journal is damaged, or cannot be opened. A journal that cannot be written later on is told
-/// to the watcher, and in the end.
+/// The journal is damaged, or cannot be opened; a unit broke off by a fault of the program, and the
+/// journal has everything that was finished. A journal that cannot be written later on is told to
+/// the watcher, and in the end.
 pub fn perform<W: Work>(
     folder: &RunFolder,
     work: &W,
@@ -49,21 +51,23 @@ pub fn perform<W: Work>(
     session.begin(folder)?;
     let dispenser = Dispenser::new(session.share, session.finished.clone(), session.end_nth());
     let interrupt = Interrupt::default();
-    let crashed = AtomicBool::new(false);
     let stop = pool.in_place_scope(|scope| {
         let (sender, results) = channel();
         for _ in 0..threads.max(1) {
-            let (sender, dispenser, interrupt, crashed) =
-                (sender.clone(), &dispenser, &interrupt, &crashed);
-            scope.spawn(move |_| {
-                let _guard = CrashGuard { crashed };
-                labour(work, dispenser, interrupt, &sender);
-            });
+            let (sender, dispenser, interrupt) = (sender.clone(), &dispenser, &interrupt);
+            scope.spawn(move |_| labour(work, dispenser, interrupt, &sender));
         }
         drop(sender);
-        session.record(&results, &dispenser, &interrupt, &crashed, watcher)
+        session.record(&results, &dispenser, &interrupt, watcher)
     });
-    Ok(session.close(stop, watcher))
+    let end = session.close(stop, watcher);
+    match session.broken_off {
+        None => Ok(end),
+        Some(BrokenOff { number, told }) => {
+            let unit = work.called(number);
+            Err(RunError::BrokenOff { path: folder.place().to_owned(), unit, told })
+        }
+    }
 }
 
 /// Whether nothing is left to do for the budget.
@@ -76,26 +80,39 @@ fn labour<W: Work>(
     work: &W,
     dispenser: &Dispenser,
     interrupt: &Interrupt,
-    results: &Sender<(u64, W::Done)>,
+    results: &Sender<Result<(u64, W::Done), BrokenOff>>,
 ) {
     while !interrupt.is_raised()
         && let Some(number) = dispenser.next()
-        && let Ok(done) = work.perform(number, interrupt)
-        && results.send((number, done)).is_ok()
-    {}
-}
-
-/// A thread that dies of a fault in the program stops the others, instead of letting hours pass.
-struct CrashGuard<'a> {
-    crashed: &'a AtomicBool,
-}
-
-impl Drop for CrashGuard<'_> {
-    fn drop(&mut self) {
-        if std::thread::panicking() {
-            self.crashed.store(true, Ordering::Relaxed);
+    {
+        // Nothing is begun after a unit that panicked, so whatever it left behind is not used.
+        let performed = catch_unwind(AssertUnwindSafe(|| work.perform(number, interrupt)));
+        let result = match performed {
+            Ok(Ok(done)) => Ok((number, done)),
+            Ok(Err(Interrupted)) => return,
+            Err(panic) => {
+                // The others stop, instead of letting hours pass.
+                interrupt.raise();
+                Err(BrokenOff { number, told: words_of(panic.as_ref()) })
+            }
+        };
+        if results.send(result).is_err() {
+            return;
         }
     }
+}
+
+/// A unit that ended in a panic.
+struct BrokenOff {
+    number: u64,
+    /// What the panic said.
+    told: String,
+}
+
+fn words_of(panic: &(dyn Any + Send)) -> String {
+    let words = panic.downcast_ref::<&str>().map(|words| (*words).to_owned());
+    let words = words.or_else(|| panic.downcast_ref::<String>().cloned());
+    words.unwrap_or_else(|| "it did not say why".to_owned())
 }
 
 /// One session of a run.
@@ -112,6 +129,8 @@ struct Session<'a, W> {
     in_session: u64,
     /// The first unit known to suffice.
     sufficed: Option<u64>,
+    /// The first unit known to have panicked.
+    broken_off: Option<BrokenOff>,
     journal: Journal,
 }
 
@@ -148,6 +167,7 @@ impl<'a, W: Work> Session<'a, W> {
             finished: read.finished,
             in_session: 0,
             sufficed,
+            broken_off: None,
             journal,
         })
     }
@@ -170,21 +190,21 @@ impl<'a, W: Work> Session<'a, W> {
     /// Records results until the threads are done; says why they are.
     fn record(
         &mut self,
-        results: &Receiver<(u64, W::Done)>,
+        results: &Receiver<Result<(u64, W::Done), BrokenOff>>,
         dispenser: &Dispenser,
         interrupt: &Interrupt,
-        crashed: &AtomicBool,
         watcher: &mut dyn Watcher<W::Done>,
     ) -> Stop {
         let mut stop = None;
         loop {
             match results.recv_timeout(TICK) {
-                Ok((number, done)) => self.found(number, done, dispenser, watcher),
+                Ok(Ok((number, done))) => self.found(number, done, dispenser, watcher),
+                Ok(Err(broken_off)) => self.broken_off(broken_off),
                 Err(RecvTimeoutError::Timeout) => {}
                 Err(RecvTimeoutError::Disconnected) => break,
             }
             stop = stop.or_else(|| self.over(watcher));
-            if stop.is_some() || crashed.load(Ordering::Relaxed) {
+            if stop.is_some() {
                 interrupt.raise();
             }
             self.told(watcher, |journal| journal.tend());
@@ -213,6 +233,13 @@ impl<'a, W: Work> Session<'a, W> {
         self.told(watcher, |journal| journal.append(&entry));
         if let Entry::Unit(Unit { number, seconds, done }) = entry {
             watcher.found(Finished { number, seconds, done });
+        }
+    }
+
+    /// Of several the first is told.
+    fn broken_off(&mut self, new: BrokenOff) {
+        if self.broken_off.as_ref().is_none_or(|known| new.number < known.number) {
+            self.broken_off = Some(new);
         }
     }
 

@@ -5,7 +5,7 @@
 //! a line after it is damage that something else has done, and is never passed over.
 
 use std::fs::File;
-use std::io::{BufRead, BufReader, ErrorKind};
+use std::io::{BufRead, BufReader, ErrorKind, Read as _};
 use std::path::Path;
 
 use serde::de::DeserializeOwned;
@@ -15,6 +15,9 @@ use super::error::RunError;
 use super::finished::FinishedUnits;
 use super::share::Share;
 use super::work::Finished;
+
+/// Longest line: a design four times as large as any that can be asked about.
+const LONGEST_LINE: u64 = 1 << 26;
 
 /// What a journal tells besides its units.
 #[derive(Debug, Clone, Default, PartialEq)]
@@ -63,10 +66,12 @@ pub(super) fn read<D: DeserializeOwned>(
     let mut line = Vec::new();
     loop {
         line.clear();
-        if file.read_until(b'\n', &mut line).map_err(&refused)? == 0 {
-            return Ok(reader.end());
+        let read = file.by_ref().take(LONGEST_LINE).read_until(b'\n', &mut line);
+        match read.map_err(&refused)? as u64 {
+            0 => return Ok(reader.end()),
+            LONGEST_LINE if line.last() != Some(&b'\n') => return Err(reader.endless()),
+            _ => reader.line(&line, found)?,
         }
-        reader.line(&line, found)?;
     }
 }
 
@@ -173,6 +178,10 @@ impl<'a> Reader<'a> {
     fn passed(&mut self, seconds: f64) {
         let facts = &mut self.read.facts;
         facts.seconds = facts.seconds.max(seconds);
+    }
+
+    fn endless(&self) -> RunError {
+        self.damaged(self.lines + 1, "it is longer than a journal's lines are")
     }
 
     fn damaged(&self, line: u64, reason: &str) -> RunError {

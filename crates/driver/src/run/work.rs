@@ -20,6 +20,11 @@ pub trait Work: Sync {
     /// The interrupt was raised before it was done.
     fn perform(&self, number: u64, interrupt: &Interrupt) -> Result<Self::Done, Interrupted>;
 
+    /// What people call a unit, for messages about it.
+    fn called(&self, unit: u64) -> String {
+        format!("unit {unit}")
+    }
+
     /// How good a result is, the smaller the better, where that can be said: a budget may have a
     /// target for it.
     fn merit(&self, done: &Self::Done) -> Option<f64> {

@@ -45,23 +45,26 @@ impl Sobol {
         if dimensions > MOST_DIMENSIONS {
             return Err(TooManyDimensions { asked: dimensions });
         }
-        let directions = (0..dimensions).map(directions).collect();
-        Ok(Self { directions, shift: vec![0; dimensions] })
+        Ok(Self::of(dimensions))
+    }
+
+    fn of(dimensions: usize) -> Self {
+        let directions: Vec<_> = (0..dimensions.min(MOST_DIMENSIONS)).map(directions).collect();
+        Self { shift: vec![0; directions.len()], directions }
     }
 
     /// The points with bits turned over at random, the same bits in all points of a seed (a
     /// digital shift: P. L'Ecuyer and C. Lemieux, in *Modeling Uncertainty* (2002), 419). They
-    /// fill the cube as evenly, and another seed gives others.
-    ///
-    /// # Errors
-    /// There are more than [`MOST_DIMENSIONS`] coordinates.
-    pub fn shifted(dimensions: usize, seed: u64) -> Result<Self, TooManyDimensions> {
-        let mut sobol = Self::new(dimensions)?;
+    /// fill the cube as evenly, and another seed gives others. Of more than [`MOST_DIMENSIONS`]
+    /// coordinates the rest is left out.
+    #[must_use]
+    pub fn shifted(dimensions: usize, seed: u64) -> Self {
+        let mut sobol = Self::of(dimensions);
         let mut random = stream(seed, u64::MAX);
         for shift in &mut sobol.shift {
             *shift = random.next_u64() >> (u64::BITS as usize - BITS);
         }
-        Ok(sobol)
+        sobol
     }
 
     /// Coordinates of a point.
@@ -75,8 +78,12 @@ impl Sobol {
     pub fn point(&self, number: u64) -> Vec<f64> {
         let gray = number ^ (number >> 1);
         let coordinate = |(directions, shift): (&[u64; BITS], &u64)| {
-            let set = directions.iter().enumerate().filter(|(i, _)| gray >> i & 1 == 1);
-            let bits = set.fold(*shift, |bits, (_, direction)| bits ^ direction);
+            let mut bits = *shift;
+            let mut left = gray & ((1 << BITS) - 1);
+            while left != 0 {
+                bits ^= directions[left.trailing_zeros() as usize];
+                left &= left - 1;
+            }
             bits as f64 / (1_u64 << BITS) as f64
         };
         self.directions.iter().zip(&self.shift).map(coordinate).collect()
@@ -156,8 +163,8 @@ mod tests {
     /// 2ᵏ equal slices of every coordinate holds one; a shift keeps that.
     #[test]
     fn every_slice_holds_one_point() {
-        for sobol in [Sobol::new(MOST_DIMENSIONS), Sobol::shifted(MOST_DIMENSIONS, 5)] {
-            let sobol = sobol.unwrap();
+        for sobol in [Sobol::new(MOST_DIMENSIONS).unwrap(), Sobol::shifted(MOST_DIMENSIONS + 9, 5)]
+        {
             for j in 0..MOST_DIMENSIONS {
                 let mut slices = [0; 256];
                 for number in 0..256 {
@@ -170,7 +177,7 @@ mod tests {
 
     #[test]
     fn seeds_differ_and_too_many_dimensions_are_told() {
-        let point = |seed| Sobol::shifted(3, seed).unwrap().point(9);
+        let point = |seed| Sobol::shifted(3, seed).point(9);
         assert_eq!(point(1), point(1));
         assert_ne!(point(1), point(2));
         let error = Sobol::new(MOST_DIMENSIONS + 1).unwrap_err();

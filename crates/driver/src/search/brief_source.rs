@@ -14,7 +14,7 @@ use super::ground::Ground;
 use super::workbench::{Interrupted, Workbench};
 use crate::design_file::DesignFile;
 use crate::optimise::{OptimiseError, require_goal};
-use crate::start::{Layout, Starts};
+use crate::start::{Begun, Starts};
 
 /// What is free in the designs of a brief, in the words of a design file.
 const FREE: [&str; 4] = ["radii", "spacings", "thicknesses", "airs"];
@@ -30,8 +30,8 @@ pub(super) struct BriefSource {
     pub(super) starts: Starts,
 }
 
-/// The layouts that the grounds of a start were made of, by the number of the ground.
-pub(super) type Layouts = Vec<Layout>;
+/// What the grounds of a start were made of, by the number of the ground.
+pub(super) type Layouts = Vec<Begun>;
 
 impl BriefSource {
     /// # Errors
@@ -49,23 +49,25 @@ impl BriefSource {
         point: &[f64],
     ) -> Result<Option<Candidate>, Interrupted> {
         bench.watch()?;
-        Ok(self.starts.layout(point).ok().and_then(|layout| self.stand(layouts, bench, layout)))
+        let layout = self.starts.layout(point).ok();
+        Ok(layout.and_then(|layout| self.stand(layouts, bench, layout.into())))
     }
 
-    /// A layout as a candidate.
+    /// What a search begins with as a candidate.
     pub(super) fn stand(
         &self,
         layouts: &mut Layouts,
         bench: &mut Workbench<'_>,
-        layout: Layout,
+        begun: Begun,
     ) -> Option<Candidate> {
-        let design = &layout.design;
+        let design = &begun.design;
         let wishes = &self.starts.brief().wishes;
         let variables = Variables::new(design, &wishes.limits, &free(design)).ok()?;
         let exact = MeritFunction::new(design, wishes, variables, RAYS).ok()?;
+        let exact = exact.with_temperatures(design, wishes).ok()?;
         let start = exact.variables().start().to_vec();
         let ground = bench.lay(Ground::new(exact, design.housing.track_mm));
-        layouts.push(layout);
+        layouts.push(begun);
         bench.stand(ground, start)
     }
 
@@ -98,8 +100,8 @@ impl BriefSource {
     }
 
     /// The design file of a candidate.
-    pub(super) fn file(&self, layout: &Layout, design: &Design, note: &str) -> Option<DesignFile> {
-        let file = self.starts.design_file(layout, design, note).ok()?;
+    pub(super) fn file(&self, begun: &Begun, design: &Design, note: &str) -> Option<DesignFile> {
+        let file = self.starts.file_of(&begun.glasses, design, note).ok()?;
         let mut document = file.document().value().clone();
         document["free"] = json!(FREE);
         DesignFile::read(Document::from_value(file.label(), document)).ok()

@@ -50,6 +50,7 @@ mod start_result;
 mod tests;
 mod workbench;
 
+pub(crate) use problem::Attempt;
 pub use problem::{SearchError, SearchProblem};
 pub use ranking::Ranking;
 pub use settings::{SearchSettings, Strategy};

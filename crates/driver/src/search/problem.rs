@@ -16,7 +16,7 @@ use crate::brief::BriefFile;
 use crate::design_file::DesignFile;
 use crate::optimise::OptimiseError;
 use crate::sampling::{RandomStream, stream};
-use crate::start::{StartError, Starts};
+use crate::start::{Refusals, StartError, Starts};
 
 /// Why there is nothing to search.
 #[derive(Debug, thiserror::Error)]
@@ -28,6 +28,35 @@ pub enum SearchError {
     /// A brief that no layout can answer.
     #[error(transparent)]
     Start(#[from] StartError),
+}
+
+/// What an attempt at a design came to.
+#[derive(Debug, Default)]
+pub(crate) struct Attempt {
+    /// The best design it found.
+    pub(crate) found: Option<Found>,
+    /// Local optimisations it took.
+    optimisations: u64,
+    /// Steps they took.
+    pub(crate) iterations: u64,
+    /// How many of the points of a brief that were looked at have a layout.
+    pub(crate) layouts: usize,
+    /// Why the others have none.
+    pub(crate) refusals: Refusals,
+}
+
+impl Attempt {
+    /// Of the finished candidates, best first.
+    fn of(bench: &Workbench<'_>, quarry: &Quarry<'_>, candidates: &[Candidate]) -> Self {
+        let mut files = candidates.iter().filter_map(|candidate| quarry.file(bench, candidate));
+        Self {
+            found: files.find_map(|file| Found::of(&file)),
+            optimisations: bench.optimisations,
+            iterations: bench.iterations,
+            layouts: quarry.layouts(),
+            refusals: quarry.refusals(),
+        }
+    }
 }
 
 /// What is searched. Made once and shared by all threads.
@@ -63,16 +92,46 @@ impl SearchProblem {
     /// within a few milliseconds; the start is then to be run again from its beginning.
     #[must_use]
     pub fn start(&self, seed: u64, number: u64, interrupt: &AtomicBool) -> Option<StartResult> {
-        let nothing = StartResult { number, optimisations: 0, found: None };
+        let Attempt { optimisations, found, .. } = self.attempt(seed, number, interrupt)?;
+        Some(StartResult { number, optimisations, found })
+    }
+
+    /// As [`Self::start`], with what it took and what stood against it.
+    #[must_use]
+    pub(crate) fn attempt(
+        &self,
+        seed: u64,
+        number: u64,
+        interrupt: &AtomicBool,
+    ) -> Option<Attempt> {
         let mut bench = Workbench::new(interrupt);
         let Ok(mut quarry) = self.source.open(&mut bench, seed, number) else {
-            return Some(nothing);
+            return Some(Attempt::default());
         };
         let mut random = stream(seed, number);
         let candidates = self.candidates(&mut quarry, &mut bench, &mut random).ok()?;
-        let files = candidates.iter().filter_map(|candidate| quarry.file(&bench, candidate));
-        let found = files.into_iter().find_map(|file| Found::of(&file));
-        Some(StartResult { optimisations: bench.optimisations, found, ..nothing })
+        Some(Attempt::of(&bench, &quarry, &candidates))
+    }
+
+    /// Improves the lenses of a design that was found for a brief that differs a little from this
+    /// one; finds nothing where this one does not allow them. `note` says where they come from.
+    /// `None` as in [`Self::start`].
+    #[must_use]
+    pub(crate) fn improve(
+        &self,
+        design: &DesignFile,
+        note: &str,
+        interrupt: &AtomicBool,
+    ) -> Option<Attempt> {
+        let mut bench = Workbench::new(interrupt);
+        let Ok(mut quarry) = self.source.open(&mut bench, 0, 0) else {
+            return Some(Attempt::default());
+        };
+        let Some(candidate) = quarry.take_over(&mut bench, design, note) else {
+            return Some(Attempt::default());
+        };
+        let finished = quarry.finish(&mut bench, candidate).ok()?;
+        Some(Attempt::of(&bench, &quarry, &[finished]))
     }
 
     /// The finished candidates of a start, best first.

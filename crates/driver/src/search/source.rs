@@ -9,7 +9,8 @@ use super::design_source::{DesignBench, DesignSource};
 use super::workbench::{Effort, Interrupted, Workbench};
 use crate::design_file::DesignFile;
 use crate::optimise::OptimiseError;
-use crate::sampling::{MOST_DIMENSIONS, RandomStream, Sobol};
+use crate::sampling::{RandomStream, Sobol};
+use crate::start::{Layout, NoLayout, Refusals};
 
 /// Of how many points of a design file one is drawn around its own numbers.
 const AROUND_THE_FILE: u64 = 8;
@@ -29,10 +30,14 @@ pub(super) enum Source {
 /// A source with what one start needs of it.
 pub(super) struct Quarry<'p> {
     kind: Kind<'p>,
-    /// The sequence of a design file's points.
-    sobol: Option<Sobol>,
-    seed: u64,
+    /// The points that all starts of a seed share.
+    sobol: Sobol,
     number: u64,
+    /// What a design file begun from a brief says of where it comes from.
+    note: String,
+    /// Why points of a brief have no layout, and how many have one.
+    refused: Vec<NoLayout>,
+    layouts: usize,
 }
 
 enum Kind<'p> {
@@ -50,13 +55,15 @@ impl Source {
     ) -> Result<Quarry<'p>, OptimiseError> {
         let (kind, sobol) = match self {
             Self::Design(source) => {
-                let dimensions = source.dimensions().min(MOST_DIMENSIONS);
-                let sobol = Sobol::shifted(dimensions, seed).ok();
+                let sobol = Sobol::shifted(source.dimensions(), seed);
                 (Kind::Design(source, Box::new(source.bench(bench)?)), sobol)
             }
-            Self::Brief(source) => (Kind::Brief(source, Layouts::new()), None),
+            Self::Brief(source) => {
+                (Kind::Brief(source, Layouts::new()), source.starts.points(seed))
+            }
         };
-        Ok(Quarry { kind, sobol, seed, number })
+        let note = format!("Found by start {number} of a search, seed {seed}.");
+        Ok(Quarry { kind, sobol, number, note, refused: Vec::new(), layouts: 0 })
     }
 }
 
@@ -73,12 +80,12 @@ impl Quarry<'_> {
         match &self.kind {
             Kind::Design(source, _) => {
                 let dimensions = source.dimensions();
-                let mut point = self.sobol.as_ref().map_or_else(Vec::new, |sobol| sobol.point(at));
+                let mut point = self.sobol.point(at);
                 // Coordinates beyond the sequence's dimensions are random.
                 point.resize_with(dimensions, || random.random());
                 point
             }
-            Kind::Brief(source, _) => source.starts.point(at, self.seed),
+            Kind::Brief(..) => self.sobol.point(at),
         }
     }
 
@@ -158,11 +165,15 @@ impl Quarry<'_> {
             }
             bench.watch()?;
             let number = stretch(self.number, POINTS_OF_A_BRIEF, i);
-            drawn.extend(source.starts.layout(&source.starts.point(number, self.seed)));
+            match source.starts.layout(&self.sobol.point(number)) {
+                Ok(layout) => drawn.push(layout),
+                Err(reason) => self.refused.push(reason),
+            }
         }
+        self.layouts += drawn.len();
         drawn.sort_by(|a, b| a.score.total.total_cmp(&b.score.total));
         drawn.truncate(most);
-        let stand = |layout| source.stand(layouts, bench, layout);
+        let stand = |layout: Layout| source.stand(layouts, bench, layout.into());
         Ok(drawn.into_iter().filter_map(stand).collect())
     }
 
@@ -187,6 +198,29 @@ impl Quarry<'_> {
         Ok(finished)
     }
 
+    /// The lenses of a design that was found for another brief, as a candidate with a remark;
+    /// `None` where this brief does not allow them or they lose rays.
+    pub(super) fn take_over(
+        &mut self,
+        bench: &mut Workbench<'_>,
+        file: &DesignFile,
+        note: &str,
+    ) -> Option<Candidate> {
+        let Kind::Brief(source, layouts) = &mut self.kind else { return None };
+        note.clone_into(&mut self.note);
+        source.stand(layouts, bench, source.starts.take_over(file)?)
+    }
+
+    /// How many of the points that were looked at have a layout.
+    pub(super) fn layouts(&self) -> usize {
+        self.layouts
+    }
+
+    /// Why the others have none.
+    pub(super) fn refusals(&self) -> Refusals {
+        Refusals::of(self.refused.iter().copied())
+    }
+
     /// The design file a candidate stands for.
     pub(super) fn file(&self, bench: &Workbench<'_>, candidate: &Candidate) -> Option<DesignFile> {
         let variables = bench.ground(candidate).exact.variables();
@@ -199,10 +233,8 @@ impl Quarry<'_> {
                 source.file.with_numbers_of(&write(source.file.design.clone())).ok()
             }
             Kind::Brief(source, layouts) => {
-                let layout = layouts.get(candidate.ground)?;
-                let note =
-                    format!("Found by start {} of a search, seed {}.", self.number, self.seed);
-                source.file(layout, &write(layout.design.clone()), &note)
+                let begun = layouts.get(candidate.ground)?;
+                source.file(begun, &write(begun.design.clone()), &self.note)
             }
         }
     }

@@ -31,11 +31,13 @@ pub(super) struct Workbench<'p> {
     interrupt: &'p AtomicBool,
     /// Local optimisations done.
     pub(super) optimisations: u64,
+    /// Steps they took.
+    pub(super) iterations: u64,
 }
 
 impl<'p> Workbench<'p> {
     pub(super) fn new(interrupt: &'p AtomicBool) -> Self {
-        Self { grounds: Vec::new(), interrupt, optimisations: 0 }
+        Self { grounds: Vec::new(), interrupt, optimisations: 0, iterations: 0 }
     }
 
     /// Makes room for a ground and tells its place.
@@ -84,6 +86,7 @@ impl<'p> Workbench<'p> {
         };
         let problem = &mut self.grounds[ground].exact;
         let outcome = solve(problem, from, &settings, self.interrupt)?;
+        self.iterations += outcome.as_ref().map_or(0, |outcome| outcome.iterations);
         Ok(outcome.map(|outcome| Candidate {
             ground,
             limits_kept: outcome.limits_kept(),

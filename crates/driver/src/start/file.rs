@@ -8,17 +8,25 @@ use surface_model::ranges::LARGEST_RADIUS_MM;
 use crate::brief::{BriefFile, RatioDocument};
 use crate::design_file::DesignFile;
 
-use super::layout::Layout;
+use super::begun::GlassesOfGroups;
 
 /// What a design file has of its brief as it stands there, remarks included.
-const CARRIED_OVER: [&str; 7] =
-    ["beam", "coating", "damage_thresholds", "glasses", "housing", "goals", "limits"];
+const CARRIED_OVER: [&str; 8] = [
+    "beam",
+    "coating",
+    "damage_thresholds",
+    "glasses",
+    "housing",
+    "goals",
+    "limits",
+    "temperatures_c",
+];
 
-/// The design file of a layout, with the numbers of `design` (the layout's own, or what an
-/// optimiser made of them).
+/// The design file of lenses of these glasses, with the numbers of `design` (a layout's own, or
+/// what an optimiser made of them).
 pub(super) fn design_file(
     brief: &BriefFile,
-    layout: &Layout,
+    glasses: &GlassesOfGroups,
     design: &Design,
     note: &str,
 ) -> Result<DesignFile, Complaints> {
@@ -35,7 +43,7 @@ pub(super) fn design_file(
     for key in ["beam", "coating", "damage_thresholds", "glasses"] {
         file.extend(carried.shift_remove(key).map(|value| (key.to_owned(), value)));
     }
-    file.insert("groups".into(), groups(brief, layout, design));
+    file.insert("groups".into(), groups(brief, glasses, design));
     file.extend(carried.shift_remove("housing").map(|value| ("housing".to_owned(), value)));
     file.insert("states".into(), states(brief, design));
     file.extend(carried);
@@ -43,8 +51,8 @@ pub(super) fn design_file(
     DesignFile::read(Document::from_value(brief.label(), Value::Object(file)))
 }
 
-fn groups(brief: &BriefFile, layout: &Layout, design: &Design) -> Value {
-    let groups = design.groups.iter().zip(&layout.glasses).map(|(group, glasses)| {
+fn groups(brief: &BriefFile, glasses: &GlassesOfGroups, design: &Design) -> Value {
+    let groups = design.groups.iter().zip(glasses).map(|(group, glasses)| {
         let elements = group.elements.iter().zip(glasses);
         let elements: Vec<Value> =
             elements.map(|(element, glasses)| part(brief, element, glasses)).collect();

@@ -6,6 +6,7 @@ use surface_model::design::{Design, Element, Group, ZoomState};
 use surface_model::paraxial::ParaxialRay;
 use surface_model::surface::Surface;
 
+use super::begun::GlassesOfGroups;
 use super::family::Family;
 use super::lens::ThickElement;
 use super::no_layout::NoLayout;
@@ -27,7 +28,7 @@ pub struct Layout {
     /// What first and third order foretell.
     pub score: Score,
     /// Per group and element, the places of its glasses among the allowed ones of the brief.
-    pub glasses: Vec<Vec<Vec<usize>>>,
+    pub glasses: GlassesOfGroups,
 }
 
 impl Layout {
@@ -142,7 +143,7 @@ fn reason(obstacle: Obstacle) -> NoLayout {
         LimitKind::EdgeThicknessMm | LimitKind::CentreThicknessMm => NoLayout::Thickness,
         LimitKind::SpacingMm | LimitKind::AirMm | LimitKind::EdgeGapMm => NoLayout::Air,
         LimitKind::RadiusMm | LimitKind::Steepness => NoLayout::Curvature,
-        LimitKind::TravelMm => NoLayout::Travel,
+        LimitKind::TravelMm | LimitKind::SlopeMmPerRatio | LimitKind::Monotonic => NoLayout::Travel,
         LimitKind::IncidenceDeg => NoLayout::Ray,
         LimitKind::TrackMm | LimitKind::HousingMm => NoLayout::Track,
         LimitKind::InternalFocus => NoLayout::Focus,

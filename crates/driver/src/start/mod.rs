@@ -10,7 +10,7 @@
 //!
 //! | step | where |
 //! |---|---|
-//! | number and seed → point | `sequence` |
+//! | number and seed → point | [`Sobol`] |
 //! | fixed groups and counts → how spacings follow | `plan`, `family` |
 //! | point → powers, spacings of thin groups in closed form, screened | `thin` (`by_heights`, `four_groups`), `spacings` |
 //! | powers → glasses, bendings of least spherical aberration | `shape`, `glasses`, `bending` |
@@ -20,12 +20,13 @@
 //! | layout → design file | `file` |
 //! | many points → the best that differ | `ranking`; none at all: `relaxation` |
 //!
-//! For a search: [`Starts::of`] once; then for start number k [`Starts::point`]`(k, seed)` or a
+//! For a search: [`Starts::of`] once; then for start number k point k of [`Starts::points`], or a
 //! point of one's own, [`Starts::layout`] (a fraction of a millisecond; what has no layout mostly says why
 //! in a microsecond), [`Starts::merit`] over the layout's design for a local solver,
 //! [`Starts::design_file`] for what is kept (milliseconds: it is read as any file is). Nothing
 //! depends on threads or order: the same brief, number and seed give the same bits.
 
+mod begun;
 mod bending;
 mod by_heights;
 mod error;
@@ -40,7 +41,6 @@ mod plan;
 mod ranking;
 mod relaxation;
 mod score;
-mod sequence;
 mod shape;
 mod space;
 mod spacings;
@@ -56,14 +56,17 @@ use surface_model::document::Complaints;
 use surface_model::place::Place;
 
 use crate::brief::BriefFile;
+use crate::design_file::DesignFile;
 use crate::optimise::OptimiseError;
+use crate::sampling::Sobol;
 
+pub(crate) use begun::{Begun, GlassesOfGroups};
 pub use error::StartError;
 pub use family::{Family, Sign};
 pub use layout::Layout;
 pub use no_layout::NoLayout;
 pub use ranking::{Ranked, Ranking, Refusals};
-pub use relaxation::{Relaxation, Relaxed};
+pub use relaxation::{InVain, Relaxation, Relaxations, Relaxed};
 pub use score::Score;
 
 use space::{Point, Space};
@@ -95,13 +98,14 @@ impl Starts {
     /// How many numbers a point has.
     #[must_use]
     pub fn dimensions(&self) -> usize {
-        self.space.sequence.dimensions()
+        self.space.dimensions
     }
 
-    /// Point `number` of the evenly spread sequence that `seed` begins.
+    /// The evenly spread points that `seed` begins. A coordinate beyond those they have reads as
+    /// the middle.
     #[must_use]
-    pub fn point(&self, number: u64, seed: u64) -> Vec<f64> {
-        self.space.sequence.point(number, seed)
+    pub fn points(&self, seed: u64) -> Sobol {
+        Sobol::shifted(self.dimensions(), seed)
     }
 
     /// The layout at a point.
@@ -144,7 +148,24 @@ impl Starts {
         layout: &Layout,
         design: &Design,
         note: &str,
-    ) -> Result<crate::design_file::DesignFile, Complaints> {
-        file::design_file(&self.space.brief, layout, design, note)
+    ) -> Result<DesignFile, Complaints> {
+        self.file_of(&layout.glasses, design, note)
+    }
+
+    /// As [`Self::design_file`], of lenses of these glasses.
+    pub(crate) fn file_of(
+        &self,
+        glasses: &GlassesOfGroups,
+        design: &Design,
+        note: &str,
+    ) -> Result<DesignFile, Complaints> {
+        file::design_file(&self.space.brief, glasses, design, note)
+    }
+
+    /// The lenses of a design that was begun from another brief, in this one's beam, tube and
+    /// ratios; `None` where this one does not allow its groups, its glasses or the number of its
+    /// ratios.
+    pub(crate) fn take_over(&self, file: &DesignFile) -> Option<Begun> {
+        Begun::of_another(&self.space, file)
     }
 }

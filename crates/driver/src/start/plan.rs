@@ -1,6 +1,8 @@
 //! What a brief leaves open in the large: how many groups, which elements, and how the fixed
 //! groups let the others move.
 
+use merit_function::limits::LimitKind;
+
 use crate::brief::BriefFile;
 
 use super::error::StartError;
@@ -68,6 +70,7 @@ pub(super) fn plans(brief: &BriefFile, pairs_possible: bool) -> Result<Vec<Plan>
     if inverted && brief.wishes.limits.forbid_internal_focus {
         return Err(StartError::Inverted);
     }
+    entrance(brief)?;
     let by_colour = brief.ratios.iter().any(|ratio| ratio.wavelengths_nm.len() > 1);
     let standard = if by_colour && pairs_possible { Kind::Pair } else { Kind::Singlet };
     let mut plans = Vec::new();
@@ -86,6 +89,19 @@ pub(super) fn plans(brief: &BriefFile, pairs_possible: bool) -> Result<Vec<Plan>
         Some(error) if plans.is_empty() => Err(error),
         _ => Ok(plans),
     }
+}
+
+/// Whether the beam as it enters keeps the limit on pulses: peak 2E/(πw²).
+fn entrance(brief: &BriefFile) -> Result<(), StartError> {
+    let Some(range) = brief.wishes.limits.range(LimitKind::FluenceJCm2) else { return Ok(()) };
+    let Some(energy_mj) = brief.beam.laser.pulse_energy_mj else { return Ok(()) };
+    let radius_cm = 0.05 * brief.beam.diameter_mm;
+    let fluence_j_cm2 = 2e-3 * energy_mj / (std::f64::consts::PI * radius_cm * radius_cm);
+    if fluence_j_cm2 <= range.max {
+        return Ok(());
+    }
+    let wide_enough_mm = brief.beam.diameter_mm * (fluence_j_cm2 / range.max).sqrt();
+    Err(StartError::Entrance { fluence_j_cm2, most_j_cm2: range.max, wide_enough_mm })
 }
 
 /// The groups that are asked for, or those the program would try.
@@ -109,6 +125,10 @@ fn plan(brief: &BriefFile, groups: Vec<GroupPlan>, inverted: bool) -> Result<Pla
     let names = brief.written().housing.fixed.as_slice();
     let fixed: Vec<bool> = groups.iter().map(|group| names.contains(&group.name)).collect();
     let movement = movement(&fixed, brief.ratios.len())?;
+    if movement == Movement::Chosen && brief.wishes.limits.about_the_way() {
+        let standing = fixed.iter().filter(|&&fixed| fixed).count();
+        return Err(StartError::TooManyMovers { groups: groups.len(), fixed: standing });
+    }
     let mut families = Family::all(groups.len(), inverted);
     let ratios: Vec<f64> = brief.ratios.iter().map(|ratio| ratio.ratio).collect();
     if groups.len() == 2 {

@@ -2,6 +2,7 @@
 
 use rayon::prelude::*;
 
+use super::begun::GlassesOfGroups;
 use super::family::Family;
 use super::layout::Layout;
 use super::no_layout::NoLayout;
@@ -17,10 +18,22 @@ pub struct Ranked {
 }
 
 /// Why points have no layout, the commonest reason first.
-#[derive(Debug, Clone, PartialEq, Eq)]
+#[derive(Debug, Clone, Default, PartialEq, Eq)]
 pub struct Refusals {
     /// Reasons with the number of points each holds for.
     pub reasons: Vec<(NoLayout, usize)>,
+}
+
+impl Refusals {
+    /// Counts reasons.
+    pub(crate) fn of(refused: impl Iterator<Item = NoLayout> + Clone) -> Self {
+        let count = |reason| refused.clone().filter(|&other| other == reason).count();
+        let mut reasons: Vec<(NoLayout, usize)> =
+            NoLayout::ALL.map(|reason| (reason, count(reason))).into();
+        reasons.retain(|&(_, count)| count > 0);
+        reasons.sort_by_key(|&(_, count)| std::cmp::Reverse(count));
+        Self { reasons }
+    }
 }
 
 /// What a look at many points came to.
@@ -45,7 +58,7 @@ struct Candidate {
     score: f64,
     family: Family,
     focal_lengths_mm: Vec<f64>,
-    glasses: Vec<Vec<Vec<usize>>>,
+    glasses: GlassesOfGroups,
 }
 
 impl Candidate {
@@ -73,17 +86,13 @@ impl Starts {
     /// any number of threads.
     #[must_use]
     pub fn ranked(&self, tried: u64, seed: u64, most: usize) -> Ranking {
+        let points = self.points(seed);
         let outcomes: Vec<Result<Candidate, NoLayout>> = (0..tried)
             .into_par_iter()
-            .map(|k| self.layout(&self.point(k, seed)).map(|layout| Candidate::of(k, layout)))
+            .map(|k| self.layout(&points.point(k)).map(|layout| Candidate::of(k, layout)))
             .collect();
-        let count = |reason: NoLayout| {
-            outcomes.iter().filter(|outcome| outcome.as_ref().err() == Some(&reason)).count()
-        };
-        let mut reasons: Vec<(NoLayout, usize)> =
-            NoLayout::ALL.map(|reason| (reason, count(reason))).into();
-        reasons.retain(|&(_, count)| count > 0);
-        reasons.sort_by_key(|&(_, count)| std::cmp::Reverse(count));
+        let refusals =
+            Refusals::of(outcomes.iter().filter_map(|outcome| outcome.as_ref().err().copied()));
         let mut fitting: Vec<Candidate> = outcomes.into_iter().flatten().collect();
         fitting.sort_by(|a, b| a.score.total_cmp(&b.score).then(a.number.cmp(&b.number)));
         let mut best: Vec<&Candidate> = Vec::new();
@@ -96,20 +105,21 @@ impl Starts {
             }
         }
         let again = |candidate: &&Candidate| {
-            let layout = self.layout(&self.point(candidate.number, seed)).ok()?;
+            let layout = self.layout(&points.point(candidate.number)).ok()?;
             Some(Ranked { number: candidate.number, layout })
         };
         Ranking {
             tried,
             fitting: fitting.len(),
             best: best.iter().filter_map(again).collect(),
-            refusals: Refusals { reasons },
+            refusals,
         }
     }
 
     /// Whether any of the first `tried` points has a layout.
     pub(super) fn any(&self, tried: u64, seed: u64) -> bool {
-        (0..tried).into_par_iter().any(|k| self.layout(&self.point(k, seed)).is_ok())
+        let points = self.points(seed);
+        (0..tried).into_par_iter().any(|k| self.layout(&points.point(k)).is_ok())
     }
 }
 

@@ -20,6 +20,24 @@ pub struct Relaxation {
     more: bool,
 }
 
+/// A relaxation that admits none by itself.
+#[derive(Debug, Clone, PartialEq)]
+pub struct InVain {
+    /// What gives.
+    pub relaxation: Relaxation,
+    /// The furthest value it was tried with.
+    pub furthest: f64,
+}
+
+/// What came of relaxing one number at a time.
+#[derive(Debug, Clone, Default, PartialEq)]
+pub struct Relaxations {
+    /// Those that admit a layout, the smallest change first.
+    pub admitting: Vec<Relaxed>,
+    /// Those that are not enough, in the order they were tried.
+    pub in_vain: Vec<InVain>,
+}
+
 /// A relaxation that admits a layout.
 #[derive(Debug, Clone, PartialEq)]
 pub struct Relaxed {
@@ -93,30 +111,45 @@ fn candidates(brief: &BriefFile) -> Vec<Relaxation> {
 
 impl Starts {
     /// Relaxations of the brief, one number at a time, that admit a layout among the first `tried`
-    /// points, the smallest change first. Each was tried with the value told.
+    /// points, and those that do not. Each was tried with the value told.
     #[must_use]
-    pub fn relaxations(&self, tried: u64, seed: u64) -> Vec<Relaxed> {
+    pub fn relaxations(&self, tried: u64, seed: u64) -> Relaxations {
         let brief = self.brief();
-        let list = candidates(brief).into_iter();
-        let mut relaxed: Vec<Relaxed> =
-            list.filter_map(|candidate| least(brief, candidate, tried, seed)).collect();
-        relaxed.sort_by(|a, b| a.change().total_cmp(&b.change()));
-        relaxed
+        let mut out = Relaxations::default();
+        for candidate in candidates(brief) {
+            match least(brief, candidate, tried, seed) {
+                Some(Ok(relaxed)) => out.admitting.push(relaxed),
+                Some(Err(in_vain)) => out.in_vain.push(in_vain),
+                None => {}
+            }
+        }
+        out.admitting.sort_by(|a, b| a.change().total_cmp(&b.change()));
+        out
     }
 }
 
-fn least(brief: &BriefFile, relaxation: Relaxation, tried: u64, seed: u64) -> Option<Relaxed> {
+/// The least relaxation that does; `None` if the brief has no such number, or none to relax.
+fn least(
+    brief: &BriefFile,
+    relaxation: Relaxation,
+    tried: u64,
+    seed: u64,
+) -> Option<Result<Relaxed, InVain>> {
     let from = relaxation.at.get(brief.document().value())?.as_f64()?;
     if from == 0.0 {
         return None;
     }
-    let does = |factor: f64| {
-        let to =
-            rounded(if relaxation.more { from * factor } else { from / factor }, relaxation.more);
-        let admitted = admits(Starts::of(&with(brief, &relaxation.at, to)?), tried, seed);
-        admitted.then_some(to)
+    let value = |factor: f64| {
+        rounded(if relaxation.more { from * factor } else { from / factor }, relaxation.more)
     };
-    let mut to = does(FURTHEST)?;
+    let does = |factor: f64| {
+        let to = value(factor);
+        let admitted = admits(Starts::of(&with(brief, &relaxation.at, to)?), tried, seed);
+        Some(to).filter(|_| admitted)
+    };
+    let furthest = value(FURTHEST);
+    with(brief, &relaxation.at, furthest)?;
+    let Some(mut to) = does(FURTHEST) else { return Some(Err(InVain { relaxation, furthest })) };
     let (mut little, mut much) = (1.0_f64, FURTHEST);
     for _ in 0..HALVINGS {
         let middle = (little * much).sqrt();
@@ -125,7 +158,7 @@ fn least(brief: &BriefFile, relaxation: Relaxation, tried: u64, seed: u64) -> Op
             None => little = middle,
         }
     }
-    Some(Relaxed { relaxation, from, to })
+    Some(Ok(Relaxed { relaxation, from, to }))
 }
 
 /// The brief with one number changed; `None` if that makes no brief.

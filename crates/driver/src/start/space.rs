@@ -8,7 +8,6 @@ use crate::brief::BriefFile;
 use super::error::StartError;
 use super::glasses::Glasses;
 use super::plan::{Kind, Plan, plans};
-use super::sequence::Sequence;
 use super::spacings::MOST;
 
 /// Coordinates of a point in front of those of the elements.
@@ -22,7 +21,8 @@ pub(super) struct Space {
     pub(super) brief: BriefFile,
     pub(super) plans: Vec<Plan>,
     pub(super) glasses: Glasses,
-    pub(super) sequence: Sequence,
+    /// How many numbers a point has.
+    pub(super) dimensions: usize,
     /// Largest and smallest ratio without their signs, as logarithms.
     log_ratios: (f64, f64),
 }
@@ -37,8 +37,8 @@ impl Space {
         let log_ratios = logs.fold((f64::INFINITY, f64::NEG_INFINITY), |(low, high), log| {
             (low.min(log), high.max(log))
         });
-        let sequence = Sequence::new(FRONT + OF_ELEMENT * most);
-        Ok(Self { brief: brief.clone(), plans, glasses, sequence, log_ratios })
+        let dimensions = FRONT + OF_ELEMENT * most;
+        Ok(Self { brief: brief.clone(), plans, glasses, dimensions, log_ratios })
     }
 
     /// The range of a limit, or everything.

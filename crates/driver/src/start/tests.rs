@@ -163,6 +163,11 @@ fn contradictions_are_told_before_any_layout_is_tried() {
         told(|v| v["housing"]["fixed"] = json!(["runner", "exit"])),
         told(|v| v["groups"] = json!([{ "name": "entry" }, { "name": "exit" }])),
         told(|v| v["groups"][1]["pairs"] = json!(1)),
+        told(|v| {
+            // 2 E/(π w²) of 7.2 mJ in 2.4 mm is 0.318 J/cm².
+            v["beam"]["pulse_energy_mj"] = json!(7.2);
+            v["limits"]["fluence_j_cm2"] = json!({ "max": 0.1 });
+        }),
     ];
     insta::assert_snapshot!(list.join("\n"));
 }
@@ -204,7 +209,11 @@ fn an_impossible_brief_is_told_what_would_have_to_give() {
     let brief = changed(SHIPPED[0], |v| v["housing"]["track_mm"] = json!(55));
     let starts = Starts::of(&brief).unwrap();
     assert_eq!(starts.ranked(2048, 0, 1).fitting, 0);
-    let relaxed = starts.relaxations(2048, 0);
+    let told = starts.relaxations(2048, 0);
+    let spacing = |in_vain: &InVain| in_vain.relaxation.what == "the smallest spacing, mm";
+    let spacing = told.in_vain.iter().find(|in_vain| spacing(in_vain)).unwrap();
+    assert_eq!(spacing.furthest, 0.0625, "an eighth of what the brief asks for");
+    let relaxed = told.admitting;
     let track = relaxed.iter().find(|relaxed| relaxed.relaxation.what == "the track, mm").unwrap();
     assert!(track.from == 55.0 && track.to > 55.0 && track.to < 150.0, "{track:?}");
     // Tried again from outside: what is told admits a layout, a little less does not.
@@ -221,7 +230,7 @@ fn an_impossible_brief_is_told_what_would_have_to_give() {
 fn a_point_can_be_moved_by_hand() {
     let starts = Starts::of(&brief(SHIPPED[0])).unwrap();
     let number = starts.ranked(2048, 0, 1).best[0].number;
-    let mut point = starts.point(number, 0);
+    let mut point = starts.points(0).point(number);
     let layout = starts.layout(&point).unwrap();
     // A little smaller: another layout of the same family.
     point[7] *= 0.999;

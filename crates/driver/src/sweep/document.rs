@@ -15,17 +15,23 @@ pub(super) struct PlanDocument {
     /// What the sweep is for.
     #[serde(default)]
     pub(super) title: String,
-    /// The design file, seen from the folder of the plan.
-    pub(super) design: String,
+    /// The design file that every point changes and optimises, seen from the folder of the plan.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub(super) design: Option<String>,
+    /// Instead of a design the brief that every point changes and begins anew, seen from the
+    /// folder of the plan.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub(super) brief: Option<String>,
     /// What is varied. Without `sample` every value of each axis is combined with every value of
     /// the others.
-    #[schemars(length(min = 1))]
+    #[schemars(length(min = 1, max = 64))]
     pub(super) axes: Vec<AxisDocument>,
     /// Draw points from the ranges of all axes together instead of combining their steps.
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub(super) sample: Option<SampleDocument>,
-    /// Starts of each point, from 1 to 1000: the best neighbour, then the design of the plan, then
-    /// the neighbour shaken at random. 1 if left out.
+    /// Starts of each point, from 1 to 1000; 1 if left out. Of a design: the best neighbour, then
+    /// the design of the plan, then the neighbour shaken at random. Of a brief: starts of the
+    /// search, as `overnight` makes them, the best neighbour besides.
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub(super) starts: Option<u32>,
     /// Seed of the random numbers; 0 if left out.
@@ -33,7 +39,7 @@ pub(super) struct PlanDocument {
     pub(super) seed: Option<u64>,
     /// Two results to weigh against each other, the less the better: "merit",
     /// "worst_rms_waves", "worst_ratio_error_percent", "worst_exit_slope_urad", "track_mm", or the
-    /// address of a number of the design.
+    /// address of a number of the design; of a brief, that of an axis.
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub(super) front: Option<[String; 2]>,
 }
@@ -49,7 +55,8 @@ pub(super) enum PlanFormat {
 /// One axis: `values` or `range`.
 #[derive(Debug, Clone, PartialEq, Deserialize, Serialize, JsonSchema)]
 pub(super) struct AxisDocument {
-    /// An address of the design. A number that is swept is held in every point.
+    /// An address of the design or brief. A number of a design that is swept is held in every
+    /// point.
     pub(super) at: String,
     /// The values, in order: numbers, words, anything that may stand there.
     #[serde(default, skip_serializing_if = "Option::is_none")]

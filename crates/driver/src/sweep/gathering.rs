@@ -10,7 +10,8 @@ use crate::run::{RunError, Share, Survey};
 /// part that is there twice counts once.
 #[derive(Debug)]
 pub struct SweepGathering {
-    points: BTreeMap<u64, PointResult>,
+    /// By unit of the run.
+    units: BTreeMap<u64, PointResult>,
     of: u64,
     wanted: u64,
 }
@@ -22,7 +23,7 @@ impl SweepGathering {
     /// They are not of the same sweep, or one is damaged, or two disagree about a point.
     pub fn of(surveys: &[Survey], wanted: u64) -> Result<Self, RunError> {
         let of = surveys.first().map_or(1, |survey| survey.run.parts);
-        let mut gathering = Self { points: BTreeMap::new(), of, wanted };
+        let mut gathering = Self { units: BTreeMap::new(), of, wanted };
         for survey in surveys {
             if survey.run.kind != KIND {
                 let reason = format!("it holds work of another kind, {:?}", survey.run.kind);
@@ -33,12 +34,12 @@ impl SweepGathering {
             }
             for part in &survey.parts {
                 let mut disagree = None;
-                part.read::<PointResult>(&mut |unit| match gathering.points.get(&unit.number) {
+                part.read::<PointResult>(&mut |unit| match gathering.units.get(&unit.number) {
                     None => {
-                        gathering.points.insert(unit.number, unit.done);
+                        gathering.units.insert(unit.number, unit.done);
                     }
                     Some(there) if *there == unit.done => {}
-                    Some(_) => disagree = disagree.or(Some(unit.number)),
+                    Some(there) => disagree = disagree.or(Some(there.number)),
                 })?;
                 if let Some(point) = disagree {
                     let reason =
@@ -60,7 +61,7 @@ impl SweepGathering {
     #[must_use]
     pub fn missing(&self) -> Vec<(Share, u64)> {
         let there = |share: Share| {
-            let counted = self.points.keys().filter(|&&number| number < self.wanted);
+            let counted = self.units.keys().filter(|&&number| number < self.wanted);
             counted.filter(|&&number| share.holds(number)).count() as u64
         };
         Share::all(self.of)
@@ -71,7 +72,10 @@ impl SweepGathering {
 
     /// The finished points, in order of their numbers.
     #[must_use]
-    pub fn into_points(self) -> Vec<(u64, PointResult)> {
-        self.points.into_iter().filter(|(number, _)| *number < self.wanted).collect()
+    pub fn into_points(self) -> Vec<PointResult> {
+        let counted = self.units.into_iter().filter(|(unit, _)| *unit < self.wanted);
+        let mut points: Vec<PointResult> = counted.map(|(_, point)| point).collect();
+        points.sort_by_key(|point| point.number);
+        points
     }
 }

@@ -1,78 +1,79 @@
-//! A sweep: a grid or a sample over any addresses of a design, each point optimised.
+//! A sweep: a grid or a sample over any addresses of a design or a brief, each point optimised.
 //!
-//! What a point comes to depends on the plan, the design and its number alone: it starts from the
-//! better of its fixed neighbours (`lattice.rs`), never from whichever happens to be done. Where a
-//! neighbour is not there (in another part, before an interruption) it is computed again. So a
-//! sweep ends in the same bytes on any number of threads, interrupted or not, whole or in parts.
+//! What a point comes to depends on the plan, the file it is about and its number alone: it starts
+//! from the better of its fixed neighbours (`order.rs`), never from whichever happens to be done.
+//! Where a neighbour is not there (in another part, before an interruption) it is computed again.
+//! So a sweep ends in the same bytes on any number of threads, interrupted or not, whole or in
+//! parts.
+//!
+//! A design is changed and optimised at every point (`of_design.rs`); a brief is changed, and a
+//! design searched for that answers it (`of_brief.rs`).
 //!
 //! Start reading at [`Sweep::point`].
 
+mod axis;
 mod document;
 mod gathering;
-mod lattice;
+mod of_brief;
+mod of_design;
+mod order;
 mod plan;
 mod point;
 mod results;
+mod subject;
 
 #[cfg(test)]
 mod tests;
 
 use std::sync::{Arc, Mutex, MutexGuard, PoisonError};
 
-use rand::RngExt;
 use serde_json::{Value, json};
-use surface_model::design::Design;
 use surface_model::document::Source;
-use surface_model::place::Place;
 
-use crate::change::{Change, apply};
-use crate::design_file::DesignFile;
-use crate::optimise::optimise;
+use crate::change::Change;
 use crate::run::{Ask, Interrupt, Interrupted, Share, Work};
-use crate::sampling::stream;
-use crate::solve::{Interruptible, Settings, Stopped, Unwatched};
+use point::{Neighbour, Outcome};
 
 pub use document::plan_schema;
 pub use gathering::SweepGathering;
 pub use plan::{MOST_POINTS, Plan, PlanFile};
 pub use point::{PointResult, Reached};
-pub use results::{NumberedPoint, Quantity, SweepResults, front};
+pub use results::{Quantity, SweepResults};
+pub use subject::Subject;
 
 /// What a run folder calls this sort of work.
 pub const KIND: &str = "sweep";
-
-/// By how much a start is shaken: each free number by up to this share of itself.
-const SHAKE: f64 = 0.1;
 
 /// A sweep at work.
 #[derive(Debug)]
 pub struct Sweep {
     plan: Plan,
-    design: DesignFile,
-    settings: Settings,
+    subject: Subject,
+    /// The point of every unit of the run.
+    units: Vec<usize>,
     /// What is known of every point; whoever computes one holds its lock.
     known: Vec<Mutex<Option<Arc<PointResult>>>>,
 }
 
 /// What to ask a run folder for.
 #[must_use]
-pub fn ask(plan: &PlanFile, design: &DesignFile, share: Share) -> Ask {
+pub fn ask(plan: &PlanFile, subject: &Subject, share: Share) -> Ask {
     Ask {
         kind: KIND,
         name: plan.document().label().to_owned(),
         text: plan.document().text().as_bytes().to_vec(),
         seed: 0,
-        settings: json!({ "design": design.document().value() }),
+        settings: json!({ subject.key(): subject.document().value() }),
         share,
     }
 }
 
 impl Sweep {
-    /// A sweep of a plan over its design.
+    /// A sweep of a plan over what it is about, as a run in so many parts.
     #[must_use]
-    pub fn new(plan: Plan, design: DesignFile) -> Self {
+    pub fn new(plan: Plan, subject: Subject, parts: u64) -> Self {
         let known = plan.points.iter().map(|_| Mutex::new(None)).collect();
-        Self { plan, design, settings: Settings::default(), known }
+        Self { units: plan.order.units(parts), plan, subject, known }
     }
 
     /// The plan.
@@ -82,9 +83,9 @@ impl Sweep {
     }
 
     /// Takes note of a point that is known already, so that it need not be computed again.
-    pub fn note(&self, number: u64, point: &PointResult) {
-        if let Some(known) = usize::try_from(number).ok().and_then(|number| self.known.get(number))
-        {
+    pub fn note(&self, point: &PointResult) {
+        let number = usize::try_from(point.number).ok();
+        if let Some(known) = number.and_then(|number| self.known.get(number)) {
             let mut known = lock(known);
             if known.is_none() {
                 *known = Some(Arc::new(point.clone()));
@@ -107,64 +108,40 @@ impl Sweep {
         if let Some(point) = known.as_ref() {
             return Ok(Arc::clone(point));
         }
-        let mut best: Option<(u64, Arc<PointResult>)> = None;
-        for &near in &self.plan.neighbours[number].0 {
-            let point = self.point(near, interrupt)?;
-            let merit = |point: &PointResult| point.reached.as_ref().map(|reached| reached.merit);
-            let better = merit(&point).is_some_and(|merit_here| {
-                best.as_ref().and_then(|(_, best)| merit(best)).is_none_or(|best| merit_here < best)
-            });
-            if better {
-                best = Some((near as u64, point));
-            }
+        let mut best: Option<Neighbour> = None;
+        for &near in &self.plan.order.neighbours[number].0 {
+            let near = Neighbour::of(self.point(near, interrupt)?.as_ref());
+            best = match (near, best) {
+                (Some(near), Some(best)) if near.merit >= best.merit => Some(best),
+                (near, best) => near.or(best),
+            };
         }
-        let point = Arc::new(self.compute(number, best, interrupt)?);
+        let outcome = self.outcome(number, best.as_ref(), interrupt)?;
+        let values = self.plan.points[number].clone();
+        let point = Arc::new(PointResult::new(number as u64, values, outcome));
         *known = Some(Arc::clone(&point));
         Ok(point)
     }
 
-    fn compute(
+    fn outcome(
         &self,
         number: usize,
-        neighbour: Option<(u64, Arc<PointResult>)>,
+        neighbour: Option<&Neighbour>,
         interrupt: &Interrupt,
-    ) -> Result<PointResult, Interrupted> {
-        let values = self.plan.points[number].clone();
-        let failed = |fault: String| PointResult {
-            values: values.clone(),
-            reached: None,
-            fault: Some(fault),
-        };
-        let own = match self.at(&values) {
-            Ok(file) => file,
-            Err(fault) => return Ok(failed(fault)),
-        };
-        let starts = self.starts(number, &own, neighbour);
-        let (mut best, mut fault, mut iterations): (Option<Reached>, Option<String>, u64) =
-            (None, None, 0);
-        for (from_point, start) in starts {
-            if interrupt.is_raised() {
-                return Err(Interrupted);
+    ) -> Result<Outcome, Interrupted> {
+        match self.at(&self.plan.points[number]) {
+            Err(fault) => Ok(Outcome::Fault(fault)),
+            Ok(Subject::Design(file)) => {
+                of_design::optimised(&self.plan, number, &file, neighbour, interrupt)
             }
-            match self.improve(&start, from_point, interrupt)? {
-                Ok(reached) => {
-                    iterations += reached.iterations;
-                    if best.as_ref().is_none_or(|best| reached.merit < best.merit) {
-                        best = Some(reached);
-                    }
-                }
-                Err(reason) => fault = fault.or(Some(reason)),
+            Ok(Subject::Brief(file)) => {
+                of_brief::answered(&self.plan, number, &file, neighbour, interrupt)
             }
         }
-        let Some(mut reached) = best else {
-            return Ok(failed(fault.unwrap_or_else(|| "no start could be optimised".to_owned())));
-        };
-        reached.iterations = iterations;
-        Ok(PointResult { values, reached: Some(reached), fault: None })
     }
 
-    /// The design with the values of a point.
-    fn at(&self, values: &[Value]) -> Result<DesignFile, String> {
+    /// The design or brief with the values of a point.
+    fn at(&self, values: &[Value]) -> Result<Subject, String> {
         let changes: Vec<Change> = self
             .plan
             .axes
@@ -175,100 +152,32 @@ impl Sweep {
                 Change::new(at.clone(), value.clone(), source)
             })
             .collect();
-        apply(&self.design, &changes).map(|changed| changed.file).map_err(|complaints| {
+        self.subject.with(&changes).map_err(|complaints| {
             let found = complaints.iter().map(|complaint| complaint.found.clone());
             found.collect::<Vec<_>>().join("; ")
         })
-    }
-
-    /// The starts of a point, each with the point it was made of.
-    fn starts(
-        &self,
-        number: usize,
-        own: &DesignFile,
-        neighbour: Option<(u64, Arc<PointResult>)>,
-    ) -> Vec<(Option<u64>, DesignFile)> {
-        let mut starts: Vec<(Option<u64>, DesignFile)> = Vec::new();
-        if let Some((near, point)) = neighbour {
-            let warm = point.reached.as_ref().and_then(|reached| warmed(own, &reached.design));
-            starts.extend(warm.map(|file| (Some(near), file)));
-        }
-        let wanted = self.plan.starts as usize;
-        if starts.is_empty() || wanted > 1 {
-            starts.push((None, own.clone()));
-        }
-        let mut random = stream(self.plan.seed, number as u64);
-        for _ in starts.len()..wanted {
-            let (from, file) = &starts[0];
-            let mut design = file.design.clone();
-            for free in &file.free {
-                let factor = 1.0 + SHAKE * random.random_range(-1.0..1.0);
-                free.place.set(&mut design, free.place.value(&file.design) * factor);
-            }
-            if let Some(shaken) = fitted(file, design) {
-                starts.push((*from, shaken));
-            }
-        }
-        starts
-    }
-
-    /// Optimises one start; a reason where it cannot be.
-    fn improve(
-        &self,
-        start: &DesignFile,
-        from_point: Option<u64>,
-        interrupt: &Interrupt,
-    ) -> Result<Result<Reached, String>, Interrupted> {
-        if start.free.is_empty() {
-            let reached = Reached::of(start, from_point, 0);
-            return Ok(reached.ok_or_else(|| "rays fail, and nothing is free to move".to_owned()));
-        }
-        let mut observer = Interruptible { stop: interrupt.flag(), observer: Unwatched };
-        match optimise(start, &self.settings, &mut observer) {
-            Ok(result) if result.stopped == Stopped::Interrupted => Err(Interrupted),
-            Ok(result) => {
-                let (end, iterations) = (&result.report.end, result.report.iterations);
-                let reached = Reached::from_assessment(end, &result.file, from_point, iterations);
-                Ok(reached.ok_or_else(|| "rays fail in the optimised design".to_owned()))
-            }
-            Err(error) => Ok(Err(error.to_string())),
-        }
     }
 }
 
 impl Work for Sweep {
     type Done = PointResult;
 
-    fn perform(&self, number: u64, interrupt: &Interrupt) -> Result<PointResult, Interrupted> {
-        let number = usize::try_from(number).map_err(|_| Interrupted)?;
-        Ok(self.point(number, interrupt)?.as_ref().clone())
+    fn perform(&self, unit: u64, interrupt: &Interrupt) -> Result<PointResult, Interrupted> {
+        let unit = usize::try_from(unit).ok();
+        let number = unit.and_then(|unit| self.units.get(unit)).ok_or(Interrupted)?;
+        Ok(self.point(*number, interrupt)?.as_ref().clone())
+    }
+
+    fn called(&self, unit: u64) -> String {
+        let unit = usize::try_from(unit).unwrap_or(usize::MAX);
+        let Some(&number) = self.units.get(unit) else { return format!("unit {unit}") };
+        let axes = self.plan.axes.iter().zip(&self.plan.points[number]);
+        let values: Vec<String> = axes.map(|(at, value)| format!("{at}={value}")).collect();
+        format!("point {number} ({})", values.join(", "))
     }
 }
 
 /// A lock, whatever became of the thread that held it last.
 fn lock<T>(mutex: &Mutex<T>) -> MutexGuard<'_, T> {
     mutex.lock().unwrap_or_else(PoisonError::into_inner)
-}
-
-/// A point's own file with the free numbers of a neighbour's design; `None` where the two are not
-/// built alike.
-fn warmed(own: &DesignFile, neighbour: &Value) -> Option<DesignFile> {
-    let document = surface_model::document::Document::from_value(own.label(), neighbour.clone());
-    let near = DesignFile::read(document).ok()?.design;
-    let mut design = own.design.clone();
-    if Place::all(&near) != Place::all(&design) {
-        return None;
-    }
-    for free in &own.free {
-        free.place.set(&mut design, free.place.value(&near));
-    }
-    fitted(own, design)
-}
-
-/// The file with these numbers, its spacings fitted to the fixed groups.
-fn fitted(file: &DesignFile, mut design: Design) -> Option<DesignFile> {
-    let is_free =
-        |state, after| file.free.iter().any(|free| free.place == Place::Spacing { state, after });
-    design.fit_to_housing(|state, mut spacings| spacings.rfind(|&after| is_free(state, after)));
-    file.with_numbers_of(&design).ok()
 }

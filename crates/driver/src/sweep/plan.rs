@@ -1,16 +1,15 @@
-//! A sweep plan, read and checked against its design: every point with its values and the points it
-//! may start from.
+//! A sweep plan, read and checked against what it is about: every point with its values and the
+//! points it may start from.
 
 use serde_json::Value;
-use surface_model::document::{Address, Complaint, Complaints, Document, Place, Source, quoted};
+use surface_model::document::{Address, Complaint, Complaints, Document, Place};
 
-use super::document::{
-    AxisDocument, PlanDocument, RangeDocument, SampleDocument, SampleKind, ScaleDocument,
-    plan_schema,
-};
-use super::lattice::{Lattice, Neighbours};
+use super::axis::{Axis, axis, complaint};
+use super::document::{PlanDocument, SampleDocument, SampleKind, plan_schema};
+use super::order::{Order, unfold};
 use super::results::Quantity;
-use crate::change::{Change, apply};
+use super::subject::{BRIEF_KEY, DESIGN_KEY, Subject};
+use crate::brief::BriefFile;
 use crate::design_file::DesignFile;
 use crate::document_kind::PLAN;
 use crate::sampling::{LatinHypercube, Sobol};
@@ -18,14 +17,25 @@ use crate::sampling::{LatinHypercube, Sobol};
 /// Most points of a sweep.
 pub const MOST_POINTS: usize = 100_000;
 
+/// Most values of all axes in all points: some hundred megabytes.
+const MOST_VALUES: usize = 1_000_000;
+
 /// Most starts of a point.
 const MOST_STARTS: u32 = 1000;
 
-/// A plan before its design is read.
+/// A plan before the file it is about is read.
 #[derive(Debug, Clone)]
 pub struct PlanFile {
     document: Document,
     written: PlanDocument,
+    about: About,
+}
+
+/// The file that a plan is about, as it names it.
+#[derive(Debug, Clone)]
+enum About {
+    Design(String),
+    Brief(String),
 }
 
 impl PlanFile {
@@ -36,14 +46,48 @@ impl PlanFile {
     pub fn read(document: Document) -> Result<Self, Complaints> {
         PLAN.refuse_others(&document)?;
         document.check(&plan_schema())?;
-        let written = document.read()?;
-        Ok(Self { document, written })
+        let mut written: PlanDocument = document.read()?;
+        let about = match (written.design.take(), written.brief.take()) {
+            (Some(design), None) => About::Design(design),
+            (None, Some(brief)) => About::Brief(brief),
+            (both, _) => {
+                let (at, found) = match both {
+                    Some(_) => (Address::root().key("brief"), "the plan names a design too"),
+                    None => (Address::root(), "the plan names neither a design nor a brief"),
+                };
+                let expected = "\"design\" or \"brief\"".to_owned();
+                return Err(document.refuse([complaint(at, found.to_owned(), expected)]));
+            }
+        };
+        Ok(Self { document, written, about })
     }
 
-    /// The design file, as the plan names it.
+    /// The design or brief, as the plan names it: a file seen from the plan's folder.
     #[must_use]
-    pub fn design(&self) -> &str {
-        &self.written.design
+    pub fn subject_name(&self) -> &str {
+        match &self.about {
+            About::Design(name) | About::Brief(name) => name,
+        }
+    }
+
+    /// The key under which the plan, and the settings of a run, have it.
+    #[must_use]
+    pub fn subject_key(&self) -> &'static str {
+        match self.about {
+            About::Design(_) => DESIGN_KEY,
+            About::Brief(_) => BRIEF_KEY,
+        }
+    }
+
+    /// Reads what the plan is about.
+    ///
+    /// # Errors
+    /// Everything that is wrong with it, placed in its text.
+    pub fn read_subject(&self, document: Document) -> Result<Subject, Complaints> {
+        Ok(match self.about {
+            About::Design(_) => Subject::Design(Box::new(DesignFile::read(document)?)),
+            About::Brief(_) => Subject::Brief(Box::new(BriefFile::read(document)?)),
+        })
     }
 
     /// The plan as it was written.
@@ -52,18 +96,18 @@ impl PlanFile {
         &self.document
     }
 
-    /// Works out the points for the design.
+    /// Works out the points.
     ///
     /// # Errors
     /// Addresses that lead nowhere, axes without values, too many points: placed in the plan's
     /// text.
-    pub fn resolve(&self, design: &DesignFile) -> Result<Plan, Complaints> {
+    pub fn resolve(&self, subject: &Subject) -> Result<Plan, Complaints> {
         let mut wrong = Vec::new();
         let drawn = self.written.sample.is_some();
         let mut axes = Vec::new();
         for (number, axis) in self.written.axes.iter().enumerate() {
             let at = Address::root().key("axes").index(number);
-            match self::axis(&at, axis, drawn, design) {
+            match self::axis(&at, axis, drawn, subject) {
                 Ok(axis) => axes.push(axis),
                 Err(complaint) => wrong.push(complaint),
             }
@@ -73,22 +117,23 @@ impl PlanFile {
             let at = Address::root().key("starts");
             wrong.push(complaint(at, format!("{starts} starts"), format!("1 to {MOST_STARTS}")));
         }
-        let front = self.front(design, &mut wrong);
+        let front = self.front(subject, &mut wrong);
         if !wrong.is_empty() {
             return Err(self.document.refuse(wrong));
         }
         let seed = self.written.seed.unwrap_or(0);
-        let (points, neighbours) = self.points(&axes, seed)?;
+        let (points, order) = self.points(&axes, seed)?;
         let addresses = axes.into_iter().map(|axis| axis.at).collect();
         let title = self.written.title.clone();
-        Ok(Plan { title, axes: addresses, points, neighbours, starts, seed, front })
+        Ok(Plan { title, axes: addresses, points, order, starts, seed, front })
     }
 
-    fn front(&self, design: &DesignFile, wrong: &mut Vec<Complaint>) -> Option<[Quantity; 2]> {
+    fn front(&self, subject: &Subject, wrong: &mut Vec<Complaint>) -> Option<[Quantity; 2]> {
         let words = self.written.front.as_ref()?;
+        let axes: Vec<&str> = self.written.axes.iter().map(|axis| axis.at.as_str()).collect();
         let at = |number: usize| Address::root().key("front").index(number);
         let mut read = |number: usize| {
-            let found = Quantity::read(&words[number], design);
+            let found = Quantity::read(&words[number], subject, &axes);
             found
                 .map_err(|error| wrong.push(Complaint { place: Place::Value(at(number)), ..error }))
                 .ok()
@@ -96,50 +141,59 @@ impl PlanFile {
         Some([read(0)?, read(1)?])
     }
 
-    /// The values of every point, in the order in which points are numbered, and the points each
-    /// may start from.
-    fn points(
-        &self,
-        axes: &[Axis],
-        seed: u64,
-    ) -> Result<(Vec<Vec<Value>>, Vec<Neighbours>), Complaints> {
+    /// The values of every point by its number, and the order that the numbers follow.
+    fn points(&self, axes: &[Axis], seed: u64) -> Result<(Vec<Vec<Value>>, Order), Complaints> {
         match self.written.sample {
             None => {
-                let counts: Vec<usize> = axes.iter().map(|axis| axis.values.len()).collect();
+                let counts: Vec<usize> = axes.iter().map(Axis::count).collect();
                 let total =
                     counts.iter().try_fold(1_usize, |total, &count| total.checked_mul(count));
-                self.admit(total, Address::root().key("axes"))?;
-                let lattice = Lattice::new(&counts);
-                let value = |index: &Vec<usize>| {
-                    index.iter().zip(axes).map(|(&i, axis)| axis.values[i].clone()).collect()
+                self.admit(total, axes.len(), Address::root().key("axes"))?;
+                let order = Order::of_grid(&counts);
+                let values = |&point: &usize| {
+                    let indices = unfold(point, &counts);
+                    indices.iter().zip(axes).map(|(&i, axis)| axis.value(i)).collect()
                 };
-                Ok((lattice.points().iter().map(value).collect(), lattice.neighbours()))
+                Ok((order.points.iter().map(values).collect(), order))
             }
             Some(sample) => {
                 let at = Address::root().key("sample");
-                self.admit(Some(sample.points as usize), at.clone().key("points"))?;
+                let points = Some(sample.points as usize);
+                self.admit(points, axes.len(), at.clone().key("points"))?;
                 let cube = drawn(sample, axes.len(), seed)
                     .map_err(|error| self.document.refuse([complaint(at, error.0, error.1)]))?;
-                let value = |point: &Vec<f64>| {
-                    point.iter().zip(axes).map(|(&t, axis)| Value::from(axis.at_share(t))).collect()
+                let order = Order::of(&cube);
+                let values = |&point: &usize| {
+                    let shares = cube[point].iter().zip(axes);
+                    shares.map(|(&share, axis)| axis.at_share(share)).collect()
                 };
-                Ok((cube.iter().map(value).collect(), Neighbours::of_cloud(&cube)))
+                Ok((order.points.iter().map(values).collect(), order))
             }
         }
     }
 
-    fn admit(&self, points: Option<usize>, at: Address) -> Result<(), Complaints> {
-        if points.is_some_and(|points| (1..=MOST_POINTS).contains(&points)) {
+    fn admit(&self, points: Option<usize>, axes: usize, at: Address) -> Result<(), Complaints> {
+        let Some(count) = points.filter(|points| (1..=MOST_POINTS).contains(points)) else {
+            let found = points.map_or_else(
+                || "more points than can be counted".to_owned(),
+                |points| format!("{points} points"),
+            );
+            return Err(self.document.refuse([complaint(
+                at,
+                found,
+                format!("1 to {MOST_POINTS}"),
+            )]));
+        };
+        if count.checked_mul(axes).is_some_and(|values| values <= MOST_VALUES) {
             return Ok(());
         }
-        let found = points.map_or_else(
-            || "more points than can be counted".to_owned(),
-            |points| format!("{points} points"),
-        );
-        Err(self.document.refuse([complaint(at, found, format!("1 to {MOST_POINTS}"))]))
+        let found = format!("{count} points of {axes} axes each");
+        let expected = format!("fewer of either: {MOST_VALUES} values in all at most");
+        Err(self.document.refuse([complaint(at, found, expected)]))
     }
 }
 
+/// Points of the unit cube.
 fn drawn(
     sample: SampleDocument,
     dimensions: usize,
@@ -168,141 +222,9 @@ pub struct Plan {
     pub axes: Vec<Address>,
     /// The values of every point by its number, one an axis.
     pub points: Vec<Vec<Value>>,
-    pub(super) neighbours: Vec<Neighbours>,
+    pub(super) order: Order,
     pub(super) starts: u32,
     pub(super) seed: u64,
     /// Two results to weigh against each other.
     pub front: Option<[Quantity; 2]>,
-}
-
-/// One axis, read.
-struct Axis {
-    at: Address,
-    /// Its values; none where points are drawn.
-    values: Vec<Value>,
-    range: Option<RangeDocument>,
-}
-
-impl Axis {
-    /// The number at a share (0 to 1) of the range.
-    fn at_share(&self, share: f64) -> f64 {
-        self.range.map_or(f64::NAN, |range| between(&range, share))
-    }
-}
-
-fn between(range: &RangeDocument, share: f64) -> f64 {
-    let RangeDocument { from, to, .. } = *range;
-    if share <= 0.0 {
-        return from;
-    }
-    if share >= 1.0 {
-        return to;
-    }
-    match range.scale.unwrap_or_default() {
-        ScaleDocument::Linear => from + (to - from) * share,
-        ScaleDocument::Logarithmic => from * (to / from).powf(share),
-    }
-}
-
-fn axis(
-    here: &Address,
-    axis: &AxisDocument,
-    drawn: bool,
-    design: &DesignFile,
-) -> Result<Axis, Complaint> {
-    let place = || Place::Value(here.clone().key("at"));
-    let at: Address = axis
-        .at
-        .parse()
-        .map_err(|error: surface_model::document::AddressSyntaxError| error.complaint(place()))?;
-    let file = design.document().value();
-    let known = at.resolve(file).map(|_| ());
-    // A key that the design leaves out can be swept too, such as a limit.
-    let addable = || {
-        at.parent().is_some_and(|parent| {
-            parent.resolve(file).is_ok_and(|found| {
-                found.iter().all(|at| at.get(file).is_some_and(Value::is_object))
-            })
-        })
-    };
-    if let Err(error) = known
-        && !addable()
-    {
-        return Err(error.complaint(place()));
-    }
-    let refuse = |key: &str, found: &str, expected: &str| {
-        Err(complaint(here.clone().key(key), found.to_owned(), expected.to_owned()))
-    };
-    let (values, range) = match (&axis.values, &axis.range) {
-        (Some(_), _) if drawn => {
-            return refuse("values", "points are drawn from ranges, not from values", "a range");
-        }
-        (Some(values), None) => (values.clone(), None),
-        (None, Some(range)) => (steps(here, range, drawn)?, Some(*range)),
-        (Some(_), Some(_)) => return refuse("range", "the axis has values too", "one of the two"),
-        (None, None) => return refuse("at", "the axis has no values", "\"values\" or \"range\""),
-    };
-    let axis = Axis { at, values, range };
-    if axis.at.resolve(file).is_err() {
-        try_key(&axis, here, design)?;
-    }
-    Ok(axis)
-}
-
-/// A key that the design lacks is tried once: whether the format knows it shows then.
-fn try_key(axis: &Axis, here: &Address, design: &DesignFile) -> Result<(), Complaint> {
-    let value = axis.values.first().cloned().unwrap_or_else(|| Value::from(axis.at_share(0.0)));
-    let source = Source { label: axis.at.to_string(), position: None };
-    let Err(complaints) = apply(design, &[Change::new(axis.at.clone(), value, source)]) else {
-        return Ok(());
-    };
-    match complaints.iter().find(|complaint| matches!(complaint.place, Place::Key(_))) {
-        Some(complaint) => {
-            let place = Place::Value(here.clone().key("at"));
-            Err(Complaint { place, ..complaint.clone() })
-        }
-        // A value that does not fit is that point's affair.
-        None => Ok(()),
-    }
-}
-
-/// The numbers of a range; none where points are drawn.
-fn steps(here: &Address, range: &RangeDocument, drawn: bool) -> Result<Vec<Value>, Complaint> {
-    let at = here.clone().key("range");
-    let refuse = |key: &str, found: String, expected: &str| {
-        Err(complaint(at.clone().key(key), found, expected.to_owned()))
-    };
-    let RangeDocument { from, to, steps, scale } = *range;
-    if !(from.is_finite() && to.is_finite()) {
-        return refuse("from", "the range has no ends".to_owned(), "two numbers");
-    }
-    if scale == Some(ScaleDocument::Logarithmic) && from * to <= 0.0 {
-        let found = format!("equal ratios do not lead from {from} to {to}");
-        return refuse("scale", found, "two ends of the same sign, neither of them 0");
-    }
-    match steps {
-        None if drawn => Ok(Vec::new()),
-        Some(steps) if drawn => {
-            refuse("steps", format!("{steps} steps, but points are drawn"), "no steps")
-        }
-        Some(steps) if (1..=MOST_POINTS).contains(&(steps as usize)) => {
-            let last = f64::from(steps.max(2) - 1);
-            Ok((0..steps).map(|i| Value::from(between(range, f64::from(i) / last))).collect())
-        }
-        Some(steps) => refuse("steps", format!("{steps} steps"), "1 to 100000"),
-        None => refuse(
-            "from",
-            "the range has no steps".to_owned(),
-            "\"steps\", or a \"sample\" of the plan",
-        ),
-    }
-}
-
-fn complaint(at: Address, found: String, expected: String) -> Complaint {
-    Complaint { place: Place::Value(at), found, expected: Some(expected), advice: None }
-}
-
-/// A word of the plan in quotes, for messages.
-pub(super) fn shown(word: &str) -> String {
-    quoted(word)
 }

@@ -9,12 +9,55 @@ use crate::design_file::DesignFile;
 /// What became of a point.
 #[derive(Debug, Clone, PartialEq, Serialize, Deserialize)]
 pub struct PointResult {
+    /// Its number in the sweep.
+    pub number: u64,
     /// Values of the axes, in their order.
     pub values: Vec<Value>,
-    /// What it came to; null where it could not be optimised.
+    /// What it came to; null where there is no design.
     pub reached: Option<Reached>,
-    /// Why it could not.
+    /// Why it could not be optimised.
     pub fault: Option<String>,
+    /// That no layout answers the brief, which is no fault: what stands against most of those that
+    /// were looked at.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub no_layout: Option<String>,
+}
+
+/// What a point comes to.
+pub(super) enum Outcome {
+    Reached(Box<Reached>),
+    /// The brief of the point has no layout; what stands against most.
+    NoLayout(String),
+    /// It cannot be optimised; why.
+    Fault(String),
+}
+
+impl PointResult {
+    pub(super) fn new(number: u64, values: Vec<Value>, outcome: Outcome) -> Self {
+        let (reached, fault, no_layout) = match outcome {
+            Outcome::Reached(reached) => (Some(*reached), None, None),
+            Outcome::NoLayout(reason) => (None, None, Some(reason)),
+            Outcome::Fault(reason) => (None, Some(reason), None),
+        };
+        Self { number, values, reached, fault, no_layout }
+    }
+}
+
+/// A point that another may start from.
+pub(super) struct Neighbour {
+    pub(super) number: u64,
+    pub(super) merit: f64,
+    /// Its design file.
+    pub(super) design: Value,
+}
+
+impl Neighbour {
+    /// `None` where the point has no design.
+    pub(super) fn of(point: &PointResult) -> Option<Self> {
+        let reached = point.reached.as_ref()?;
+        let (number, merit) = (point.number, reached.merit);
+        Some(Self { number, merit, design: reached.design.clone() })
+    }
 }
 
 /// What an optimised point reaches.
@@ -34,7 +77,8 @@ pub struct Reached {
     pub worst_exit_slope_urad: Option<f64>,
     /// Longest track of any state, first vertex to last vertex, mm.
     pub track_mm: f64,
-    /// The point whose design the best start was made of; null for the plan's own.
+    /// The point whose design the best start was made of; null for the plan's own, or where a
+    /// search found it.
     pub from_point: Option<u64>,
     /// Steps of the solver over all starts.
     pub iterations: u64,

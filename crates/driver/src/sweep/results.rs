@@ -2,11 +2,14 @@
 
 use serde::Serialize;
 use serde_json::Value;
-use surface_model::document::{Address, Complaint, Place, did_you_mean, layout, nearest, one_of};
+use surface_model::document::{
+    Address, Complaint, Place, did_you_mean, layout, nearest, one_of, quoted,
+};
 
-use super::plan::{Plan, shown};
+use super::plan::Plan;
 use super::point::{PointResult, Reached};
-use crate::design_file::DesignFile;
+use super::subject::Subject;
+use crate::front::front;
 use crate::run::ResultFile;
 
 /// How many designs are kept as files of their own.
@@ -24,7 +27,7 @@ const NAMED: [Named; 5] = [
     ("track_mm", |reached| Some(reached.track_mm)),
 ];
 
-/// A number of a point: a result, or what stands at an address of its design.
+/// A number of a point: a result, the value of an axis, or what stands at an address of its design.
 #[derive(Debug, Clone)]
 pub struct Quantity {
     /// Its word, or its address.
@@ -35,6 +38,8 @@ pub struct Quantity {
 #[derive(Debug, Clone)]
 enum What {
     Result(fn(&Reached) -> Option<f64>),
+    /// The value of the axis with this index.
+    Axis(usize),
     Number(Address),
 }
 
@@ -45,14 +50,19 @@ impl Quantity {
         Self { word: "merit".to_owned(), what: What::Result(NAMED[0].1) }
     }
 
-    /// Reads a word or an address of a number.
-    pub(super) fn read(word: &str, design: &DesignFile) -> Result<Self, Complaint> {
+    /// Reads a word, the address of one of the axes, or of a number of a design: a brief says
+    /// nothing of the designs that answer it.
+    pub(super) fn read(word: &str, subject: &Subject, axes: &[&str]) -> Result<Self, Complaint> {
         let refuse = |found: String, advice| Complaint {
             place: Place::File,
             found,
             expected: Some(format!(
-                "{}, or the address of a number",
-                one_of(NAMED.map(|(word, _)| word))
+                "{}, or the address of {}",
+                one_of(NAMED.map(|(word, _)| word)),
+                match subject {
+                    Subject::Design(_) => "a number",
+                    Subject::Brief(_) => "an axis",
+                }
             )),
             advice,
         };
@@ -61,15 +71,21 @@ impl Quantity {
         }
         if !word.starts_with('/') {
             let near = nearest(word, NAMED.map(|(word, _)| word)).map(did_you_mean);
-            return Err(refuse(format!("{} is not a result of a sweep", shown(word)), near));
+            return Err(refuse(format!("{} is not a result of a sweep", quoted(word)), near));
         }
         let address: Address =
             word.parse().map_err(|error: surface_model::document::AddressSyntaxError| {
                 error.complaint(Place::File)
             })?;
-        let file = design.document().value();
+        if let (Subject::Brief(_), Some(axis)) = (subject, axes.iter().position(|at| *at == word)) {
+            return Ok(Self { word: word.to_owned(), what: What::Axis(axis) });
+        }
+        let file = subject.document().value();
         let found = address.resolve(file).map_err(|error| error.complaint(Place::File))?;
         match found.as_slice() {
+            [_] if matches!(subject, Subject::Brief(_)) => {
+                Err(refuse(format!("{word} is no axis of the plan"), None))
+            }
             [only] if only.get(file).is_some_and(Value::is_number) => {
                 Ok(Self { word: word.to_owned(), what: What::Number(address) })
             }
@@ -84,6 +100,7 @@ impl Quantity {
         let reached = point.reached.as_ref()?;
         match &self.what {
             What::Result(value) => value(reached),
+            What::Axis(axis) => point.values.get(*axis)?.as_f64(),
             What::Number(address) => {
                 let at = address.resolve(&reached.design).ok()?;
                 at.first()?.get(&reached.design)?.as_f64()
@@ -92,28 +109,10 @@ impl Quantity {
     }
 }
 
-/// The numbers of the points that no other beats in both quantities, from the least of the first
-/// to the least of the second; of points that are equal in both the first counts.
-#[must_use]
-pub fn front(points: &[(u64, PointResult)], by: &[Quantity; 2]) -> Vec<u64> {
-    let mut placed: Vec<(f64, f64, u64)> =
-        weighed(points, by).into_iter().map(|(number, [a, b])| (a, b, number)).collect();
-    placed.sort_by(|a, b| a.0.total_cmp(&b.0).then(a.1.total_cmp(&b.1)).then(a.2.cmp(&b.2)));
-    let mut least = f64::INFINITY;
-    let mut front = Vec::new();
-    for (_, second, number) in placed {
-        if second < least {
-            least = second;
-            front.push(number);
-        }
-    }
-    front
-}
-
 /// Both quantities of every point that has them, by its number.
-fn weighed(points: &[(u64, PointResult)], by: &[Quantity; 2]) -> Vec<(u64, [f64; 2])> {
+fn weighed(points: &[PointResult], by: &[Quantity; 2]) -> Vec<(u64, [f64; 2])> {
     let both = |point| Some([by[0].of(point)?, by[1].of(point)?]);
-    points.iter().filter_map(|(number, point)| Some((*number, both(point)?))).collect()
+    points.iter().filter_map(|point| Some((point.number, both(point)?))).collect()
 }
 
 /// A sweep with its results, as JSON and as a table. Points stand in the order of their numbers.
@@ -129,61 +128,44 @@ pub struct SweepResults {
     pub points_of_plan: usize,
     /// Points whose optimisation failed.
     pub failed: usize,
+    /// Points whose brief has no layout.
+    #[serde(skip_serializing_if = "is_zero")]
+    pub without_layout: usize,
     /// The two results weighed against each other.
     pub front_of: Option<[String; 2]>,
     /// Numbers of the points that are no worse in both than any other.
     pub front: Vec<u64>,
     /// Every finished point.
-    pub points: Vec<NumberedPoint>,
+    pub points: Vec<PointResult>,
     /// By number, the two results weighed against each other, of the points that have both.
     #[serde(skip)]
     pub weighed: Vec<(u64, [f64; 2])>,
 }
 
-/// A point and its number.
-#[derive(Debug, Clone, Serialize)]
-pub struct NumberedPoint {
-    /// Its number in the sweep.
-    pub number: u64,
-    /// Values of the axes, in their order.
-    pub values: Vec<Value>,
-    /// What it came to; null where it could not be optimised.
-    pub reached: Option<Reached>,
-    /// Why it could not.
-    pub fault: Option<String>,
-}
-
 impl SweepResults {
     /// Of the points that are finished, in order of their numbers.
     #[must_use]
-    pub fn new(plan: &Plan, points: Vec<(u64, PointResult)>) -> Self {
-        let front = plan.front.as_ref().map(|by| front(&points, by)).unwrap_or_default();
+    pub fn new(plan: &Plan, points: Vec<PointResult>) -> Self {
         let weighed = plan.front.as_ref().map(|by| weighed(&points, by)).unwrap_or_default();
+        let both: Vec<[f64; 2]> = weighed.iter().map(|(_, both)| *both).collect();
         Self {
+            front: front(&both).into_iter().map(|k| weighed[k].0).collect(),
             weighed,
             format: "drawtube-sweep/1",
             title: plan.title.clone(),
             axes: plan.axes.clone(),
             points_of_plan: plan.points.len(),
-            failed: points.iter().filter(|(_, point)| point.reached.is_none()).count(),
+            failed: points.iter().filter(|point| point.fault.is_some()).count(),
+            without_layout: points.iter().filter(|point| point.no_layout.is_some()).count(),
             front_of: plan.front.as_ref().map(|by| by.each_ref().map(|q| q.word.clone())),
-            front,
-            points: points
-                .into_iter()
-                .map(|(number, PointResult { values, reached, fault })| NumberedPoint {
-                    number,
-                    values,
-                    reached,
-                    fault,
-                })
-                .collect(),
+            points,
         }
     }
 
     /// The finished point with the lowest merit, the first of equals.
     #[must_use]
-    pub fn best(&self) -> Option<&NumberedPoint> {
-        let merit = |point: &NumberedPoint| {
+    pub fn best(&self) -> Option<&PointResult> {
+        let merit = |point: &PointResult| {
             point.reached.as_ref().map_or(f64::INFINITY, |reached| reached.merit)
         };
         let reached = self.points.iter().filter(|point| point.reached.is_some());
@@ -238,11 +220,16 @@ impl SweepResults {
                 reached.map_or_else(String::new, |reached| reached.limits_crossed.to_string()),
             );
             row.push(word(self.front.contains(&point.number)));
-            row.push(point.fault.clone().unwrap_or_default());
+            let no_layout = point.no_layout.as_ref().map(|reason| format!("no layout: {reason}"));
+            row.push(point.fault.clone().or(no_layout).unwrap_or_default());
             table.write_record(&row)?;
         }
         Ok(table.into_inner().map_err(csv::IntoInnerError::into_error)?)
     }
+}
+
+fn is_zero(count: &usize) -> bool {
+    *count == 0
 }
 
 /// A value as a cell holds it: a word without quotes.

@@ -4,10 +4,14 @@ use serde_json::json;
 use surface_model::document::Document;
 
 use super::*;
+use crate::brief::BriefFile;
+use crate::design_file::DesignFile;
+use crate::search::{SearchProblem, SearchSettings};
 
-fn design() -> DesignFile {
-    let text = include_bytes!("../../../../configs/river-lidar-2x-6x.json");
-    DesignFile::read(Document::parse("river.json", text).unwrap()).unwrap()
+fn opened(plan: Value, about: &[u8], parts: u64) -> Sweep {
+    let file = PlanFile::read(Document::from_value("plan.json", plan)).unwrap();
+    let subject = file.read_subject(Document::parse("river.json", about).unwrap()).unwrap();
+    Sweep::new(file.resolve(&subject).unwrap(), subject, parts)
 }
 
 fn sweep(change: impl FnOnce(&mut Value)) -> Sweep {
@@ -17,9 +21,18 @@ fn sweep(change: impl FnOnce(&mut Value)) -> Sweep {
         "axes": [{ "at": "/states/6x/ratio", "range": { "from": 5.0, "to": 7.0, "steps": 5 } }]
     });
     change(&mut plan);
-    let file = PlanFile::read(Document::from_value("plan.json", plan)).unwrap();
-    let plan = file.resolve(&design()).unwrap();
-    Sweep::new(plan, design())
+    opened(plan, include_bytes!("../../../../configs/river-lidar-2x-6x.json"), 1)
+}
+
+/// Over the track of the river brief; at the first point no layout fits.
+fn brief_sweep(parts: u64) -> Sweep {
+    let plan = json!({
+        "format": "drawtube-plan/1",
+        "brief": "river.json",
+        "axes": [{ "at": "/housing/track_mm", "values": [20.0, 130.0, 150.0] }],
+        "front": ["/housing/track_mm", "merit"]
+    });
+    opened(plan, include_bytes!("../../../../configs/river-brief.json"), parts)
 }
 
 #[test]
@@ -99,27 +112,67 @@ fn an_interrupted_point_yields_nothing() {
 }
 
 #[test]
-fn the_front_is_what_nothing_beats_in_both() {
-    let point = |merit: f64, track_mm: f64| PointResult {
-        values: vec![],
-        reached: Some(Reached {
-            merit,
-            meets: true,
-            limits_crossed: 0,
-            worst_rms_waves: None,
-            worst_ratio_error_percent: None,
-            worst_exit_slope_urad: None,
-            track_mm,
-            from_point: None,
-            iterations: 1,
-            design: json!({}),
-        }),
-        fault: None,
+fn a_brief_is_begun_anew_at_every_point_whatever_was_computed_before() {
+    let interrupt = Interrupt::default();
+    let (forward, backward) = (brief_sweep(1), brief_sweep(1));
+    let all: Vec<_> = (0..3).map(|n| forward.point(n, &interrupt).unwrap()).collect();
+    for number in (0..3).rev() {
+        assert_eq!(backward.point(number, &interrupt).unwrap(), all[number]);
+    }
+    for point in &all {
+        let track_mm = point.values[0].as_f64().unwrap();
+        let Some(reached) = &point.reached else {
+            assert_eq!(track_mm, 20.0, "{point:?}");
+            assert!(point.no_layout.is_some() && point.fault.is_none(), "{point:?}");
+            continue;
+        };
+        assert_eq!(reached.design["housing"]["track_mm"], track_mm);
+        assert!(reached.meets && reached.track_mm <= track_mm, "{point:?}");
+    }
+    let plan = forward.plan();
+    let points = all.iter().map(|point| point.as_ref().clone()).collect();
+    let results = SweepResults::new(plan, points);
+    assert_eq!((results.failed, results.without_layout), (0, 1));
+    assert!(!results.front.is_empty() && results.weighed.len() == 2);
+}
+
+#[test]
+fn the_lenses_of_a_neighbour_serve_a_brief_that_allows_them() {
+    let brief = |change: &dyn Fn(&mut Value)| {
+        let text = include_str!("../../../../configs/river-brief.json");
+        let mut value: Value = serde_json::from_str(text).unwrap();
+        change(&mut value);
+        BriefFile::read(Document::from_value("b.json", value)).unwrap()
     };
-    let points =
-        [(1.0, 9.0), (2.0, 5.0), (2.0, 4.0), (3.0, 4.0), (4.0, 1.0), (5.0, 2.0), (1.0, 9.0)];
-    let numbered: Vec<(u64, PointResult)> =
-        (0..).zip(points.map(|(merit, track)| point(merit, track))).collect();
-    let by = [Quantity::merit(), Quantity::read("track_mm", &design()).unwrap()];
-    assert_eq!(front(&numbered, &by), [0, 2, 4]);
+    let problem =
+        |brief: &BriefFile| SearchProblem::of_brief(brief, SearchSettings::default()).unwrap();
+    let never = std::sync::atomic::AtomicBool::new(false);
+    let found = problem(&brief(&|_| {})).start(0, 0, &never).unwrap().found.unwrap();
+    let file = DesignFile::read(Document::from_value("d.json", found.design)).unwrap();
+    let merit = |brief: &BriefFile| {
+        let attempt = problem(brief).improve(&file, "taken over", &never).unwrap();
+        attempt.found.map(|found| found.merit)
+    };
+    assert!(merit(&brief(&|_| {})).unwrap() <= found.merit * (1.0 + 1e-6));
+    let wider = brief(&|brief| {
+        brief["beam"]["diameter_mm"] = json!(2.6);
+        brief["housing"]["track_mm"] = json!(155.0);
+        brief["ratios"][4] = json!(6.2);
+    });
+    assert!(merit(&wider).is_some());
+    assert_eq!(merit(&brief(&|brief| brief["glasses_allowed"] = json!(["N-BK7"]))), None);
+    assert_eq!(merit(&brief(&|brief| brief["ratios"] = json!([2, 6]))), None);
+    assert_eq!(merit(&brief(&|brief| brief["groups"][0]["elements"] = json!(2))), None);
+}
+
+#[test]
+fn units_of_a_run_in_parts_are_the_points_of_the_whole() {
+    let sweep = |parts| {
+        let mut sweep = brief_sweep(parts);
+        sweep.units.sort_unstable();
+        sweep.units
+    };
+    assert_eq!((sweep(1), sweep(2)), (vec![0, 1, 2], vec![0, 1, 2]));
+    let called = brief_sweep(1).called(0);
+    assert_eq!(called, "point 0 (/housing/track_mm=130.0)");
 }

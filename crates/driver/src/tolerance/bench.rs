@@ -1,8 +1,5 @@
 //! A design on the bench: every state's trains, what each tolerance does to them, and the exact
-//! derivatives of what is measured.
-//!
-//! What is measured of a state is one row of numbers: per wavelength and ray √w times the
-//! wavefront without tilt in waves, then the ratio's error in per cent and the exit slope in µrad.
+//! derivatives of what is measured (`nominal.rs` says what that is).
 
 use std::ops::Range;
 
@@ -11,19 +8,17 @@ use merit_function::limits::LimitKind;
 use merit_function::variables::{Column, FreePlace, Variables};
 use surface_model::design::Design;
 use surface_model::document::Address;
-use surface_model::paraxial::{ParaxialRay, ParaxialWeights};
 use surface_model::place::Place;
 use surface_model::pupil::Pupil;
 use surface_model::quantities::{Quantities, Quantity, Shapes};
-use surface_model::sequence::{Sequence, SurfaceId};
-use surface_model::skew::{ExitSum, RayStart, trace_ray};
-use surface_model::spoilt::FRINGE_NM;
 use surface_model::train::Train;
 
 use super::ToleranceError;
 use super::document::Tolerances;
-use super::item::{Item, Target};
-use super::kind::{Kind, Spread};
+use super::effect::BenchItem;
+use super::housing_end::HousingEnd;
+use super::item::Item;
+use super::kind::Spread;
 use super::requirement::Requirement;
 use crate::design_file::DesignFile;
 
@@ -31,59 +26,6 @@ use crate::design_file::DesignFile;
 pub(crate) const RINGS: usize = 8;
 /// See [`RINGS`].
 pub(crate) const ARMS: usize = 12;
-
-/// What an error does to a train, found out once.
-#[derive(Debug, Clone, Copy, PartialEq)]
-pub(crate) enum Effect {
-    /// c becomes c/(1 + e/100).
-    RadiusPercent {
-        surface: usize,
-    },
-    /// c changes by so much a fringe, 1/mm.
-    RadiusFringes {
-        surface: usize,
-        by: f64,
-    },
-    Irregularity {
-        surface: usize,
-    },
-    /// A packed variable changes.
-    Length {
-        packed: usize,
-    },
-    /// A packed variable is set wrong.
-    Setting {
-        packed: usize,
-    },
-    Index {
-        medium: usize,
-    },
-    Abbe {
-        medium: usize,
-    },
-    Wedge {
-        surface: usize,
-    },
-    ElementDecentre {
-        element: usize,
-    },
-    ElementTilt {
-        element: usize,
-    },
-    GroupDecentre {
-        group: usize,
-    },
-    GroupTilt {
-        group: usize,
-    },
-}
-
-/// One tolerance on the bench.
-#[derive(Debug, Clone, Copy, PartialEq)]
-pub(crate) struct BenchItem {
-    pub(crate) item: Item,
-    pub(crate) effect: Effect,
-}
 
 /// One zoom state on the bench.
 #[derive(Debug)]
@@ -96,12 +38,14 @@ pub(crate) struct BenchState {
     pub(crate) requirement: Requirement,
     /// Packed variables that are re-adjusted, with their bounds.
     pub(crate) readjusted: Vec<(usize, Bounds)>,
+    /// The ends of the housing that the groups could leave.
+    pub(crate) ends: Vec<HousingEnd>,
     /// Per group, how far its mount has turned, rad.
     pub(crate) turns: Vec<f64>,
     /// What is measured of the design as it stands.
     pub(crate) nominal: Vec<f64>,
     /// Its derivative by every quantity of the train.
-    by_quantity: Vec<Vec<f64>>,
+    pub(super) by_quantity: Vec<Vec<f64>>,
 }
 
 /// A design on the bench.
@@ -114,7 +58,7 @@ pub(crate) struct Bench<'a> {
     pub(crate) states: Vec<BenchState>,
     pub(crate) pupil: Pupil,
     /// The order of the derivatives that are kept.
-    quantities: Quantities,
+    pub(super) quantities: Quantities,
     pub(crate) roots: Vec<f64>,
     /// Surfaces of every element, and of every group.
     pub(crate) elements: Vec<Range<usize>>,
@@ -201,6 +145,7 @@ impl<'a> Bench<'a> {
             name: zoom.name.clone(),
             ratio_wanted: zoom.ratio,
             requirement,
+            ends: HousingEnd::all(self.design, zoom),
             readjusted: readjusted.collect(),
             turns,
             nominal: Vec::new(),
@@ -210,79 +155,6 @@ impl<'a> Bench<'a> {
         };
         self.measure_nominal(&mut state)?;
         Ok(state)
-    }
-
-    /// What is measured of a state as it stands, and its derivatives: by the reverse sweep along
-    /// one ray a ring, since the design is round.
-    fn measure_nominal(&self, state: &mut BenchState) -> Result<(), ToleranceError> {
-        let quantities = self.quantities;
-        let rows = self.roots.len() * state.trains.len() + 2;
-        state.nominal = vec![0.0; rows];
-        state.by_quantity = vec![vec![0.0; rows]; quantities.count()];
-        let mut row = 0;
-        for (train, waves) in state.trains.iter().zip(&state.waves_per_mm) {
-            for ring in 0..RINGS {
-                let position_mm = self.pupil.positions_mm()[ring * ARMS];
-                let start = RayStart { position_mm, direction: [0.0, 0.0] };
-                let ray = trace_ray(train, start).map_err(|fault| ToleranceError::Nominal {
-                    state: state.name.clone(),
-                    fault: fault.to_string(),
-                })?;
-                let weights = ExitSum { path_mm: 1.0, ..ExitSum::default() };
-                let by = ray.differentiate(&weights, Shapes::None);
-                for arm in ring * ARMS..(ring + 1) * ARMS {
-                    state.nominal[row + arm] = waves * ray.exit().path_mm;
-                    for (column, by) in state.by_quantity.iter_mut().zip(&by) {
-                        column[row + arm] = waves * by;
-                    }
-                }
-            }
-            self.weigh(&mut state.nominal[row..row + self.roots.len()]);
-            for column in &mut state.by_quantity {
-                self.weigh(&mut column[row..row + self.roots.len()]);
-            }
-            row += self.roots.len();
-        }
-        self.measure_first_order(state, row)
-    }
-
-    /// Piston out, then times √w.
-    fn weigh(&self, waves: &mut [f64]) {
-        let weights = self.pupil.weights();
-        let mean: f64 = waves.iter().zip(weights).map(|(wave, weight)| weight * wave).sum();
-        for (wave, root) in waves.iter_mut().zip(&self.roots) {
-            *wave = root * (*wave - mean);
-        }
-    }
-
-    fn measure_first_order(
-        &self,
-        state: &mut BenchState,
-        row: usize,
-    ) -> Result<(), ToleranceError> {
-        let overflow = || ToleranceError::Overflow { state: state.name.clone() };
-        let train = &state.trains[0];
-        let mut ray = ParaxialRay::new();
-        ray.trace(train, 1.0, 0.0).map_err(|_| overflow())?;
-        let (ratio, slope) =
-            (ray.ratio().ok_or_else(overflow)?, ray.exit_slope().ok_or_else(overflow)?);
-        let to_urad = 1e6 * self.design.beam.radius_mm();
-        let to_percent = 100.0 / state.ratio_wanted;
-        let quantities = self.quantities;
-        let mut gradient = vec![0.0; quantities.count()];
-        let last = [(train.len() - 1, to_percent)];
-        let measured = [
-            (row, ratio * to_percent - 100.0, ParaxialWeights { heights: &last, exit_slope: 0.0 }),
-            (row + 1, slope * to_urad, ParaxialWeights { heights: &[], exit_slope: to_urad }),
-        ];
-        for (row, value, weights) in measured {
-            ray.differentiate(train, weights, quantities, &mut gradient).map_err(|_| overflow())?;
-            state.nominal[row] = value;
-            for (column, by) in state.by_quantity.iter_mut().zip(&gradient) {
-                column[row] = *by;
-            }
-        }
-        Ok(())
     }
 
     /// Exact derivative of what is measured of state `k` by one packed variable.
@@ -303,45 +175,6 @@ impl<'a> Bench<'a> {
         sum
     }
 
-    /// Exact derivative of what is measured of state `k` by a round error, by its unit; `None`
-    /// for one that is not round.
-    pub(crate) fn by_error(&self, k: usize, effect: Effect) -> Option<Vec<f64>> {
-        let state = &self.states[k];
-        let quantities = self.quantities;
-        let mut sum = vec![0.0; state.nominal.len()];
-        match effect {
-            Effect::RadiusPercent { surface } => {
-                let by = -0.01 * state.trains[0].surfaces()[surface].curvature;
-                add(&mut sum, by, &state.by_quantity[quantities.curvature(surface)]);
-            }
-            Effect::RadiusFringes { surface, by } => {
-                add(&mut sum, by, &state.by_quantity[quantities.curvature(surface)]);
-            }
-            Effect::Length { packed } | Effect::Setting { packed } => {
-                return Some(self.by_packed(k, packed));
-            }
-            Effect::Index { medium } => {
-                add(&mut sum, 1.0, &state.by_quantity[quantities.index(medium)]);
-            }
-            Effect::Abbe { medium } => {
-                let column = &state.by_quantity[quantities.index(medium)];
-                let rays = self.roots.len();
-                for (row, by) in column.iter().enumerate() {
-                    // Ratio and exit slope are told at the first wavelength.
-                    let train = if row < rays * state.trains.len() { row / rays } else { 0 };
-                    sum[row] = -0.01 * self.dispersion(&state.trains[train], medium) * by;
-                }
-            }
-            _ => return None,
-        }
-        Some(sum)
-    }
-
-    /// n − n_d of a medium in a train: what is in inverse proportion to the Abbe number.
-    pub(crate) fn dispersion(&self, train: &Train, medium: usize) -> f64 {
-        self.at_d_line[medium].map_or(0.0, |at_d| train.indices()[medium] - at_d)
-    }
-
     /// The gaps of a state's trains at these values of the packed variables, mm.
     pub(crate) fn gaps(&self, k: usize, packed: &[f64]) -> Vec<f64> {
         let mut gaps = self.states[k].trains[0].gaps().to_vec();
@@ -358,7 +191,7 @@ impl<'a> Bench<'a> {
     }
 
     /// Where a number stands among the packed variables.
-    fn packed(&self, place: Place) -> Option<usize> {
+    pub(super) fn packed(&self, place: Place) -> Option<usize> {
         let (k, own) = match place {
             Place::Spacing { state, .. } => (state, true),
             _ => (0, false),
@@ -386,7 +219,7 @@ impl<'a> Bench<'a> {
         addresses
     }
 
-    fn packed_of(&self, k: usize, column: Column) -> Option<usize> {
+    pub(super) fn packed_of(&self, k: usize, column: Column) -> Option<usize> {
         match column {
             Column::Shared(number) => Some(number),
             Column::Own(number) => {
@@ -394,73 +227,6 @@ impl<'a> Bench<'a> {
                 Some(self.variables.shared().len() + before + number)
             }
         }
-    }
-
-    /// What an error does. `None` for the setting of a spacing that follows from the others.
-    fn effect(&self, item: &Item, sequence: &Sequence) -> Option<Effect> {
-        let surface_place = |id| sequence.place_of_surface(id);
-        match item.target {
-            Target::Surface(id) => {
-                let surface = surface_place(id)?;
-                Some(match item.kind {
-                    Kind::RadiusPercent => Effect::RadiusPercent { surface },
-                    Kind::RadiusFringes => {
-                        Effect::RadiusFringes { surface, by: self.curvature_a_fringe(id)? }
-                    }
-                    _ => Effect::Irregularity { surface },
-                })
-            }
-            Target::Glass { group, element, glass } => {
-                // The surface behind the glass; the medium before it has the same number.
-                let behind = surface_place(SurfaceId { group, element, surface: glass + 1 })?;
-                Some(match item.kind {
-                    Kind::ThicknessMm => {
-                        let place = Place::Thickness { group, element, glass };
-                        Effect::Length { packed: self.packed(place)? }
-                    }
-                    Kind::Index => Effect::Index { medium: behind },
-                    Kind::AbbePercent => Effect::Abbe { medium: behind },
-                    _ => Effect::Wedge { surface: behind },
-                })
-            }
-            Target::Air { group, after } => {
-                Some(Effect::Length { packed: self.packed(Place::Air { group, after })? })
-            }
-            Target::Element { group, element } => {
-                let before: usize =
-                    self.design.groups[..group].iter().map(|group| group.elements.len()).sum();
-                let element = before + element;
-                Some(match item.kind {
-                    Kind::ElementDecentreMm => Effect::ElementDecentre { element },
-                    _ => Effect::ElementTilt { element },
-                })
-            }
-            Target::Group(group) => Some(match item.kind {
-                Kind::GroupDecentreMm => Effect::GroupDecentre { group },
-                _ => Effect::GroupTilt { group },
-            }),
-            Target::Spacing { state, after } => {
-                Some(Effect::Setting { packed: self.packed(Place::Spacing { state, after })? })
-            }
-        }
-    }
-
-    /// Change of curvature that changes the sag at the clear semi-diameter a by one fringe, 1/mm:
-    /// ∂z/∂c = (a² + z²)/(2w).
-    fn curvature_a_fringe(&self, id: SurfaceId) -> Option<f64> {
-        let surface = &self.design.groups[id.group].elements[id.element].surfaces[id.surface];
-        let (a, c, k1) = (surface.semi_diameter, surface.curvature, 1.0 + surface.conic);
-        let w = (1.0 - k1 * c * c * a * a).sqrt();
-        let z = c * a * a / (1.0 + w);
-        let by = FRINGE_NM * 1e-6 * 2.0 * w / (a * a + k1 * z * z);
-        by.is_finite().then_some(by)
-    }
-}
-
-/// Adds `factor` times `row`.
-fn add(sum: &mut [f64], factor: f64, row: &[f64]) {
-    for (sum, value) in sum.iter_mut().zip(row) {
-        *sum += factor * value;
     }
 }
 
@@ -492,4 +258,11 @@ fn at_d_line(design: &Design) -> Vec<Option<f64>> {
         media.push(None);
     }
     media
+}
+
+/// Adds `factor` times `row`.
+pub(super) fn add(sum: &mut [f64], factor: f64, row: &[f64]) {
+    for (sum, value) in sum.iter_mut().zip(row) {
+        *sum += factor * value;
+    }
 }

@@ -6,7 +6,8 @@ use surface_model::pupil::{PupilFault, PupilWavefront};
 use surface_model::spoilt::SpoiltTrain;
 use surface_model::train::Train;
 
-use super::bench::{Bench, Effect};
+use super::bench::Bench;
+use super::effect::Effect;
 
 /// One error in the unit of its kind: a number alone (the second is unused), a vector across the
 /// axis, or a size and a direction in rad.

@@ -12,6 +12,7 @@ use surface_model::place::Place;
 
 use super::item::{Item, Target};
 use super::kind::{Grade, Kind, Spread};
+use super::shop::{self, About, ShopDocument};
 use crate::freedom;
 
 /// The part of a design file that says how well it can be built.
@@ -34,6 +35,9 @@ pub struct ToleranceDocument {
     /// Tolerances that differ from the grade's; a later entry goes before an earlier one.
     #[serde(default, skip_serializing_if = "Vec::is_empty")]
     pub own: Vec<OwnToleranceDocument>,
+    /// What drawings for the shop say besides; a later entry goes before an earlier one.
+    #[serde(default, skip_serializing_if = "Vec::is_empty")]
+    pub shop: Vec<ShopDocument>,
     /// What is re-adjusted in every state once the system is built: the word `spacings` or
     /// addresses of spacings. The free spacings if left out.
     #[serde(default, skip_serializing_if = "Option::is_none")]
@@ -132,6 +136,8 @@ pub struct Tolerances {
     pub spread: Spread,
     /// Own tolerances in the order of the file: what they are about, and the tolerance.
     pub(crate) own: Vec<(Kind, Target, f64)>,
+    /// What drawings say besides, in the order of the file, and what each entry is about.
+    pub(crate) shop: Vec<(HashSet<Address>, ShopDocument)>,
     /// Spacings that are re-adjusted, if the file says which.
     pub(crate) readjusted: Option<Vec<Place>>,
     /// Per group, travel of one whole turn of its mount, if it turns, mm.
@@ -161,6 +167,12 @@ pub(crate) fn resolve(
     for (i, own) in part.own.iter().enumerate() {
         let at = at.clone().key("own").index(i);
         tolerances.own.extend(resolver.own(&at, own, &items));
+    }
+    let everything = shop::everything(design);
+    for (i, entry) in part.shop.iter().enumerate() {
+        let at = at.clone().key("shop").index(i);
+        let targets = resolver.shop(&at, entry, &everything);
+        tolerances.shop.push((targets, entry.clone()));
     }
     tolerances.readjusted = part.readjusted.as_ref().map(|words| {
         let at = at.clone().key("readjusted");
@@ -194,6 +206,11 @@ pub(crate) fn spacings_of(
     }
 }
 
+/// An address and everything around it.
+fn around(at: &Address) -> impl Iterator<Item = Address> {
+    std::iter::successors(Some(at.clone()), Address::parent)
+}
+
 struct Resolver<'a> {
     design: &'a Design,
     file: &'a Value,
@@ -213,29 +230,66 @@ impl Resolver<'_> {
         }
     }
 
+    /// What an entry's address means.
+    fn targets(&mut self, entry: &Address, at: &str) -> Option<HashSet<Address>> {
+        let place = || PlaceInFile::Value(entry.clone().key("at"));
+        let address: Address = match at.parse() {
+            Ok(address) => address,
+            Err(error) => {
+                let error: surface_model::document::AddressSyntaxError = error;
+                self.complaints.push(error.complaint(place()));
+                return None;
+            }
+        };
+        match address.resolve(self.file) {
+            Ok(targets) => Some(targets.into_iter().collect()),
+            Err(error) => {
+                self.complaints.push(error.complaint(place()));
+                None
+            }
+        }
+    }
+
+    fn shop(
+        &mut self,
+        at: &Address,
+        entry: &ShopDocument,
+        everything: &[(About, Address, f64)],
+    ) -> HashSet<Address> {
+        for (steps, found, expected) in entry.out_of_range() {
+            let at = steps.iter().fold(at.clone(), |at, step| at.key(*step));
+            let name = steps.last().unwrap_or(&"");
+            self.complain(at, format!("\"{name}\" is {found}"), expected, None);
+        }
+        let Some(targets) = self.targets(at, &entry.at) else { return HashSet::new() };
+        let within: Vec<&(About, Address, f64)> = everything
+            .iter()
+            .filter(|(_, part, _)| around(part).any(|at| targets.contains(&at)))
+            .collect();
+        for (word, about) in entry.words() {
+            if !within.iter().any(|(part, ..)| *part == about) {
+                let told = format!("nothing at \"{}\" has \"{word}\"", entry.at);
+                let expected = "an address around something that has one";
+                self.complain(at.clone().key(word), told, expected.into(), None);
+            }
+        }
+        let clear = within.iter().map(|(.., clear_mm)| *clear_mm).fold(0.0, f64::max);
+        if let Some(outer) = entry.outer_diameter_mm.filter(|&outer| outer < clear) {
+            let at = at.clone().key("outer_diameter_mm");
+            let expected = format!("at least the clear diameter, {clear}");
+            let found = format!("\"outer_diameter_mm\" is {outer}");
+            self.complain(at, found, expected, None);
+        }
+        targets
+    }
+
     fn own(
         &mut self,
         at: &Address,
         own: &OwnToleranceDocument,
         items: &[Item],
     ) -> Vec<(Kind, Target, f64)> {
-        let place = || PlaceInFile::Value(at.clone().key("at"));
-        let address: Address = match own.at.parse() {
-            Ok(address) => address,
-            Err(error) => {
-                let error: surface_model::document::AddressSyntaxError = error;
-                self.complaints.push(error.complaint(place()));
-                return Vec::new();
-            }
-        };
-        let targets: HashSet<Address> = match address.resolve(self.file) {
-            Ok(targets) => targets.into_iter().collect(),
-            Err(error) => {
-                self.complaints.push(error.complaint(place()));
-                return Vec::new();
-            }
-        };
-        let around = |at: &Address| std::iter::successors(Some(at.clone()), Address::parent);
+        let Some(targets) = self.targets(at, &own.at) else { return Vec::new() };
         let mut found = Vec::new();
         for (kind, value) in own.values() {
             let at = at.clone().key(kind.word());

@@ -5,7 +5,7 @@ use surface_model::document::Address;
 use surface_model::sequence::SurfaceId;
 
 use super::document::Tolerances;
-use super::kind::Kind;
+use super::kind::{Grade, Kind};
 
 /// What a tolerance is about.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, Hash)]
@@ -41,9 +41,23 @@ impl Item {
 
     /// The tolerances a design has: those of its grade, its own, and of these what is not zero.
     pub(crate) fn all(design: &Design, tolerances: &Tolerances) -> Vec<Self> {
+        let mut items = Self::settled(design, tolerances, Some(tolerances.grade));
+        items.retain(|item| item.tolerance > 0.0 && item.matters(design));
+        items
+    }
+
+    /// Every tolerance that the file gives, by a grade that it names or of its own; those that it
+    /// does not give are zero.
+    pub(crate) fn given(design: &Design, tolerances: &Tolerances) -> Vec<Self> {
+        let grade = tolerances.graded.then_some(tolerances.grade);
+        Self::settled(design, tolerances, grade)
+    }
+
+    /// The tolerances of a grade, with the file's own in their place.
+    fn settled(design: &Design, tolerances: &Tolerances, grade: Option<Grade>) -> Vec<Self> {
         let mut items = Self::possible(design);
         for item in &mut items {
-            item.tolerance = tolerances.grade.tolerance(item.kind).unwrap_or(0.0);
+            item.tolerance = grade.and_then(|grade| grade.tolerance(item.kind)).unwrap_or(0.0);
         }
         for &(kind, target, tolerance) in &tolerances.own {
             for item in items.iter_mut().filter(|item| item.target == target) {
@@ -54,7 +68,6 @@ impl Item {
                 }
             }
         }
-        items.retain(|item| item.tolerance > 0.0 && item.matters(design));
         items
     }
 

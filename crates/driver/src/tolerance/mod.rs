@@ -20,12 +20,17 @@ mod bench;
 mod built;
 mod document;
 mod draw;
+mod drawing;
+mod effect;
+mod housing_end;
 mod item;
 mod kind;
 mod monte_carlo;
+mod nominal;
 mod readjust;
 mod requirement;
 mod sensitivity;
+mod shop;
 mod system;
 
 use merit_function::variables::VariablesError;
@@ -47,12 +52,16 @@ pub use document::{
     OwnToleranceDocument, RequirementDocument, RotatingDocument, ToleranceDocument, Tolerances,
     TolerancesDocument,
 };
+pub use drawing::{ElementDrawing, GlassDrawing, SurfaceDrawing};
 pub use kind::{Grade, Kind, Spread};
 pub use monte_carlo::{
-    Distribution, MonteCarlo, QuantityDistribution, StateDistribution, Unwatched, Watcher,
+    Distribution, MissCount, MonteCarlo, QuantityDistribution, StateDistribution, Unwatched,
+    Watcher,
 };
 pub use requirement::{Quantity, Requirement};
 pub use sensitivity::{By, Sensitivity, StateSensitivity};
+pub use shop::{ChamferDocument, ImperfectionsDocument, ScratchesDocument, ShopDocument};
+pub use system::Miss;
 
 /// The most systems that are built: what is kept of each is a few hundred bytes a state.
 pub const MOST_SYSTEMS: u64 = 100_000;

@@ -11,7 +11,7 @@ use super::draw::draw;
 use super::readjust::Levers;
 use super::requirement::Quantity;
 use super::sensitivity::Sensitivity;
-use super::system::{StateOutcome, SystemOutcome};
+use super::system::{Miss, StateOutcome, SystemOutcome};
 
 /// Systems that are built between two looks at the clock.
 const BATCH: u64 = 256;
@@ -78,6 +78,8 @@ pub struct MonteCarlo {
     pub yield_percent: f64,
     /// The yield's 95 % confidence interval (E. B. Wilson, J. Am. Stat. Assoc. 22, 209 (1927)).
     pub yield_between_percent: [f64; 2],
+    /// What the others fall short in, and how many of them; most first.
+    pub missed: Vec<MissCount>,
     /// Systems in which a ray does not get through.
     pub failed: u64,
     /// Why, for the first of them.
@@ -95,6 +97,18 @@ pub struct MonteCarlo {
     /// What is allowed of the wander, µrad.
     #[serde(skip_serializing_if = "Option::is_none")]
     pub boresight_wander_within_urad: Option<f64>,
+    /// Systems within it, per cent.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub boresight_wander_within_percent: Option<f64>,
+}
+
+/// How many systems fall short in something.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, Serialize)]
+pub struct MissCount {
+    /// In what.
+    pub what: Miss,
+    /// How many.
+    pub systems: u64,
 }
 
 /// How the systems are spread in one state.
@@ -184,14 +198,21 @@ pub(crate) fn account(
     let wander = |boresight: fn(&StateOutcome) -> [f64; 2]| {
         Distribution::of(outcomes.iter().map(|outcome| outcome.wander_urad(boresight)).collect())
     };
+    let missed = |what: Miss| count(&|outcome| bench.misses(outcome, what));
+    let mut all_missed: Vec<MissCount> =
+        Miss::ALL.into_iter().map(|what| MissCount { what, systems: missed(what) }).collect();
+    all_missed.retain(|miss| miss.systems > 0);
+    all_missed.sort_by_key(|miss| std::cmp::Reverse(miss.systems));
+    let percent = |part: u64| 100.0 * part as f64 / systems.max(1) as f64;
     MonteCarlo {
         systems_wanted,
         systems,
         seed,
         passed,
-        yield_percent: 100.0 * passed as f64 / systems.max(1) as f64,
+        yield_percent: percent(passed),
         yield_between_percent: wilson(passed, systems).map(|part| 100.0 * part),
-        failed: count(&|outcome| outcome.states.iter().any(Result::is_err)),
+        missed: all_missed,
+        failed: missed(Miss::Rays),
         first_fault: outcomes.iter().find_map(fault_of),
         readjustment_at_bound: count(&|outcome| {
             outcome.states.iter().flatten().any(|state| state.readjusted.at_bound)
@@ -204,6 +225,9 @@ pub(crate) fn account(
             .any_rotating
             .then(|| wander(|outcome| outcome.sliding_urad)),
         boresight_wander_within_urad: bench.wander_within_urad,
+        boresight_wander_within_percent: bench
+            .wander_within_urad
+            .map(|_| 100.0 - percent(missed(Miss::Wander))),
     }
 }
 

@@ -10,11 +10,13 @@ use serde::Serialize;
 use surface_model::document::Address;
 
 use super::ToleranceError;
-use super::bench::{Bench, Effect};
+use super::bench::Bench;
 use super::built::{Gauges, Mounts};
+use super::effect::Effect;
 use super::kind::{Form, Kind, Spread};
 use super::readjust::Levers;
 use super::requirement::Quantity;
+use super::system::{between, pairs, widest};
 
 /// How a sensitivity was found.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, Serialize)]
@@ -50,8 +52,13 @@ pub struct Sensitivity {
     pub by: By,
     /// Part of all expected misses, squared and added up over what is required, per cent.
     pub share_percent: f64,
+    /// Largest change of the beam's direction between any two states, µrad.
+    pub wander_urad: f64,
     /// One entry a state.
     pub states: Vec<StateSensitivity>,
+    /// Where the beam points, per state, µrad.
+    #[serde(skip)]
+    directions: Vec<[f64; 2]>,
 }
 
 /// What one tolerance does to one state once the spacings have followed it.
@@ -93,7 +100,8 @@ pub(crate) fn sensitivities(
         })
         .collect();
     let mut found = found?;
-    let misses: Vec<f64> = found.iter().map(|s| s.expected_misses(bench).iter().sum()).collect();
+    let misses = expected_misses(bench, &found).into_iter().map(|misses| misses.iter().sum());
+    let misses: Vec<f64> = misses.collect();
     let all: f64 = misses.iter().sum();
     for (sensitivity, misses) in found.iter_mut().zip(misses) {
         sensitivity.share_percent = if all > 0.0 { 100.0 * misses / all } else { 0.0 };
@@ -111,9 +119,10 @@ fn sensitivity(
     let item = bench.items[number];
     let tolerance = item.item.tolerance;
     let mut states = Vec::with_capacity(bench.states.len());
+    let mut directions = Vec::with_capacity(bench.states.len());
     for (k, state) in bench.states.iter().enumerate() {
-        let (change, boresight_urad) = match bench.by_error(k, item.effect) {
-            Some(by) => (by.iter().map(|by| tolerance * by).collect(), 0.0),
+        let (change, direction) = match bench.by_error(k, item.effect) {
+            Some(by) => (by.iter().map(|by| tolerance * by).collect(), [0.0; 2]),
             None => traced(bench, number, k, gauges).map_err(|fault| ToleranceError::Spoilt {
                 at: item.item.at().to_string(),
                 kind: item.item.kind.word(),
@@ -133,13 +142,15 @@ fn sensitivity(
             wavefront_rms_waves: squares.fold(0.0, f64::max).sqrt(),
             ratio_percent: first_order[0],
             exit_slope_urad: first_order[1],
-            boresight_urad,
+            boresight_urad: direction[0].hypot(direction[1]),
             readjustment_mm,
         });
+        directions.push(direction);
     }
     let by = if item.item.kind.form() == Form::Round { By::Derivative } else { By::Trace };
     let (kind, at) = (item.item.kind, item.item.at());
-    Ok(Sensitivity { kind, at, tolerance, by, share_percent: 0.0, states })
+    let wander_urad = widest(&directions).map_or(0.0, |(size, _)| size);
+    Ok(Sensitivity { kind, at, tolerance, by, share_percent: 0.0, wander_urad, states, directions })
 }
 
 /// The change of what is measured when one error alone is at its full tolerance, and where the
@@ -149,7 +160,7 @@ fn traced(
     number: usize,
     k: usize,
     gauges: &mut Gauges,
-) -> Result<(Vec<f64>, f64), super::built::StateFault> {
+) -> Result<(Vec<f64>, [f64; 2]), super::built::StateFault> {
     let mut errors = vec![[0.0; 2]; bench.items.len()];
     let item = bench.items[number].item;
     errors[number] = match item.kind.form() {
@@ -161,7 +172,7 @@ fn traced(
     let numbers = bench.measure(k, &state, gauges)?;
     let nominal = &bench.states[k].nominal;
     let change = gauges.row.iter().zip(nominal).map(|(now, before)| now - before).collect();
-    Ok((change, numbers.off_axis_urad()))
+    Ok((change, numbers.boresight_urad))
 }
 
 impl Sensitivity {
@@ -174,7 +185,7 @@ impl Sensitivity {
     }
 
     /// Per state and quantity, the mean square it adds, in units of what is allowed.
-    pub(crate) fn expected_misses(&self, bench: &Bench<'_>) -> Vec<f64> {
+    fn misses_in_states(&self, bench: &Bench<'_>) -> Vec<f64> {
         let mean_square = self.mean_square(bench.spread);
         let states = self.states.iter().zip(&bench.states);
         states
@@ -188,6 +199,28 @@ impl Sensitivity {
             })
             .collect()
     }
+
+    /// Mean square of what it turns the beam by between two states, µrad².
+    fn wander_square(&self, spread: Spread, (one, other): (usize, usize)) -> f64 {
+        self.mean_square(spread) * between(self.directions[one], self.directions[other]).powi(2)
+    }
+}
+
+/// Per tolerance, what it adds to everything that is required, mean squares in units of what is
+/// allowed: per state and quantity, and last, where the wander through the zoom is limited, that
+/// between the two states where all tolerances together make it widest.
+pub(crate) fn expected_misses(bench: &Bench<'_>, all: &[Sensitivity]) -> Vec<Vec<f64>> {
+    let mut misses: Vec<Vec<f64>> = all.iter().map(|one| one.misses_in_states(bench)).collect();
+    let Some(within) = bench.wander_within_urad else { return misses };
+    let sum = |&pair: &(usize, usize)| -> f64 {
+        all.iter().map(|one| one.wander_square(bench.spread, pair)).sum()
+    };
+    if let Some(pair) = pairs(bench.states.len()).max_by(|a, b| sum(a).total_cmp(&sum(b))) {
+        for (misses, one) in misses.iter_mut().zip(all) {
+            misses.push(one.wander_square(bench.spread, pair) / (within * within));
+        }
+    }
+    misses
 }
 
 impl StateSensitivity {

@@ -1,5 +1,7 @@
 //! One built system: re-adjusted in every state, then set as well as it can be set.
 
+use serde::Serialize;
+
 use super::bench::Bench;
 use super::built::{Error, Gauges, Mounts, StateFault, StateNumbers};
 use super::readjust::{Levers, Readjusted};
@@ -54,19 +56,59 @@ impl Bench<'_> {
 
     /// Whether a system does what is required of it.
     pub(crate) fn passes(&self, system: &SystemOutcome) -> bool {
-        let every_state = self.states.iter().zip(&system.states).all(|(state, outcome)| {
-            outcome.as_ref().is_ok_and(|outcome| {
-                Quantity::ALL.iter().all(|&quantity| {
-                    let within = state.requirement.within(quantity);
-                    within.is_none_or(|within| outcome.numbers.size(quantity) <= within)
-                })
-            })
-        });
-        let steady = self.wander_within_urad.is_none_or(|within| {
-            system.wander_urad(|outcome| outcome.numbers.boresight_urad) <= within
-        });
-        every_state && steady
+        Miss::ALL.iter().all(|&miss| !self.misses(system, miss))
     }
+
+    /// Whether a system falls short in this.
+    pub(crate) fn misses(&self, system: &SystemOutcome, miss: Miss) -> bool {
+        let quantity = match miss {
+            Miss::Rays => return system.states.iter().any(Result::is_err),
+            Miss::Wander => {
+                return self.wander_within_urad.is_some_and(|within| {
+                    system.wander_urad(|outcome| outcome.numbers.boresight_urad) > within
+                });
+            }
+            Miss::WavefrontRmsWaves => Quantity::WavefrontRmsWaves,
+            Miss::RatioPercent => Quantity::RatioPercent,
+            Miss::ExitSlopeUrad => Quantity::ExitSlopeUrad,
+            Miss::BoresightUrad => Quantity::BoresightUrad,
+        };
+        self.states.iter().zip(&system.states).any(|(state, outcome)| {
+            let within = state.requirement.within(quantity);
+            let size = outcome.as_ref().map_or(f64::INFINITY, |o| o.numbers.size(quantity));
+            within.is_some_and(|within| size > within)
+        })
+    }
+}
+
+/// What a built system may fall short in.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, Serialize)]
+#[serde(rename_all = "snake_case")]
+pub enum Miss {
+    /// A ray does not get through.
+    Rays,
+    /// The wavefront of a state.
+    WavefrontRmsWaves,
+    /// The ratio of a state.
+    RatioPercent,
+    /// The exit slope of a state.
+    ExitSlopeUrad,
+    /// The direction of the beam in a state.
+    BoresightUrad,
+    /// The change of direction through the zoom.
+    Wander,
+}
+
+impl Miss {
+    /// All of them.
+    pub(crate) const ALL: [Self; 6] = [
+        Self::Rays,
+        Self::WavefrontRmsWaves,
+        Self::RatioPercent,
+        Self::ExitSlopeUrad,
+        Self::BoresightUrad,
+        Self::Wander,
+    ];
 }
 
 impl SystemOutcome {
@@ -77,13 +119,7 @@ impl SystemOutcome {
             let Ok(outcome) = state else { return f64::INFINITY };
             directions.push(boresight(outcome));
         }
-        let mut widest = 0.0_f64;
-        for (i, a) in directions.iter().enumerate() {
-            for b in &directions[..i] {
-                widest = widest.max((a[0] - b[0]).hypot(a[1] - b[1]));
-            }
-        }
-        widest
+        widest(&directions).map_or(0.0, |(size, _)| size)
     }
 }
 
@@ -97,4 +133,21 @@ impl StateNumbers {
             Quantity::BoresightUrad => self.off_axis_urad(),
         }
     }
+}
+
+/// Every two of so many states.
+pub(crate) fn pairs(states: usize) -> impl Iterator<Item = (usize, usize)> {
+    (0..states).flat_map(|other| (0..other).map(move |one| (one, other)))
+}
+
+/// Angle between two directions, as small angles go.
+pub(crate) fn between(one: [f64; 2], other: [f64; 2]) -> f64 {
+    (one[0] - other[0]).hypot(one[1] - other[1])
+}
+
+/// The two directions furthest apart, and how far; `None` of fewer than two.
+pub(crate) fn widest(directions: &[[f64; 2]]) -> Option<(f64, (usize, usize))> {
+    pairs(directions.len())
+        .map(|(one, other)| (between(directions[one], directions[other]), (one, other)))
+        .max_by(|a, b| a.0.total_cmp(&b.0))
 }

@@ -67,12 +67,41 @@ fn of_pulse_length(name: &str, threshold: &ThresholdDocument, laser: &Laser) -> 
     })
 }
 
-/// In each state the place that is hit hardest beyond its threshold.
+/// In each state the place that is hit hardest beyond its threshold, and over all states the ghost
+/// that comes to a focus deepest in glass.
 pub(super) fn warnings(design: &Design, states: &[StateHazards]) -> Vec<String> {
-    states.iter().filter_map(|state| warning(design, state)).collect()
+    let hardest = states.iter().filter_map(|state| beyond_threshold(design, state));
+    hardest.chain(ghost_in_glass(design, states)).collect()
 }
 
-fn warning(design: &Design, state: &StateHazards) -> Option<String> {
+fn ghost_in_glass(design: &Design, states: &[StateHazards]) -> Option<String> {
+    let deep = |state: &StateHazards| {
+        state.ghosts.iter().any(|g| g.clearance_mm.is_some_and(|mm| mm < 0.0))
+    };
+    let how_many = states.iter().filter(|state| deep(state)).count();
+    let ghosts = states.iter().flat_map(|state| state.ghosts.iter().map(move |g| (state, g)));
+    let in_glass = ghosts.filter_map(|(state, ghost)| {
+        Some((state, ghost, ghost.clearance_mm.filter(|&clearance| clearance < 0.0)?))
+    });
+    let (state, ghost, clearance) = in_glass.min_by(|a, b| a.2.total_cmp(&b.2))?;
+    let at: Vec<String> =
+        ghost.reflected_at.iter().map(|at| with_names(design, at).to_string()).collect();
+    let (limit, share) = match ghost.reflected_at.len() {
+        1 => ("ghost_clearance_mm", 100.0 * ghost.share),
+        _ => ("double_ghost_clearance_mm", 100.0 * ghost.share),
+    };
+    Some(format!(
+        "light that surfaces reflect comes to a focus inside glass in {how_many} of {} states: \
+         deepest in {}, reflected at {}, {:.2} mm from the nearest surface, with at most {share:.2} % \
+         of the power; set {limit} as a limit and optimise",
+        states.len(),
+        state.state,
+        at.join(" and "),
+        -clearance,
+    ))
+}
+
+fn beyond_threshold(design: &Design, state: &StateHazards) -> Option<String> {
     let surfaces = state.surfaces.iter().map(|hit| ("the beam at", &hit.at, &hit.exposure));
     let foci = state
         .internal_foci

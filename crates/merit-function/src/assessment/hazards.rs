@@ -1,5 +1,7 @@
 //! What the beam may damage: peak irradiance and fluence at every surface and internal focus, and
-//! ghosts, in every state at its first wavelength, against the thresholds of the design.
+//! ghosts, in every state at its first wavelength, against the thresholds of the design. All power
+//! and pulse energy is taken to be there: a file does not say how they divide over several
+//! wavelengths.
 //!
 //! Terms are those of ISO 21254-1: energy density (fluence, J/cm²) of a pulse, power density
 //! (irradiance, W/cm²) of the mean power, both the peak values of a Gaussian cross-section.

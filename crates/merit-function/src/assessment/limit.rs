@@ -7,6 +7,7 @@ use surface_model::document::Address;
 use super::finite;
 use crate::limit_item::{LimitItem, StateView};
 use crate::limits::LimitKind;
+use crate::movement::Way;
 
 /// One limited quantity.
 #[derive(Debug, Clone, PartialEq, Serialize)]
@@ -18,6 +19,9 @@ pub struct LimitAssessment {
     /// Name of the state, where the value is one state's.
     #[serde(skip_serializing_if = "Option::is_none")]
     pub state: Option<String>,
+    /// The ratio at which the value is met, where the limit holds along the whole movement curve.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub at_ratio: Option<f64>,
     /// The value; `None` where it cannot be measured, or is infinite (the radius of a flat).
     pub value: Option<f64>,
     /// Smallest value allowed.
@@ -36,8 +40,11 @@ pub(super) fn judge(
     item: &LimitItem,
     design: &Design,
     views: &[StateView],
+    way: Option<&Way>,
 ) -> (LimitAssessment, f64) {
-    let value = if views.is_empty() { None } else { item.value(design, views) };
+    let on_the_way = way.and_then(|way| item.worst_on_the_way(design, views, way));
+    let in_the_states = || if views.is_empty() { None } else { item.value(design, views) };
+    let value = on_the_way.map(|(value, _)| value).or_else(in_the_states);
     let crossed_by = value.map(|value| item.range.crossed_by(value));
     let tolerance = item.kind.tolerance();
     let at_names_state = item.at.steps().first() == Some(&"states");
@@ -47,6 +54,7 @@ pub(super) fn judge(
         limit: item.kind,
         at: item.at.clone(),
         state,
+        at_ratio: on_the_way.map(|(_, ratio)| ratio),
         value: value.and_then(finite),
         min: finite(item.range.min),
         max: finite(item.range.max),

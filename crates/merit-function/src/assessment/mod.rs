@@ -17,6 +17,7 @@ use serde::Serialize;
 use surface_model::design::Design;
 
 use crate::limit_item::{LimitItem, StateView};
+use crate::movement::Way;
 use crate::wishes::Wishes;
 
 pub use element::{ElementAssessment, GroupAssessment};
@@ -115,8 +116,10 @@ pub fn assess(design: &Design, wishes: &Wishes) -> Assessment {
         placed.map(|(state, positions)| state::view(design, state, positions)).collect();
     let views = views.unwrap_or_default();
     let items = LimitItem::all(design, &wishes.limits);
+    let about_the_way = items.iter().any(LimitItem::is_of_the_way);
+    let way = if about_the_way { Way::solved(design) } else { None };
     let judged: Vec<(LimitAssessment, f64)> =
-        items.iter().map(|item| limit::judge(item, design, &views)).collect();
+        items.iter().map(|item| limit::judge(item, design, &views, way.as_ref())).collect();
     let limits_merit: f64 = judged.iter().map(|(_, merit)| merit).sum();
     let limits: Vec<LimitAssessment> = judged.into_iter().map(|(limit, _)| limit).collect();
     let at_temperatures: Vec<TemperatureAssessment> = wishes

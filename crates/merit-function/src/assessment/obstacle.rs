@@ -17,7 +17,8 @@ pub enum Obstacle {
 }
 
 /// The first obstacle to a design, if there is any: the outermost ray of every state at its first
-/// wavelength, then the limits in the order of the file, the housing last.
+/// wavelength, then the limits in the order of the file, the housing last. What is about the way
+/// between the states is not looked at.
 #[must_use]
 pub fn obstacle(design: &Design, limits: &Limits) -> Option<Obstacle> {
     let placed = design.states.iter().zip(design.all_positions_mm());
@@ -30,6 +31,6 @@ pub fn obstacle(design: &Design, limits: &Limits) -> Option<Obstacle> {
         let by = item.value(design, &views).map(|value| item.range.crossed_by(value));
         !by.is_some_and(|by| by <= item.kind.tolerance())
     };
-    let first = LimitItem::all(design, limits).into_iter().find(crossed);
+    let first = LimitItem::all(design, &limits.in_the_states()).into_iter().find(crossed);
     first.map(|item| Obstacle::Limit(item.kind))
 }

@@ -5,6 +5,7 @@ use merit_function::assessment::Assessment;
 
 use super::{Subject, figure, name_of, parts};
 use crate::picture::layout;
+use crate::text::number::NONE;
 use crate::text::{fixed, significant, significant_or_dash};
 
 /// A table with a column a design, their layouts, and a sentence at the end.
@@ -14,7 +15,7 @@ pub(super) fn compare(subjects: &[Subject<'_>]) -> Markup {
     let heads: Vec<&str> = heads.iter().map(String::as_str).collect();
     html! {
         h2 { "Side by side" }
-        (parts::table_of(&heads, &rows(subjects)))
+        (parts::table_of(&heads, &rows(subjects).into_iter().map(dashed).collect::<Vec<_>>()))
         p { strong { (sentence(subjects)) } }
         div.pair {
             @for subject in subjects {
@@ -83,6 +84,11 @@ fn rows(subjects: &[Subject<'_>]) -> Vec<Vec<String>> {
             significant_or_dash(masses, 3)
         }),
     ]
+}
+
+/// A number that has no meaning is a dash, as everywhere on the page.
+fn dashed(row: Vec<String>) -> Vec<String> {
+    row.into_iter().map(|cell| if cell == NONE { "–".to_owned() } else { cell }).collect()
 }
 
 /// The best held against the others.

@@ -4,15 +4,16 @@
 //! is to move the slider of the layout (`stage.rs`). Numbers are those of the assessment and of the
 //! movement curve, rounded for people; the full ones stand in `data-value`.
 //!
-//! To add a section (beam, hazards, tolerances, temperature, …) hand it over in
-//! [`Subject::sections`]: a title and a body, made by `maud::html!`, by
-//! [`table_of`] from heads and rows, or by [`preformatted`] from a text for the terminal. It stands
-//! between the glasses and how the design was found.
+//! To add a section hand it over in [`Subject::sections`]: a title and a body, made by
+//! `maud::html!`, by [`table_of`] from heads and rows, or by [`preformatted`] from a text for the
+//! terminal. It stands between the glasses and how the design was found; beam, hazards,
+//! [`tolerance_section`] and [`temperature_section`] are examples.
 
 mod compare;
 mod parts;
 mod requirement;
 mod stage;
+mod workshop;
 
 use driver::cam::MovementCurve;
 use driver::design_file::DesignFile;
@@ -21,6 +22,7 @@ use merit_function::assessment::Assessment;
 
 pub use parts::{preformatted, table_of};
 pub(crate) use parts::{radius, shape};
+pub use workshop::{silent_section, temperature_section, tolerance_section};
 
 use crate::picture::{Panel, layout, merit_curve, movement, wavefronts};
 
@@ -46,7 +48,9 @@ pub struct Subject<'a> {
 pub struct Found {
     /// Settings and their values: method, seed, version, ….
     pub settings: Vec<(String, String)>,
-    /// Named lists of iteration and merit.
+    /// What is counted while the merit falls: iterations, starts.
+    pub counted: &'static str,
+    /// Named lists of that count and the merit.
     pub runs: Vec<(String, Vec<(u64, f64)>)>,
 }
 
@@ -162,16 +166,16 @@ fn movement_part(subject: &Subject<'_>) -> Markup {
 }
 
 fn found(subject: &Subject<'_>) -> Markup {
-    let Found { settings, runs } = &subject.found;
+    let Found { settings, counted, runs } = &subject.found;
     html! {
         @if settings.is_empty() {
             p { "The design file does not say." }
         } @else {
-            table { @for (name, value) in settings {
+            table.facts { @for (name, value) in settings {
                 tr { td.word { (name) } td.word { (value) } }
             } }
         }
-        @if !runs.is_empty() { (figure(merit_curve(runs, WIDTH), "Merit against iteration")) }
+        @if !runs.is_empty() { (figure(merit_curve(counted, runs, WIDTH), "How the merit fell")) }
     }
 }
 

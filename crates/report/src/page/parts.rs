@@ -6,7 +6,11 @@ use maud::{Markup, html};
 use merit_function::assessment::{Assessment, LimitAssessment};
 use surface_model::surface::{Surface, asphere_power};
 
+use crate::text::cam::{held, off_word};
 use crate::text::limits::{allowed, chosen, margin, place};
+use crate::text::number::NONE;
+use crate::text::states::of_the_beam;
+use crate::text::table::{BLANK, Column, Table};
 use crate::text::{Scope, as_written, fixed, fixed_or_dash, significant, verdict};
 
 /// A number with so many significant digits and a true minus.
@@ -40,6 +44,46 @@ pub fn table_of(heads: &[&str], rows: &[Vec<String>]) -> Markup {
                 tr { @for (k, told) in row.iter().enumerate() { td class=[class(k)] { (told) } } }
             }
         } }
+    }
+}
+
+/// A table of the terminal as a part of the page: heads in one line, a sign for what is missed.
+pub(super) fn laid_out(table: &Table) -> Markup {
+    let word = |column: Column| matches!(column, Column::Left).then_some("word");
+    let columns: Vec<(Column, String)> =
+        table.columns().map(|(column, head)| (column, one_line(head))).collect();
+    html! {
+        div.scroll { table {
+            tr { @for (column, head) in &columns { th class=[word(*column)] { (head) } } }
+            @for row in table.rows() {
+                tr { @for ((column, _), told) in columns.iter().zip(row) {
+                    @let told = told.trim_end_matches(BLANK);
+                    @match (told.strip_suffix('!'), column) {
+                        (_, Column::Left) => { td.word { (told) } }
+                        (Some(told), _) => { td.missed { (true_minus(told)) } }
+                        (None, _) => { td { (true_minus(told)) } }
+                    }
+                } }
+            }
+        } }
+    }
+}
+
+/// The lines of a head as one; a word broken by a hyphen is put together.
+fn one_line(head: &str) -> String {
+    let lines = head.lines().map(str::trim).filter(|line| !line.is_empty());
+    lines.fold(String::new(), |told, line| match told.strip_suffix('-') {
+        Some(begun) if line.starts_with(char::is_lowercase) => format!("{begun}{line}"),
+        _ if told.is_empty() => line.to_owned(),
+        _ => format!("{told} {line}"),
+    })
+}
+
+/// Numbers with a true minus; a lone dash says that there is none.
+fn true_minus(told: &str) -> String {
+    match told {
+        NONE => "–".to_owned(),
+        told => told.replace('-', "\u{2212}"),
     }
 }
 
@@ -82,6 +126,7 @@ pub(super) fn states(file: &DesignFile, assessment: &Assessment) -> Markup {
                 }
             }
         } }
+        @if let Some(table) = of_the_beam(file, assessment) { (laid_out(&table)) }
         @for state in assessment.states.iter() {
             @if let Some(fault) = &state.fault { p { (state.name) ": " (fault) } }
         }
@@ -272,7 +317,7 @@ pub(super) fn movement(curve: &MovementCurve) -> Markup {
                     th { "barrel °" }
                     @for &g in &moving { th { (curve.groups[g].name) " groove °" } }
                 }
-                th { "collimation µrad" }
+                th { (off_word(curve)) " µrad" }
             }
             @for point in &curve.points {
                 tr {
@@ -289,10 +334,11 @@ pub(super) fn movement(curve: &MovementCurve) -> Markup {
             }
         } }
         p.faint {
-            "Positions are of first vertices from the front datum; slopes are d position/d ratio. "
+            "Held at " (as_written(curve.wavelength_nm)) " nm: " (held(curve)) ". Positions are of \
+             first vertices from the front datum; slopes are d position/d ratio. "
             @for group in curve.groups.iter().filter(|group| group.part == Part::Guided) {
                 (group.name) " follows a monotone cubic through the designed states; the others hold \
-                 ratio and collimation. "
+                 what is held. "
             }
         }
     }
@@ -308,7 +354,8 @@ pub(super) fn definitions() -> Markup {
              rays to the plane through the last vertex less that of the axial ray, weighted by \
              exp(−2r²/w²); RMS is without piston and with defocus, PV over the same heights. The \
              collimation of the movement curve is the slope that the beam-weighted best sphere of the \
-             exact exit wavefront gives the ray at the 1/e² radius. Indices are relative to air at 20 °C \
+             exact exit wavefront gives the ray at the 1/e² radius; where a focus is wanted, the slopes of \
+             the movement curve are told less the one that leads there. Indices are relative to air at 20 °C \
              and 1 atm, wavelengths are in air."
         }
     }

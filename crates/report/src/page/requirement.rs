@@ -51,6 +51,9 @@ fn rows(file: &DesignFile, assessment: &Assessment) -> Vec<Row> {
         ("RMS wavefront", "RMS wavefront error, waves"),
         ("ratio error", "error of the ratio, %"),
         ("exit slope", "exit slope at the 1/e² radius, µrad"),
+        ("divergence", "divergence of the real beam, mrad"),
+        ("error of the diameter", "error of the diameter at its distance, mm"),
+        ("error of the focus", "error of the focus, m"),
     ];
     let row = |(begins, what): (&str, &'static str)| {
         let of_kind = marks.iter().filter(|mark| mark.what.starts_with(begins));
@@ -60,8 +63,14 @@ fn rows(file: &DesignFile, assessment: &Assessment) -> Vec<Row> {
             within: as_written(worst.within),
             worst: worst.value,
             missed: worst.size() > 1.0,
-            place: worst.what.split_once(" of ").map_or_else(String::new, |(_, at)| at.to_owned()),
+            place: where_of(&worst.what, begins),
         })
     };
     kinds.into_iter().filter_map(row).collect()
+}
+
+/// What follows the kind of goal in its name: the state, and perhaps the wavelength.
+fn where_of(what: &str, kind: &str) -> String {
+    let rest = what.strip_prefix(kind).unwrap_or(what);
+    rest.split_once(" of ").map_or_else(String::new, |(_, at)| at.to_owned())
 }

@@ -2,13 +2,14 @@
 //!
 //! A drawing inside a page is not HTML: its elements are closed, empty or not. Frames are worked out here, at the ratios the curve was looked at; the script only shows them.
 
-use driver::cam::CurvePoint;
+use driver::cam::{CurvePoint, MovementCurve};
 use maud::{Markup, PreEscaped, html};
 use serde::Serialize;
 use surface_model::design::{Design, ZoomState};
 
 use super::{Subject, WIDTH};
 use crate::picture::train::{heights, outlines, rays};
+use crate::text::cam::off_word;
 use crate::text::{fixed, fixed_or_dash, significant_or_dash};
 
 /// Most frames.
@@ -43,7 +44,7 @@ pub(super) fn stage(subject: &Subject<'_>, number: usize) -> Markup {
     let frames: Vec<Frame> = points.iter().map(|point| view.frame(first, point)).collect();
     let json = serde_json::to_string(&frames).unwrap_or_else(|_| "[]".into());
     let states = points.iter().enumerate().filter_map(|(k, p)| Some((k, p.state.as_ref()?)));
-    let names = reading_names(first);
+    let names = reading_names(curve, first);
     html! {
         div.stage id=(format!("stage-{number}")) {
             div.controls hidden {
@@ -63,8 +64,9 @@ pub(super) fn stage(subject: &Subject<'_>, number: usize) -> Markup {
     }
 }
 
-fn reading_names(point: &CurvePoint) -> Vec<String> {
-    let mut names = ["ratio", "collimation µrad", "paraxial µrad"].map(str::to_owned).to_vec();
+fn reading_names(curve: &MovementCurve, point: &CurvePoint) -> Vec<String> {
+    let off = format!("{} µrad", off_word(curve));
+    let mut names = vec!["ratio".to_owned(), off, "paraxial µrad".to_owned()];
     let wavefronts = point.wavefront.iter();
     names.extend(wavefronts.map(|at| format!("RMS waves at {} nm", at.wavelength_nm)));
     names.extend(point.groups.iter().map(|group| format!("{} at mm", group.name)));
@@ -75,7 +77,7 @@ fn readings(point: &CurvePoint) -> Vec<String> {
     let mut readings = vec![
         fixed(point.ratio, 4),
         fixed(point.collimation_urad, 2),
-        fixed_or_dash(point.exit_slope_urad, 2),
+        fixed_or_dash(point.paraxial_off_urad, 2),
     ];
     let wavefronts = point.wavefront.iter();
     readings.extend(wavefronts.map(|at| significant_or_dash(at.rms_waves, 3)));

@@ -3,6 +3,7 @@
 use super::axis::{Axis, Scale};
 use super::ink::{FAINT, HAIR, Stroke, WORDS};
 use super::panel::{Anchor, Panel, Word, width_of};
+use crate::text::significant;
 
 /// One bar.
 #[derive(Debug, Clone, PartialEq)]
@@ -46,7 +47,7 @@ pub fn bars(title: &str, axis: &Axis, bars: &[Bar], most: usize, width: f64) -> 
         let style = Stroke::series(usize::from(bar.value < 0.0));
         panel.block([zero.min(end), y + 3.0], [(end - zero).abs(), ROW - 7.0], style.colour, 0.85);
         panel.word([left - 8.0, y + 12.0], &bar.name, Word::PLAIN.at(Anchor::End));
-        let told = format!("{:.3}", bar.value).replace('-', "\u{2212}");
+        let told = significant(bar.value, 3).replace('-', "\u{2212}");
         panel.word([zero.max(end) + 5.0, y + 12.0], &told, Word::SMALL);
     }
     panel.line([zero, top - 4.0], [zero, bottom], Stroke::solid(FAINT, 1.0));

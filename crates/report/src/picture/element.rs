@@ -40,7 +40,7 @@ pub fn element_drawing(element: &Element, width: f64) -> Panel {
     for y in ends {
         panel.line([side - 4.0, y], [left - 6.0, y], thin);
     }
-    let told = format!("Ø {}", element.diameter_mm);
+    let told = format!("clear Ø {}", element.diameter_mm);
     panel.word([side - 7.0, middle + 4.0], &told, Word::PLAIN.at(Anchor::End));
     // The centre thicknesses, below.
     let mut z = 0.0;

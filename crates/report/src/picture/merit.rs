@@ -1,12 +1,13 @@
-//! Merit against iteration.
+//! Merit against what was counted while it fell.
 
 use super::axis::Axis;
 use super::chart::{Chart, Series, chart};
 use super::panel::Panel;
 
-/// Draws how the merit fell, a curve a method; `runs` are named lists of iteration and merit.
+/// Draws how the merit fell, a curve a method; `runs` are named lists of what is `counted`
+/// (iterations, starts) and merit.
 #[must_use]
-pub fn merit_curve(runs: &[(String, Vec<(u64, f64)>)], width: f64) -> Panel {
+pub fn merit_curve(counted: &str, runs: &[(String, Vec<(u64, f64)>)], width: f64) -> Panel {
     let series = runs.iter().enumerate().map(|(style, (name, points))| Series {
         name: name.clone(),
         points: thinned(points).map(|&(k, merit)| (k as f64, Some(merit))).collect(),
@@ -14,8 +15,8 @@ pub fn merit_curve(runs: &[(String, Vec<(u64, f64)>)], width: f64) -> Panel {
         dots: false,
     });
     let drawn = Chart {
-        title: "Merit against iteration".into(),
-        x: Axis::linear("iteration", ""),
+        title: format!("Merit against {counted}"),
+        x: Axis::linear(counted, ""),
         y: Axis::logarithmic("merit", ""),
         series: series.collect(),
         levels: Vec::new(),

@@ -9,8 +9,9 @@
 //! | glass, rays, movement | [`layout()`], [`train`] for the geometry alone |
 //! | exit wavefronts | [`wavefronts`] |
 //! | over the ratio | [`movement`] |
-//! | merit against iteration | [`merit_curve`] |
-//! | a sweep | [`sweep_curve`], [`sweep_map`], [`trade`]: axes have a name and a unit, the values are yours, a missing one is a point that failed; [`sweep_picture`] for the results of `sweep` |
+//! | merit against iteration or start | [`merit_curve`] |
+//! | a search | [`overnight_picture`] |
+//! | a sweep | [`sweep_curve`], [`sweep_map`], [`trade`]: axes have a name and a unit, the values are yours, a missing one is a point without a design; [`sweep_picture`] for the results of `sweep` |
 //! | what counts how much | [`fn@bars`] |
 //! | any curve | [`fn@chart`] |
 //!
@@ -40,6 +41,7 @@ mod ink;
 mod layout;
 mod merit;
 pub mod movement;
+mod overnight_sheet;
 mod panel;
 mod sheets;
 mod sweep;
@@ -53,10 +55,11 @@ pub use chart::{Chart, Level, Series, chart};
 pub use element::element_drawing;
 pub use layout::layout;
 pub use merit::merit_curve;
+pub use overnight_sheet::overnight_picture;
 pub use panel::Panel;
 pub use sheets::{assessment_picture, cam_picture, optimisation_picture};
 pub use sweep::{
-    Readings, SweepCurve, SweepMap, Trade, TradedDesign, front, sweep_curve, sweep_map, trade,
+    Readings, SweepCurve, SweepMap, Trade, TradedDesign, sweep_curve, sweep_map, trade,
 };
 pub use sweep_sheet::sweep_picture;
 pub use wavefront::wavefronts;

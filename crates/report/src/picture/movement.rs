@@ -98,7 +98,7 @@ pub fn collimation(curve: &MovementCurve, wishes: &Wishes, width: f64) -> Panel 
     };
     let paraxial = Series {
         name: "paraxial".into(),
-        points: over_ratio(curve, |point| point.exit_slope_urad),
+        points: over_ratio(curve, |point| point.paraxial_off_urad),
         style: 1,
         dots: false,
     };
@@ -107,10 +107,13 @@ pub fn collimation(curve: &MovementCurve, wishes: &Wishes, width: f64) -> Panel 
         [("goal", within), ("goal", -within)]
             .map(|(name, value)| Level { name: name.into(), value })
     });
-    let title = match curve.held {
-        Hold::RatioAndCollimation => "Collimation along the curve: exit slope at the 1/e² radius",
-        Hold::Ratio => "Collimation with one group moving: exit slope at the 1/e² radius",
+    let what = match (curve.exit_focus_m, curve.held) {
+        (None, Hold::Ratio) => "Collimation with one group moving".to_owned(),
+        (None, _) => "Collimation along the curve".to_owned(),
+        (Some(focus_m), Hold::Ratio) => format!("Off the focus at {focus_m} m, one group moving"),
+        (Some(focus_m), _) => format!("Off the focus at {focus_m} m along the curve"),
     };
+    let title = &format!("{what}: exit slope at the 1/e² radius");
     let y = Axis::linear("", "µrad");
     chart(&over(curve, title, y, vec![exact, paraxial], levels.collect()), width, 200.0)
 }
@@ -161,6 +164,9 @@ pub fn sensitivities(curve: &MovementCurve, width: f64) -> Panel {
         dots: false,
     });
     let y = Axis::linear("change of the exit slope", "µrad per µm");
-    let title = "Sensitivity of collimation to each group's position";
+    let title = match curve.exit_focus_m {
+        None => "Sensitivity of collimation to each group's position",
+        Some(_) => "Sensitivity of the focus to each group's position",
+    };
     chart(&over(curve, title, y, series.collect(), Vec::new()), width, 200.0)
 }

@@ -55,7 +55,7 @@ pub fn optimisation_picture(
     runs: &[(String, Vec<(u64, f64)>)],
 ) -> String {
     let panels = [
-        merit_curve(runs, PICTURE_WIDTH),
+        merit_curve("iteration", runs, PICTURE_WIDTH),
         layout(&after.design, curve, PICTURE_WIDTH),
         wavefronts(&after.design, PICTURE_WIDTH),
     ];

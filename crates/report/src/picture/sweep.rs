@@ -1,5 +1,7 @@
 //! Pictures of a sweep: a curve over one axis, a map over two, and the front of a trade.
 
+use driver::front::front;
+
 use super::axis::{Axis, Scale};
 use super::chart::{Chart, Series, chart};
 use super::ink::{FAINT, INK, MISS, Stroke, map_colour};
@@ -163,21 +165,6 @@ pub struct TradedDesign {
     pub at: [f64; 2],
 }
 
-/// The designs that no other is at least as good as in both results and better in one, by
-/// ascending first result.
-#[must_use]
-pub fn front(designs: &[TradedDesign]) -> Vec<usize> {
-    let beats = |a: &TradedDesign, b: &TradedDesign| {
-        a.at[0] <= b.at[0] && a.at[1] <= b.at[1] && (a.at[0] < b.at[0] || a.at[1] < b.at[1])
-    };
-    let mut front: Vec<usize> = (0..designs.len())
-        .filter(|&k| designs[k].at.iter().all(|x| x.is_finite()))
-        .filter(|&k| !designs.iter().any(|other| beats(other, &designs[k])))
-        .collect();
-    front.sort_by(|&a, &b| designs[a].at[0].total_cmp(&designs[b].at[0]).then(a.cmp(&b)));
-    front
-}
-
 /// Draws a trade: every design a dot, the front a stair.
 #[must_use]
 pub fn trade(trade: &Trade, width: f64) -> Panel {
@@ -195,7 +182,7 @@ pub fn trade(trade: &Trade, width: f64) -> Panel {
     let end = [width - right, bottom + 30.0];
     panel.word(end, &caption, Word::PLAIN.at(Anchor::End).in_colour(FAINT));
     let at = |k: usize| [x.place(trade.designs[k].at[0]), y.place(trade.designs[k].at[1])];
-    let front = front(&trade.designs);
+    let front = front(&trade.designs.iter().map(|design| design.at).collect::<Vec<_>>());
     let mut stair: Vec<[f64; 2]> = Vec::new();
     for &k in &front {
         let here = at(k);
@@ -222,22 +209,4 @@ pub fn trade(trade: &Trade, width: f64) -> Panel {
         }
     }
     panel
-}
-
-#[cfg(test)]
-mod tests {
-    use super::*;
-
-    #[test]
-    fn the_front_is_what_nothing_beats() {
-        let design = |name: &str, x, y| TradedDesign { name: name.into(), at: [x, y] };
-        let designs = [
-            design("long", 3.0, 1.0),
-            design("worse", 3.0, 2.0),
-            design("short", 1.0, 4.0),
-            design("lost", f64::NAN, 0.0),
-            design("middle", 2.0, 2.0),
-        ];
-        assert_eq!(front(&designs), [2, 4, 0]);
-    }
 }

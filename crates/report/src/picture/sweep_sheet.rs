@@ -1,6 +1,6 @@
 //! The picture of a sweep: a curve over one axis, a map over two, and the trade that was asked for.
 
-use driver::sweep::{NumberedPoint, SweepResults};
+use driver::sweep::{PointResult, SweepResults};
 use serde_json::Value;
 use surface_model::document::Address;
 
@@ -10,6 +10,7 @@ use super::panel::Panel;
 use super::sheets::{file_of, heading};
 use super::sweep::{SweepCurve, SweepMap, Trade, TradedDesign, sweep_curve, sweep_map, trade};
 use super::{PICTURE_WIDTH, Readings};
+use crate::text::sweep::value;
 
 /// Draws the finished points of a sweep, as SVG; `None` where neither one or two axes nor a trade
 /// gives anything to draw.
@@ -34,18 +35,18 @@ fn axis_of(name: &str, values: impl Iterator<Item = f64> + Clone) -> Axis {
     if far { Axis::logarithmic(name, "") } else { Axis::linear(name, "") }
 }
 
-fn merit(point: &NumberedPoint) -> Option<f64> {
+fn merit(point: &PointResult) -> Option<f64> {
     point.reached.as_ref().map(|reached| reached.merit)
 }
 
 /// A curve where the axis has numbers, bars where it has names.
 fn over_one(results: &SweepResults, axis: &Address) -> Panel {
-    let at = |point: &NumberedPoint| point.values.first().and_then(Value::as_f64);
+    let at = |point: &PointResult| point.values.first().and_then(Value::as_f64);
     let mut readings: Readings =
         results.points.iter().filter_map(|point| Some((at(point)?, merit(point)))).collect();
     if readings.len() < results.points.len() {
         let named = results.points.iter().filter_map(|point| {
-            Some(Bar { name: point.values.first().map(shown)?, value: merit(point)? })
+            Some(Bar { name: point.values.first().map(value)?, value: merit(point)? })
         });
         let named: Vec<Bar> = named.collect();
         let most = named.len();
@@ -65,15 +66,15 @@ fn over_one(results: &SweepResults, axis: &Address) -> Panel {
 fn over_two(results: &SweepResults, across: &Address, up: &Address) -> Panel {
     let (xs, ys) = (distinct(results, 0), distinct(results, 1));
     let cell = |x: &Value, y: &Value| {
-        let here = |point: &&NumberedPoint| point.values.iter().eq([x, y]);
+        let here = |point: &&PointResult| point.values.iter().eq([x, y]);
         results.points.iter().find(here).and_then(merit)
     };
     let map = SweepMap {
         title: MERIT.to_owned(),
         x: Axis::linear(&across.to_string(), ""),
-        x_values: xs.iter().map(shown).collect(),
+        x_values: xs.iter().map(value).collect(),
         y: Axis::linear(&up.to_string(), ""),
-        y_values: ys.iter().map(shown).collect(),
+        y_values: ys.iter().map(value).collect(),
         value: Axis::logarithmic("merit", ""),
         cells: ys.iter().map(|y| xs.iter().map(|x| cell(x, y)).collect()).collect(),
     };
@@ -108,8 +109,4 @@ fn traded(results: &SweepResults) -> Option<Panel> {
         designs: designs.collect(),
     };
     (!picture.designs.is_empty()).then(|| trade(&picture, PICTURE_WIDTH))
-}
-
-fn shown(value: &Value) -> String {
-    value.as_str().map_or_else(|| value.to_string(), str::to_owned)
 }

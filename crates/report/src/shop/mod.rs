@@ -1,9 +1,10 @@
 //! What a shop is handed: a sheet an element, after the tabular form of ISO 10110-10 (left
 //! surface, material, right surface side by side under the drawing), and the same as tables.
 //!
-//! Only what the design says is filled in. Tolerances, surface imperfections, centring, chamfers
-//! and coatings that it does not give stay open ("–"), to be filled in by whoever answers for
-//! them: a number that nobody chose is worse than none. The code numbers are those of ISO 10110:
+//! Only what the design says is filled in: its own tolerances, those of a grade it names, and what
+//! `tolerances.shop` says of chamfers, imperfections, coatings and material. What it does not give
+//! stays open ("–"), to be filled in by whoever answers for it: a number that nobody chose is worse
+//! than none. The code numbers are those of ISO 10110:
 //! 0 stress birefringence, 1 bubbles and inclusions, 2 inhomogeneity and striae, 3 surface form,
 //! 4 centring, 5 surface imperfections (from memory of the standard's parts 2, 3, 4, 5, 6 and 7).
 

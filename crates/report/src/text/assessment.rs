@@ -4,6 +4,7 @@ use driver::design_file::DesignFile;
 use merit_function::assessment::Assessment;
 
 use super::number::{as_written, counted, significant, significant_or_dash};
+use super::table::Table;
 use super::{
     WIDTH, beam, elements, hazards, layout, limits, paragraph, sections, states, verdict, warnings,
 };
@@ -16,7 +17,7 @@ pub fn assessment(file: &DesignFile, assessment: &Assessment, scope: Scope) -> S
     sections([
         heading(file),
         states::reached(file, assessment),
-        states::of_the_beam(file, assessment),
+        states::of_the_beam(file, assessment).map_or_else(String::new, Table::text),
         states::faults(assessment),
         states::spacings(file, assessment),
         layout::layout(file),

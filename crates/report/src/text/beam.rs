@@ -67,8 +67,8 @@ const NAMES: [(Column, &str); 2] = [(Column::Left, "state"), (Column::Right, "wa
 /// The beam that leaves.
 fn exits(beams: &[BeamAssessment]) -> String {
     let heads = [
-        (Column::Right, "exit\nbeam mm"),
-        (Column::Right, "waist\nat m"),
+        (Column::Right, "real\nbeam mm"),
+        (Column::Right, "waist m\nfrom exit"),
         (Column::Right, "diver-\ngence\nmrad"),
         (Column::Right, "M²\nbehind"),
         (Column::Right, "on axis\nfar off"),

@@ -27,12 +27,7 @@ pub fn cam(file: &DesignFile, curve: &MovementCurve) -> String {
 }
 
 fn heading(file: &DesignFile, curve: &MovementCurve) -> String {
-    let held = match curve.held {
-        Hold::RatioAndCollimation => "ratio and collimation are held",
-        Hold::Ratio => {
-            "only one group moves, so the ratio is held and collimation is what comes of it"
-        }
-    };
+    let held = held(curve);
     let guided: Vec<&str> = curve
         .groups
         .iter()
@@ -55,6 +50,24 @@ fn heading(file: &DesignFile, curve: &MovementCurve) -> String {
     let told = paragraph(&told, WIDTH, "");
     let title = &file.design.title;
     if title.is_empty() { told } else { format!("{}\n{told}", paragraph(title, WIDTH, "")) }
+}
+
+/// What is held along the curve.
+pub(crate) fn held(curve: &MovementCurve) -> String {
+    let focus = curve.exit_focus_m.map(|focus_m| format!("a focus at {} m", as_written(focus_m)));
+    let exit = focus.as_deref().unwrap_or("collimation");
+    match (curve.held, &focus) {
+        (Hold::Ratio, _) => {
+            format!("only one group moves, so the ratio is held and {exit} is what comes of it")
+        }
+        (_, Some(_)) => format!("ratio and {exit} behind the last vertex are held"),
+        (_, None) => "ratio and collimation are held".to_owned(),
+    }
+}
+
+/// What the slopes at the 1/e² radius are told against, for heads.
+pub(crate) fn off_word(curve: &MovementCurve) -> &'static str {
+    if curve.exit_focus_m.is_some() { "off focus" } else { "collimation" }
 }
 
 /// One column of numbers.
@@ -121,9 +134,13 @@ fn movement(curve: &MovementCurve) -> Vec<String> {
 fn performance(curve: &MovementCurve) -> String {
     let mut columns: Vec<Cells<'_>> = vec![
         ("ratio\nerror %".into(), Box::new(|point| fixed_or_dash(point.ratio_error_percent, 4))),
-        ("collimation\nµrad".into(), Box::new(|point| fixed(point.collimation_urad, 2))),
-        ("paraxial\nµrad".into(), Box::new(|point| fixed_or_dash(point.exit_slope_urad, 2))),
+        (format!("{}\nµrad", off_word(curve)), Box::new(|point| fixed(point.collimation_urad, 2))),
+        ("paraxial\nµrad".into(), Box::new(|point| fixed_or_dash(point.paraxial_off_urad, 2))),
     ];
+    if curve.exit_focus_m.is_some() {
+        let cell = |point: &CurvePoint| significant_or_dash(point.exit_focus_m, 4);
+        columns.push(("paraxial\nfocus m".into(), Box::new(cell)));
+    }
     let wavelengths = curve.points.first().map_or(&[][..], |point| &point.wavefront);
     for (w, at) in wavelengths.iter().enumerate() {
         let head = format!("RMS waves\n{} nm", as_written(at.wavelength_nm));
@@ -136,9 +153,13 @@ fn performance(curve: &MovementCurve) -> String {
 }
 
 fn sensitivity(curve: &MovementCurve) -> Vec<String> {
+    let changes = match curve.exit_focus_m {
+        None => "collimation changes,\nµrad per µm: from",
+        Some(_) => "exit slope changes,\nµrad per µm: from",
+    };
     let mut table = Table::new([
         (Column::Left, "group alone\nout of place"),
-        (Column::Right, "collimation changes,\nµrad per µm: from"),
+        (Column::Right, changes),
         (Column::Right, "\nto"),
     ]);
     for (g, group) in curve.groups.iter().enumerate() {

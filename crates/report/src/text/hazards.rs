@@ -32,7 +32,17 @@ pub fn hazards(file: &DesignFile, assessment: &Assessment) -> String {
 /// What `assess` prints of it: the hardest hit, and the ghosts that matter most.
 pub(crate) fn summary(file: &DesignFile, assessment: &Assessment) -> String {
     let Some(states) = &assessment.hazards else { return String::new() };
-    sections([hardest(file, states), foci(file, states), worst_ghosts(file, states)])
+    let note = "A focus clear of glass by less than nothing lies in it.";
+    let deep = |state: &StateHazards| {
+        state.ghosts.iter().any(|g| g.clearance_mm.is_some_and(|mm| mm < 0.0))
+    };
+    let note = if states.iter().any(deep) { note } else { "" };
+    sections([
+        hardest(file, states),
+        foci(file, states),
+        worst_ghosts(file, states),
+        note.to_owned(),
+    ])
 }
 
 /// What must be said wherever power is.
@@ -136,18 +146,48 @@ fn medium(in_glass: bool) -> String {
     (if in_glass { "glass" } else { "air" }).to_owned()
 }
 
-const GHOST: [(Column, &str); 8] = [
-    (Column::Left, "state"),
-    (Column::Left, "ghost reflected\nat"),
-    (Column::Right, "share\n%"),
-    (Column::Right, "focus\nclear of\nglass mm"),
-    (Column::Right, "narrowest\non glass\nmm"),
-    (Column::Right, "fluence\nthere\nJ/cm²"),
-    (Column::Right, "of thres-\nhold %"),
-    (Column::Right, "into\nlaser\nppm"),
-];
+/// What a laser hits with: the peak that is told where there is room for one.
+#[derive(Clone, Copy, PartialEq, Eq)]
+enum Dose {
+    /// Pulses: fluence.
+    Pulsed,
+    /// No pulse energy is given: irradiance.
+    Steady,
+}
 
-fn ghost_row(file: &DesignFile, name: String, ghost: &GhostHazard) -> [String; 8] {
+impl Dose {
+    fn of(states: &[StateHazards]) -> Self {
+        let mut surfaces = states.iter().flat_map(|state| &state.surfaces);
+        let pulsed = surfaces.any(|surface| surface.exposure.fluence_j_cm2.is_some());
+        if pulsed { Self::Pulsed } else { Self::Steady }
+    }
+
+    fn peak(self, exposure: &Exposure) -> Option<f64> {
+        match self {
+            Self::Pulsed => exposure.fluence_j_cm2,
+            Self::Steady => exposure.irradiance_w_cm2,
+        }
+    }
+}
+
+fn ghost_heads(dose: Dose) -> [(Column, &'static str); 8] {
+    let there = match dose {
+        Dose::Pulsed => "fluence\nthere\nJ/cm²",
+        Dose::Steady => "irradiance\nthere\nW/cm²",
+    };
+    [
+        (Column::Left, "state"),
+        (Column::Left, "ghost reflected\nat"),
+        (Column::Right, "share\n%"),
+        (Column::Right, "focus\nclear of\nglass mm"),
+        (Column::Right, "narrowest\non glass\nmm"),
+        (Column::Right, there),
+        (Column::Right, "of thres-\nhold %"),
+        (Column::Right, "into\nlaser\nppm"),
+    ]
+}
+
+fn ghost_row(file: &DesignFile, name: String, ghost: &GhostHazard, dose: Dose) -> [String; 8] {
     let at = ghost.reflected_at.iter().map(|at| surface_name(file, at)).collect::<Vec<_>>();
     let hardest = ghost.hardest_on_glass.as_ref();
     [
@@ -156,7 +196,7 @@ fn ghost_row(file: &DesignFile, name: String, ghost: &GhostHazard) -> [String; 8
         significant(100.0 * ghost.share, 2),
         fixed_or_dash(ghost.clearance_mm, 2),
         significant_or_dash(hardest.map(|exposure| exposure.diameter_mm), 2),
-        significant_or_dash(hardest.and_then(|exposure| exposure.fluence_j_cm2), 2),
+        significant_or_dash(hardest.and_then(|exposure| dose.peak(exposure)), 2),
         hardest.map_or_else(|| NONE.to_owned(), of_threshold),
         significant_or_dash(ghost.into_laser.map(|share| 1e6 * share), 2),
     ]
@@ -165,7 +205,8 @@ fn ghost_row(file: &DesignFile, name: String, ghost: &GhostHazard) -> [String; 8
 /// In each state the ghost that hits glass hardest, the one with a focus nearest to glass, and the
 /// one that couples best into the laser.
 fn worst_ghosts(file: &DesignFile, states: &[StateHazards]) -> String {
-    let mut table = Table::new(GHOST);
+    let dose = Dose::of(states);
+    let mut table = Table::new(ghost_heads(dose));
     for state in states {
         let by = |of: &dyn Fn(&GhostHazard) -> Option<f64>| {
             let told = state.ghosts.iter().enumerate().filter_map(|(i, g)| Some((i, of(g)?)));
@@ -182,7 +223,7 @@ fn worst_ghosts(file: &DesignFile, states: &[StateHazards]) -> String {
         chosen.dedup();
         for (k, &i) in chosen.iter().enumerate() {
             let name = if k == 0 { state.state.clone() } else { String::new() };
-            table.row(ghost_row(file, name, &state.ghosts[i]));
+            table.row(ghost_row(file, name, &state.ghosts[i], dose));
         }
     }
     table.text()
@@ -192,7 +233,12 @@ fn worst_ghosts(file: &DesignFile, states: &[StateHazards]) -> String {
 fn ghosts(file: &DesignFile, states: &[StateHazards]) -> String {
     let hardest = |ghost: &GhostHazard| ghost.hardest_on_glass?.of_threshold;
     let judged = states.iter().flat_map(|state| &state.ghosts).any(|g| hardest(g).is_some());
-    let on_glass = if judged { "of thres-\nhold %" } else { "on glass\nJ/cm²" };
+    let dose = Dose::of(states);
+    let on_glass = match dose {
+        _ if judged => "of thres-\nhold %",
+        Dose::Pulsed => "on glass\nJ/cm²",
+        Dose::Steady => "on glass\nW/cm²",
+    };
     let mut table = Table::new([
         (Column::Left, "state"),
         (Column::Left, "ghost re-\nflected at"),
@@ -206,8 +252,8 @@ fn ghosts(file: &DesignFile, states: &[StateHazards]) -> String {
     for state in states {
         for (k, ghost) in state.ghosts.iter().enumerate() {
             let name = if k == 0 { state.state.clone() } else { String::new() };
-            let [name, at, share, _, _, fluence, of_threshold, into_laser] =
-                ghost_row(file, name, ghost);
+            let [name, at, share, _, _, peak, of_threshold, into_laser] =
+                ghost_row(file, name, ghost, dose);
             let nearest = ghost.foci.iter();
             let nearest = nearest.min_by(|a, b| a.clearance_mm.total_cmp(&b.clearance_mm));
             let focus = nearest.map_or_else(
@@ -221,7 +267,7 @@ fn ghosts(file: &DesignFile, states: &[StateHazards]) -> String {
                 },
             );
             let cells = [name, at, share].into_iter().chain(focus);
-            let on_glass = if judged { of_threshold } else { fluence };
+            let on_glass = if judged { of_threshold } else { peak };
             table.row(cells.chain([on_glass, into_laser]));
         }
     }

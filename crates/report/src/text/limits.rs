@@ -83,10 +83,46 @@ fn value(limit: &LimitAssessment) -> String {
     }
 }
 
+/// Where a limit applies, short: group and element as the table of elements has them.
 pub(crate) fn place(file: &DesignFile, limit: &LimitAssessment) -> String {
     let at = limit.at.with_names(file.document().value());
-    match &limit.state {
-        Some(state) => format!("{at} in {state}"),
-        None => at.to_string(),
+    let short = match at.steps().as_slice() {
+        ["groups", group, "elements", element, "radii_mm", surface] => {
+            format!("{group} {element} surface {surface}")
+        }
+        ["groups", group, "elements", element, "thicknesses_mm", "0"] if is_single(file, limit) => {
+            format!("{group} {element}")
+        }
+        ["groups", group, "elements", element, "thicknesses_mm", glass] => {
+            format!("{group} {element} glass {glass}")
+        }
+        ["groups", group, "elements", element] => format!("{group} {element}"),
+        ["groups", group, "airs_mm", air] => format!("{group} air {air}"),
+        ["groups", group] => (*group).to_owned(),
+        ["states", state, "spacings_mm", after] => {
+            let names = after.parse().ok().and_then(|after: usize| {
+                let (front, back) =
+                    (file.design.groups.get(after)?, file.design.groups.get(after + 1)?);
+                Some(format!("{} to {}", front.name, back.name))
+            });
+            format!("{state} {}", names.unwrap_or_else(|| format!("spacing {after}")))
+        }
+        ["states", state] => (*state).to_owned(),
+        _ => at.to_string(),
+    };
+    match (&limit.state, limit.at_ratio) {
+        (Some(state), _) if at.steps().first() != Some(&"states") => format!("{short} in {state}"),
+        (None, Some(ratio)) => format!("{short} at {}x", fixed(ratio, 2)),
+        _ => short,
     }
+}
+
+/// Whether the element that a limit is about has one glass.
+fn is_single(file: &DesignFile, limit: &LimitAssessment) -> bool {
+    let steps = limit.at.steps();
+    let index = |step: usize| steps.get(step).and_then(|step| step.parse::<usize>().ok());
+    let element = index(1)
+        .zip(index(3))
+        .and_then(|(group, element)| file.design.groups.get(group)?.elements.get(element));
+    element.is_some_and(|element| element.glasses.len() == 1)
 }

@@ -18,9 +18,9 @@ pub mod ray;
 pub mod retune;
 pub mod retune_lists;
 pub mod start;
-mod states;
+pub(crate) mod states;
 pub mod sweep;
-mod table;
+pub(crate) mod table;
 pub mod temperature;
 pub mod tolerance;
 pub(crate) mod verdict;
@@ -41,7 +41,8 @@ pub fn paragraph(text: &str, width: usize, indent: &str) -> String {
         .subsequent_indent(indent)
         .break_words(false)
         .word_splitter(textwrap::WordSplitter::NoHyphenation);
-    textwrap::fill(text, options)
+    // A number stays with its per cent sign.
+    textwrap::fill(&text.replace(" %", "\u{a0}%"), options).replace('\u{a0}', " ")
 }
 
 /// Paragraphs, tables and sections with an empty line between them; empty ones are left out.
@@ -53,10 +54,17 @@ fn sections(parts: impl IntoIterator<Item = String>) -> String {
 /// One warning a paragraph, marked as such.
 #[must_use]
 pub fn warnings(warnings: &[String]) -> String {
-    let lines: Vec<String> = warnings
-        .iter()
-        .map(|warning| paragraph(&format!("warning: {warning}"), WIDTH, "  "))
-        .collect();
+    headed("warning", warnings)
+}
+
+/// One remark a paragraph, on what is well but could be better.
+fn notes(notes: &[String]) -> String {
+    headed("note", notes)
+}
+
+fn headed(head: &str, list: &[String]) -> String {
+    let lines: Vec<String> =
+        list.iter().map(|text| paragraph(&format!("{head}: {text}"), WIDTH, "  ")).collect();
     lines.join("\n")
 }
 

@@ -26,6 +26,26 @@ pub(crate) fn fixed_or_dash(value: Option<f64>, decimals: usize) -> String {
     value.map_or_else(|| NONE.to_owned(), |value| fixed(value, decimals))
 }
 
+/// As [`fixed_or_dash`], but what is not zero is not told as zero.
+pub(crate) fn fixed_or_less(value: Option<f64>, decimals: usize) -> String {
+    let least = 10_f64.powi(-(decimals as i32));
+    match value {
+        Some(value) if value != 0.0 && value.abs() < 0.5 * least => format!("<{least:.decimals$}"),
+        value => fixed_or_dash(value, decimals),
+    }
+}
+
+/// How well a wavefront error is known where it is small, in waves.
+const WAVEFRONT_KNOWN_TO: f64 = 1e-6;
+
+/// A wavefront error in waves: what lies below its accuracy is told so.
+pub(crate) fn wavefront(waves: Option<f64>) -> String {
+    match waves {
+        Some(waves) if waves.abs() < WAVEFRONT_KNOWN_TO => "<1e-6".to_owned(),
+        waves => significant_or_dash(waves, 3),
+    }
+}
+
 /// A number with so many significant digits.
 pub(crate) fn significant(value: f64, digits: usize) -> String {
     if !value.is_finite() {
@@ -74,6 +94,16 @@ mod tests {
         assert_eq!(fixed(1e308, 2), "1.000e308");
         assert_eq!(fixed(f64::NAN, 2), "-");
         assert_eq!(fixed_or_dash(None, 3), "-");
+    }
+
+    #[test]
+    fn what_is_not_zero_is_not_told_as_zero() {
+        assert_eq!(fixed_or_less(Some(-4e-5), 4), "<0.0001");
+        assert_eq!(fixed_or_less(Some(-6e-5), 4), "-0.0001");
+        assert_eq!(fixed_or_less(Some(0.0), 4), "0.0000");
+        assert_eq!(wavefront(Some(4e-7)), "<1e-6");
+        assert_eq!(wavefront(Some(1.234_5e-3)), "0.00123");
+        assert_eq!(wavefront(None), "-");
     }
 
     #[test]

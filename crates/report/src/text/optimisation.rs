@@ -5,10 +5,12 @@ use std::time::Duration;
 use driver::design_file::DesignFile;
 use merit_function::assessment::{Assessment, StateAssessment};
 
-use super::number::{as_written, counted, fixed_or_dash, significant_or_dash};
+use super::number::{
+    as_written, counted, fixed_or_dash, fixed_or_less, significant_or_dash, wavefront,
+};
 use super::states::{about, at_temperature};
 use super::table::{ARROW, Column, Table};
-use super::{WIDTH, assessment, hazards, optimised, paragraph, sections, warnings};
+use super::{WIDTH, assessment, hazards, notes, optimised, paragraph, sections, warnings};
 
 /// What is told about an optimisation.
 #[derive(Debug)]
@@ -31,6 +33,8 @@ pub struct Told<'a> {
     pub solving: Duration,
     /// Warnings beside those of the assessment.
     pub warnings: Vec<String>,
+    /// What is well and could be better.
+    pub notes: Vec<String>,
 }
 
 /// The whole account of an optimisation.
@@ -42,6 +46,7 @@ pub fn optimisation(told: &Told<'_>) -> String {
     parts.push(how(told));
     let all: Vec<String> = told.warnings.iter().chain(&told.end.warnings).cloned().collect();
     parts.push(warnings(&all));
+    parts.push(notes(&told.notes));
     parts.push(hazards::first_caution(told.end));
     parts.push(assessment::closing(told.after, told.end));
     sections(parts)
@@ -78,13 +83,13 @@ fn row(
 ) -> Vec<String> {
     let arrow = || ARROW.to_owned();
     let rms = |state: &StateAssessment| {
-        significant_or_dash(state.wavefront.get(k).and_then(|wavefront| wavefront.rms_waves), 3)
+        wavefront(state.wavefront.get(k).and_then(|wavefront| wavefront.rms_waves))
     };
     let nm = after.wavefront.get(k).map_or_else(String::new, |w| as_written(w.wavelength_nm));
     let name = if k == 0 { at_temperature(&after.name, temperature_c) } else { String::new() };
     let mut row = vec![name, nm, rms(before), arrow(), rms(after)];
     if k == 0 {
-        let error = |state: &StateAssessment| fixed_or_dash(state.ratio_error_percent, 4);
+        let error = |state: &StateAssessment| fixed_or_less(state.ratio_error_percent, 4);
         let slope = |state: &StateAssessment| fixed_or_dash(state.exit_slope_urad, 2);
         row.extend([error(before), arrow(), error(after), slope(before), arrow(), slope(after)]);
     } else {

@@ -2,6 +2,8 @@
 
 use driver::start::{Layout, Ranked, Ranking, Sign, Starts};
 
+use crate::start::narrowing;
+
 use super::number::{NONE, as_written, counted, fixed, significant};
 use super::table::{Column, Table};
 use super::{WIDTH, paragraph, sections};
@@ -23,7 +25,8 @@ fn heading(starts: &Starts) -> String {
         as_written(brief.written().housing.track_mm),
         as_written(brief.beam.diameter_mm),
     );
-    let lines = [title.as_str(), &about].map(|line| paragraph(line, WIDTH, ""));
+    let narrowing = narrowing(starts).unwrap_or_default();
+    let lines = [title.as_str(), &about, &narrowing].map(|line| paragraph(line, WIDTH, ""));
     lines.into_iter().filter(|line| !line.is_empty()).collect::<Vec<_>>().join("\n")
 }
 

@@ -5,7 +5,9 @@ use merit_function::assessment::{Assessment, StateAssessment, WavefrontAssessmen
 use merit_function::goals::Goals;
 use surface_model::design::{Design, Group};
 
-use super::number::{NONE, as_written, fixed, fixed_or_dash, significant_or_dash};
+use super::number::{
+    NONE, as_written, fixed, fixed_or_dash, fixed_or_less, significant_or_dash, wavefront as waves,
+};
 use super::table::{BLANK, Column, Table};
 use super::verdict::missed;
 
@@ -22,20 +24,21 @@ pub(crate) fn reached(file: &DesignFile, assessment: &Assessment) -> String {
         (Column::Right, "ratio"),
         (Column::Right, "ratio \nerror % "),
         (Column::Right, "exit \nslope \nµrad "),
-        (Column::Right, "exit\nbeam mm"),
+        (Column::Right, "ratio ×\nbeam mm"),
         (Column::Right, "wave-\nlength\nnm"),
         (Column::Right, "RMS \nwaves "),
         (Column::Right, "PV\nwaves"),
     ]);
-    if let Some(goals) = shared_goals(file) {
+    let shared = shared_goals(file);
+    if shared.iter().any(Option::is_some) {
         let within = |goal: Option<f64>| {
             goal.map_or_else(String::new, |goal| format!("{}{BLANK}", as_written(goal)))
         };
         let mut row = vec![String::new(); 9];
         "goal".clone_into(&mut row[0]);
-        row[3] = within(goals.ratio_percent);
-        row[4] = within(goals.exit_slope_urad);
-        row[7] = within(goals.wavefront_rms_waves);
+        row[3] = within(shared[0]);
+        row[4] = within(shared[1]);
+        row[7] = within(shared[2]);
         table.row(row);
     }
     let goals = file.wishes.states.iter().cycle();
@@ -51,8 +54,8 @@ pub(crate) fn reached(file: &DesignFile, assessment: &Assessment) -> String {
     table.text()
 }
 
-/// The goals about the real beam in every state that has any; empty if none has.
-pub(crate) fn of_the_beam(file: &DesignFile, assessment: &Assessment) -> String {
+/// The goals about the real beam in every state that has any; nothing if none has.
+pub(crate) fn of_the_beam(file: &DesignFile, assessment: &Assessment) -> Option<Table> {
     let goals = || file.wishes.states.iter();
     let divergence = goals().any(|goals| goals.divergence_mrad.is_some());
     let range = goals().any(|goals| goals.diameter_at_range_mm.is_some());
@@ -72,7 +75,7 @@ pub(crate) fn of_the_beam(file: &DesignFile, assessment: &Assessment) -> String 
         heads.extend([(Column::Right, "focus \nat m "), (Column::Right, "goal")]);
     }
     if heads.len() == 1 {
-        return String::new();
+        return None;
     }
     let mut table = Table::new(heads);
     for (goals, state) in file.wishes.states.iter().zip(&assessment.states) {
@@ -94,7 +97,7 @@ pub(crate) fn of_the_beam(file: &DesignFile, assessment: &Assessment) -> String 
         }
         table.row(row);
     }
-    table.text()
+    Some(table)
 }
 
 /// A value wanted and how far off it may be.
@@ -135,13 +138,18 @@ fn focus_cells(goals: &Goals, state: &StateAssessment) -> [String; 2] {
     ]
 }
 
-/// The goals, where they are the same in all states and there are any.
-fn shared_goals(file: &DesignFile) -> Option<Goals> {
-    let first = *file.wishes.states.first()?;
-    let numbers =
-        |goals: &Goals| [goals.ratio_percent, goals.exit_slope_urad, goals.wavefront_rms_waves];
-    let same = file.wishes.states.iter().all(|goals| numbers(goals) == numbers(&first));
-    (same && numbers(&first).iter().any(Option::is_some)).then_some(first)
+/// The goals for ratio error, exit slope and RMS, each where all the states that have it want the
+/// same.
+fn shared_goals(file: &DesignFile) -> [Option<f64>; 3] {
+    let shared = |goal: fn(&Goals) -> Option<f64>| {
+        let mut wanted = file.wishes.states.iter().filter_map(goal);
+        wanted.next().filter(|first| wanted.all(|other| other == *first))
+    };
+    [
+        shared(|goals| goals.ratio_percent),
+        shared(|goals| goals.exit_slope_urad),
+        shared(|goals| goals.wavefront_rms_waves),
+    ]
 }
 
 /// A state's name, with its temperature where that is not 20 °C.
@@ -158,7 +166,7 @@ fn paraxial(goals: &Goals, state: &StateAssessment, name: &str) -> Vec<String> {
         as_written(state.ratio_wanted),
         fixed_or_dash(state.ratio, 4),
         marked(
-            fixed_or_dash(state.ratio_error_percent, 4),
+            fixed_or_less(state.ratio_error_percent, 4),
             missed(state.ratio_error_percent, goals.ratio_percent),
         ),
         marked(
@@ -173,8 +181,8 @@ fn at_wavelength(goals: &Goals, wavefront: &WavefrontAssessment) -> [String; 3] 
     let rms = wavefront.rms_waves;
     [
         as_written(wavefront.wavelength_nm),
-        marked(significant_or_dash(rms, 3), missed(rms, goals.wavefront_rms_waves)),
-        significant_or_dash(wavefront.pv_waves, 3),
+        marked(waves(rms), missed(rms, goals.wavefront_rms_waves)),
+        waves(wavefront.pv_waves),
     ]
 }
 

@@ -1,6 +1,6 @@
 //! What `sweep` prints for people.
 
-use driver::sweep::{NumberedPoint, Plan, SweepResults};
+use driver::sweep::{Plan, PointResult, SweepResults};
 use serde_json::Value;
 use surface_model::document::Address;
 
@@ -64,18 +64,19 @@ pub fn results(results: &SweepResults) -> String {
         table,
         signs(&listed),
         faults.join("\n"),
+        without_layout(results),
         front(results),
         closing(results, listed.len()),
     ])
 }
 
-fn listed(results: &SweepResults) -> Vec<&NumberedPoint> {
-    let all: Vec<&NumberedPoint> = results.points.iter().collect();
+fn listed(results: &SweepResults) -> Vec<&PointResult> {
+    let all: Vec<&PointResult> = results.points.iter().collect();
     if all.len() <= MOST_LISTED {
         return all;
     }
-    let merit = |point: &NumberedPoint| point.reached.as_ref().map_or(f64::INFINITY, |r| r.merit);
-    let mut best: Vec<&NumberedPoint> = if results.front.is_empty() {
+    let merit = |point: &PointResult| point.reached.as_ref().map_or(f64::INFINITY, |r| r.merit);
+    let mut best: Vec<&PointResult> = if results.front.is_empty() {
         all
     } else {
         all.into_iter().filter(|point| results.front.contains(&point.number)).collect()
@@ -85,7 +86,7 @@ fn listed(results: &SweepResults) -> Vec<&NumberedPoint> {
     best
 }
 
-fn row(point: &NumberedPoint) -> Vec<String> {
+fn row(point: &PointResult) -> Vec<String> {
     let mut row = vec![point.number.to_string()];
     row.extend(point.values.iter().map(value));
     match &point.reached {
@@ -101,17 +102,35 @@ fn row(point: &NumberedPoint) -> Vec<String> {
     row
 }
 
-fn crossed(point: &NumberedPoint) -> usize {
+fn crossed(point: &PointResult) -> usize {
     point.reached.as_ref().map_or(0, |reached| reached.limits_crossed)
 }
 
-fn signs(listed: &[&NumberedPoint]) -> String {
-    let missed = |point: &&&NumberedPoint| point.reached.as_ref().is_some_and(|r| !r.meets);
+fn signs(listed: &[&PointResult]) -> String {
+    let missed = |point: &&&PointResult| point.reached.as_ref().is_some_and(|r| !r.meets);
     if listed.iter().any(|point| missed(&point)) {
         "! a goal missed or a limit crossed".to_owned()
     } else {
         String::new()
     }
+}
+
+/// Points whose brief has no layout, by what stands against most that were looked at.
+fn without_layout(results: &SweepResults) -> String {
+    let mut reasons: Vec<(&str, Vec<String>)> = Vec::new();
+    for point in &results.points {
+        let Some(reason) = point.no_layout.as_deref() else { continue };
+        match reasons.iter_mut().find(|(known, _)| *known == reason) {
+            Some((_, numbers)) => numbers.push(point.number.to_string()),
+            None => reasons.push((reason, vec![point.number.to_string()])),
+        }
+    }
+    let told = reasons.into_iter().map(|(reason, numbers)| {
+        let points = if numbers.len() == 1 { "point" } else { "points" };
+        let told = format!("no layout at {points} {}: mostly {reason}", numbers.join(", "));
+        paragraph(&told, WIDTH, "  ")
+    });
+    told.collect::<Vec<_>>().join("\n")
 }
 
 fn front(results: &SweepResults) -> String {
@@ -134,6 +153,10 @@ fn closing(results: &SweepResults, listed: usize) -> String {
     let mut told = format!("{meet} of {} meet every goal and limit", counted(done, "point"));
     if results.failed > 0 {
         told.push_str(&format!("; {} could not be optimised", results.failed));
+    }
+    if results.without_layout > 0 {
+        let have = if results.without_layout == 1 { "has" } else { "have" };
+        told.push_str(&format!("; {} {have} no layout", results.without_layout));
     }
     if let Some(best) = results.best()
         && let Some(reached) = &best.reached
@@ -159,9 +182,11 @@ fn axis_head(at: &Address) -> String {
     steps[from..].join("\n")
 }
 
-fn value(value: &Value) -> String {
+/// A value of an axis as people read it.
+pub(crate) fn value(value: &Value) -> String {
     match value {
         Value::String(text) => text.clone(),
+        Value::Array(list) => list.iter().map(self::value).collect::<Vec<_>>().join(", "),
         Value::Number(number) => number.as_f64().map_or_else(|| number.to_string(), short),
         other => other.to_string(),
     }

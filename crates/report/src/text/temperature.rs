@@ -13,10 +13,15 @@ use super::{WIDTH, paragraph, sections};
 /// Drift around 20 °C, then every state at every temperature, untouched and re-adjusted.
 #[must_use]
 pub fn temperatures(file: &DesignFile, report: &TemperatureReport) -> String {
-    sections([drift(file, report), states(file, report), note(report)])
+    sections([
+        drift(file, report).text(),
+        states(file, report).text(),
+        paragraph(&note(report), WIDTH, ""),
+    ])
 }
 
-fn drift(file: &DesignFile, report: &TemperatureReport) -> String {
+/// How fast every state drifts around 20 °C.
+pub(crate) fn drift(file: &DesignFile, report: &TemperatureReport) -> Table {
     let count = report.drift.first().map_or(0, |state| state.readjustment_mm_per_k.len());
     let heads = moved_heads(file, report, count, "µm/K");
     let mut columns = vec![
@@ -36,7 +41,7 @@ fn drift(file: &DesignFile, report: &TemperatureReport) -> String {
         row.extend(moved.map(|per_k| significant(1e3 * per_k, 3)));
         table.row(row);
     }
-    table.text()
+    table
 }
 
 /// What re-adjustments are called: the spacing where all states have them all, else a number.
@@ -55,7 +60,8 @@ fn moved_heads(
     }
 }
 
-fn states(file: &DesignFile, report: &TemperatureReport) -> String {
+/// Every state at every temperature, untouched and re-adjusted.
+pub(crate) fn states(file: &DesignFile, report: &TemperatureReport) -> Table {
     let mut table = Table::new([
         (Column::Right, "°C"),
         (Column::Left, "state"),
@@ -80,7 +86,7 @@ fn states(file: &DesignFile, report: &TemperatureReport) -> String {
             table.row(row);
         }
     }
-    table.text()
+    table
 }
 
 fn numbers(goals: &Goals, numbers: &TemperatureNumbers) -> [String; 3] {
@@ -95,7 +101,8 @@ fn numbers(goals: &Goals, numbers: &TemperatureNumbers) -> [String; 3] {
     ]
 }
 
-fn note(report: &TemperatureReport) -> String {
+/// What re-adjusted means, and where it stopped.
+pub(crate) fn note(report: &TemperatureReport) -> String {
     let stopped = report
         .temperatures
         .iter()
@@ -108,9 +115,8 @@ fn note(report: &TemperatureReport) -> String {
             as_written(at.temperature_c)
         )
     });
-    let told = format!(
+    format!(
         "Untouched, then re-adjusted towards the goals; re-adjustments are beyond the growth of \
          the tube.{bound}"
-    );
-    paragraph(&told, WIDTH, "")
+    )
 }

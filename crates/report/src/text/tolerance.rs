@@ -2,7 +2,7 @@
 
 use driver::design_file::DesignFile;
 use driver::tolerance::{
-    Balance, Distribution, MonteCarlo, Quantity, Sensitivity, Spread, StateSensitivity,
+    Balance, Distribution, Miss, MonteCarlo, Quantity, Sensitivity, Spread, StateSensitivity,
     ToleranceReport,
 };
 use surface_model::document::Address;
@@ -29,17 +29,18 @@ const WORST: usize = 12;
 pub fn told(file: &DesignFile, report: &ToleranceReport, listed: Listed) -> String {
     sections([
         assessment::heading(file),
-        premises(file, report),
-        distributions(&report.monte_carlo),
-        wander(&report.monte_carlo),
-        sensitivities(file, report, listed),
+        paragraph(&premises(file, report), WIDTH, ""),
+        distributions(&report.monte_carlo).text(),
+        wander(&report.monte_carlo).text(),
+        sensitivities_told(file, report, listed),
         balance(file, report.balance.as_ref()),
         warnings(&cautions(report)),
-        verdict(file, report),
+        paragraph(&verdict(file, report), WIDTH, ""),
     ])
 }
 
-fn premises(file: &DesignFile, report: &ToleranceReport) -> String {
+/// What was taken for granted: grade, spread, what is re-adjusted.
+pub(crate) fn premises(file: &DesignFile, report: &ToleranceReport) -> String {
     let spread = match report.spread {
         Spread::Normal => "normal, cut off at the tolerance, which is two sigma",
         Spread::Uniform => "uniform within the tolerance",
@@ -55,12 +56,11 @@ fn premises(file: &DesignFile, report: &ToleranceReport) -> String {
             counted(states, "state")
         )
     };
-    let told = format!("Grade {}; errors are {spread}. {followed}", report.grade.word());
-    paragraph(&told, WIDTH, "")
+    format!("Grade {}; errors are {spread}. {followed}", report.grade.word())
 }
 
 /// How the systems are spread in every state.
-fn distributions(monte_carlo: &MonteCarlo) -> String {
+pub(crate) fn distributions(monte_carlo: &MonteCarlo) -> Table {
     let mut table = Table::new([
         (Column::Left, "state"),
         (Column::Left, "quantity"),
@@ -86,7 +86,7 @@ fn distributions(monte_carlo: &MonteCarlo) -> String {
             ]);
         }
     }
-    table.text()
+    table
 }
 
 fn name(quantity: Quantity) -> &'static str {
@@ -99,35 +99,62 @@ fn name(quantity: Quantity) -> &'static str {
 }
 
 /// How far the beam wanders through the zoom.
-fn wander(monte_carlo: &MonteCarlo) -> String {
+pub(crate) fn wander(monte_carlo: &MonteCarlo) -> Table {
     let mut table = Table::new([
         (Column::Left, "boresight through the zoom, µrad"),
+        (Column::Right, "within"),
         (Column::Right, "rms"),
         (Column::Right, "50 %"),
         (Column::Right, "90 %"),
         (Column::Right, "98 %"),
+        (Column::Right, "met\n%"),
     ]);
-    let mut row = |what: &str, sizes: &Distribution| {
+    let allowed = monte_carlo.boresight_wander_within_urad.map_or_else(String::new, as_written);
+    let met = monte_carlo.boresight_wander_within_percent;
+    let met = met.map_or_else(String::new, |percent| fixed(percent, 1));
+    let mut row = |what: &str, sizes: &Distribution, required: bool| {
+        let only = |text: &String| if required { text.clone() } else { String::new() };
         table.row([
             what.to_owned(),
+            only(&allowed),
             significant(sizes.rms, 3),
             significant_or_dash(sizes.percent_50, 3),
             significant_or_dash(sizes.percent_90, 3),
             significant_or_dash(sizes.percent_98, 3),
+            only(&met),
         ]);
     };
     match &monte_carlo.boresight_wander_sliding_urad {
-        None => row("all mounts slide", &monte_carlo.boresight_wander_urad),
+        None => row("all mounts slide", &monte_carlo.boresight_wander_urad, true),
         Some(sliding) => {
-            row("mounts as given, some turn", &monte_carlo.boresight_wander_urad);
-            row("if all mounts slid", sliding);
+            row("mounts as given, some turn", &monte_carlo.boresight_wander_urad, true);
+            row("if all mounts slid", sliding, false);
         }
     }
-    table.text()
+    table
+}
+
+/// What single tolerances do, the worst state each, and what that means.
+fn sensitivities_told(file: &DesignFile, report: &ToleranceReport, listed: Listed) -> String {
+    let table = sensitivities(file, report, listed);
+    let rest = report.sensitivities.len() - table.rows().len();
+    let more = if rest > 0 { format!(" {rest} more: --all.") } else { String::new() };
+    format!("{}\n{}", table.text(), paragraph(&format!("{}{more}", effects(report)), WIDTH, ""))
+}
+
+/// What the numbers of a sensitivity are.
+pub(crate) fn effects(report: &ToleranceReport) -> String {
+    let followed = if report.readjusted.is_empty() { "" } else { ", spacings re-adjusted" };
+    format!(
+        "The effect at the full tolerance in the worst state{followed}; its share of all that is \
+         expected to go amiss, squares in units of what is allowed."
+    )
 }
 
 /// What single tolerances do, the worst state each.
-fn sensitivities(file: &DesignFile, report: &ToleranceReport, listed: Listed) -> String {
+pub(crate) fn sensitivities(file: &DesignFile, report: &ToleranceReport, listed: Listed) -> Table {
+    // Of the two about the beam's direction, the one that is required.
+    let wander = report.monte_carlo.boresight_wander_within_urad.is_some();
     let mut table = Table::new([
         (Column::Right, "share\n%"),
         (Column::Left, "tolerance"),
@@ -136,7 +163,7 @@ fn sensitivities(file: &DesignFile, report: &ToleranceReport, listed: Listed) ->
         (Column::Right, "RMS\nwaves"),
         (Column::Right, "ratio\n%"),
         (Column::Right, "slope\nµrad"),
-        (Column::Right, "bore-\nsight µrad"),
+        (Column::Right, if wander { "wander\nµrad" } else { "bore-\nsight µrad" }),
     ]);
     let most = if listed == Listed::All { usize::MAX } else { WORST };
     for sensitivity in report.sensitivities.iter().take(most) {
@@ -150,16 +177,13 @@ fn sensitivities(file: &DesignFile, report: &ToleranceReport, listed: Listed) ->
             let sizes = sensitivity.states.iter();
             sizes.map(|state: &StateSensitivity| state.size(quantity)).fold(0.0, f64::max)
         };
-        row.extend(Quantity::ALL.map(|quantity| effect(worst(quantity))));
+        row.extend(Quantity::ALL.map(|quantity| match quantity {
+            Quantity::BoresightUrad if wander => effect(sensitivity.wander_urad),
+            quantity => effect(worst(quantity)),
+        }));
         table.row(row);
     }
-    let rest = report.sensitivities.len().saturating_sub(most);
-    let note = format!(
-        "The effect at the full tolerance in the worst state, spacings re-adjusted; its share of \
-         all expected misses, the wander through the zoom aside.{}",
-        if rest > 0 { format!(" {rest} more: --all.") } else { String::new() }
-    );
-    format!("{}\n{}", table.text(), paragraph(&note, WIDTH, ""))
+    table
 }
 
 /// An effect; what no one could measure is nothing.
@@ -168,7 +192,7 @@ fn effect(size: f64) -> String {
 }
 
 /// A place in few words: the names and numbers of its address.
-fn label(file: &DesignFile, at: &Address) -> String {
+pub(crate) fn label(file: &DesignFile, at: &Address) -> String {
     let at = at.with_names(file.document().value());
     let steps = at.steps();
     let names = steps.iter().enumerate().filter(|(i, _)| i % 2 == 1).map(|(_, step)| *step);
@@ -193,18 +217,22 @@ fn balance(file: &DesignFile, balance: Option<&Balance>) -> String {
             as_written(tolerance.to),
         ]);
     }
-    let reached = if balance.reached {
+    let wanted = as_written(balance.wanted_percent);
+    let [given, now] = [balance.given_percent, balance.yield_percent].map(|part| fixed(part, 1));
+    let reached = if !balance.reached {
+        format!("Even with a tenth of every tolerance {now} % come out right, not {wanted} %")
+    } else if balance.given_percent >= balance.wanted_percent && balance.relative_cost < 1.0 {
         format!(
-            "With these tolerances {} % of the same systems come out right ({} % wanted)",
-            fixed(balance.yield_percent, 1),
-            as_written(balance.wanted_percent)
+            "The tolerances as given yield {given} % already, more than the {wanted} % wanted. \
+             Relaxed to these, {now} % of the same systems come out right"
+        )
+    } else if balance.given_percent >= balance.wanted_percent {
+        format!(
+            "The tolerances as given yield {given} % already, {wanted} % being wanted, and nothing \
+             cheaper was found that does"
         )
     } else {
-        format!(
-            "Even a tenth of every tolerance gives {} %, not {} %",
-            fixed(balance.yield_percent, 1),
-            as_written(balance.wanted_percent)
-        )
+        format!("Balanced, {now} % of the same systems come out right ({wanted} % wanted)")
     };
     let told = format!(
         "{reached}, at {} times the cost, if a tolerance half as wide costs twice as much.",
@@ -213,7 +241,8 @@ fn balance(file: &DesignFile, balance: Option<&Balance>) -> String {
     format!("{}\n{}", table.text(), paragraph(&told, WIDTH, ""))
 }
 
-fn cautions(report: &ToleranceReport) -> Vec<String> {
+/// What should be known of the systems that were built.
+pub(crate) fn cautions(report: &ToleranceReport) -> Vec<String> {
     let monte_carlo = &report.monte_carlo;
     let mut cautions = Vec::new();
     if let Some(fault) = &monte_carlo.first_fault {
@@ -235,24 +264,42 @@ fn cautions(report: &ToleranceReport) -> Vec<String> {
     cautions
 }
 
-fn verdict(file: &DesignFile, report: &ToleranceReport) -> String {
+/// The yield, and what costs it most.
+pub(crate) fn verdict(file: &DesignFile, report: &ToleranceReport) -> String {
     let monte_carlo = &report.monte_carlo;
     let [low, high] = monte_carlo.yield_between_percent.map(|percent| fixed(percent, 1));
+    let as_given = if report.balance.is_some() { "With the tolerances as given " } else { "" };
     let mut told = format!(
-        "{} of {} come out right: a yield of {} % (95 % sure: {low} to {high} %)",
+        "{as_given}{} of {} come out right: a yield of {} % (95 % sure: {low} to {high} %).",
         monte_carlo.passed,
         counted(monte_carlo.systems as usize, "system"),
         fixed(monte_carlo.yield_percent, 1),
     );
-    let worst: Option<&Sensitivity> = report.sensitivities.first();
-    if let Some(worst) = worst.filter(|worst| worst.share_percent > 0.0) {
+    if !monte_carlo.missed.is_empty() {
+        let missed = monte_carlo.missed.iter();
+        let missed: Vec<String> =
+            missed.map(|miss| format!("{} in {}", shortfall(miss.what), miss.systems)).collect();
+        told.push_str(&format!(" Out of bounds: {}.", missed.join(", ")));
+    }
+    let largest: Option<&Sensitivity> = report.sensitivities.first();
+    if let Some(largest) = largest.filter(|largest| largest.share_percent > 0.0) {
         told.push_str(&format!(
-            "; the worst offender is {} of {}, {} % of all expected misses",
-            worst.kind.word(),
-            worst.at.with_names(file.document().value()),
-            fixed(worst.share_percent, 0)
+            " The largest contributor is {} of {}: {} % of all that is expected to go amiss.",
+            largest.kind.word(),
+            largest.at.with_names(file.document().value()),
+            fixed(largest.share_percent, 0)
         ));
     }
-    told.push('.');
-    paragraph(&told, WIDTH, "")
+    told
+}
+
+fn shortfall(what: Miss) -> &'static str {
+    match what {
+        Miss::Rays => "rays do not get through",
+        Miss::WavefrontRmsWaves => "the wavefront",
+        Miss::RatioPercent => "the ratio",
+        Miss::ExitSlopeUrad => "the exit slope",
+        Miss::BoresightUrad => "the boresight of a state",
+        Miss::Wander => "the boresight through the zoom",
+    }
 }

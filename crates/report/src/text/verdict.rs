@@ -3,7 +3,9 @@
 use driver::design_file::DesignFile;
 use merit_function::assessment::{Assessment, LimitAssessment, StateAssessment};
 use merit_function::goals::Goals;
+use merit_function::limits::LimitKind;
 
+use super::limits::margin;
 use super::number::{as_written, counted, significant};
 use super::states::at_temperature;
 
@@ -86,6 +88,19 @@ fn marks_of(goals: &Goals, state: &StateAssessment, name: &str) -> Vec<Mark> {
     marks
 }
 
+/// How near a quantity is to its limit when that is reached, in its unit: the tolerance to which
+/// limits in mm are kept.
+const REACHED: f64 = 1e-3;
+
+/// The limits that are reached and not crossed. The ends of the tube are not told: a group fixed
+/// there touches them always.
+fn reached(limits: &[LimitAssessment]) -> Vec<&LimitAssessment> {
+    let reached = |limit: &&LimitAssessment| {
+        limit.limit != LimitKind::HousingMm && limit.met && margin(limit).abs() <= REACHED
+    };
+    limits.iter().filter(reached).collect()
+}
+
 /// Whether the design does what it should, and what is worst about it.
 pub(crate) fn closing_sentence(file: &DesignFile, assessment: &Assessment) -> String {
     let marks = marks(file, assessment);
@@ -115,6 +130,18 @@ pub(crate) fn closing_sentence(file: &DesignFile, assessment: &Assessment) -> St
         if worst.missed() && worst.value.is_some() {
             told.push_str(&format!(" ({} times)", significant(worst.size(), 2)));
         }
+    }
+    let reached = reached(&assessment.limits);
+    if missed.is_empty() && crossed.is_empty() && faults == 0 && !reached.is_empty() {
+        let joint = if worst.is_some() { ", and" } else { ";" };
+        let verb = if reached.len() == 1 { "is" } else { "are" };
+        let mut kinds: Vec<&str> = reached.iter().map(|limit| limit.limit.word()).collect();
+        kinds.dedup();
+        told.push_str(&format!(
+            "{joint} {} {verb} reached ({})",
+            counted(reached.len(), "limit"),
+            kinds.join(", ")
+        ));
     }
     told.push('.');
     told

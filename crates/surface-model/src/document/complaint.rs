@@ -12,7 +12,7 @@ use super::text::Position;
 use super::wording::printable;
 
 /// The most complaints that are told at once; of the rest only the number.
-pub const MOST_COMPLAINTS: usize = 20;
+pub(super) const MOST_COMPLAINTS: usize = 20;
 
 /// Longest line of a message, in characters.
 const LONGEST_LINE: usize = 400;
@@ -197,7 +197,7 @@ impl Document {
     }
 
     /// Where the key at `address` begins in the text, or the value if it has no key.
-    pub fn key_position(&self, address: &Address) -> Position {
+    fn key_position(&self, address: &Address) -> Position {
         let located = locate(self.text(), address);
         let exists = located.steps == address.steps().len();
         let offset = located.key.filter(|_| exists).unwrap_or(located.value);

@@ -38,6 +38,7 @@ mod layout;
 mod locate;
 mod parse;
 mod resolve;
+mod rewriting;
 mod schema;
 mod shape;
 mod structure;
@@ -53,7 +54,7 @@ use serde::de::DeserializeOwned;
 use serde_json::Value;
 
 pub use address::{Address, AddressSyntaxError};
-pub use complaint::{Complain, Complaint, Complaints, MOST_COMPLAINTS, Place, Source};
+pub use complaint::{Complain, Complaint, Complaints, Place, Source};
 pub use layout::layout;
 pub use parse::ParseError;
 pub use resolve::{AddressError, Present};
@@ -62,7 +63,7 @@ pub use structure::StructureError;
 pub use suggest::nearest;
 pub use syntax::SyntaxFault;
 pub use text::{LARGEST_BYTES, Position, TextError};
-pub use wording::{did_you_mean, in_words, one_of, quoted};
+pub use wording::{did_you_mean, in_words, one_of, quoted, rounded, system_words};
 
 /// The key that is allowed in every object, for a remark.
 const NOTE: &str = "note";
@@ -103,7 +104,7 @@ impl Document {
         let label = label.into();
         let mut bytes = Vec::new();
         source.take(LARGEST_BYTES as u64 + 1).read_to_end(&mut bytes).map_err(|error| {
-            let found = format!("the file cannot be read: {error}");
+            let found = format!("the file cannot be read: {}", system_words(&error));
             let complaint = Complaint { place: Place::File, found, expected: None, advice: None };
             Complaints::unread(&label, vec![complaint])
         })?;

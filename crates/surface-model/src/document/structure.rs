@@ -15,8 +15,9 @@ use thiserror::Error;
 use super::address::Address;
 use super::alternatives::check_alternatives;
 use super::complaint::{Complain, MOST_COMPLAINTS, Place};
+use super::rewriting::differently_written;
 use super::shape::{KeyShape, Shape};
-use super::suggest::nearest;
+use super::suggest::{nearest, nearest_key};
 use super::wording::{counted, did_you_mean, in_words, one_of, quoted};
 
 /// Something in a document that its schema does not allow.
@@ -150,7 +151,7 @@ pub(super) struct Problems {
 
 impl Problems {
     /// None yet; only the first `most_told` will be put into words.
-    fn none(most_told: usize) -> Self {
+    pub(super) fn none(most_told: usize) -> Self {
         Self { told: Vec::new(), untold: 0, most_told }
     }
 
@@ -194,6 +195,15 @@ impl Trail<'_> {
             Self::Root => Address::root(),
             Self::Key(before, key) => before.address().key(*key),
             Self::Index(before, index) => before.address().index(*index),
+        }
+    }
+
+    /// The key that the value, or the list around it, stands under.
+    pub(super) fn last_key(&self) -> Option<&str> {
+        match self {
+            Self::Root => None,
+            Self::Key(_, key) => Some(key),
+            Self::Index(list, _) => list.last_key(),
         }
     }
 
@@ -245,28 +255,8 @@ pub(super) fn wrong_type(value: &Value, shape: Shape, at: Trail) -> StructureErr
         at: at.address(),
         found: in_words(value),
         expected: shape.in_words(),
-        advice: differently_written(value, shape),
+        advice: differently_written(value, shape, at),
     }
-}
-
-/// How to write the value so that it is allowed: with or without quotes, or in brackets.
-fn differently_written(value: &Value, shape: Shape) -> Option<String> {
-    let allowed = |value: &Value| {
-        let mut problems = Problems::none(0);
-        check_node(value, shape, Trail::Root, &mut problems);
-        problems.count() == 0
-    };
-    if let Value::String(text) = value {
-        let bare: Value = serde_json::from_str(text.trim()).ok()?;
-        let scalar = bare.is_number() || bare.is_boolean();
-        return (scalar && allowed(&bare)).then(|| format!("write it without quotes: {bare}"));
-    }
-    let scalar = value.is_number() || value.is_boolean();
-    if scalar && allowed(&Value::String(value.to_string())) {
-        return Some(format!("put it in quotes: \"{value}\""));
-    }
-    (scalar && allowed(&Value::Array(vec![value.clone()])))
-        .then(|| format!("a list stands in brackets: [{value}]"))
 }
 
 /// Checks a value that may only be one of `choices`, of all that `shape` allows.
@@ -287,7 +277,7 @@ pub(super) fn check_choice(
             at: at.address(),
             found: in_words(value),
             expected: shape.in_words(),
-            advice: near.map(did_you_mean).or_else(|| differently_written(value, shape)),
+            advice: near.map(did_you_mean).or_else(|| differently_written(value, shape, at)),
         }
     });
 }
@@ -374,7 +364,7 @@ fn check_object(map: &Map<String, Value>, shape: Shape, at: Trail, problems: &mu
         .keys()
         .filter(|key| matches!(shape.key(key, at.is_root()), KeyShape::Unknown))
         .take(MOST_COMPLAINTS)
-        .map(|key| nearest(key, unused().collect::<Vec<_>>()))
+        .map(|key| nearest_key(key, &unused().collect::<Vec<_>>()))
         .collect();
     for key in missing.into_iter().filter(|key| !meant.contains(&Some(key))) {
         problems.add(|| StructureError::MissingKey {
@@ -412,7 +402,7 @@ fn unknown_key(key: &str, map: &Map<String, Value>, shape: Shape, at: Trail) -> 
     let known: Vec<&str> =
         shape.keys().map(|(known, _)| known).filter(|k| !super::is_remark(k)).collect();
     let unused: Vec<&str> = known.iter().copied().filter(|key| !map.contains_key(*key)).collect();
-    let near = nearest(key, unused.iter().copied()).or_else(|| nearest(key, known.iter().copied()));
+    let near = nearest_key(key, &unused).or_else(|| nearest(key, known.iter().copied()));
     let expected = if !known.is_empty() {
         one_of(known)
     } else if shape.get("patternProperties").is_some() {

@@ -34,9 +34,45 @@ pub fn nearest<'a>(
     })
 }
 
+/// The known key that a wrong one most likely stands for: as [`nearest`], else the one that shares
+/// most words with it, else the only one in the same unit, which is a key's last word.
+pub(super) fn nearest_key<'a>(key: &str, known: &[&'a str]) -> Option<&'a str> {
+    if key.chars().nth(LONGEST_WORD).is_some() {
+        return None;
+    }
+    let words = |key: &str| key.to_lowercase().split('_').map(str::to_owned).collect::<Vec<_>>();
+    let own = words(key);
+    let shared = |candidate: &str| {
+        let others = words(candidate);
+        let common = own.iter().filter(|word| others.contains(word)).count();
+        2.0 * common as f64 / (own.len() + others.len()) as f64
+    };
+    let by_words = || {
+        let likely = known.iter().map(|key| (shared(key), *key));
+        let likely = likely.filter(|(likeness, _)| *likeness > ALIKE);
+        likely.reduce(|best, other| if other.0 > best.0 { other } else { best }).map(|(_, key)| key)
+    };
+    let by_unit = || {
+        let unit = own.last().filter(|_| own.len() > 1)?;
+        let mut same = known.iter().filter(|key| words(key).last() == Some(unit));
+        same.next().filter(|_| same.next().is_none()).copied()
+    };
+    nearest(key, known.iter().copied()).or_else(by_words).or_else(by_unit)
+}
+
 #[cfg(test)]
 mod tests {
     use super::*;
+
+    #[test]
+    fn a_key_is_known_by_its_words_and_its_unit() {
+        let goals = ["wavefront_rms_waves", "ratio_percent", "exit_slope_urad"];
+        assert_eq!(nearest_key("rms_wavefront_waves", &goals), Some("wavefront_rms_waves"));
+        assert_eq!(nearest_key("collimation_urad", &goals), Some("exit_slope_urad"));
+        assert_eq!(nearest_key("length_mm", &["track_mm", "fixed"]), Some("track_mm"));
+        assert_eq!(nearest_key("length_mm", &["track_mm", "travel_mm"]), None, "either");
+        assert_eq!(nearest_key("mm", &["track_mm"]), None, "a unit alone names nothing");
+    }
 
     #[test]
     fn finds_what_was_meant_and_nothing_far_fetched() {

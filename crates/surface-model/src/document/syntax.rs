@@ -27,6 +27,9 @@ pub enum SyntaxFault {
     /// A number written as JSON does not allow.
     #[error("{0} is not how JSON writes a number")]
     Number(String),
+    /// A number with a comma before its decimals.
+    #[error("{0} has a comma")]
+    DecimalComma(String),
     /// More objects and lists within each other than any document has.
     #[error("objects and lists are nested more than 127 deep")]
     TooDeep,
@@ -73,6 +76,7 @@ impl SyntaxFault {
         match self {
             Self::NotFinite(_) | Self::TooBig(_) => Some("a finite number".into()),
             Self::TooDeep | Self::TooMany => Some("a document of a few kB, as a design is".into()),
+            Self::DecimalComma(_) => Some("a key in double quotes after a comma".into()),
             Self::Trailing(_) => Some("the end of the file".into()),
             Self::Bare(_) => Some("a number, true, false, null or a text in quotes".into()),
             Self::BareKey(_) => Some("a key in double quotes".into()),
@@ -87,6 +91,9 @@ impl SyntaxFault {
             Self::Number(_) => "write it as 0.5, 1.0 or 1e-7: no plus sign in front, no leading \
                                 zero, digits on both sides of the point"
                 .into(),
+            Self::DecimalComma(number) => {
+                format!("numbers take a point: {}", number.replacen(',', ".", 1))
+            }
             Self::Comment => "write a remark under the key \"note\"".into(),
             Self::TrailingComma => "take the comma away".into(),
             Self::Bare(word) => did_you_mean_word(word),
@@ -160,6 +167,11 @@ fn by_the_text(text: &str, offset: usize, message: &str) -> (usize, SyntaxFault)
     if ["nan", "inf", "infinity"].contains(&unsigned.to_ascii_lowercase().as_str()) {
         return (start, SyntaxFault::NotFinite(word));
     }
+    if message == "key must be a string"
+        && let Some(found) = decimal_comma(text, start)
+    {
+        return found;
+    }
     match message {
         "trailing characters" => (start, SyntaxFault::Trailing(word)),
         "expected value" | "expected ident" if is_name => (start, SyntaxFault::Bare(word)),
@@ -189,6 +201,17 @@ fn by_the_text(text: &str, offset: usize, message: &str) -> (usize, SyntaxFault)
             )
         }
     }
+}
+
+/// A number whose decimals, behind a comma, were taken for the next key; `start` is where they are.
+fn decimal_comma(text: &str, start: usize) -> Option<(usize, SyntaxFault)> {
+    let whole = text.get(..start)?.strip_suffix(',')?;
+    let decimals = word_at(text, start);
+    let before = word_start(whole, whole.len());
+    let is_number = |word: &str| word.parse::<i64>().is_ok();
+    let number = is_number(whole.get(before..)?) && decimals.bytes().all(|b| b.is_ascii_digit());
+    let found = format!("{},{decimals}", whole.get(before..)?);
+    number.then_some((before, SyntaxFault::DecimalComma(found)))
 }
 
 /// The byte that `serde_json` means by a line and a column: it counts bytes, and the column of the

@@ -1,5 +1,7 @@
 //! How values and words are put into messages: short, on one line, safe to print.
 
+use std::io;
+
 use serde_json::Value;
 
 /// Longest quotation of somebody's text, in characters.
@@ -96,6 +98,25 @@ pub fn one_of<'a>(words: impl IntoIterator<Item = &'a str>) -> String {
     }
 }
 
+/// A computed number as a message tells it: to six digits.
+#[must_use]
+pub fn rounded(number: f64) -> f64 {
+    format!("{number:.5e}").parse().unwrap_or(number)
+}
+
+/// What the system says about an error, without its number and without the name of a temporary
+/// file.
+#[must_use]
+pub fn system_words(error: &io::Error) -> String {
+    let inner = error.get_ref().and_then(|wrapped| wrapped.source());
+    let inner = inner.and_then(|inner| inner.downcast_ref::<io::Error>());
+    let told = inner.unwrap_or(error).to_string();
+    match told.rsplit_once(" (os error ") {
+        Some((words, number)) if number.ends_with(')') => words.to_owned(),
+        _ => told,
+    }
+}
+
 /// `did you mean "exit"?`
 pub fn did_you_mean(word: &str) -> String {
     format!("did you mean {}?", quoted(word))
@@ -121,6 +142,22 @@ mod tests {
         assert_eq!(told(json!({})), "an empty object");
         assert_eq!(told(json!("2.4")), "the text \"2.4\"");
         assert_eq!(told(json!(-0.0)), "the number -0.0");
+    }
+
+    #[test]
+    fn what_the_system_says_has_no_number() {
+        let error = io::Error::from_raw_os_error(2);
+        assert!(error.to_string().contains("os error 2"));
+        assert!(error.to_string().starts_with(&system_words(&error)));
+        assert!(!system_words(&error).contains("os error"));
+        assert_eq!(system_words(&io::Error::other("it is larger")), "it is larger");
+    }
+
+    #[test]
+    fn computed_numbers_have_six_digits() {
+        assert_eq!(rounded(16.256_722_507_178_56), 16.2567);
+        assert_eq!(rounded(-0.000_123_456_789).to_string(), "-0.000123457");
+        assert_eq!(rounded(f64::INFINITY), f64::INFINITY);
     }
 
     #[test]

@@ -5,6 +5,7 @@
 
 use std::sync::{LazyLock, OnceLock};
 
+use super::common_names::in_the_catalogue;
 use super::suggestion::{loosened, nearest};
 use super::{Glass, LookupError, record};
 
@@ -89,14 +90,21 @@ pub fn find(name: &str) -> Result<Glass, LookupError> {
 
 fn missing(name: &str) -> LookupError {
     let loose = loosened(name);
-    let exact: Vec<String> = entries()
+    let common = in_the_catalogue(name).iter().map(|&name| name.to_owned());
+    let mut exact: Vec<String> = entries()
         .iter()
         .filter(|entry| entry.is_loosely_called(&loose))
         .map(Entry::full_name)
         .collect();
     let name = name.to_owned();
     if !exact.is_empty() {
+        // BaF2 is a crystal, and BAF2 a glass.
+        exact.extend(common);
         return LookupError::NotExact { name, exact };
+    }
+    let common: Vec<String> = common.collect();
+    if !common.is_empty() {
+        return LookupError::Unknown { name, near: common };
     }
     let bare = name.rsplit(':').next().unwrap_or(&name);
     let near = nearest(bare, entries().iter().map(|entry| (entry.name, entry.full_name())));
@@ -159,6 +167,7 @@ mod tests {
         assert_eq!(exact("schott:n-bk7"), "N-BK7");
         assert_eq!(exact("Fused Silica"), "fused-silica");
         assert_eq!(exact("f2"), "Schott:F2 CDGM:F2");
+        assert_eq!(exact("BaF2"), "BAF2 barium-fluoride", "a glass and a crystal");
     }
 
     #[test]
@@ -171,6 +180,8 @@ mod tests {
         assert_eq!(near("Hoya:N-BK7")[0], "N-BK7");
         assert_eq!(near("fusedsilca"), ["fused-silica"]);
         assert!(near("unobtainium").is_empty() && near("").is_empty());
+        assert_eq!(near("SiO2"), ["fused-silica"]);
+        assert_eq!(near("CaF2"), ["calcium-fluoride", "LITHOTEC-CAF2"]);
     }
 
     proptest! {

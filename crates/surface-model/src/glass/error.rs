@@ -3,6 +3,7 @@
 use thiserror::Error;
 
 use super::range::WavelengthRange;
+use crate::document::quoted;
 
 /// Anything that can be wrong with a glass.
 #[derive(Clone, Debug, PartialEq, Error)]
@@ -77,13 +78,10 @@ impl GlassError {
             Self::NoRealIndex { .. } => {
                 Some("check the coefficients and the range of the glass".to_owned())
             }
-            Self::NoThermalTerms { glass } => Some(format!(
-                "choose a glass whose maker tells it, or define your own in \"glasses\": \
-                 {{ \"from\": \"{glass}\", \"index_shift\": 0, \"index_per_k\": … }}"
-            )),
-            Self::NoExpansion { glass } => Some(format!(
-                "choose a glass whose maker tells it, or define your own in \"glasses\": \
-                 {{ \"from\": \"{glass}\", \"index_shift\": 0, \"expansion_per_k\": … }}"
+            Self::NoThermalTerms { glass } | Self::NoExpansion { glass } => Some(format!(
+                "choose a glass whose maker tells it, or define one from your maker's data sheet: \
+                 \"glasses\": {{ \"my-{glass}\": {{ \"from\": \"{glass}\", \"index_shift\": 0, \
+                 \"index_per_k\": …, \"expansion_per_k\": …, \"density_g_cm3\": … }} }}"
             )),
             Self::OutsideTemperatures { .. } => {
                 Some("temperatures are in °C; 20 is what designs are drawn at".to_owned())
@@ -99,7 +97,7 @@ impl GlassError {
 #[non_exhaustive]
 pub enum LookupError {
     /// Nothing has this name.
-    #[error("there is no glass named \"{name}\"")]
+    #[error("there is no glass named {}", quoted(name))]
     Unknown {
         /// What was asked for.
         name: String,
@@ -123,7 +121,7 @@ pub enum LookupError {
         choices: Vec<String>,
     },
     /// The design file defines this glass, but its definition has a fault of its own.
-    #[error("the glass \"{name}\" is defined with a fault")]
+    #[error("the glass {} is defined with a fault", quoted(name))]
     Faulty {
         /// The glass in question.
         name: String,
@@ -150,7 +148,7 @@ impl LookupError {
 
 /// Shortest wavelength taken for one, nm: no lens material passes light below lithium fluoride's edge near 105 nm
 /// (common practice, no published source for the round figure).
-pub(super) const SHORTEST_NM: f64 = 100.0;
+pub const SHORTEST_NM: f64 = 100.0;
 /// The index of a glass lies above this.
 pub(super) const INDEX_ABOVE: f64 = 1.0;
 /// The index of a glass lies below this; germanium, the highest in use, is near 4.
@@ -182,7 +180,7 @@ pub enum DefinitionError {
         name: String,
     },
     /// Two definitions have one name.
-    #[error("the glass \"{name}\" is defined more than once")]
+    #[error("the glass {} is defined more than once", quoted(name))]
     Repeated {
         /// The name.
         name: String,
@@ -354,15 +352,25 @@ impl DefinitionError {
 #[non_exhaustive]
 pub enum SearchError {
     /// Compares something that cannot be compared.
-    #[error("\"{found}\" in \"{word}\" cannot be compared; nd and vd can")]
+    #[error("{} in {} cannot be compared; nd and vd can", quoted(found), quoted(word))]
     Quantity {
         /// The whole word.
         word: String,
         /// The part before the sign.
         found: String,
     },
+    /// A range whose first end is the larger.
+    #[error("the range in \"{word}\" runs downwards, from {low} to {high}")]
+    Downwards {
+        /// The whole word.
+        word: String,
+        /// Its first end.
+        low: f64,
+        /// Its last end.
+        high: f64,
+    },
     /// Compares with something that is no number.
-    #[error("\"{found}\" in \"{word}\" is not a number")]
+    #[error("{} in {} is not a number", quoted(found), quoted(word))]
     Number {
         /// The whole word.
         word: String,
@@ -375,6 +383,7 @@ impl SearchError {
     /// What to do about it.
     pub fn advice(&self) -> Option<String> {
         Some(match self {
+            Self::Downwards { low, high, .. } => format!("write {high}..{low}"),
             Self::Quantity { .. } => {
                 "write nd=1.7..1.8 or \"vd<30\"; a maker, a name, a code or a status is given as a plain word"
                     .to_owned()

@@ -1,13 +1,14 @@
 //! Optical glass: how its refractive index depends on wavelength, and where a glass comes from.
 //!
 //! A [`Glass`] comes from the embedded catalogue ([`find`]) or from the `glasses` section of a design file
-//! ([`GlassShelf`]). Its one question is [`Glass::index`]: the index at a wavelength, or an error that says over which
+//! (`GlassShelf`). Its one question is [`Glass::index`]: the index at a wavelength, or an error that says over which
 //! range the glass is known. There is no extrapolation.
 //!
-//! The index is relative to air, at 20 °C and 1 atm (some makers measure at 25 °C, see [`Glass::measured_at_c`]).
+//! The index is relative to air, at 20 °C and 1 atm (some makers measure at 25 °C).
 //! Wavelengths are in air, in nanometres; the dispersion laws themselves take micrometres, as they are published.
 
 mod catalogue;
+mod common_names;
 mod definition;
 mod document;
 mod equivalents;
@@ -28,15 +29,16 @@ use std::sync::Arc;
 pub use catalogue::find;
 pub use document::GlassDocument;
 pub use equivalents::{Equivalent, equivalents};
-pub use error::{DefinitionError, GlassError, LookupError, SearchError};
+pub use error::{DefinitionError, GlassError, LookupError, SHORTEST_NM, SearchError};
 pub use range::WavelengthRange;
 pub use search::search;
-pub use shelf::{GlassFault, GlassShelf};
+pub(crate) use shelf::GlassShelf;
 pub use status::GlassStatus;
 pub use summary::GlassSummary;
-pub use thermal::{REFERENCE_C, THERMAL_RANGE_C, ThermalTerms, air_index};
+pub use thermal::{REFERENCE_C, THERMAL_RANGE_C};
 
 use law::DispersionLaw;
+use thermal::ThermalTerms;
 
 /// The helium d line, nm: the wavelength of `nd`.
 pub const D_LINE_NM: f64 = 587.5618;
@@ -184,11 +186,6 @@ impl Glass {
         Some((self.nd()? - 1.0) / main).filter(|vd| vd.is_finite())
     }
 
-    /// Temperature at which the index was measured, °C.
-    pub fn measured_at_c(&self) -> Option<f64> {
-        self.data.measured_at_c
-    }
-
     /// Density, g/cm³.
     pub fn density_g_cm3(&self) -> Option<f64> {
         self.data.density_g_cm3
@@ -200,7 +197,8 @@ impl Glass {
     }
 
     /// Terms of the temperature formula for the absolute index.
-    pub fn thermal(&self) -> Option<&ThermalTerms> {
+    #[cfg(test)]
+    fn thermal(&self) -> Option<&ThermalTerms> {
         self.data.thermal.as_ref()
     }
 }

@@ -1,5 +1,6 @@
 //! Looking through the catalogue by words and numbers.
 
+use super::common_names::in_the_catalogue;
 use super::suggestion::loosened;
 use super::{Glass, SearchError, catalogue};
 
@@ -39,7 +40,7 @@ pub fn search(words: &[impl AsRef<str>]) -> Result<Vec<Glass>, SearchError> {
 /// What one word asks for.
 #[derive(Debug, PartialEq)]
 enum Wish {
-    Text { small: String, loose: String },
+    Text { small: String, loose: String, common: &'static [&'static str] },
     Code(String),
     Between { quantity: Quantity, low: Bound, high: Bound },
 }
@@ -66,7 +67,8 @@ impl Wish {
         if let Some(code) = code(word) {
             return Ok(Self::Code(code));
         }
-        Ok(Self::Text { small: word.to_lowercase(), loose: loosened(word) })
+        let common = in_the_catalogue(word);
+        Ok(Self::Text { small: word.to_lowercase(), loose: loosened(word), common })
     }
 
     fn comparison(word: &str, quantity: &str, comparison: &str) -> Result<Self, SearchError> {
@@ -94,13 +96,14 @@ impl Wish {
 
     fn suits(&self, glass: &Glass) -> bool {
         match self {
-            Self::Text { small, loose } => {
+            Self::Text { small, loose, common } => {
                 let has = |text: &str| text.to_lowercase().contains(small);
                 has(glass.name())
                     || (!loose.is_empty() && loosened(glass.name()).contains(loose))
                     || glass.maker().is_some_and(has)
                     || glass.code().is_some_and(has)
                     || has(glass.status().word())
+                    || common.contains(&glass.name())
             }
             Self::Code(code) => glass.code() == Some(code),
             Self::Between { quantity, low, high } => {
@@ -110,8 +113,10 @@ impl Wish {
     }
 
     fn is_whole_name(&self, glass: &Glass) -> bool {
-        matches!(self, Self::Text { small, loose }
-            if glass.name().to_lowercase() == *small || loosened(glass.name()) == *loose)
+        matches!(self, Self::Text { small, loose, common }
+            if glass.name().to_lowercase() == *small
+                || loosened(glass.name()) == *loose
+                || common.contains(&glass.name()))
     }
 }
 
@@ -130,7 +135,12 @@ impl Quantity {
         };
         match text.split_once("..") {
             Some(("", "")) => Err(SearchError::Number { word: word.into(), found: text.into() }),
-            Some((low, high)) => Ok((end(low)?, end(high)?)),
+            Some((low, high)) => match (end(low)?, end(high)?) {
+                (Bound::Included(low), Bound::Included(high)) if low > high => {
+                    Err(SearchError::Downwards { word: word.into(), low, high })
+                }
+                ends => Ok(ends),
+            },
             None => {
                 let value = number(word, text)?;
                 let near = match self {

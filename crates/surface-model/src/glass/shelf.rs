@@ -11,18 +11,18 @@ use super::{
 
 /// A design's own glasses in front of the catalogue.
 #[derive(Clone, Debug, Default)]
-pub struct GlassShelf {
+pub(crate) struct GlassShelf {
     /// `None` for a glass whose definition has a fault.
     own: BTreeMap<String, Option<Glass>>,
 }
 
 /// A fault in the `glasses` section.
 #[derive(Clone, Debug, PartialEq)]
-pub struct GlassFault {
+pub(crate) struct GlassFault {
     /// Where, as a JSON Pointer (RFC 6901) inside the section: `/melt-4471/from`.
-    pub at: String,
+    pub(crate) at: String,
     /// What.
-    pub error: GlassError,
+    pub(crate) error: GlassError,
 }
 
 impl GlassShelf {
@@ -31,7 +31,7 @@ impl GlassShelf {
     /// The shelf is usable even with faults, so that the rest of a file can still be checked: a glass with a fault is
     /// found as [`LookupError::Faulty`], which need not be reported again.
     #[must_use]
-    pub fn resolve<'a>(
+    pub(crate) fn resolve<'a>(
         documents: impl IntoIterator<Item = (&'a str, &'a GlassDocument)>,
     ) -> (Self, Vec<GlassFault>) {
         let mut resolution = Resolution::default();
@@ -53,17 +53,12 @@ impl GlassShelf {
     ///
     /// # Errors
     /// As [`find`], and [`LookupError::Faulty`] for an own glass whose definition has a fault.
-    pub fn find(&self, name: &str) -> Result<Glass, LookupError> {
+    pub(crate) fn find(&self, name: &str) -> Result<Glass, LookupError> {
         match self.own.get(name) {
             Some(Some(glass)) => Ok(glass.clone()),
             Some(None) => Err(LookupError::Faulty { name: name.to_owned() }),
             None => find(name).map_err(|error| with_own_names(error, self.own.keys())),
         }
-    }
-
-    /// The design's own glasses that hold, by name.
-    pub fn own(&self) -> impl Iterator<Item = &Glass> {
-        self.own.values().flatten()
     }
 }
 

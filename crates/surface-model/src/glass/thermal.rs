@@ -1,7 +1,7 @@
 //! How the index changes with temperature, as makers give it.
 //!
 //! Makers describe the *absolute* index, against vacuum; catalogues and this program count against
-//! air. With n_air of [`air_index`],
+//! air. With n_air of `air_index`,
 //!
 //! n(T) = [n(T₀) n_air(T₀) + Δn_abs(T) − Δn_abs(T₀)] / n_air(T),
 //!
@@ -12,19 +12,19 @@
 /// dn/dT = (n² − 1)/(2n) · (D0 + 2 D1 ΔT + 3 D2 ΔT² + (E0 + 2 E1 ΔT)/(λ² − λ_TK²)), with ΔT counted from 20 °C and λ
 /// in µm (Hoffmann, Jochs and Westenberger, Proc. SPIE 1780 (1992); from memory).
 #[derive(Clone, Copy, Debug, PartialEq)]
-pub struct ThermalTerms {
+pub(super) struct ThermalTerms {
     /// D0, 1/K.
-    pub d0_per_k: f64,
+    pub(super) d0_per_k: f64,
     /// D1, 1/K².
-    pub d1_per_k2: f64,
+    pub(super) d1_per_k2: f64,
     /// D2, 1/K³.
-    pub d2_per_k3: f64,
+    pub(super) d2_per_k3: f64,
     /// E0, µm²/K.
-    pub e0_um2_per_k: f64,
+    pub(super) e0_um2_per_k: f64,
     /// E1, µm²/K².
-    pub e1_um2_per_k2: f64,
+    pub(super) e1_um2_per_k2: f64,
     /// λ_TK, µm.
-    pub lambda_tk_um: f64,
+    pub(super) lambda_tk_um: f64,
 }
 
 /// The temperatures for which makers vouch for their terms, °C (Schott, TIE-19, *Temperature
@@ -38,12 +38,7 @@ impl ThermalTerms {
     /// Change of the absolute index from 20 °C to `temperature_c`, for a glass whose absolute
     /// index is `index` at the vacuum wavelength `wavelength_um`: the integral of dn/dT with the
     /// factor in front taken at 20 °C, as the makers take it (Schott, TIE-19; from memory).
-    pub(crate) fn absolute_change(
-        &self,
-        index: f64,
-        wavelength_um: f64,
-        temperature_c: f64,
-    ) -> f64 {
+    fn absolute_change(&self, index: f64, wavelength_um: f64, temperature_c: f64) -> f64 {
         let t = temperature_c - REFERENCE_C;
         let resonance = wavelength_um * wavelength_um - self.lambda_tk_um * self.lambda_tk_um;
         let by_temperature = t * (self.d0_per_k + t * (self.d1_per_k2 + t * self.d2_per_k3));
@@ -55,8 +50,7 @@ impl ThermalTerms {
 /// Index of air at one atmosphere: the dispersion of B. Edlén, J. Opt. Soc. Am. 43, 339 (1953), and
 /// the temperature of F. Kohlrausch, *Praktische Physik* (1968), together the air of the glass
 /// makers' catalogues (from memory). Wavelength in µm, in vacuum.
-#[must_use]
-pub fn air_index(wavelength_um: f64, temperature_c: f64) -> f64 {
+fn air_index(wavelength_um: f64, temperature_c: f64) -> f64 {
     let square = wavelength_um * wavelength_um;
     let at_15_c = 1e-8
         * (6432.8

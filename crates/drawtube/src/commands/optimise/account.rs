@@ -11,6 +11,7 @@ use serde_json::{Value, json};
 
 use crate::destination::Destination;
 use crate::failure::Failure;
+use crate::progress::MeritHistory;
 
 /// One or more methods run one after the other.
 pub(super) struct Account<'a> {
@@ -19,11 +20,17 @@ pub(super) struct Account<'a> {
     stages: Vec<OptimisationReport>,
     stopped: Stopped,
     after: DesignFile,
+    /// How the merit went in each stage.
+    history: Vec<MeritHistory>,
 }
 
 impl<'a> Account<'a> {
     /// The account of at least one stage.
-    pub(super) fn new(before: &'a DesignFile, stages: Vec<Optimisation>) -> Result<Self, Failure> {
+    pub(super) fn new(
+        before: &'a DesignFile,
+        stages: Vec<Optimisation>,
+        history: Vec<MeritHistory>,
+    ) -> Result<Self, Failure> {
         let mut reports = Vec::with_capacity(stages.len());
         let mut last = None;
         for stage in stages {
@@ -32,12 +39,18 @@ impl<'a> Account<'a> {
         }
         let Some((stopped, after)) = last else { return Err(Failure::NoStage) };
         let start = reports[0].start.clone();
-        Ok(Self { before, start, stages: reports, stopped, after })
+        Ok(Self { before, start, stages: reports, stopped, after, history })
     }
 
     /// The optimised design.
     pub(super) fn result(&self) -> &DesignFile {
         &self.after
+    }
+
+    /// How the merit went, a list of iteration and merit a method.
+    pub(super) fn merit_runs(&self) -> Vec<(String, MeritHistory)> {
+        let methods = self.stages.iter().map(|stage| stage.method.to_owned());
+        methods.zip(self.history.iter().cloned()).collect()
     }
 
     fn end(&self) -> &Assessment {
@@ -84,6 +97,13 @@ impl<'a> Account<'a> {
             });
             map.insert("stages".into(), stages.collect());
         }
+        if let Value::Object(map) = &mut document {
+            let runs = self.merit_runs().into_iter();
+            let runs = runs
+                .map(|(method, points)| json!({ "method": method, "iteration_and_merit": points }));
+            map.insert("version".into(), json!(env!("CARGO_PKG_VERSION")));
+            map.insert("merit_history".into(), runs.collect());
+        }
         serde_json::to_string_pretty(&document).map_err(Failure::Document)
     }
 
@@ -100,16 +120,27 @@ impl<'a> Account<'a> {
             evaluations: self.evaluations(),
             solving: Duration::try_from_secs_f64(self.seconds()).unwrap_or_default(),
             warnings: self.warnings(),
+            notes: self.notes(),
         });
         if saved { format!("{told}\n{}", destination.told("design")) } else { told }
     }
 
+    /// The variables that ended on a bound.
+    fn on_bounds(&self) -> Option<String> {
+        let last = self.stages.last()?;
+        text::bounds::ended_on_bounds(&last.on_bounds, last.variables)
+    }
+
+    /// A bound is no reason to worry where everything is met.
+    fn notes(&self) -> Vec<String> {
+        let told = self.on_bounds().filter(|_| self.end().meets);
+        let told = told.map(|told| format!("{told}: a wider limit or range may do still better"));
+        told.into_iter().collect()
+    }
+
     fn warnings(&self) -> Vec<String> {
         let mut warnings = Vec::new();
-        let last = self.stages.last();
-        if let Some(told) =
-            last.and_then(|stage| text::bounds::ended_on_bounds(&stage.on_bounds, stage.variables))
-        {
+        if let Some(told) = self.on_bounds().filter(|_| !self.end().meets) {
             warnings.push(format!(
                 "{told}: widen the limits or ranges that hold them, if the design can bear it, and \
                  optimise again"

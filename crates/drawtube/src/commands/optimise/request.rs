@@ -9,15 +9,8 @@ use crate::destination::Destination;
 use crate::failure::Failure;
 use crate::input;
 use crate::output_file::OutputFile;
-use crate::progress::{Manner, interval};
-
-/// What is printed at the end.
-#[derive(Debug, Clone, Copy, PartialEq, Eq)]
-pub(super) enum Summary {
-    Text,
-    Json,
-    None,
-}
+use crate::progress::{Manner, duration};
+use crate::told::Told;
 
 /// What is asked for.
 pub(super) struct Request {
@@ -26,27 +19,23 @@ pub(super) struct Request {
     pub(super) stages: Vec<Settings>,
     pub(super) destination: Destination,
     pub(super) picture: Option<OutputFile>,
-    pub(super) summary: Summary,
+    pub(super) told: Told,
     pub(super) progress: Manner,
     pub(super) require: bool,
 }
 
 impl Request {
     pub(super) fn of(arguments: OptimiseArguments, console: &Console) -> Result<Self, Failure> {
-        let every = interval(arguments.progress_every)?;
+        let every = duration("--progress-every", arguments.progress_every, 1.0)?;
         let stages = stages(&arguments)?;
         let (quiet, force) = (arguments.quiet, arguments.force);
-        let picture = arguments.picture.map(|path| OutputFile::checked(path, force));
+        let picture = arguments.picture.map(|path| OutputFile::picture(path, force));
         Ok(Self {
             file: input::design(&arguments.design)?,
             stages,
             picture: picture.transpose()?,
             destination: Destination::of(arguments.output, arguments.force),
-            summary: match (quiet, arguments.json) {
-                (true, _) => Summary::None,
-                (false, true) => Summary::Json,
-                (false, false) => Summary::Text,
-            },
+            told: Told::of(quiet, arguments.json),
             progress: Manner::of(
                 if quiet { ProgressArgument::None } else { arguments.progress },
                 every,

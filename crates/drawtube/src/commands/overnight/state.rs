@@ -7,9 +7,11 @@ use driver::run::Survey;
 use report::text;
 use serde_json::{Value, json};
 
+use crate::arguments::OvernightArguments;
 use crate::console::Console;
 use crate::exit_status::ExitStatus;
 use crate::failure::Failure;
+use crate::output_file::OutputFile;
 
 /// What a run folder tells.
 pub(super) struct State {
@@ -19,12 +21,15 @@ pub(super) struct State {
 }
 
 pub(super) fn show(
-    run: &Path,
-    keep: usize,
-    json: bool,
+    arguments: OvernightArguments,
     console: &Console,
 ) -> Result<ExitStatus, Failure> {
-    let state = State::of(run, keep)?;
+    let OvernightArguments { run, keep, json, picture, force, .. } = arguments;
+    let output = picture.map(|path| OutputFile::picture(path, force)).transpose()?;
+    let state = State::of(&run, usize::from(keep))?;
+    if let Some(output) = output {
+        super::picture::draw(&state.list, state.gathering.finds(), &output, console)?;
+    }
     if json { console.print_json(&state.document()) } else { console.print(&state.text()) }?;
     Ok(ExitStatus::Done)
 }

@@ -6,8 +6,9 @@ use driver::overnight::Finds;
 use driver::run::{Finished, Saving, TakenUp, Tally, Watcher};
 use driver::search::StartResult;
 
-use super::request::{Request, Told};
+use super::request::Request;
 use crate::run_progress::RunTeller;
+use crate::told::Told;
 
 /// How many merits a line of progress tells.
 const BEST_FEW: usize = 3;
@@ -27,7 +28,7 @@ impl<'a> NightWatch<'a> {
             teller,
             stop,
             finds: Finds::new(usize::from(request.keep)),
-            quiet: request.told == Told::Nothing,
+            quiet: request.run_as.told == Told::Nothing,
             run: request.run.display().to_string(),
         }
     }

@@ -39,7 +39,10 @@ impl Request {
                 constraint: "at least 1",
             });
         }
-        let changes = arguments.change.iter().map(|text| Change::read("--change", text));
+        let file = input::design(&arguments.design)?;
+        let document = file.document().value();
+        let changes = arguments.change.iter();
+        let changes = changes.map(|text| Change::read("--change", text, document));
         let changes = changes.collect::<Result<_, _>>()?;
         let task = match (equivalents, tool_radii, batch) {
             (Some(glass), ..) => Task::Equivalents { glass, most },
@@ -48,7 +51,7 @@ impl Request {
             _ => Task::Stages,
         };
         Ok(Self {
-            file: input::design(&arguments.design)?,
+            file,
             changes,
             made: arguments.made,
             task,

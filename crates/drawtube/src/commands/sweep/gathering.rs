@@ -2,7 +2,6 @@
 
 use std::path::Path;
 
-use driver::design_file::DesignFile;
 use driver::run::{ResultsFolder, Survey};
 use driver::sweep::{PlanFile, SweepGathering, SweepResults};
 use report::text;
@@ -12,19 +11,21 @@ use surface_model::document::Document;
 use crate::console::Console;
 use crate::exit_status::ExitStatus;
 use crate::failure::Failure;
+use crate::output_file::OutputFile;
 
 /// Puts together what the surveys hold, writes it into the folder at `output`, and prints it.
 pub(crate) fn gather(
     surveys: &[Survey],
     output: &Path,
     as_json: bool,
+    picture: Option<&OutputFile>,
     console: &Console,
 ) -> Result<ExitStatus, Failure> {
     let Some(first) = surveys.first() else { return Ok(ExitStatus::NothingToDo) };
     let plan_file = PlanFile::read(Document::parse(first.run.asked.name.as_str(), &first.asked)?)?;
-    let design = first.run.settings.get("design").cloned().unwrap_or_default();
-    let design = DesignFile::read(Document::from_value(plan_file.design(), design))?;
-    let plan = plan_file.resolve(&design)?;
+    let about = first.run.settings.get(plan_file.subject_key()).cloned().unwrap_or_default();
+    let subject = plan_file.read_subject(Document::from_value(plan_file.subject_name(), about))?;
+    let plan = plan_file.resolve(&subject)?;
     let gathering = SweepGathering::of(surveys, plan.points.len() as u64)?;
     let (of, missing) = (gathering.of_parts(), gathering.missing());
     let results = SweepResults::new(&plan, gathering.into_points());
@@ -34,6 +35,9 @@ pub(crate) fn gather(
     }
     let folder = ResultsFolder::open(output, first)?;
     folder.write_results(&results.files().map_err(Failure::Table)?)?;
+    if let Some(output) = picture {
+        super::draw(&results, output, console)?;
+    }
     if as_json {
         let parts = missing
             .iter()

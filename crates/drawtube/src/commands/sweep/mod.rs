@@ -13,10 +13,12 @@ use crate::arguments::SweepArguments;
 use crate::console::Console;
 use crate::exit_status::ExitStatus;
 use crate::failure::Failure;
+use crate::output_file::OutputFile;
 use crate::run_progress::RunTeller;
 use crate::signals::StopSignal;
 
-use request::{Request, Run, Told};
+use crate::told::Told;
+use request::{Request, Run};
 use watcher::SweepWatch;
 
 pub(crate) fn run(arguments: SweepArguments, console: &Console) -> Result<ExitStatus, Failure> {
@@ -35,19 +37,27 @@ pub(crate) fn run(arguments: SweepArguments, console: &Console) -> Result<ExitSt
         return Err(Failure::Unsaved { path: run.path.clone(), source });
     }
     if let Some(output) = &request.picture {
-        match sweep_picture(&results) {
-            Some(picture) => output.write(&picture)?,
-            None => console.say("drawtube: no picture: it takes one or two axes, or a front"),
-        }
+        draw(&results, output, console)?;
     }
     tell(&request, run, &folder, &end, &results, console)?;
     Ok(status(&request, &signals, &end, &results))
 }
 
+/// Draws the points, where there is anything to draw.
+fn draw(results: &SweepResults, output: &OutputFile, console: &Console) -> Result<(), Failure> {
+    match sweep_picture(results) {
+        Some(picture) => output.write(&picture),
+        None => {
+            console.say("drawtube: no picture: it takes one or two axes, or a front");
+            Ok(())
+        }
+    }
+}
+
 /// Lists the points.
 fn dry_run(request: &Request, console: &Console) -> Result<ExitStatus, Failure> {
     let plan = request.sweep.plan();
-    match request.told {
+    match request.run_as.told {
         Told::Json => {
             let points: Vec<serde_json::Value> = plan
                 .points
@@ -74,11 +84,11 @@ fn optimise(
     folder: &RunFolder,
     signals: &StopSignal,
     console: &Console,
-) -> Result<(RunEnd, Vec<(u64, PointResult)>), Failure> {
-    let teller =
-        RunTeller::new(request.progress, console, "points", None).map_err(Failure::Signals)?;
+) -> Result<(RunEnd, Vec<PointResult>), Failure> {
+    let teller = RunTeller::new(request.run_as.progress, console, "points", None)
+        .map_err(Failure::Signals)?;
     let mut watch = SweepWatch::new(teller, signals.flag(), request, &run.path);
-    let end = perform(folder, &request.sweep, &run.budget, run.threads, &mut watch);
+    let end = perform(folder, &request.sweep, &run.budget, request.run_as.threads, &mut watch);
     Ok((end?, watch.over()))
 }
 
@@ -90,7 +100,7 @@ fn tell(
     results: &SweepResults,
     console: &Console,
 ) -> Result<(), Failure> {
-    match request.told {
+    match request.run_as.told {
         Told::Nothing => Ok(()),
         Told::Json => console.print_json(results),
         Told::Text => {

@@ -1,33 +1,22 @@
 //! What `sweep` is asked for, with everything decided.
 
 use std::path::{Path, PathBuf};
-use std::time::Duration;
 
 use driver::run::{Ask, Budget};
 use driver::sweep::{PlanFile, Sweep, ask};
 
-use crate::arguments::{ProgressArgument, SweepArguments};
+use crate::arguments::SweepArguments;
 use crate::console::Console;
 use crate::failure::Failure;
 use crate::input::{self, STANDARD_STREAM};
 use crate::output_file::OutputFile;
-use crate::part;
-use crate::progress::Manner;
+use crate::run_request::RunRequest;
 
-/// What is printed at the end.
-#[derive(Debug, Clone, Copy, PartialEq, Eq)]
-pub(super) enum Told {
-    Text,
-    Json,
-    Nothing,
-}
-
-/// Where and how points are run.
+/// Where and what is run.
 pub(super) struct Run {
     pub(super) path: PathBuf,
     pub(super) ask: Ask,
     pub(super) budget: Budget,
-    pub(super) threads: usize,
 }
 
 /// What is asked for.
@@ -35,49 +24,32 @@ pub(super) struct Request {
     pub(super) sweep: Sweep,
     /// None if the points are only to be listed.
     pub(super) run: Option<Run>,
-    pub(super) told: Told,
+    /// How it is run and told.
+    pub(super) run_as: RunRequest,
     pub(super) picture: Option<OutputFile>,
-    pub(super) progress: Manner,
     pub(super) require: bool,
 }
 
 impl Request {
     pub(super) fn of(arguments: SweepArguments, console: &Console) -> Result<Self, Failure> {
-        let every = duration("--progress-every", arguments.progress_every, 1.0)?;
-        let session_time = arguments
-            .time_limit
-            .map(|minutes| duration("--time-limit", minutes, 60.0))
-            .transpose()?;
-        let share = part::share(arguments.part.as_deref(), &|name| std::env::var(name).ok())?;
+        let run_as = RunRequest::of(&arguments.run_as, arguments.json, console)?;
+        let (share, session_time) = (run_as.share, run_as.session_time);
         let plan_file = PlanFile::read(input::document(&arguments.plan)?)?;
-        let design = input::design(&beside(&arguments.plan, plan_file.design()))?;
-        let plan = plan_file.resolve(&design)?;
-        let machine = std::thread::available_parallelism().map_or(1, usize::from);
+        let named = beside(&arguments.plan, plan_file.subject_name());
+        let subject = plan_file.read_subject(input::document(&named)?)?;
+        let plan = plan_file.resolve(&subject)?;
         let units = Some(plan.points.len() as u64);
         let run = arguments.run.map(|path| Run {
             path,
-            ask: ask(&plan_file, &design, share),
+            ask: ask(&plan_file, &subject, share),
             budget: Budget { units, session_time, ..Budget::default() },
-            threads: arguments.threads.map_or(machine, usize::from),
         });
-        let quiet = arguments.quiet;
+        let picture = arguments.picture.map(|path| OutputFile::picture(path, arguments.force));
         Ok(Self {
-            sweep: Sweep::new(plan, design),
+            sweep: Sweep::new(plan, subject, share.of()),
             run,
-            picture: arguments
-                .picture
-                .map(|path| OutputFile::checked(path, arguments.force))
-                .transpose()?,
-            told: match (quiet, arguments.json) {
-                (true, _) => Told::Nothing,
-                (false, true) => Told::Json,
-                (false, false) => Told::Text,
-            },
-            progress: Manner::of(
-                if quiet { ProgressArgument::None } else { arguments.progress },
-                every,
-                console,
-            ),
+            run_as,
+            picture: picture.transpose()?,
             require: arguments.require,
         })
     }
@@ -89,12 +61,4 @@ fn beside(plan: &Path, name: &str) -> PathBuf {
         Some(folder) if plan.as_os_str() != STANDARD_STREAM => folder.join(name),
         _ => PathBuf::from(name),
     }
-}
-
-fn duration(option: &'static str, value: f64, seconds: f64) -> Result<Duration, Failure> {
-    Duration::try_from_secs_f64(value * seconds).map_err(|_| Failure::Argument {
-        option,
-        found: value.to_string(),
-        constraint: "a number, zero or positive",
-    })
 }

@@ -7,8 +7,9 @@ use std::sync::atomic::{AtomicBool, Ordering};
 use driver::run::{Finished, Saving, TakenUp, Tally, Watcher};
 use driver::sweep::{PointResult, Sweep};
 
-use super::request::{Request, Told};
+use super::request::Request;
 use crate::run_progress::RunTeller;
+use crate::told::Told;
 
 /// Takes what the points come to.
 pub(super) struct SweepWatch<'a> {
@@ -34,15 +35,15 @@ impl<'a> SweepWatch<'a> {
             sweep: &request.sweep,
             points: BTreeMap::new(),
             best: None,
-            quiet: request.told == Told::Nothing,
+            quiet: request.run_as.told == Told::Nothing,
             run: run.display().to_string(),
         }
     }
 
     /// All finished points, in order of their numbers.
-    pub(super) fn over(self) -> Vec<(u64, PointResult)> {
+    pub(super) fn over(self) -> Vec<PointResult> {
         self.teller.finish();
-        self.points.into_iter().collect()
+        self.points.into_values().collect()
     }
 }
 
@@ -52,10 +53,11 @@ impl Watcher<PointResult> for SweepWatch<'_> {
     }
 
     fn found(&mut self, finished: Finished<PointResult>) {
-        self.sweep.note(finished.number, &finished.done);
-        let merit = finished.done.reached.as_ref().map(|reached| reached.merit);
+        let point = finished.done;
+        self.sweep.note(&point);
+        let merit = point.reached.as_ref().map(|reached| reached.merit);
         self.best = [self.best, merit].into_iter().flatten().reduce(f64::min);
-        self.points.insert(finished.number, finished.done);
+        self.points.insert(point.number, point);
     }
 
     fn tick(&mut self, tally: &Tally) {

@@ -33,7 +33,10 @@ fn another_run_is_told_by_what_differs_and_left_alone() {
     let before = std::fs::read(folder.path().join("journal.jsonl")).unwrap();
     let base = ask(Share::WHOLE);
     let others = [
-        (Ask { kind: "words", ..base.clone() }, "the kind of run is digits there and words here"),
+        (
+            Ask { kind: "words", ..base.clone() },
+            "the kind of run is \"digits\" there and \"words\" here",
+        ),
         (Ask { text: b"{}".to_vec(), ..base.clone() }, "it was asked about another file"),
         (Ask { seed: 8, ..base.clone() }, "the seed is 7 there and 8 here"),
         (Ask { settings: json!({}), ..base.clone() }, "the settings is"),

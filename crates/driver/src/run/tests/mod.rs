@@ -1,5 +1,6 @@
 //! Runs of a work that takes no time, so that thousands of interruptions can be tried.
 
+mod broken_off;
 mod damage;
 mod folders;
 mod sameness;

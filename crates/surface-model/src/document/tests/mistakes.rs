@@ -4,6 +4,7 @@ use serde::Deserialize;
 use serde_json::json;
 
 use super::*;
+use crate::document::complaint::MOST_COMPLAINTS;
 
 /// All that is said about the sample after `from` has become `to`, up to the typed reading.
 fn told(from: &str, to: &str) -> String {

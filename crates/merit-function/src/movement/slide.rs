@@ -5,7 +5,7 @@ use surface_model::housing::Anchor;
 
 /// The groups of a design on their common axis.
 #[derive(Debug, Clone)]
-pub(super) struct Slide {
+pub struct Slide {
     /// Per group, first vertex to last vertex, mm.
     lengths_mm: Vec<f64>,
     /// Per group, its one position if it stands still, mm.
@@ -17,7 +17,7 @@ pub(super) struct Slide {
 impl Slide {
     /// The groups of a design. Without any fixed group the first one stands still, at the front
     /// datum: only distances matter then.
-    pub(super) fn of(design: &Design) -> Self {
+    pub fn of(design: &Design) -> Self {
         let positions = design.all_positions_mm();
         let at_first_state = |group: usize| positions.first().map(|state| state[group]);
         let anchored = |group: usize| {
@@ -35,13 +35,31 @@ impl Slide {
         }
     }
 
+    /// Lengths of all groups, mm.
+    pub(crate) fn lengths_mm(&self) -> &[f64] {
+        &self.lengths_mm
+    }
+
+    /// Where a group stands that does not move, mm.
+    pub(crate) fn still_mm(&self, group: usize) -> Option<f64> {
+        self.still_mm.get(group).copied().flatten()
+    }
+
+    /// Takes a group's length and, if it does not move, where it stands, mm.
+    pub(crate) fn fit(&mut self, group: usize, length_mm: f64, still_mm: f64) {
+        self.lengths_mm[group] = length_mm;
+        if let Some(at) = &mut self.still_mm[group] {
+            *at = still_mm;
+        }
+    }
+
     /// The groups that move, from left to right.
-    pub(super) fn moving(&self) -> &[usize] {
+    pub fn moving(&self) -> &[usize] {
         &self.moving
     }
 
     /// Positions of all groups from those of the moving ones, mm.
-    pub(super) fn positions_mm(&self, moving_mm: &[f64]) -> Vec<f64> {
+    pub fn positions_mm(&self, moving_mm: &[f64]) -> Vec<f64> {
         let mut moving = moving_mm.iter().copied();
         self.still_mm
             .iter()
@@ -50,19 +68,19 @@ impl Slide {
     }
 
     /// Air between neighbouring groups, mm; negative where they overlap.
-    pub(super) fn spacings_mm(&self, moving_mm: &[f64]) -> Vec<f64> {
+    pub fn spacings_mm(&self, moving_mm: &[f64]) -> Vec<f64> {
         let positions = self.positions_mm(moving_mm);
         let pairs = positions.windows(2).zip(&self.lengths_mm);
         pairs.map(|(pair, length)| pair[1] - pair[0] - length).collect()
     }
 
     /// The moving groups' part of the positions of all groups.
-    pub(super) fn pick(&self, positions_mm: &[f64]) -> Vec<f64> {
+    pub fn pick(&self, positions_mm: &[f64]) -> Vec<f64> {
         self.moving.iter().map(|&group| positions_mm[group]).collect()
     }
 
     /// The derivative by every group's position, from that by every spacing.
-    pub(super) fn by_position(&self, by_spacing: &[f64]) -> Vec<f64> {
+    pub fn by_position(&self, by_spacing: &[f64]) -> Vec<f64> {
         let spacing = |after: Option<usize>| after.and_then(|k| by_spacing.get(k)).copied();
         let groups = 0..self.lengths_mm.len();
         groups

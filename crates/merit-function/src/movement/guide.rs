@@ -7,7 +7,7 @@
 
 /// A curve through points with ascending abscissae.
 #[derive(Debug, Clone, PartialEq)]
-pub(super) struct MonotoneCubic {
+pub struct MonotoneCubic {
     at: Vec<f64>,
     values: Vec<f64>,
     slopes: Vec<f64>,
@@ -15,7 +15,7 @@ pub(super) struct MonotoneCubic {
 
 impl MonotoneCubic {
     /// Through at least two points whose abscissae ascend.
-    pub(super) fn through(at: &[f64], values: &[f64]) -> Self {
+    pub fn through(at: &[f64], values: &[f64]) -> Self {
         let steps: Vec<f64> = at.windows(2).map(|pair| pair[1] - pair[0]).collect();
         let rises = values.windows(2).zip(&steps).map(|(pair, step)| (pair[1] - pair[0]) / step);
         let rises: Vec<f64> = rises.collect();
@@ -42,7 +42,7 @@ impl MonotoneCubic {
     }
 
     /// Value and derivative; beyond the ends the end cubics go on.
-    pub(super) fn at(&self, x: f64) -> (f64, f64) {
+    pub fn at(&self, x: f64) -> (f64, f64) {
         let last = self.at.len().saturating_sub(2);
         let i = self.at.partition_point(|&at| at <= x).saturating_sub(1).min(last);
         let h = self.at[i + 1] - self.at[i];

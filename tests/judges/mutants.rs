@@ -1,13 +1,12 @@
 //! Every way to spoil one value of a file.
 
-use proptest::sample::Index;
 use serde_json::{Map, Number, Value, json};
 
 /// A spoilt file.
-pub(crate) struct Mutant {
+pub struct Mutant {
     /// What was done to it.
-    pub(crate) name: String,
-    pub(crate) text: String,
+    pub name: String,
+    pub text: String,
 }
 
 /// A key that stands for another of the same name.
@@ -16,7 +15,7 @@ const AGAIN: &str = "again:";
 const RAW: &str = "raw:";
 
 /// Every file that differs from this one in one place.
-pub(crate) fn all(file: &str, text: &str) -> Vec<Mutant> {
+pub fn all(file: &str, text: &str) -> Vec<Mutant> {
     let root: Value = serde_json::from_str(text).unwrap();
     let names = names(&root);
     let mut mutants = Vec::new();
@@ -29,12 +28,16 @@ pub(crate) fn all(file: &str, text: &str) -> Vec<Mutant> {
     mutants
 }
 
-/// One of them, by the place and the kind of change.
-pub(crate) fn one(root: &Value, place: Index, change: Index) -> String {
+/// One of them, by the place and the kind of change: each is chosen from so many.
+pub fn one(
+    root: &Value,
+    place: impl FnOnce(usize) -> usize,
+    change: impl FnOnce(usize) -> usize,
+) -> String {
     let pointers = pointers(root);
-    let pointer = &pointers[place.index(pointers.len())];
+    let pointer = &pointers[place(pointers.len())];
     let mut changes = replacements(root.pointer(pointer).unwrap(), &names(root));
-    let (what, new) = changes.swap_remove(change.index(changes.len()));
+    let (what, new) = changes.swap_remove(change(changes.len()));
     spoilt(root, pointer, &what, new).text
 }
 

@@ -1,6 +1,5 @@
-//! What must hold of any file, however it is spoilt.
+//! What must hold of any design file, however it is spoilt.
 
-use std::fmt::Debug;
 use std::time::{Duration, Instant};
 
 use driver::design_file::DesignFile;
@@ -9,11 +8,13 @@ use driver::solve::{Settings, Unwatched};
 use merit_function::assessment::{Assessment, assess};
 use merit_function::block::BlockProblem;
 use merit_function::problem::MeritFunction;
-use surface_model::document::{Complaints, Document};
+use surface_model::document::Document;
+
+use super::verdict::{finite, holds, refusal};
 
 /// How far a file came.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, Hash)]
-pub(crate) enum Came {
+pub enum Came {
     /// Refused with its places told.
     Refused,
     /// Read and assessed, but not to be optimised: a typed error said why.
@@ -31,7 +32,7 @@ const LONGEST: Duration = Duration::from_secs(20);
 ///
 /// # Errors
 /// What did not hold, as a sentence.
-pub(crate) fn judge(bytes: &[u8], iterations: u64) -> Result<Came, String> {
+pub fn judge(bytes: &[u8], iterations: u64) -> Result<Came, String> {
     let began = Instant::now();
     let read = Document::parse("spoilt.json", bytes).and_then(DesignFile::read);
     holds(began.elapsed() < LONGEST_READ, || format!("read in {:?}", began.elapsed()))?;
@@ -43,51 +44,6 @@ pub(crate) fn judge(bytes: &[u8], iterations: u64) -> Result<Came, String> {
             Ok(came)
         }
     }
-}
-
-fn holds(truth: bool, otherwise: impl FnOnce() -> String) -> Result<(), String> {
-    if truth { Ok(()) } else { Err(otherwise()) }
-}
-
-/// Every complaint has a line and a column, and nothing that upsets a terminal.
-pub(crate) fn refusal(complaints: &Complaints) -> Result<(), String> {
-    let json = complaints.to_json();
-    let problems = json["problems"].as_array().ok_or("no list of problems")?;
-    holds(!problems.is_empty(), || "refused without a complaint".into())?;
-    for problem in problems {
-        // What is wrong with the whole of a file has no place of its own.
-        let placed = problem["line"].is_u64() && problem["column"].is_u64()
-            || problem["found"] == "the text is in UTF-16"
-            || problem["found"] == "the file is empty";
-        holds(placed, || format!("no place: {problem}"))?;
-        holds(problem["found"].as_str() != Some(""), || format!("no words: {problem}"))?;
-    }
-    let told = complaints.to_string();
-    let quiet = told.chars().all(|c| c == '\n' || !c.is_control());
-    holds(quiet, || format!("control characters: {told:?}"))?;
-    holds(told.len() < 60_000, || format!("{} bytes of complaints", told.len()))
-}
-
-/// The words `NaN` and `inf` outside quotes in what `Debug` writes: unlike JSON, it hides none.
-pub(crate) fn finite(what: &str, value: &impl Debug) -> Result<(), String> {
-    let text = format!("{value:?}");
-    let mut quoted = false;
-    let mut escaped = false;
-    let bare: String = text
-        .chars()
-        .filter(|&c| {
-            let end = c == '"' && !escaped;
-            escaped = quoted && c == '\\' && !escaped;
-            quoted ^= end;
-            !quoted && !end
-        })
-        .collect();
-    let words = bare.split(|c: char| !c.is_alphanumeric() && c != '.');
-    let bad = words.into_iter().find(|word| matches!(*word, "NaN" | "inf"));
-    holds(bad.is_none(), || {
-        let at = bare.find("NaN").or_else(|| bare.find("inf")).unwrap_or(0);
-        format!("{what} holds {bad:?}: …{}…", &bare[at.saturating_sub(80)..bare.len().min(at + 20)])
-    })
 }
 
 fn assessment(what: &str, assessment: &Assessment) -> Result<(), String> {

@@ -5,7 +5,7 @@ use serde_json::Value;
 use surface_model::document::{Complaints, Document};
 
 /// Name and text of each.
-pub(crate) const DESIGNS: [(&str, &str); 5] = [
+pub const DESIGNS: [(&str, &str); 5] = [
     ("river", include_str!("../../configs/river-lidar-2x-6x.json")),
     ("pairs", include_str!("../../configs/two-colour-pairs.json")),
     ("collimator", include_str!("../../configs/moving-collimator.json")),
@@ -14,14 +14,14 @@ pub(crate) const DESIGNS: [(&str, &str); 5] = [
 ];
 
 /// A shipped design's document.
-pub(crate) fn value(name: &str) -> Value {
+pub fn value(name: &str) -> Value {
     let text = DESIGNS.iter().find(|(other, _)| *other == name).unwrap().1;
     serde_json::from_str(text).unwrap()
 }
 
 /// A shipped design's document with the values at some pointers replaced; the last step of a
 /// pointer may be a new key.
-pub(crate) fn changed(name: &str, changes: &[(&str, Value)]) -> Value {
+pub fn changed(name: &str, changes: &[(&str, Value)]) -> Value {
     let mut root = value(name);
     for (pointer, value) in changes {
         let (parent, key) = pointer.rsplit_once('/').unwrap();
@@ -35,11 +35,16 @@ pub(crate) fn changed(name: &str, changes: &[(&str, Value)]) -> Value {
 }
 
 /// A document read as a design file.
-pub(crate) fn read(value: Value) -> Result<DesignFile, Complaints> {
+pub fn read(value: Value) -> Result<DesignFile, Complaints> {
     DesignFile::read(Document::from_value("changed.json", value))
 }
 
 /// The same, with the complaints as people read them.
-pub(crate) fn told(value: Value) -> String {
+pub fn told(value: Value) -> String {
     read(value).map_or_else(|complaints| complaints.to_string(), |_| "nothing".to_owned())
+}
+
+/// A text read as a design file.
+pub fn design(text: &str) -> DesignFile {
+    read(serde_json::from_str(text).unwrap()).unwrap()
 }

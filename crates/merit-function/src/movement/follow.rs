@@ -23,8 +23,9 @@ use super::slide::Slide;
 const ARRIVED_MM: f64 = 1e-9;
 /// Ratio error, relative, and collimation, rad, that are left at most.
 const LEFT: (f64, f64) = (1e-9, 1e-9);
-/// Newton steps from a designed state onto the curve, and from one point of it to the next.
-pub(super) const FROM_A_STATE: usize = 40;
+/// Newton steps from a designed state onto the curve.
+pub const FROM_A_STATE: usize = 40;
+/// Newton steps from one point of it to the next.
 const FROM_A_POINT: usize = 8;
 /// Halvings of a Newton step.
 const HALVINGS: usize = 12;
@@ -37,35 +38,41 @@ const SHORTEST: f64 = 1e-7;
 
 /// A point of the curve.
 #[derive(Debug, Clone)]
-pub(super) struct Point {
-    pub(super) ratio: f64,
+pub struct Point {
+    /// The ratio.
+    pub ratio: f64,
     /// Positions of the moving groups, mm.
-    pub(super) moving_mm: Vec<f64>,
+    pub moving_mm: Vec<f64>,
     /// Their derivatives by the ratio, mm.
-    pub(super) slopes_mm: Vec<f64>,
+    pub slopes_mm: Vec<f64>,
     /// What was held, and its derivatives.
-    pub(super) held: Held,
+    pub held: Held,
     /// Sign of the determinant of J: it changes where the curve turns back.
-    pub(super) sense: f64,
+    pub sense: f64,
 }
 
 /// Why there is no point, or no further one.
-#[derive(Debug, Clone, Copy, PartialEq)]
-pub(super) enum Stop {
+#[derive(Debug, Clone, Copy, PartialEq, thiserror::Error)]
+pub enum Stop {
     /// A ray does not get through.
+    #[error(transparent)]
     Fault(HeldFault),
     /// The equations cannot be solved there: the curve turns back, or never was.
+    #[error("no positions hold ratio and collimation there")]
     NoSolution,
 }
 
 /// The equations of the curve.
-pub(super) struct Equations<'a> {
-    pub(super) slide: &'a Slide,
-    pub(super) gauge: Gauge,
+#[derive(Debug)]
+pub struct Equations {
+    /// How the groups slide.
+    pub slide: Slide,
+    /// What measures ratio and collimation.
+    pub gauge: Gauge,
     /// Whether collimation is among them: not with one moving group.
-    pub(super) hold_collimation: bool,
+    pub hold_collimation: bool,
     /// Among the moving groups, those that follow a guide.
-    pub(super) guides: Vec<(usize, MonotoneCubic)>,
+    pub guides: Vec<(usize, MonotoneCubic)>,
 }
 
 /// Length of the residuals, a milliradian counted as much as the whole ratio.
@@ -80,7 +87,7 @@ struct Linear {
     held: Held,
 }
 
-impl Equations<'_> {
+impl Equations {
     fn linear(&mut self, ratio: f64, moving_mm: &[f64]) -> Result<Linear, Stop> {
         let held = self.gauge.measure(&self.slide.spacings_mm(moving_mm)).map_err(Stop::Fault)?;
         let count = moving_mm.len();
@@ -108,13 +115,11 @@ impl Equations<'_> {
         Ok(Linear { residuals, jacobian, held })
     }
 
-    /// Newton's method from a place near the curve.
-    pub(super) fn solve(
-        &mut self,
-        ratio: f64,
-        from_mm: &[f64],
-        steps: usize,
-    ) -> Result<Point, Stop> {
+    /// Newton's method from a place near the curve, in at most so many steps.
+    ///
+    /// # Errors
+    /// See [`Stop`].
+    pub fn solve(&mut self, ratio: f64, from_mm: &[f64], steps: usize) -> Result<Point, Stop> {
         let mut moving_mm = from_mm.to_vec();
         let mut linear = self.linear(ratio, &moving_mm)?;
         for _ in 0..steps {
@@ -185,11 +190,7 @@ impl Equations<'_> {
 
     /// Follows the curve from a point over the ratios asked for, in their order. Returns the
     /// points reached and, if not all were, the last ratio that was reached and why.
-    pub(super) fn follow(
-        &mut self,
-        start: &Point,
-        ratios: &[f64],
-    ) -> (Vec<Point>, Option<(f64, Stop)>) {
+    pub fn follow(&mut self, start: &Point, ratios: &[f64]) -> (Vec<Point>, Option<(f64, Stop)>) {
         let mut points = Vec::new();
         let mut at = start.clone();
         let way = ratios.last().map_or(0.0, |last| (last - start.ratio).abs());

@@ -1,0 +1,3 @@
+#![no_main]
+
+fuzz::documents!(|bytes: &[u8]| checks::judges::design::judge(bytes, 3));

@@ -1,0 +1,3 @@
+#![no_main]
+
+fuzz::inputs!(checks::judges::numbers::judge);

@@ -1,0 +1,3 @@
+#![no_main]
+
+fuzz::inputs!(checks::judges::retune::judge);

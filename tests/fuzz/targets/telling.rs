@@ -1,0 +1,3 @@
+#![no_main]
+
+fuzz::documents!(checks::judges::telling::judge);
