@@ -18,7 +18,7 @@ fn every_limit_when_asked() {
     let few = run(&format!("assess {RIVER}")).out.lines().count();
     let all = run(&format!("assess {RIVER} --all"));
     assert!(all.out.lines().count() > few);
-    assert!(all.out.contains("/states/2x/spacings_mm/1"));
+    assert!(all.out.contains("2x runner to exit"));
 }
 
 #[test]

@@ -65,7 +65,7 @@ impl Parts<'_> {
 
     /// The option without the sign of its value.
     fn option(&self) -> String {
-        bare(&self.one(ContextKind::InvalidArg))
+        named(&self.one(ContextKind::InvalidArg))
     }
 
     fn no_command(&self) -> (String, Option<String>) {
@@ -168,7 +168,7 @@ fn bare(argument: &str) -> String {
 
 /// An argument by its name alone.
 fn named(argument: &str) -> String {
-    match argument.strip_prefix('<').and_then(|rest| rest.split('>').next()) {
+    match argument.strip_prefix(['<', '[']).and_then(|rest| rest.split(['>', ']']).next()) {
         Some(name) => name.to_owned(),
         None => bare(argument),
     }

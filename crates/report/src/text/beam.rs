@@ -68,7 +68,7 @@ const NAMES: [(Column, &str); 2] = [(Column::Left, "state"), (Column::Right, "wa
 fn exits(beams: &[BeamAssessment]) -> String {
     let heads = [
         (Column::Right, "real\nbeam mm"),
-        (Column::Right, "waist m\nfrom exit"),
+        (Column::Right, "waist\nm from\nexit"),
         (Column::Right, "diver-\ngence\nmrad"),
         (Column::Right, "M²\nbehind"),
         (Column::Right, "on axis\nfar off"),
