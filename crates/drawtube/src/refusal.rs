@@ -109,6 +109,7 @@ impl Parts<'_> {
             told if told.contains("digit found in string") || told.contains("integer") => {
                 format!("{option}: {quoted} is not a whole number")
             }
+            "number would be zero for non-zero type" => format!("{option} must be at least 1"),
             told if told.starts_with(&value) => format!("{option}: {told}"),
             told => format!("{option}: {quoted} was given, but {told}"),
         };
