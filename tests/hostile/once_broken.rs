@@ -2,11 +2,15 @@
 
 use std::time::{Duration, Instant};
 
-use checks::judges::{plan, retune, run_folder};
-use serde_json::{Value, json};
-
 use checks::judges::design::{Came, judge};
-use checks::judges::shipped::changed;
+use checks::judges::shipped::{DESIGNS, changed};
+use checks::judges::{plan, retune, run_folder};
+use driver::retune::table::Table;
+use driver::sweep::{PlanFile, PointResult, SweepResults};
+use report::picture::sweep_picture;
+use report::text;
+use serde_json::{Value, json};
+use surface_model::document::Document;
 
 fn is_optimised(name: &str, changes: &[(&str, Value)]) {
     let text = changed(name, changes).to_string();
@@ -132,4 +136,84 @@ fn tables_without_end_are_told_in_time() {
     refused(format!("serial\n{}", "1,2\n".repeat(20_000)));
     let rows: String = (0..10_001).map(|row| format!("{row}\n")).collect();
     refused(format!("serial\n{rows}"));
+}
+
+#[test]
+fn lines_that_end_with_a_carriage_return_are_counted_in_time() {
+    let table = format!("radius_mm\r{}", "10\r".repeat(300_000));
+    let table = soon(|| Table::read("tools.csv", table.as_bytes())).unwrap();
+    let last = table.rows().last().and_then(|row| row.first()).unwrap();
+    assert_eq!((last.position.line, last.position.column), (300_001, 1));
+}
+
+#[test]
+fn a_journal_with_the_points_of_another_sweep_is_damaged() {
+    let whole = include_str!("../fuzz/seeds/run_folder/sweep");
+    let scratch = tempfile::tempdir().unwrap();
+    let judge = |text: &str| run_folder::judge(text.as_bytes(), scratch.path());
+    assert_eq!(judge(whole), Ok(true), "the folder as it was");
+    assert_eq!(judge(include_str!("../fuzz/seeds/run_folder/overnight")), Ok(true), "the other");
+    for (from, to) in [
+        ("[\"fused-silica\",4.0]", "[\"fused-silica\",4.5]"),
+        ("[\"fused-silica\",4.0]", "[\"fused-silica\"]"),
+        ("{\"unit\":{\"number\":3", "{\"unit\":{\"number\":1"),
+        ("{\"unit\":{\"number\":3", "{\"unit\":{\"number\":9"),
+    ] {
+        let text = whole.replacen(from, to, 1);
+        assert_ne!(text, whole);
+        assert_eq!(judge(&text), Ok(false), "{to}");
+    }
+}
+
+/// Results of a plan over track and top ratio, as if every point had been optimised.
+fn swept(points: Value) -> SweepResults {
+    let range = |from: f64, to: f64, steps: &Value| {
+        let mut range = json!({ "from": from, "to": to });
+        if steps.is_number() {
+            range["steps"] = steps.clone();
+        }
+        range
+    };
+    let mut plan = json!({
+        "format": "drawtube-plan/1",
+        "design": "design.json",
+        "axes": [
+            { "at": "/housing/track_mm", "range": range(150.0, 190.0, &points["steps"]) },
+            { "at": "/states/6x/ratio", "range": range(5.0, 7.0, &points["steps"]) },
+        ],
+        "front": ["track_mm", "merit"],
+    });
+    if points["steps"].is_null() {
+        plan["sample"] = points;
+    }
+    let file = PlanFile::read(Document::from_value("plan.json", plan)).unwrap();
+    let design = Document::parse("design.json", DESIGNS[0].1.as_bytes()).unwrap();
+    let plan = file.resolve(&file.read_subject(design).unwrap()).unwrap();
+    let count = plan.points.len();
+    let point = |(number, values): (usize, &Vec<Value>)| {
+        // Each longer and better than the one before, so that none beats another.
+        let (merit, track_mm) = ((count - number) as f64, number as f64);
+        let reached = json!({ "merit": merit, "meets": false, "limits_crossed": 0,
+            "track_mm": track_mm, "iterations": 1, "design": {} });
+        let reached = serde_json::from_value(reached).unwrap();
+        let (number, values) = (number as u64, values.clone());
+        PointResult { number, values, reached: Some(reached), fault: None, no_layout: None }
+    };
+    let points = plan.points.iter().enumerate().map(point).collect();
+    SweepResults::new(&plan, points)
+}
+
+#[test]
+fn as_many_points_as_can_be_are_told_and_drawn_in_time() {
+    for points in [json!({ "kind": "sobol", "points": 100_000 }), json!({ "steps": 316 })] {
+        let results = swept(points);
+        let count = results.points.len();
+        assert_eq!(results.front.len(), count);
+        soon(|| {
+            let table = String::from_utf8(results.table().unwrap()).unwrap();
+            assert_eq!(table.lines().filter(|line| line.contains(",yes,")).count(), count);
+            assert!(text::sweep::results(&results).contains("Listed are 40 of them"));
+            assert!(sweep_picture(&results).is_some());
+        });
+    }
 }

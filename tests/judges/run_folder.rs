@@ -148,7 +148,7 @@ fn sweep(surveys: &[Survey; 1], scratch: &Path) -> Result<bool, String> {
         Ok(plan) => plan,
         Err(complaints) => return quiet(&complaints.to_string()).map(|()| false),
     };
-    let gathering = match SweepGathering::of(surveys, plan.points.len() as u64) {
+    let gathering = match SweepGathering::of(surveys, &plan) {
         Ok(gathering) => gathering,
         Err(error) => return refused(&error),
     };

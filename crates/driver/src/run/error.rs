@@ -91,4 +91,9 @@ impl RunError {
     pub(super) fn damaged(path: &Path, reason: impl Into<String>) -> Self {
         Self::Damaged { path: path.to_owned(), reason: reason.into() }
     }
+
+    /// A journal whose checksums hold, and that has a result of something else.
+    pub(crate) fn another_result(path: &Path, unit: &str) -> Self {
+        Self::damaged(path, format!("what it has of {unit} is the result of something else"))
+    }
 }

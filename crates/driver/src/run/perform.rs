@@ -144,12 +144,20 @@ impl<'a, W: Work> Session<'a, W> {
     ) -> Result<Self, RunError> {
         let path = folder.journal();
         let mut sufficed: Option<u64> = None;
+        let mut strange: Option<u64> = None;
         let read = reading::read(&path, &folder.identity(), folder.share(), &mut |unit| {
+            if !work.can_be(unit.number, &unit.done) {
+                strange = strange.or(Some(unit.number));
+                return;
+            }
             if budget.is_reached_by(work.merit(&unit.done)) {
                 sufficed = Some(sufficed.map_or(unit.number, |first| first.min(unit.number)));
             }
             watcher.found(unit);
         })?;
+        if let Some(unit) = strange {
+            return Err(RunError::another_result(&path, &work.called(unit)));
+        }
         let journal = Journal::open(&path, read.valid_bytes)?;
         watcher.taken_up(&TakenUp {
             finished: read.facts.finished,

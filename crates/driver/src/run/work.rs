@@ -25,6 +25,12 @@ pub trait Work: Sync {
         format!("unit {unit}")
     }
 
+    /// Whether a result that stands in a journal can be that of a unit.
+    fn can_be(&self, unit: u64, done: &Self::Done) -> bool {
+        let _ = (unit, done);
+        true
+    }
+
     /// How good a result is, the smaller the better, where that can be said: a budget may have a
     /// target for it.
     fn merit(&self, done: &Self::Done) -> Option<f64> {

@@ -73,7 +73,7 @@ impl Sweep {
     #[must_use]
     pub fn new(plan: Plan, subject: Subject, parts: u64) -> Self {
         let known = plan.points.iter().map(|_| Mutex::new(None)).collect();
-        Self { units: plan.order.units(parts), plan, subject, known }
+        Self { units: plan.units(parts), plan, subject, known }
     }
 
     /// The plan.
@@ -166,6 +166,12 @@ impl Work for Sweep {
         let unit = usize::try_from(unit).ok();
         let number = unit.and_then(|unit| self.units.get(unit)).ok_or(Interrupted)?;
         Ok(self.point(*number, interrupt)?.as_ref().clone())
+    }
+
+    fn can_be(&self, unit: u64, done: &PointResult) -> bool {
+        let unit = usize::try_from(unit).ok();
+        let number = unit.and_then(|unit| self.units.get(unit));
+        number.is_some_and(|&number| self.plan.has(number, done))
     }
 
     fn called(&self, unit: u64) -> String {

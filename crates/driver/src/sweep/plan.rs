@@ -7,6 +7,7 @@ use surface_model::document::{Address, Complaint, Complaints, Document, Place};
 use super::axis::{Axis, axis, complaint};
 use super::document::{PlanDocument, SampleDocument, SampleKind, plan_schema};
 use super::order::{Order, unfold};
+use super::point::PointResult;
 use super::results::Quantity;
 use super::subject::{BRIEF_KEY, DESIGN_KEY, Subject};
 use crate::brief::BriefFile;
@@ -227,4 +228,16 @@ pub struct Plan {
     pub(super) seed: u64,
     /// Two results to weigh against each other.
     pub front: Option<[Quantity; 2]>,
+}
+
+impl Plan {
+    /// The number of the point that each unit of a run in so many parts is about.
+    pub(super) fn units(&self, parts: u64) -> Vec<usize> {
+        self.order.units(parts)
+    }
+
+    /// Whether a result can be that of the point with this number.
+    pub(super) fn has(&self, number: usize, result: &PointResult) -> bool {
+        result.number == number as u64 && self.points.get(number) == Some(&result.values)
+    }
 }

@@ -1,5 +1,7 @@
 //! The results of a sweep: which there are, as a table, and the best trade between two.
 
+use std::collections::BTreeSet;
+
 use serde::Serialize;
 use serde_json::Value;
 use surface_model::document::{
@@ -207,6 +209,7 @@ impl SweepResults {
         heads.extend(NAMED.map(|(word, _)| word.to_owned()));
         heads.extend(["meets", "limits_crossed", "on_front", "fault"].map(str::to_owned));
         table.write_record(&heads)?;
+        let front: BTreeSet<u64> = self.front.iter().copied().collect();
         for point in &self.points {
             let mut row = vec![point.number.to_string()];
             row.extend(point.values.iter().map(plain));
@@ -219,7 +222,7 @@ impl SweepResults {
             row.push(
                 reached.map_or_else(String::new, |reached| reached.limits_crossed.to_string()),
             );
-            row.push(word(self.front.contains(&point.number)));
+            row.push(word(front.contains(&point.number)));
             let no_layout = point.no_layout.as_ref().map(|reason| format!("no layout: {reason}"));
             row.push(point.fault.clone().or(no_layout).unwrap_or_default());
             table.write_record(&row)?;

@@ -1,5 +1,7 @@
 //! Pictures of a sweep: a curve over one axis, a map over two, and the front of a trade.
 
+use std::collections::BTreeSet;
+
 use driver::front::front;
 
 use super::axis::{Axis, Scale};
@@ -192,9 +194,10 @@ pub fn trade(trade: &Trade, width: f64) -> Panel {
         stair.push(here);
     }
     panel.polyline(&stair, Stroke { width: 1.2, ..Stroke::series(0) });
+    let on_front: BTreeSet<usize> = front.iter().copied().collect();
     for k in (0..trade.designs.len()).filter(|&k| trade.designs[k].at.iter().all(|v| v.is_finite()))
     {
-        if !front.contains(&k) {
+        if !on_front.contains(&k) {
             panel.dot(at(k), 2.4, "#ffffff", Stroke::solid(FAINT, 1.0));
         }
     }

@@ -1,5 +1,7 @@
 //! The picture of a sweep: a curve over one axis, a map over two, and the trade that was asked for.
 
+use std::collections::{HashMap, HashSet};
+
 use driver::sweep::{PointResult, SweepResults};
 use serde_json::Value;
 use surface_model::document::Address;
@@ -12,13 +14,13 @@ use super::sweep::{SweepCurve, SweepMap, Trade, TradedDesign, sweep_curve, sweep
 use super::{PICTURE_WIDTH, Readings};
 use crate::text::sweep::value;
 
-/// Draws the finished points of a sweep, as SVG; `None` where neither one or two axes nor a trade
-/// gives anything to draw.
+/// Draws the finished points of a sweep, as SVG; `None` where neither one axis, a grid over two, nor
+/// a trade gives anything to draw.
 #[must_use]
 pub fn sweep_picture(results: &SweepResults) -> Option<String> {
     let over_axes = match results.axes.as_slice() {
         [only] => Some(over_one(results, only)),
-        [across, up] => Some(over_two(results, across, up)),
+        [across, up] => over_two(results, across, up),
         _ => None,
     };
     let panels: Vec<Panel> = over_axes.into_iter().chain(traded(results)).collect();
@@ -62,13 +64,18 @@ fn over_one(results: &SweepResults, axis: &Address) -> Panel {
     sweep_curve(&curve, PICTURE_WIDTH)
 }
 
-/// A map with a cell for every pair of values that occurs.
-fn over_two(results: &SweepResults, across: &Address, up: &Address) -> Panel {
+/// A map with a cell for every pair of values of a grid; points that were drawn have none.
+fn over_two(results: &SweepResults, across: &Address, up: &Address) -> Option<Panel> {
     let (xs, ys) = (distinct(results, 0), distinct(results, 1));
-    let cell = |x: &Value, y: &Value| {
-        let here = |point: &&PointResult| point.values.iter().eq([x, y]);
-        results.points.iter().find(here).and_then(merit)
-    };
+    if xs.len() * ys.len() > results.points_of_plan {
+        return None;
+    }
+    let merits: HashMap<[String; 2], f64> = results
+        .points
+        .iter()
+        .filter_map(|point| Some(([word(point, 0)?, word(point, 1)?], merit(point)?)))
+        .collect();
+    let cell = |x: &Value, y: &Value| merits.get(&[x.to_string(), y.to_string()]).copied();
     let map = SweepMap {
         title: MERIT.to_owned(),
         x: Axis::linear(&across.to_string(), ""),
@@ -78,17 +85,20 @@ fn over_two(results: &SweepResults, across: &Address, up: &Address) -> Panel {
         value: Axis::logarithmic("merit", ""),
         cells: ys.iter().map(|y| xs.iter().map(|x| cell(x, y)).collect()).collect(),
     };
-    sweep_map(&map, PICTURE_WIDTH)
+    Some(sweep_map(&map, PICTURE_WIDTH))
+}
+
+/// The value of a point on an axis, as JSON.
+fn word(point: &PointResult, axis: usize) -> Option<String> {
+    point.values.get(axis).map(Value::to_string)
 }
 
 /// Values along an axis, numbers in their order, anything else as it comes.
 fn distinct(results: &SweepResults, axis: usize) -> Vec<Value> {
-    let mut values: Vec<Value> = Vec::new();
-    for value in results.points.iter().filter_map(|point| point.values.get(axis)) {
-        if !values.contains(value) {
-            values.push(value.clone());
-        }
-    }
+    let mut seen = HashSet::new();
+    let all = results.points.iter().filter_map(|point| point.values.get(axis));
+    let mut values: Vec<Value> =
+        all.filter(|value| seen.insert(value.to_string())).cloned().collect();
     if values.iter().all(Value::is_number) {
         let number = |value: &Value| value.as_f64().unwrap_or(f64::INFINITY);
         values.sort_by(|a, b| number(a).total_cmp(&number(b)));

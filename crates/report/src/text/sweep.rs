@@ -1,5 +1,7 @@
 //! What `sweep` prints for people.
 
+use std::collections::BTreeSet;
+
 use driver::sweep::{Plan, PointResult, SweepResults};
 use serde_json::Value;
 use surface_model::document::Address;
@@ -79,7 +81,8 @@ fn listed(results: &SweepResults) -> Vec<&PointResult> {
     let mut best: Vec<&PointResult> = if results.front.is_empty() {
         all
     } else {
-        all.into_iter().filter(|point| results.front.contains(&point.number)).collect()
+        let front: BTreeSet<u64> = results.front.iter().copied().collect();
+        all.into_iter().filter(|point| front.contains(&point.number)).collect()
     };
     best.sort_by(|a, b| merit(a).total_cmp(&merit(b)));
     best.truncate(MOST_LISTED);

@@ -26,7 +26,7 @@ pub(crate) fn gather(
     let about = first.run.settings.get(plan_file.subject_key()).cloned().unwrap_or_default();
     let subject = plan_file.read_subject(Document::from_value(plan_file.subject_name(), about))?;
     let plan = plan_file.resolve(&subject)?;
-    let gathering = SweepGathering::of(surveys, plan.points.len() as u64)?;
+    let gathering = SweepGathering::of(surveys, &plan)?;
     let (of, missing) = (gathering.of_parts(), gathering.missing());
     let results = SweepResults::new(&plan, gathering.into_points());
     if results.points.is_empty() {

@@ -48,7 +48,7 @@ fn draw(results: &SweepResults, output: &OutputFile, console: &Console) -> Resul
     match sweep_picture(results) {
         Some(picture) => output.write(&picture),
         None => {
-            console.say("drawtube: no picture: it takes one or two axes, or a front");
+            console.say("drawtube: no picture: it takes one axis, a grid over two, or a front");
             Ok(())
         }
     }
