@@ -4,6 +4,7 @@ mod alone;
 mod assess;
 mod cam;
 mod designs;
+mod developers;
 mod extremes;
 mod glass;
 mod help;

@@ -82,7 +82,7 @@ pub struct FocusGoal {
 impl FocusGoal {
     /// What a miss of 1/m in vergence counts, in units of `within`.
     #[must_use]
-    pub fn weight_m(&self) -> f64 {
+    pub(crate) fn weight_m(&self) -> f64 {
         self.wanted_m * self.wanted_m / self.within_m
     }
 
@@ -151,8 +151,13 @@ impl Goals {
     /// Whether anything at all is wanted.
     #[must_use]
     pub fn any(&self) -> bool {
-        let single = [self.wavefront_rms_waves, self.ratio_percent, self.exit_slope_urad];
-        single.iter().any(Option::is_some) || self.of_the_real_beam() > 0
+        self.wavefront_rms_waves.is_some() || self.paraxial() + self.of_the_real_beam() > 0
+    }
+
+    /// How many goals are about the paraxial ray at the 1/e² radius.
+    #[must_use]
+    pub(crate) fn paraxial(&self) -> usize {
+        usize::from(self.ratio_percent.is_some()) + usize::from(self.exit_slope_urad.is_some())
     }
 
     /// How many goals are about the real beam.

@@ -196,14 +196,28 @@ impl LimitKind {
     pub fn tolerance(self) -> f64 {
         match self {
             Self::Steepness | Self::InternalFocus => 1e-5,
-            _ => 1e-3,
+            Self::EdgeThicknessMm
+            | Self::CentreThicknessMm
+            | Self::SpacingMm
+            | Self::AirMm
+            | Self::EdgeGapMm
+            | Self::RadiusMm
+            | Self::TravelMm
+            | Self::SlopeMmPerRatio
+            | Self::Monotonic
+            | Self::IncidenceDeg
+            | Self::TrackMm
+            | Self::FluenceJCm2
+            | Self::GhostClearanceMm
+            | Self::DoubleGhostClearanceMm
+            | Self::HousingMm => 1e-3,
         }
     }
 
     /// What a limit crossed by `by` (in its own unit) adds to the merit: nothing within its
     /// tolerance, one unit at ten times its tolerance, growing with the square.
     #[must_use]
-    pub fn merit_of_crossing(self, by: f64) -> f64 {
+    pub(crate) fn merit_of_crossing(self, by: f64) -> f64 {
         if by <= self.tolerance() { 0.0 } else { (by / (10.0 * self.tolerance())).powi(2) }
     }
 }
@@ -220,7 +234,7 @@ pub struct Range {
 impl Range {
     /// By how much a value lies outside; 0 inside.
     #[must_use]
-    pub fn crossed_by(self, value: f64) -> f64 {
+    pub(crate) fn crossed_by(self, value: f64) -> f64 {
         (self.min - value).max(value - self.max).max(0.0)
     }
 }
@@ -294,24 +308,41 @@ pub(crate) fn groups_at(design: &Design, at: &Address) -> Vec<usize> {
 impl LimitsDocument {
     /// The ranges as written, by kind.
     pub(crate) fn ranges(&self) -> [(LimitKind, Option<RangeDocument>); 14] {
+        let Self {
+            edge_thickness_mm,
+            centre_thickness_mm,
+            spacing_mm,
+            air_mm,
+            edge_gap_mm,
+            radius_mm,
+            steepness,
+            travel_mm,
+            slope_mm_per_ratio,
+            incidence_deg,
+            track_mm,
+            fluence_j_cm2,
+            ghost_clearance_mm,
+            double_ghost_clearance_mm,
+            // No ranges.
+            monotonic: _,
+            between_states: _,
+            internal_focus: _,
+        } = self;
         [
-            (LimitKind::EdgeThicknessMm, self.edge_thickness_mm),
-            (LimitKind::CentreThicknessMm, self.centre_thickness_mm),
-            (LimitKind::SpacingMm, self.spacing_mm),
-            (LimitKind::AirMm, self.air_mm),
-            (LimitKind::EdgeGapMm, self.edge_gap_mm),
-            (LimitKind::RadiusMm, self.radius_mm),
-            (LimitKind::Steepness, self.steepness),
-            (LimitKind::TravelMm, self.travel_mm),
-            (LimitKind::SlopeMmPerRatio, self.slope_mm_per_ratio.map(RangeDocument::from)),
-            (LimitKind::IncidenceDeg, self.incidence_deg),
-            (LimitKind::TrackMm, self.track_mm),
-            (LimitKind::FluenceJCm2, self.fluence_j_cm2.map(RangeDocument::from)),
-            (LimitKind::GhostClearanceMm, self.ghost_clearance_mm.map(RangeDocument::from)),
-            (
-                LimitKind::DoubleGhostClearanceMm,
-                self.double_ghost_clearance_mm.map(RangeDocument::from),
-            ),
+            (LimitKind::EdgeThicknessMm, *edge_thickness_mm),
+            (LimitKind::CentreThicknessMm, *centre_thickness_mm),
+            (LimitKind::SpacingMm, *spacing_mm),
+            (LimitKind::AirMm, *air_mm),
+            (LimitKind::EdgeGapMm, *edge_gap_mm),
+            (LimitKind::RadiusMm, *radius_mm),
+            (LimitKind::Steepness, *steepness),
+            (LimitKind::TravelMm, *travel_mm),
+            (LimitKind::SlopeMmPerRatio, slope_mm_per_ratio.map(RangeDocument::from)),
+            (LimitKind::IncidenceDeg, *incidence_deg),
+            (LimitKind::TrackMm, *track_mm),
+            (LimitKind::FluenceJCm2, fluence_j_cm2.map(RangeDocument::from)),
+            (LimitKind::GhostClearanceMm, ghost_clearance_mm.map(RangeDocument::from)),
+            (LimitKind::DoubleGhostClearanceMm, double_ghost_clearance_mm.map(RangeDocument::from)),
         ]
     }
 }

@@ -139,10 +139,9 @@ impl MeritFunction {
             }
             let bundled = first..trains.len();
             traced_in.extend(bundled.clone().zip(&state.wavelengths_nm).map(|(_, &nm)| (k, nm)));
-            let paraxial = [goals.ratio_percent, goals.exit_slope_urad];
             rows.push(
                 rays * (bundled.len() + focused.len())
-                    + paraxial.iter().flatten().count()
+                    + goals.paraxial()
                     + goals.of_the_real_beam(),
             );
             let first_nm = state.wavelengths_nm[0];

@@ -7,6 +7,8 @@ use surface_model::optics_document::OpticsDocument;
 use surface_model::place::Place;
 
 use crate::block::{BlockProblem, Bounds, Linearisation};
+use crate::goals::GoalsDocument;
+use crate::limits::LimitsDocument;
 use crate::movement::Aspect;
 use crate::problem::MeritFunction;
 use crate::variables::{FreePlace, Variables};
@@ -20,7 +22,7 @@ const LIMITS: &str = r#"{
     "double_ghost_clearance_mm": { "min": 0.5 }, "slope_mm_per_ratio": { "max": 5.0 },
     "monotonic": ["/groups/*"], "between_states": "keep" }"#;
 
-fn design(fixed: &str, track: f64, last: [f64; 2]) -> (Design, Wishes) {
+fn design(fixed: &str, track: f64, last: [f64; 2]) -> (Design, Wishes, WishesDocument) {
     let text = format!(
         r#"{{ "format": "drawtube/1", "title": "test",
         "beam": {{ "wavelengths_nm": [532.0, 1064.0], "diameter_mm": 2.4, "traced_to": 1.5,
@@ -55,7 +57,29 @@ fn design(fixed: &str, track: f64, last: [f64; 2]) -> (Design, Wishes) {
     let document = Document::parse("test", text.as_bytes()).unwrap();
     let optics: OpticsDocument = document.read().unwrap();
     let wishes: WishesDocument = document.read().unwrap();
-    (optics.resolve().unwrap(), wishes.resolve().unwrap())
+    (optics.resolve().unwrap(), wishes.resolve().unwrap(), wishes)
+}
+
+/// Limits that are ranges of one variable, which make no row.
+const BOUNDS: [&str; 4] = ["centre_thickness_mm", "air_mm", "radius_mm", "steepness"];
+
+/// A goal or limit that the designs here do not have is one whose derivative nothing holds.
+#[test]
+fn the_test_design_has_every_goal_and_every_limit() {
+    let (_, _, document) = design("[]", 150.0, [107.22, 108.22]);
+    let keys = |schema: schemars::Schema| -> Vec<String> {
+        schema.get("properties").unwrap().as_object().unwrap().keys().cloned().collect()
+    };
+    let goals = serde_json::to_value(document.goals).unwrap();
+    let own = serde_json::to_value(document.states[1].goals).unwrap();
+    for goal in keys(schemars::schema_for!(GoalsDocument)) {
+        assert!(goals.get(&goal).or(own.get(&goal)).is_some(), "no goal {goal}");
+    }
+    let limits = serde_json::to_value(&document.limits).unwrap();
+    for limit in keys(schemars::schema_for!(LimitsDocument)) {
+        let is_bound = BOUNDS.contains(&limit.as_str());
+        assert_ne!(limits.get(&limit).is_some(), is_bound, "limit {limit}");
+    }
 }
 
 fn everything(design: &Design) -> Vec<FreePlace> {
@@ -90,7 +114,7 @@ const POSITION_NOISE: f64 = 1e-8;
 const SLOPE_NOISE: f64 = 5e-6;
 
 fn check(fixed: &str, track: f64, last: [f64; 2]) {
-    let (design, wishes) = design(fixed, track, last);
+    let (design, wishes, _) = design(fixed, track, last);
     let variables = Variables::new(&design, &wishes.limits, &everything(&design)).unwrap();
     let start = variables.start().to_vec();
     let mut merit = MeritFunction::new(&design, &wishes, variables, 6).unwrap();
@@ -212,7 +236,7 @@ fn derivatives_with_the_last_two_groups_fixed() {
 
 #[test]
 fn derivatives_with_every_group_fixed_but_free_to_be_placed() {
-    let (mut design, wishes) = design("[]", 150.0, [107.22, 107.22]);
+    let (mut design, wishes, _) = design("[]", 150.0, [107.22, 107.22]);
     design.states[1].spacings_mm[0] = design.states[0].spacings_mm[0];
     design.housing.fixed = vec![true; 3];
     design.housing.track_mm = design.length_mm(&design.states[0]);
@@ -223,7 +247,7 @@ fn derivatives_with_every_group_fixed_but_free_to_be_placed() {
 
 #[test]
 fn with_both_ends_fixed_the_track_is_kept_exactly() {
-    let (design, wishes) = design(r#"["entry", "exit"]"#, 139.11, [107.22, 110.22]);
+    let (design, wishes, _) = design(r#"["entry", "exit"]"#, 139.11, [107.22, 110.22]);
     let variables = Variables::new(&design, &wishes.limits, &everything(&design)).unwrap();
     let moved: Vec<f64> = variables
         .start()
@@ -241,7 +265,7 @@ fn with_both_ends_fixed_the_track_is_kept_exactly() {
 
 #[test]
 fn glass_that_may_grow_between_fixed_groups_needs_a_spacing_that_gives_way() {
-    let (design, wishes) = design(r#"["entry", "exit"]"#, 139.11, [107.22, 110.22]);
+    let (design, wishes, _) = design(r#"["entry", "exit"]"#, 139.11, [107.22, 110.22]);
     let free: Vec<FreePlace> = everything(&design)
         .into_iter()
         .filter(|free| !matches!(free.place, Place::Spacing { .. }))

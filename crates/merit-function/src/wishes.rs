@@ -55,7 +55,7 @@ pub struct Wishes {
 
 impl Wishes {
     /// Temperatures beside the 20 °C a design is drawn at, °C.
-    pub fn other_temperatures_c(&self) -> impl Iterator<Item = &f64> {
+    pub(crate) fn other_temperatures_c(&self) -> impl Iterator<Item = &f64> {
         self.temperatures_c.iter().filter(|&&temperature_c| temperature_c != REFERENCE_C)
     }
 }
@@ -274,11 +274,19 @@ impl WishesDocument {
 }
 
 fn check_goals(at: &Address, goals: &GoalsDocument, faults: &mut Vec<WishFault>) {
+    let GoalsDocument {
+        wavefront_rms_waves,
+        ratio_percent,
+        exit_slope_urad,
+        divergence_mrad,
+        diameter_at_range_mm: range,
+        exit_focus_m: focus,
+    } = *goals;
     let all = [
-        ("wavefront_rms_waves", goals.wavefront_rms_waves),
-        ("ratio_percent", goals.ratio_percent),
-        ("exit_slope_urad", goals.exit_slope_urad),
-        ("divergence_mrad", goals.divergence_mrad),
+        ("wavefront_rms_waves", wavefront_rms_waves),
+        ("ratio_percent", ratio_percent),
+        ("exit_slope_urad", exit_slope_urad),
+        ("divergence_mrad", divergence_mrad),
     ];
     let mut check = |word: &str, key: &str, what, found: f64, sound: bool, allowed| {
         if !sound {
@@ -287,8 +295,6 @@ fn check_goals(at: &Address, goals: &GoalsDocument, faults: &mut Vec<WishFault>)
         }
     };
     let within = all.into_iter().filter_map(|(word, goal)| Some((word, goal?.within)));
-    let range = goals.diameter_at_range_mm;
-    let focus = goals.exit_focus_m;
     let within = within
         .chain(range.map(|goal| ("diameter_at_range_mm", goal.within)))
         .chain(focus.map(|goal| ("exit_focus_m", goal.within)));
@@ -309,7 +315,7 @@ fn check_goals(at: &Address, goals: &GoalsDocument, faults: &mut Vec<WishFault>)
         let allowed = "a number of metres other than 0; for a collimated beam use exit_slope_urad";
         check("exit_focus_m", "wanted", "the focus wanted", goal.wanted, sound, allowed);
     }
-    if focus.is_some() && goals.exit_slope_urad.is_some() {
+    if focus.is_some() && exit_slope_urad.is_some() {
         let error = WishError::FocusAndSlope;
         faults.push(WishFault { at: at.clone().key("exit_focus_m"), error });
     }

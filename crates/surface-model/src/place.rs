@@ -95,6 +95,17 @@ impl Place {
         }
     }
 
+    /// The surface whose shape it is a number of, beside its radius; `None` for anything else.
+    #[must_use]
+    pub fn shapes(self) -> Option<SurfaceId> {
+        match self {
+            Self::Conic(id) | Self::Asphere(id, _) => Some(id),
+            Self::Radius(_) | Self::Thickness { .. } | Self::Air { .. } | Self::Spacing { .. } => {
+                None
+            }
+        }
+    }
+
     /// The number itself: 1/mm for a radius (its curvature), mm for lengths, mm^(1−power) for an
     /// asphere coefficient.
     #[must_use]

@@ -144,7 +144,7 @@ impl RayPath {
 mod tests {
     use super::*;
     use crate::quantities::Quantity;
-    use crate::surface::Surface;
+    use crate::surface::{Surface, asphere_power};
 
     /// A pair with every kind of surface: sphere, conic, asphere, flat.
     fn train(conics: bool) -> Train {
@@ -163,24 +163,12 @@ mod tests {
         let mut surfaces = train.surfaces().to_vec();
         let mut gaps = train.gaps().to_vec();
         let mut indices = train.indices().to_vec();
-        let count = surfaces.len();
-        for i in 0..count {
-            if place == quantities.curvature(i) {
-                surfaces[i].curvature += by;
-            }
-            if i + 1 < count && place == quantities.gap(i) {
-                gaps[i] += by;
-            }
-            match quantities.at(place) {
-                Quantity::Conic(at) if at == i => surfaces[i].conic += by,
-                Quantity::Asphere(at, term) if at == i => surfaces[i].asphere[term] += by,
-                _ => {}
-            }
-        }
-        for (medium, index) in indices.iter_mut().enumerate() {
-            if place == quantities.index(medium) {
-                *index += by;
-            }
+        match quantities.at(place) {
+            Quantity::Curvature(i) => surfaces[i].curvature += by,
+            Quantity::Gap(i) => gaps[i] += by,
+            Quantity::Index(medium) => indices[medium] += by,
+            Quantity::Conic(i) => surfaces[i].conic += by,
+            Quantity::Asphere(i, term) => surfaces[i].asphere[term] += by,
         }
         Train::new(surfaces, gaps, indices).unwrap()
     }
@@ -210,14 +198,10 @@ mod tests {
             for weights in all {
                 let exact = trace_ray(&train, start).unwrap().differentiate(&weights, Shapes::ALL);
                 for (place, &derivative) in exact.iter().enumerate() {
-                    let term = match quantities.at(place) {
-                        Quantity::Asphere(_, term) => Some(term),
-                        _ => None,
-                    };
                     // A step that moves the sag by about a micrometre.
-                    let h = match term {
-                        Some(term) => 1e-3 / 6_f64.powi(2 * term as i32 + 4),
-                        None => 1e-5,
+                    let h = match quantities.at(place) {
+                        Quantity::Asphere(_, term) => 1e-3 / 6_f64.powi(asphere_power(term) as i32),
+                        _ => 1e-5,
                     };
                     let at = |by| {
                         let moved = nudged(&train, quantities, place, by);

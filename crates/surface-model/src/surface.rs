@@ -46,6 +46,19 @@ impl Surface {
         self.conic == 0.0 && !self.is_asphere()
     }
 
+    /// Every number it has.
+    pub(crate) fn numbers(&self) -> impl Iterator<Item = f64> + use<> {
+        let Self { curvature, conic, asphere, semi_diameter } = *self;
+        [curvature, conic, semi_diameter].into_iter().chain(asphere)
+    }
+
+    /// The same surface seen from the other side.
+    pub(crate) fn from_behind(&self) -> Self {
+        let Self { curvature, conic, asphere, semi_diameter } = *self;
+        let asphere = asphere.map(|coefficient| -coefficient);
+        Self { curvature: -curvature, conic, asphere, semi_diameter }
+    }
+
     /// Whether polynomial terms are present, so that rays meet it by iteration.
     #[must_use]
     #[inline]

@@ -15,7 +15,7 @@ use crate::design::{Design, Element, ZoomState};
 use crate::document::Address;
 use crate::glass::{Glass, GlassError, REFERENCE_C};
 use crate::sequence::GapId;
-use crate::surface::asphere_power;
+use crate::surface::{Surface, asphere_power};
 
 /// Why a design cannot be told at a temperature.
 #[derive(Debug, Clone, PartialEq, thiserror::Error)]
@@ -157,8 +157,10 @@ impl Design {
                     })?;
                 }
                 for surface in &mut element.surfaces {
-                    surface.curvature *= growth.curvature(number);
-                    for (term, coefficient) in surface.asphere.iter_mut().enumerate() {
+                    // The conic constant has no length in it; a clear diameter is a place on the glass.
+                    let Surface { curvature, conic: _, asphere, semi_diameter: _ } = surface;
+                    *curvature *= growth.curvature(number);
+                    for (term, coefficient) in asphere.iter_mut().enumerate() {
                         *coefficient *= growth.asphere(number, term);
                     }
                     number += 1;

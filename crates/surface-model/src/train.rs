@@ -69,8 +69,7 @@ impl Train {
         }
         let bad = |what, place, value| Err(TrainError::Value { what, place, value });
         for (place, surface) in surfaces.iter().enumerate() {
-            let numbers = [surface.curvature, surface.conic, surface.semi_diameter];
-            for value in numbers.into_iter().chain(surface.asphere) {
+            for value in surface.numbers() {
                 if !value.is_finite() {
                     return bad("a number of surface", place, value);
                 }
@@ -174,13 +173,8 @@ impl Train {
     /// The same glass seen from the other side: order and curvatures reversed.
     #[must_use]
     pub fn reversed(&self) -> Self {
-        let turn = |surface: &Surface| Surface {
-            curvature: -surface.curvature,
-            asphere: surface.asphere.map(|coefficient| -coefficient),
-            ..*surface
-        };
         Self {
-            surfaces: self.surfaces.iter().rev().map(turn).collect(),
+            surfaces: self.surfaces.iter().rev().map(Surface::from_behind).collect(),
             gaps: self.gaps.iter().rev().copied().collect(),
             indices: self.indices.iter().rev().copied().collect(),
         }

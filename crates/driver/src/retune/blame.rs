@@ -138,10 +138,9 @@ fn by_derivatives(file: &DesignFile, changed: &Design) -> Option<f64> {
 /// Conic constants and asphere coefficients that a change moves: only surfaces whose shape has a
 /// variable have derivatives by them.
 fn reshaped(before: &Design, after: &Design) -> Vec<FreePlace> {
-    let is_shape = |place: &Place| matches!(place, Place::Conic(_) | Place::Asphere(..));
     Place::all(before)
         .into_iter()
-        .filter(is_shape)
+        .filter(|place| place.shapes().is_some())
         .filter(|place| place.value(before).to_bits() != place.value(after).to_bits())
         .map(|place| FreePlace { place, own_range: Bounds::FREE })
         .collect()
@@ -150,10 +149,7 @@ fn reshaped(before: &Design, after: &Design) -> Vec<FreePlace> {
 /// Places in the train of the surfaces whose shapes have derivatives.
 fn free_shapes(free: &[FreePlace], design: &Design) -> Vec<usize> {
     let sequence = design.sequence();
-    let surface = |free: &FreePlace| match free.place {
-        Place::Conic(id) | Place::Asphere(id, _) => sequence.place_of_surface(id),
-        _ => None,
-    };
+    let surface = |free: &FreePlace| sequence.place_of_surface(free.place.shapes()?);
     let mut surfaces: Vec<usize> = free.iter().filter_map(surface).collect();
     surfaces.dedup();
     surfaces

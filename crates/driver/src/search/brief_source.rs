@@ -111,6 +111,6 @@ impl BriefSource {
 /// Every number that the words of [`FREE`] stand for.
 fn free(design: &Design) -> Vec<FreePlace> {
     let places = Place::all(design).into_iter();
-    let places = places.filter(|place| !matches!(place, Place::Conic(_) | Place::Asphere(..)));
+    let places = places.filter(|place| place.shapes().is_none());
     places.map(|place| FreePlace { place, own_range: Bounds::FREE }).collect()
 }

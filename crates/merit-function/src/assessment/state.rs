@@ -161,14 +161,24 @@ fn misses(
     exit_slope_urad: Option<f64>,
     wavefront: &[WavefrontAssessment],
 ) -> Vec<Option<f64>> {
+    let Goals {
+        wavefront_rms_waves,
+        ratio_percent,
+        exit_slope_urad: slope_urad,
+        // In `beam_misses`.
+        divergence_mrad: _,
+        diameter_at_range_mm: _,
+        exit_focus_m: _,
+        weight: _,
+    } = *goals;
     let mut misses = Vec::new();
-    if let Some(within) = goals.wavefront_rms_waves {
+    if let Some(within) = wavefront_rms_waves {
         misses.extend(wavefront.iter().map(|w| w.rms_waves.map(|rms| rms / within)));
     }
-    if let Some(within) = goals.ratio_percent {
+    if let Some(within) = ratio_percent {
         misses.push(ratio_error_percent.map(|error| error / within));
     }
-    if let Some(within) = goals.exit_slope_urad {
+    if let Some(within) = slope_urad {
         misses.push(exit_slope_urad.map(|slope| slope / within));
     }
     misses

@@ -36,10 +36,7 @@ pub(super) struct Builder<'a> {
 impl<'a> Builder<'a> {
     pub(super) fn new(design: &'a Design, limits: &'a Limits, free: &'a [FreePlace]) -> Self {
         let sequence = design.sequence();
-        let shaped = free.iter().filter_map(|free| match free.place {
-            Place::Conic(id) | Place::Asphere(id, _) => sequence.place_of_surface(id),
-            _ => None,
-        });
+        let shaped = free.iter().filter_map(|free| sequence.place_of_surface(free.place.shapes()?));
         let shapes = shaped.fold(Shapes::None, Shapes::with);
         let quantities = Quantities::new(sequence.surfaces.len(), shapes);
         let states = design.states.iter();
