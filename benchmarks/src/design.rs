@@ -95,3 +95,21 @@ pub(crate) fn between_states(states: &Value, count: usize) -> Option<Value> {
     }
     Some(Value::Array(made))
 }
+
+/// The designs of `configs/`, by name, in the order of their names.
+pub(crate) fn shipped() -> Result<Vec<(String, Value)>, Failure> {
+    let mut all = Vec::new();
+    for entry in std::fs::read_dir(home().join("../configs"))? {
+        let path = entry?.path();
+        if path.extension().is_none_or(|extension| extension != "json") {
+            continue;
+        }
+        let document: Value = serde_json::from_slice(&std::fs::read(&path)?)?;
+        if document["format"] == "drawtube/1" {
+            let name = path.file_stem().unwrap_or_default().to_string_lossy().into_owned();
+            all.push((name, document));
+        }
+    }
+    all.sort_by(|a, b| a.0.cmp(&b.0));
+    Ok(all)
+}

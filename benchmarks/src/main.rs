@@ -3,6 +3,8 @@
 //! ```text
 //! cargo run --release -p benchmarks                    everything; writes benchmarks/README.md
 //! cargo run --release -p benchmarks SECTION [NAME…]    one section, to standard output
+//! cargo run --release -p benchmarks instructions check    holds two kernels to instructions.txt
+//! cargo run --release -p benchmarks instructions commit   writes instructions.txt anew
 //! cargo run --release -p benchmarks kernel NAME CALLS  one kernel over and over, for a profiler
 //! cargo run --release -p benchmarks peer-input DESIGN  a design as the Ceres program reads it
 //! ```
@@ -25,6 +27,7 @@ mod profile;
 mod retune;
 mod search;
 mod spread;
+mod steps;
 mod sweep;
 mod threads;
 mod tolerance;
@@ -43,7 +46,10 @@ fn main() -> Result<(), Failure> {
             print!("{}", peer_input::text(&design::load(name)?)?);
             return Ok(());
         }
+        ["instructions", "check"] => return instructions::check(),
+        ["instructions", "commit"] => return instructions::commit(),
         ["jobs", names @ ..] => jobs::section(names)?,
+        ["steps"] => steps::section()?,
         ["more-states"] => more_states::section()?,
         ["derivatives"] => derivatives::section()?,
         ["trace"] => bare_loop::section()?,
@@ -56,10 +62,12 @@ fn main() -> Result<(), Failure> {
         ["instructions"] => instructions::section()?,
         ["profile"] => profile::section()?,
         _ => {
-            return Err("sections: jobs [DESIGN…], more-states, derivatives, trace, states, \
+            return Err(
+                "sections: jobs [DESIGN…], steps, more-states, derivatives, trace, states, \
                         threads, search [DESIGN…], sweep, retune, tolerance, instructions, \
                         profile; or kernel NAME CALLS, peer-input DESIGN"
-                .into());
+                    .into(),
+            );
         }
     };
     print!("{}", section.text);

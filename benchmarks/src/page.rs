@@ -8,16 +8,16 @@ use driver::write_whole::{Existing, write_whole};
 use crate::spread::Spread;
 use crate::{
     Failure, bare_loop, derivatives, design, instructions, jobs, more_states, profile, retune,
-    search, sweep, threads, tolerance, zoom_states,
+    search, steps, sweep, threads, tolerance, zoom_states,
 };
 
 const HEAD: &str = "# Numbers
 
 Made by `cargo run --release -p benchmarks`; what stands here is what that run measured, targets missed
 included. One section alone: `cargo run --release -p benchmarks SECTION`, where SECTION is `jobs` (with
-names of designs, to measure only those), `more-states`, `derivatives`, `trace`, `states`, `threads`,
-`search` (with names likewise), `sweep`, `retune`, `tolerance`, `instructions` or `profile`. All figures
-are median (min … max).
+names of designs, to measure only those), `steps`, `more-states`, `derivatives`, `trace`, `states`,
+`threads`, `search` (with names likewise), `sweep`, `retune`, `tolerance`, `instructions` or `profile`.
+All figures are median (min … max).
 
 The peers: `pip install numpy scipy` for SciPy; `apt-get install libceres-dev` and a C++ compiler for
 Ceres, whose program `peers/ceres/build.sh` builds into `target/peers/` on the way (the library as it
@@ -38,6 +38,8 @@ with it what `tests/published/scipy.rs` checks against.
 ";
 
 const VERDICTS: &str = "## What was wanted and what was measured
+
+Median (min … max) of the ratios of rounds measured in turn; the median decides.
 
 | ratio | wanted | measured | met |
 |---|---|---|---|
@@ -75,17 +77,16 @@ impl Verdict {
     }
 }
 
-/// What was tried on the steps, with figures: kept by hand.
-const TRIED: &str = include_str!("tried.md");
-
 type Measure = fn() -> Result<Section, Failure>;
 
 /// Measures everything and writes the page.
 pub(crate) fn write() -> Result<(), Failure> {
     let machine = machine()?;
     let (mut verdicts, mut rest) = (String::from(VERDICTS), String::new());
-    let sections: [(&str, Measure); 12] = [
+    let mut missed = Vec::new();
+    let sections: [(&str, Measure); 13] = [
         ("jobs", || jobs::section(&[])),
+        ("steps", steps::section),
         ("more-states", more_states::section),
         ("derivatives", derivatives::section),
         ("trace", bare_loop::section),
@@ -105,11 +106,16 @@ pub(crate) fn write() -> Result<(), Failure> {
         write!(rest, "\n{}", section.text)?;
         for verdict in section.verdicts {
             let Verdict { what, wanted, measured, met } = verdict;
+            if !met {
+                missed.push(what.clone());
+            }
             let met = if met { "yes" } else { "**no**" };
             writeln!(verdicts, "| {what} | {wanted} | {measured} | {met} |")?;
         }
     }
-    let page = format!("{HEAD}\n{machine}\n{verdicts}{rest}\n{TRIED}");
+    let missed = if missed.is_empty() { "nothing".to_owned() } else { missed.join("; ") };
+    writeln!(verdicts, "\nMissed: {missed}.")?;
+    let page = format!("{HEAD}\n{machine}\n{verdicts}{rest}");
     Ok(write_whole(&design::home().join("README.md"), page.as_bytes(), Existing::Replace)?)
 }
 

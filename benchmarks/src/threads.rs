@@ -68,7 +68,7 @@ fn search() -> Result<f64, String> {
 }
 
 /// A number from −1 to 1 for each start and variable: the golden-ratio sequence.
-fn scatter(start: usize, variable: usize) -> f64 {
+pub(crate) fn scatter(start: usize, variable: usize) -> f64 {
     const GOLDEN: f64 = 0.618_033_988_749_894_9;
     2.0 * ((start * 31 + variable * 7 + 1) as f64 * GOLDEN).fract() - 1.0
 }

@@ -5,8 +5,9 @@ use surface_model::paraxial::ParaxialRay;
 use surface_model::seidel::{SeidelRays, seidel};
 use surface_model::skew::{RayStart, trace_ray};
 use surface_model::surface::Surface;
+use surface_model::traced_beam::TracedBeam;
 use surface_model::train::Train;
-use surface_model::wavefront::{TracedBeam, wavefront_error, wavefront_samples};
+use surface_model::wavefront::{wavefront_error, wavefront_samples};
 
 const INDEX: f64 = 1.5;
 const POWER: f64 = 0.01;

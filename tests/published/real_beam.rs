@@ -9,8 +9,8 @@ use surface_model::ghost::{Ghost, GhostFocus, GhostWay, fresnel_reflectance, mod
 use surface_model::pointing::pointing;
 use surface_model::quadrature::gauss_legendre;
 use surface_model::surface::Surface;
+use surface_model::traced_beam::TracedBeam;
 use surface_model::train::Train;
-use surface_model::wavefront::TracedBeam;
 
 const NM: f64 = 1064.0;
 

@@ -11,7 +11,7 @@
 
 use nalgebra::DMatrix;
 use surface_model::gaussian::{GaussianBeam, GaussianPath, GaussianWeights};
-use surface_model::reverse::Quantities;
+use surface_model::quantities::Quantities;
 
 use crate::block::StateBlock;
 use crate::fault::EvaluationFault;

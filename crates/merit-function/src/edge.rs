@@ -1,7 +1,7 @@
 //! Gaps at the edge: the axial distance of two neighbouring surfaces at the smaller of their
 //! clear radii. In glass this is the edge thickness, in air the edge clearance.
 
-use surface_model::reverse::Quantities;
+use surface_model::quantities::Quantities;
 use surface_model::solid::Solid;
 use surface_model::train::Train;
 
@@ -31,7 +31,7 @@ pub(crate) fn edge_gradient(
     put(quantities.gap(gap), 1.0);
     for (surface, by) in [(gap, gradient.by_front), (gap + 1, gradient.by_back)] {
         put(quantities.curvature(surface), by.curvature);
-        if quantities.shapes().any() {
+        if quantities.shapes().has(surface) {
             put(quantities.conic(surface), by.conic);
             for (term, by) in by.asphere.into_iter().enumerate() {
                 put(quantities.asphere(surface, term), by);

@@ -5,10 +5,10 @@
 //! derivative is one reverse sweep for path and place together.
 
 use surface_model::quadrature::BeamSample;
-use surface_model::reverse::Shapes;
+use surface_model::quantities::Shapes;
 use surface_model::skew::{ExitSum, RayStart, trace_ray};
+use surface_model::traced_beam::sphere_path_mm;
 use surface_model::train::Train;
-use surface_model::wavefront::sphere_path_mm;
 
 use crate::beam_rows::gather;
 use crate::block::StateBlock;

@@ -23,7 +23,7 @@ use surface_model::bundle::Bundle;
 use surface_model::design::Design;
 use surface_model::gaussian::GaussianBeam;
 use surface_model::glass::GlassError;
-use surface_model::paraxial::{ParaxialRay, ParaxialWeights};
+use surface_model::paraxial::ParaxialRay;
 use surface_model::quadrature::{BeamSample, beam_sample};
 use surface_model::temperature::TemperatureError;
 use surface_model::train::Train;
@@ -104,7 +104,8 @@ pub struct MeritFunction {
     /// Per state, the number of its rows at 20 °C.
     rows_here: Vec<usize>,
     paths: Vec<f64>,
-    gradient: Vec<f64>,
+    /// Derivatives of the paraxial height and slope a state's beam ends with.
+    end: Vec<[f64; 2]>,
 }
 
 impl MeritFunction {
@@ -164,6 +165,7 @@ impl MeritFunction {
         let sample = beam.sample(1.0);
         let mut bundle = Bundle::new();
         bundle.load(&trains, &sample.heights_mm);
+        let quantities = variables.quantities();
         Ok(Self {
             rows_here: rows.clone(),
             climates: Vec::new(),
@@ -184,8 +186,8 @@ impl MeritFunction {
             ),
             bundle,
             paraxial: ParaxialRay::default(),
+            end: vec![[0.0; 2]; quantities.count()],
             beam_rows: BeamRows::default(),
-            gradient: Vec::new(),
         })
     }
 
@@ -242,12 +244,19 @@ impl MeritFunction {
                 for &(column, factor) in &binding.terms {
                     value += factor * self.variables.value(variables, k, column);
                 }
-                state.train.set_quantity(quantities, binding.quantity, value);
+                let quantity = quantities.at(binding.quantity);
+                state.train.set(quantity, value);
+                // The bundle's glass is set by the first state for all.
+                let trains = if quantity.is_shape() {
+                    0..usize::from(k == 0)
+                } else {
+                    state.bundled.clone()
+                };
                 for train in &mut state.focused {
-                    train.set_quantity(quantities, binding.quantity, value);
+                    train.set(quantity, value);
                 }
-                for train in state.bundled.clone() {
-                    self.bundle.set_quantity(train, quantities.at(binding.quantity), value);
+                for train in trains {
+                    self.bundle.set_quantity(train, quantity, value);
                 }
             }
         }
@@ -295,10 +304,10 @@ impl MeritFunction {
             self.weights.residuals(paths, scale, &mut residuals[row..row + rays]);
             if let Some(block) = block.as_deref_mut() {
                 let from = (&self.bundle, train);
-                let shared = &mut block.by_shared.rows_mut(row, rays);
+                let rows = row..row + rays;
+                let shared = (rows.clone(), &mut block.by_shared);
                 self.weights.columns(from, &state.by_shared, scale, shared);
-                let own = &mut block.by_own.rows_mut(row, rays);
-                self.weights.columns(from, &state.by_own, scale, own);
+                self.weights.columns(from, &state.by_own, scale, (rows, &mut block.by_own));
             }
             row += rays;
         }
@@ -339,7 +348,7 @@ impl MeritFunction {
         k: usize,
         residuals: &mut [f64],
         first: usize,
-        mut block: Option<&mut StateBlock>,
+        block: Option<&mut StateBlock>,
     ) -> Result<(), EvaluationFault> {
         let state = &self.states[k];
         let goals = &state.goals;
@@ -349,33 +358,35 @@ impl MeritFunction {
         self.paraxial.trace(train, 1.0, 0.0).map_err(|_| overflow())?;
         let ratio_now = self.paraxial.ratio().ok_or_else(overflow)?;
         let slope_now = self.paraxial.exit_slope().ok_or_else(overflow)?;
-        let last = train.len() - 1;
         let ratio = goals.ratio_percent.map(|within| {
             let factor = root_weight / within * 100.0 / state.ratio_wanted;
-            (factor * (ratio_now - state.ratio_wanted), Some((last, factor)), 0.0)
+            (factor * (ratio_now - state.ratio_wanted), [factor, 0.0])
         });
         let slope = goals.exit_slope_urad.map(|within| {
             let factor = root_weight / within * 1e6 * self.beam.radius_mm;
-            (factor * slope_now, None, factor)
+            (factor * slope_now, [0.0, factor])
         });
-        for (i, (value, height, by_slope)) in [ratio, slope].into_iter().flatten().enumerate() {
+        let rows = || [ratio, slope].into_iter().flatten().enumerate();
+        for (i, (value, _)) in rows() {
             residuals[i] = value;
-            let Some(block) = block.as_deref_mut() else { continue };
-            let quantities = self.variables.quantities();
-            self.gradient.clear();
-            self.gradient.resize(quantities.count(), 0.0);
-            let weights = ParaxialWeights { heights: height.as_slice(), exit_slope: by_slope };
-            self.paraxial
-                .differentiate(train, weights, quantities, &mut self.gradient)
-                .map_err(|_| overflow())?;
-            let dot = |follows: &Vec<(usize, f64)>| -> f64 {
-                follows.iter().map(|&(quantity, factor)| factor * self.gradient[quantity]).sum()
-            };
-            for (column, follows) in state.by_shared.iter().enumerate() {
-                block.by_shared[(first + i, column)] = dot(follows);
-            }
-            for (column, follows) in state.by_own.iter().enumerate() {
-                block.by_own[(first + i, column)] = dot(follows);
+        }
+        let Some(block) = block else { return Ok(()) };
+        let quantities = self.variables.quantities();
+        self.paraxial
+            .differentiate_end(train, quantities, &mut self.end)
+            .map_err(|_| overflow())?;
+        let columns =
+            [(&state.by_shared, &mut block.by_shared), (&state.by_own, &mut block.by_own)];
+        for (follows, out) in columns {
+            for (column, follows) in follows.iter().enumerate() {
+                let mut by = [0.0; 2];
+                for &(quantity, factor) in follows {
+                    by[0] += factor * self.end[quantity][0];
+                    by[1] += factor * self.end[quantity][1];
+                }
+                for (i, (_, [by_height, by_slope])) in rows() {
+                    out[(first + i, column)] = by_height * by[0] + by_slope * by[1];
+                }
             }
         }
         Ok(())

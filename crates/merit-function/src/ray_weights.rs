@@ -3,8 +3,11 @@
 //! xⱼ → scale √wⱼ (xⱼ − Σ wᵢxᵢ), for the residuals and for each column of their Jacobian alike.
 //! The squares add up to scale² times the weighted variance.
 
-use nalgebra::{Dyn, MatrixViewMut, U1};
-use surface_model::bundle::Bundle;
+use std::ops::Range;
+
+use multiversion::multiversion;
+use nalgebra::DMatrix;
+use surface_model::bundle::{Bundle, PathDerivatives};
 use surface_model::real::{LANES, Lanes, Real};
 
 /// The weights of the rays, eight side by side; lanes without a ray weigh nothing.
@@ -29,39 +32,78 @@ impl RayWeights {
         self.centre(blocks, mean, scale, out);
     }
 
-    /// Columns of the Jacobian for the rays of one train: for each variable, the quantities of the train that follow it,
-    /// with factors.
+    /// Columns of the Jacobian, written to the `rows` of the rays of one train: for each variable,
+    /// the quantities of the train that follow it, with factors.
     pub(crate) fn columns(
         &self,
         (bundle, train): (&Bundle, usize),
         columns: &[Vec<(usize, f64)>],
         scale: f64,
-        out: &mut MatrixViewMut<'_, f64, Dyn, Dyn, U1, Dyn>,
+        (rows, out): (Range<usize>, &mut DMatrix<f64>),
     ) {
-        for (column, follows) in columns.iter().enumerate() {
-            let block = |block: usize| {
-                let mut sum = Lanes::ZERO;
-                for &(quantity, factor) in follows {
-                    let by = bundle.path_derivative_vector(train, block, quantity);
-                    sum = sum + Lanes::splat(factor) * by;
-                }
-                sum
-            };
-            let blocks = (0..self.weights.len()).map(block);
-            let products = self.weights.iter().zip(blocks.clone());
-            let mean: f64 = products.map(|(w, x)| (*w * x).sum()).sum();
-            let mut into = out.column_mut(column);
-            self.centre(blocks, mean, scale, into.as_mut_slice());
-        }
+        write_columns(self, (bundle, train), columns, scale, (rows, out));
     }
 
-    #[inline]
+    #[inline(always)]
     fn centre(&self, blocks: impl Iterator<Item = Lanes>, mean: f64, scale: f64, out: &mut [f64]) {
         let (mean, scale) = (Lanes::splat(mean), Lanes::splat(scale));
         for ((root, x), out) in self.roots.iter().zip(blocks).zip(out.chunks_mut(LANES)) {
-            let centred = scale * *root * (x - mean);
-            out.copy_from_slice(&centred.0[..out.len()]);
+            put(scale * *root * (x - mean), out);
         }
+    }
+}
+
+/// [`RayWeights::columns`] in the widest vectors the processor has.
+#[multiversion(targets("x86_64+avx512f+avx512dq+avx512vl+avx2", "x86_64+avx2", "aarch64+neon"))]
+fn write_columns(
+    rays: &RayWeights,
+    (bundle, train): (&Bundle, usize),
+    columns: &[Vec<(usize, f64)>],
+    scale: f64,
+    (rows, out): (Range<usize>, &mut DMatrix<f64>),
+) {
+    let Some((first_weights, further_weights)) = rays.weights.split_first() else { return };
+    let height = out.nrows();
+    let first = bundle.path_derivative_vector(train, 0);
+    // Without rows there are no columns to write, but a chunk must not be empty.
+    let out = out.as_mut_slice().chunks_exact_mut(height.max(1));
+    for (follows, out) in columns.iter().zip(out) {
+        let along = |from: PathDerivatives<'_>| {
+            let mut sum = Lanes::ZERO;
+            for &(quantity, factor) in follows {
+                sum = sum + Lanes::splat(factor) * from.by(quantity);
+            }
+            sum
+        };
+        // Most beams have no more rays than lanes: the first vector is not worked out twice.
+        let here = along(first);
+        let further = (1..rays.weights.len())
+            .map(|vector| along(bundle.path_derivative_vector(train, vector)));
+        let mut mean = (*first_weights * here).sum();
+        for (weights, along) in further_weights.iter().zip(further.clone()) {
+            mean += (*weights * along).sum();
+        }
+        let all = std::iter::once(here).chain(further);
+        rays.centre(all, mean, scale, &mut out[rows.clone()]);
+    }
+}
+
+/// Writes as many of the eight as there is room for, in pieces of fixed length.
+#[inline(always)]
+fn put(lanes: Lanes, out: &mut [f64]) {
+    if let Some(out) = out.first_chunk_mut::<LANES>() {
+        *out = lanes.0;
+        return;
+    }
+    let mut lanes = &lanes.0[..];
+    let mut rest = out;
+    if rest.len() >= 4 {
+        let (four, behind) = rest.split_at_mut(4);
+        four.copy_from_slice(&lanes[..4]);
+        (rest, lanes) = (behind, &lanes[4..]);
+    }
+    for (out, lane) in rest.iter_mut().zip(lanes) {
+        *out = *lane;
     }
 }
 

@@ -4,7 +4,7 @@ use nalgebra::DVector;
 use surface_model::gaussian::{GaussianPath, GaussianWeights, peak_per_cm2};
 use surface_model::ghost::GhostWay;
 use surface_model::paraxial::{ParaxialRay, ParaxialWeights};
-use surface_model::reverse::Shapes;
+use surface_model::quantities::Quantities;
 use surface_model::skew::{RayPath, RayStart, trace_ray};
 use surface_model::train::Train;
 
@@ -272,7 +272,7 @@ impl RowEvaluator {
                     .ok_or(EvaluationFault::Edge { surface: *gap })?;
             }
             Measured::Incidence(surface) => {
-                incidence_gradient(edge.as_ref(), quantities.shapes(), *surface, gradient);
+                incidence_gradient(edge.as_ref(), quantities, *surface, gradient);
                 gradient.iter().enumerate().for_each(|(quantity, &by)| put(quantity, by));
             }
             // A beam far from a focus is left alone.
@@ -343,7 +343,7 @@ fn incidence_deg(edge: Option<&RayPath>, surface: usize) -> f64 {
 /// one that is too large.
 fn incidence_gradient(
     edge: Option<&RayPath>,
-    shapes: Shapes,
+    quantities: Quantities,
     surface: usize,
     gradient: &mut Vec<f64>,
 ) {
@@ -351,7 +351,7 @@ fn incidence_gradient(
     let factor = if sine > 1e-6 { -(1.0 / sine).to_degrees() } else { 0.0 };
     gradient.clear();
     if let Some(ray) = edge {
-        let by_cosine = ray.differentiate_cos_incidence(surface, shapes);
+        let by_cosine = ray.differentiate_cos_incidence(surface, quantities);
         gradient.extend(by_cosine.iter().map(|by| factor * by));
     }
 }

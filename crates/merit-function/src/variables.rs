@@ -15,7 +15,7 @@ mod build;
 use surface_model::design::Design;
 use surface_model::document::Address;
 use surface_model::place::Place;
-use surface_model::reverse::{Quantities, Quantity};
+use surface_model::quantities::{Quantities, Quantity};
 use surface_model::temperature::Growth;
 
 use crate::block::{BlockShape, Bounds};

@@ -3,13 +3,16 @@
 //! function calls.
 //!
 //! The trains of one bundle have the same surfaces (they are the zoom states and wavelengths of
-//! one design) and are entered at the same heights. Each train's rays fill vectors
-//! of eight lanes of its own; vectors of different trains go through the trace together, so that
+//! one design) and are entered at the same heights. Rays of as many trains as fit go through the
+//! trace side by side as one block, each lane with the gaps and indices of its own train, so that
 //! the processor is full even when a train has only six rays.
 
+use std::ops::Range;
+
 use crate::fault::{FaultReason, RayFault};
-use crate::real::{ABREAST, Abreast, LANES, Lanes, Real};
-use crate::reverse::{Quantities, Quantity, Shapes, backward_meridional};
+use crate::quantities::{Quantities, Quantity, Shapes};
+use crate::real::{Abreast, LANES, Lanes, RAYS_ABREAST, Real};
+use crate::reverse::backward_meridional;
 use crate::surface::Surface;
 use crate::trace::{
     Crossing, Exit, Ray, Stage, Stages, find_fault, forward_meridional, forward_meridional_paths,
@@ -21,10 +24,8 @@ use crate::train::Train;
 #[derive(Debug, Default)]
 pub struct Bundle {
     surfaces: usize,
-    rays: usize,
     trains: usize,
-    /// Vectors of eight rays that one train fills.
-    vectors: usize,
+    seats: Seats,
     blocks: Vec<Block>,
     /// One a surface and block: all surfaces of block 0, then of block 1, ….
     crossings: Vec<Crossing<Abreast, 1>>,
@@ -33,23 +34,61 @@ pub struct Bundle {
     quantities: Option<Quantities>,
 }
 
-/// Vectors that go through the trace abreast, and the trains they go through.
+/// Rays that go through the trace abreast, and the trains they go through. Lanes without a ray
+/// follow the axis.
 #[derive(Debug)]
 struct Block {
     stages: Stages<Abreast>,
     start: Ray<Abreast, 1>,
 }
 
-/// Where a vector of eight rays stands.
-#[derive(Debug, Clone, Copy)]
-struct Slot {
-    block: usize,
-    place: usize,
+/// Which ray sits where.
+#[derive(Debug, Clone, Copy, Default)]
+struct Seats {
+    /// Rays a train.
+    rays: usize,
+    /// Trains whose rays share a block.
+    trains_a_block: usize,
+    /// Blocks a train fills, where it has more rays than a block.
+    blocks_a_train: usize,
 }
 
-impl Slot {
-    fn of(vector: usize) -> Self {
-        Self { block: vector / ABREAST, place: vector % ABREAST }
+impl Seats {
+    /// As many trains a block as leave, behind the first ray of the last, whole vectors for all
+    /// its rays: any train's rays can then be read as vectors.
+    fn new(rays: usize) -> Self {
+        let last = rays.div_ceil(LANES) * LANES;
+        let before = RAYS_ABREAST.saturating_sub(last);
+        Self {
+            rays,
+            trains_a_block: 1 + before / rays.max(1),
+            blocks_a_train: rays.div_ceil(RAYS_ABREAST),
+        }
+    }
+
+    /// The block and the lane of a train's first ray.
+    #[inline]
+    fn first(&self, train: usize) -> (usize, usize) {
+        let block = train / self.trains_a_block * self.blocks_a_train;
+        (block, train % self.trains_a_block * self.rays)
+    }
+
+    /// The block and the lane of a ray.
+    #[inline]
+    fn of(&self, train: usize, ray: usize) -> (usize, usize) {
+        let (block, lane) = self.first(train);
+        (block + (lane + ray) / RAYS_ABREAST, (lane + ray) % RAYS_ABREAST)
+    }
+
+    /// The lanes of a train's rays, block by block.
+    #[inline]
+    fn lanes(&self, train: usize) -> impl Iterator<Item = (usize, Range<usize>)> + use<> {
+        let (block, first) = self.first(train);
+        let rays = self.rays;
+        (0..self.blocks_a_train).map(move |i| {
+            let end = (first + rays - i * RAYS_ABREAST).min(RAYS_ABREAST);
+            (block + i, first..end)
+        })
     }
 }
 
@@ -70,75 +109,57 @@ impl Bundle {
         let same = |train: &&Train| train.surfaces() == trains[0].surfaces();
         assert!(trains.iter().all(same), "trains of one design");
         self.surfaces = surfaces;
-        self.rays = heights_mm.len();
-        self.trains = if self.rays == 0 { 0 } else { trains.len() };
-        self.vectors = self.rays.div_ceil(LANES);
+        self.seats = Seats::new(heights_mm.len());
+        self.trains = if heights_mm.is_empty() { 0 } else { trains.len() };
         self.quantities = None;
-        let all = self.trains * self.vectors;
         self.blocks.clear();
-        for block in 0..all.div_ceil(ABREAST) {
-            // A block that is not full goes through its last train again.
-            let vectors: [usize; ABREAST] =
-                std::array::from_fn(|place| (block * ABREAST + place).min(all - 1));
-            let trains = vectors.map(|vector| trains[vector / self.vectors]);
-            let heights = vectors.map(|vector| self.heights(heights_mm, vector % self.vectors));
-            self.blocks.push(Block::new(trains, heights));
+        for (number, train) in trains.iter().enumerate().take(self.trains) {
+            let stages = Stages::<f64>::of(train);
+            let mut heights = heights_mm;
+            for (block, lanes) in self.seats.lanes(number) {
+                if block == self.blocks.len() {
+                    self.blocks.push(Block::on_axis(&stages));
+                }
+                let (here, rest) = heights.split_at(lanes.len());
+                self.blocks[block].seat(lanes, &stages, here);
+                heights = rest;
+            }
         }
-        let zero = Abreast::splat(0.0);
-        let blank = Ray { y: [zero], z: zero, d: [zero], dz: zero };
-        let crossing = Crossing { ray: blank, path: zero, cos_in: zero, cos_out: zero };
-        self.crossings.resize(self.blocks.len() * surfaces, crossing);
-        self.exits.clear();
-    }
-
-    /// Eight heights; a vector that is not full repeats its last ray.
-    fn heights(&self, heights_mm: &[f64], vector: usize) -> Lanes {
-        Lanes(std::array::from_fn(|lane| heights_mm[(vector * LANES + lane).min(self.rays - 1)]))
+        self.crossings.resize(self.blocks.len() * surfaces, Crossing::blank());
+        self.exits.resize(self.blocks.len(), Exit::blank());
     }
 
     /// Sets a quantity of one train. Curvatures, conic constants and asphere coefficients are the
-    /// same glass in all trains and must be set alike in each before the next trace.
+    /// same glass in all trains: they are set for all at once, whichever train is named.
     #[inline]
     pub fn set_quantity(&mut self, train: usize, quantity: Quantity, value: f64) {
         match quantity {
             Quantity::Curvature(at) => {
-                self.reshape(train, at, |surface| surface.curvature = value);
+                self.blocks.iter_mut().for_each(|block| block.curve(at, value));
             }
-            Quantity::Conic(at) => self.reshape(train, at, |surface| surface.conic = value),
+            Quantity::Conic(at) => self.reshape(at, |surface| surface.conic = value),
             Quantity::Asphere(at, term) => {
-                self.reshape(train, at, |surface| surface.asphere[term] = value);
+                self.reshape(at, |surface| surface.asphere[term] = value);
             }
             Quantity::Gap(gap) => {
-                self.each_vector(train, |block, place| {
-                    block.stages.list[gap + 1].gap.0[place] = Lanes::splat(value);
-                });
+                for (block, lanes) in self.seats.lanes(train) {
+                    let gap = &mut self.blocks[block].stages.list[gap + 1].gap;
+                    gap.numbers_mut()[lanes].fill(value);
+                }
             }
             Quantity::Index(medium) => {
-                self.each_vector(train, |block, place| block.set_index(medium, place, value));
+                for (block, lanes) in self.seats.lanes(train) {
+                    self.blocks[block].set_index(medium, lanes, value);
+                }
             }
         }
     }
 
-    fn reshape(&mut self, train: usize, at: usize, change: impl Fn(&mut Surface)) {
-        self.each_vector(train, |block, _| {
+    fn reshape(&mut self, at: usize, change: impl Fn(&mut Surface)) {
+        for block in &mut self.blocks {
             let stage = &mut block.stages.list[at];
             change(&mut stage.surface);
             stage.sphere = stage.surface.is_sphere();
-        });
-    }
-
-    fn each_vector(&mut self, train: usize, change: impl Fn(&mut Block, usize)) {
-        for vector in train * self.vectors..(train + 1) * self.vectors {
-            let slot = Slot::of(vector);
-            change(&mut self.blocks[slot.block], slot.place);
-        }
-        // The last block may go through the last train more than once.
-        let all = self.trains * self.vectors;
-        if train + 1 == self.trains && !all.is_multiple_of(ABREAST) {
-            let block = all / ABREAST;
-            for place in all % ABREAST..ABREAST {
-                change(&mut self.blocks[block], place);
-            }
         }
     }
 
@@ -153,10 +174,8 @@ impl Bundle {
     /// If `paths` has not one place a ray and train.
     pub fn trace(&mut self, paths: &mut [f64]) -> Result<(), BundleFault> {
         self.quantities = None;
-        self.exits.clear();
-        for block in &self.blocks {
-            let exit = forward_meridional_paths(&block.stages, &block.start);
-            self.exits.push(exit);
+        for (block, exit) in self.blocks.iter().zip(&mut self.exits) {
+            forward_meridional_paths(&block.stages, &block.start, exit);
         }
         match self.read_paths(paths) {
             None => Ok(()),
@@ -174,50 +193,71 @@ impl Bundle {
     /// If `paths` has not one place a ray and train.
     pub fn trace_kept(&mut self, paths: &mut [f64]) -> Result<(), BundleFault> {
         self.quantities = None;
-        self.exits.clear();
-        for (block, crossings) in
-            self.blocks.iter().zip(self.crossings.chunks_mut(self.surfaces.max(1)))
-        {
-            self.exits.push(forward_meridional(&block.stages, &block.start, crossings));
+        let kept = self.crossings.chunks_mut(self.surfaces.max(1));
+        for ((block, crossings), exit) in self.blocks.iter().zip(kept).zip(&mut self.exits) {
+            forward_meridional(&block.stages, &block.start, crossings, exit);
         }
         self.read_paths(paths).map_or(Ok(()), |failed| Err(self.fault(failed)))
     }
 
     /// Reads the paths out; returns the place of the first that is no path.
     fn read_paths(&self, paths: &mut [f64]) -> Option<usize> {
-        assert_eq!(paths.len(), self.trains * self.rays, "one path a ray and train");
-        for (train, paths) in paths.chunks_mut(self.rays.max(1)).enumerate() {
-            for (vector, paths) in paths.chunks_mut(LANES).enumerate() {
-                let slot = Slot::of(train * self.vectors + vector);
-                let exit = &self.exits[slot.block];
-                let lanes = &exit.path_excess.0[slot.place].0;
-                paths.copy_from_slice(&lanes[..paths.len()]);
-                let forward = &exit.dz.0[slot.place].0;
-                let failed = |lane: &usize| !(lanes[*lane].is_finite() && forward[*lane] > 0.0);
-                if let Some(lane) = (0..paths.len()).find(failed) {
-                    return Some(train * self.rays + vector * LANES + lane);
+        assert_eq!(paths.len(), self.trains * self.seats.rays, "one path a ray and train");
+        let mut rest = paths;
+        let mut sound = true;
+        for train in 0..self.trains {
+            for (block, lanes) in self.seats.lanes(train) {
+                let (here, behind) = rest.split_at_mut(lanes.len());
+                let exit = &self.exits[block];
+                let found = &exit.path_excess.numbers()[lanes.clone()];
+                let forward = &exit.dz.numbers()[lanes];
+                for ((path, &found), &forward) in here.iter_mut().zip(found).zip(forward) {
+                    *path = found;
+                    sound &= is_sound(found, forward);
                 }
+                rest = behind;
             }
         }
-        None
+        if sound { None } else { self.first_failed() }
+    }
+
+    fn first_failed(&self) -> Option<usize> {
+        let rays = self.seats.rays;
+        (0..self.trains * rays).find(|place| {
+            let (block, lane) = self.seats.of(place / rays, place % rays);
+            let Exit { path_excess, dz, .. } = &self.exits[block];
+            !is_sound(path_excess.numbers()[lane], dz.numbers()[lane])
+        })
     }
 
     fn fault(&self, failed: usize) -> BundleFault {
-        let (train, ray) = (failed / self.rays, failed % self.rays);
-        let slot = Slot::of(train * self.vectors + ray / LANES);
-        let crossings = &self.crossings[slot.block * self.surfaces..][..self.surfaces];
-        let lane = |number: Abreast| number.0[slot.place].0[ray % LANES];
+        let (train, ray) = (failed / self.seats.rays, failed % self.seats.rays);
+        let (block, lane) = self.seats.of(train, ray);
+        let crossings = &self.crossings[block * self.surfaces..][..self.surfaces];
         // A path that is not finite without a failed crossing has overflowed on the way out.
         let overflow = RayFault { surface: self.surfaces - 1, reason: FaultReason::TurnedBack };
-        let fault = find_fault(crossings, &self.exits[slot.block], lane).unwrap_or(overflow);
+        let number = |number: Abreast| number.numbers()[lane];
+        let fault = find_fault(crossings, &self.exits[block], number).unwrap_or(overflow);
         BundleFault { train, ray, fault }
     }
 
-    /// Sweeps back along every ray of the last [`Self::trace_kept`]. `shapes` says for which
-    /// surfaces derivatives by conic constant and asphere coefficients are kept too. Read the
-    /// result with [`Self::path_derivatives`].
+    /// Sweeps back along every ray of the last [`Self::trace_kept`], for derivatives by all but the
+    /// indices. `shapes` says for which surfaces conic constant and asphere coefficients are among
+    /// them. Read the result with [`Self::path_derivatives`].
     pub fn differentiate(&mut self, shapes: Shapes) -> Quantities {
+        let quantities = Quantities::new(self.surfaces, shapes).without_indices();
+        self.sweep(quantities);
+        quantities
+    }
+
+    /// [`Self::differentiate`] with derivatives by the indices too.
+    pub fn differentiate_all(&mut self, shapes: Shapes) -> Quantities {
         let quantities = Quantities::new(self.surfaces, shapes);
+        self.sweep(quantities);
+        quantities
+    }
+
+    fn sweep(&mut self, quantities: Quantities) {
         let count = quantities.count();
         self.rows.resize(self.blocks.len() * count, Abreast::splat(0.0));
         let kept = self.blocks.iter().zip(self.crossings.chunks(self.surfaces.max(1)));
@@ -226,62 +266,98 @@ impl Bundle {
             backward_meridional(&block.stages, crossings, exit, quantities, row);
         }
         self.quantities = Some(quantities);
-        quantities
     }
 
     /// Derivatives of the optical paths of a train's rays by the quantity at `place`, in ray
     /// order, mm per unit of the quantity; empty before [`Self::differentiate`].
     pub fn path_derivatives(&self, train: usize, place: usize) -> impl Iterator<Item = f64> + '_ {
-        let vectors = if self.quantities.is_some() { self.vectors } else { 0 };
-        (0..vectors)
-            .flat_map(move |vector| self.path_derivative_vector(train, vector, place).0)
-            .take(self.rays)
+        let rays = if self.quantities.is_some() { self.seats.rays } else { 0 };
+        (0..rays.div_ceil(LANES))
+            .flat_map(move |vector| self.path_derivative_vector(train, vector).by(place).0)
+            .take(rays)
     }
 
-    /// The same eight at a time; a vector that is not full repeats its last ray.
+    /// The same eight rays at a time. In a vector that is not full the lanes behind the last ray
+    /// hold any finite numbers.
+    ///
+    /// # Panics
+    /// Before [`Self::differentiate`].
     #[must_use]
-    #[inline]
-    pub fn path_derivative_vector(&self, train: usize, vector: usize, place: usize) -> Lanes {
-        let slot = Slot::of(train * self.vectors + vector);
-        let count = self.quantities.map_or(0, |quantities| quantities.count());
-        self.rows[slot.block * count + place].0[slot.place]
+    #[inline(always)]
+    pub fn path_derivative_vector(&self, train: usize, vector: usize) -> PathDerivatives<'_> {
+        let (block, lane) = self.seats.of(train, vector * LANES);
+        let count = self.rows.len() / self.blocks.len();
+        PathDerivatives { rows: &self.rows[block * count..][..count], lane }
     }
 }
 
+/// Derivatives of the optical paths of up to eight rays of one train.
+#[derive(Debug, Clone, Copy)]
+pub struct PathDerivatives<'a> {
+    rows: &'a [Abreast],
+    lane: usize,
+}
+
+impl PathDerivatives<'_> {
+    /// By the quantity at `place`, mm per unit of the quantity.
+    #[must_use]
+    #[inline(always)]
+    pub fn by(&self, place: usize) -> Lanes {
+        let numbers = &self.rows[place].numbers()[self.lane..];
+        Lanes(numbers.first_chunk().copied().unwrap_or_default())
+    }
+}
+
+#[inline]
+fn is_sound(path: f64, forward: f64) -> bool {
+    path.is_finite() & (forward > 0.0)
+}
+
 impl Block {
-    fn new(trains: [&Train; ABREAST], heights: [Lanes; ABREAST]) -> Self {
-        let each = trains.map(Stages::<f64>::of);
-        let wide = |number: &dyn Fn(&Stages<f64>) -> f64| {
-            Abreast(std::array::from_fn(|place| Lanes::splat(number(&each[place]))))
+    /// All lanes on the axis of this train.
+    fn on_axis(train: &Stages<f64>) -> Self {
+        let stage = |stage: &Stage<f64>| Stage {
+            surface: stage.surface,
+            sphere: stage.sphere,
+            gap: Abreast::splat(stage.gap),
+            index: Abreast::splat(stage.index),
+            ratio: Abreast::splat(stage.ratio),
         };
-        let stage = |(i, first): (usize, &Stage<f64>)| Stage {
-            surface: first.surface,
-            sphere: first.sphere,
-            gap: wide(&|train| train.list[i].gap),
-            index: wide(&|train| train.list[i].index),
-            ratio: wide(&|train| train.list[i].ratio),
-        };
-        let list = each[0].list.iter().enumerate().map(stage).collect();
-        let stages = Stages { list, last_index: wide(&|train| train.last_index) };
-        let zero = Abreast::splat(0.0);
-        let start = Ray { y: [Abreast(heights)], z: zero, d: [zero], dz: Abreast::splat(1.0) };
-        Self { stages, start }
+        let list = train.list.iter().map(stage).collect();
+        let stages = Stages { list, last_index: Abreast::splat(train.last_index) };
+        Self { stages, start: Ray::axial() }
     }
 
-    fn index(&self, medium: usize, place: usize) -> Lanes {
-        let behind =
-            self.stages.list.get(medium).map_or(self.stages.last_index, |stage| stage.index);
-        behind.0[place]
-    }
-
-    fn set_index(&mut self, medium: usize, place: usize, value: f64) {
-        match self.stages.list.get_mut(medium) {
-            Some(stage) => stage.index.0[place] = Lanes::splat(value),
-            None => self.stages.last_index.0[place] = Lanes::splat(value),
+    /// Gives lanes to rays of this train.
+    fn seat(&mut self, lanes: Range<usize>, train: &Stages<f64>, heights_mm: &[f64]) {
+        self.start.y[0].numbers_mut()[lanes.clone()].copy_from_slice(heights_mm);
+        for (wide, stage) in self.stages.list.iter_mut().zip(&train.list) {
+            wide.gap.numbers_mut()[lanes.clone()].fill(stage.gap);
+            wide.index.numbers_mut()[lanes.clone()].fill(stage.index);
+            wide.ratio.numbers_mut()[lanes.clone()].fill(stage.ratio);
         }
+        self.stages.last_index.numbers_mut()[lanes].fill(train.last_index);
+    }
+
+    /// A sphere stays a sphere.
+    #[inline]
+    fn curve(&mut self, at: usize, curvature: f64) {
+        self.stages.list[at].surface.curvature = curvature;
+    }
+
+    fn index(&mut self, medium: usize) -> &mut Abreast {
+        match self.stages.list.get_mut(medium) {
+            Some(stage) => &mut stage.index,
+            None => &mut self.stages.last_index,
+        }
+    }
+
+    fn set_index(&mut self, medium: usize, lanes: Range<usize>, value: f64) {
+        self.index(medium).numbers_mut()[lanes.clone()].fill(value);
         for surface in medium.saturating_sub(1)..(medium + 1).min(self.stages.list.len()) {
-            let ratio = self.index(surface, place) / self.index(surface + 1, place);
-            self.stages.list[surface].ratio.0[place] = ratio;
+            let before = self.index(surface).numbers()[lanes.start];
+            let ratio = before / self.index(surface + 1).numbers()[lanes.start];
+            self.stages.list[surface].ratio.numbers_mut()[lanes.clone()].fill(ratio);
         }
     }
 }
@@ -296,4 +372,18 @@ pub struct BundleFault {
     pub ray: usize,
     /// What happened to it.
     pub fault: RayFault,
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    /// As in a design without a goal on the wavefront.
+    #[test]
+    fn a_bundle_of_no_trains_has_nothing_to_say() {
+        let mut bundle = Bundle::new();
+        bundle.load([], &[0.5, 1.0]);
+        bundle.trace_kept(&mut []).unwrap();
+        assert_eq!(bundle.differentiate(Shapes::ALL).count(), 0);
+    }
 }

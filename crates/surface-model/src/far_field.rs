@@ -13,8 +13,9 @@ use std::f64::consts::{PI, TAU};
 
 use crate::quadrature::gauss_legendre;
 use crate::skew::{RayStart, trace_ray};
+use crate::traced_beam::TracedBeam;
 use crate::train::Train;
-use crate::wavefront::{TracedBeam, WavefrontFault};
+use crate::wavefront::WavefrontFault;
 
 /// Nodes in r² to begin with, and at most.
 const RAYS: (usize, usize) = (16, 1024);

@@ -15,7 +15,7 @@
 //! aᵤb − abᵤ = M²λ/π behind every surface that faces air: the invariant.
 
 use crate::paraxial::{ParaxialError, ParaxialRay, ParaxialWeights};
-use crate::reverse::Quantities;
+use crate::quantities::Quantities;
 use crate::train::Train;
 
 /// A Gaussian beam in air, along an axis on which z = 0 is a plane of reference.

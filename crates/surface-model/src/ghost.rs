@@ -9,7 +9,7 @@
 
 use crate::gaussian::{GaussianBeam, GaussianPath};
 use crate::paraxial::{ParaxialError, ParaxialRay, ParaxialWeights};
-use crate::reverse::{Quantities, Shapes};
+use crate::quantities::{Quantities, Shapes};
 use crate::train::Train;
 
 /// Which surfaces reflect, counted from 0.
@@ -337,9 +337,11 @@ mod tests {
                     let at = |by: f64| {
                         let mut moved = train.clone();
                         let now = match quantities.at(place) {
-                            crate::reverse::Quantity::Curvature(i) => train.surfaces()[i].curvature,
-                            crate::reverse::Quantity::Gap(i) => train.gaps()[i],
-                            crate::reverse::Quantity::Index(i) => train.indices()[i],
+                            crate::quantities::Quantity::Curvature(i) => {
+                                train.surfaces()[i].curvature
+                            }
+                            crate::quantities::Quantity::Gap(i) => train.gaps()[i],
+                            crate::quantities::Quantity::Index(i) => train.indices()[i],
                             _ => unreachable!("no shapes are kept"),
                         };
                         moved.set_quantity(quantities, place, now + by);

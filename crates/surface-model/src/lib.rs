@@ -10,9 +10,11 @@
 //! - [`trace`]: exact rays on spheres, conics and even aspheres, meridional and skew, one body of
 //!   code; [`bundle`] traces many parallel to the axis, [`skew`] one of any direction;
 //! - [`reverse`]: from a traced ray the exact derivative of its optical path by every curvature,
-//!   gap, index, conic constant and asphere coefficient, in one backward sweep;
+//!   gap, index, conic constant and asphere coefficient, in one backward sweep; [`quantities`] says
+//!   where each stands;
 //! - [`paraxial`], [`first_order`], [`seidel`]: what theory says to first and third order;
-//! - [`wavefront`]: the wavefront error behind the last surface, integrated to convergence;
+//! - [`wavefront`]: the wavefront error of a [`traced_beam`] behind the last surface, integrated to
+//!   convergence;
 //!   [`far_field`] and [`pointing`]: what it does to the beam far away, and what a tilted beam does;
 //! - [`gaussian`]: the real beam with M²; [`ghost`]: light that surfaces reflect; [`laser`]: what
 //!   the laser's data sheet says;
@@ -63,6 +65,7 @@ pub mod pointing;
 pub mod pose;
 pub mod pupil;
 pub mod quadrature;
+pub mod quantities;
 pub mod ranges;
 pub mod real;
 mod resolve;
@@ -76,5 +79,6 @@ pub mod spoilt;
 pub mod surface;
 pub mod temperature;
 pub mod trace;
+pub mod traced_beam;
 pub mod train;
 pub mod wavefront;

@@ -19,7 +19,7 @@
 //! t̄ = h̄₊u′            h̄ += h̄₊             ū′ += th̄₊
 //! ```
 
-use crate::reverse::Quantities;
+use crate::quantities::Quantities;
 use crate::train::Train;
 
 /// A paraxial ray through a train. Buffers are kept from call to call: no allocation once the
@@ -136,30 +136,77 @@ impl ParaxialRay {
         row: &mut [f64],
     ) -> Result<(), ParaxialError> {
         let count = train.len();
-        assert_eq!(self.heights.len(), count, "the train the ray was traced through");
-        assert_eq!(row.len(), quantities.count(), "one place a quantity");
         assert!(weights.heights.iter().all(|&(surface, _)| surface < count), "a surface it has");
-        row.fill(0.0);
+        let at = |surface: usize| {
+            let weighed = weights.heights.iter().filter(|&&(at, _)| at == surface);
+            [weighed.map(|&(_, weight)| weight).sum::<f64>()]
+        };
+        self.sweep(train, at, [weights.exit_slope], quantities, row.as_chunks_mut().0)
+    }
+
+    /// Exact derivatives of the height at the last surface and of the exit slope, side by side, as
+    /// [`Self::differentiate`].
+    ///
+    /// # Errors
+    /// A derivative leaves the range of numbers.
+    ///
+    /// # Panics
+    /// If `row` or the train does not fit the traced ray.
+    pub fn differentiate_end(
+        &self,
+        train: &Train,
+        quantities: Quantities,
+        row: &mut [[f64; 2]],
+    ) -> Result<(), ParaxialError> {
+        let last = train.len() - 1;
+        let at = |surface: usize| [if surface == last { 1.0 } else { 0.0 }, 0.0];
+        self.sweep(train, at, [0.0, 1.0], quantities, row)
+    }
+
+    /// The reverse sweep of `M` sums side by side, from the weights of their heights at each
+    /// surface and of their exit slopes.
+    #[inline]
+    fn sweep<const M: usize>(
+        &self,
+        train: &Train,
+        weights_at: impl Fn(usize) -> [f64; M],
+        exit_slope: [f64; M],
+        quantities: Quantities,
+        row: &mut [[f64; M]],
+    ) -> Result<(), ParaxialError> {
+        assert_eq!(self.heights.len(), train.len(), "the train the ray was traced through");
+        assert_eq!(row.len(), quantities.count(), "one place a quantity");
+        row.fill([0.0; M]);
         let indices = train.indices();
-        let (mut h_bar, mut u_bar) = (0.0, weights.exit_slope);
+        let (mut h_bar, mut u_bar) = ([0.0; M], exit_slope);
         for (i, surface) in train.surfaces().iter().enumerate().rev() {
             let (h, c) = (self.heights[i], surface.curvature);
             let (before, behind) = (indices[i], indices[i + 1]);
-            let weighed = weights.heights.iter().filter(|&&(at, _)| at == i);
-            h_bar += weighed.map(|&(_, weight)| weight).sum::<f64>();
-
-            let v = u_bar / behind;
-            row[quantities.curvature(i)] = -h * (behind - before) * v;
-            row[quantities.index(i)] += (self.slopes[i] + h * c) * v;
-            row[quantities.index(i + 1)] -= (self.slopes[i + 1] + h * c) * v;
-            h_bar -= c * (behind - before) * v;
-            u_bar = before * v;
+            let step = behind - before;
+            let v = u_bar.map(|u_bar| u_bar / behind);
+            row[quantities.curvature(i)] = v.map(|v| -h * step * v);
+            if quantities.has_indices() {
+                let (here, next) = (quantities.index(i), quantities.index(i + 1));
+                for m in 0..M {
+                    row[here][m] += (self.slopes[i] + h * c) * v[m];
+                    row[next][m] -= (self.slopes[i + 1] + h * c) * v[m];
+                }
+            }
+            let weights = weights_at(i);
+            for m in 0..M {
+                h_bar[m] = h_bar[m] + weights[m] - c * step * v[m];
+                u_bar[m] = before * v[m];
+            }
             if i > 0 {
-                row[quantities.gap(i - 1)] = h_bar * self.slopes[i];
-                u_bar += train.gaps()[i - 1] * h_bar;
+                let gap = train.gaps()[i - 1];
+                row[quantities.gap(i - 1)] = h_bar.map(|h_bar| h_bar * self.slopes[i]);
+                for m in 0..M {
+                    u_bar[m] += gap * h_bar[m];
+                }
             }
         }
-        match row.iter().position(|derivative| !derivative.is_finite()) {
+        let finite = |derivatives: &[f64; M]| derivatives.iter().all(|by| by.is_finite());
+        match row.iter().position(|derivatives| !finite(derivatives)) {
             Some(place) => Err(ParaxialError::Derivative { place }),
             None => Ok(()),
         }
@@ -169,7 +216,7 @@ impl ParaxialRay {
 #[cfg(test)]
 mod tests {
     use super::*;
-    use crate::reverse::Shapes;
+    use crate::quantities::Shapes;
     use crate::surface::Surface;
 
     fn singlet() -> Train {
@@ -233,7 +280,26 @@ mod tests {
         let (mut short, mut long) = (vec![9.0; few.count()], vec![9.0; all.count()]);
         ray.differentiate(&train, weights, few, &mut short).unwrap();
         ray.differentiate(&train, weights, all, &mut long).unwrap();
-        assert_eq!(short, long[..few.count()]);
-        assert!(long[few.count()..].iter().all(|&derivative| derivative == 0.0));
+        for (place, &derivative) in long.iter().enumerate() {
+            let same = (0..few.count()).find(|&short| few.at(short) == all.at(place));
+            assert_eq!(derivative, same.map_or(0.0, |same| short[same]));
+        }
+    }
+
+    #[test]
+    fn the_end_s_derivatives_are_those_of_its_height_and_slope() {
+        let train = singlet();
+        let mut ray = ParaxialRay::new();
+        ray.trace(&train, 2.0, 0.05).unwrap();
+        let quantities = Quantities::new(2, Shapes::None).without_indices();
+        let mut both = vec![[9.0; 2]; quantities.count()];
+        ray.differentiate_end(&train, quantities, &mut both).unwrap();
+        let height = ParaxialWeights { heights: &[(1, 1.0)], exit_slope: 0.0 };
+        let slope = ParaxialWeights { heights: &[], exit_slope: 1.0 };
+        for (sum, weights) in [height, slope].into_iter().enumerate() {
+            let mut row = vec![9.0; quantities.count()];
+            ray.differentiate(&train, weights, quantities, &mut row).unwrap();
+            assert!(row.iter().zip(&both).all(|(one, both)| *one == both[sum]));
+        }
     }
 }

@@ -9,8 +9,8 @@ use std::f64::consts::PI;
 
 use crate::quadrature::beam_sample;
 use crate::skew::{RayPath, RayStart, trace_ray};
+use crate::traced_beam::TracedBeam;
 use crate::train::Train;
-use crate::wavefront::TracedBeam;
 
 /// Rays along the radius and around half of the beam (the other half is its mirror image) to
 /// begin with, and at most.

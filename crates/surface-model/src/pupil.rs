@@ -190,8 +190,9 @@ mod tests {
     use super::*;
     use crate::spoilt::trace_spoilt;
     use crate::surface::Surface;
+    use crate::traced_beam::TracedBeam;
     use crate::train::Train;
-    use crate::wavefront::{TracedBeam, wavefront_error};
+    use crate::wavefront::wavefront_error;
 
     fn singlet() -> Train {
         let surfaces = [0.01, -0.008].map(|c| Surface::sphere(c, 12.0)).into();

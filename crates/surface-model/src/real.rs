@@ -55,7 +55,7 @@ impl Lanes {
 
     /// All lanes added up, always in the same order.
     #[must_use]
-    #[inline]
+    #[inline(always)]
     pub fn sum(self) -> f64 {
         let [a, b, c, d, e, f, g, h] = self.0;
         ((a + e) + (c + g)) + ((b + f) + (d + h))
@@ -124,19 +124,43 @@ impl Neg for Lanes {
 /// most of the time; the more, the fuller the processor, until its registers are.
 pub(crate) const ABREAST: usize = 4;
 
+/// Rays that go through a trace abreast.
+pub(crate) const RAYS_ABREAST: usize = LANES * ABREAST;
+
 /// [`ABREAST`] vectors of lanes.
 #[derive(Debug, Clone, Copy, PartialEq)]
-pub(crate) struct Abreast(pub(crate) [Lanes; ABREAST]);
+#[repr(align(64))]
+pub(crate) struct Abreast([[f64; LANES]; ABREAST]);
 
 impl Abreast {
+    /// All its numbers, [`RAYS_ABREAST`] of them.
+    #[inline(always)]
+    pub(crate) fn numbers(&self) -> &[f64] {
+        self.0.as_flattened()
+    }
+
+    /// The same, to be changed.
+    #[inline(always)]
+    pub(crate) fn numbers_mut(&mut self) -> &mut [f64] {
+        self.0.as_flattened_mut()
+    }
+
     #[inline(always)]
     fn map(self, f: impl Fn(Lanes) -> Lanes) -> Self {
-        Self(self.0.map(f))
+        let mut out = self;
+        for lanes in &mut out.0 {
+            *lanes = f(Lanes(*lanes)).0;
+        }
+        out
     }
 
     #[inline(always)]
     fn zip(self, other: Self, f: impl Fn(Lanes, Lanes) -> Lanes) -> Self {
-        Self(std::array::from_fn(|i| f(self.0[i], other.0[i])))
+        let mut out = self;
+        for (lanes, with) in out.0.iter_mut().zip(other.0) {
+            *lanes = f(Lanes(*lanes), Lanes(with)).0;
+        }
+        out
     }
 }
 
@@ -183,7 +207,7 @@ impl Neg for Abreast {
 impl Real for Abreast {
     #[inline(always)]
     fn splat(value: f64) -> Self {
-        Self([Lanes::splat(value); ABREAST])
+        Self([[value; LANES]; ABREAST])
     }
 
     #[inline(always)]
@@ -193,7 +217,7 @@ impl Real for Abreast {
 
     #[inline(always)]
     fn settled_within(self, limit: f64) -> bool {
-        self.0.iter().all(|lanes| lanes.settled_within(limit))
+        self.numbers().iter().all(|number| number.settled_within(limit))
     }
 }
 

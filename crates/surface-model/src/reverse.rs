@@ -38,154 +38,10 @@
 
 use multiversion::multiversion;
 
+use crate::quantities::Quantities;
 use crate::real::{Abreast, Real};
 use crate::surface::{ASPHERE_TERMS, Surface};
 use crate::trace::{Crossing, Exit, Ray, Stage, Stages, along, dot, normal};
-
-/// Where each quantity of a train stands in a row of derivatives: curvatures first, then gaps,
-/// then indices, then, if kept, conic constants and asphere coefficients.
-#[derive(Debug, Clone, Copy, PartialEq, Eq)]
-pub struct Quantities {
-    surfaces: usize,
-    shapes: Shapes,
-}
-
-/// For which surfaces derivatives by conic constant and asphere coefficients are kept.
-#[derive(Debug, Clone, Copy, PartialEq, Eq, Default)]
-pub enum Shapes {
-    /// For none: spheres then cost least.
-    #[default]
-    None,
-    /// For those whose bit is set, by their place in the train; places from 63 on share the last
-    /// bit.
-    Of(u64),
-}
-
-impl Shapes {
-    /// For every surface.
-    pub const ALL: Self = Self::Of(u64::MAX);
-
-    /// These, and one more surface.
-    #[must_use]
-    pub fn with(self, surface: usize) -> Self {
-        match self {
-            Self::None => Self::Of(bit(surface)),
-            Self::Of(bits) => Self::Of(bits | bit(surface)),
-        }
-    }
-
-    /// Whether they are kept for any surface.
-    #[must_use]
-    #[inline]
-    pub fn any(self) -> bool {
-        self != Self::None
-    }
-
-    #[inline]
-    fn has(self, surface: usize) -> bool {
-        match self {
-            Self::None => false,
-            Self::Of(bits) => bits & bit(surface) != 0,
-        }
-    }
-}
-
-#[inline]
-fn bit(surface: usize) -> u64 {
-    1 << surface.min(63)
-}
-
-/// One quantity of a train.
-#[derive(Debug, Clone, Copy, PartialEq, Eq)]
-pub enum Quantity {
-    /// Curvature of a surface.
-    Curvature(usize),
-    /// Gap behind a surface.
-    Gap(usize),
-    /// Index of a medium.
-    Index(usize),
-    /// Conic constant of a surface.
-    Conic(usize),
-    /// Asphere coefficient of a surface; term 0 is that of r⁴.
-    Asphere(usize, usize),
-}
-
-impl Quantities {
-    /// For a train of `surfaces` surfaces; `shapes` says for which of them derivatives by conic
-    /// constants and asphere coefficients are kept.
-    #[must_use]
-    pub fn new(surfaces: usize, shapes: Shapes) -> Self {
-        Self { surfaces, shapes }
-    }
-
-    /// Place of the curvature of a surface.
-    #[must_use]
-    #[inline]
-    pub fn curvature(&self, surface: usize) -> usize {
-        surface
-    }
-
-    /// Place of the gap behind a surface.
-    #[must_use]
-    #[inline]
-    pub fn gap(&self, surface: usize) -> usize {
-        self.surfaces + surface
-    }
-
-    /// Place of a refractive index; medium `i` stands before surface `i`.
-    #[must_use]
-    #[inline]
-    pub fn index(&self, medium: usize) -> usize {
-        2 * self.surfaces - 1 + medium
-    }
-
-    /// Place of the conic constant of a surface, where any are kept.
-    #[must_use]
-    #[inline]
-    pub fn conic(&self, surface: usize) -> usize {
-        3 * self.surfaces + surface
-    }
-
-    /// Place of an asphere coefficient (r⁴ is term 0), where any are kept.
-    #[must_use]
-    #[inline]
-    pub fn asphere(&self, surface: usize, term: usize) -> usize {
-        4 * self.surfaces + ASPHERE_TERMS * surface + term
-    }
-
-    /// Which quantity stands at `place`.
-    #[must_use]
-    #[inline]
-    pub fn at(&self, place: usize) -> Quantity {
-        let n = self.surfaces;
-        if place < n {
-            Quantity::Curvature(place)
-        } else if place < 2 * n - 1 {
-            Quantity::Gap(place - n)
-        } else if place < 3 * n {
-            Quantity::Index(place + 1 - 2 * n)
-        } else if place < 4 * n {
-            Quantity::Conic(place - 3 * n)
-        } else {
-            let past = place - 4 * n;
-            Quantity::Asphere(past / ASPHERE_TERMS, past % ASPHERE_TERMS)
-        }
-    }
-
-    /// For which surfaces derivatives by conic constant and asphere coefficients are kept.
-    #[must_use]
-    #[inline]
-    pub fn shapes(&self) -> Shapes {
-        self.shapes
-    }
-
-    /// Number of derivatives in a row.
-    #[must_use]
-    #[inline]
-    pub fn count(&self) -> usize {
-        if self.shapes.any() { (4 + ASPHERE_TERMS) * self.surfaces } else { 3 * self.surfaces }
-    }
-}
 
 /// What is to be differentiated: a weighted sum of the quantities a ray ends with.
 #[derive(Debug, Clone, Copy)]
@@ -230,8 +86,8 @@ fn leave<N: Real, const D: usize>(exit: &Exit<N, D>, index: N, seed: &Seed<N, D>
     }
 }
 
-/// Adds what the normal's adjoint says to the point's adjoint, and gives the derivatives by the
-/// surface's own numbers.
+/// Adds what the normal's adjoint says to the point's adjoint, and gives the derivative by the
+/// surface's curvature; those by its other numbers are handed to `put`.
 #[inline(always)]
 fn bend<N: Real, const D: usize>(
     surface: &Surface,
@@ -240,13 +96,12 @@ fn bend<N: Real, const D: usize>(
     (n_bar, nz_bar): (&[N; D], N),
     point: &mut Adjoint<N, D>,
     mut put: impl FnMut(Shape, N),
-) {
+) -> N {
     let c = N::splat(surface.curvature);
     if closed_form {
         point.y = along(&point.y, -c, n_bar);
         point.z = point.z - c * nz_bar;
-        put(Shape::Curvature, -(dot(n_bar, &at.y) + nz_bar * at.z));
-        return;
+        return -(dot(n_bar, &at.y) + nz_bar * at.z);
     }
     let one = N::splat(1.0);
     let q = dot(&at.y, &at.y);
@@ -263,13 +118,13 @@ fn bend<N: Real, const D: usize>(
     point.y = along(&point.y, g, &u_bar);
     point.y = along(&point.y, N::splat(2.0) * profile.slope_by_q * g_bar, &at.y);
     let cube = one / (profile.w * profile.w * profile.w);
-    put(Shape::Curvature, g_bar * cube);
     put(Shape::Conic, g_bar * N::splat(0.5) * c * c * c * q * cube);
     let mut power = q;
     for term in 0..ASPHERE_TERMS {
         put(Shape::Term(term), g_bar * N::splat(asphere_order(term) * 2.0) * power);
         power = power * q;
     }
+    g_bar * cube
 }
 
 /// Power of q = r² that coefficient `term` stands for.
@@ -278,16 +133,15 @@ fn asphere_order(term: usize) -> f64 {
     (term + 2) as f64
 }
 
-/// One of the numbers that make a surface's shape.
+/// One of the numbers that make a surface's shape, beside its curvature.
 #[derive(Clone, Copy)]
 enum Shape {
-    Curvature,
     Conic,
     Term(usize),
 }
 
-/// Derivatives of the surface's displacement along its normal by the surface's own numbers, each
-/// times `nu_bar`.
+/// Derivative of the surface's displacement along its normal by its curvature, times `nu_bar`;
+/// those by its other numbers are handed to `put`.
 #[inline(always)]
 fn displace<N: Real, const D: usize>(
     surface: &Surface,
@@ -296,24 +150,23 @@ fn displace<N: Real, const D: usize>(
     nz: N,
     nu_bar: N,
     mut put: impl FnMut(Shape, N),
-) {
+) -> N {
     let half = N::splat(0.5);
     let q = dot(&at.y, &at.y);
     if closed_form {
-        put(Shape::Curvature, nu_bar * half * (q + at.z * at.z));
-        return;
+        return nu_bar * half * (q + at.z * at.z);
     }
     let profile = surface.profile(q);
     let z2 = profile.conic_sag * profile.conic_sag;
     let axial = nu_bar * nz;
     let over_w = axial * half / profile.w;
-    put(Shape::Curvature, over_w * (q + N::splat(1.0 + surface.conic) * z2));
     put(Shape::Conic, over_w * N::splat(surface.curvature) * z2);
     let mut power = q * q;
     for term in 0..ASPHERE_TERMS {
         put(Shape::Term(term), axial * power);
         power = power * q;
     }
+    over_w * (q + N::splat(1.0 + surface.conic) * z2)
 }
 
 /// The sweep itself. `row` (length [`Quantities::count`]) receives the derivatives.
@@ -326,17 +179,22 @@ fn backward<N: Real, const D: usize>(
     quantities: Quantities,
     row: &mut [N],
 ) {
-    row.fill(N::splat(0.0));
+    let indices = quantities.has_indices();
     let mut behind = leave(exit, stages.last_index, seed);
-    row[quantities.index(stages.list.len())] = seed.path * exit.path_to_plane;
+    if indices {
+        row[quantities.index(stages.list.len())] = seed.path * exit.path_to_plane;
+    }
 
     for (i, (stage, crossing)) in stages.list.iter().zip(crossings).enumerate().rev() {
-        let Stage { surface, sphere, gap, index: n_in, ratio: mu } = *stage;
+        let Stage { surface, sphere, gap, index: n_in, ratio } = stage;
         let Crossing { ray: at, path, cos_in, cos_out } = crossing;
+        let (mu, n_in) = (*ratio, *n_in);
         let (n, nz) = normal(stage, at);
+        // One division for both.
+        let over_both = N::splat(1.0) / (*cos_in * *cos_out);
+        let (over_cos_in, over_cos_out) = (over_both * *cos_out, over_both * *cos_in);
 
         // Refract.
-        let over_cos_out = N::splat(1.0) / *cos_out;
         let gamma = *cos_out - mu * *cos_in;
         let gamma_bar = dot(&n, &behind.d) + nz * behind.dz;
         let mut cos_bar = -(mu * gamma * over_cos_out * gamma_bar);
@@ -345,9 +203,6 @@ fn backward<N: Real, const D: usize>(
         {
             cos_bar = cos_bar + weight;
         }
-        let sin2 = N::splat(1.0) - *cos_in * *cos_in;
-        let mu_bar = dot(&at.d, &behind.d) + at.dz * behind.dz
-            - gamma_bar * (mu * sin2 * over_cos_out + *cos_in);
         let mut n_bar = behind.d;
         let mut before = behind;
         for axis in 0..D {
@@ -357,27 +212,37 @@ fn backward<N: Real, const D: usize>(
         let nz_bar = gamma * behind.dz + cos_bar * at.dz;
         before.dz = mu * behind.dz + cos_bar * nz;
 
-        let over_n_out = mu / n_in;
-        row[quantities.index(i)] =
-            row[quantities.index(i)] + mu_bar * over_n_out + seed.path * (*path - gap);
-        row[quantities.index(i + 1)] = row[quantities.index(i + 1)] - mu_bar * mu * over_n_out;
+        if indices {
+            let sin2 = N::splat(1.0) - *cos_in * *cos_in;
+            let mu_bar = dot(&at.d, &behind.d) + at.dz * behind.dz
+                - gamma_bar * (mu * sin2 * over_cos_out + *cos_in);
+            let over_n_out = mu / n_in;
+            let (here, next) = (quantities.index(i), quantities.index(i + 1));
+            row[here] = mu_bar * over_n_out + seed.path * (*path - *gap);
+            row[next] = row[next] - mu_bar * mu * over_n_out;
+        }
 
         // Bend, then meet. Where derivatives by the conic are kept, a sphere is a conic too.
-        let shapes = quantities.shapes.has(i);
-        let closed_form = sphere && !shapes;
-        let mut put = |shape: Shape, value: N| {
-            let place = match shape {
-                Shape::Curvature => quantities.curvature(i),
-                Shape::Conic if shapes => quantities.conic(i),
-                Shape::Term(term) if shapes => quantities.asphere(i, term),
-                Shape::Conic | Shape::Term(_) => return,
-            };
-            row[place] = row[place] + value;
+        let shapes = quantities.shapes().has(i);
+        let closed_form = *sphere && !shapes;
+        let place_of = |shape: Shape| match shape {
+            Shape::Conic => quantities.conic(i),
+            Shape::Term(term) => quantities.asphere(i, term),
         };
-        bend(&surface, closed_form, at, (&n_bar, nz_bar), &mut before, &mut put);
+        let by_bend = bend(surface, closed_form, at, (&n_bar, nz_bar), &mut before, |shape, by| {
+            if shapes {
+                row[place_of(shape)] = by;
+            }
+        });
         let spread = n_in * seed.path + dot(&at.d, &before.y) + at.dz * before.z;
-        let nu_bar = spread / *cos_in;
-        displace(&surface, closed_form, at, nz, nu_bar, &mut put);
+        let nu_bar = spread * over_cos_in;
+        let by_displacement = displace(surface, closed_form, at, nz, nu_bar, |shape, by| {
+            if shapes {
+                let place = place_of(shape);
+                row[place] = row[place] + by;
+            }
+        });
+        row[quantities.curvature(i)] = by_bend + by_displacement;
         before.y = along(&before.y, -nu_bar, &n);
         before.z = before.z - nu_bar * nz;
         before.d = along(&before.d, *path, &before.y);

@@ -138,6 +138,22 @@ pub(crate) struct Exit<N, const D: usize> {
     pub(crate) path_excess: N,
 }
 
+impl<N: Real, const D: usize> Crossing<N, D> {
+    /// Of a ray not yet traced.
+    pub(crate) fn blank() -> Self {
+        let (zero, one) = (N::splat(0.0), N::splat(1.0));
+        Self { ray: Ray::axial(), path: zero, cos_in: one, cos_out: one }
+    }
+}
+
+impl<N: Real, const D: usize> Exit<N, D> {
+    /// Of a ray not yet traced.
+    pub(crate) fn blank() -> Self {
+        let (zero, one) = (N::splat(0.0), N::splat(1.0));
+        Self { y: [zero; D], d: [zero; D], dz: one, path_to_plane: zero, path_excess: zero }
+    }
+}
+
 #[inline(always)]
 pub(crate) fn dot<N: Real, const D: usize>(a: &[N; D], b: &[N; D]) -> N {
     let mut sum = a[0] * b[0];
@@ -158,6 +174,12 @@ pub(crate) fn along<N: Real, const D: usize>(a: &[N; D], s: N, b: &[N; D]) -> [N
 }
 
 impl<N: Real, const D: usize> Ray<N, D> {
+    /// On the axis and along it.
+    pub(crate) fn axial() -> Self {
+        let zero = N::splat(0.0);
+        Self { y: [zero; D], z: zero, d: [zero; D], dz: N::splat(1.0) }
+    }
+
     #[inline(always)]
     fn advanced(&self, path: N) -> Self {
         Self { y: along(&self.y, path, &self.d), z: self.z + path * self.dz, ..*self }
@@ -288,9 +310,10 @@ pub(crate) fn forward_meridional(
     stages: &Stages<Abreast>,
     start: &Ray<Abreast, 1>,
     crossings: &mut [Crossing<Abreast, 1>],
-) -> Exit<Abreast, 1> {
+    exit: &mut Exit<Abreast, 1>,
+) {
     let crossings = &mut crossings[..stages.list.len()];
-    forward(stages, start, |i, crossing| crossings[i] = crossing)
+    *exit = forward(stages, start, |i, crossing| crossings[i] = crossing);
 }
 
 /// The same where only the paths are wanted.
@@ -298,8 +321,9 @@ pub(crate) fn forward_meridional(
 pub(crate) fn forward_meridional_paths(
     stages: &Stages<Abreast>,
     start: &Ray<Abreast, 1>,
-) -> Exit<Abreast, 1> {
-    forward(stages, start, |_, _| {})
+    exit: &mut Exit<Abreast, 1>,
+) {
+    *exit = forward(stages, start, |_, _| {});
 }
 
 /// [`forward`] for one skew ray.

@@ -4,7 +4,7 @@
 //! names. Surface `i` stands between the media `indices[i]` and `indices[i + 1]`; gap `i` is the
 //! axial distance from surface `i` to surface `i + 1`.
 
-use crate::reverse::{Quantities, Quantity};
+use crate::quantities::{Quantities, Quantity};
 use crate::surface::Surface;
 
 /// A row of surfaces with the gaps and refractive indices between them.
@@ -150,7 +150,13 @@ impl Train {
     /// Sets the quantity at `place` (see [`Quantities`]).
     #[inline]
     pub fn set_quantity(&mut self, quantities: Quantities, place: usize, value: f64) {
-        match quantities.at(place) {
+        self.set(quantities.at(place), value);
+    }
+
+    /// Sets a quantity.
+    #[inline]
+    pub fn set(&mut self, quantity: Quantity, value: f64) {
+        match quantity {
             Quantity::Curvature(surface) => self.surfaces[surface].curvature = value,
             Quantity::Gap(gap) => self.gaps[gap] = value,
             Quantity::Index(medium) => self.indices[medium] = value,

@@ -15,6 +15,7 @@ use crate::bundle::Bundle;
 use crate::fault::RayFault;
 use crate::quadrature::beam_sample;
 use crate::skew::{RayStart, trace_ray};
+use crate::traced_beam::{BeamFault, TracedBeam};
 use crate::train::Train;
 
 /// Change, in waves or as a part of the value, below which a result has converged.
@@ -23,17 +24,6 @@ const CONVERGED: f64 = 1e-6;
 const RMS_RAYS: (usize, usize) = (8, 1024);
 /// Steps in r² to begin with, and at most.
 const PV_STEPS: (usize, usize) = (32, 16384);
-
-/// A Gaussian beam as far as rays are traced through it: radius, reach and wavelength are finite
-/// and positive.
-#[derive(Debug, Clone, Copy, PartialEq)]
-pub struct TracedBeam {
-    radius_mm: f64,
-    reach: f64,
-    wavelength_nm: f64,
-    /// Where the beam should come to a focus, mm behind the last vertex; `None`: nowhere.
-    focus_mm: Option<f64>,
-}
 
 /// RMS and peak-to-valley wavefront error.
 #[derive(Debug, Clone, Copy, PartialEq)]
@@ -75,13 +65,8 @@ impl std::fmt::Display for Measure {
 #[derive(Debug, Clone, Copy, PartialEq, thiserror::Error)]
 pub enum WavefrontFault {
     /// A number of the beam is not finite or not positive.
-    #[error("a beam cannot have a {what} of {value}")]
-    Beam {
-        /// Which number.
-        what: &'static str,
-        /// Its value.
-        value: f64,
-    },
+    #[error(transparent)]
+    Beam(#[from] BeamFault),
     /// A ray of the beam does not get through.
     #[error("the ray at height {height_mm} mm: {fault}")]
     Ray {
@@ -103,71 +88,6 @@ pub enum WavefrontFault {
         /// What the last doubling changed, waves.
         change_waves: f64,
     },
-}
-
-impl TracedBeam {
-    /// A beam of 1/e² radius `radius_mm`, traced to `reach` times that radius, at
-    /// `wavelength_nm` in air.
-    ///
-    /// # Errors
-    /// A number is not finite or not positive.
-    pub fn new(radius_mm: f64, reach: f64, wavelength_nm: f64) -> Result<Self, WavefrontFault> {
-        let numbers = [("radius", radius_mm), ("reach", reach), ("wavelength", wavelength_nm)];
-        let edge = ("outermost ray height", radius_mm * reach);
-        for (what, value) in numbers.into_iter().chain([edge]) {
-            if !(value.is_finite() && value > 0.0) {
-                return Err(WavefrontFault::Beam { what, value });
-            }
-        }
-        Ok(Self { radius_mm, reach, wavelength_nm, focus_mm: None })
-    }
-
-    /// The same beam, which should not leave collimated but towards (or, with a negative distance,
-    /// from) a point on the axis `focus_mm` behind the last vertex: its wavefront error is the
-    /// departure from the sphere around that point.
-    #[must_use]
-    pub fn focused(self, focus_mm: f64) -> Self {
-        Self { focus_mm: Some(focus_mm), ..self }
-    }
-
-    /// 1/e² radius where it enters, mm.
-    #[must_use]
-    pub fn radius_mm(&self) -> f64 {
-        self.radius_mm
-    }
-
-    /// How far out it is traced, in radii.
-    #[must_use]
-    pub fn reach(&self) -> f64 {
-        self.reach
-    }
-
-    /// Wavelength, nm.
-    #[must_use]
-    pub fn wavelength_nm(&self) -> f64 {
-        self.wavelength_nm
-    }
-
-    /// Optical path, in mm, that a ray at height `exit_mm` in the plane through the last vertex has
-    /// too much or too little where it should go to the focus; 0 for a collimated beam.
-    pub(crate) fn path_to_focus_mm(&self, exit_mm: f64) -> f64 {
-        self.focus_mm.map_or(0.0, |focus_mm| sphere_path_mm(focus_mm, exit_mm))
-    }
-
-    /// Height of the outermost ray, mm.
-    #[must_use]
-    pub fn edge_mm(&self) -> f64 {
-        self.radius_mm * self.reach
-    }
-
-    /// Height at the fraction `part` of the traced area.
-    fn height(&self, part: f64) -> f64 {
-        part.sqrt() * self.edge_mm()
-    }
-
-    pub(crate) fn waves_per_mm(&self) -> f64 {
-        1e6 / self.wavelength_nm
-    }
 }
 
 /// RMS and PV wavefront error of a train, each to 1e-6 waves or 1e-6 of the value, whichever is
@@ -200,13 +120,6 @@ pub fn wavefront_samples(
     paths.trace(&heights)?;
     let samples = heights.iter().zip(&paths.waves);
     Ok(samples.map(|(&height_mm, &waves)| WavefrontSample { height_mm, waves }).collect())
-}
-
-/// From a point at height `exit_mm` of a plane to a point on the axis `focus_mm` behind it, less the
-/// way along the axis: √(f² + y²) − |f|, with the sign of f, mm.
-#[must_use]
-pub fn sphere_path_mm(focus_mm: f64, exit_mm: f64) -> f64 {
-    exit_mm * exit_mm / (focus_mm + focus_mm.signum() * focus_mm.hypot(exit_mm))
 }
 
 /// Doubles the number of rays from `first` to at most `last` until two values in a row agree.
@@ -250,7 +163,7 @@ impl Paths<'_> {
         })?;
         let scale = self.beam.waves_per_mm();
         self.waves.iter_mut().for_each(|path| *path *= scale);
-        if self.beam.focus_mm.is_some() {
+        if self.beam.comes_to_a_focus() {
             for (waves, &height_mm) in self.waves.iter_mut().zip(heights_mm) {
                 let ray = trace_ray(self.train, RayStart::parallel(height_mm))
                     .map_err(|fault| WavefrontFault::Ray { height_mm, fault })?;
@@ -261,7 +174,7 @@ impl Paths<'_> {
     }
 
     fn rms(&mut self, rays: usize) -> Result<f64, WavefrontFault> {
-        let sample = beam_sample(self.beam.radius_mm, self.beam.reach, rays);
+        let sample = beam_sample(self.beam.radius_mm(), self.beam.reach(), rays);
         self.trace(&sample.heights_mm)?;
         let weighed = || self.waves.iter().zip(&sample.weights);
         let mean: f64 = weighed().map(|(w, weight)| weight * w).sum();
@@ -383,8 +296,6 @@ mod tests {
         // A shift dz of the focus is y² dz/(2f²) of path at height y.
         let expected = 9.0 * 0.1 / (2.0 * focus * focus) * 1e6 / 532.0;
         assert!((beside.pv_waves / expected - 1.0).abs() < 0.01, "{beside:?} {expected}");
-        let diverging = sphere_path_mm(-80.0, 3.0);
-        assert!((diverging + (80.0_f64.hypot(3.0) - 80.0)).abs() < 1e-13);
     }
 
     #[test]
@@ -409,14 +320,5 @@ mod tests {
         assert_eq!(converge(Measure::Pv, 8, 64, |rays| Ok(1.0 + 1e-5 / rays as f64)), {
             Ok(1.0 + 1e-5 / 16.0)
         });
-    }
-
-    #[test]
-    fn a_beam_of_no_size_is_no_beam() {
-        for (radius, reach, wavelength) in [(0.0, 1.5, 532.0), (1.0, f64::NAN, 532.0)] {
-            assert!(TracedBeam::new(radius, reach, wavelength).is_err());
-        }
-        let error = TracedBeam::new(1.0, 1.5, -532.0).unwrap_err();
-        assert_eq!(error, WavefrontFault::Beam { what: "wavelength", value: -532.0 });
     }
 }

@@ -5,12 +5,13 @@
 use proptest::prelude::*;
 use surface_model::first_order::first_order;
 use surface_model::paraxial::{ParaxialRay, ParaxialWeights};
-use surface_model::reverse::{Quantities, Shapes};
+use surface_model::quantities::{Quantities, Shapes};
 use surface_model::seidel::{SeidelRays, seidel};
 use surface_model::solid::{ShapeGradient, Solid};
 use surface_model::surface::{ASPHERE_TERMS, Surface, asphere_power};
+use surface_model::traced_beam::TracedBeam;
 use surface_model::train::Train;
-use surface_model::wavefront::{TracedBeam, wavefront_error, wavefront_samples};
+use surface_model::wavefront::{wavefront_error, wavefront_samples};
 
 /// Two to six gently curved surfaces, some of them aspheric.
 fn trains() -> impl Strategy<Value = Train> {

@@ -17,7 +17,7 @@ use merit_function::wishes::Wishes;
 use serde::Serialize;
 use surface_model::design::Design;
 use surface_model::place::Place;
-use surface_model::reverse::Quantities;
+use surface_model::quantities::Quantities;
 use surface_model::surface::ASPHERE_TERMS;
 use surface_model::train::Train;
 

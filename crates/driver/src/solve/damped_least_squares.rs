@@ -23,6 +23,8 @@ pub(crate) struct DampedLeastSquares<'a> {
     settings: &'a Settings,
     observer: &'a mut dyn Observer,
     damping: Damping,
+    /// What the damping was when it last stood at the best point.
+    damping_at_best: Damping,
     convergence: Convergence,
     stepper: Stepper,
     stopped: Option<Stopped>,
@@ -39,6 +41,7 @@ impl<'a> DampedLeastSquares<'a> {
             settings,
             observer,
             damping: Damping::new(settings.initial_damping()),
+            damping_at_best: Damping::new(settings.initial_damping()),
             convergence: Convergence::default(),
             stepper,
             stopped: None,
@@ -57,29 +60,44 @@ impl<'a> DampedLeastSquares<'a> {
 
     /// Accepts the trial and adapts the damping to it, or stays and raises it.
     fn judge(&mut self, trial: Result<Trial, Rejected>) -> bool {
-        match trial {
+        let accepted = match trial {
             Ok(trial) => {
                 let reduction = trial.reduction;
                 self.note(reduction, trial.length);
-                let accepted = reduction.is_acceptable();
-                if accepted {
+                if reduction.is_acceptable() {
                     self.stepper.accept(trial);
                     self.damping.adapt(reduction.gain());
+                    true
+                } else if self.stepper.is_worth_going_up(&trial) {
+                    self.stepper.accept(trial);
+                    true
                 } else {
-                    self.stepper.reject();
-                    self.damping.raise();
+                    self.reject();
+                    false
                 }
-                accepted
             }
             Err(rejected) => {
                 if rejected == Rejected::Stationary {
                     self.stopped = Some(Stopped::GradientSmall);
                 }
-                self.stepper.reject();
-                self.damping.raise();
+                self.reject();
                 false
             }
+        };
+        if self.stepper.stands_at_best() {
+            self.damping_at_best.clone_from(&self.damping);
+        } else if self.stepper.goes_back(self.damping.has_overflowed() || self.stopped.is_some()) {
+            self.stopped = None;
+            self.convergence = Convergence::default();
+            self.damping.clone_from(&self.damping_at_best);
+            self.damping.raise();
         }
+        accepted
+    }
+
+    fn reject(&mut self) {
+        self.stepper.reject();
+        self.damping.raise();
     }
 
     fn note(&mut self, reduction: Reduction, length: f64) {
@@ -89,7 +107,7 @@ impl<'a> DampedLeastSquares<'a> {
 
     /// Reports the iteration and decides whether it was the last.
     fn report(&mut self, iteration: u64, damping: f64, step: f64, accepted: bool) {
-        let point = self.stepper.point();
+        let point = self.stepper.best();
         let violation = self.stepper.violation();
         let progress = Progress {
             iteration,
@@ -126,7 +144,7 @@ impl<P: BlockProblem> Solver<Evaluator<'_, P>, SolverState> for DampedLeastSquar
     ) -> Result<(SolverState, Option<KV>), Error> {
         self.stepper.start(evaluator(problem)?).map_err(SolveError::from)?;
         if self.stepper.violation() <= 1.0
-            && self.stepper.point().sum_of_squares <= self.settings.target()
+            && self.stepper.best().sum_of_squares <= self.settings.target()
         {
             self.stopped = Some(Stopped::TargetReached);
         }
@@ -173,7 +191,7 @@ impl<P: BlockProblem> Solver<Evaluator<'_, P>, SolverState> for DampedLeastSquar
 
 impl DampedLeastSquares<'_> {
     fn write(&self, state: SolverState) -> SolverState {
-        let point = self.stepper.point();
+        let point = self.stepper.best();
         state.param(point.variables.clone()).cost(point.sum_of_squares)
     }
 }

@@ -11,6 +11,7 @@
 //! its steps, `normal.rs` the elimination of the states, `quadratic.rs` the bounds and limits.
 
 mod acceleration;
+mod boldness;
 mod cholesky;
 mod convergence;
 mod damped_least_squares;
@@ -85,8 +86,8 @@ fn damped_least_squares<P: BlockProblem>(
     let stepper = result.solver.into_stepper();
     Ok(Outcome {
         violation: stepper.violation(),
-        variables: stepper.point().variables.clone(),
-        sum_of_squares: stepper.point().sum_of_squares,
+        variables: stepper.best().variables.clone(),
+        sum_of_squares: stepper.best().sum_of_squares,
         stopped,
         iterations: result.state.get_iter(),
         evaluations: evaluator.as_ref().map_or(0, |evaluator| evaluator.evaluations),

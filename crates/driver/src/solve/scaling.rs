@@ -39,6 +39,11 @@ impl Scaling {
         &self.squares
     }
 
+    /// `(D v)ᵀ(D w)`.
+    pub(crate) fn product(&self, v: &[f64], w: &[f64]) -> f64 {
+        self.squares.iter().zip(v).zip(w).map(|((square, v), w)| square * v * w).sum()
+    }
+
     /// `|D v|²`.
     pub(crate) fn length_squared(&self, vector: &[f64]) -> f64 {
         self.squares.iter().zip(vector).map(|(square, v)| square * v * v).sum()

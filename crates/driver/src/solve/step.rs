@@ -2,24 +2,20 @@
 //! states, solve for the shared variables under bounds and limits, accelerate, bend back to
 //! curved limits, try.
 
+mod accelerate;
+mod limits;
+
 use merit_function::block::{BlockProblem, BlockShape, Bounds, Linearisation};
 
-use super::acceleration::{PROBE, WORTHWHILE, half_second_derivative, is_moderate};
+use super::boldness::Boldness;
 use super::cholesky::{NotPositiveDefinite, dot};
 use super::convergence::{Reduction, is_stationary};
 use super::evaluation::{Evaluator, Unusable};
-use super::normal::{NormalEquations, jacobian_times, transpose_times};
+use super::normal::NormalEquations;
 use super::penalty::Penalties;
 use super::quadratic::{self, Constraint, Inconsistent, Program, limit_along};
 use super::scaling::Scaling;
 use super::working_set::WorkingSet;
-
-/// Limits crossed by less than this share of their tolerance need no correction.
-const CROSSED: f64 = 1e-4;
-/// Corrections for the curvature of limits, at most.
-const CORRECTIONS: usize = 4;
-/// A demand to restore crossed limits weaker than this share is no demand.
-const LEAST_RESTORATION: f64 = 1e-3;
 
 /// A point with what is known of it.
 #[derive(Debug, Clone, Default)]
@@ -63,6 +59,12 @@ pub(crate) struct Stepper {
     shape: BlockShape,
     bounds: Vec<Bounds>,
     point: Point,
+    /// The point of least merit that has been linearised, and the scaling there.
+    best: Point,
+    scaling_at_best: Scaling,
+    boldness: Boldness,
+    /// The last step taken.
+    taken: Vec<f64>,
     /// Where the last accepted step came from, until the new point is linearised.
     left: Option<Point>,
     here: Linearisation,
@@ -103,6 +105,10 @@ impl Stepper {
             shape: shape.clone(),
             bounds: bounds.to_vec(),
             point: Point { variables: start, ..Point::default() },
+            best: Point { sum_of_squares: f64::INFINITY, ..Point::default() },
+            scaling_at_best: Scaling::new(variables),
+            boldness: Boldness::default(),
+            taken: vec![0.0; variables],
             left: None,
             here: Linearisation::zeros(shape),
             ahead: Linearisation::zeros(shape),
@@ -122,14 +128,19 @@ impl Stepper {
         }
     }
 
-    /// Where it stands.
-    pub(crate) fn point(&self) -> &Point {
-        &self.point
+    /// The best point so far: where it stands, or what it has left for a step uphill.
+    pub(crate) fn best(&self) -> &Point {
+        if self.stands_at_best() { &self.point } else { &self.best }
     }
 
-    /// Largest violation of a limit where it stands, in units of its tolerance.
+    /// Whether no point so far was better than where it stands.
+    pub(crate) fn stands_at_best(&self) -> bool {
+        self.merit(&self.point) <= self.merit(&self.best)
+    }
+
+    /// Largest violation of a limit at the best point, in units of its tolerance.
     pub(crate) fn violation(&self) -> f64 {
-        self.largest_violation(&self.point.limits)
+        self.largest_violation(&self.best().limits)
     }
 
     /// `|D x|`.
@@ -172,6 +183,10 @@ impl Stepper {
         self.scaling.update(self.normal.column_squares());
         self.point.limits.clear();
         self.point.limits.extend(self.here.limits.iter().map(|limit| limit.value));
+        if self.stands_at_best() {
+            self.best.clone_from(&self.point);
+            self.scaling_at_best.clone_from(&self.scaling);
+        }
     }
 
     /// Eliminates the states for a damping and factorises what is left for the shared variables.
@@ -217,22 +232,6 @@ impl Stepper {
         }
         self.require_restoration();
         self.solve_free();
-    }
-
-    /// `aᵢᵀp ≥ −gᵢ` for limits that are kept, `≥ −τ gᵢ` for those that are crossed.
-    fn require_restoration(&mut self) {
-        let restoration = self.restoration;
-        self.subproblem.required.clear();
-        self.subproblem
-            .required
-            .extend(self.point.limits.iter().map(|&g| if g < 0.0 { -restoration * g } else { -g }));
-    }
-
-    fn demand_less(&mut self) {
-        self.restoration /= 4.0;
-        if self.restoration < LEAST_RESTORATION {
-            self.restoration = 0.0;
-        }
     }
 
     fn solve_free(&mut self) {
@@ -304,105 +303,8 @@ impl Stepper {
         }
         let squares = self.point.sum_of_squares;
         gap <= share * squares
-            && self.violation() <= 1.0
+            && self.largest_violation(&self.point.limits) <= 1.0
             && is_stationary(&self.bent, self.normal.column_squares(), squares, share)
-    }
-
-    /// Bends the step by its geodesic acceleration.
-    pub(crate) fn accelerate<P: BlockProblem>(
-        &mut self,
-        evaluator: &mut Evaluator<'_, P>,
-        ratio: Option<f64>,
-    ) {
-        let Some(ratio) = ratio else { return };
-        if self.predicted <= WORTHWHILE * self.point.sum_of_squares {
-            return;
-        }
-        self.place_trial(PROBE);
-        let probed = evaluator
-            .residuals(&self.trial.variables, &mut self.residuals)
-            .and_then(|_| evaluator.limits(&self.trial.variables, &mut self.trial.limits));
-        if probed.is_err() {
-            return;
-        }
-        jacobian_times(&self.here, &self.shape, &self.step, &mut self.along);
-        let here = self.here.states.iter().flat_map(|block| block.residuals.iter());
-        for ((probed, here), along) in self.residuals.iter_mut().zip(here).zip(&self.along) {
-            half_second_derivative(*here, *along, probed);
-        }
-        transpose_times(&self.here, &self.shape, &self.residuals, &mut self.bent);
-        for (j, (gradient, bend)) in self.subproblem.gradient.iter_mut().zip(&self.bent).enumerate()
-        {
-            *gradient += if self.normal.is_fixed(j) { 0.0 } else { *bend };
-        }
-        for ((required, limit), probed) in
-            self.subproblem.required.iter_mut().zip(&self.here.limits).zip(&mut self.trial.limits)
-        {
-            let along = limit_along(limit, &self.normal, &self.step);
-            half_second_derivative(limit.value, along, probed);
-            *required -= *probed;
-        }
-        self.bent.copy_from_slice(&self.step);
-        self.solve_free();
-        if self.solve_program().is_err() {
-            self.step.copy_from_slice(&self.bent);
-            return;
-        }
-        let straight = self.scaling.length_squared(&self.bent);
-        self.bent.iter_mut().zip(&self.step).for_each(|(straight, bent)| *straight -= bent);
-        let bend = self.scaling.length_squared(&self.bent);
-        if !is_moderate(bend, straight, ratio) {
-            self.step.iter_mut().zip(&self.bent).for_each(|(bent, undo)| *bent += undo);
-        }
-    }
-
-    /// Places the trial point and, where it crosses a limit by its curvature, corrects the step
-    /// to second order: the same program with the limits' values at the trial point.
-    pub(crate) fn keep_limits<P: BlockProblem>(
-        &mut self,
-        evaluator: &mut Evaluator<'_, P>,
-    ) -> Result<(), Rejected> {
-        self.place_trial(1.0);
-        if self.here.limits.is_empty() {
-            self.trial.limits.clear();
-            return Ok(());
-        }
-        for _ in 0..CORRECTIONS {
-            evaluator.limits(&self.trial.variables, &mut self.trial.limits)?;
-            let targets = self.targets();
-            if self
-                .trial
-                .limits
-                .iter()
-                .zip(&targets)
-                .zip(&self.here.limits)
-                .all(|((value, target), limit)| *value >= target - CROSSED * limit.tolerance)
-            {
-                return Ok(());
-            }
-            self.bent.copy_from_slice(&self.step);
-            self.subproblem.required.clear();
-            for ((limit, value), target) in
-                self.here.limits.iter().zip(&self.trial.limits).zip(&targets)
-            {
-                let along = limit_along(limit, &self.normal, &self.step);
-                self.subproblem.required.push(along - value + target);
-            }
-            if self.solve_program().is_err() {
-                self.step.copy_from_slice(&self.bent);
-                return Ok(());
-            }
-            self.place_trial(1.0);
-        }
-        evaluator.limits(&self.trial.variables, &mut self.trial.limits)?;
-        Ok(())
-    }
-
-    /// The value each limit is to have after the step, at least: zero, or what partial
-    /// restoration asks for.
-    fn targets(&self) -> Vec<f64> {
-        let left = 1.0 - self.restoration;
-        self.point.limits.iter().map(|value| value.min(0.0) * left).collect()
     }
 
     /// Puts the trial point a share of the step away, within the bounds to the last bit.
@@ -444,24 +346,37 @@ impl Stepper {
 
     /// Moves to the trial point.
     pub(crate) fn accept(&mut self, trial: Trial) {
+        self.boldness.took_step(self.merit(&trial.point) < self.merit(self.best()));
+        self.taken.copy_from_slice(&self.step);
         self.left = Some(std::mem::replace(&mut self.point, trial.point));
-        self.restoration = (4.0 * self.restoration).clamp(LEAST_RESTORATION, 1.0);
+        self.demand_more();
+    }
+
+    /// Whether a step that does not bring what it promised is to be taken all the same.
+    pub(crate) fn is_worth_going_up(&self, trial: &Trial) -> bool {
+        let squares = [&self.step, &self.taken].map(|step| self.scaling.length_squared(step));
+        let cosine =
+            self.scaling.product(&self.step, &self.taken) / (squares[0] * squares[1]).sqrt();
+        self.boldness.allows(cosine, trial.reduction, self.merit(self.best()))
+    }
+
+    /// Goes back to the best point, where it does not stand, if it has been away for too long or has
+    /// come to an `end`; whether it does.
+    pub(crate) fn goes_back(&mut self, end: bool) -> bool {
+        let goes = end || self.boldness.is_spent();
+        if goes {
+            self.point.clone_from(&self.best);
+            self.scaling.clone_from(&self.scaling_at_best);
+            self.left = Some(self.best.clone());
+            self.boldness.went_back();
+        }
+        goes
     }
 
     /// Stays; crossed limits are to be restored more gently.
     pub(crate) fn reject(&mut self) {
-        if self.violation() > 0.1 {
+        if self.largest_violation(&self.point.limits) > 0.1 {
             self.demand_less();
         }
-    }
-
-    fn largest_violation(&self, limits: &[f64]) -> f64 {
-        let tolerances =
-            self.here.limits.iter().map(|limit| limit.tolerance.max(f64::MIN_POSITIVE));
-        limits
-            .iter()
-            .zip(tolerances)
-            .map(|(value, tolerance)| -value / tolerance)
-            .fold(0.0, f64::max)
     }
 }

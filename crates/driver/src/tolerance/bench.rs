@@ -10,7 +10,7 @@ use surface_model::design::Design;
 use surface_model::document::Address;
 use surface_model::place::Place;
 use surface_model::pupil::Pupil;
-use surface_model::reverse::{Quantities, Quantity, Shapes};
+use surface_model::quantities::{Quantities, Quantity, Shapes};
 use surface_model::train::Train;
 
 use super::ToleranceError;

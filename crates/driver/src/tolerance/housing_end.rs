@@ -4,7 +4,7 @@ use std::ops::Range;
 
 use surface_model::design::{Design, ZoomState};
 use surface_model::housing::Anchor;
-use surface_model::reverse::Quantity;
+use surface_model::quantities::Quantity;
 
 use super::bench::Bench;
 

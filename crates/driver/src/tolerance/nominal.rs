@@ -4,7 +4,7 @@
 //! wavefront without tilt in waves, then the ratio's error in per cent and the exit slope in µrad.
 
 use surface_model::paraxial::{ParaxialRay, ParaxialWeights};
-use surface_model::reverse::Shapes;
+use surface_model::quantities::Shapes;
 use surface_model::skew::{ExitSum, RayStart, trace_ray};
 
 use super::ToleranceError;

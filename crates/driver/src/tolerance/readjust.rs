@@ -105,6 +105,9 @@ impl Levers {
     /// housing: what runs into a bound or an end is held there and the rest solved again.
     fn step(&self, residuals: &DVector<f64>, reach: &[Bounds], rooms: &[Room]) -> DVector<f64> {
         let count = reach.len();
+        if count == 0 {
+            return DVector::zeros(0);
+        }
         let gradient = self.jacobian.tr_mul(residuals);
         let mut held: Vec<Stop> = Vec::new();
         let mut step = DVector::zeros(count);

@@ -8,8 +8,8 @@ use surface_model::far_field::far_field;
 use surface_model::gaussian::{GaussianBeam, GaussianPath, clipped};
 use surface_model::place::Place;
 use surface_model::pointing::pointing;
+use surface_model::traced_beam::TracedBeam;
 use surface_model::train::Train;
-use surface_model::wavefront::TracedBeam;
 
 use super::finite;
 use super::readjust::{Readjustment, readjustments};

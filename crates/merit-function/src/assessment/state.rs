@@ -6,8 +6,9 @@ use surface_model::fault::RayFault;
 use surface_model::gaussian::{GaussianBeam, GaussianPath};
 use surface_model::paraxial::ParaxialRay;
 use surface_model::skew::{RayStart, trace_ray};
+use surface_model::traced_beam::TracedBeam;
 use surface_model::train::Train;
-use surface_model::wavefront::{TracedBeam, WavefrontFault, wavefront_error};
+use surface_model::wavefront::{WavefrontFault, wavefront_error};
 
 use super::finite;
 use super::surface::{self, SurfaceAssessment};
@@ -231,6 +232,7 @@ fn wavefronts(
         };
         let error = train.and_then(|train| {
             TracedBeam::new(design.beam.radius_mm(), design.beam.traced_to, nm)
+                .map_err(WavefrontFault::Beam)
                 .map(|beam| match goals.exit_focus_m {
                     Some(focus) => beam.focused(1e3 * focus.wanted_m),
                     None => beam,

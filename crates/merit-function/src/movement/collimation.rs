@@ -35,7 +35,7 @@ use surface_model::fault::RayFault;
 use surface_model::glass::GlassError;
 use surface_model::paraxial::{ParaxialError, ParaxialRay, ParaxialWeights};
 use surface_model::quadrature::{BeamSample, beam_sample};
-use surface_model::reverse::{Quantities, Shapes};
+use surface_model::quantities::{Quantities, Shapes};
 use surface_model::sequence::GapId;
 use surface_model::skew::{ExitSum, RayStart, trace_ray};
 use surface_model::train::Train;

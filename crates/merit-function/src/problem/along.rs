@@ -10,7 +10,7 @@ use crate::fault::EvaluationFault;
 impl MeritFunction {
     /// Residuals at a point, and their derivative along a direction in which the quantities of the
     /// trains change: `direction` gives, for a state and a wavelength in nm, by how much which
-    /// quantity does (in the order of [`Quantities`](surface_model::reverse::Quantities); conic
+    /// quantity does (in the order of [`Quantities`](surface_model::quantities::Quantities); conic
     /// constants and asphere coefficients only of surfaces whose shape has a variable).
     ///
     /// # Errors
@@ -22,7 +22,7 @@ impl MeritFunction {
     ) -> Result<(Vec<f64>, Vec<f64>), EvaluationFault> {
         self.place(variables)?;
         self.trace(true)?;
-        self.bundle.differentiate(self.variables.quantities().shapes());
+        self.bundle.differentiate_all(self.variables.quantities().shapes());
         let (mut residuals, mut derivative) = (Vec::new(), Vec::new());
         for k in 0..self.states.len() {
             let shared = std::mem::take(&mut self.states[k].by_shared);

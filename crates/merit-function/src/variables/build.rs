@@ -4,7 +4,7 @@
 use surface_model::design::Design;
 use surface_model::housing::Anchor;
 use surface_model::place::Place;
-use surface_model::reverse::{Quantities, Shapes};
+use surface_model::quantities::{Quantities, Shapes};
 use surface_model::sequence::{GapId, Sequence};
 
 use super::{

@@ -1,7 +1,8 @@
 //! The exit wavefront against the height of the ray, a field a state, a curve a wavelength.
 
 use surface_model::design::{Design, ZoomState};
-use surface_model::wavefront::{TracedBeam, wavefront_samples};
+use surface_model::traced_beam::TracedBeam;
+use surface_model::wavefront::wavefront_samples;
 
 use super::axis::Axis;
 use super::chart::{Chart, Series, chart};

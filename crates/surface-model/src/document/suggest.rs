@@ -47,8 +47,10 @@ pub(super) fn nearest_key<'a>(key: &str, known: &[&'a str]) -> Option<&'a str> {
         let common = own.iter().filter(|word| others.contains(word)).count();
         2.0 * common as f64 / (own.len() + others.len()) as f64
     };
+    // One word may be a unit alone, which names nothing.
     let by_words = || {
-        let likely = known.iter().map(|key| (shared(key), *key));
+        let known = known.iter().filter(|_| own.len() > 1);
+        let likely = known.map(|key| (shared(key), *key));
         let likely = likely.filter(|(likeness, _)| *likeness > ALIKE);
         likely.reduce(|best, other| if other.0 > best.0 { other } else { best }).map(|(_, key)| key)
     };
