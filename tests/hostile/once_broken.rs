@@ -2,6 +2,7 @@
 
 use std::time::{Duration, Instant};
 
+use checks::judges::brief::{self, BRIEFS};
 use checks::judges::design::{Came, judge};
 use checks::judges::shipped::{DESIGNS, changed};
 use checks::judges::{plan, retune, run_folder};
@@ -216,4 +217,12 @@ fn as_many_points_as_can_be_are_told_and_drawn_in_time() {
             assert!(sweep_picture(&results).is_some());
         });
     }
+}
+
+#[test]
+fn a_brief_with_next_to_no_beam_is_told_what_stands_against_it() {
+    let mut brief: Value = serde_json::from_str(BRIEFS[0].1).unwrap();
+    brief["beam"]["diameter_mm"] = json!(5e-324);
+    brief["ratios"] = json!([2, 3, 4, 50, 6]);
+    assert_eq!(soon(|| brief::judge(brief.to_string().as_bytes())), Ok(Some(0)));
 }

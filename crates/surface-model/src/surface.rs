@@ -53,7 +53,7 @@ impl Surface {
     }
 
     /// The same surface seen from the other side.
-    pub(crate) fn from_behind(&self) -> Self {
+    pub(crate) fn turned_round(&self) -> Self {
         let Self { curvature, conic, asphere, semi_diameter } = *self;
         let asphere = asphere.map(|coefficient| -coefficient);
         Self { curvature: -curvature, conic, asphere, semi_diameter }

@@ -174,7 +174,7 @@ impl Train {
     #[must_use]
     pub fn reversed(&self) -> Self {
         Self {
-            surfaces: self.surfaces.iter().rev().map(Surface::from_behind).collect(),
+            surfaces: self.surfaces.iter().rev().map(Surface::turned_round).collect(),
             gaps: self.gaps.iter().rev().copied().collect(),
             indices: self.indices.iter().rev().copied().collect(),
         }

@@ -170,7 +170,11 @@ fn with(brief: &BriefFile, at: &Address, number: f64) -> Option<BriefFile> {
 
 /// To three digits, away from where it comes from.
 fn rounded(number: f64, up: bool) -> f64 {
-    let unit = 10_f64.powi(number.abs().log10().floor() as i32 - 2);
+    let unit = 10_f64.powi((number.abs().log10().floor() - 2.0) as i32);
+    // Nothing, and what is next to nothing, has no three digits.
+    if !unit.is_normal() {
+        return number;
+    }
     let steps = if up { (number / unit).ceil() } else { (number / unit).floor() };
     // Written and read back, so that 0.1 is 0.1.
     format!("{:.2e}", steps * unit).parse().unwrap_or(number)
@@ -185,5 +189,9 @@ mod tests {
         assert_eq!(rounded(123.4, true), 124.0);
         assert_eq!(rounded(0.04567, false), 0.0456);
         assert_eq!(rounded(-2.3456, false), -2.35);
+        for number in [0.0, -0.0, 5e-324, 1e-310, f64::INFINITY] {
+            assert_eq!(rounded(number, true), number);
+            assert_eq!(rounded(number, false), number);
+        }
     }
 }

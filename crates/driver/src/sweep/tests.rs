@@ -127,8 +127,7 @@ fn a_brief_is_begun_anew_at_every_point_whatever_was_computed_before() {
             continue;
         };
         assert_eq!(reached.design["housing"]["track_mm"], track_mm);
-        // Limits are kept to 1 µm.
-        assert!(reached.meets && reached.track_mm <= track_mm + 1e-3, "{point:?}");
+        assert!(reached.meets && reached.track_mm <= track_mm + 1e-9, "{point:?}");
     }
     let plan = forward.plan();
     let points = all.iter().map(|point| point.as_ref().clone()).collect();
