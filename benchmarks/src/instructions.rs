@@ -123,12 +123,11 @@ const COMPARABLE: &str = "256-bit vectors";
 /// The vectors the kernels choose on this processor, or on the one that valgrind plays.
 #[multiversion(targets("x86_64+avx512f+avx512dq+avx512vl+avx2", "x86_64+avx2", "aarch64+neon"))]
 fn vectors() -> &'static str {
-    if target_cfg_f!(target_feature = "avx512f") {
-        "512-bit vectors"
-    } else if target_cfg_f!(target_feature = "avx2") {
-        COMPARABLE
-    } else {
-        "baseline vectors"
+    let sees = [target_cfg_f!(target_feature = "avx512f"), target_cfg_f!(target_feature = "avx2")];
+    match sees {
+        [true, _] => "512-bit vectors",
+        [_, true] => COMPARABLE,
+        _ => "baseline vectors",
     }
 }
 
