@@ -77,12 +77,13 @@ struct Tried {
     cost: f64,
 }
 
-/// Finds the tolerances; `None` if the watcher breaks off.
+/// Finds the tolerances; `given_percent` is the yield of the same draws with those to begin with.
+/// `None` if the watcher breaks off.
 pub(crate) fn balance(
     bench: &Bench<'_>,
     levers: &[Levers],
     sensitivities: &[Sensitivity],
-    wanted_percent: f64,
+    (given_percent, wanted_percent): (f64, f64),
     draws: (u64, u64),
     watcher: &mut dyn Watcher,
 ) -> Option<Balance> {
@@ -94,12 +95,14 @@ pub(crate) fn balance(
         }
         let passed = outcomes.iter().filter(|outcome| bench.passes(outcome)).count();
         let yield_percent = 100.0 * passed as f64 / draws.0.max(1) as f64;
-        let cost: f64 = begun.iter().zip(&tolerances).map(|(begun, now)| begun / now).sum();
-        let cost = cost / begun.len().max(1) as f64;
+        let cost = relative_cost(&begun, &tolerances);
         Some(Tried { tolerances, yield_percent, cost })
     };
-    let mut best = build(begun.clone())?;
-    let given_percent = best.yield_percent;
+    let mut best = Tried {
+        tolerances: begun.clone(),
+        yield_percent: given_percent,
+        cost: relative_cost(&begun, &begun),
+    };
     let by_first_order = first_order(bench, sensitivities);
     for part in MIXTURES {
         // In units of the tolerance to begin with, the least being 1.
@@ -125,6 +128,12 @@ pub(crate) fn balance(
             })
             .collect(),
     })
+}
+
+/// Mean of what each tolerance costs over what it cost to begin with.
+fn relative_cost(begun: &[f64], now: &[f64]) -> f64 {
+    let cost: f64 = begun.iter().zip(now).map(|(begun, now)| begun / now).sum();
+    cost / begun.len().max(1) as f64
 }
 
 /// Of two sets that reach the yield the cheaper is better, otherwise the one that comes closer.

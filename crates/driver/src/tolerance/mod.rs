@@ -193,7 +193,8 @@ pub fn tolerance(
     let whole = outcomes.len() as u64 == settings.systems;
     let monte_carlo = monte_carlo::account(&bench, &sensitivities, &outcomes, draws);
     let balance = settings.balance_percent.filter(|_| whole).and_then(|wanted| {
-        balance::balance(&bench, &levers, &sensitivities, wanted, draws, watcher)
+        let percents = (monte_carlo.yield_percent, wanted);
+        balance::balance(&bench, &levers, &sensitivities, percents, draws, watcher)
     });
     sensitivities.sort_by(|a, b| b.share_percent.total_cmp(&a.share_percent));
     Ok(ToleranceReport {

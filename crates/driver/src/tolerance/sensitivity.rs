@@ -149,7 +149,7 @@ fn sensitivity(
     }
     let by = if item.item.kind.form() == Form::Round { By::Derivative } else { By::Trace };
     let (kind, at) = (item.item.kind, item.item.at());
-    let wander_urad = widest(&directions).map_or(0.0, |(size, _)| size);
+    let wander_urad = widest(&directions);
     Ok(Sensitivity { kind, at, tolerance, by, share_percent: 0.0, wander_urad, states, directions })
 }
 

@@ -119,7 +119,7 @@ impl SystemOutcome {
             let Ok(outcome) = state else { return f64::INFINITY };
             directions.push(boresight(outcome));
         }
-        widest(&directions).map_or(0.0, |(size, _)| size)
+        widest(&directions)
     }
 }
 
@@ -145,9 +145,9 @@ pub(crate) fn between(one: [f64; 2], other: [f64; 2]) -> f64 {
     (one[0] - other[0]).hypot(one[1] - other[1])
 }
 
-/// The two directions furthest apart, and how far; `None` of fewer than two.
-pub(crate) fn widest(directions: &[[f64; 2]]) -> Option<(f64, (usize, usize))> {
+/// Angle between the two directions furthest apart; none between fewer than two.
+pub(crate) fn widest(directions: &[[f64; 2]]) -> f64 {
     pairs(directions.len())
-        .map(|(one, other)| (between(directions[one], directions[other]), (one, other)))
-        .max_by(|a, b| a.0.total_cmp(&b.0))
+        .map(|(one, other)| between(directions[one], directions[other]))
+        .fold(0.0, f64::max)
 }

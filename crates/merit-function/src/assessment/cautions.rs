@@ -75,10 +75,7 @@ pub(super) fn warnings(design: &Design, states: &[StateHazards]) -> Vec<String> 
 }
 
 fn ghost_in_glass(design: &Design, states: &[StateHazards]) -> Option<String> {
-    let deep = |state: &StateHazards| {
-        state.ghosts.iter().any(|g| g.clearance_mm.is_some_and(|mm| mm < 0.0))
-    };
-    let how_many = states.iter().filter(|state| deep(state)).count();
+    let how_many = states.iter().filter(|state| state.has_ghost_in_glass()).count();
     let ghosts = states.iter().flat_map(|state| state.ghosts.iter().map(move |g| (state, g)));
     let in_glass = ghosts.filter_map(|(state, ghost)| {
         Some((state, ghost, ghost.clearance_mm.filter(|&clearance| clearance < 0.0)?))
@@ -86,10 +83,11 @@ fn ghost_in_glass(design: &Design, states: &[StateHazards]) -> Option<String> {
     let (state, ghost, clearance) = in_glass.min_by(|a, b| a.2.total_cmp(&b.2))?;
     let at: Vec<String> =
         ghost.reflected_at.iter().map(|at| with_names(design, at).to_string()).collect();
-    let (limit, share) = match ghost.reflected_at.len() {
-        1 => ("ghost_clearance_mm", 100.0 * ghost.share),
-        _ => ("double_ghost_clearance_mm", 100.0 * ghost.share),
+    let limit = match ghost.reflected_at.len() {
+        1 => "ghost_clearance_mm",
+        _ => "double_ghost_clearance_mm",
     };
+    let share = 100.0 * ghost.share;
     Some(format!(
         "light that surfaces reflect comes to a focus inside glass in {how_many} of {} states: \
          deepest in {}, reflected at {}, {:.2} mm from the nearest surface, with at most {share:.2} % \

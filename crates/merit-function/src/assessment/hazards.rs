@@ -36,6 +36,14 @@ pub struct StateHazards {
     pub ghosts: Vec<GhostHazard>,
 }
 
+impl StateHazards {
+    /// Whether reflected light comes to a focus inside glass.
+    #[must_use]
+    pub fn has_ghost_in_glass(&self) -> bool {
+        self.ghosts.iter().any(|ghost| ghost.clearance_mm.is_some_and(|mm| mm < 0.0))
+    }
+}
+
 /// How hard a beam is at its centre; what is not given of the laser is absent.
 #[derive(Debug, Clone, Copy, PartialEq, Serialize)]
 pub struct Exposure {

@@ -33,10 +33,7 @@ pub fn hazards(file: &DesignFile, assessment: &Assessment) -> String {
 pub(crate) fn summary(file: &DesignFile, assessment: &Assessment) -> String {
     let Some(states) = &assessment.hazards else { return String::new() };
     let note = "A focus clear of glass by less than nothing lies in it.";
-    let deep = |state: &StateHazards| {
-        state.ghosts.iter().any(|g| g.clearance_mm.is_some_and(|mm| mm < 0.0))
-    };
-    let note = if states.iter().any(deep) { note } else { "" };
+    let note = if states.iter().any(StateHazards::has_ghost_in_glass) { note } else { "" };
     sections([
         hardest(file, states),
         foci(file, states),
