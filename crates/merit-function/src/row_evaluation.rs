@@ -158,8 +158,8 @@ impl RowEvaluator {
                 Measured::Incidence(surface) => incidence_deg(self.rays[k].edge.as_ref(), *surface),
                 Measured::MarginalHeight(surface) => self.rays[k].paraxial.heights()[*surface],
                 Measured::EdgeRayHeight(surface) => {
-                    let heights = self.rays[k].edge.iter().flat_map(RayPath::heights_mm);
-                    heights.skip(*surface).next().unwrap_or(self.edge_mm) / self.edge_mm
+                    let mut heights = self.rays[k].edge.iter().flat_map(RayPath::heights_mm);
+                    heights.nth(*surface).unwrap_or(self.edge_mm) / self.edge_mm
                 }
                 Measured::Fluence(surface) => {
                     let radius_squared = self.rays[k].gaussian.radius_squared(*surface);
