@@ -170,19 +170,24 @@ pub(super) fn cross(panel: &mut Panel, [x, y]: [f64; 2]) {
 
 /// The frame of a field whose corner is at `[left, bottom]`: hairlines across, ticks below.
 pub(crate) fn frame(panel: &mut Panel, x: &Scale, y: &Scale, corner: [f64; 2], right: f64) {
+    levels(panel, y, corner, right);
     let [left, bottom] = corner;
-    for (value, label) in y.ticks(5) {
-        let at = y.place(value);
-        panel.line([left, at], [right, at], Stroke::solid(HAIR, 0.6));
-        panel.word([left - 6.0, at + 3.5], &label, Word::SMALL.at(Anchor::End));
-    }
-    panel.line([left, bottom], [right, bottom], Stroke::solid(FAINT, 1.0));
     let about = ((right - left) / 70.0).clamp(2.0, 10.0) as usize;
     for (value, label) in x.ticks(about) {
         let at = x.place(value);
         panel.line([at, bottom], [at, bottom + 4.0], Stroke::solid(FAINT, 1.0));
         panel.word([at, bottom + 15.0], &label, Word::SMALL.at(Anchor::Middle));
     }
+}
+
+/// The hairlines across a field and its bottom.
+pub(super) fn levels(panel: &mut Panel, y: &Scale, [left, bottom]: [f64; 2], right: f64) {
+    for (value, label) in y.ticks(5) {
+        let at = y.place(value);
+        panel.line([left, at], [right, at], Stroke::solid(HAIR, 0.6));
+        panel.word([left - 6.0, at + 3.5], &label, Word::SMALL.at(Anchor::End));
+    }
+    panel.line([left, bottom], [right, bottom], Stroke::solid(FAINT, 1.0));
 }
 
 /// Places at least `apart` from each other, in order and as near as that lets them be to where

@@ -2,8 +2,8 @@
 
 use super::PICTURE_WIDTH;
 use super::axis::{Axis, Scale};
-use super::chart::{cross, frame};
-use super::ink::{FAINT, HAIR, INK, Stroke, map_colour};
+use super::chart::{cross, frame, levels};
+use super::ink::{FAINT, INK, Stroke, map_colour};
 use super::panel::{Anchor, Panel, Word, width_of};
 use super::sweep::{Cell, KEY, draw_key};
 
@@ -100,7 +100,7 @@ pub(super) fn strip(strip: &Strip, width: f64) -> Panel {
         Along::Names(names, at) => {
             let each = (right - LEFT) / names.len().max(1) as f64;
             let middle = |k: usize| LEFT + each * (k as f64 + 0.5);
-            levels(&mut panel, &y, bottom, right);
+            levels(&mut panel, &y, [LEFT, bottom], right);
             for (k, name) in names.iter().enumerate() {
                 if width_of(name, 10.0) <= each {
                     let word = Word::SMALL.at(Anchor::Middle);
@@ -143,14 +143,4 @@ fn headed(title: &str, up: &Axis, [width, height]: [f64; 2]) -> Panel {
 fn across(panel: &mut Panel, axis: &Axis, [right, bottom]: [f64; 2]) {
     let word = Word::PLAIN.at(Anchor::End).in_colour(FAINT);
     panel.word([right, bottom + 30.0], &axis.caption(), word);
-}
-
-/// Hairlines across a field whose bottom has names.
-fn levels(panel: &mut Panel, y: &Scale, bottom: f64, right: f64) {
-    for (value, label) in y.ticks(5) {
-        let at = y.place(value);
-        panel.line([LEFT, at], [right, at], Stroke::solid(HAIR, 0.6));
-        panel.word([LEFT - 6.0, at + 3.5], &label, Word::SMALL.at(Anchor::End));
-    }
-    panel.line([LEFT, bottom], [right, bottom], Stroke::solid(FAINT, 1.0));
 }
