@@ -24,6 +24,7 @@ pub(crate) struct RowEvaluator {
     pulse_energy_j: f64,
     focus_in_sight: f64,
     ghost_in_sight_mm: f64,
+    ghosts_looked_at: bool,
     rays: Vec<StateRays>,
     /// Per rule, the way of its ghost, once it has been looked at.
     ways: Vec<Option<GhostWay>>,
@@ -75,6 +76,7 @@ impl RowEvaluator {
             pulse_energy_j,
             focus_in_sight: FOCUS_IN_SIGHT,
             ghost_in_sight_mm: GHOST_IN_SIGHT_MM,
+            ghosts_looked_at: true,
             rays: Vec::new(),
             gradient: Vec::new(),
             values: Vec::new(),
@@ -84,6 +86,23 @@ impl RowEvaluator {
     /// Height of the ray whose incidence is limited, mm.
     pub(crate) fn set_edge_mm(&mut self, edge_mm: f64) {
         self.edge_mm = edge_mm;
+    }
+
+    /// Whether rows about ghosts are looked at; else they count as kept.
+    pub(crate) fn look_at_ghosts(&mut self, looked_at: bool) {
+        self.ghosts_looked_at = looked_at;
+    }
+
+    /// Keeps the outermost traced ray from a focus too, wherever the paraxial one is kept from it.
+    pub(crate) fn keep_the_edge_ray_from_a_focus(&mut self) {
+        let exact = |rule: &RowRule| {
+            let Measured::MarginalHeight(surface) = rule.measured else { return None };
+            Some(RowRule { measured: Measured::EdgeRayHeight(surface), ..rule.clone() })
+        };
+        let rules: Vec<RowRule> = self.rules.iter().filter_map(exact).collect();
+        self.rules.extend(rules);
+        self.places.resize(self.rules.len(), 0.0);
+        self.ways.resize(self.rules.len(), None);
     }
 
     /// Per row, what it tells of the way between the states, if it is about that.
@@ -138,10 +157,15 @@ impl RowEvaluator {
                 Measured::Edge(gap) => edge_mm_or_fault(train, *gap)?,
                 Measured::Incidence(surface) => incidence_deg(self.rays[k].edge.as_ref(), *surface),
                 Measured::MarginalHeight(surface) => self.rays[k].paraxial.heights()[*surface],
+                Measured::EdgeRayHeight(surface) => {
+                    let heights = self.rays[k].edge.iter().flat_map(RayPath::heights_mm);
+                    heights.skip(*surface).next().unwrap_or(self.edge_mm) / self.edge_mm
+                }
                 Measured::Fluence(surface) => {
                     let radius_squared = self.rays[k].gaussian.radius_squared(*surface);
                     peak_per_cm2(self.pulse_energy_j, radius_squared.sqrt())
                 }
+                Measured::GhostClearance(_) if !self.ghosts_looked_at => NO_FOCUS_MM,
                 Measured::GhostClearance(ghost) => {
                     let way = way.get_or_insert_with(|| GhostWay::new(train, *ghost));
                     way.follow(train);
@@ -170,7 +194,8 @@ impl RowEvaluator {
         let any =
             |wanted: fn(&Measured) -> bool| self.rules.iter().any(|rule| wanted(&rule.measured));
         let paraxial = any(|measured| matches!(measured, Measured::MarginalHeight(_)));
-        let exact = any(|measured| matches!(measured, Measured::Incidence(_)));
+        let exact =
+            any(|measured| matches!(measured, Measured::Incidence(_) | Measured::EdgeRayHeight(_)));
         let gaussian = any(|measured| matches!(measured, Measured::Fluence(_)));
         for (state, rays) in states.iter().zip(&mut self.rays) {
             let train = &state.train;
@@ -231,7 +256,17 @@ impl RowEvaluator {
         variables: &Variables,
         row: &mut LimitRow,
     ) -> Result<(), EvaluationFault> {
-        let Self { rules, rays, ways, way, gradient, focus_in_sight, ghost_in_sight_mm, .. } = self;
+        let Self {
+            rules,
+            rays,
+            ways,
+            way,
+            gradient,
+            edge_mm,
+            focus_in_sight,
+            ghost_in_sight_mm,
+            ..
+        } = self;
         let rule = &rules[i];
         let k = rule.state.unwrap_or(0);
         let state = &states[k];
@@ -276,7 +311,14 @@ impl RowEvaluator {
                 gradient.iter().enumerate().for_each(|(quantity, &by)| put(quantity, by));
             }
             // A beam far from a focus is left alone.
-            Measured::MarginalHeight(_) if row.value > *focus_in_sight => {}
+            Measured::MarginalHeight(_) | Measured::EdgeRayHeight(_)
+                if row.value > *focus_in_sight => {}
+            Measured::EdgeRayHeight(surface) => {
+                if let Some(ray) = edge {
+                    let by_height = ray.differentiate_height(*surface, quantities);
+                    by_height.iter().enumerate().for_each(|(q, by)| put(q, by / *edge_mm));
+                }
+            }
             Measured::MarginalHeight(surface) => {
                 let weights = ParaxialWeights { heights: &[(*surface, 1.0)], exit_slope: 0.0 };
                 gradient.resize(quantities.count(), 0.0);

@@ -52,8 +52,8 @@ pub(crate) struct Seed<N, const D: usize> {
     pub(crate) position: [N; D],
     /// Weights of the exit direction cosines.
     pub(crate) direction: [N; D],
-    /// Weight of cos I at one surface.
-    pub(crate) cos_in: Option<(usize, N)>,
+    /// Weights of what a ray has at one surface.
+    pub(crate) at: Option<(usize, AtSurface<N>)>,
 }
 
 impl<N: Real, const D: usize> Seed<N, D> {
@@ -61,14 +61,23 @@ impl<N: Real, const D: usize> Seed<N, D> {
     #[inline(always)]
     pub(crate) fn path() -> Self {
         let zero = N::splat(0.0);
-        Self { path: N::splat(1.0), position: [zero; D], direction: [zero; D], cos_in: None }
+        Self { path: N::splat(1.0), position: [zero; D], direction: [zero; D], at: None }
     }
 
-    /// The cosine of the angle of incidence at one surface alone.
+    /// What a ray has at one surface alone.
     #[inline(always)]
-    pub(crate) fn cos_in(surface: usize) -> Self {
-        Self { path: N::splat(0.0), cos_in: Some((surface, N::splat(1.0))), ..Self::path() }
+    pub(crate) fn at(surface: usize, weights: AtSurface<N>) -> Self {
+        Self { path: N::splat(0.0), at: Some((surface, weights)), ..Self::path() }
     }
+}
+
+/// Weights of what a ray has at one surface.
+#[derive(Debug, Clone, Copy)]
+pub(crate) struct AtSurface<N> {
+    /// Of the cosine of its angle of incidence.
+    pub(crate) cos_in: N,
+    /// Of its height, the last of its transverse coordinates.
+    pub(crate) height: N,
 }
 
 /// Adjoint of the point and of the direction of a ray: the same shape as a ray.
@@ -198,13 +207,14 @@ fn backward<N: Real, const D: usize>(
         let gamma = *cos_out - mu * *cos_in;
         let gamma_bar = dot(&n, &behind.d) + nz * behind.dz;
         let mut cos_bar = -(mu * gamma * over_cos_out * gamma_bar);
-        if let Some((surface, weight)) = seed.cos_in
+        let mut before = behind;
+        if let Some((surface, weights)) = seed.at
             && surface == i
         {
-            cos_bar = cos_bar + weight;
+            cos_bar = cos_bar + weights.cos_in;
+            before.y[D - 1] = before.y[D - 1] + weights.height;
         }
         let mut n_bar = behind.d;
-        let mut before = behind;
         for axis in 0..D {
             n_bar[axis] = gamma * behind.d[axis] + cos_bar * at.d[axis];
             before.d[axis] = mu * behind.d[axis] + cos_bar * n[axis];
