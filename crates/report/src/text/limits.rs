@@ -35,8 +35,9 @@ pub(crate) fn limits(file: &DesignFile, assessment: &Assessment, scope: Scope) -
 }
 
 /// What the number of the limit `internal_focus` is.
-pub(crate) const FOCUS: &str = "internal_focus: the least height of the outermost ray between the \
-                                groups over its height at entry; at a focus it is 0.";
+pub(crate) const FOCUS: &str = "internal_focus: the least height of the outermost ray, paraxial or \
+                                exact, at any surface over its height at entry; below 0 the beam \
+                                has crossed the axis.";
 
 pub(crate) fn any_of(assessment: &Assessment, kind: LimitKind) -> bool {
     assessment.limits.iter().any(|limit| limit.limit == kind)
