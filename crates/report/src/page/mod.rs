@@ -5,7 +5,7 @@
 //! movement curve, rounded for people; the full ones stand in `data-value`.
 //!
 //! To add a section hand it over in [`Subject::sections`]: a title and a body, made by
-//! `maud::html!`, with [`parts::laid_out`] for a table that the terminal has too. It stands between
+//! `maud::html!`, with `parts::laid_out` for a table that the terminal has too. It stands between
 //! the glasses and how the design was found; [`beam_section`], [`hazards_section`],
 //! [`tolerance_section`] and [`temperature_section`] are examples.
 

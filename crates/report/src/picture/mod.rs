@@ -1,19 +1,19 @@
 //! Pictures, as SVG: to scale where they show glass, with units wherever they show numbers.
 //!
-//! Everything is drawn on a [`Panel`]; [`Panel::stack`] puts panels together, [`Panel::into_file`]
-//! makes a file of one and [`Panel::into_element`] a part of a page. All have one look (`ink.rs`):
+//! Everything is drawn on a `Panel`; `Panel::stack` puts panels together, `Panel::into_file`
+//! makes a file of one and `Panel::into_element` a part of a page. All have one look (`ink.rs`):
 //! curves are named at their ends, colours are safe for the colour-blind and never speak alone.
 //!
 //! | what | how |
 //! |---|---|
-//! | glass, rays, movement | [`layout()`], [`train`] for the geometry alone |
-//! | exit wavefronts | [`wavefronts`] |
-//! | over the ratio | [`movement`] |
-//! | merit against iteration or start | [`merit_curve`] |
-//! | a search | [`overnight_picture`] |
-//! | a sweep | [`sweep`] over one axis or a grid of two and for a trade, [`scattered`] for points that are no grid, [`axis_name`] for what an axis is called |
-//! | what counts how much | [`fn@bars`] |
-//! | any curve | [`fn@chart`] |
+//! | glass, rays, movement | `layout`, `train` for the geometry alone |
+//! | exit wavefronts | `wavefronts` |
+//! | over the ratio | `movement` |
+//! | merit against iteration or start | `merit_curve` |
+//! | a search | `overnight_picture` |
+//! | a sweep | `sweep` over one axis or a grid of two and for a trade, `scattered` for points that are no grid, `axis_name` for what an axis is called |
+//! | what counts how much | `bars` |
+//! | any curve | `chart` |
 
 mod axis;
 mod axis_name;
