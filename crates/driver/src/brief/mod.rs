@@ -18,7 +18,6 @@ use crate::document_kind::{BRIEF, part};
 pub use document::{
     BriefDocument, BriefFormat, GroupBriefDocument, OwnRatioDocument, RatioDocument,
 };
-pub use error::BriefError;
 
 /// A brief, read and checked.
 #[derive(Debug, Clone)]

@@ -15,7 +15,7 @@ use crate::search::{SearchProblem, SearchSettings, StartResult};
 
 pub use finds::{Fall, Finds, StartEnd};
 pub use gathering::{Gathering, MissingPart, fetch};
-pub use ranked::{RANKING_FORMAT, Ranked, RankedList};
+pub use ranked::{Ranked, RankedList};
 
 /// What `run.json` calls this kind of run.
 pub const KIND: &str = "overnight";

@@ -125,15 +125,7 @@ pub struct RunEnd {
     pub tally: Tally,
     /// The journal could not be written to the end: why.
     pub unsaved: Option<io::Error>,
-    /// Units from this number on do not count.
+    /// Units from this number on do not count: they ran ahead while an earlier one was good enough,
+    /// or lie beyond the units wanted.
     pub counted_below: Option<u64>,
-}
-
-impl RunEnd {
-    /// Whether a unit counts: the ones that ran ahead while an earlier one was good enough, or
-    /// that lie beyond the units wanted, do not.
-    #[must_use]
-    pub fn counts(&self, number: u64) -> bool {
-        self.counted_below.is_none_or(|below| number < below)
-    }
 }

@@ -16,7 +16,7 @@ use crate::document_kind::PLAN;
 use crate::sampling::{LatinHypercube, Sobol};
 
 /// Most points of a sweep.
-pub const MOST_POINTS: usize = 100_000;
+pub(super) const MOST_POINTS: usize = 100_000;
 
 /// Most values of all axes in all points: some hundred megabytes.
 const MOST_VALUES: usize = 1_000_000;
@@ -227,7 +227,7 @@ pub struct Plan {
     pub(super) starts: u32,
     pub(super) seed: u64,
     /// Two results to weigh against each other.
-    pub front: Option<[Quantity; 2]>,
+    pub(crate) front: Option<[Quantity; 2]>,
 }
 
 impl Plan {

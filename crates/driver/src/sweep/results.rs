@@ -33,7 +33,7 @@ const NAMED: [Named; 5] = [
 #[derive(Debug, Clone)]
 pub struct Quantity {
     /// Its word, or its address.
-    pub word: String,
+    pub(crate) word: String,
     what: What,
 }
 

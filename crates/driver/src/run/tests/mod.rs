@@ -77,7 +77,7 @@ impl Keeper {
         let mut counted: Vec<(u64, String)> = self
             .units
             .iter()
-            .filter(|unit| end.counts(unit.number))
+            .filter(|unit| end.counted_below.is_none_or(|below| unit.number < below))
             .map(|unit| (unit.number, serde_json::to_string(&unit.done).unwrap()))
             .collect();
         counted.sort();
