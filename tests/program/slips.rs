@@ -114,7 +114,7 @@ fn changes_that_are_not_quite_changes() {
 fn values_of_options() {
     let comma = run(&format!("trace {RIVER} --state 6x --height-mm 1,2"));
     says(&comma, 2, &["--height-mm: \"1,2\" is not a number", "decimals take a point: 1.2"]);
-    let span = run(&format!("assess {RIVER} --temperature 0-40"));
+    let span = run(&format!("assess {RIVER} --temperatures-c 0-40"));
     says(&span, 2, &["several stand with commas between: 0,40"]);
     says(&run(&format!("cam {RIVER} --ratios 3,5")), 2, &["--step sets the way"]);
     let range = run(&format!("assess {RIVER} --ranges-m -5"));
@@ -135,7 +135,7 @@ fn glasses_by_the_names_of_workshops() {
         assert!(run(&format!("glass {name}")).out.contains(known), "{name}");
         says(&on_brief(|v| v["glasses_allowed"] = json!([name])), 2, &[known]);
     }
-    let cold = run_on("assess - --temperature 0", &text(&every_key()));
+    let cold = run_on("assess - --temperatures-c 0", &text(&every_key()));
     says(&cold, 2, &["\"my-fused-silica\"", "index_per_k", "expansion_per_k", "density_g_cm3"]);
 }
 

@@ -6,7 +6,7 @@ use std::sync::Arc;
 use std::sync::atomic::{AtomicBool, Ordering};
 use std::time::{Duration, Instant};
 
-use driver::run::{Saving, TakenUp, Tally};
+use driver::run::{Earlier, Saving, Tally};
 use indicatif::{ProgressBar, ProgressStyle};
 use report::text::overnight::time;
 
@@ -58,8 +58,8 @@ impl<'a> RunTeller<'a> {
 
     /// Tells what an earlier session left in the folder `run`; of a run that only goes on, nothing
     /// if `quiet`.
-    pub(crate) fn taken_up(&self, run: &str, taken_up: &TakenUp, quiet: bool) {
-        let TakenUp { finished, sessions, seconds, dropped_bytes } = *taken_up;
+    pub(crate) fn earlier(&self, run: &str, earlier: &Earlier, quiet: bool) {
+        let Earlier { finished, sessions, seconds, dropped_bytes } = *earlier;
         if dropped_bytes > 0 {
             self.say(&format!(
                 "notice: the last line of the journal in {run} was torn; its {dropped_bytes} bytes \

@@ -65,4 +65,4 @@ pub use reading::JournalFacts;
 pub use results::{ResultFile, ResultsFolder};
 pub use share::{Share, ShareError};
 pub use survey::{PartSurvey, Survey};
-pub use work::{Finished, RunEnd, Saving, Stop, TakenUp, Tally, Watcher, Work};
+pub use work::{Earlier, Finished, RunEnd, Saving, Stop, Tally, Watcher, Work};

@@ -50,9 +50,9 @@ pub struct Finished<D> {
     pub done: D,
 }
 
-/// What a session found in the folder.
+/// What earlier sessions have left in the folder.
 #[derive(Debug, Clone, Copy, PartialEq)]
-pub struct TakenUp {
+pub struct Earlier {
     /// Units finished before.
     pub finished: u64,
     /// Sessions before this one.
@@ -90,7 +90,7 @@ pub enum Saving<'a> {
 /// Watches a run.
 pub trait Watcher<D> {
     /// The folder has been read.
-    fn taken_up(&mut self, taken_up: &TakenUp);
+    fn earlier(&mut self, earlier: &Earlier);
     /// A unit is finished, in an earlier session or now, in no particular order.
     fn found(&mut self, finished: Finished<D>);
     /// Called several times a second.

@@ -11,10 +11,11 @@ use super::multistart;
 use super::settings::{SearchSettings, Strategy};
 use super::source::{Quarry, Source};
 use super::start_result::{Found, StartResult};
-use super::workbench::{Interrupted, Workbench};
+use super::workbench::Workbench;
 use crate::brief::BriefFile;
 use crate::design_file::DesignFile;
 use crate::optimise::OptimiseError;
+use crate::run::Interrupted;
 use crate::sampling::{RandomStream, stream};
 use crate::start::{Refusals, StartError, Starts};
 

@@ -1,7 +1,7 @@
 //! First-order starts: from a brief to designs worth optimising.
 //!
 //! A brief spans a space of layouts. A point of it is a list of numbers from 0 to 1, and stands for
-//! everything a layout has to choose: the plan (number of groups), the signs of their powers, the
+//! everything a layout has to choose: the scheme (how many groups, and how they move), the signs of their powers, the
 //! focal lengths, the size in the tube, what is tied where four groups leave a freedom, and for
 //! every element its bending and its glass, or its pair of glasses in their order. Any list of
 //! numbers is a point.
@@ -11,7 +11,7 @@
 //! | step | where |
 //! |---|---|
 //! | number and seed → point | [`Sobol`] |
-//! | fixed groups and counts → how spacings follow | `plan`, `family` |
+//! | fixed groups and counts → how spacings follow | `scheme`, `family` |
 //! | point → powers, spacings of thin groups in closed form, screened | `thin` (`by_heights`, `four_groups`), `spacings` |
 //! | powers → glasses, bendings of least spherical aberration | `shape`, `glasses`, `bending` |
 //! | thin → thick, exact by principal planes | `thick`, `lens` |
@@ -37,9 +37,9 @@ mod glasses;
 mod layout;
 mod lens;
 mod no_layout;
-mod plan;
 mod ranking;
 mod relaxation;
+mod scheme;
 mod score;
 mod shape;
 mod space;

@@ -38,7 +38,7 @@ pub use document::plan_schema;
 pub use gathering::SweepGathering;
 pub use plan::{Plan, PlanFile};
 pub use point::{PointResult, Reached};
-pub use results::{Quantity, SweepResults};
+pub use results::{Figure, SweepResults};
 pub use subject::Subject;
 
 /// What a run folder calls this sort of work.
