@@ -23,10 +23,14 @@ fn on_design(change: impl FnOnce(&mut Value)) -> Ended {
 }
 
 fn on_brief(change: impl FnOnce(&mut Value)) -> Ended {
+    run_on("start -", &brief_with(change))
+}
+
+fn brief_with(change: impl FnOnce(&mut Value)) -> String {
     let written = std::fs::read_to_string(root().join(BRIEF)).unwrap();
     let mut brief: Value = serde_json::from_str(&written).unwrap();
     change(&mut brief);
-    run_on("start -", &serde_json::to_string_pretty(&brief).unwrap())
+    serde_json::to_string_pretty(&brief).unwrap()
 }
 
 fn renamed(map: &mut Value, from: &str, to: &str) {
@@ -87,6 +91,12 @@ fn ratios_that_narrow_or_invert() {
     assert!(narrow.out.contains("A ratio below 1 narrows the beam"), "{}", narrow.out);
     let inverted = on_brief(|v| v["ratios"] = json!([2, -3]));
     says(&inverted, 2, &["standard input:", "at /ratios/1", "ask for a positive ratio"]);
+    let folder = tempfile::tempdir().unwrap();
+    let night = folder.path().join("night");
+    let line = format!("overnight - --run {} --starts 1", night.display());
+    let searched = run_on(&line, &brief_with(|v| v["ratios"] = json!([2, -3])));
+    assert_eq!((searched.status, searched.err), (2, inverted.err), "as start tells it");
+    assert!(!night.exists());
 }
 
 #[test]

@@ -1,6 +1,5 @@
 //! `tolerance`: what a workshop's errors do to a design.
 
-
 use driver::design_file::DesignFile;
 use driver::tolerance::{Grade, ToleranceReport, ToleranceSettings, tolerance};
 use report::text::tolerance::{Listed, told};
