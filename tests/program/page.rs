@@ -265,3 +265,55 @@ fn an_optimisation_is_told_as_its_document_tells_it() {
     }
     assert!(html.contains("Merit against iteration"));
 }
+
+/// First of all the page says whether the design holds, in its states and between them.
+#[test]
+fn the_verdict_speaks_of_what_lies_between_the_states_too() {
+    let folder = tempfile::tempdir().unwrap();
+    let page = |design: &str| {
+        let page = folder.path().join(format!("{design}.html"));
+        let line = format!("report configs/{design}.json -o {}", page.display());
+        assert_eq!(run(&line).status, 0);
+        std::fs::read_to_string(page).unwrap()
+    };
+    for (design, sound) in [("river-as-designed", false), ("river-on-a-cam", true)] {
+        let html = page(design);
+        let curve = run(&format!("cam configs/{design}.json --json")).json();
+        assert_eq!(curve["sound"], sound, "{design}");
+        let verdict = html.split("<h2>").next().unwrap();
+        assert!(verdict.contains("data-meets=\"true\""), "{design}");
+        assert!(verdict.contains(&format!("data-sound=\"{sound}\"")), "{design}");
+        let findings = curve["findings"].as_array().unwrap();
+        for finding in findings.iter().filter(|finding| finding["wrong"] == true) {
+            assert!(verdict.contains(finding["told"].as_str().unwrap()), "{design}");
+        }
+    }
+}
+
+/// The laser's sections hold the numbers of the terminal's tables, as tables.
+#[test]
+fn the_laser_is_told_in_tables() {
+    let folder = tempfile::tempdir().unwrap();
+    let page = folder.path().join("page.html");
+    let design = "configs/gorge-lidar-pulsed.json";
+    assert_eq!(run(&format!("report {design} -o {}", page.display())).status, 0);
+    let html = std::fs::read_to_string(&page).unwrap();
+    let section = |title: &str| {
+        let (_, rest) = html.split_once(&format!("<h2>{title}</h2>")).expect(title);
+        rest.split("<h2>").next().unwrap().to_owned()
+    };
+    let (beam, hazards) = (section("The real beam"), section("Hazards"));
+    let assessment = run(&format!("assess {design} --json")).json();
+    for told in assessment["real_beam"].as_array().unwrap() {
+        let diameter = told["exit"]["diameter_mm"].as_f64().unwrap();
+        assert!(beam.contains(&format!("<td>{diameter:.2}</td>")), "{diameter}");
+    }
+    for caution in assessment["cautions"].as_array().unwrap() {
+        let begins = &caution.as_str().unwrap()[..40];
+        assert!(hazards.contains(begins), "{begins}");
+    }
+    for heading in ["Hit hardest", "The worst ghosts", "Every surface", "Every ghost"] {
+        assert!(hazards.contains(heading), "{heading}");
+    }
+    assert!(!html.contains("<pre"), "no text of the terminal stands on the page");
+}

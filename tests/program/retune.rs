@@ -30,6 +30,27 @@ fn what_is_all_made_leaves_the_spacings() {
     insta::assert_snapshot!(ended.told());
 }
 
+/// What every kind of `retune` prints fits a terminal, however long addresses are.
+#[test]
+fn every_table_fits_eighty_columns() {
+    let four_groups = "configs/four-groups-asphere.json --change /housing/track_mm=1";
+    let four_groups = four_groups.replace("track_mm=1", "track_mm=181");
+    for arguments in [
+        format!(
+            "{BUILT} --made exit {THICKER} --change /groups/exit/elements/0/glasses/0=1.46140@532"
+        ),
+        format!("{BUILT} --tool-radii configs/shop-radii.csv"),
+        format!("{BUILT} --batch configs/river-units.csv"),
+        four_groups,
+    ] {
+        let ended = run(&format!("retune {arguments}"));
+        assert!(matches!(ended.status, 0 | 1), "{}", ended.err);
+        for line in ended.out.lines() {
+            assert!(line.chars().count() <= 80, "{arguments}: {line}");
+        }
+    }
+}
+
 #[test]
 fn the_document_tells_the_same_for_machines() {
     let ended = run(&format!("retune {BUILT} --made exit {THICKER} --json"));

@@ -121,6 +121,38 @@ fn changes_that_are_not_quite_changes() {
 }
 
 #[test]
+fn an_index_measured_at_so_many_micrometres() {
+    let at = "/groups/entry/elements/0/glasses/0=1.4607@0.532";
+    let told = run(&format!("retune configs/river-as-designed.json --change {at}"));
+    says(&told, 2, &["0.532 nm is outside", "wavelengths are in nanometres"]);
+}
+
+#[test]
+fn nothing_changed_is_nothing_moved() {
+    let folder = tempfile::tempdir().unwrap();
+    let better = folder.path().join("better.json");
+    let better = better.to_str().unwrap();
+    assert_eq!(run(&format!("optimise {RIVER} -o {better} -q")).status, 0);
+    let told = run(&format!("retune {better}"));
+    assert_eq!(told.status, 0, "{}", told.err);
+    assert!(!told.out.contains("e-1"), "moved by rounding: {}", told.out);
+}
+
+/// A surface is told by the address it has in the file, whoever tells of it.
+#[test]
+fn rays_that_fail_are_told_with_the_surface_s_address() {
+    let written = std::fs::read_to_string(root().join(RIVER)).unwrap();
+    let mut design: Value = serde_json::from_str(&written).unwrap();
+    design["groups"][0]["elements"][0]["radii_mm"] = json!([75.0, 4.2]);
+    design["groups"][1]["elements"][0]["radii_mm"] = json!([-4.2, 4.2]);
+    for command in ["cam -", "tolerance - --systems 2"] {
+        let told = run_on(command, &text(&design));
+        says(&told, 1, &[" at /groups/", "/radii_mm/"]);
+        assert!(!told.err.contains("surface "), "{}", told.err);
+    }
+}
+
+#[test]
 fn values_of_options() {
     let comma = run(&format!("trace {RIVER} --state 6x --height-mm 1,2"));
     says(&comma, 2, &["--height-mm: \"1,2\" is not a number", "decimals take a point: 1.2"]);

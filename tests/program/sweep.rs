@@ -232,7 +232,7 @@ fn another_plan_in_the_same_folder_is_refused() {
 }
 
 #[test]
-fn pictures_show_a_curve_a_map_a_trade_or_names() {
+fn pictures_show_a_curve_a_map_a_plane_strips_a_trade_or_names() {
     let folder = tempfile::tempdir().unwrap();
     let drawn = |name: &str, change: &dyn Fn(&mut Value)| {
         let mut plan = plan();
@@ -244,14 +244,14 @@ fn pictures_show_a_curve_a_map_a_trade_or_names() {
         std::fs::read_to_string(file).unwrap()
     };
     let map = drawn("map", &|_| {});
-    for word in ["140", "160", "5.5", "/states/6x/ratio", "The trade"] {
+    for word in ["140", "160", "5.5", "6x, ratio", "housing, track, mm", "The trade"] {
         assert!(map.contains(word), "{word}: {map}");
     }
     let curve = drawn("curve", &|plan| {
         plan["axes"].as_array_mut().unwrap().truncate(1);
         plan.as_object_mut().unwrap().remove("front");
     });
-    assert!(curve.contains("/housing/track_mm") && !curve.contains("The trade"), "{curve}");
+    assert!(curve.contains("housing, track, mm") && !curve.contains("The trade"), "{curve}");
     let names = drawn("names", &|plan| {
         plan["axes"] = json!([
             { "at": "/groups/exit/elements/0/glasses/0", "values": ["fused-silica", "N-BK7"] }
@@ -259,6 +259,29 @@ fn pictures_show_a_curve_a_map_a_trade_or_names() {
         plan.as_object_mut().unwrap().remove("front");
     });
     assert!(names.contains("N-BK7"), "{names}");
+    let range =
+        |at: &str, from: f64, to: f64| json!({ "at": at, "range": { "from": from, "to": to } });
+    let ranges = [range("/housing/track_mm", 140.0, 160.0), range("/states/6x/ratio", 5.5, 6.5)];
+    let sample = json!({ "kind": "sobol", "points": 4 });
+    let plane = drawn("plane", &|plan| {
+        plan["axes"] = json!(ranges);
+        plan["sample"] = sample.clone();
+        plan.as_object_mut().unwrap().remove("front");
+    });
+    for word in ["Merit at every point", "6x, ratio", "housing, track, mm", "ringed: the best"] {
+        assert!(plane.contains(word), "{word}: {plane}");
+    }
+    assert!(plane.matches("<circle").count() == 4 + 1, "four points and a ring: {plane}");
+    let strips = drawn("strips", &|plan| {
+        let third = range("/groups/exit/elements/0/thicknesses_mm/0", 4.0, 6.0);
+        plan["axes"] = json!([ranges[0], ranges[1], third]);
+        plan["sample"] = sample.clone();
+        plan.as_object_mut().unwrap().remove("front");
+    });
+    for word in ["over each axis", "6x, ratio", "exit, element 0, thickness 0, mm"] {
+        assert!(strips.contains(word), "{word}: {strips}");
+    }
+    assert!(strips.matches("<circle").count() == 3 * (4 + 1), "{strips}");
     let again = sweep(
         &plan(),
         &folder.path().join("other"),

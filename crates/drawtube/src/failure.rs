@@ -325,6 +325,9 @@ fn status_of_run(error: &RunError) -> ExitStatus {
 fn advice_on_run(error: &RunError) -> Option<&'static str> {
     match error {
         RunError::InUse { .. } => Some("wait for it, stop it, or look at it with --show"),
+        RunError::NotARun { path, .. } if !path.exists() => {
+            Some("name the folder that --run was given")
+        }
         RunError::NotARun { .. } => Some("name a run folder, or one that is new or empty"),
         RunError::AnotherRun { .. } => {
             Some("go on with what was asked there, or name another folder")

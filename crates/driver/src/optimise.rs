@@ -16,6 +16,9 @@ use surface_model::temperature::TemperatureError;
 
 use crate::design_file::DesignFile;
 use crate::solve::{self, Observer, Outcome, Settings, SolveError, Stopped};
+use retry::{Ended, Retry};
+
+mod retry;
 
 /// Smallest part of the beam that is tried when the rays of a start fail.
 const NARROWEST: f64 = 0.02;
@@ -106,14 +109,15 @@ pub fn optimise(
     let from = merit.variables().start().to_vec();
     let mut widened = bring_in(&mut merit, from, settings, observer)?;
     find_a_way(&mut merit, &mut widened, settings, observer)?;
-    let outcome = match widened.stopped_early {
+    let start_of_all = widened.variables.clone();
+    let outcome = match widened.stopped_early.take() {
         Some(outcome) => outcome,
         None => solve::run(&mut merit, &widened.variables, settings, observer)?,
     };
-    let mut design = file.design.clone();
-    merit.variables().write(&outcome.variables, &mut design);
-    let optimised = file.with_numbers_of(&design).map_err(OptimiseError::Result)?;
-    let end = assess(&optimised.design, &optimised.wishes);
+    let ended = Ended::of(file, &merit, outcome)?;
+    let mut retry = Retry { file, merit: &mut merit, settings, observer, spent: &mut widened };
+    let ended = retry.past_the_ghosts(ended, &start_of_all)?;
+    let Ended { outcome, file: optimised, assessment: end } = retry.clear_of_a_focus(ended)?;
     let report = OptimisationReport {
         format: "drawtube-optimisation/1",
         method: settings.method().name(),

@@ -27,6 +27,7 @@ pub(crate) struct LimitEvaluator {
     pulse_energy_j: f64,
     focus_in_sight: f64,
     ghost_in_sight_mm: f64,
+    ghosts_looked_at: bool,
     rays: Vec<StateRays>,
     /// Per rule, the way of its ghost, once it has been looked at.
     ways: Vec<Option<GhostWay>>,
@@ -82,6 +83,7 @@ impl LimitEvaluator {
             pulse_energy_j: 1e-3 * design.beam.laser.pulse_energy_mj.unwrap_or(0.0),
             focus_in_sight: FOCUS_IN_SIGHT,
             ghost_in_sight_mm: GHOST_IN_SIGHT_MM,
+            ghosts_looked_at: true,
             rays: Vec::new(),
             gradient: Vec::new(),
             values: Vec::new(),
@@ -91,6 +93,23 @@ impl LimitEvaluator {
     /// Height of the ray whose incidence is limited, mm.
     pub(crate) fn set_edge_mm(&mut self, edge_mm: f64) {
         self.edge_mm = edge_mm;
+    }
+
+    /// Whether rows about ghosts are looked at; else they count as kept.
+    pub(crate) fn look_at_ghosts(&mut self, looked_at: bool) {
+        self.ghosts_looked_at = looked_at;
+    }
+
+    /// Keeps the outermost traced ray from a focus too, wherever the paraxial one is kept from it.
+    pub(crate) fn keep_the_edge_ray_from_a_focus(&mut self) {
+        let exact = |rule: &RowRule| {
+            let Measured::MarginalHeight(surface) = rule.measured else { return None };
+            Some(RowRule { measured: Measured::EdgeRayHeight(surface), ..rule.clone() })
+        };
+        let rules: Vec<RowRule> = self.rules.iter().filter_map(exact).collect();
+        self.rules.extend(rules);
+        self.places.resize(self.rules.len(), 0.0);
+        self.ways.resize(self.rules.len(), None);
     }
 
     /// Per row, what it tells of the way between the states, if it is about that.
@@ -145,10 +164,15 @@ impl LimitEvaluator {
                 Measured::Edge(gap) => edge_mm_or_fault(train, *gap)?,
                 Measured::Incidence(surface) => incidence_deg(self.rays[k].edge.as_ref(), *surface),
                 Measured::MarginalHeight(surface) => self.rays[k].paraxial.heights()[*surface],
+                Measured::EdgeRayHeight(surface) => {
+                    let mut heights = self.rays[k].edge.iter().flat_map(RayPath::heights_mm);
+                    heights.nth(*surface).unwrap_or(self.edge_mm) / self.edge_mm
+                }
                 Measured::Fluence(surface) => {
                     let radius_squared = self.rays[k].gaussian.radius_squared(*surface);
                     peak_per_cm2(self.pulse_energy_j, radius_squared.sqrt())
                 }
+                Measured::GhostClearance(_) if !self.ghosts_looked_at => NO_FOCUS_MM,
                 Measured::GhostClearance(ghost) => {
                     let way = way.get_or_insert_with(|| GhostWay::new(train, *ghost));
                     way.follow(train);
@@ -177,7 +201,8 @@ impl LimitEvaluator {
         let any =
             |wanted: fn(&Measured) -> bool| self.rules.iter().any(|rule| wanted(&rule.measured));
         let paraxial = any(|measured| matches!(measured, Measured::MarginalHeight(_)));
-        let exact = any(|measured| matches!(measured, Measured::Incidence(_)));
+        let exact =
+            any(|measured| matches!(measured, Measured::Incidence(_) | Measured::EdgeRayHeight(_)));
         let gaussian = any(|measured| matches!(measured, Measured::Fluence(_)));
         for (state, rays) in states.iter().zip(&mut self.rays) {
             let train = &state.train;
@@ -262,7 +287,7 @@ impl LimitEvaluator {
     /// Above this value a row is left alone: a beam far from a focus, a ghost far from glass.
     fn in_sight(&self, measured: &Measured) -> f64 {
         match measured {
-            Measured::MarginalHeight(_) => self.focus_in_sight,
+            Measured::MarginalHeight(_) | Measured::EdgeRayHeight(_) => self.focus_in_sight,
             Measured::GhostClearance(_) => self.ghost_in_sight_mm,
             _ => f64::INFINITY,
         }
@@ -302,6 +327,12 @@ impl LimitEvaluator {
             Measured::Incidence(surface) => {
                 incidence_gradient(edge.as_ref(), quantities, *surface, gradient);
                 gradient.iter().enumerate().for_each(|(quantity, &by)| put(quantity, by));
+            }
+            Measured::EdgeRayHeight(surface) => {
+                if let Some(ray) = edge {
+                    let by_height = ray.differentiate_height(*surface, quantities);
+                    by_height.iter().enumerate().for_each(|(q, by)| put(q, by / self.edge_mm));
+                }
             }
             Measured::MarginalHeight(surface) => {
                 let weights = ParaxialWeights { heights: &[(*surface, 1.0)], exit_slope: 0.0 };

@@ -35,6 +35,8 @@ pub(crate) enum Measured {
     Incidence(usize),
     /// Paraxial marginal height at a surface, over that at entry.
     MarginalHeight(usize),
+    /// Height of the outermost traced ray at a surface, over that at entry.
+    EdgeRayHeight(usize),
     /// Peak energy density of a pulse at a surface, J/cm².
     Fluence(usize),
     /// Distance from glass of the nearest focus of a ghost, mm.
@@ -137,6 +139,7 @@ impl Maker<'_> {
             Measured::Sum { gaps, .. } => gaps.iter().any(|&(gap, _)| bound(quantities.gap(gap))),
             Measured::Incidence(_)
             | Measured::MarginalHeight(_)
+            | Measured::EdgeRayHeight(_)
             | Measured::Fluence(_)
             | Measured::GhostClearance(_)
             | Measured::OnTheWay(_) => true,

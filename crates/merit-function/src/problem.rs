@@ -161,6 +161,17 @@ impl MeritFunction {
         self.limit_rows.look_at_the_way(looked_at);
     }
 
+    /// Whether limits on ghosts are looked at from now on, or count as kept.
+    pub fn look_at_ghosts(&mut self, looked_at: bool) {
+        self.limit_rows.look_at_ghosts(looked_at);
+    }
+
+    /// Keeps the outermost ray from an internal focus too, where one is forbidden. Rows about the
+    /// paraxial ray do in all but strongly aberrated designs, and cost less.
+    pub fn keep_the_edge_ray_from_a_focus(&mut self) {
+        self.limit_rows.keep_the_edge_ray_from_a_focus();
+    }
+
     /// Brings every train to these values of the variables. Bounds keep spheres within reach of
     /// their clear diameter, but cannot do so where a conic constant changes too.
     fn place(&mut self, variables: &[f64]) -> Result<(), EvaluationFault> {

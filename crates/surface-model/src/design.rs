@@ -4,6 +4,7 @@
 //! finite and possible. It is made by [`OpticsDocument::resolve`](crate::optics_document::OpticsDocument::resolve).
 
 use crate::document::Address;
+use crate::fault::RayFault;
 use crate::gaussian::GaussianBeam;
 use crate::glass::{Glass, GlassError};
 use crate::housing::Housing;
@@ -152,6 +153,23 @@ impl Design {
         match part.elements.get(element).and_then(|element| element.name.as_deref()) {
             Some(name) => at.key(name),
             None => at.index(element),
+        }
+    }
+
+    /// Address of a surface of the train as people read it; `None` where there is no such surface.
+    #[must_use]
+    pub fn surface_address(&self, surface: usize) -> Option<Address> {
+        let sequence = self.sequence();
+        let id = sequence.surfaces.get(surface)?;
+        Some(self.element_address(id.group, id.element).key("radii_mm").index(id.surface))
+    }
+
+    /// A ray's fault in words, with the surface by its address.
+    #[must_use]
+    pub fn fault_in_words(&self, fault: &RayFault) -> String {
+        match self.surface_address(fault.surface) {
+            Some(at) => format!("{} at {at}", fault.reason),
+            None => fault.reason.to_string(),
         }
     }
 

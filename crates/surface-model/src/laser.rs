@@ -86,11 +86,13 @@ impl BeamFormError {
             }
             Self::TooNarrow { m_squared, waist_diameter_mm, diameter_mm, divergence_mrad } => {
                 let ratio = waist_diameter_mm / diameter_mm;
-                format!(
-                    "M² of at most {}, or a divergence of at least {} mrad",
-                    digits(m_squared / ratio),
-                    digits(divergence_mrad * ratio)
-                )
+                let divergence =
+                    format!("a divergence of at least {} mrad", digits(divergence_mrad * ratio));
+                let m_squared = m_squared / ratio;
+                if m_squared < 1.0 {
+                    return divergence;
+                }
+                format!("M² of at most {}, or {divergence}", digits(m_squared))
             }
             Self::BelowDiffraction { .. } => "M² of at least 1: no beam is better".into(),
             Self::TooFar { .. } => {
@@ -258,6 +260,18 @@ impl Laser {
 #[cfg(test)]
 mod tests {
     use super::*;
+
+    #[test]
+    fn no_beam_better_than_diffraction_allows_is_asked_for() {
+        let form = |m_squared| BeamForm {
+            m_squared: Some(m_squared),
+            divergence_mrad: Some(0.1),
+            ..BeamForm::default()
+        };
+        let expected = |m_squared| beam(form(m_squared)).unwrap_err().expected();
+        // 4 λ M²/(π θ) of M² = 1.3 is 8.8 mm, of which 2.4 mm would need M² = 0.35.
+        assert!(expected(1.3).starts_with("a divergence of at least 0.366"), "{}", expected(1.3));
+    }
 
     const D: f64 = 2.4;
     const NM: f64 = 532.0;

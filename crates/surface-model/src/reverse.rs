@@ -52,8 +52,8 @@ pub(crate) struct Seed<N, const D: usize> {
     pub(crate) position: [N; D],
     /// Weights of the exit direction cosines.
     pub(crate) direction: [N; D],
-    /// Weight of cos I at one surface.
-    pub(crate) cos_in: Option<(usize, N)>,
+    /// Weights of what a ray has at one surface.
+    pub(crate) at: Option<(usize, AtSurface<N>)>,
 }
 
 impl<N: Real, const D: usize> Seed<N, D> {
@@ -61,14 +61,23 @@ impl<N: Real, const D: usize> Seed<N, D> {
     #[inline(always)]
     pub(crate) fn path() -> Self {
         let zero = N::splat(0.0);
-        Self { path: N::splat(1.0), position: [zero; D], direction: [zero; D], cos_in: None }
+        Self { path: N::splat(1.0), position: [zero; D], direction: [zero; D], at: None }
     }
 
-    /// The cosine of the angle of incidence at one surface alone.
+    /// What a ray has at one surface alone.
     #[inline(always)]
-    pub(crate) fn cos_in(surface: usize) -> Self {
-        Self { path: N::splat(0.0), cos_in: Some((surface, N::splat(1.0))), ..Self::path() }
+    pub(crate) fn at(surface: usize, weights: AtSurface<N>) -> Self {
+        Self { path: N::splat(0.0), at: Some((surface, weights)), ..Self::path() }
     }
+}
+
+/// Weights of what a ray has at one surface.
+#[derive(Debug, Clone, Copy)]
+pub(crate) struct AtSurface<N> {
+    /// Of the cosine of its angle of incidence.
+    pub(crate) cos_in: N,
+    /// Of its height, the last of its transverse coordinates.
+    pub(crate) height: N,
 }
 
 /// Adjoint of the point and of the direction of a ray: the same shape as a ray.
@@ -196,7 +205,7 @@ struct Refracted<N, const D: usize> {
 }
 
 /// From the adjoint behind a refraction those of the direction before it and of the normal;
-/// `weight` is that of cos I itself in the result.
+/// `here` weighs what the ray itself has at this surface in the result.
 #[inline(always)]
 fn refract<N: Real, const D: usize>(
     at: &Ray<N, D>,
@@ -204,16 +213,17 @@ fn refract<N: Real, const D: usize>(
     mu: N,
     cosines: &Cosines<N>,
     behind: &Adjoint<N, D>,
-    weight: Option<N>,
+    here: Option<AtSurface<N>>,
 ) -> Refracted<N, D> {
     let gamma = cosines.out - mu * cosines.into;
     let gamma_bar = dot(n, &behind.d) + nz * behind.dz;
     let mut cos_bar = -(mu * gamma * cosines.over_out * gamma_bar);
-    if let Some(weight) = weight {
-        cos_bar = cos_bar + weight;
+    let mut before = *behind;
+    if let Some(weights) = here {
+        cos_bar = cos_bar + weights.cos_in;
+        before.y[D - 1] = before.y[D - 1] + weights.height;
     }
     let mut n_bar = behind.d;
-    let mut before = *behind;
     for axis in 0..D {
         n_bar[axis] = gamma * behind.d[axis] + cos_bar * at.d[axis];
         before.d[axis] = mu * behind.d[axis] + cos_bar * n[axis];
@@ -245,8 +255,8 @@ fn backward<N: Real, const D: usize>(
         let cosines = Cosines::of(crossing);
         let (mu, n_in) = (*ratio, *n_in);
         let (n, nz) = normal(stage, at);
-        let weight = seed.cos_in.filter(|&(surface, _)| surface == i).map(|(_, weight)| weight);
-        let refracted = refract(at, (&n, nz), mu, &cosines, &behind, weight);
+        let here = seed.at.filter(|&(surface, _)| surface == i).map(|(_, weights)| weights);
+        let refracted = refract(at, (&n, nz), mu, &cosines, &behind, here);
         let Refracted { mut before, n_bar, nz_bar, gamma_bar } = refracted;
 
         if indices {

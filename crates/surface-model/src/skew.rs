@@ -3,7 +3,7 @@
 
 use crate::fault::{FaultReason, RayFault};
 use crate::quantities::{Quantities, Shapes};
-use crate::reverse::{Seed, backward_skew};
+use crate::reverse::{AtSurface, Seed, backward_skew};
 use crate::trace::{Crossing, Exit, Ray, Stages, find_fault, forward_skew, normal};
 use crate::train::Train;
 
@@ -116,7 +116,7 @@ impl RayPath {
             path: weights.path_mm,
             position: weights.position_mm,
             direction: weights.direction,
-            cos_in: None,
+            at: None,
         };
         self.sweep(&seed, Quantities::new(self.stages.list.len(), shapes))
     }
@@ -130,7 +130,19 @@ impl RayPath {
     /// quantities of the train.
     #[must_use]
     pub fn differentiate_cos_incidence(&self, surface: usize, quantities: Quantities) -> Vec<f64> {
-        self.sweep(&Seed::cos_in(surface), quantities)
+        self.sweep(&Seed::at(surface, AtSurface { cos_in: 1.0, height: 0.0 }), quantities)
+    }
+
+    /// Height in the y direction at every surface, mm, from left to right.
+    pub fn heights_mm(&self) -> impl Iterator<Item = f64> + '_ {
+        self.crossings.iter().map(|crossing| crossing.ray.y[1])
+    }
+
+    /// Exact derivatives of the height in the y direction at one surface, by these quantities of
+    /// the train.
+    #[must_use]
+    pub fn differentiate_height(&self, surface: usize, quantities: Quantities) -> Vec<f64> {
+        self.sweep(&Seed::at(surface, AtSurface { cos_in: 0.0, height: 1.0 }), quantities)
     }
 
     fn sweep(&self, seed: &Seed<f64, 2>, quantities: Quantities) -> Vec<f64> {
@@ -216,6 +228,35 @@ mod tests {
                         "conics {conics}, {weights:?}, place {place}: {derivative} {difference}"
                     );
                 }
+            }
+        }
+    }
+
+    #[test]
+    fn heights_at_surfaces_agree_with_central_differences_by_every_quantity() {
+        let start = RayStart { position_mm: [2.0, 5.0], direction: [0.04, -0.07] };
+        let train = train(true);
+        let quantities = Quantities::new(train.len(), Shapes::ALL);
+        for surface in 0..train.len() {
+            let exact = trace_ray(&train, start).unwrap().differentiate_height(surface, quantities);
+            for (place, &derivative) in exact.iter().enumerate() {
+                let h = match quantities.at(place) {
+                    Quantity::Asphere(_, term) => 1e-3 / 6_f64.powi(asphere_power(term) as i32),
+                    _ => 1e-5,
+                };
+                let at = |by| {
+                    let moved = nudged(&train, quantities, place, by);
+                    let ray = trace_ray(&moved, start).unwrap();
+                    ray.heights_mm().nth(surface).unwrap()
+                };
+                // Fourth-order central difference.
+                let difference =
+                    (8.0 * (at(h) - at(-h)) - (at(2.0 * h) - at(-2.0 * h))) / (12.0 * h);
+                let scale = 1e-9 / h * 1e-3 + 1e-7 * difference.abs();
+                assert!(
+                    (derivative - difference).abs() < scale,
+                    "surface {surface}, place {place}: {derivative} {difference}"
+                );
             }
         }
     }

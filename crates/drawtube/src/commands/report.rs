@@ -10,11 +10,10 @@ use driver::temperature::at_temperatures;
 use driver::tolerance::{ToleranceSettings, Unwatched, tolerance};
 use merit_function::assessment::{Assessment, assess};
 use report::page::{
-    Found, Section, Subject, page, preformatted, silent_section, temperature_section,
-    tolerance_section,
+    Found, Section, Subject, beam_section, hazards_section, page, silent_section,
+    temperature_section, tolerance_section,
 };
 use report::shop::shop_files;
-use report::text;
 
 use crate::arguments::ReportArguments;
 use crate::console::Console;
@@ -64,18 +63,8 @@ impl Told {
     /// anything of them.
     fn sections(&self, systems: &ToleranceSettings) -> Vec<Section> {
         let Self { file, assessment, .. } = self;
-        let section = |title: &str, text: String| Section {
-            title: title.to_owned(),
-            body: preformatted(&text),
-        };
-        let beam = assessment
-            .real_beam
-            .as_ref()
-            .map(|beams| section("The real beam", text::beam::beam(file, beams, assessment)));
-        let hazards = assessment
-            .hazards
-            .as_ref()
-            .map(|_| section("Hazards", text::hazards::hazards(file, assessment)));
+        let beam = beam_section(file, assessment);
+        let hazards = hazards_section(file, assessment);
         let sections = [beam, hazards, self.tolerances(systems), self.temperatures()];
         sections.into_iter().flatten().collect()
     }

@@ -46,7 +46,8 @@ pub struct BriefDocument {
     /// Goals of all ratios.
     #[serde(default)]
     pub goals: GoalsDocument,
-    /// Limits.
+    /// Limits. Where they name no least edge thickness, centre thickness, spacing or air inside a
+    /// group, what is usual is kept: 0.8, 1, 0.5 and 0.3 mm.
     #[serde(default)]
     pub limits: LimitsDocument,
     /// Temperatures in °C at which the goals hold too, nothing re-adjusted; designs are drawn at
@@ -98,7 +99,8 @@ pub struct OwnRatioDocument {
 pub struct GroupBriefDocument {
     /// Its name, unique among the groups.
     pub name: String,
-    /// How many elements it has, a cemented pair being one. One if left out.
+    /// How many elements it has, a cemented pair being one. One if left out: the program tries no
+    /// other number by itself.
     #[serde(default, skip_serializing_if = "Option::is_none")]
     #[schemars(range(min = 1, max = 6))]
     pub elements: Option<usize>,

@@ -5,6 +5,7 @@ mod error;
 mod probe;
 #[cfg(test)]
 mod tests;
+mod usual;
 
 use merit_function::wishes::Wishes;
 use schemars::Schema;
@@ -18,6 +19,7 @@ use crate::document_kind::{BRIEF, part};
 pub use document::{
     BriefDocument, BriefFormat, GroupBriefDocument, OwnRatioDocument, RatioDocument,
 };
+pub(crate) use usual::complete_written;
 
 /// A brief, read and checked.
 #[derive(Debug, Clone)]
@@ -30,7 +32,7 @@ pub struct BriefFile {
     pub ratios: Vec<RatioBrief>,
     /// The glasses lenses may be made of, at least one, in the order of the file.
     pub glasses_allowed: Vec<AllowedGlass>,
-    /// Goals, one entry a ratio, and limits.
+    /// Goals, one entry a ratio, and limits, with what is usual where the brief has none.
     pub wishes: Wishes,
 }
 

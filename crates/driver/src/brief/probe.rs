@@ -69,15 +69,17 @@ fn state(ratio: &RatioDocument, spacings_mm: &[f64]) -> StateDocument {
     }
 }
 
-/// What a brief wants, as a design file would say it.
+/// What a brief wants, as a design file that comes of it says it.
 pub(super) fn wishes(brief: &BriefDocument) -> WishesDocument {
     let own = |ratio: &RatioDocument| StateWishesDocument {
         weight: ratio.own().and_then(|own| own.weight),
         goals: ratio.own().and_then(|own| own.goals),
     };
+    let mut groups = brief.groups.iter().flatten();
+    let airs = groups.any(|group| group.elements.or(group.pairs).unwrap_or(1) > 1);
     WishesDocument {
         goals: brief.goals,
-        limits: brief.limits.clone(),
+        limits: super::usual::completed(&brief.limits, airs),
         temperatures_c: brief.temperatures_c.clone(),
         states: brief.ratios.iter().map(own).collect(),
     }

@@ -28,7 +28,7 @@ mod walk;
 use merit_function::assessment::{Assessment, assess};
 use merit_function::goals::{FocusGoalDocument, Goals, GoalsDocument};
 use merit_function::movement::{
-    Equations, FROM_A_STATE, Point, Slide, Stop, knots_of, wavelengths_nm,
+    Equations, FROM_A_STATE, HeldFault, Point, Slide, Stop, knots_of, wavelengths_nm,
 };
 use merit_function::wishes::Wishes;
 use surface_model::design::{Design, ZoomState};
@@ -160,14 +160,15 @@ fn roots(
                 (true, None) => "and collimate",
                 (true, Some(_)) => "and focus where it is wanted",
             },
-            reason: reason(stop),
+            reason: reason(design, stop),
         })
     };
     knots.iter().zip(starts).map(solve).collect()
 }
 
-fn reason(stop: Stop) -> String {
+fn reason(design: &Design, stop: Stop) -> String {
     match stop {
+        Stop::Fault(HeldFault::Ray(fault)) => design.fault_in_words(&fault),
         Stop::Fault(fault) => fault.to_string(),
         Stop::NoSolution => "Newton's method finds none".into(),
     }

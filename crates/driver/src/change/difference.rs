@@ -87,10 +87,13 @@ impl Comparison<'_> {
     }
 }
 
-/// Whether two values are the same; 2 and 2.0 are.
+/// Two numbers that differ by less of themselves differ by rounding alone.
+const ROUNDING: f64 = 1e-14;
+
+/// Whether two values are the same; 2 and 2.0 are, and numbers that nothing but rounding moved.
 fn same(from: Option<&Value>, to: Option<&Value>) -> bool {
     match (from.and_then(Value::as_f64), to.and_then(Value::as_f64)) {
-        (Some(from), Some(to)) => from.to_bits() == to.to_bits(),
+        (Some(from), Some(to)) => (to - from).abs() <= ROUNDING * from.abs().max(to.abs()),
         _ => from == to,
     }
 }

@@ -85,7 +85,7 @@ fn measured(
         place: Place::File,
         found: error.to_string(),
         expected: Some("a wavelength at which the glass is known".to_owned()),
-        advice: None,
+        advice: error.advice(),
     })?;
     Ok(json!({ "from": replaced, "index_shift": rounded(index - expected, decimals(text)) }))
 }

@@ -2,9 +2,10 @@
 
 use merit_function::assessment::assess;
 use merit_function::block::Bounds;
+use merit_function::limits::RangeDocument;
 use merit_function::problem::{MeritFunction, RAYS};
 use merit_function::variables::{FreePlace, Variables};
-use serde_json::json;
+use serde_json::{Value, json};
 use surface_model::design::Design;
 use surface_model::document::Document;
 use surface_model::place::Place;
@@ -24,6 +25,13 @@ const FREE: [&str; 4] = ["radii", "spacings", "thicknesses", "airs"];
 /// multiple of: common practice, no published source.
 const CLEAR: f64 = 1.1;
 const CLEAR_STEP_MM: f64 = 0.5;
+
+/// How thick a glass is on axis for its clear diameter, where the brief does not say: common
+/// practice, no published source. A thicker one is a rod, a thinner one bends in its mount.
+const THINNEST_OF_DIAMETER: f64 = 0.08;
+const THICKEST_OF_DIAMETER: f64 = 0.5;
+/// Small lenses are thicker than that to be handled at all.
+const THICK_ENOUGH_MM: f64 = 3.0;
 
 /// A brief to be searched.
 #[derive(Debug)]
@@ -63,7 +71,8 @@ impl BriefSource {
     ) -> Option<Candidate> {
         let design = &begun.design;
         let wishes = &self.starts.brief().wishes;
-        let variables = Variables::new(design, &wishes.limits, &free(design)).ok()?;
+        let free = self.free(design);
+        let variables = Variables::new(design, &wishes.limits, &free).ok()?;
         let exact = MeritFunction::new(design, wishes, variables, RAYS).ok()?;
         let exact = exact.with_temperatures(design, wishes).ok()?;
         let start = exact.variables().start().to_vec();
@@ -104,14 +113,60 @@ impl BriefSource {
     pub(super) fn file(&self, begun: &Begun, design: &Design, note: &str) -> Option<DesignFile> {
         let file = self.starts.file_of(&begun.glasses, design, note).ok()?;
         let mut document = file.document().value().clone();
-        document["free"] = json!(FREE);
+        let mut free = FREE.map(Value::from).to_vec();
+        let ranged = self.free(design).into_iter().filter(|free| free.own_range != Bounds::FREE);
+        free.extend(ranged.map(|free| in_words(&free, &document)));
+        document["free"] = Value::Array(free);
         DesignFile::read(Document::from_value(file.label(), document)).ok()
+    }
+
+    /// Every number that the words of [`FREE`] stand for, those of glass and air inside a group
+    /// with the range that is usual for it where the brief names none.
+    fn free(&self, design: &Design) -> Vec<FreePlace> {
+        let limits = &self.starts.brief().written().limits;
+        let places = Place::all(design).into_iter();
+        let places = places.filter(|place| place.shapes().is_none());
+        let range = |place| match place {
+            Place::Thickness { group, element, glass } => {
+                let element = &design.groups[group].elements[element];
+                let value_mm = element.thicknesses_mm[glass];
+                usual_thickness(limits.centre_thickness_mm, element.diameter_mm, value_mm)
+            }
+            Place::Air { group, after } => {
+                let group = &design.groups[group];
+                let ends = &group.elements[after..=after + 1];
+                let widest = ends.iter().map(|element| element.diameter_mm).fold(0.0, f64::max);
+                let open = limits.air_mm.and_then(|range| range.max).is_none();
+                let high = if open { widest.max(group.airs_mm[after]) } else { f64::INFINITY };
+                Bounds { high, ..Bounds::FREE }
+            }
+            _ => Bounds::FREE,
+        };
+        places.map(|place| FreePlace { place, own_range: range(place) }).collect()
     }
 }
 
-/// Every number that the words of [`FREE`] stand for.
-fn free(design: &Design) -> Vec<FreePlace> {
-    let places = Place::all(design).into_iter();
-    let places = places.filter(|place| place.shapes().is_none());
-    places.map(|place| FreePlace { place, own_range: Bounds::FREE }).collect()
+/// How thick a glass may become on axis, of this clear diameter and `value_mm` thick now, at each
+/// end that the brief leaves open.
+fn usual_thickness(limit: Option<RangeDocument>, diameter_mm: f64, value_mm: f64) -> Bounds {
+    let RangeDocument { min, max } = limit.unwrap_or_default();
+    let low = (THINNEST_OF_DIAMETER * diameter_mm).min(value_mm);
+    let high = (THICKEST_OF_DIAMETER * diameter_mm).max(THICK_ENOUGH_MM).max(value_mm);
+    Bounds {
+        low: if min.is_none() { low } else { f64::NEG_INFINITY },
+        high: if max.is_none() { high } else { f64::INFINITY },
+    }
+}
+
+/// An entry of `free` with a range.
+fn in_words(free: &FreePlace, document: &Value) -> Value {
+    let at = free.place.address().with_names(document);
+    let mut entry = json!({ "at": at.to_string() });
+    let Bounds { low, high } = free.own_range;
+    for (key, end) in [("min", low), ("max", high)] {
+        if end.is_finite() {
+            entry[key] = json!(end);
+        }
+    }
+    entry
 }

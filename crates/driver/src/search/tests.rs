@@ -13,7 +13,9 @@ use surface_model::document::Document;
 use super::*;
 use crate::brief::BriefFile;
 use crate::design_file::DesignFile;
+use crate::optimise::optimise;
 use crate::sampling::stream;
+use crate::solve::{Settings, Unwatched};
 
 const RIVER: &str = include_str!("../../../../configs/river-lidar-2x-6x.json");
 
@@ -192,6 +194,41 @@ fn what_is_found_answers_the_brief() {
             for (element, assessed) in elements.zip(assessed.elements) {
                 assert!(assessed.footprint_mm.unwrap() <= element.diameter_mm, "{name}");
             }
+        }
+    }
+}
+
+/// A brief without limits is no leave to make glass of no thickness, or rods: the design that comes
+/// of it says what it keeps, and keeps it when it is optimised again.
+#[test]
+fn where_limits_are_silent_lenses_stay_lenses() {
+    let mut document = brief_document("quay-brief");
+    document.as_object_mut().unwrap().remove("limits");
+    let file = BriefFile::read(Document::from_value("silent", document)).unwrap();
+    let problem = SearchProblem::of_brief(&file, SearchSettings::default()).unwrap();
+    for number in 0..3 {
+        let found = found(&problem, 0, number);
+        assert!(found.limits_kept);
+        let file = DesignFile::read(Document::from_value("found", found.design)).unwrap();
+        let again = optimise(&file, &Settings::default(), &mut Unwatched).unwrap().file;
+        for file in [file, again] {
+            let limits = &file.document().value()["limits"];
+            let least = |key: &str| limits[key]["min"].as_f64().unwrap();
+            let elements = file.design.groups.iter().flat_map(|group| &group.elements);
+            for (element, told) in elements.zip(assess(&file.design, &file.wishes).elements) {
+                let thinnest = least("centre_thickness_mm").max(0.08 * element.diameter_mm);
+                let thickest = f64::max(3.0, 0.5 * element.diameter_mm);
+                let edges_mm = told.edge_thicknesses_mm.into_iter();
+                for (&centre_mm, edge_mm) in element.thicknesses_mm.iter().zip(edges_mm) {
+                    assert!(thinnest - 1e-9 <= centre_mm && centre_mm <= thickest + 1e-9);
+                    assert!(edge_mm.unwrap() >= least("edge_thickness_mm") - 1e-3);
+                }
+            }
+            let airs_mm = file.design.groups.iter().flat_map(|group| &group.airs_mm);
+            assert!(
+                airs_mm.clone().count() > 0
+                    && airs_mm.into_iter().all(|&air| air >= least("air_mm"))
+            );
         }
     }
 }

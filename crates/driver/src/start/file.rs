@@ -1,11 +1,12 @@
-//! A layout as a design file: what the brief says is carried over, what it leaves open filled in.
+//! A layout as a design file: what the brief says is carried over, what it leaves open filled in,
+//! what is usual among its limits.
 
 use serde_json::{Map, Value, json};
 use surface_model::design::{Design, Element};
 use surface_model::document::{Complaints, Document};
 use surface_model::ranges::LARGEST_RADIUS_MM;
 
-use crate::brief::{BriefFile, RatioDocument};
+use crate::brief::{BriefFile, RatioDocument, complete_written};
 use crate::design_file::DesignFile;
 
 use super::begun::GlassesOfGroups;
@@ -36,6 +37,10 @@ pub(super) fn design_file(
             carried.insert(key.to_owned(), value.clone());
         }
     }
+    let airs = design.groups.iter().any(|group| !group.airs_mm.is_empty());
+    let mut limits = carried.get("limits").and_then(Value::as_object).cloned().unwrap_or_default();
+    complete_written(&mut limits, airs);
+    carried.insert("limits".into(), Value::Object(limits));
     let mut file = Map::new();
     file.insert("format".into(), "drawtube/1".into());
     file.insert("title".into(), design.title.clone().into());

@@ -25,7 +25,7 @@ impl Bench<'_> {
                 let start = RayStart { position_mm, direction: [0.0, 0.0] };
                 let ray = trace_ray(train, start).map_err(|fault| ToleranceError::Nominal {
                     state: state.name.clone(),
-                    fault: fault.to_string(),
+                    fault: self.design.fault_in_words(&fault),
                 })?;
                 let weights = ExitSum { path_mm: 1.0, ..ExitSum::default() };
                 let by = ray.differentiate(&weights, Shapes::None);

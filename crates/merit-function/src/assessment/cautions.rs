@@ -87,11 +87,13 @@ fn ghost_in_glass(design: &Design, states: &[StateHazards]) -> Option<String> {
         1 => "ghost_clearance_mm",
         _ => "double_ghost_clearance_mm",
     };
-    let share = 100.0 * ghost.share;
+    let percent = 100.0 * ghost.share;
+    // Two digits that count: a coated surface's share is never told as none.
+    let places = (1.0 - percent.log10().floor()).clamp(2.0, 15.0) as usize;
     Some(format!(
         "light that surfaces reflect comes to a focus inside glass in {how_many} of {} states: \
-         deepest in {}, reflected at {}, {:.2} mm from the nearest surface, with at most {share:.2} % \
-         of the power; set {limit} as a limit and optimise",
+         deepest in {}, reflected at {}, {:.2} mm from the nearest surface, with at most {percent:.places$} \
+         % of the power; set {limit} as a limit and optimise",
         states.len(),
         state.state,
         at.join(" and "),

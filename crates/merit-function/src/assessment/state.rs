@@ -2,7 +2,6 @@
 
 use serde::Serialize;
 use surface_model::design::{Design, ZoomState};
-use surface_model::fault::RayFault;
 use surface_model::gaussian::{GaussianBeam, GaussianPath};
 use surface_model::paraxial::ParaxialRay;
 use surface_model::skew::{RayStart, trace_ray};
@@ -262,12 +261,8 @@ fn wavefronts(
 
 /// A wavefront's fault with the surface by its address.
 fn reason(design: &Design, fault: &WavefrontFault) -> String {
-    let WavefrontFault::Ray { height_mm, fault: RayFault { surface, reason } } = fault else {
+    let WavefrontFault::Ray { height_mm, fault } = fault else {
         return fault.to_string();
     };
-    let at = design.sequence().surfaces.get(*surface).map_or_else(String::new, |id| {
-        let element = design.element_address(id.group, id.element);
-        format!(" at {}", element.key("radii_mm").index(id.surface))
-    });
-    format!("entering at {height_mm:.4} mm, {reason}{at}")
+    format!("entering at {height_mm:.4} mm, {}", design.fault_in_words(fault))
 }

@@ -5,11 +5,12 @@
 //! movement curve, rounded for people; the full ones stand in `data-value`.
 //!
 //! To add a section hand it over in [`Subject::sections`]: a title and a body, made by
-//! `maud::html!`, by [`table_of`] from heads and rows, or by [`preformatted`] from a text for the
-//! terminal. It stands between the glasses and how the design was found; beam, hazards,
+//! `maud::html!`, with [`parts::laid_out`] for a table that the terminal has too. It stands between
+//! the glasses and how the design was found; [`beam_section`], [`hazards_section`],
 //! [`tolerance_section`] and [`temperature_section`] are examples.
 
 mod compare;
+mod laser;
 mod parts;
 mod requirement;
 mod stage;
@@ -20,7 +21,7 @@ use driver::design_file::DesignFile;
 use maud::{DOCTYPE, Markup, PreEscaped, html};
 use merit_function::assessment::Assessment;
 
-pub use parts::{preformatted, table_of};
+pub use laser::{beam_section, hazards_section};
 pub(crate) use parts::{radius, shape};
 pub use workshop::{silent_section, temperature_section, tolerance_section};
 
@@ -114,7 +115,7 @@ fn article(subject: &Subject<'_>, number: usize, alone: bool) -> Markup {
         h1 { (name_of(subject)) }
         p.faint { (crate::text::assessment::beam_sentence(file)) }
         @if !alone { p.faint { (subject.name) } }
-        (requirement::requirement(file, assessment))
+        (requirement::requirement(subject))
         @if alone { (caution()) }
         h2 { "States" }
         (parts::states(file, assessment))
@@ -142,7 +143,7 @@ fn article(subject: &Subject<'_>, number: usize, alone: bool) -> Markup {
 
 /// A picture with its name.
 fn figure(panel: Panel, name: &str) -> Markup {
-    html! { figure { (PreEscaped(panel.to_element(name))) } }
+    html! { figure { (PreEscaped(panel.into_element(name))) } }
 }
 
 fn movement_part(subject: &Subject<'_>) -> Markup {

@@ -4,14 +4,16 @@ use driver::cam::{MovementCurve, Part};
 use driver::design_file::DesignFile;
 use maud::{Markup, html};
 use merit_function::assessment::{Assessment, LimitAssessment};
+use merit_function::limits::LimitKind;
 use surface_model::surface::{Surface, asphere_power};
 
 use crate::text::cam::{held, off_word};
-use crate::text::limits::{allowed, chosen, margin, place};
+use crate::text::glass;
+use crate::text::limits::{FOCUS, allowed, any_of, chosen, margin, name, place};
 use crate::text::number::NONE;
 use crate::text::states::of_the_beam;
 use crate::text::table::{BLANK, Column, Table};
-use crate::text::{Scope, as_written, fixed, fixed_or_dash, significant, verdict};
+use crate::text::{Scope, as_written, fixed, significant, verdict};
 
 /// A number with so many significant digits and a true minus.
 pub(super) fn number(value: f64, digits: usize) -> String {
@@ -34,8 +36,7 @@ fn cell(value: Option<f64>, places: usize, missed: bool) -> Markup {
 }
 
 /// A table from heads and rows; the first column is words.
-#[must_use]
-pub fn table_of(heads: &[&str], rows: &[Vec<String>]) -> Markup {
+pub(super) fn table_of(heads: &[&str], rows: &[Vec<String>]) -> Markup {
     let class = |k: usize| (k == 0).then_some("word");
     html! {
         div.scroll { table {
@@ -49,7 +50,7 @@ pub fn table_of(heads: &[&str], rows: &[Vec<String>]) -> Markup {
 
 /// A table of the terminal as a part of the page: heads in one line, a sign for what is missed.
 pub(super) fn laid_out(table: &Table) -> Markup {
-    let word = |column: Column| matches!(column, Column::Left).then_some("word");
+    let word = |column: Column| matches!(column, Column::Left | Column::Place).then_some("word");
     let columns: Vec<(Column, String)> =
         table.columns().map(|(column, head)| (column, one_line(head))).collect();
     html! {
@@ -59,7 +60,7 @@ pub(super) fn laid_out(table: &Table) -> Markup {
                 tr { @for ((column, _), told) in columns.iter().zip(row) {
                     @let told = told.trim_end_matches(BLANK);
                     @match (told.strip_suffix('!'), column) {
-                        (_, Column::Left) => { td.word { (told) } }
+                        (_, Column::Left | Column::Place) => { td.word { (told) } }
                         (Some(told), _) => { td.missed { (true_minus(told)) } }
                         (None, _) => { td { (true_minus(told)) } }
                     }
@@ -85,12 +86,6 @@ fn true_minus(told: &str) -> String {
         NONE => "–".to_owned(),
         told => told.replace('-', "\u{2212}"),
     }
-}
-
-/// A text as it would stand in a terminal.
-#[must_use]
-pub fn preformatted(text: &str) -> Markup {
-    html! { div.scroll { pre { (text) } } }
 }
 
 /// What every state reaches.
@@ -213,6 +208,7 @@ pub(crate) fn shape(surface: &Surface) -> String {
 pub(super) fn limits(file: &DesignFile, assessment: &Assessment) -> Markup {
     html! {
         (limit_table(file, &chosen(&assessment.limits, Scope::Tightest)))
+        @if any_of(assessment, LimitKind::InternalFocus) { p.faint { (FOCUS) } }
         details {
             summary { "All " (assessment.limits.len()) " limited quantities" }
             (limit_table(file, &chosen(&assessment.limits, Scope::All)))
@@ -226,7 +222,7 @@ fn limit_table(file: &DesignFile, limits: &[&LimitAssessment]) -> Markup {
             tr { th.word { "limit" } th { "allowed" } th { "value" } th { "margin" } th.word { "at" } }
             @for limit in limits {
                 tr {
-                    td.word { (limit.limit.word()) }
+                    td.word { (name(limit.limit)) }
                     td { (allowed(limit)) }
                     (value_cell(limit.value,
                         limit.value.map_or_else(|| if limit.met { "flat".into() } else { "unknown".into() },
@@ -254,38 +250,9 @@ pub(super) fn glasses(file: &DesignFile) -> Markup {
             glasses.push(glass);
         }
     }
-    let heads: Vec<String> =
-        ["glass", "maker", "code", "nd", "νd", "density g/cm³", "known from–to nm", "status"]
-            .map(str::to_owned)
-            .into_iter()
-            .chain(wavelengths.iter().map(|&nm| format!("n at {} nm", as_written(nm))))
-            .collect();
-    let rows: Vec<Vec<String>> = glasses
-        .iter()
-        .map(|glass| {
-            let word = |text: Option<&str>| text.unwrap_or("–").to_owned();
-            let range = glass.range().map_or_else(
-                || "everywhere".to_owned(),
-                |range| format!("{}–{}", as_written(range.low_nm()), as_written(range.high_nm())),
-            );
-            let mut row = vec![
-                glass.full_name(),
-                word(glass.maker()),
-                word(glass.code()),
-                fixed_or_dash(glass.nd(), 5),
-                fixed_or_dash(glass.vd(), 2),
-                fixed_or_dash(glass.density_g_cm3(), 2),
-                range,
-                glass.status().word().to_owned(),
-            ];
-            row.extend(wavelengths.iter().map(|&nm| fixed_or_dash(glass.index(nm).ok(), 6)));
-            row
-        })
-        .collect();
-    let heads: Vec<&str> = heads.iter().map(String::as_str).collect();
     let sources: Vec<&str> = glasses.iter().filter_map(|glass| glass.source()).collect();
     html! {
-        (table_of(&heads, &rows))
+        (laid_out(&glass::of_a_design(&glasses, &wavelengths)))
         @if !sources.is_empty() { p.faint { "Sources: " (sources.join("; ")) "." } }
     }
 }

@@ -1,18 +1,23 @@
 //! The requirement, and whether it is met: first of all.
 
+use driver::cam::MovementCurve;
 use driver::design_file::DesignFile;
 use maud::{Markup, html};
 use merit_function::assessment::Assessment;
 
+use super::Subject;
 use super::parts::{number, value_cell};
+use crate::text::number::counted;
 use crate::text::{as_written, verdict};
 
-/// The verdict and a row a goal.
-pub(super) fn requirement(file: &DesignFile, assessment: &Assessment) -> Markup {
+/// The verdict, on the states and between them, and a row a goal.
+pub(super) fn requirement(subject: &Subject<'_>) -> Markup {
+    let Subject { file, assessment, .. } = subject;
     let class = if assessment.meets { "verdict" } else { "verdict missed" };
     let crossed = assessment.limits.iter().filter(|limit| !limit.met).count();
     html! {
         p class=(class) data-meets=(assessment.meets) { (verdict::closing_sentence(file, assessment)) }
+        @if let Ok(curve) = &subject.curve { (between_states(curve)) }
         table {
             tr { th.word { "wanted" } th { "within" } th { "worst reached" } th.word { "where" } }
             @for row in rows(file, assessment) {
@@ -33,6 +38,28 @@ pub(super) fn requirement(file: &DesignFile, assessment: &Assessment) -> Markup 
         }
         @for caution in &assessment.cautions { p { strong { "Caution: " } (caution) } }
         @for warning in &assessment.warnings { p { "Warning: " (warning) } }
+    }
+}
+
+/// Most findings that are told here; all stand with the movement curve.
+const MOST_TOLD: usize = 3;
+
+/// Whether the design holds between its states too.
+fn between_states(curve: &MovementCurve) -> Markup {
+    let wrong: Vec<_> = curve.findings.iter().filter(|finding| finding.wrong).collect();
+    let more = wrong.len().saturating_sub(MOST_TOLD);
+    html! {
+        @if wrong.is_empty() {
+            p data-sound="true" { "Between its states, along the movement curve, nothing is wrong either." }
+        } @else {
+            div.verdict.missed data-sound="false" {
+                "Between its states, along the movement curve, it does not hold:"
+                ul {
+                    @for finding in wrong.iter().take(MOST_TOLD) { li { (finding.told) } }
+                    @if more > 0 { li { "and " (counted(more, "finding")) " more, under Movement" } }
+                }
+            }
+        }
     }
 }
 

@@ -1,32 +1,34 @@
 //! Axes: from values to places, and round numbers along the way.
 
+use super::axis_name::raised;
+
 /// What an axis is about.
 #[derive(Debug, Clone, PartialEq)]
-pub struct Axis {
+pub(crate) struct Axis {
     /// What is told along it.
-    pub name: String,
+    pub(crate) name: String,
     /// Its unit; empty for a pure number.
-    pub unit: String,
+    pub(crate) unit: String,
     /// Whether equal ways are equal factors; only for values above zero.
-    pub logarithmic: bool,
+    pub(crate) logarithmic: bool,
 }
 
 impl Axis {
     /// An axis with equal ways for equal differences.
     #[must_use]
-    pub fn linear(name: &str, unit: &str) -> Self {
+    pub(crate) fn linear(name: &str, unit: &str) -> Self {
         Self { name: name.into(), unit: unit.into(), logarithmic: false }
     }
 
     /// An axis with equal ways for equal factors.
     #[must_use]
-    pub fn logarithmic(name: &str, unit: &str) -> Self {
+    pub(crate) fn logarithmic(name: &str, unit: &str) -> Self {
         Self { logarithmic: true, ..Self::linear(name, unit) }
     }
 
     /// Name and unit as a caption.
     #[must_use]
-    pub fn caption(&self) -> String {
+    pub(crate) fn caption(&self) -> String {
         match (self.name.is_empty(), self.unit.is_empty()) {
             (true, _) => self.unit.clone(),
             (_, true) => self.name.clone(),
@@ -93,7 +95,9 @@ impl Scale {
     fn round(&self, about: usize) -> Vec<(f64, String)> {
         let raw = (self.high - self.low) / about.max(1) as f64;
         let power = 10.0_f64.powf(raw.log10().floor());
-        let step = [1.0, 2.0, 5.0, 10.0].map(|by| by * power).into_iter().find(|s| *s >= raw);
+        // A few more ticks rather than far fewer.
+        let steps = [1.0, 2.0, 5.0, 10.0].map(|by| by * power);
+        let step = steps.into_iter().find(|step| *step >= 0.75 * raw);
         let step = step.unwrap_or(raw);
         let decimals = (-step.log10().floor()).max(0.0) as usize;
         let first = (self.low / step).ceil() as i64;
@@ -112,23 +116,38 @@ impl Scale {
         (first..=last).map(|k| k as f64 * step).map(|value| (value, label(value))).collect()
     }
 
+    /// Powers of ten; where a scale spans few of them, twos and fives between them; round steps
+    /// where it spans less than a factor of two or so.
     fn decades(&self, about: usize) -> Vec<(f64, String)> {
         let (first, last) = (self.low.ceil() as i32, (self.high + 1e-9).floor() as i32);
-        let each = ((last - first + 1) as usize).div_ceil(about.max(1)).max(1);
-        if last - first >= 1 {
+        let powers = usize::try_from(last - first + 1).unwrap_or(0);
+        if powers > 2 {
+            let each = powers.div_ceil(about.max(1)).max(1);
             let powers = (first..=last).step_by(each);
             return powers.map(|power| (10.0_f64.powi(power), decade(power))).collect();
         }
-        let mut ticks = Vec::new();
-        for power in first - 1..=last + 1 {
-            for by in [1.0, 2.0, 5.0] {
-                let value = by * 10.0_f64.powi(power);
-                if (self.low..=self.high).contains(&value.log10()) {
-                    ticks.push((value, format!("{value}")));
-                }
-            }
+        let inside = |value: f64| (self.low..=self.high + 1e-9).contains(&value.log10());
+        let between = |by: &[f64]| -> Vec<(f64, String)> {
+            let powers = first - 1..=last + 1;
+            let values = powers.flat_map(|power| by.iter().map(move |by| (*by, power)));
+            let ticks = values.map(|(by, power)| (by * 10.0_f64.powi(power), by, power));
+            ticks.filter(|tick| inside(tick.0)).map(|(v, by, power)| (v, part(by, power))).collect()
+        };
+        let ticks = between(&[1.0, 2.0, 5.0]);
+        if ticks.len() >= 2 {
+            return ticks;
         }
-        ticks
+        let (low, high) = (10.0_f64.powf(self.low), 10.0_f64.powf(self.high));
+        Self { low, high, logarithmic: false, ..*self }.round(about)
+    }
+}
+
+/// A tick `by` times a power of ten.
+fn part(by: f64, power: i32) -> String {
+    match power {
+        -3..=4 => crate::text::as_written(by * 10.0_f64.powi(power)),
+        _ if by == 1.0 => decade(power),
+        _ => format!("{by}·{}", decade(power)),
     }
 }
 
@@ -136,18 +155,7 @@ fn decade(power: i32) -> String {
     if (-3..=4).contains(&power) {
         return format!("{}", 10.0_f64.powi(power));
     }
-    let digits: String = power
-        .to_string()
-        .chars()
-        .map(|c| match c {
-            '-' => '⁻',
-            '1' => '¹',
-            '2' => '²',
-            '3' => '³',
-            digit => char::from_u32(u32::from(digit) - 48 + 0x2070).unwrap_or(digit),
-        })
-        .collect();
-    format!("10{digits}")
+    format!("10{}", raised(&power.to_string()))
 }
 
 #[cfg(test)]
@@ -163,10 +171,16 @@ mod tests {
     fn ticks_are_round_and_inside() {
         let axis = Axis::linear("ratio", "");
         assert_eq!(labels(Scale::holding(&axis, [2.0, 6.0], 0.0, 1.0), 5), "2 3 4 5 6");
-        assert_eq!(labels(Scale::holding(&axis, [-0.031, 0.012], 0.0, 1.0), 4), "−0.02 0");
+        assert_eq!(
+            labels(Scale::holding(&axis, [-0.031, 0.012], 0.0, 1.0), 4),
+            "−0.03 −0.02 −0.01 0 0.01"
+        );
         let axis = Axis::logarithmic("merit", "");
         assert_eq!(labels(Scale::holding(&axis, [1e-6, 1e4], 0.0, 1.0), 4), "10⁻⁶ 0.001 1 1000");
         assert_eq!(labels(Scale::holding(&axis, [3.0, 12.0], 0.0, 1.0), 4), "5 10");
+        assert_eq!(labels(Scale::holding(&axis, [0.07, 2.0], 0.0, 1.0), 4), "0.1 0.2 0.5 1 2");
+        assert_eq!(labels(Scale::holding(&axis, [2e-7, 6e-7], 0.0, 1.0), 4), "2·10⁻⁷ 5·10⁻⁷");
+        assert_eq!(labels(Scale::holding(&axis, [0.11, 0.28], 0.0, 1.0), 4), "0.15 0.20 0.25");
     }
 
     #[test]

@@ -7,18 +7,18 @@ use crate::text::significant;
 
 /// One bar.
 #[derive(Debug, Clone, PartialEq)]
-pub struct Bar {
+pub(crate) struct Bar {
     /// What it is about.
-    pub name: String,
+    pub(crate) name: String,
     /// Its value; its sign is drawn.
-    pub value: f64,
+    pub(crate) value: f64,
 }
 
 const ROW: f64 = 18.0;
 
 /// Draws bars, the largest first, at most so many.
 #[must_use]
-pub fn bars(title: &str, axis: &Axis, bars: &[Bar], most: usize, width: f64) -> Panel {
+pub(crate) fn bars(title: &str, axis: &Axis, bars: &[Bar], most: usize, width: f64) -> Panel {
     let mut sorted: Vec<&Bar> = bars.iter().filter(|bar| bar.value.is_finite()).collect();
     sorted.sort_by(|a, b| b.value.abs().total_cmp(&a.value.abs()));
     let left_out = sorted.len().saturating_sub(most);

@@ -6,41 +6,45 @@ use super::panel::{Anchor, Panel, Word, width_of};
 
 /// One curve.
 #[derive(Debug, Clone, PartialEq)]
-pub struct Series {
+pub(crate) struct Series {
     /// Its name, written at its end.
-    pub name: String,
+    pub(crate) name: String,
     /// Its points; where the value is missing the curve is interrupted.
-    pub points: Vec<(f64, Option<f64>)>,
+    pub(crate) points: Vec<(f64, Option<f64>)>,
     /// Which colour and dash, by number.
-    pub style: usize,
+    pub(crate) style: usize,
     /// Whether every point gets a dot.
-    pub dots: bool,
+    pub(crate) dots: bool,
 }
 
 /// A value that curves are held against.
 #[derive(Debug, Clone, PartialEq)]
-pub struct Level {
+pub(crate) struct Level {
     /// Its name.
-    pub name: String,
+    pub(crate) name: String,
     /// The value.
-    pub value: f64,
+    pub(crate) value: f64,
 }
 
 /// Curves over an axis.
 #[derive(Debug, Clone, PartialEq)]
-pub struct Chart {
+pub(crate) struct Chart {
     /// What it shows.
-    pub title: String,
+    pub(crate) title: String,
     /// Along the bottom.
-    pub x: Axis,
+    pub(crate) x: Axis,
     /// Up the side.
-    pub y: Axis,
+    pub(crate) y: Axis,
+    /// Values that the side holds besides those of the curves: the same for charts to be compared.
+    pub(crate) y_holds: Vec<f64>,
     /// The curves.
-    pub series: Vec<Series>,
+    pub(crate) series: Vec<Series>,
     /// Goals and limits.
-    pub levels: Vec<Level>,
+    pub(crate) levels: Vec<Level>,
+    /// The least room for names at the right, px: the same for charts below each other.
+    pub(crate) names_room: f64,
     /// Abscissae that stand out, each with a name: the designed states.
-    pub marks: Vec<(f64, String)>,
+    pub(crate) marks: Vec<(f64, String)>,
 }
 
 /// Room around the field, px.
@@ -50,10 +54,10 @@ const BOTTOM: f64 = 36.0;
 
 /// Draws a chart.
 #[must_use]
-pub fn chart(chart: &Chart, width: f64, height: f64) -> Panel {
+pub(crate) fn chart(chart: &Chart, width: f64, height: f64) -> Panel {
     let names = chart.series.iter().map(|series| series.name.as_str());
     let names = names.chain(chart.levels.iter().map(|level| level.name.as_str()));
-    let right = names.map(|name| width_of(name, WORDS)).fold(14.0, f64::max) + 14.0;
+    let right = names.map(room_of).fold(chart.names_room.max(28.0), f64::max);
     let field = Field::of(chart, [LEFT, TOP], [width - right, height - BOTTOM]);
     let mut panel = Panel::new(width, height);
     panel.word([0.0, 12.0], &chart.title, Word::TITLE);
@@ -67,6 +71,11 @@ pub fn chart(chart: &Chart, width: f64, height: f64) -> Panel {
     }
     field.names(chart, &mut panel);
     panel
+}
+
+/// The room that a name at the end of a curve takes, px.
+pub(super) fn room_of(name: &str) -> f64 {
+    width_of(name, WORDS) + 14.0
 }
 
 /// The field that curves are drawn on.
@@ -83,6 +92,7 @@ impl Field {
         let x = Scale::holding(&chart.x, points().map(|(x, _)| *x).chain(marks), start[0], end[0]);
         let levels = chart.levels.iter().map(|level| level.value);
         let values = points().filter_map(|(_, y)| *y).chain(levels);
+        let values = values.chain(chart.y_holds.iter().copied());
         let y = Scale::holding(&chart.y, values, end[1], start[1]).roomy(0.06);
         Self { x, y, end }
     }
@@ -151,21 +161,33 @@ impl Field {
     }
 }
 
+/// A cross where something failed.
+pub(super) fn cross(panel: &mut Panel, [x, y]: [f64; 2]) {
+    const ARM: f64 = 2.6;
+    panel.line([x - ARM, y - ARM], [x + ARM, y + ARM], Stroke::solid(MISS, 1.0));
+    panel.line([x - ARM, y + ARM], [x + ARM, y - ARM], Stroke::solid(MISS, 1.0));
+}
+
 /// The frame of a field whose corner is at `[left, bottom]`: hairlines across, ticks below.
 pub(crate) fn frame(panel: &mut Panel, x: &Scale, y: &Scale, corner: [f64; 2], right: f64) {
+    levels(panel, y, corner, right);
     let [left, bottom] = corner;
-    for (value, label) in y.ticks(5) {
-        let at = y.place(value);
-        panel.line([left, at], [right, at], Stroke::solid(HAIR, 0.6));
-        panel.word([left - 6.0, at + 3.5], &label, Word::SMALL.at(Anchor::End));
-    }
-    panel.line([left, bottom], [right, bottom], Stroke::solid(FAINT, 1.0));
     let about = ((right - left) / 70.0).clamp(2.0, 10.0) as usize;
     for (value, label) in x.ticks(about) {
         let at = x.place(value);
         panel.line([at, bottom], [at, bottom + 4.0], Stroke::solid(FAINT, 1.0));
         panel.word([at, bottom + 15.0], &label, Word::SMALL.at(Anchor::Middle));
     }
+}
+
+/// The hairlines across a field and its bottom.
+pub(super) fn levels(panel: &mut Panel, y: &Scale, [left, bottom]: [f64; 2], right: f64) {
+    for (value, label) in y.ticks(5) {
+        let at = y.place(value);
+        panel.line([left, at], [right, at], Stroke::solid(HAIR, 0.6));
+        panel.word([left - 6.0, at + 3.5], &label, Word::SMALL.at(Anchor::End));
+    }
+    panel.line([left, bottom], [right, bottom], Stroke::solid(FAINT, 1.0));
 }
 
 /// Places at least `apart` from each other, in order and as near as that lets them be to where

@@ -8,7 +8,7 @@ use super::train::outlines;
 
 /// Draws an element in section, to scale, `width` px wide: clear diameter, centre thicknesses.
 #[must_use]
-pub fn element_drawing(element: &Element, width: f64) -> Panel {
+pub(crate) fn element_drawing(element: &Element, width: f64) -> Panel {
     let pieces = outlines(element);
     let points = || pieces.iter().flatten();
     let (mut low, mut high) = (f64::INFINITY, f64::NEG_INFINITY);

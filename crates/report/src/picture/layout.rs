@@ -18,7 +18,7 @@ const HEAD: f64 = 44.0;
 
 /// Draws the layout of a design, `width` px wide.
 #[must_use]
-pub fn layout(design: &Design, curve: Option<&MovementCurve>, width: f64) -> Panel {
+pub(crate) fn layout(design: &Design, curve: Option<&MovementCurve>, width: f64) -> Panel {
     let shown = shown(design);
     let names = shown.iter().map(|&k| design.states[k].name.as_str());
     let left = names.map(|name| width_of(name, WORDS)).fold(30.0, f64::max) + 12.0;
@@ -26,7 +26,7 @@ pub fn layout(design: &Design, curve: Option<&MovementCurve>, width: f64) -> Pan
     let scale = (width - left) / (design.housing.track_mm + 2.0 * lead_mm);
     let half_mm = half_height_mm(design);
     let strip = 2.0 * half_mm * scale + BETWEEN;
-    let height = HEAD + strip * shown.len() as f64 + 34.0;
+    let height = HEAD + strip * shown.len() as f64 + 50.0;
     let mut panel = Panel::new(width, height);
     let place = Place { left, lead_mm, scale, strip };
     panel.word([0.0, 12.0], "Layout, to scale", Word::TITLE);
@@ -97,6 +97,11 @@ impl Place {
             let x = self.x(z);
             panel.line([x, HEAD - 6.0], [x, bottom], Stroke::dashed(FAINT, 0.8, "6 3 1 3"));
         }
+        let track = design.housing.track_mm;
+        let front = self.x(0.0);
+        panel.word([front + 4.0, bottom + 4.0], "front datum, 0 mm", Word::SMALL);
+        let end = format!("end of the tube, {track} mm");
+        panel.word([self.x(track) - 4.0, bottom + 4.0], &end, Word::SMALL.at(Anchor::End));
     }
 
     /// Movement curves: from the axis of one state to that of the next, the ratio running evenly.
@@ -188,10 +193,9 @@ impl Place {
         let [one, _, edge, _] = heights(design);
         let track = design.housing.track_mm;
         let long = format!(
-            "rays at the 1/e² radius ({one:.0} w, solid) and at the edge traced ({edge} w, dashed); \
-             tube of {track} mm"
+            "rays at the 1/e² radius ({one:.0} w, solid) and at the edge traced ({edge} w, dashed)"
         );
-        let short = format!("rays at w and {edge} w; tube of {track} mm");
+        let short = format!("rays at w and {edge} w");
         let room = self.x(track + self.lead_mm) - to - 70.0;
         let told = if width_of(&long, WORDS - 1.0) <= room { long } else { short };
         let end = self.x(design.housing.track_mm + self.lead_mm);

@@ -4,7 +4,7 @@ use driver::cam::{CurvePoint, Hold, MovementCurve, Part};
 use merit_function::wishes::Wishes;
 
 use super::axis::Axis;
-use super::chart::{Chart, Level, Series, chart};
+use super::chart::{Chart, Level, Series, chart, room_of};
 use super::panel::Panel;
 
 /// A curve over the ratio, interrupted where the movement curve breaks off.
@@ -39,10 +39,24 @@ fn over(
         title: title.into(),
         x: Axis::linear("ratio", ""),
         y,
+        y_holds: Vec::new(),
         series,
         levels,
+        names_room: names_room(curve),
         marks: if curve.states.len() <= 12 { marks.collect() } else { Vec::new() },
     }
+}
+
+const EXACT: &str = "exact rays";
+
+fn still(group: &str) -> String {
+    format!("{group} (still)")
+}
+
+/// Room for every name that a chart over the ratio may have: their ratios stand below each other.
+fn names_room(curve: &MovementCurve) -> f64 {
+    let groups = curve.groups.iter().map(|group| room_of(&still(&group.name)));
+    groups.fold(room_of(EXACT), f64::max)
 }
 
 /// A curve for every group that moves, in the colour it has in the layout.
@@ -59,17 +73,26 @@ fn of_groups(
     series.collect()
 }
 
-/// Positions of the moving groups.
+/// Positions of the moving groups, a field each: a short way shows beside a long one.
 #[must_use]
-pub fn positions(curve: &MovementCurve, width: f64) -> Panel {
+pub(crate) fn positions(curve: &MovementCurve, width: f64) -> Panel {
+    const GAP: f64 = 18.0;
     let series = of_groups(curve, |point, group| Some(point.groups[group].position_mm));
-    let y = Axis::linear("first vertex from the front datum", "mm");
-    chart(&over(curve, "Movement curves", y, series, Vec::new()), width, 240.0)
+    let columns = series.len().clamp(1, 2);
+    let each = (width - GAP * (columns as f64 - 1.0)) / columns as f64;
+    let fields = series.into_iter().map(|series| {
+        let y = Axis::linear("first vertex from the front datum", "mm");
+        let title = format!("Movement curve of {}", series.name);
+        let unnamed = Series { name: String::new(), ..series };
+        let field = Chart { names_room: 0.0, ..over(curve, &title, y, vec![unnamed], Vec::new()) };
+        chart(&field, each, 240.0)
+    });
+    Panel::grid(fields.collect(), columns, GAP)
 }
 
 /// Slopes of the movement curves.
 #[must_use]
-pub fn slopes(curve: &MovementCurve, width: f64) -> Panel {
+pub(crate) fn slopes(curve: &MovementCurve, width: f64) -> Panel {
     let series = of_groups(curve, |point, group| Some(point.groups[group].slope_mm_per_ratio));
     let y = Axis::linear("d position/d ratio", "mm");
     chart(&over(curve, "Slopes of the movement curves", y, series, Vec::new()), width, 200.0)
@@ -77,7 +100,7 @@ pub fn slopes(curve: &MovementCurve, width: f64) -> Panel {
 
 /// Pressure angles, where a barrel is given.
 #[must_use]
-pub fn pressure_angles(curve: &MovementCurve, width: f64) -> Option<Panel> {
+pub(crate) fn pressure_angles(curve: &MovementCurve, width: f64) -> Option<Panel> {
     let barrel = curve.barrel?;
     let series = of_groups(curve, |point, group| Some(point.groups[group].groove?.pressure_deg));
     let y = Axis::linear(
@@ -89,9 +112,9 @@ pub fn pressure_angles(curve: &MovementCurve, width: f64) -> Option<Panel> {
 
 /// Collimation: what the curve holds on exact rays, and the paraxial slope that goes with it.
 #[must_use]
-pub fn collimation(curve: &MovementCurve, wishes: &Wishes, width: f64) -> Panel {
+pub(crate) fn collimation(curve: &MovementCurve, wishes: &Wishes, width: f64) -> Panel {
     let exact = Series {
-        name: "exact rays".into(),
+        name: EXACT.into(),
         points: over_ratio(curve, |point| Some(point.collimation_urad)),
         style: 0,
         dots: false,
@@ -129,7 +152,7 @@ fn goal(
 
 /// RMS wavefront error between and at the states.
 #[must_use]
-pub fn wavefront(curve: &MovementCurve, wishes: &Wishes, width: f64) -> Panel {
+pub(crate) fn wavefront(curve: &MovementCurve, wishes: &Wishes, width: f64) -> Panel {
     let wavelengths = curve.fine.first().map_or(&[][..], |point| &point.wavefront);
     let series = wavelengths.iter().enumerate().map(|(w, at)| Series {
         name: format!("{} nm", at.wavelength_nm),
@@ -152,11 +175,11 @@ pub fn wavefront(curve: &MovementCurve, wishes: &Wishes, width: f64) -> Panel {
 
 /// What the collimation changes by when a group is out of place.
 #[must_use]
-pub fn sensitivities(curve: &MovementCurve, width: f64) -> Panel {
+pub(crate) fn sensitivities(curve: &MovementCurve, width: f64) -> Panel {
     let groups = 0..curve.groups.len();
     let series = groups.map(|group| Series {
         name: match curve.groups[group].part {
-            Part::Still => format!("{} (still)", curve.groups[group].name),
+            Part::Still => still(&curve.groups[group].name),
             _ => curve.groups[group].name.clone(),
         },
         points: over_ratio(curve, |point| Some(point.groups[group].collimation_urad_per_um)),

@@ -5,7 +5,7 @@ use driver::design_file::DesignFile;
 use driver::overnight::{Finds, StartEnd};
 
 use super::axis::{Axis, Scale};
-use super::ink::{FAINT, MISS, Stroke, WORDS};
+use super::ink::{FAINT, Stroke, WORDS};
 use super::layout::layout;
 use super::panel::{Anchor, Panel, Word, width_of};
 use super::sheets::{file_of, heading};
@@ -77,9 +77,7 @@ fn mark(panel: &mut Panel, at: [f64; 2], limits_kept: bool) {
         panel.dot(at, 2.4, "#ffffff", Stroke::solid(FAINT, 1.0));
         return;
     }
-    let ([x, y], arm) = (at, 2.6);
-    panel.line([x - arm, y - arm], [x + arm, y + arm], Stroke::solid(MISS, 1.0));
-    panel.line([x - arm, y + arm], [x + arm, y - arm], Stroke::solid(MISS, 1.0));
+    chart::cross(panel, at);
 }
 
 /// What the marks mean, and whether they are all there are.

@@ -7,7 +7,7 @@ use super::ink::{FAINT, INK, Stroke, TITLE, TYPE, WORDS};
 
 /// A rectangle that is drawn on; x to the right, y down, in px.
 #[derive(Debug, Clone)]
-pub struct Panel {
+pub(crate) struct Panel {
     /// Width, px.
     pub(crate) width: f64,
     /// Height, px.
@@ -129,6 +129,11 @@ impl Panel {
         self.add(dot);
     }
 
+    /// A circle around what is drawn already.
+    pub(crate) fn ring(&mut self, at: [f64; 2], radius: f64, stroke: Stroke) {
+        self.dot(at, radius, "none", stroke);
+    }
+
     pub(crate) fn block(&mut self, at: [f64; 2], size: [f64; 2], fill: &str, opacity: f64) {
         let block = Rectangle::new()
             .set("x", px(at[0]))
@@ -165,7 +170,7 @@ impl Panel {
 
     /// Panels one below the other.
     #[must_use]
-    pub fn stack(panels: impl IntoIterator<Item = Self>, gap: f64) -> Self {
+    pub(crate) fn stack(panels: impl IntoIterator<Item = Self>, gap: f64) -> Self {
         let panels: Vec<Self> = panels.into_iter().collect();
         let width = panels.iter().map(|panel| panel.width).fold(0.0, f64::max);
         let gaps = gap * panels.len().saturating_sub(1) as f64;
@@ -217,14 +222,14 @@ impl Panel {
 
     /// The panel as an SVG file.
     #[must_use]
-    pub fn to_file(self) -> String {
+    pub(crate) fn into_file(self) -> String {
         format!("{}\n", self.document(16.0))
     }
 
     /// The panel as an SVG element of a page, as wide as the page lets it be, with a name for
     /// those who do not see it.
     #[must_use]
-    pub fn to_element(self, name: &str) -> String {
+    pub(crate) fn into_element(self, name: &str) -> String {
         let document = self.document(2.0).set("role", "img").set("aria-label", name);
         document.to_string()
     }

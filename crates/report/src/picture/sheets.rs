@@ -19,7 +19,7 @@ pub(super) fn heading(title: &str) -> Option<Panel> {
 }
 
 pub(super) fn file_of(panels: impl IntoIterator<Item = Panel>) -> String {
-    Panel::stack(panels, GAP).to_file()
+    Panel::stack(panels, GAP).into_file()
 }
 
 /// What `assess --picture` writes: layout and wavefronts.

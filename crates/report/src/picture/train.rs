@@ -9,11 +9,11 @@ const PROFILE: usize = 12;
 
 /// A ray: height and axial place, mm, from where it comes in to where it is lost sight of.
 #[derive(Debug, Clone, PartialEq)]
-pub struct DrawnRay {
+pub(crate) struct DrawnRay {
     /// Height at entry in 1/e² radii.
-    pub height: f64,
+    pub(crate) height: f64,
     /// z and y, mm.
-    pub points_mm: Vec<[f64; 2]>,
+    pub(crate) points_mm: Vec<[f64; 2]>,
 }
 
 /// A surface's profile from below the axis to above, z from its vertex and y, mm. It ends where
@@ -26,7 +26,7 @@ fn profile(surface: &Surface) -> Vec<[f64; 2]> {
 
 /// The pieces of glass of an element: closed outlines, z from the element's first vertex, mm.
 #[must_use]
-pub fn outlines(element: &Element) -> Vec<Vec<[f64; 2]>> {
+pub(crate) fn outlines(element: &Element) -> Vec<Vec<[f64; 2]>> {
     let mut z = 0.0;
     let mut pieces = Vec::new();
     for (pair, thickness) in element.surfaces.windows(2).zip(&element.thicknesses_mm) {
@@ -42,7 +42,7 @@ pub fn outlines(element: &Element) -> Vec<Vec<[f64; 2]>> {
 
 /// Heights that rays are drawn at, in 1/e² radii.
 #[must_use]
-pub fn heights(design: &Design) -> [f64; 4] {
+pub(crate) fn heights(design: &Design) -> [f64; 4] {
     let edge = design.beam.traced_to;
     [1.0, -1.0, edge, -edge]
 }
@@ -50,7 +50,12 @@ pub fn heights(design: &Design) -> [f64; 4] {
 /// Exact rays of a state in the housing, from `lead_mm` before the first vertex to as far behind
 /// the last. A ray that fails is left out.
 #[must_use]
-pub fn rays(design: &Design, state: &ZoomState, front_mm: f64, lead_mm: f64) -> Vec<DrawnRay> {
+pub(crate) fn rays(
+    design: &Design,
+    state: &ZoomState,
+    front_mm: f64,
+    lead_mm: f64,
+) -> Vec<DrawnRay> {
     let Some(train) = state.wavelengths_nm.first().and_then(|&nm| design.train(state, nm).ok())
     else {
         return Vec::new();

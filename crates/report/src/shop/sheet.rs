@@ -54,7 +54,7 @@ impl Sheet<'_> {
         let pieces = element.glasses.len();
         html! {
             section {
-                div.drawing { (PreEscaped(element_drawing(element, 560.0).to_element(name))) }
+                div.drawing { (PreEscaped(element_drawing(element, 560.0).into_element(name))) }
                 @for k in 0..pieces {
                     table data-piece=(format!("{name} {k}")) {
                         tr {

@@ -12,13 +12,13 @@ use super::{WIDTH, hazards, paragraph, sections, surface_name};
 pub fn beam(file: &DesignFile, beams: &[BeamAssessment], assessment: &Assessment) -> String {
     sections([
         super::assessment::heading(file),
-        entrance(beams),
-        exits(beams),
-        readjustments(beams),
-        ranges(file, beams),
-        pointing(beams),
-        surfaces(file, beams),
-        explained(),
+        entrance_told(beams),
+        exits(beams).text(),
+        readjustments(beams).text(),
+        ranges(file, beams).text(),
+        pointing(beams).text(),
+        sections(surfaces(file, beams).into_iter().map(Table::text)),
+        paragraph(EXPLAINED, WIDTH, ""),
         hazards::first_caution(assessment),
     ])
 }
@@ -26,11 +26,17 @@ pub fn beam(file: &DesignFile, beams: &[BeamAssessment], assessment: &Assessment
 /// What `assess` prints of it: how it enters and leaves.
 pub(crate) fn summary(assessment: &Assessment) -> String {
     let Some(beams) = &assessment.real_beam else { return String::new() };
-    sections([entrance(beams), exits(beams)])
+    sections([entrance_told(beams), exits(beams).text()])
 }
 
-/// The beam that enters, a line a wavelength where they differ.
-fn entrance(beams: &[BeamAssessment]) -> String {
+fn entrance_told(beams: &[BeamAssessment]) -> String {
+    let lines: Vec<String> =
+        entrance(beams).iter().map(|told| paragraph(told, WIDTH, "  ")).collect();
+    lines.join("\n")
+}
+
+/// The beam that enters, a sentence a wavelength where they differ.
+pub(crate) fn entrance(beams: &[BeamAssessment]) -> Vec<String> {
     let mut told: Vec<(f64, BeamNumbers)> = Vec::new();
     for beam in beams {
         if !told.iter().any(|(nm, _)| *nm == beam.wavelength_nm) {
@@ -43,16 +49,15 @@ fn entrance(beams: &[BeamAssessment]) -> String {
             at if at < 0.0 => format!("{} mm before the first surface", significant(-1e3 * at, 4)),
             at => format!("{} mm behind the first surface", significant(1e3 * at, 4)),
         };
-        let told = format!(
+        format!(
             "Real beam at {} nm: M² {}, waist {} mm {waist}, divergence {} mrad (full angle).",
             as_written(*nm),
             fixed(beam.m_squared, 2),
             fixed(beam.waist_diameter_mm, 3),
             significant(beam.divergence_mrad, 4),
-        );
-        paragraph(&told, WIDTH, "  ")
+        )
     };
-    told.iter().map(line).collect::<Vec<_>>().join("\n")
+    told.iter().map(line).collect()
 }
 
 /// State and wavelength, the state once.
@@ -65,7 +70,7 @@ fn names(beams: &[BeamAssessment], i: usize) -> [String; 2] {
 const NAMES: [(Column, &str); 2] = [(Column::Left, "state"), (Column::Right, "wave-\nlength nm")];
 
 /// The beam that leaves.
-fn exits(beams: &[BeamAssessment]) -> String {
+pub(crate) fn exits(beams: &[BeamAssessment]) -> Table {
     let heads = [
         (Column::Right, "real\nbeam mm"),
         (Column::Right, "waist\nm from\nexit"),
@@ -90,7 +95,7 @@ fn exits(beams: &[BeamAssessment]) -> String {
             significant_or_dash(clipped.reduce(f64::max).map(negligible), 2),
         ]));
     }
-    table.text()
+    table
 }
 
 /// Less than a millionth of a per cent is nothing.
@@ -98,7 +103,8 @@ fn negligible(percent: f64) -> f64 {
     if percent < 1e-6 { 0.0 } else { percent }
 }
 
-fn readjustments(beams: &[BeamAssessment]) -> String {
+/// How a group would move the waist or lessen the divergence.
+pub(crate) fn readjustments(beams: &[BeamAssessment]) -> Table {
     let heads = [
         (Column::Left, "group\nto move"),
         (Column::Right, "to least\ndivergence\nmm"),
@@ -117,10 +123,11 @@ fn readjustments(beams: &[BeamAssessment]) -> String {
             ]));
         }
     }
-    if table.is_empty() { String::new() } else { table.text() }
+    table
 }
 
-fn ranges(file: &DesignFile, beams: &[BeamAssessment]) -> String {
+/// The beam at distances that were asked for.
+pub(crate) fn ranges(file: &DesignFile, beams: &[BeamAssessment]) -> Table {
     let laser = &file.design.beam.laser;
     let peak = |dose: Option<f64>, diameter_mm: f64| {
         let peak = |dose| surface_model::gaussian::peak_per_cm2(dose, 0.5 * diameter_mm);
@@ -144,10 +151,11 @@ fn ranges(file: &DesignFile, beams: &[BeamAssessment]) -> String {
             ]));
         }
     }
-    if table.is_empty() { String::new() } else { table.text() }
+    table
 }
 
-fn pointing(beams: &[BeamAssessment]) -> String {
+/// A beam that enters at an angle.
+pub(crate) fn pointing(beams: &[BeamAssessment]) -> Table {
     let heads = [
         (Column::Right, "enters at\nmrad"),
         (Column::Right, "leaves at\nmrad"),
@@ -167,16 +175,16 @@ fn pointing(beams: &[BeamAssessment]) -> String {
             ]));
         }
     }
-    if table.is_empty() { String::new() } else { table.text() }
+    table
 }
 
 /// Most states side by side in one table.
 const ABREAST: usize = 5;
 
 /// The beam at every surface, states side by side; then what is clipped, where anything is.
-fn surfaces(file: &DesignFile, beams: &[BeamAssessment]) -> String {
+pub(crate) fn surfaces(file: &DesignFile, beams: &[BeamAssessment]) -> Vec<Table> {
     let told = |what: &str, of: &dyn Fn(&SurfaceBeam) -> String| {
-        beams.chunks(ABREAST).map(|some| beside(file, some, what, of)).collect::<Vec<_>>()
+        beams.chunks(ABREAST).filter_map(|some| beside(file, some, what, of)).collect::<Vec<_>>()
     };
     let mut parts = told("beam mm", &|surface| fixed(surface.diameter_mm, 3));
     let all = || beams.iter().flat_map(|beam| &beam.surfaces);
@@ -185,7 +193,7 @@ fn surfaces(file: &DesignFile, beams: &[BeamAssessment]) -> String {
             significant(negligible(surface.clipped_percent), 2)
         }));
     }
-    sections(parts)
+    parts
 }
 
 /// Share of the power outside a clear diameter that is worth a table, per cent.
@@ -196,7 +204,7 @@ fn beside(
     beams: &[BeamAssessment],
     what: &str,
     of: &dyn Fn(&SurfaceBeam) -> String,
-) -> String {
+) -> Option<Table> {
     let several = beams.iter().any(|beam| beam.wavelength_nm != beams[0].wavelength_nm);
     let head = |beam: &BeamAssessment| {
         let nm = as_written(beam.wavelength_nm);
@@ -209,29 +217,21 @@ fn beside(
     let mut table = Table::new(columns);
     let elements = file.design.groups.iter().flat_map(|group| &group.elements);
     let clear = elements.flat_map(|part| part.surfaces.iter().map(|s| 2.0 * s.semi_diameter));
-    let Some(first) = beams.iter().find(|beam| !beam.surfaces.is_empty()) else {
-        return String::new();
-    };
+    let first = beams.iter().find(|beam| !beam.surfaces.is_empty())?;
     for (k, (surface, clear)) in first.surfaces.iter().zip(clear).enumerate() {
         let mut row = vec![surface_name(file, &surface.at), as_written(clear)];
         row.extend(beams.iter().map(|beam| beam.surfaces.get(k).map_or_else(dash, of)));
         table.row(row);
     }
-    table.text()
+    Some(table)
 }
 
 fn dash() -> String {
     NONE.to_owned()
 }
 
-fn explained() -> String {
-    paragraph(
-        "Diameters are 1/e² diameters and divergences full angles (ISO 11146-1). Divergence and M² \
-         behind the design are with its aberration, all else is first order. \"On axis far off\" is \
-         the intensity by diffraction over that of the same beam without aberration, collimated (or, \
-         where that is the goal, focused) as it should be. Groups move away from the laser by \
-         positive ways.",
-        WIDTH,
-        "",
-    )
-}
+/// What the numbers of the real beam are.
+pub(crate) const EXPLAINED: &str = "Diameters are 1/e² diameters and divergences full angles (ISO 11146-1). Divergence and M² \
+     behind the design are with its aberration, all else is first order. \"On axis far off\" is the \
+     intensity by diffraction over that of the same beam without aberration, collimated (or, where \
+     that is the goal, focused) as it should be. Groups move away from the laser by positive ways.";

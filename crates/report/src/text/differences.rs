@@ -11,7 +11,7 @@ use super::table::{ARROW, Column, Table};
 #[must_use]
 pub fn differences(head: &str, differences: &[&Difference]) -> String {
     let mut table = Table::new([
-        (Column::Left, head),
+        (Column::Place, head),
         (Column::From, "from"),
         (Column::Arrow, ""),
         (Column::Right, "to"),
@@ -28,7 +28,7 @@ pub fn differences(head: &str, differences: &[&Difference]) -> String {
             difference.by_percent.map_or_else(|| NONE.to_owned(), |percent| signed(percent, 2)),
         ]);
     }
-    if table.is_empty() { String::new() } else { table.text() }
+    table.text()
 }
 
 /// A number with its sign, the plus too.

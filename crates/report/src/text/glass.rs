@@ -42,6 +42,23 @@ pub fn equivalents(found: &[Equivalent], wavelengths_nm: &[f64]) -> String {
     table.text()
 }
 
+/// A table of the glasses of a design: between which wavelengths each is known, too.
+pub(crate) fn of_a_design(glasses: &[&Glass], wavelengths_nm: &[f64]) -> Table {
+    let heads = index_heads(wavelengths_nm);
+    let indices = heads.iter().map(|head| (Column::Right, head.as_str()));
+    let known = (Column::Right, "known\nnm");
+    let mut table = Table::new(LEADING.into_iter().chain([known]).chain(indices));
+    for glass in glasses {
+        let range = glass.range().map_or_else(
+            || "everywhere".to_owned(),
+            |range| format!("{}–{}", as_written(range.low_nm()), as_written(range.high_nm())),
+        );
+        let row = leading(glass).into_iter().chain([range]);
+        table.row(row.chain(indices_of(glass, wavelengths_nm)));
+    }
+    table
+}
+
 fn index_heads(wavelengths_nm: &[f64]) -> Vec<String> {
     wavelengths_nm.iter().map(|&nm| format!("n at\n{} nm", as_written(nm))).collect()
 }

@@ -20,10 +20,10 @@ pub fn hazards(file: &DesignFile, assessment: &Assessment) -> String {
     };
     sections([
         super::assessment::heading(file),
-        surfaces(file, states),
-        foci(file, states),
-        ghosts(file, states),
-        explained(),
+        surfaces(file, states).text(),
+        foci(file, states).text(),
+        ghosts(file, states).text(),
+        paragraph(EXPLAINED, WIDTH, ""),
         super::warnings(&assessment.warnings),
         cautions(assessment),
     ])
@@ -32,12 +32,12 @@ pub fn hazards(file: &DesignFile, assessment: &Assessment) -> String {
 /// What `assess` prints of it: the hardest hit, and the ghosts that matter most.
 pub(crate) fn summary(file: &DesignFile, assessment: &Assessment) -> String {
     let Some(states) = &assessment.hazards else { return String::new() };
-    let note = "A focus clear of glass by less than nothing lies in it.";
+    let note = "Where the way clear of glass is negative, the focus lies inside glass.";
     let note = if states.iter().any(StateHazards::has_ghost_in_glass) { note } else { "" };
     sections([
-        hardest(file, states),
-        foci(file, states),
-        worst_ghosts(file, states),
+        hardest(file, states).text(),
+        foci(file, states).text(),
+        worst_ghosts(file, states).text(),
         note.to_owned(),
     ])
 }
@@ -85,7 +85,8 @@ fn hardness(exposure: &Exposure) -> (f64, f64) {
     (exposure.of_threshold.unwrap_or(0.0), -exposure.diameter_mm)
 }
 
-fn hardest(file: &DesignFile, states: &[StateHazards]) -> String {
+/// In each state the surface that is hit hardest.
+pub(crate) fn hardest(file: &DesignFile, states: &[StateHazards]) -> Table {
     let heads = [(Column::Left, "state"), (Column::Left, "hardest hit")];
     let mut table = Table::new(heads.into_iter().chain(EXPOSURE));
     for state in states {
@@ -98,10 +99,11 @@ fn hardest(file: &DesignFile, states: &[StateHazards]) -> String {
             table.row(names.into_iter().chain(told(&worst.exposure)));
         }
     }
-    table.text()
+    table
 }
 
-fn surfaces(file: &DesignFile, states: &[StateHazards]) -> String {
+/// Every surface of every state.
+pub(crate) fn surfaces(file: &DesignFile, states: &[StateHazards]) -> Table {
     let heads = [(Column::Left, "state"), (Column::Left, "surface")];
     let pulse = (Column::Right, "in a pulse\nMW/cm²");
     let mut table = Table::new(heads.into_iter().chain(EXPOSURE).chain([pulse]));
@@ -114,10 +116,11 @@ fn surfaces(file: &DesignFile, states: &[StateHazards]) -> String {
             table.row(cells.chain([significant_or_dash(pulse, 3)]));
         }
     }
-    table.text()
+    table
 }
 
-fn foci(file: &DesignFile, states: &[StateHazards]) -> String {
+/// Every focus inside the design.
+pub(crate) fn foci(file: &DesignFile, states: &[StateHazards]) -> Table {
     let heads = [
         (Column::Left, "state"),
         (Column::Left, "internal\nfocus behind"),
@@ -136,7 +139,7 @@ fn foci(file: &DesignFile, states: &[StateHazards]) -> String {
             table.row(place.into_iter().chain(told(&focus.exposure)));
         }
     }
-    if table.is_empty() { String::new() } else { table.text() }
+    table
 }
 
 fn medium(in_glass: bool) -> String {
@@ -201,7 +204,7 @@ fn ghost_row(file: &DesignFile, name: String, ghost: &GhostHazard, dose: Dose) -
 
 /// In each state the ghost that hits glass hardest, the one with a focus nearest to glass, and the
 /// one that couples best into the laser.
-fn worst_ghosts(file: &DesignFile, states: &[StateHazards]) -> String {
+pub(crate) fn worst_ghosts(file: &DesignFile, states: &[StateHazards]) -> Table {
     let dose = Dose::of(states);
     let mut table = Table::new(ghost_heads(dose));
     for state in states {
@@ -223,11 +226,11 @@ fn worst_ghosts(file: &DesignFile, states: &[StateHazards]) -> String {
             table.row(ghost_row(file, name, &state.ghosts[i], dose));
         }
     }
-    table.text()
+    table
 }
 
 /// Every ghost, with the place of its focus nearest to glass.
-fn ghosts(file: &DesignFile, states: &[StateHazards]) -> String {
+pub(crate) fn ghosts(file: &DesignFile, states: &[StateHazards]) -> Table {
     let hardest = |ghost: &GhostHazard| ghost.hardest_on_glass?.of_threshold;
     let judged = states.iter().flat_map(|state| &state.ghosts).any(|g| hardest(g).is_some());
     let dose = Dose::of(states);
@@ -268,17 +271,12 @@ fn ghosts(file: &DesignFile, states: &[StateHazards]) -> String {
             table.row(cells.chain([on_glass, into_laser]));
         }
     }
-    table.text()
+    table
 }
 
-fn explained() -> String {
-    paragraph(
-        "Peak values of a Gaussian cross-section, 2E/(πw²) and 2P/(πw²), at the first wavelength. A \
-         ghost's share is at most what it says: what other surfaces take away is left out. A focus \
-         clear of glass by less than nothing lies in it; \"by\" is how far behind the surface it left \
-         last, negative on the way back. \"Into laser\" is what couples back into \
-         the laser's own mode, for a beam with M² of 1 that is perfectly aligned.",
-        WIDTH,
-        "",
-    )
-}
+/// What the numbers of hazards are.
+pub(crate) const EXPLAINED: &str = "Peak values of a Gaussian cross-section, 2E/(πw²) and 2P/(πw²), at the first wavelength. A \
+     ghost's share is at most what it says: what other surfaces take away is left out. Where the \
+     way clear of glass is negative, the focus lies inside glass; \"by\" is how far behind the surface it left last, \
+     negative on the way back. \"Into laser\" is what couples back into the laser's own mode, for a \
+     beam with M² of 1 that is perfectly aligned.";

@@ -6,6 +6,7 @@ use merit_function::limits::LimitKind;
 
 use super::number::{as_written, fixed};
 use super::table::{BLANK, Column, Table};
+use super::{WIDTH, paragraph};
 
 /// Which limits are told.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, Default)]
@@ -23,12 +24,23 @@ pub(crate) fn limits(file: &DesignFile, assessment: &Assessment, scope: Scope) -
         Table::new([(Column::Left, "limit"), (Column::Right, "value "), (Column::Left, "at")]);
     for limit in chosen(&assessment.limits, scope) {
         table.row([
-            format!("{} {}", limit.limit.word(), allowed(limit)),
+            format!("{} {}", name(limit.limit), allowed(limit)),
             format!("{}{}", value(limit), if limit.met { BLANK } else { '!' }),
             place(file, limit),
         ]);
     }
-    if table.is_empty() { String::new() } else { table.text() }
+    let told = any_of(assessment, LimitKind::InternalFocus).then_some(FOCUS);
+    let told = told.map_or_else(String::new, |told| format!("\n{}", paragraph(told, WIDTH, "")));
+    format!("{}{told}", table.text())
+}
+
+/// What the number of the limit `internal_focus` is.
+pub(crate) const FOCUS: &str = "internal_focus: the least height of the outermost ray, paraxial or \
+                                exact, at any surface over its height at entry; below 0 the beam \
+                                has crossed the axis.";
+
+pub(crate) fn any_of(assessment: &Assessment, kind: LimitKind) -> bool {
+    assessment.limits.iter().any(|limit| limit.limit == kind)
 }
 
 pub(crate) fn chosen(limits: &[LimitAssessment], scope: Scope) -> Vec<&LimitAssessment> {
@@ -63,6 +75,14 @@ pub(crate) fn margin(limit: &LimitAssessment) -> f64 {
     let below = limit.min.map_or(f64::INFINITY, |min| value - min);
     let above = limit.max.map_or(f64::INFINITY, |max| max - value);
     below.min(above)
+}
+
+/// A limit as the file calls it; what no file asks for, in words.
+pub(crate) fn name(kind: LimitKind) -> &'static str {
+    match kind {
+        LimitKind::HousingMm => "ends of the tube, mm",
+        kind => kind.word(),
+    }
 }
 
 pub(crate) fn allowed(limit: &LimitAssessment) -> String {

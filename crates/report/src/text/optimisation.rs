@@ -128,7 +128,7 @@ fn of_the_beam(told: &Told<'_>) -> String {
             row(what, &|state| state.exit_focus_m);
         }
     }
-    if table.is_empty() { String::new() } else { table.text() }
+    table.text()
 }
 
 fn totals(told: &Told<'_>) -> String {

@@ -52,7 +52,7 @@ fn shared(before: &DesignFile, after: &DesignFile) -> String {
             ]);
         }
     }
-    if table.is_empty() { String::new() } else { table.text() }
+    table.text()
 }
 
 fn spacings(before: &DesignFile, after: &DesignFile) -> String {

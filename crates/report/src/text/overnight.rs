@@ -48,7 +48,8 @@ fn table(list: &RankedList) -> String {
     table.text()
 }
 
-/// Glasses from left to right, the same ones in a row once with their number.
+/// Glasses from left to right, the same ones in a row once with their number; where that is too
+/// long, each once.
 fn glasses(names: &[String]) -> String {
     let mut runs: Vec<(&str, usize)> = Vec::new();
     for name in names {
@@ -68,14 +69,28 @@ fn glasses(names: &[String]) -> String {
     if told.chars().count() <= GLASSES {
         return told;
     }
+    let told = distinct(names).join(", ");
+    if told.chars().count() <= GLASSES {
+        return told;
+    }
     let cut: String = told.chars().take(GLASSES - 1).collect();
     format!("{cut}…")
+}
+
+/// Each glass once, in the order they come, with its number where it is more than one.
+fn distinct(names: &[String]) -> Vec<String> {
+    let count = |name: &String| names.iter().filter(|other| *other == name).count();
+    let first = |k: usize| !names[..k].contains(&names[k]);
+    let firsts = (0..names.len()).filter(|&k| first(k)).map(|k| (&names[k], count(&names[k])));
+    firsts.map(|(name, n)| if n == 1 { name.clone() } else { format!("{n} {name}") }).collect()
 }
 
 fn remarks(list: &RankedList) -> String {
     let listed = list.best.len();
     let meeting = match list.best.iter().filter(|best| best.meets).count() {
-        0 => "None of those listed meets every goal and limit.".to_owned(),
+        0 => "None of those listed meets every goal and limit: more starts, one more element in a \
+              group, other glasses, a longer tube or wider goals may help."
+            .to_owned(),
         all if all == listed => "Every one listed meets every goal and limit.".to_owned(),
         some => format!("{some} of the {listed} listed meet every goal and limit."),
     };
@@ -173,7 +188,9 @@ mod tests {
         let names = |list: &[&str]| list.iter().map(|&name| name.to_owned()).collect::<Vec<_>>();
         assert_eq!(glasses(&names(&["a", "a", "b", "a"])), "2 a, b, a");
         let long = glasses(&names(&["fused-silica", "N-BK7", "fused-silica", "N-BK7"]));
-        assert_eq!(long.chars().count(), GLASSES);
+        assert_eq!(long, "2 fused-silica, 2 N-BK7");
+        let longer = glasses(&names(&["fused-silica", "N-BK7", "N-SF6", "N-LAK22"]));
+        assert_eq!(longer.chars().count(), GLASSES);
     }
 
     #[test]

@@ -8,7 +8,9 @@ use driver::retune::{Moving, Retuning, Stage};
 use surface_model::design::Design;
 
 use super::differences::{differences as table_of, signed};
-use super::number::{NONE, as_written, fixed, fixed_or_dash, significant, significant_or_dash};
+use super::number::{
+    NONE, as_written, fixed, fixed_or_dash, fixed_or_less, significant, significant_or_dash,
+};
 use super::states::spacing_heads;
 use super::table::{ARROW, BLANK, Column, Table};
 use super::verdict::{marks, missed};
@@ -130,7 +132,7 @@ fn goals(retuning: &Retuning) -> String {
             table.row([name(row), goal].into_iter().chain(cells));
         }
     }
-    if table.is_empty() { String::new() } else { table.text() }
+    table.text()
 }
 
 /// One state's goals, each with what every stage reaches.
@@ -176,7 +178,7 @@ fn reached(stage: &Stage, state: &str) -> Vec<(String, String)> {
     }
     if goals.ratio_percent.is_some() {
         let error = reached.ratio_error_percent;
-        let text = cell(fixed_or_dash(error, 4), error, goals.ratio_percent);
+        let text = cell(fixed_or_less(error, 4), error, goals.ratio_percent);
         cells.push(("ratio error %".to_owned(), text));
     }
     if goals.exit_slope_urad.is_some() {
@@ -208,14 +210,27 @@ fn moved(retuning: &Retuning) -> Vec<String> {
     }
     if let Some(stage) = retuning.stage(Moving::Unmade) {
         let found = differences(changed.file.document().value(), stage.file.document().value());
-        parts.push(table_of("moved with what is not made", &found.iter().collect::<Vec<_>>()));
+        let told: Vec<&Difference> = found.iter().filter(|one| !is_noise(one)).collect();
+        parts.push(table_of("moved with what is not made", &told));
     }
     parts
 }
 
+/// Whether a number has moved by no more than rounding.
+fn is_noise(difference: &Difference) -> bool {
+    const ROUNDING_PERCENT: f64 = 1e-9;
+    difference.by_percent.is_some_and(|percent| percent.abs() < ROUNDING_PERCENT)
+}
+
+/// Most spacings that stand beside each other.
+const ABREAST: usize = 2;
+
 /// What the mechanic sets: every spacing, and by how much it moves.
 fn bench_table(before: &Design, after: &Design) -> String {
     let heads = spacing_heads(before);
+    if heads.len() > ABREAST {
+        return tall_bench_table(before, after, &heads);
+    }
     let mut columns = vec![(Column::Left, "re-adjust")];
     for head in &heads {
         columns.extend([
@@ -232,6 +247,29 @@ fn bench_table(before: &Design, after: &Design) -> String {
             row.extend([fixed(from, 3), ARROW.to_owned(), fixed(to, 3), signed(to - from, 3)]);
         }
         table.row(row);
+    }
+    table.text()
+}
+
+/// The same with a line a spacing.
+fn tall_bench_table(before: &Design, after: &Design, heads: &[String]) -> String {
+    let mut table = Table::new([
+        (Column::Left, "re-adjust"),
+        (Column::Left, "spacing mm"),
+        (Column::From, "from"),
+        (Column::Arrow, ""),
+        (Column::Right, "to"),
+        (Column::Right, "by mm"),
+    ]);
+    for (old, new) in before.states.iter().zip(&after.states) {
+        let spacings = old.spacings_mm.iter().zip(&new.spacings_mm).zip(heads);
+        for (k, ((&from, &to), head)) in spacings.enumerate() {
+            let state = if k == 0 { old.name.clone() } else { String::new() };
+            let spacing = head.lines().collect::<Vec<_>>().join(" ");
+            let spacing = spacing.trim_end_matches(" mm").to_owned();
+            let cells = [fixed(from, 3), ARROW.to_owned(), fixed(to, 3), signed(to - from, 3)];
+            table.row([state, spacing].into_iter().chain(cells));
+        }
     }
     table.text()
 }

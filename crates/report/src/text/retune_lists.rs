@@ -43,8 +43,7 @@ pub fn replacements(glass: &str, found: &[Replacement]) -> String {
             format!("The best of them is {}, merit {merit}.", best.glass.glass.full_name())
         }
     };
-    let table = if table.is_empty() { String::new() } else { table.text() };
-    sections([table, paragraph(&closing, WIDTH, "")])
+    sections([table.text(), paragraph(&closing, WIDTH, "")])
 }
 
 /// Every radius moved to a tool, in the order of the moves.
@@ -52,7 +51,7 @@ pub fn replacements(glass: &str, found: &[Replacement]) -> String {
 pub fn tool_radii(done: &ToolRadii) -> String {
     let mut table = Table::new([
         (Column::Right, ""),
-        (Column::Left, "radius moved to a tool"),
+        (Column::Place, "radius moved to a tool"),
         (Column::From, "from"),
         (Column::Arrow, ""),
         (Column::Right, "to mm"),
@@ -119,10 +118,14 @@ pub fn batch(file: &DesignFile, units: &[TunedUnit]) -> String {
         .filter_map(|unit| Some(format!("{}: {}", unit.serial, unit.fault.as_ref()?)))
         .map(|line| paragraph(&line, WIDTH, "  "))
         .collect();
-    let table = if table.is_empty() { String::new() } else { table.text() };
     let signs = "! a goal missed or a limit crossed".to_owned();
     let any = units.iter().any(|unit| !unit.meets || !unit.meets_nothing_moved);
-    sections([table, if any { signs } else { String::new() }, faults.join("\n"), totals(units)])
+    sections([
+        table.text(),
+        if any { signs } else { String::new() },
+        faults.join("\n"),
+        totals(units),
+    ])
 }
 
 fn totals(units: &[TunedUnit]) -> String {

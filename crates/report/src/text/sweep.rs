@@ -1,5 +1,6 @@
 //! What `sweep` prints for people.
 
+use std::cmp::Ordering;
 use std::collections::BTreeSet;
 
 use driver::sweep::{Plan, PointResult, SweepResults};
@@ -59,11 +60,10 @@ pub fn results(results: &SweepResults) -> String {
         .map(|line| paragraph(&line, WIDTH, "  "))
         .take(MOST_LISTED)
         .collect();
-    let table = if table.is_empty() { String::new() } else { table.text() };
     let title = paragraph(&results.title, WIDTH, "");
     sections([
         title,
-        table,
+        table.text(),
         signs(&listed),
         faults.join("\n"),
         without_layout(results),
@@ -73,8 +73,9 @@ pub fn results(results: &SweepResults) -> String {
 }
 
 fn listed(results: &SweepResults) -> Vec<&PointResult> {
-    let all: Vec<&PointResult> = results.points.iter().collect();
+    let mut all: Vec<&PointResult> = results.points.iter().collect();
     if all.len() <= MOST_LISTED {
+        all.sort_by(|a, b| by_axes(&a.values, &b.values));
         return all;
     }
     let merit = |point: &PointResult| point.reached.as_ref().map_or(f64::INFINITY, |r| r.merit);
@@ -87,6 +88,15 @@ fn listed(results: &SweepResults) -> Vec<&PointResult> {
     best.sort_by(|a, b| merit(a).total_cmp(&merit(b)));
     best.truncate(MOST_LISTED);
     best
+}
+
+/// The order along the axes, the first before the others; of names the order of their letters.
+fn by_axes(a: &[Value], b: &[Value]) -> Ordering {
+    let pairs = a.iter().zip(b).map(|(a, b)| match (a.as_f64(), b.as_f64()) {
+        (Some(a), Some(b)) => a.total_cmp(&b),
+        _ => value(a).cmp(&value(b)),
+    });
+    pairs.fold(Ordering::Equal, Ordering::then)
 }
 
 fn row(point: &PointResult) -> Vec<String> {

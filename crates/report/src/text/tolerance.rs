@@ -158,7 +158,7 @@ pub(crate) fn sensitivities(file: &DesignFile, report: &ToleranceReport, listed:
     let mut table = Table::new([
         (Column::Right, "share\n%"),
         (Column::Left, "tolerance"),
-        (Column::Left, "at"),
+        (Column::Place, "at"),
         (Column::Right, "±"),
         (Column::Right, "RMS\nwaves"),
         (Column::Right, "ratio\n%"),

@@ -5,7 +5,7 @@ use merit_function::assessment::{Assessment, LimitAssessment, StateAssessment};
 use merit_function::goals::Goals;
 use merit_function::limits::LimitKind;
 
-use super::limits::margin;
+use super::limits::{allowed, margin, name, place};
 use super::number::{as_written, counted, significant};
 use super::states::at_temperature;
 
@@ -101,6 +101,35 @@ fn reached(limits: &[LimitAssessment]) -> Vec<&LimitAssessment> {
     limits.iter().filter(reached).collect()
 }
 
+/// Limits by their kind, in the order in which the kinds come.
+fn kinds_of<'a>(limits: &[&'a LimitAssessment]) -> Vec<(LimitKind, Vec<&'a LimitAssessment>)> {
+    let mut kinds: Vec<(LimitKind, Vec<&LimitAssessment>)> = Vec::new();
+    for &limit in limits {
+        match kinds.iter_mut().find(|(kind, _)| *kind == limit.limit) {
+            Some((_, list)) => list.push(limit),
+            None => kinds.push((limit.limit, vec![limit])),
+        }
+    }
+    kinds
+}
+
+/// The worst of every kind that is crossed, a focus inside before everything else.
+fn crossed_told(file: &DesignFile, crossed: &[&LimitAssessment]) -> String {
+    let mut kinds = kinds_of(crossed);
+    kinds.sort_by_key(|(kind, _)| *kind != LimitKind::InternalFocus);
+    let worst = kinds.iter().filter_map(|(kind, list)| {
+        let worst = list.iter().min_by(|a, b| margin(a).total_cmp(&margin(b)))?;
+        let value = worst.value.map_or_else(|| "unknown".to_owned(), |v| significant(v, 4));
+        let (allowed, at) = (allowed(worst), place(file, worst));
+        let more = match list.len() - 1 {
+            0 => String::new(),
+            more => format!(", and {more} more"),
+        };
+        Some(format!("{} of {at}, {value} where {allowed} is allowed{more}", name(*kind)))
+    });
+    format!("; crossed: {}", worst.collect::<Vec<_>>().join("; "))
+}
+
 /// Whether the design does what it should, and what is worst about it.
 pub(crate) fn closing_sentence(file: &DesignFile, assessment: &Assessment) -> String {
     let marks = marks(file, assessment);
@@ -131,16 +160,21 @@ pub(crate) fn closing_sentence(file: &DesignFile, assessment: &Assessment) -> St
             told.push_str(&format!(" ({} times)", significant(worst.size(), 2)));
         }
     }
+    if !crossed.is_empty() {
+        told.push_str(&crossed_told(file, &crossed));
+    }
     let reached = reached(&assessment.limits);
     if missed.is_empty() && crossed.is_empty() && faults == 0 && !reached.is_empty() {
         let joint = if worst.is_some() { ", and" } else { ";" };
         let verb = if reached.len() == 1 { "is" } else { "are" };
-        let mut kinds: Vec<&str> = reached.iter().map(|limit| limit.limit.word()).collect();
-        kinds.dedup();
+        let kinds = kinds_of(&reached).into_iter().map(|(kind, list)| match list.len() {
+            1 => name(kind).to_owned(),
+            many => format!("{} {many} times", name(kind)),
+        });
         told.push_str(&format!(
             "{joint} {} {verb} reached ({})",
             counted(reached.len(), "limit"),
-            kinds.join(", ")
+            kinds.collect::<Vec<_>>().join(", ")
         ));
     }
     told.push('.');
