@@ -4,7 +4,7 @@ use std::fmt::Write;
 use std::path::{Path, PathBuf};
 use std::time::Instant;
 
-use driver::run::{Budget, Finished, RunFolder, Saving, Share, TakenUp, Tally, Watcher, perform};
+use driver::run::{Budget, Earlier, Finished, RunFolder, Saving, Share, Tally, Watcher, perform};
 use driver::sweep::{PlanFile, PointResult, Subject, Sweep, ask};
 use surface_model::document::Document;
 
@@ -84,7 +84,7 @@ fn in_folder(
 struct Unwatched;
 
 impl Watcher<PointResult> for Unwatched {
-    fn taken_up(&mut self, _: &TakenUp) {}
+    fn earlier(&mut self, _: &Earlier) {}
     fn found(&mut self, _: Finished<PointResult>) {}
     fn tick(&mut self, _: &Tally) {}
     fn saving(&mut self, _: Saving<'_>) {}

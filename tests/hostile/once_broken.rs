@@ -166,6 +166,21 @@ fn a_journal_with_the_points_of_another_sweep_is_damaged() {
     }
 }
 
+#[test]
+fn a_journal_with_the_result_of_another_start_is_damaged() {
+    use driver::overnight::Gathering;
+    use driver::run::Survey;
+
+    let whole = include_str!("../fuzz/seeds/run_folder/overnight");
+    let scratch = tempfile::tempdir().unwrap();
+    let text = whole.replacen("\"done\":{\"number\":1,", "\"done\":{\"number\":4,", 1);
+    assert_ne!(text, whole);
+    assert_eq!(run_folder::judge(text.as_bytes(), scratch.path()), Ok(false));
+    let folder = scratch.path().join("run");
+    let error = Gathering::of(&[Survey::of(&folder).unwrap()], 1).unwrap_err();
+    assert!(error.to_string().contains("start 1 is the result of something else"), "{error}");
+}
+
 /// Results of a plan over track and top ratio, as if every point had been optimised.
 fn swept(points: Value) -> SweepResults {
     let range = |from: f64, to: f64, steps: &Value| {

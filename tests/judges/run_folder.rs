@@ -10,8 +10,8 @@ use std::path::{Component, Path};
 use driver::design_file::DesignFile;
 use driver::overnight::{Gathering, Overnight};
 use driver::run::{
-    Ask, Budget, Finished, ResultsFolder, RunDocument, RunError, RunFolder, Saving, Share, Survey,
-    TakenUp, Tally, Watcher, perform,
+    Ask, Budget, Earlier, Finished, ResultsFolder, RunDocument, RunError, RunFolder, Saving, Share,
+    Survey, Tally, Watcher, perform,
 };
 use driver::search::{SearchProblem, SearchSettings, StartResult};
 use driver::sweep::{PlanFile, Subject, Sweep, SweepGathering, SweepResults};
@@ -228,7 +228,7 @@ fn session(
 struct Quiet;
 
 impl<D> Watcher<D> for Quiet {
-    fn taken_up(&mut self, _: &TakenUp) {}
+    fn earlier(&mut self, _: &Earlier) {}
     fn found(&mut self, _: Finished<D>) {}
     fn tick(&mut self, _: &Tally) {}
     fn saving(&mut self, _: Saving<'_>) {}

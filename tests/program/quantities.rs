@@ -11,7 +11,7 @@ use crate::program::{program, root};
 const SHOWN: &[&str] = &[
     "start configs/river-brief.json --count 2 --json",
     "assess configs/gorge-lidar-pulsed.json --ranges-m 100 --json",
-    "assess configs/survey-lidar-to-build.json --temperature 0,40 --json",
+    "assess configs/survey-lidar-to-build.json --temperatures-c 0,40 --json",
     "optimise configs/river-lidar-2x-6x.json --json",
     "retune configs/river-as-designed.json --made /groups/* --json \
      --change /groups/runner/elements/0/thicknesses_mm/0=2.03",

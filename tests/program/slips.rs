@@ -23,10 +23,14 @@ fn on_design(change: impl FnOnce(&mut Value)) -> Ended {
 }
 
 fn on_brief(change: impl FnOnce(&mut Value)) -> Ended {
+    run_on("start -", &brief_with(change))
+}
+
+fn brief_with(change: impl FnOnce(&mut Value)) -> String {
     let written = std::fs::read_to_string(root().join(BRIEF)).unwrap();
     let mut brief: Value = serde_json::from_str(&written).unwrap();
     change(&mut brief);
-    run_on("start -", &serde_json::to_string_pretty(&brief).unwrap())
+    serde_json::to_string_pretty(&brief).unwrap()
 }
 
 fn renamed(map: &mut Value, from: &str, to: &str) {
@@ -87,6 +91,12 @@ fn ratios_that_narrow_or_invert() {
     assert!(narrow.out.contains("A ratio below 1 narrows the beam"), "{}", narrow.out);
     let inverted = on_brief(|v| v["ratios"] = json!([2, -3]));
     says(&inverted, 2, &["standard input:", "at /ratios/1", "ask for a positive ratio"]);
+    let folder = tempfile::tempdir().unwrap();
+    let night = folder.path().join("night");
+    let line = format!("overnight - --run {} --starts 1", night.display());
+    let searched = run_on(&line, &brief_with(|v| v["ratios"] = json!([2, -3])));
+    assert_eq!((searched.status, searched.err), (2, inverted.err), "as start tells it");
+    assert!(!night.exists());
 }
 
 #[test]
@@ -146,7 +156,7 @@ fn rays_that_fail_are_told_with_the_surface_s_address() {
 fn values_of_options() {
     let comma = run(&format!("trace {RIVER} --state 6x --height-mm 1,2"));
     says(&comma, 2, &["--height-mm: \"1,2\" is not a number", "decimals take a point: 1.2"]);
-    let span = run(&format!("assess {RIVER} --temperature 0-40"));
+    let span = run(&format!("assess {RIVER} --temperatures-c 0-40"));
     says(&span, 2, &["several stand with commas between: 0,40"]);
     says(&run(&format!("cam {RIVER} --ratios 3,5")), 2, &["--step sets the way"]);
     let range = run(&format!("assess {RIVER} --ranges-m -5"));
@@ -167,7 +177,7 @@ fn glasses_by_the_names_of_workshops() {
         assert!(run(&format!("glass {name}")).out.contains(known), "{name}");
         says(&on_brief(|v| v["glasses_allowed"] = json!([name])), 2, &[known]);
     }
-    let cold = run_on("assess - --temperature 0", &text(&every_key()));
+    let cold = run_on("assess - --temperatures-c 0", &text(&every_key()));
     says(&cold, 2, &["\"my-fused-silica\"", "index_per_k", "expansion_per_k", "density_g_cm3"]);
 }
 

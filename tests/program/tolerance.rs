@@ -115,22 +115,22 @@ fn what_is_wrong_is_told() {
 
 #[test]
 fn a_design_at_other_temperatures() {
-    let ended = run(&format!("assess {BUILT} --temperature 0,20,40"));
+    let ended = run(&format!("assess {BUILT} --temperatures-c 0,20,40"));
     assert_eq!((ended.status, ended.err.as_str()), (0, ""));
     let told = ended.out.split("\n\nSurvey").next().unwrap().to_owned();
     assert!(told.lines().all(|line| line.chars().count() <= 80), "{told}");
     insta::assert_snapshot!(told);
-    let document = run(&format!("assess {BUILT} --temperature 0 40 --json")).json();
+    let document = run(&format!("assess {BUILT} --temperatures-c 0 40 --json")).json();
     assert_eq!(document["format"], "drawtube-assessment/1");
     assert_eq!(document["temperatures"][1]["temperature_c"], 40.0);
     assert!(document["drift"][0]["exit_slope_urad_per_k"].is_number());
     // At 20 °C it is the design as drawn.
-    let at_20 = run(&format!("assess {BUILT} --temperature 20 --json")).json();
+    let at_20 = run(&format!("assess {BUILT} --temperatures-c 20 --json")).json();
     let slope = at_20["temperatures"][0]["states"][2]["untouched"]["exit_slope_urad"].as_f64();
     let drawn = at_20["states"][2]["exit_slope_urad"].as_f64();
     assert!((slope.unwrap() - drawn.unwrap()).abs() < 1e-9);
     // What is not known is never taken for zero.
-    let silica = run(&format!("assess {RIVER} --temperature 40"));
+    let silica = run(&format!("assess {RIVER} --temperatures-c 40"));
     assert_eq!((silica.status, silica.out.as_str()), (2, ""));
     insta::assert_snapshot!(silica.err);
 }

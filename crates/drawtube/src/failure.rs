@@ -7,7 +7,6 @@ use driver::cam::CamError;
 use driver::optimise::OptimiseError;
 use driver::retune::RetuneError;
 use driver::run::{RunError, ShareError};
-use driver::search::SearchError as DesignSearchError;
 use driver::solve::SettingsError;
 use driver::temperature::AtTemperatureError;
 use driver::tolerance::ToleranceError;
@@ -103,9 +102,6 @@ pub(crate) enum Failure {
     /// A glass search that cannot be understood.
     #[error(transparent)]
     Search(#[from] SearchError),
-    /// There is nothing to search for designs.
-    #[error(transparent)]
-    DesignSearch(#[from] DesignSearchError),
     /// A run folder cannot be used.
     #[error(transparent)]
     Run(#[from] RunError),
@@ -178,10 +174,7 @@ impl Failure {
             | Self::Part(_)
             | Self::NoPart(_)
             | Self::Search(_) => ExitStatus::WrongInput,
-            Self::Optimise(error) | Self::DesignSearch(DesignSearchError::Optimise(error)) => {
-                status_of(error)
-            }
-            Self::DesignSearch(_) => ExitStatus::WrongInput,
+            Self::Optimise(error) => status_of(error),
             Self::Run(error) => status_of_run(error),
             Self::Tolerance(
                 ToleranceError::Nominal { .. }
@@ -224,10 +217,7 @@ impl Failure {
                 })
             }
             Self::Cam(error) => advice_on_cam(error),
-            Self::Optimise(error) | Self::DesignSearch(DesignSearchError::Optimise(error)) => {
-                advice_on(error)
-            }
-            Self::DesignSearch(DesignSearchError::Start(error)) => Some(error.advice()),
+            Self::Optimise(error) => advice_on(error),
             Self::Run(error) => advice_on_run(error).map(str::to_owned),
             Self::NoPart(_) => {
                 Some("give the part as I/N, or auto/N where only the index is known".to_owned())

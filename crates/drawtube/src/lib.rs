@@ -16,6 +16,7 @@ mod input;
 mod output_file;
 mod part;
 mod progress;
+mod progress_line;
 mod refusal;
 mod run_progress;
 mod run_request;

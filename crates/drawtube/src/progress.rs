@@ -11,6 +11,7 @@ use indicatif::{ProgressBar, ProgressStyle};
 use crate::arguments::ProgressArgument;
 use crate::console::Console;
 use crate::failure::Failure;
+use crate::progress_line::ProgressLine;
 
 /// How often a line is redrawn.
 const REDRAW: Duration = Duration::from_millis(100);
@@ -59,12 +60,9 @@ pub(crate) type MeritHistory = Vec<(u64, f64)>;
 
 /// Tells how far the solver is, and passes on the wish to stop.
 pub(crate) struct Teller<'a> {
-    console: &'a Console,
+    line: ProgressLine<'a>,
     stop: &'a AtomicBool,
-    bar: Option<ProgressBar>,
-    every: Option<Duration>,
     began: Instant,
-    last: Instant,
     iterations: u64,
     /// Iteration and merit, for a picture; the latest run last.
     history: Vec<MeritHistory>,
@@ -72,22 +70,8 @@ pub(crate) struct Teller<'a> {
 
 impl<'a> Teller<'a> {
     pub(crate) fn new(manner: Manner, console: &'a Console, stop: &'a AtomicBool) -> Self {
-        let (bar, every) = match manner {
-            Manner::Bar => (Some(bar()), Some(REDRAW)),
-            Manner::Plain(every) => (None, Some(every)),
-            Manner::Nothing => (None, None),
-        };
-        let now = Instant::now();
-        Self {
-            console,
-            stop,
-            bar,
-            every,
-            began: now,
-            last: now,
-            iterations: 0,
-            history: Vec::new(),
-        }
+        let line = ProgressLine::new(manner, console, spinner, REDRAW);
+        Self { line, stop, began: Instant::now(), iterations: 0, history: Vec::new() }
     }
 
     /// A new run of a method begins.
@@ -102,27 +86,22 @@ impl<'a> Teller<'a> {
 
     /// Takes the line off the terminal.
     pub(crate) fn finish(&self) {
-        if let Some(bar) = &self.bar {
-            bar.finish_and_clear();
-        }
+        self.line.finish();
     }
 
-    fn tell(&self, progress: &Progress<'_>, now: Instant) {
-        let seconds = (now - self.began).as_secs_f64();
+    fn tell(&self, progress: &Progress<'_>) {
+        let seconds = self.began.elapsed().as_secs_f64();
         let rate = self.iterations as f64 / seconds.max(1e-9);
         let crossed = if progress.violation > 1.0 { ", limits crossed" } else { "" };
         let told = format!(
             "{} iterations, {rate:.0} a second, merit {:.6e}{crossed}",
             self.iterations, progress.sum_of_squares
         );
-        match &self.bar {
-            Some(bar) => bar.set_message(told),
-            None => self.console.say(&format!("{seconds:.0} s: {told}")),
-        }
+        self.line.tell(&format!("{seconds:.0} s"), &told);
     }
 }
 
-fn bar() -> ProgressBar {
+fn spinner() -> ProgressBar {
     let bar = ProgressBar::new_spinner();
     if let Ok(style) = ProgressStyle::with_template("{spinner} {elapsed} {wide_msg}") {
         bar.set_style(style);
@@ -136,12 +115,8 @@ impl Observer for Teller<'_> {
         if let Some(run) = self.history.last_mut() {
             run.push((self.iterations, progress.sum_of_squares));
         }
-        if let Some(every) = self.every {
-            let now = Instant::now();
-            if now - self.last >= every {
-                self.last = now;
-                self.tell(progress, now);
-            }
+        if self.line.is_due() {
+            self.tell(progress);
         }
         ControlFlow::Continue(())
     }
@@ -154,12 +129,9 @@ impl Observer for Teller<'_> {
 /// Tells how many of a known number of things are done, and passes on the wish to stop.
 pub(crate) struct Counter<'a> {
     things: &'static str,
-    console: &'a Console,
+    line: ProgressLine<'a>,
     stop: &'a AtomicBool,
-    bar: Option<ProgressBar>,
-    every: Option<Duration>,
     began: Instant,
-    last: Instant,
 }
 
 impl<'a> Counter<'a> {
@@ -169,34 +141,21 @@ impl<'a> Counter<'a> {
         console: &'a Console,
         stop: &'a AtomicBool,
     ) -> Self {
-        let (bar, every) = match manner {
-            Manner::Bar => (Some(bar()), Some(REDRAW)),
-            Manner::Plain(every) => (None, Some(every)),
-            Manner::Nothing => (None, None),
-        };
-        let now = Instant::now();
-        Self { things, console, stop, bar, every, began: now, last: now }
+        let line = ProgressLine::new(manner, console, spinner, REDRAW);
+        Self { things, line, stop, began: Instant::now() }
     }
 
     /// Takes the line off the terminal.
     pub(crate) fn finish(&self) {
-        if let Some(bar) = &self.bar {
-            bar.finish_and_clear();
-        }
+        self.line.finish();
     }
 }
 
 impl Watcher for Counter<'_> {
     fn built(&mut self, done: u64, of: u64) -> ControlFlow<()> {
-        let now = Instant::now();
-        if self.every.is_some_and(|every| now - self.last >= every) {
-            self.last = now;
-            let seconds = (now - self.began).as_secs_f64();
-            let told = format!("{done} of {of} {}", self.things);
-            match &self.bar {
-                Some(bar) => bar.set_message(told),
-                None => self.console.say(&format!("{seconds:.0} s: {told}")),
-            }
+        if self.line.is_due() {
+            let seconds = self.began.elapsed().as_secs_f64();
+            self.line.tell(&format!("{seconds:.0} s"), &format!("{done} of {of} {}", self.things));
         }
         if self.stop.load(Ordering::Relaxed) {
             ControlFlow::Break(())

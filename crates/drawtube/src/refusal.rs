@@ -109,8 +109,10 @@ impl Parts<'_> {
             told if told.contains("digit found in string") || told.contains("integer") => {
                 format!("{option}: {quoted} is not a whole number")
             }
-            "number would be zero for non-zero type" => format!("{option} must be at least 1"),
-            told if told.starts_with(&value) => format!("{option}: {told}"),
+            told if told.starts_with(&value) => match range(told) {
+                Some(range) => format!("{option} must be {range}, not {value}"),
+                None => format!("{option}: {told}"),
+            },
             told => format!("{option}: {quoted} was given, but {told}"),
         };
         let several = self.one(ContextKind::InvalidArg).ends_with("...");
@@ -175,6 +177,14 @@ fn named(argument: &str) -> String {
     }
 }
 
+/// The range that the parser says a whole number is not in, in words.
+fn range(told: &str) -> Option<String> {
+    let (low, high) = told.split_once(" is not in ")?.1.split_once("..")?;
+    let high = high.trim_start_matches('=');
+    let open = high.is_empty() || high == u64::MAX.to_string();
+    Some(if open { format!("at least {low}") } else { format!("from {low} to {high}") })
+}
+
 /// What to write instead of something that is not a number.
 fn number_advice(value: &str, several: bool) -> Option<String> {
     let is_number = |text: &str| text.parse::<f64>().is_ok();
@@ -191,6 +201,15 @@ fn number_advice(value: &str, several: bool) -> Option<String> {
 #[cfg(test)]
 mod tests {
     use super::*;
+
+    #[test]
+    fn ranges_are_told_in_words() {
+        assert_eq!(range("0 is not in 1..=4096").as_deref(), Some("from 1 to 4096"));
+        let open = format!("0 is not in 1..={}", u64::MAX);
+        assert_eq!(range(&open).as_deref(), Some("at least 1"));
+        assert_eq!(range("0 is not in 1..").as_deref(), Some("at least 1"));
+        assert_eq!(range("a range is a number of metres"), None);
+    }
 
     #[test]
     fn numbers_are_put_right() {

@@ -4,24 +4,22 @@
 use std::io;
 use std::sync::Arc;
 use std::sync::atomic::{AtomicBool, Ordering};
-use std::time::{Duration, Instant};
+use std::time::Duration;
 
-use driver::run::{Saving, TakenUp, Tally};
+use driver::run::{Earlier, Saving, Tally};
 use indicatif::{ProgressBar, ProgressStyle};
 use report::text::overnight::time;
 
 use crate::console::Console;
 use crate::progress::Manner;
+use crate::progress_line::ProgressLine;
 
 /// How often the bar is redrawn.
 const REDRAW: Duration = Duration::from_millis(500);
 
 /// Tells how far a run is.
 pub(crate) struct RunTeller<'a> {
-    console: &'a Console,
-    bar: Option<ProgressBar>,
-    every: Option<Duration>,
-    last: Instant,
+    line: ProgressLine<'a>,
     asked: Arc<AtomicBool>,
     /// What a unit of the run is called, in the plural.
     units: &'static str,
@@ -37,38 +35,27 @@ impl<'a> RunTeller<'a> {
         units: &'static str,
         run_time: Option<Duration>,
     ) -> io::Result<Self> {
-        let (bar, every) = match manner {
-            Manner::Bar => (Some(bar()), Some(REDRAW)),
-            Manner::Plain(every) => (None, Some(every)),
-            Manner::Nothing => (None, None),
-        };
+        let line = ProgressLine::new(manner, console, bar, REDRAW);
         let asked = Arc::new(AtomicBool::new(false));
         #[cfg(unix)]
         signal_hook::flag::register(signal_hook::consts::SIGUSR1, Arc::clone(&asked))?;
-        Ok(Self { console, bar, every, last: Instant::now(), asked, units, run_time })
-    }
-
-    /// Says something without spoiling the bar.
-    pub(crate) fn say(&self, text: &str) {
-        match &self.bar {
-            Some(bar) => bar.suspend(|| self.console.say(text)),
-            None => self.console.say(text),
-        }
+        Ok(Self { line, asked, units, run_time })
     }
 
     /// Tells what an earlier session left in the folder `run`; of a run that only goes on, nothing
     /// if `quiet`.
-    pub(crate) fn taken_up(&self, run: &str, taken_up: &TakenUp, quiet: bool) {
-        let TakenUp { finished, sessions, seconds, dropped_bytes } = *taken_up;
+    pub(crate) fn earlier(&self, run: &str, earlier: &Earlier, quiet: bool) {
+        let Earlier { finished, sessions, seconds, dropped_bytes } = *earlier;
         if dropped_bytes > 0 {
-            self.say(&format!(
+            self.line.say(&format!(
                 "notice: the last line of the journal in {run} was torn; its {dropped_bytes} bytes \
                  are dropped, and what they held is computed again"
             ));
         }
         if sessions > 0 && !quiet {
             let units = self.units;
-            self.say(&format!("{run} goes on: {finished} {units} were done in {}.", time(seconds)));
+            self.line
+                .say(&format!("{run} goes on: {finished} {units} were done in {}.", time(seconds)));
         }
     }
 
@@ -76,45 +63,36 @@ impl<'a> RunTeller<'a> {
     /// on.
     pub(crate) fn saving(&self, run: &str, saving: &Saving<'_>, work: &str) {
         match saving {
-            Saving::Failed(error) => self.say(&format!(
+            Saving::Failed(error) => self.line.say(&format!(
                 "warning: the journal in {run} CANNOT BE WRITTEN: {error}; {work} goes on and \
                  writing is tried again"
             )),
-            Saving::Recovered => {
-                self.say(&format!("The journal in {run} can be written again; nothing is missing."))
-            }
+            Saving::Recovered => self
+                .line
+                .say(&format!("The journal in {run} can be written again; nothing is missing.")),
         }
     }
 
     /// Called often; `best` tells the best few merits when a line is due.
     pub(crate) fn tick(&mut self, tally: &Tally, best: impl FnOnce() -> Vec<String>) {
         let asked = self.asked.swap(false, Ordering::Relaxed);
-        let due = self.every.is_some_and(|every| self.last.elapsed() >= every);
-        if !asked && !due {
+        if !self.line.is_due() && !asked {
             return;
         }
         let told = self.told(tally, &best());
-        if due {
-            self.last = Instant::now();
-        }
-        match &self.bar {
-            Some(bar) => {
-                bar.set_length(tally.wanted.unwrap_or(0));
-                bar.set_position(tally.finished);
-                bar.set_message(told.clone());
-                if asked {
-                    self.say(&told);
-                }
+        if let Some(bar) = self.line.bar() {
+            bar.set_length(tally.wanted.unwrap_or(0));
+            bar.set_position(tally.finished);
+            if asked {
+                self.line.say(&told);
             }
-            None => self.say(&format!("{}: {told}", time(tally.run_seconds))),
         }
+        self.line.tell(&time(tally.run_seconds), &told);
     }
 
     /// Takes the bar off the terminal.
     pub(crate) fn finish(&self) {
-        if let Some(bar) = &self.bar {
-            bar.finish_and_clear();
-        }
+        self.line.finish();
     }
 
     fn told(&self, tally: &Tally, best: &[String]) -> String {

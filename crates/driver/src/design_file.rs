@@ -105,7 +105,7 @@ impl DesignFile {
     ///
     /// # Errors
     /// One of them holds nothing that could change.
-    pub fn holding(&self, addresses: &[Address]) -> Result<Self, Complaints> {
+    pub(crate) fn holding(&self, addresses: &[Address]) -> Result<Self, Complaints> {
         let mut value = self.document.value().clone();
         hold(&mut value, addresses);
         Self::read(Document::from_value(self.label(), value))

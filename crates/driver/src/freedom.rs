@@ -14,21 +14,21 @@ use surface_model::place::Place;
 
 /// The part of a design file that says what may change.
 #[derive(Debug, Clone, Default, PartialEq, Deserialize, Serialize, JsonSchema)]
-pub struct FreedomDocument {
+pub(crate) struct FreedomDocument {
     /// What the optimiser may change: words (`radii`, `spacings`, `thicknesses`, `airs`, `conics`,
     /// `aspheres`), addresses, or an address with a range of its own. Radii and spacings if left
     /// out.
     #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub free: Option<Vec<FreeDocument>>,
+    pub(crate) free: Option<Vec<FreeDocument>>,
     /// What it must leave alone all the same: words or addresses.
     #[serde(default, skip_serializing_if = "Vec::is_empty")]
-    pub held: Vec<String>,
+    pub(crate) held: Vec<String>,
 }
 
 /// One entry of `free`.
 #[derive(Debug, Clone, PartialEq, Deserialize, Serialize, JsonSchema)]
 #[serde(untagged)]
-pub enum FreeDocument {
+pub(crate) enum FreeDocument {
     /// A word or an address.
     Words(String),
     /// An address with a range.
@@ -37,15 +37,15 @@ pub enum FreeDocument {
 
 /// An address with a range of its own, kept by every step.
 #[derive(Debug, Clone, PartialEq, Deserialize, Serialize, JsonSchema)]
-pub struct RangedDocument {
+pub(crate) struct RangedDocument {
     /// What it is about.
-    pub at: String,
+    pub(crate) at: String,
     /// Smallest value, in the unit of the file.
     #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub min: Option<f64>,
+    pub(crate) min: Option<f64>,
     /// Largest value, in the unit of the file.
     #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub max: Option<f64>,
+    pub(crate) max: Option<f64>,
 }
 
 /// The words for all numbers of a kind.
@@ -54,7 +54,7 @@ const WORDS: [&str; 6] = ["radii", "spacings", "thicknesses", "airs", "conics", 
 /// An entry of `free` or `held` that leads nowhere.
 #[derive(Debug, Clone, PartialEq, thiserror::Error)]
 #[non_exhaustive]
-pub enum FreedomError {
+pub(crate) enum FreedomError {
     /// Neither a word nor an address.
     #[error("\"{0}\" is not something that can be free")]
     Word(String),

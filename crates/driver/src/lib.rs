@@ -5,7 +5,7 @@
 //! - [`solve`]: damped least squares over state blocks, under bounds and limits, as an argmin
 //!   solver; argmin's Nelder-Mead on the same problem;
 //! - [`design_file`]: a design file with its three owners' parts, its JSON Schema, and the same
-//!   file with other numbers; [`freedom`]: its `free` and `held`;
+//!   file with other numbers; `freedom`: its `free` and `held`;
 //! - [`cam`]: movement curves, where every group stands at any ratio;
 //! - [`brief`]: the requirement a design is begun from;
 //! - [`start`]: first-order layouts of a brief;
@@ -15,7 +15,7 @@
 //! - [`overnight`]: the global search as a run, and the ranked list it leaves;
 //! - [`run`]: long work in a folder, where nothing is lost; [`origin`]: which unit of it found a
 //!   design;
-//! - [`sampling`]: points that fill a space evenly, random numbers keyed by a number;
+//! - `sampling`: points that fill a space evenly, random numbers keyed by a number;
 //! - [`search`]: the global search, from a problem to many finished designs;
 //! - [`change`]: what came back different, in a design file; [`retune`]: then moving only what can
 //!   still move; [`sweep`]: a grid or a sample over any addresses, each point optimised;
@@ -38,14 +38,14 @@ pub mod careless;
 pub mod change;
 pub mod design_file;
 mod document_kind;
-pub mod freedom;
+mod freedom;
 pub mod front;
 pub mod optimise;
 pub mod origin;
 pub mod overnight;
 pub mod retune;
 pub mod run;
-pub mod sampling;
+mod sampling;
 pub mod search;
 pub mod solve;
 pub mod start;

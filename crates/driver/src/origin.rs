@@ -8,7 +8,6 @@ use serde_json::Value;
 
 use crate::overnight;
 use crate::run::{RunDocument, RunError, Survey};
-use crate::search::StartResult;
 use crate::sweep::{self, PointResult};
 
 /// Where a design comes from.
@@ -67,7 +66,7 @@ impl<'a> Look<'a> {
 
     fn at_starts(mut self, survey: Survey) -> Result<Option<Origin>, RunError> {
         for part in &survey.parts {
-            let facts = part.read::<StartResult>(&mut |unit| {
+            let facts = overnight::read_starts(part, &mut |unit| {
                 let merit = overnight::merit_with_limits_kept(&unit.done);
                 self.merits.extend(merit.map(|merit| (unit.number, merit)));
                 if unit.done.found.is_some_and(|found| found.design == *self.design) {

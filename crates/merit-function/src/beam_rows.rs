@@ -15,7 +15,7 @@ use surface_model::quantities::Quantities;
 
 use crate::block::StateBlock;
 use crate::fault::EvaluationFault;
-use crate::problem::StateOptics;
+use crate::state_optics::StateOptics;
 
 /// Evaluates these rows. Buffers are kept from call to call.
 #[derive(Debug, Default)]

@@ -13,7 +13,7 @@ use surface_model::train::Train;
 use crate::beam_rows::gather;
 use crate::block::StateBlock;
 use crate::fault::EvaluationFault;
-use crate::problem::StateOptics;
+use crate::state_optics::StateOptics;
 
 /// The rays of one state at one wavelength.
 pub(crate) struct FocusFan<'a> {

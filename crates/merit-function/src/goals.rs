@@ -65,7 +65,7 @@ pub struct RangeGoal {
 impl RangeGoal {
     /// Miss of a diameter (mm) in units of `within`.
     #[must_use]
-    pub fn miss(&self, diameter_mm: f64) -> f64 {
+    pub(crate) fn miss(&self, diameter_mm: f64) -> f64 {
         (diameter_mm - self.wanted_mm) / self.within_mm
     }
 }
@@ -88,7 +88,7 @@ impl FocusGoal {
 
     /// Miss of a vergence (1/m, positive when the beam converges) in units of `within`.
     #[must_use]
-    pub fn miss(&self, vergence_per_m: f64) -> f64 {
+    pub(crate) fn miss(&self, vergence_per_m: f64) -> f64 {
         (vergence_per_m - 1.0 / self.wanted_m) * self.weight_m()
     }
 }

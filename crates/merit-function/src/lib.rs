@@ -31,15 +31,17 @@ mod edge;
 pub mod fault;
 mod focus_rows;
 pub mod goals;
+mod limit_evaluation;
 mod limit_item;
 mod limit_rows;
 pub mod limits;
 pub mod movement;
+mod paraxial_rows;
 pub mod problem;
 #[cfg(test)]
 mod problem_tests;
 mod ray_weights;
-mod row_evaluation;
+mod state_optics;
 pub mod variables;
 mod way_rows;
 pub mod wishes;

@@ -246,9 +246,9 @@ pub struct Limits {
     /// Whether a real focus between the first and the last surface is forbidden.
     pub forbid_internal_focus: bool,
     /// Addresses of groups that must not turn back.
-    pub monotonic: Vec<Address>,
+    pub(crate) monotonic: Vec<Address>,
     /// Whether limits on where groups stand hold between the states too.
-    pub between_states: bool,
+    pub(crate) between_states: bool,
 }
 
 impl Limits {

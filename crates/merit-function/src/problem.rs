@@ -5,25 +5,17 @@
 //!
 //! ```text
 //! wavefront   √v/within · √wⱼ (Wⱼ − Σ wᵢWᵢ)   one a ray j and wavelength, W in waves
-//! ratio       √v/within · 100 (ratio/wanted − 1)
-//! exit slope  √v/within · slope in µrad
 //! ```
 //!
-//! and those about the real beam in `beam_rows`; the wavefront of a beam that should come to a
-//! focus in `focus_rows`.
-//!
-//! with wⱼ the share of the beam's power that ray stands for.
+//! with wⱼ the share of the beam's power that ray stands for; ratio and exit slope in
+//! `paraxial_rows`; those about the real beam in `beam_rows`; the wavefront of a beam that should
+//! come to a focus in `focus_rows`.
 
 mod along;
 
-use std::ops::Range;
-
-use nalgebra::DVector;
 use surface_model::bundle::Bundle;
 use surface_model::design::Design;
-use surface_model::gaussian::GaussianBeam;
 use surface_model::glass::GlassError;
-use surface_model::paraxial::ParaxialRay;
 use surface_model::quadrature::{BeamSample, beam_sample};
 use surface_model::temperature::TemperatureError;
 use surface_model::train::Train;
@@ -33,40 +25,15 @@ use crate::block::{BlockProblem, BlockShape, Bounds, Linearisation, StateBlock};
 use crate::climates::Climate;
 use crate::fault::EvaluationFault;
 use crate::focus_rows::FocusFan;
-use crate::goals::Goals;
-use crate::limit_rows::{Measured, RowRule};
+use crate::limit_evaluation::LimitEvaluator;
+use crate::paraxial_rows::ParaxialRows;
 use crate::ray_weights::RayWeights;
-use crate::row_evaluation::RowEvaluator;
-use crate::variables::{Column, Variables};
-use crate::way_rows::WayRows;
+use crate::state_optics::StateOptics;
+use crate::variables::Variables;
 use crate::wishes::Wishes;
 
 /// Rays from the axis to the edge of the beam, if nothing else is asked for.
 pub const RAYS: usize = 6;
-
-/// One state, ready to be evaluated.
-#[derive(Debug, Clone)]
-pub(crate) struct StateOptics {
-    pub(crate) name: String,
-    /// The train at the first wavelength, for what is paraxial and for limits.
-    pub(crate) train: Train,
-    wavelengths_nm: Vec<f64>,
-    /// The real beam at the first wavelength; `None` where its keys make none, which a resolved
-    /// design rules out.
-    beam: Option<GaussianBeam>,
-    /// The trains at every wavelength where a wavefront goal is about the sphere around a focus.
-    pub(crate) focused: Vec<Train>,
-    /// The state's trains in the bundle, one a wavelength; none without a goal on the wavefront.
-    bundled: Range<usize>,
-    pub(crate) goals: Goals,
-    ratio_wanted: f64,
-    /// Per shared variable, the quantities that follow it, with factors.
-    pub(crate) by_shared: Vec<Vec<(usize, f64)>>,
-    /// The same per own variable.
-    pub(crate) by_own: Vec<Vec<(usize, f64)>>,
-    /// The other way round: per quantity, the variables it follows, with factors.
-    followed: Vec<Vec<(Column, f64)>>,
-}
 
 /// The traced part of the beam.
 #[derive(Debug, Clone, Copy)]
@@ -95,17 +62,15 @@ pub struct MeritFunction {
     beam: TracedPart,
     sample: BeamSample,
     weights: RayWeights,
-    pub(crate) rows: RowEvaluator,
+    pub(crate) limit_rows: LimitEvaluator,
     bundle: Bundle,
-    paraxial: ParaxialRay,
+    paraxial_rows: ParaxialRows,
     beam_rows: BeamRows,
     /// The same goals at other temperatures; their rows follow a state's own.
     climates: Vec<Climate>,
     /// Per state, the number of its rows at 20 °C.
     rows_here: Vec<usize>,
     paths: Vec<f64>,
-    /// Derivatives of the paraxial height and slope a state's beam ends with.
-    end: Vec<[f64; 2]>,
 }
 
 impl MeritFunction {
@@ -119,56 +84,27 @@ impl MeritFunction {
         variables: Variables,
         rays: usize,
     ) -> Result<Self, GlassError> {
-        let rules = RowRule::all(design, &wishes.limits, &variables);
-        let on_the_way = rules.iter().any(|rule| matches!(rule.measured, Measured::OnTheWay(_)));
-        let way = if on_the_way { WayRows::of(design, &variables)? } else { None };
+        let limit_rows = LimitEvaluator::of(design, &wishes.limits, &variables)?;
         let mut states = Vec::with_capacity(design.states.len());
-        let mut rows = Vec::with_capacity(design.states.len());
         let (mut trains, mut traced_in) = (Vec::new(), Vec::new());
-        for (k, (state, goals)) in design.states.iter().zip(&wishes.states).enumerate() {
-            let first = trains.len();
-            for &nm in &state.wavelengths_nm {
-                trains.push(design.train(state, nm)?);
-            }
-            let train = trains[first].clone();
-            let mut focused = Vec::new();
-            if goals.wavefront_rms_waves.is_none() {
-                trains.truncate(first);
-            } else if goals.exit_focus_m.is_some() {
-                focused = trains.split_off(first);
-            }
-            let bundled = first..trains.len();
-            traced_in.extend(bundled.clone().zip(&state.wavelengths_nm).map(|(_, &nm)| (k, nm)));
-            rows.push(
-                rays * (bundled.len() + focused.len())
-                    + goals.paraxial()
-                    + goals.of_the_real_beam(),
-            );
-            let first_nm = state.wavelengths_nm[0];
-            states.push(StateOptics {
-                name: state.name.clone(),
-                train,
-                wavelengths_nm: state.wavelengths_nm.clone(),
-                beam: design.beam.gaussian(first_nm).ok(),
-                focused,
-                bundled,
-                goals: *goals,
-                ratio_wanted: state.ratio,
-                by_shared: followers(&variables, k, variables.shared().len(), Column::Shared),
-                by_own: followers(&variables, k, variables.own(k).len(), Column::Own),
-                followed: followed(&variables, k),
-            });
+        for (k, goals) in (0..design.states.len()).zip(&wishes.states) {
+            let state = StateOptics::new(design, k, *goals, &variables, &mut trains)?;
+            let wavelengths = state.bundled.clone().zip(&state.wavelengths_nm);
+            traced_in.extend(wavelengths.map(|(_, &nm)| (k, nm)));
+            states.push(state);
         }
+        let rows_here: Vec<usize> = states.iter().map(|state| state.rows(rays)).collect();
         let (radius_mm, reach) = (design.beam.radius_mm(), design.beam.traced_to);
         let beam = TracedPart { radius_mm, reach, rays };
         let sample = beam.sample(1.0);
         let mut bundle = Bundle::new();
         bundle.load(&trains, &sample.heights_mm);
-        let quantities = variables.quantities();
         Ok(Self {
-            rows_here: rows.clone(),
             climates: Vec::new(),
-            shape: variables.shape(rows),
+            shape: variables.shape(rows_here.clone()),
+            rows_here,
+            paraxial_rows: ParaxialRows::new(radius_mm, variables.quantities()),
+            beam_rows: BeamRows::default(),
             variables,
             states,
             paths: vec![0.0; rays * trains.len()],
@@ -177,16 +113,8 @@ impl MeritFunction {
             beam,
             weights: RayWeights::new(&sample.weights),
             sample,
-            rows: RowEvaluator::new(
-                rules,
-                way,
-                design.beam.edge_mm(),
-                1e-3 * design.beam.laser.pulse_energy_mj.unwrap_or(0.0),
-            ),
+            limit_rows,
             bundle,
-            paraxial: ParaxialRay::default(),
-            end: vec![[0.0; 2]; quantities.count()],
-            beam_rows: BeamRows::default(),
         })
     }
 
@@ -220,8 +148,8 @@ impl MeritFunction {
         self.sample = self.beam.sample(fraction);
         self.weights = RayWeights::new(&self.sample.weights);
         self.bundle.load(&self.trains, &self.sample.heights_mm);
-        self.rows.set_edge_mm(self.beam.radius_mm * self.beam.reach * fraction);
-        self.rows.set_aperture_of_the_way(fraction);
+        self.limit_rows.set_edge_mm(self.beam.radius_mm * self.beam.reach * fraction);
+        self.limit_rows.set_aperture_of_the_way(fraction);
         for climate in &mut self.climates {
             climate.set_aperture(fraction);
         }
@@ -230,18 +158,18 @@ impl MeritFunction {
     /// Whether limits along the way between the states are looked at from now on, or count as kept,
     /// so that a start can be brought to where there is a way.
     pub fn look_at_the_way(&mut self, looked_at: bool) {
-        self.rows.look_at_the_way(looked_at);
+        self.limit_rows.look_at_the_way(looked_at);
     }
 
     /// Whether limits on ghosts are looked at from now on, or count as kept.
     pub fn look_at_ghosts(&mut self, looked_at: bool) {
-        self.rows.look_at_ghosts(looked_at);
+        self.limit_rows.look_at_ghosts(looked_at);
     }
 
     /// Keeps the outermost ray from an internal focus too, where one is forbidden. Rows about the
     /// paraxial ray do in all but strongly aberrated designs, and cost less.
     pub fn keep_the_edge_ray_from_a_focus(&mut self) {
-        self.rows.keep_the_edge_ray_from_a_focus();
+        self.limit_rows.keep_the_edge_ray_from_a_focus();
     }
 
     /// Brings every train to these values of the variables. Bounds keep spheres within reach of
@@ -326,12 +254,12 @@ impl MeritFunction {
         }
         let beam_rows = state.goals.of_the_real_beam();
         let (paraxial, beam) = residuals.split_at_mut(residuals.len() - beam_rows);
+        let quantities = self.variables.quantities();
         if beam_rows > 0 {
             let first = paraxial.len();
-            let quantities = self.variables.quantities();
             self.beam_rows.evaluate(state, beam, quantities, first, block.as_deref_mut())?;
         }
-        self.paraxial_rows(k, &mut paraxial[row..], row, block)
+        self.paraxial_rows.evaluate(state, &mut paraxial[row..], quantities, row, block)
     }
 
     /// Residuals of the wavefronts about a focus, from row 0 on; how many there are.
@@ -351,84 +279,6 @@ impl MeritFunction {
         }
         Ok(row)
     }
-
-    /// Residuals of ratio and exit slope, from row `first` on.
-    fn paraxial_rows(
-        &mut self,
-        k: usize,
-        residuals: &mut [f64],
-        first: usize,
-        block: Option<&mut StateBlock>,
-    ) -> Result<(), EvaluationFault> {
-        let state = &self.states[k];
-        let goals = &state.goals;
-        let train = &state.train;
-        let root_weight = goals.weight.sqrt();
-        let overflow = || EvaluationFault::overflow(&state.name);
-        self.paraxial.trace(train, 1.0, 0.0).map_err(|_| overflow())?;
-        let ratio_now = self.paraxial.ratio().ok_or_else(overflow)?;
-        let slope_now = self.paraxial.exit_slope().ok_or_else(overflow)?;
-        let ratio = goals.ratio_percent.map(|within| {
-            let factor = root_weight / within * 100.0 / state.ratio_wanted;
-            (factor * (ratio_now - state.ratio_wanted), [factor, 0.0])
-        });
-        let slope = goals.exit_slope_urad.map(|within| {
-            let factor = root_weight / within * 1e6 * self.beam.radius_mm;
-            (factor * slope_now, [0.0, factor])
-        });
-        let rows = || [ratio, slope].into_iter().flatten().enumerate();
-        for (i, (value, _)) in rows() {
-            residuals[i] = value;
-        }
-        let Some(block) = block else { return Ok(()) };
-        let quantities = self.variables.quantities();
-        self.paraxial
-            .differentiate_end(train, quantities, &mut self.end)
-            .map_err(|_| overflow())?;
-        let columns =
-            [(&state.by_shared, &mut block.by_shared), (&state.by_own, &mut block.by_own)];
-        for (follows, out) in columns {
-            for (column, follows) in follows.iter().enumerate() {
-                let mut by = [0.0; 2];
-                for &(quantity, factor) in follows {
-                    by[0] += factor * self.end[quantity][0];
-                    by[1] += factor * self.end[quantity][1];
-                }
-                for (i, (_, [by_height, by_slope])) in rows() {
-                    out[(first + i, column)] = by_height * by[0] + by_slope * by[1];
-                }
-            }
-        }
-        Ok(())
-    }
-}
-
-/// Per variable, the quantities of a state's train that follow it.
-fn followers(
-    variables: &Variables,
-    state: usize,
-    count: usize,
-    column: fn(usize) -> Column,
-) -> Vec<Vec<(usize, f64)>> {
-    let follows = |number: usize| {
-        let bindings = variables.bindings(state).iter();
-        bindings
-            .flat_map(|binding| {
-                let terms = binding.terms.iter().filter(move |term| term.0 == column(number));
-                terms.map(move |&(_, factor)| (binding.quantity, factor))
-            })
-            .collect()
-    };
-    (0..count).map(follows).collect()
-}
-
-/// Per quantity of a state's train, the variables it follows.
-fn followed(variables: &Variables, state: usize) -> Vec<Vec<(Column, f64)>> {
-    let mut followed = vec![Vec::new(); variables.quantities().count()];
-    for binding in variables.bindings(state) {
-        followed[binding.quantity].clone_from(&binding.terms);
-    }
-    followed
 }
 
 impl BlockProblem for MeritFunction {
@@ -482,39 +332,11 @@ impl BlockProblem for MeritFunction {
         for climate in &mut self.climates {
             climate.linearise(variables, &mut first, out)?;
         }
-        self.rows.linearise(&self.states, &self.variables, variables, &mut out.limits)
+        self.limit_rows.linearise(&self.states, &self.variables, variables, &mut out.limits)
     }
 
     fn limits(&mut self, variables: &[f64], out: &mut Vec<f64>) -> Result<(), EvaluationFault> {
         self.place(variables)?;
-        self.rows.values(&self.states, variables, out)
-    }
-}
-
-impl StateOptics {
-    /// The real beam at the first wavelength.
-    pub(crate) fn beam(&self) -> Result<&GaussianBeam, EvaluationFault> {
-        self.beam.as_ref().ok_or_else(|| EvaluationFault::overflow(&self.name))
-    }
-
-    pub(crate) fn first_wavelength_nm(&self) -> f64 {
-        self.wavelengths_nm[0]
-    }
-
-    /// Adds to a gradient over the variables what a derivative `by` a quantity of the train is
-    /// worth to them.
-    pub(crate) fn follow(
-        &self,
-        quantity: usize,
-        by: f64,
-        shared: &mut DVector<f64>,
-        own: &mut DVector<f64>,
-    ) {
-        for &(column, factor) in &self.followed[quantity] {
-            match column {
-                Column::Shared(number) => shared[number] += factor * by,
-                Column::Own(number) => own[number] += factor * by,
-            }
-        }
+        self.limit_rows.values(&self.states, variables, out)
     }
 }

@@ -118,7 +118,7 @@ fn check(fixed: &str, track: f64, last: [f64; 2]) {
     let variables = Variables::new(&design, &wishes.limits, &everything(&design)).unwrap();
     let start = variables.start().to_vec();
     let mut merit = MeritFunction::new(&design, &wishes, variables, 6).unwrap();
-    merit.rows.see_every_focus();
+    merit.limit_rows.see_every_focus();
     let mut exact = Linearisation::zeros(merit.shape());
     merit.linearise(&start, &mut exact).unwrap();
     let shape = merit.shape().clone();
@@ -130,7 +130,7 @@ fn check(fixed: &str, track: f64, last: [f64; 2]) {
 
     let mut limits = Vec::new();
     merit.limits(&start, &mut limits).unwrap();
-    let on_the_way = merit.rows.on_the_way();
+    let on_the_way = merit.limit_rows.on_the_way();
     for aspect in [Aspect::Value, Aspect::Slope] {
         assert!(on_the_way.contains(&Some(aspect)), "there are rows about the way");
     }

@@ -133,7 +133,7 @@ impl Variables {
     /// The same variables where they act on the trains of the design at another temperature, which
     /// has grown by `growth` from `design` at 20 °C.
     #[must_use]
-    pub fn grown(&self, design: &Design, growth: &Growth) -> Self {
+    pub(crate) fn grown(&self, design: &Design, growth: &Growth) -> Self {
         let mut warm = self.clone();
         let sequence = design.sequence();
         for (state, zoom) in warm.states.iter_mut().zip(&design.states) {
@@ -175,7 +175,7 @@ impl Variables {
 
     /// Sizes of the blocks; `rows` is the number of residuals of each state.
     #[must_use]
-    pub fn shape(&self, rows: Vec<usize>) -> BlockShape {
+    pub(crate) fn shape(&self, rows: Vec<usize>) -> BlockShape {
         let own = self.states.iter().map(|state| state.own.len()).collect();
         BlockShape { shared: self.shared.len(), own, rows }
     }

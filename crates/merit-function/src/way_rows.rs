@@ -23,7 +23,7 @@ use crate::edge::edge_gradient;
 use crate::fault::EvaluationFault;
 use crate::limit_item::edge_constant_mm;
 use crate::movement::{COUNTS, Slide, Stop, Way, WayMeasure};
-use crate::problem::StateOptics;
+use crate::state_optics::StateOptics;
 use crate::variables::{Column, SharedVariable, Variables};
 
 /// A row about the way: the lowest value of a sign times what is measured, less a variable.

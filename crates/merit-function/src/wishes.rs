@@ -116,7 +116,7 @@ pub enum WishError {
 impl WishError {
     /// What would have been right.
     #[must_use]
-    pub fn expected(&self) -> String {
+    pub(crate) fn expected(&self) -> String {
         match self {
             Self::OutOfRange { allowed, .. } => (*allowed).into(),
             Self::NoEnds(_) => "\"min\", \"max\" or both".into(),

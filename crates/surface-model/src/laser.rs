@@ -1,10 +1,13 @@
 //! The laser as its data sheet describes it: beam quality, waist, pulses, pointing; and what the
 //! maker says coatings and glass will bear.
 
+mod waist;
+
 use schemars::JsonSchema;
 use serde::{Deserialize, Serialize};
 
 use crate::gaussian::GaussianBeam;
+use waist::AtEntry;
 
 /// The keys of a data sheet that, with the diameter at the first surface, fix a Gaussian beam: at
 /// most two of them. Without `m_squared`, and where nothing else says it, M² is 1; without a word
@@ -145,76 +148,16 @@ impl BeamForm {
         diameter_mm: f64,
         wavelength_nm: f64,
     ) -> Result<GaussianBeam, BeamFormError> {
-        let product = 4.0 * wavelength_nm * 1e-6 / std::f64::consts::PI;
-        let narrower = |waist_diameter_mm: f64| {
-            let room = diameter_mm * diameter_mm - waist_diameter_mm * waist_diameter_mm;
-            if room >= 0.0 {
-                Ok(room.sqrt())
-            } else {
-                Err(BeamFormError::WaistTooWide { waist_diameter_mm, diameter_mm })
-            }
-        };
-        let Self { m_squared, divergence_mrad, waist_diameter_mm, waist_distance_mm } = *self;
-        let divergence = divergence_mrad.map(|mrad| mrad * 1e-3);
-        let quality = m_squared.unwrap_or(1.0);
-        let (waist, divergence, distance) = match (divergence, waist_diameter_mm, waist_distance_mm)
-        {
-            (None, None, None) => (diameter_mm, product * quality / diameter_mm, 0.0),
-            (Some(divergence), None, None) if m_squared.is_none() => (diameter_mm, divergence, 0.0),
-            (Some(divergence), None, None) => {
-                let waist = product * quality / divergence;
-                let contradicted = |_| BeamFormError::TooNarrow {
-                    m_squared: quality,
-                    divergence_mrad: divergence * 1e3,
-                    waist_diameter_mm: waist,
-                    diameter_mm,
-                };
-                (waist, divergence, narrower(waist).map_err(contradicted)? / divergence)
-            }
-            (None, Some(waist), None) => {
-                let divergence = product * quality / waist;
-                (waist, divergence, narrower(waist)? / divergence)
-            }
-            (Some(divergence), Some(waist), None) if m_squared.is_none() => {
-                (waist, divergence, narrower(waist)? / divergence)
-            }
-            (None, Some(waist), Some(distance)) if m_squared.is_none() => {
-                let wider = narrower(waist)?;
-                if distance == 0.0 && wider == 0.0 {
-                    (waist, product / waist, 0.0)
-                } else if distance == 0.0 || wider == 0.0 {
-                    return Err(BeamFormError::TooFar { diameter_mm, waist_distance_mm: distance });
-                } else {
-                    (waist, wider / distance.abs(), distance)
-                }
-            }
-            (Some(divergence), None, Some(distance)) if m_squared.is_none() => {
-                let room = diameter_mm * diameter_mm - (divergence * distance).powi(2);
-                if room <= 0.0 {
-                    return Err(BeamFormError::TooFar { diameter_mm, waist_distance_mm: distance });
-                }
-                (room.sqrt(), divergence, distance)
-            }
-            (None, None, Some(distance)) => {
-                let spread = 2.0 * product * quality * distance.abs();
-                let room =
-                    (diameter_mm * diameter_mm - spread) * (diameter_mm * diameter_mm + spread);
-                if room < 0.0 {
-                    return Err(BeamFormError::TooFar { diameter_mm, waist_distance_mm: distance });
-                }
-                let waist = (0.5 * (diameter_mm * diameter_mm + room.sqrt())).sqrt();
-                (waist, product * quality / waist, distance)
-            }
-            _ => return Err(BeamFormError::TooMany),
-        };
-        let found = waist * divergence / product;
+        let product_mm = 4.0 * wavelength_nm * 1e-6 / std::f64::consts::PI;
+        let waist = AtEntry { diameter_mm, product_mm }.waist(self)?;
+        let found = waist.diameter_mm * waist.divergence_rad / product_mm;
         if found < 1.0 - M_SQUARED_ROUNDING {
             return Err(BeamFormError::BelowDiffraction { m_squared: found, wavelength_nm });
         }
         Ok(GaussianBeam {
-            waist_radius_mm: 0.5 * waist,
-            half_divergence_rad: 0.5 * divergence,
-            waist_at_mm: -distance,
+            waist_radius_mm: 0.5 * waist.diameter_mm,
+            half_divergence_rad: 0.5 * waist.divergence_rad,
+            waist_at_mm: -waist.distance_mm,
         })
     }
 }

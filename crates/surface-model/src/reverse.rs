@@ -178,6 +178,61 @@ fn displace<N: Real, const D: usize>(
     over_w * (q + N::splat(1.0 + surface.conic) * z2)
 }
 
+/// Cosines of the angles to the normal before and behind a surface, and one over each.
+struct Cosines<N> {
+    into: N,
+    out: N,
+    over_into: N,
+    over_out: N,
+}
+
+impl<N: Real> Cosines<N> {
+    #[inline(always)]
+    fn of<const D: usize>(crossing: &Crossing<N, D>) -> Self {
+        let (into, out) = (crossing.cos_in, crossing.cos_out);
+        // One division for both.
+        let over_both = N::splat(1.0) / (into * out);
+        Self { into, out, over_into: over_both * out, over_out: over_both * into }
+    }
+}
+
+/// Adjoints before a refraction.
+struct Refracted<N, const D: usize> {
+    before: Adjoint<N, D>,
+    n_bar: [N; D],
+    nz_bar: N,
+    gamma_bar: N,
+}
+
+/// From the adjoint behind a refraction those of the direction before it and of the normal;
+/// `here` weighs what the ray itself has at this surface in the result.
+#[inline(always)]
+fn refract<N: Real, const D: usize>(
+    at: &Ray<N, D>,
+    (n, nz): (&[N; D], N),
+    mu: N,
+    cosines: &Cosines<N>,
+    behind: &Adjoint<N, D>,
+    here: Option<AtSurface<N>>,
+) -> Refracted<N, D> {
+    let gamma = cosines.out - mu * cosines.into;
+    let gamma_bar = dot(n, &behind.d) + nz * behind.dz;
+    let mut cos_bar = -(mu * gamma * cosines.over_out * gamma_bar);
+    let mut before = *behind;
+    if let Some(weights) = here {
+        cos_bar = cos_bar + weights.cos_in;
+        before.y[D - 1] = before.y[D - 1] + weights.height;
+    }
+    let mut n_bar = behind.d;
+    for axis in 0..D {
+        n_bar[axis] = gamma * behind.d[axis] + cos_bar * at.d[axis];
+        before.d[axis] = mu * behind.d[axis] + cos_bar * n[axis];
+    }
+    let nz_bar = gamma * behind.dz + cos_bar * at.dz;
+    before.dz = mu * behind.dz + cos_bar * nz;
+    Refracted { before, n_bar, nz_bar, gamma_bar }
+}
+
 /// The sweep itself. `row` (length [`Quantities::count`]) receives the derivatives.
 #[inline(always)]
 fn backward<N: Real, const D: usize>(
@@ -196,36 +251,18 @@ fn backward<N: Real, const D: usize>(
 
     for (i, (stage, crossing)) in stages.list.iter().zip(crossings).enumerate().rev() {
         let Stage { surface, sphere, gap, index: n_in, ratio } = stage;
-        let Crossing { ray: at, path, cos_in, cos_out } = crossing;
+        let Crossing { ray: at, path, .. } = crossing;
+        let cosines = Cosines::of(crossing);
         let (mu, n_in) = (*ratio, *n_in);
         let (n, nz) = normal(stage, at);
-        // One division for both.
-        let over_both = N::splat(1.0) / (*cos_in * *cos_out);
-        let (over_cos_in, over_cos_out) = (over_both * *cos_out, over_both * *cos_in);
-
-        // Refract.
-        let gamma = *cos_out - mu * *cos_in;
-        let gamma_bar = dot(&n, &behind.d) + nz * behind.dz;
-        let mut cos_bar = -(mu * gamma * over_cos_out * gamma_bar);
-        let mut before = behind;
-        if let Some((surface, weights)) = seed.at
-            && surface == i
-        {
-            cos_bar = cos_bar + weights.cos_in;
-            before.y[D - 1] = before.y[D - 1] + weights.height;
-        }
-        let mut n_bar = behind.d;
-        for axis in 0..D {
-            n_bar[axis] = gamma * behind.d[axis] + cos_bar * at.d[axis];
-            before.d[axis] = mu * behind.d[axis] + cos_bar * n[axis];
-        }
-        let nz_bar = gamma * behind.dz + cos_bar * at.dz;
-        before.dz = mu * behind.dz + cos_bar * nz;
+        let here = seed.at.filter(|&(surface, _)| surface == i).map(|(_, weights)| weights);
+        let refracted = refract(at, (&n, nz), mu, &cosines, &behind, here);
+        let Refracted { mut before, n_bar, nz_bar, gamma_bar } = refracted;
 
         if indices {
-            let sin2 = N::splat(1.0) - *cos_in * *cos_in;
+            let sin2 = N::splat(1.0) - cosines.into * cosines.into;
             let mu_bar = dot(&at.d, &behind.d) + at.dz * behind.dz
-                - gamma_bar * (mu * sin2 * over_cos_out + *cos_in);
+                - gamma_bar * (mu * sin2 * cosines.over_out + cosines.into);
             let over_n_out = mu / n_in;
             let (here, next) = (quantities.index(i), quantities.index(i + 1));
             row[here] = mu_bar * over_n_out + seed.path * (*path - *gap);
@@ -245,7 +282,7 @@ fn backward<N: Real, const D: usize>(
             }
         });
         let spread = n_in * seed.path + dot(&at.d, &before.y) + at.dz * before.z;
-        let nu_bar = spread * over_cos_in;
+        let nu_bar = spread * cosines.over_into;
         let by_displacement = displace(surface, closed_form, at, nz, nu_bar, |shape, by| {
             if shapes {
                 let place = place_of(shape);

@@ -238,14 +238,7 @@ fn forward<N: Real>(
         ray = behind;
     }
     let out = carried(Some(&stages.turn_out), &stages.shift_out, &ray);
-    let path_to_plane = -out.z / out.dz;
-    Exit {
-        y: along(&out.y, path_to_plane, &out.d),
-        d: out.d,
-        dz: out.dz,
-        path_to_plane,
-        path_excess: excess + stages.last_index * path_to_plane,
-    }
+    Exit::of(&out, excess, stages.last_index)
 }
 
 /// [`forward`] for eight rays side by side, in the widest vectors the processor has.

@@ -138,6 +138,22 @@ pub(crate) struct Exit<N, const D: usize> {
     pub(crate) path_excess: N,
 }
 
+impl<N: Real, const D: usize> Exit<N, D> {
+    /// Of the ray behind the last surface, in glass or air of index `index`; up to there its optical
+    /// path is `excess` longer than that of the axial ray.
+    #[inline(always)]
+    pub(crate) fn of(behind: &Ray<N, D>, excess: N, index: N) -> Self {
+        let path_to_plane = -behind.z / behind.dz;
+        Self {
+            y: along(&behind.y, path_to_plane, &behind.d),
+            d: behind.d,
+            dz: behind.dz,
+            path_to_plane,
+            path_excess: excess + index * path_to_plane,
+        }
+    }
+}
+
 impl<N: Real, const D: usize> Crossing<N, D> {
     /// Of a ray not yet traced.
     pub(crate) fn blank() -> Self {
@@ -293,14 +309,7 @@ fn forward<N: Real, const D: usize>(
         keep(i, crossing);
         ray = behind;
     }
-    let path_to_plane = -ray.z / ray.dz;
-    Exit {
-        y: along(&ray.y, path_to_plane, &ray.d),
-        d: ray.d,
-        dz: ray.dz,
-        path_to_plane,
-        path_excess: excess + stages.last_index * path_to_plane,
-    }
+    Exit::of(&ray, excess, stages.last_index)
 }
 
 /// [`forward`] for meridional rays abreast, in the widest vectors the processor has, with every

@@ -51,7 +51,7 @@ pub(crate) struct AssessArguments {
         value_delimiter = ',',
         allow_negative_numbers = true
     )]
-    pub(crate) temperature: Vec<f64>,
+    pub(crate) temperatures_c: Vec<f64>,
     /// Leave with status 3 if a goal is missed or a limit crossed
     #[arg(long)]
     pub(crate) require: bool,

@@ -1,6 +1,5 @@
 //! Arguments of `tolerance`.
 
-use std::num::NonZeroUsize;
 use std::path::PathBuf;
 
 use clap::{Args, ValueEnum};
@@ -33,9 +32,9 @@ pub(crate) struct ToleranceArguments {
     /// Which sequence of random numbers
     #[arg(long, value_name = "N", default_value_t = DEFAULT_SEED)]
     pub(crate) seed: u64,
-    /// Threads that work [default: as many as the machine runs at once]
-    #[arg(long, value_name = "N")]
-    pub(crate) threads: Option<NonZeroUsize>,
+    /// Threads to compute on [default: all the machine has]
+    #[arg(long, value_name = "N", value_parser = clap::value_parser!(u16).range(1..=4096))]
+    pub(crate) threads: Option<u16>,
     /// A named set of tolerances, in place of the design's
     #[arg(long, value_enum)]
     pub(crate) grade: Option<GradeArgument>,

@@ -57,7 +57,7 @@ impl Request {
             beam: arguments.beam || !arguments.ranges_m.is_empty(),
             ranges_m: arguments.ranges_m,
             require: arguments.require,
-            temperatures_c: arguments.temperature,
+            temperatures_c: arguments.temperatures_c,
         })
     }
 }

@@ -11,7 +11,7 @@ use driver::brief::BriefFile;
 use driver::design_file::DesignFile;
 use driver::overnight::{Finds, Overnight, RankedList, fetch};
 use driver::run::{RunEnd, RunFolder, Stop, Survey, perform};
-use driver::search::{SearchProblem, SearchSettings};
+use driver::search::{SearchError, SearchProblem, SearchSettings};
 use surface_model::document::Document;
 
 use crate::arguments::OvernightArguments;
@@ -159,7 +159,11 @@ fn status(request: &Request, signals: &StopSignal, end: &RunEnd, list: &RankedLi
 /// The work of a run about a design or a brief.
 fn work(document: Document, settings: SearchSettings, seed: u64) -> Result<Overnight, Failure> {
     let problem = if is_brief(&document) {
-        SearchProblem::of_brief(&BriefFile::read(document)?, settings)?
+        let brief = BriefFile::read(document)?;
+        SearchProblem::of_brief(&brief, settings).map_err(|error| match error {
+            SearchError::Optimise(error) => Failure::Optimise(error),
+            SearchError::Start(error) => Failure::Input(error.in_brief(&brief)),
+        })?
     } else {
         SearchProblem::of_design(&DesignFile::read(document)?, settings)?
     };

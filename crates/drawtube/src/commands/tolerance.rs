@@ -1,7 +1,5 @@
 //! `tolerance`: what a workshop's errors do to a design.
 
-use std::num::NonZeroUsize;
-
 use driver::design_file::DesignFile;
 use driver::tolerance::{Grade, ToleranceReport, ToleranceSettings, tolerance};
 use report::text::tolerance::{Listed, told};
@@ -29,7 +27,7 @@ enum Form {
 struct Request {
     file: DesignFile,
     settings: ToleranceSettings,
-    threads: Option<NonZeroUsize>,
+    threads: Option<u16>,
     form: Form,
     require_percent: Option<f64>,
     progress: Manner,
@@ -101,7 +99,7 @@ fn work(
     signals: &StopSignal,
     console: &Console,
 ) -> Result<ToleranceReport, Failure> {
-    let threads = request.threads.map_or(0, NonZeroUsize::get);
+    let threads = request.threads.map_or(0, usize::from);
     let pool =
         rayon::ThreadPoolBuilder::new().num_threads(threads).build().map_err(Failure::Threads)?;
     let mut counter = Counter::new("systems", request.progress, console, signals.flag());

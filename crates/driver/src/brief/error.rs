@@ -7,7 +7,7 @@ use super::document::BriefDocument;
 /// A fault of a brief that neither its structure shows nor a design file could have.
 #[derive(Debug, Clone, PartialEq, Eq, thiserror::Error)]
 #[non_exhaustive]
-pub enum BriefError {
+pub(super) enum BriefError {
     /// More cemented pairs than elements.
     #[error("{pairs} of {elements} elements are to be cemented pairs")]
     Pairs {

@@ -19,7 +19,6 @@ use crate::document_kind::{BRIEF, part};
 pub use document::{
     BriefDocument, BriefFormat, GroupBriefDocument, OwnRatioDocument, RatioDocument,
 };
-pub use error::BriefError;
 pub(crate) use usual::complete_written;
 
 /// A brief, read and checked.

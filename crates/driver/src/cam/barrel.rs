@@ -40,6 +40,8 @@ pub struct Groove {
 }
 
 impl Barrel {
+    /// A barrel of this radius and turn.
+    ///
     /// # Errors
     /// A number is not finite and positive.
     pub fn new(radius_mm: f64, turn_deg: f64) -> Result<Self, CamError> {

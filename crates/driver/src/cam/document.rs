@@ -4,7 +4,7 @@ use merit_function::assessment::WavefrontAssessment;
 use serde::Serialize;
 
 use super::barrel::{Barrel, Groove};
-use super::findings::Finding;
+use super::finding::Finding;
 
 /// What `cam --json` prints.
 #[derive(Debug, Clone, PartialEq, Serialize)]

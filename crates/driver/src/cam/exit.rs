@@ -8,7 +8,7 @@ use merit_function::goals::Goals;
 use merit_function::wishes::Wishes;
 use surface_model::design::Design;
 
-use super::findings::{Finding, FindingKind};
+use super::finding::{Finding, FindingKind};
 
 /// How the beam should leave.
 #[derive(Debug, Clone, Copy, PartialEq)]

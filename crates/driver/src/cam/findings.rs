@@ -1,85 +1,15 @@
 //! What is wrong along a movement curve, and what a cam maker should know of it.
 
-use merit_function::assessment::{Assessment, LimitAssessment};
-use merit_function::limits::LimitKind;
+use merit_function::assessment::Assessment;
+use merit_function::goals::Goals;
 use merit_function::wishes::Wishes;
-use serde::Serialize;
 use surface_model::design::Design;
 use surface_model::solid::Solid;
 
 use super::document::{CurvePoint, GroupWay, Part};
+use super::finding::{Finding, FindingKind};
 use super::settings::CamSettings;
-
-/// Kinds of finding.
-#[derive(Debug, Clone, Copy, PartialEq, Eq, Serialize)]
-#[serde(rename_all = "snake_case")]
-pub enum FindingKind {
-    /// Two neighbouring states lie on different curves, or the curve turns back between them.
-    BranchChange,
-    /// Rays do not get through.
-    Fault,
-    /// Two groups touch, on axis or at the edge.
-    Collision,
-    /// A limit of the design file is crossed between the states.
-    Limit,
-    /// A goal of the design file is missed between the states.
-    Goal,
-    /// A slope or pressure angle is steeper than allowed.
-    Steep,
-    /// A group turns back.
-    Reversal,
-    /// The curve does not go through a state.
-    LeftOut,
-}
-
-/// One finding.
-#[derive(Debug, Clone, PartialEq, Serialize)]
-pub struct Finding {
-    /// What kind.
-    pub kind: FindingKind,
-    /// Whether it is wrong, and not only to be known.
-    pub wrong: bool,
-    /// The ratios it is about, from and to.
-    pub ratios: [f64; 2],
-    /// What it is about: a group, a limit, a goal.
-    pub what: String,
-    /// The worst value met, in the unit that `told` names; `None` where there is none.
-    pub worst: Option<f64>,
-    /// The whole of it as a sentence.
-    pub told: String,
-}
-
-/// A run of neighbouring points at which something holds, and the worst of it.
-struct Run {
-    from: f64,
-    to: f64,
-    worst: f64,
-    worst_at: f64,
-}
-
-/// Runs of neighbouring points where `badness` is above zero; the worst has the greatest.
-fn runs(points: &[CurvePoint], badness: impl Fn(usize) -> Option<(f64, f64)>) -> Vec<Run> {
-    let mut runs: Vec<Run> = Vec::new();
-    let mut open: Option<(Run, f64)> = None;
-    for (k, point) in points.iter().enumerate() {
-        match badness(k).filter(|(bad, _)| *bad > 0.0) {
-            Some((bad, value)) => {
-                let (run, worst) = open.get_or_insert_with(|| {
-                    let at = point.ratio;
-                    (Run { from: at, to: at, worst: value, worst_at: at }, bad)
-                });
-                run.to = point.ratio;
-                if bad > *worst {
-                    *worst = bad;
-                    (run.worst, run.worst_at) = (value, point.ratio);
-                }
-            }
-            None => runs.extend(open.take().map(|(run, _)| run)),
-        }
-    }
-    runs.extend(open.map(|(run, _)| run));
-    runs
-}
+use super::stretch::{Stretch, stretches};
 
 /// Everything that can be found at the points of a curve.
 pub(super) struct Look<'a> {
@@ -108,20 +38,21 @@ impl Look<'_> {
 
     fn faults(&self) -> Vec<Finding> {
         let fault = |k: usize| self.assessment.states[k].fault.as_deref();
-        let bad = runs(self.points, |k| fault(k).map(|_| (1.0, 0.0)));
+        let bad = stretches(self.points, |k| fault(k).map(|_| (1.0, 0.0)));
         bad.iter()
-            .map(|run| Finding {
+            .map(|stretch| Finding {
                 kind: FindingKind::Fault,
                 wrong: true,
-                ratios: [run.from, run.to],
+                ratios: [stretch.from, stretch.to],
                 what: "rays".into(),
                 worst: None,
-                told: format!("{} rays fail", between(run)),
+                told: format!("{} rays fail", stretch.between()),
             })
             .collect()
     }
 
-    fn names(&self, after: usize) -> (&str, &str) {
+    /// The two groups with the air number `after` between them.
+    pub(super) fn names(&self, after: usize) -> (&str, &str) {
         (&self.design.groups[after].name, &self.design.groups[after + 1].name)
     }
 
@@ -129,30 +60,30 @@ impl Look<'_> {
         let mut found = Vec::new();
         for after in 0..self.design.groups.len().saturating_sub(1) {
             let (left, right) = self.names(after);
-            let axis = runs(self.points, |k| {
+            let axis = stretches(self.points, |k| {
                 let spacing = self.points[k].spacings_mm[after];
                 Some((-spacing, spacing))
             });
-            let edge = runs(self.points, |k| {
+            let edge = stretches(self.points, |k| {
                 let gap = self.edge_gap_mm(after, self.points[k].spacings_mm[after])?;
                 Some((-gap, gap))
             });
-            for (place, run) in axis
+            for (place, stretch) in axis
                 .iter()
-                .map(|run| ("on axis", run))
-                .chain(edge.iter().map(|run| ("at the edge", run)))
+                .map(|stretch| ("on axis", stretch))
+                .chain(edge.iter().map(|stretch| ("at the edge", stretch)))
             {
                 found.push(Finding {
                     kind: FindingKind::Collision,
                     wrong: true,
-                    ratios: [run.from, run.to],
+                    ratios: [stretch.from, stretch.to],
                     what: format!("{left}, {right}"),
-                    worst: Some(run.worst),
+                    worst: Some(stretch.worst),
                     told: format!(
                         "{} {left} and {right} overlap {place}, by up to {:.3} mm at {:.4}x",
-                        between(run),
-                        -run.worst,
-                        run.worst_at
+                        stretch.between(),
+                        -stretch.worst,
+                        stretch.worst_at
                     ),
                 });
             }
@@ -168,93 +99,37 @@ impl Look<'_> {
         Solid { front, back, axial_mm }.thickness(height_mm).ok()
     }
 
-    fn limits(&self) -> Vec<Finding> {
-        let mut found = Vec::new();
-        let mut seen: Vec<(LimitKind, String)> = Vec::new();
-        let moving = self.assessment.limits.iter().filter(|limit| depends_on_movement(limit.limit));
-        let placed: Vec<(&LimitAssessment, Option<usize>, String)> =
-            moving.map(|limit| (limit, self.state_of(limit), self.place_of(limit))).collect();
-        for (limit, _, place) in &placed {
-            let key = (limit.limit, place.clone());
-            if seen.contains(&key) {
-                continue;
-            }
-            seen.push(key);
-            let mut at_point: Vec<Option<&LimitAssessment>> = vec![None; self.points.len()];
-            for (other, state, other_place) in &placed {
-                if other.limit == limit.limit && other_place == place {
-                    match state {
-                        Some(k) if *k < at_point.len() => at_point[*k] = Some(other),
-                        _ => at_point.fill(Some(other)),
-                    }
-                }
-            }
-            let bad = runs(self.points, |k| at_point[k].map(crossed));
-            found.extend(bad.iter().map(|run| limit_finding(limit, place, run)));
-        }
-        found
-    }
-
-    /// The point that a limit's value is measured at.
-    fn state_of(&self, limit: &LimitAssessment) -> Option<usize> {
-        let steps = limit.at.steps();
-        let from_address = match steps.as_slice() {
-            [first, state, ..] if *first == "states" => state.parse().ok(),
-            _ => None,
-        };
-        from_address.or_else(|| limit.state.as_ref()?.parse().ok())
-    }
-
-    /// What a limit is about, the same at all points.
-    fn place_of(&self, limit: &LimitAssessment) -> String {
-        let steps = limit.at.steps();
-        match steps.as_slice() {
-            ["states", _, "spacings_mm", after] => match after.parse::<usize>() {
-                Ok(after) if after + 1 < self.design.groups.len() => {
-                    let (left, right) = self.names(after);
-                    format!("{left} to {right}")
-                }
-                _ => limit.at.to_string(),
-            },
-            ["states", ..] => "the whole".into(),
-            ["groups", group] => match group.parse::<usize>() {
-                Ok(group) if group < self.design.groups.len() => {
-                    self.design.groups[group].name.clone()
-                }
-                _ => limit.at.to_string(),
-            },
-            _ => limit.at.to_string(),
-        }
-    }
-
     fn goals(&self) -> Vec<Finding> {
         let mut found = Vec::new();
         let wavelengths = self.points.first().map_or(0, |point| point.wavefront.len());
         for w in 0..wavelengths {
-            let bad = runs(self.points, |k| {
+            let bad = stretches(self.points, |k| {
                 let rms = self.points[k].wavefront[w].rms_waves?;
                 let within = self.goals_at(k)?.wavefront_rms_waves?;
                 Some((rms / within - 1.0, rms))
             });
             let nm = self.points[0].wavefront[w].wavelength_nm;
             let name = format!("the RMS wavefront at {nm} nm");
-            found.extend(bad.iter().map(|run| goal_finding(&name, run, "waves")));
+            found.extend(bad.iter().map(|stretch| goal_finding(&name, stretch, "waves")));
         }
-        let bad = runs(self.points, |k| {
+        let bad = stretches(self.points, |k| {
             let slope = self.points[k].exit_slope_urad?.abs();
             Some((slope / self.goals_at(k)?.exit_slope_urad? - 1.0, slope))
         });
-        found.extend(bad.iter().map(|run| goal_finding("the paraxial exit slope", run, "µrad")));
-        let bad = runs(self.points, |k| {
+        found.extend(
+            bad.iter().map(|stretch| goal_finding("the paraxial exit slope", stretch, "µrad")),
+        );
+        let bad = stretches(self.points, |k| {
             let off = self.assessment.states[k].exit_focus_error_m?.abs();
             Some((off / self.goals_at(k)?.exit_focus_m?.within_m - 1.0, off))
         });
-        found.extend(bad.iter().map(|run| goal_finding("the paraxial focus", run, "m off")));
+        found
+            .extend(bad.iter().map(|stretch| goal_finding("the paraxial focus", stretch, "m off")));
         found
     }
 
     /// The goals of the state nearest in ratio, of those that the curve goes through.
-    fn goals_at(&self, k: usize) -> Option<&merit_function::goals::Goals> {
+    fn goals_at(&self, k: usize) -> Option<&Goals> {
         let ratio = self.points[k].ratio;
         let away = |state: usize| (self.design.states[state].ratio - ratio).abs();
         let nearest = self.knots.iter().copied().min_by(|&a, &b| away(a).total_cmp(&away(b)))?;
@@ -267,19 +142,20 @@ impl Look<'_> {
             let mut push =
                 |limit: Option<f64>, unit: &str, value: &dyn Fn(usize) -> Option<f64>| {
                     let Some(allowed) = limit else { return };
-                    let bad = runs(self.points, |k| value(k).map(|value| (value - allowed, value)));
-                    found.extend(bad.iter().map(|run| Finding {
+                    let bad =
+                        stretches(self.points, |k| value(k).map(|value| (value - allowed, value)));
+                    found.extend(bad.iter().map(|stretch| Finding {
                         kind: FindingKind::Steep,
                         wrong: true,
-                        ratios: [run.from, run.to],
+                        ratios: [stretch.from, stretch.to],
                         what: group.name.clone(),
-                        worst: Some(run.worst),
+                        worst: Some(stretch.worst),
                         told: format!(
                             "{} {} is steeper than {allowed} {unit}: {:.3} at {:.4}x",
-                            between(run),
+                            stretch.between(),
                             group.name,
-                            run.worst,
-                            run.worst_at
+                            stretch.worst,
+                            stretch.worst_at
                         ),
                     }));
                 };
@@ -290,22 +166,6 @@ impl Look<'_> {
             push(self.settings.steepest_deg, "° of pressure angle", &|k| {
                 at(k).groove.map(|groove| groove.pressure_deg)
             });
-        }
-        found
-    }
-
-    /// Slopes beyond the limit of the design file.
-    fn steeper_than_the_limit(&self) -> Vec<Finding> {
-        let kind = LimitKind::SlopeMmPerRatio;
-        let Some(range) = self.wishes.limits.range(kind) else { return Vec::new() };
-        let mut found = Vec::new();
-        for (g, group) in self.groups.iter().enumerate().filter(|(_, g)| g.part != Part::Still) {
-            let bad = runs(self.points, |k| {
-                let slope = self.points[k].groups[g].slope_mm_per_ratio.abs();
-                Some((slope - range.max - kind.tolerance(), slope))
-            });
-            let wanted = format!("at most {}", range.max);
-            found.extend(bad.iter().map(|run| crossing(kind, &group.name, run, &wanted)));
         }
         found
     }
@@ -344,73 +204,18 @@ impl Look<'_> {
     }
 }
 
-fn depends_on_movement(kind: LimitKind) -> bool {
-    matches!(
-        kind,
-        LimitKind::SpacingMm
-            | LimitKind::EdgeGapMm
-            | LimitKind::TravelMm
-            | LimitKind::IncidenceDeg
-            | LimitKind::TrackMm
-            | LimitKind::InternalFocus
-            | LimitKind::HousingMm
-    )
-}
-
-/// By how much a limit is crossed, beyond its tolerance; and its value.
-fn crossed(limit: &LimitAssessment) -> (f64, f64) {
-    let Some(value) = limit.value else { return (0.0, 0.0) };
-    let below = limit.min.map_or(f64::NEG_INFINITY, |min| min - value);
-    let above = limit.max.map_or(f64::NEG_INFINITY, |max| value - max);
-    (below.max(above) - limit.limit.tolerance(), value)
-}
-
-fn limit_finding(limit: &LimitAssessment, place: &str, run: &Run) -> Finding {
-    let wanted = match (limit.min, limit.max) {
-        (Some(min), _) if run.worst < min => format!("at least {min}"),
-        (_, Some(max)) => format!("at most {max}"),
-        (min, None) => format!("at least {}", min.unwrap_or(0.0)),
-    };
-    crossing(limit.limit, place, run, &wanted)
-}
-
-fn crossing(kind: LimitKind, place: &str, run: &Run, wanted: &str) -> Finding {
-    let word = kind.word();
-    Finding {
-        kind: FindingKind::Limit,
-        wrong: true,
-        ratios: [run.from, run.to],
-        what: format!("{word} {place}"),
-        worst: Some(run.worst),
-        told: format!(
-            "{} the limit {word} of {place} is crossed: {:.4} at {:.4}x where {wanted} is allowed",
-            between(run),
-            run.worst,
-            run.worst_at
-        ),
-    }
-}
-
-fn goal_finding(name: &str, run: &Run, unit: &str) -> Finding {
+fn goal_finding(name: &str, stretch: &Stretch, unit: &str) -> Finding {
     Finding {
         kind: FindingKind::Goal,
         wrong: true,
-        ratios: [run.from, run.to],
+        ratios: [stretch.from, stretch.to],
         what: name.into(),
-        worst: Some(run.worst),
+        worst: Some(stretch.worst),
         told: format!(
             "{} {name} misses its goal: {:.3} {unit} at {:.4}x",
-            between(run),
-            run.worst,
-            run.worst_at
+            stretch.between(),
+            stretch.worst,
+            stretch.worst_at
         ),
-    }
-}
-
-fn between(run: &Run) -> String {
-    if run.from == run.to {
-        format!("at {:.4}x", run.from)
-    } else {
-        format!("from {:.4}x to {:.4}x", run.from, run.to)
     }
 }

@@ -13,9 +13,12 @@ mod barrel;
 mod document;
 mod error;
 mod exit;
+mod finding;
 mod findings;
+mod limits_between;
 mod settings;
 mod stations;
+mod stretch;
 mod table;
 mod telling;
 #[cfg(test)]
@@ -40,7 +43,7 @@ use walk::walk;
 pub use barrel::{Barrel, Groove, USUAL_TURN_DEG};
 pub use document::{CurvePoint, DesignedState, GroupAtRatio, GroupWay, Hold, MovementCurve, Part};
 pub use error::CamError;
-pub use findings::{Finding, FindingKind};
+pub use finding::{Finding, FindingKind};
 pub use settings::{CamSettings, Ratios};
 pub use table::csv_table;
 
@@ -71,11 +74,6 @@ pub fn movement_curve(
         .ok_or(CamError::NothingMoves)?;
     let roots = roots(design, &mut equations, exit, &knots, &starts)?;
     let (reached, mut findings) = walk(design, &mut equations, &knots, &roots, &stations);
-    let hold = match (equations.hold_collimation, exit.focus_m()) {
-        (true, None) => Hold::RatioAndCollimation,
-        (true, Some(_)) => Hold::RatioAndFocus,
-        (false, _) => Hold::Ratio,
-    };
     let guided: Vec<usize> = equations.guides.iter().map(|(j, _)| slide.moving()[*j]).collect();
 
     let assessment = assess_points(design, wishes, exit, &slide, &reached, &wavelengths_nm);
@@ -100,7 +98,40 @@ pub fn movement_curve(
     findings.extend(left_out(design, wishes, exit, &knots));
     let told = reached.iter().zip(&fine).filter(|((station, _), _)| station.told);
     let points = told.map(|(_, point)| point.clone()).collect();
-    let states = knots.iter().zip(&roots).map(|(&k, root)| {
+    Ok(MovementCurve {
+        format: "drawtube-cam/1",
+        title: design.title.clone(),
+        wavelength_nm: wavelengths_nm[0],
+        held: held(&equations, exit),
+        exit_focus_m: exit.focus_m(),
+        barrel: settings.barrel,
+        states: designed_states(design, &slide, &knots, &roots),
+        groups,
+        points,
+        fine,
+        sound: findings.iter().all(|finding| !finding.wrong),
+        findings,
+    })
+}
+
+/// What is held along the curve.
+fn held(equations: &Equations, exit: Exit) -> Hold {
+    match (equations.hold_collimation, exit.focus_m()) {
+        (true, None) => Hold::RatioAndCollimation,
+        (true, Some(_)) => Hold::RatioAndFocus,
+        (false, _) => Hold::Ratio,
+    }
+}
+
+/// The designed states beside the points of the curve there.
+fn designed_states(
+    design: &Design,
+    slide: &Slide,
+    knots: &[usize],
+    roots: &[Point],
+) -> Vec<DesignedState> {
+    let positions = design.all_positions_mm();
+    let states = knots.iter().zip(roots).map(|(&k, root)| {
         let curve = slide.positions_mm(&root.moving_mm);
         DesignedState {
             name: design.states[k].name.clone(),
@@ -108,20 +139,7 @@ pub fn movement_curve(
             curve_less_design_mm: curve.iter().zip(&positions[k]).map(|(a, b)| a - b).collect(),
         }
     });
-    Ok(MovementCurve {
-        format: "drawtube-cam/1",
-        title: design.title.clone(),
-        wavelength_nm: wavelengths_nm[0],
-        held: hold,
-        exit_focus_m: exit.focus_m(),
-        barrel: settings.barrel,
-        states: states.collect(),
-        groups,
-        points,
-        fine,
-        sound: findings.iter().all(|finding| !finding.wrong),
-        findings,
-    })
+    states.collect()
 }
 
 /// The point of the curve at every designed state.

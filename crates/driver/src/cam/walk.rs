@@ -3,7 +3,7 @@
 use merit_function::movement::{Equations, Point, Slide, Stop};
 use surface_model::design::Design;
 
-use super::findings::{Finding, FindingKind};
+use super::finding::{Finding, FindingKind};
 use super::stations::Station;
 
 /// Two solutions at one ratio are the same when no group is farther off than this, mm.

@@ -87,7 +87,23 @@ fn measured(
         expected: Some("a wavelength at which the glass is known".to_owned()),
         advice: error.advice(),
     })?;
-    Ok(json!({ "from": replaced, "index_shift": index - expected }))
+    Ok(json!({ "from": replaced, "index_shift": rounded(index - expected, decimals(text)) }))
+}
+
+/// Decimals of an index shift, if the measured index needs no more: a thousandth of what makers
+/// measure a melt to.
+const SHIFT_DECIMALS: usize = 8;
+
+/// How many decimals a shift needs to give the index measured to its last digit.
+fn decimals(measured: &str) -> usize {
+    let behind_the_point = measured.split_once('.').map_or("", |(_, behind)| behind);
+    let given = behind_the_point.bytes().take_while(u8::is_ascii_digit).count();
+    (given + 1).max(SHIFT_DECIMALS)
+}
+
+fn rounded(shift: f64, decimals: usize) -> f64 {
+    // The sum makes 0 of −0.
+    format!("{shift:.decimals$}").parse().unwrap_or(shift) + 0.0
 }
 
 fn point(text: &str) -> Result<[f64; 2], Complaint> {

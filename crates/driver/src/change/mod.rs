@@ -81,7 +81,10 @@ pub fn apply(file: &DesignFile, changes: &[Change]) -> Result<Changed, Complaint
 ///
 /// # Errors
 /// As for [`apply`].
-pub fn apply_to_brief(file: &BriefFile, changes: &[Change]) -> Result<BriefFile, Complaints> {
+pub(crate) fn apply_to_brief(
+    file: &BriefFile,
+    changes: &[Change],
+) -> Result<BriefFile, Complaints> {
     let before = file.document().value();
     let (mut targets, wrong) = aims(changes, before);
     if !wrong.is_empty() {

@@ -91,12 +91,33 @@ fn addresses_are_those_of_the_design_as_it_was() {
 }
 
 #[test]
+fn a_shift_has_the_digits_that_the_measured_index_needs() {
+    // Digits given, and the most that a shift has for them.
+    for (measured, most) in [
+        ("1.46095", "-0.00012345".len()),
+        ("1.46", "-0.00012345".len()),
+        ("1.460951234", "-0.0001234567".len()),
+        ("1.460951234567", "-0.0001234567890".len()),
+    ] {
+        let change = format!("/groups/exit/elements/0/glasses/0={measured}@532");
+        let after = changed(&["exit"], &[&change]).unwrap().file;
+        let index = after.design.groups[2].elements[0].glasses[0].index(532.0).unwrap();
+        let decimals = measured.len() - "1.".len();
+        assert_eq!(format!("{index:.decimals$}"), measured);
+        let shift = &after.document().value()["glasses"]["fused-silica as measured"]["index_shift"];
+        assert!(shift.as_f64().is_some_and(|shift| shift.abs() > 1e-5), "{shift}");
+        assert!(format!("{}", shift.as_f64().unwrap()).len() <= most, "{measured}: {shift}");
+    }
+}
+
+#[test]
 fn a_glass_is_given_by_what_was_measured() {
     let after = changed(&["exit"], &["/groups/*/elements/0/glasses/0=1.461@532"]).unwrap().file;
     let value = after.document().value();
     assert_eq!(value["glasses"].as_object().unwrap().len(), 1, "one melt for all three");
     for group in &after.design.groups {
-        assert_eq!(group.elements[0].glasses[0].index(532.0).unwrap(), 1.461);
+        let index = group.elements[0].glasses[0].index(532.0).unwrap();
+        assert!((index - 1.461).abs() < 5e-9, "{index}");
     }
     let points = "/groups/exit/elements/0/glasses/0=1.4497@1064,1.461@532";
     let after = changed(&["exit"], &[points]).unwrap().file;

@@ -59,7 +59,7 @@ impl Change {
 
     /// Where it is written.
     #[must_use]
-    pub fn source(&self) -> &Source {
+    pub(crate) fn source(&self) -> &Source {
         &self.source
     }
 }

@@ -148,8 +148,8 @@ impl Finds {
         best.iter().filter_map(|number| Some(self.held.get(number)?.merit)).collect()
     }
 
-    /// Numbers of ranking designs, of starts below `below`, that are no longer held: what the
-    /// journal says of them is to be inserted with [`Self::hold`].
+    /// Numbers of ranking designs, of starts below `below`, that are no longer held:
+    /// [`fetch`](super::fetch) reads them once more.
     #[must_use]
     pub fn missing(&self, below: Option<u64>) -> Vec<u64> {
         let mut best = self.ranking.best_below(self.keep, below);
@@ -158,7 +158,7 @@ impl Finds {
     }
 
     /// Holds a design again.
-    pub fn hold(&mut self, number: u64, found: Found) {
+    pub(crate) fn hold(&mut self, number: u64, found: Found) {
         self.held.insert(number, found);
     }
 
@@ -168,7 +168,7 @@ impl Finds {
         let best = self.ranking.best_below(self.keep, below);
         let held = best.iter().filter_map(|number| Some((*number, self.held.get(number)?)));
         let ranked = held.zip(1..).map(|((number, found), rank)| Ranked::of(rank, number, found));
-        RankedList::new(starts, self.ranking.times_best_found_below(below) as u64, ranked.collect())
+        RankedList::new(starts, self.ranking.times_best_found(below) as u64, ranked.collect())
     }
 }
 

@@ -6,7 +6,7 @@ use surface_model::document::quoted;
 
 use super::finds::Finds;
 use super::ranked::RankedList;
-use super::{KIND, merit_with_limits_kept};
+use super::{KIND, merit_with_limits_kept, read_starts};
 use crate::run::{Budget, Finished, JournalFacts, PartSurvey, RunError, Share, Survey};
 use crate::search::StartResult;
 
@@ -72,7 +72,7 @@ impl Gathering {
         let mut facts = JournalFacts::default();
         for place in places {
             let mut disagree = None;
-            let read = place.read::<StartResult>(&mut |unit| match known.get(&unit.number) {
+            let read = read_starts(place, &mut |unit| match known.get(&unit.number) {
                 None => {
                     // Only what is there in several places needs comparing.
                     if places.len() > 1 {
@@ -207,7 +207,7 @@ pub fn fetch(finds: &mut Finds, below: Option<u64>, surveys: &[Survey]) -> Resul
 
 fn each(surveys: &[Survey], found: &mut dyn FnMut(Finished<StartResult>)) -> Result<(), RunError> {
     for part in surveys.iter().flat_map(|survey| &survey.parts) {
-        part.read(found)?;
+        read_starts(part, found)?;
     }
     Ok(())
 }

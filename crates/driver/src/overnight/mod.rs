@@ -10,12 +10,14 @@ mod ranked;
 
 use serde_json::json;
 
-use crate::run::{Ask, Interrupt, Interrupted, Share, Work};
+use crate::run::{
+    Ask, Finished, Interrupt, Interrupted, JournalFacts, PartSurvey, RunError, Share, Work,
+};
 use crate::search::{SearchProblem, SearchSettings, StartResult};
 
 pub use finds::{Fall, Finds, StartEnd};
 pub use gathering::{Gathering, MissingPart, fetch};
-pub use ranked::{RANKING_FORMAT, Ranked, RankedList};
+pub use ranked::{Ranked, RankedList};
 
 /// What `run.json` calls this kind of run.
 pub const KIND: &str = "overnight";
@@ -36,13 +38,49 @@ impl Work for Overnight {
         self.problem.start(self.seed, number, interrupt.flag()).ok_or(Interrupted)
     }
 
+    fn can_be(&self, number: u64, done: &StartResult) -> bool {
+        is_of(number, done)
+    }
+
     fn called(&self, number: u64) -> String {
-        format!("start {number}")
+        called(number)
     }
 
     fn merit(&self, done: &StartResult) -> Option<f64> {
         merit_with_limits_kept(done)
     }
+}
+
+/// Whether a result that is recorded for a start says the same of itself.
+fn is_of(start: u64, result: &StartResult) -> bool {
+    result.number == start
+}
+
+/// Reads the starts that a part's journal has, as far as it is written.
+///
+/// # Errors
+/// It is damaged or cannot be read, or has the result of another start than it says.
+pub(crate) fn read_starts(
+    part: &PartSurvey,
+    found: &mut dyn FnMut(Finished<StartResult>),
+) -> Result<JournalFacts, RunError> {
+    let mut strange = None;
+    let facts = part.read::<StartResult>(&mut |unit| {
+        if is_of(unit.number, &unit.done) {
+            found(unit);
+        } else {
+            strange = strange.or(Some(unit.number));
+        }
+    })?;
+    match strange {
+        Some(start) => Err(RunError::another_result(&part.place, &called(start))),
+        None => Ok(facts),
+    }
+}
+
+/// What people call a start.
+fn called(number: u64) -> String {
+    format!("start {number}")
 }
 
 /// The merit of a start that counts towards a target: one that crosses a limit does not.

@@ -8,13 +8,13 @@ use crate::run::ResultFile;
 use crate::search::Found;
 
 /// The format of `ranking.json`.
-pub const RANKING_FORMAT: &str = "drawtube-ranking/1";
+const RANKING_FORMAT: &str = "drawtube-ranking/1";
 
 /// `ranking.json`: the best designs that really differ, best first. It says nothing of times,
 /// threads or parts: however a run was cut up, the bytes are the same.
 #[derive(Debug, Clone, PartialEq, Serialize)]
 pub struct RankedList {
-    /// Always [`RANKING_FORMAT`].
+    /// Always `drawtube-ranking/1`.
     pub format: &'static str,
     /// Starts that were finished.
     pub starts: u64,

@@ -16,10 +16,10 @@ use crate::design_file::DesignFile;
 use crate::solve::{Settings, Unwatched};
 
 /// The head of the column of serial numbers.
-pub const SERIAL_HEAD: &str = "serial";
+pub(crate) const SERIAL_HEAD: &str = "serial";
 
 /// Most units of a table: each is a design of its own, some ten kilobytes of it.
-pub const MOST_UNITS: usize = 10_000;
+pub(crate) const MOST_UNITS: usize = 10_000;
 
 /// One unit as measured.
 #[derive(Debug, Clone)]

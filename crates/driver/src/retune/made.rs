@@ -12,7 +12,7 @@ use crate::design_file::DesignFile;
 ///
 /// # Errors
 /// Every word that names no part, with the nearest that does.
-pub fn parts(file: &DesignFile, words: &[String]) -> Result<Vec<Address>, Complaints> {
+pub(crate) fn parts(file: &DesignFile, words: &[String]) -> Result<Vec<Address>, Complaints> {
     let document = file.document().value();
     let known = named_parts(file);
     let mut parts: Vec<Address> = Vec::new();

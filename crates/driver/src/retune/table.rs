@@ -13,7 +13,7 @@ const MOST_WRONG: usize = 1000;
 #[derive(Debug, Clone, PartialEq, Eq)]
 pub struct Cell {
     /// What stands in it.
-    pub text: String,
+    pub(crate) text: String,
     /// Where it begins.
     pub position: Position,
 }
@@ -89,7 +89,7 @@ impl Table {
 
     /// The heads.
     #[must_use]
-    pub fn heads(&self) -> &[Cell] {
+    pub(crate) fn heads(&self) -> &[Cell] {
         &self.heads
     }
 
@@ -101,13 +101,13 @@ impl Table {
 
     /// Where a cell stands, for messages.
     #[must_use]
-    pub fn source(&self, position: Position) -> Source {
+    pub(crate) fn source(&self, position: Position) -> Source {
         Source { label: self.label.clone(), position: Some(position) }
     }
 
     /// Complaints about the table.
     #[must_use]
-    pub fn refuse(&self, complaints: Vec<(Option<Position>, Complaint)>) -> Complaints {
+    pub(crate) fn refuse(&self, complaints: Vec<(Option<Position>, Complaint)>) -> Complaints {
         let source = |position| Source { label: self.label.clone(), position };
         let list = complaints.into_iter().map(|(at, complaint)| (source(at), complaint));
         Complaints::elsewhere(&self.label, list.collect(), &serde_json::Value::Null)

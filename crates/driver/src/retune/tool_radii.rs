@@ -22,7 +22,7 @@ use crate::solve::{Settings, Unwatched};
 use merit_function::assessment::assess;
 
 /// The head of the column of radii.
-pub const RADIUS_HEAD: &str = "radius_mm";
+pub(crate) const RADIUS_HEAD: &str = "radius_mm";
 
 /// The radii a shop has tools for, as curvatures without sign, ascending; a flat is 0.
 #[derive(Debug, Clone, PartialEq)]

@@ -7,7 +7,7 @@ use surface_model::document::quoted;
 use super::share::Share;
 
 /// The newest format of `run.json` this program reads and writes.
-pub const RUN_FORMAT: &str = "drawtube-run/1";
+pub(super) const RUN_FORMAT: &str = "drawtube-run/1";
 
 /// The version whose results these are.
 const VERSION: &str = env!("CARGO_PKG_VERSION");
@@ -16,16 +16,16 @@ const VERSION: &str = env!("CARGO_PKG_VERSION");
 #[derive(Debug, Clone)]
 pub struct Ask {
     /// What sort of work, such as `overnight`.
-    pub kind: &'static str,
+    pub(crate) kind: &'static str,
     /// What messages call the file that was asked about.
     pub name: String,
     /// The file that was asked about, byte by byte.
-    pub text: Vec<u8>,
+    pub(crate) text: Vec<u8>,
     /// Seed of all random numbers.
     pub seed: u64,
     /// Every other thing a result depends on. What only says how much to do, or how fast, does not
     /// belong here: a run may go on with more threads and a larger budget.
-    pub settings: Value,
+    pub(crate) settings: Value,
     /// The part that this process takes.
     pub share: Share,
 }
@@ -33,7 +33,7 @@ pub struct Ask {
 /// `run.json`: the ask without its text.
 #[derive(Debug, Clone, PartialEq, Serialize, Deserialize)]
 pub struct RunDocument {
-    /// Always [`RUN_FORMAT`].
+    /// Always `drawtube-run/1`.
     pub format: String,
     /// What sort of work.
     pub kind: String,
@@ -81,7 +81,7 @@ impl RunDocument {
     /// What makes this run, the one in the folder, another than `asked`: told for people. `None` if
     /// they are the same.
     #[must_use]
-    pub fn difference(&self, asked: &Self) -> Option<String> {
+    pub(crate) fn difference(&self, asked: &Self) -> Option<String> {
         let told = |what: &str, there: &dyn std::fmt::Display, here: &dyn std::fmt::Display| {
             Some(format!("{what} is {there} there and {here} here"))
         };

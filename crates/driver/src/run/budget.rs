@@ -20,7 +20,7 @@ pub struct Budget {
 impl Budget {
     /// Whether a merit is good enough.
     #[must_use]
-    pub fn is_reached_by(&self, merit: Option<f64>) -> bool {
+    pub(crate) fn is_reached_by(&self, merit: Option<f64>) -> bool {
         matches!((merit, self.target_merit), (Some(merit), Some(target)) if merit <= target)
     }
 }

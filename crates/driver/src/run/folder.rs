@@ -59,7 +59,7 @@ impl RunFolder {
 
     /// The part that is worked on.
     #[must_use]
-    pub fn share(&self) -> Share {
+    pub(crate) fn share(&self) -> Share {
         self.share
     }
 

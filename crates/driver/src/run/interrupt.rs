@@ -12,19 +12,19 @@ pub struct Interrupted;
 
 impl Interrupt {
     /// Asks the units at work to stop.
-    pub fn raise(&self) {
+    pub(crate) fn raise(&self) {
         self.0.store(true, Ordering::Relaxed);
     }
 
     /// Whether to stop. Ask at least every tenth of a second.
     #[must_use]
-    pub fn is_raised(&self) -> bool {
+    pub(crate) fn is_raised(&self) -> bool {
         self.0.load(Ordering::Relaxed)
     }
 
     /// The same as a flag, for a solver's observer.
     #[must_use]
-    pub fn flag(&self) -> &AtomicBool {
+    pub(crate) fn flag(&self) -> &AtomicBool {
         &self.0
     }
 }

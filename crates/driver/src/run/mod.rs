@@ -31,7 +31,7 @@
 //! of earlier sessions first. Then write what they add up to with [`RunFolder::write_results`].
 //! [`Survey`] reads a folder, or its parts, without disturbing whoever works on it. For a grid,
 //! unit `n` is the n-th point in an order that follows from the plan, so that the plan's bytes as
-//! the ask identify every point; the plan's resolved inputs belong into [`Ask::settings`].
+//! the ask identify every point; the plan's resolved inputs belong into the settings of the [`Ask`].
 //!
 //! Start reading at `perform.rs`, whose loop is the run; `journal.rs` keeps, `reading.rs` reads.
 
@@ -55,7 +55,7 @@ mod work;
 #[cfg(test)]
 mod tests;
 
-pub use ask::{Ask, RUN_FORMAT, RunDocument};
+pub use ask::{Ask, RunDocument};
 pub use budget::Budget;
 pub use error::RunError;
 pub use folder::RunFolder;
@@ -65,4 +65,4 @@ pub use reading::JournalFacts;
 pub use results::{ResultFile, ResultsFolder};
 pub use share::{Share, ShareError};
 pub use survey::{PartSurvey, Survey};
-pub use work::{Finished, RunEnd, Saving, Stop, TakenUp, Tally, Watcher, Work};
+pub use work::{Earlier, Finished, RunEnd, Saving, Stop, Tally, Watcher, Work};

@@ -16,7 +16,7 @@ use super::interrupt::{Interrupt, Interrupted};
 use super::journal::{Journal, Kept};
 use super::reading;
 use super::share::Share;
-use super::work::{Finished, RunEnd, Saving, Stop, TakenUp, Tally, Watcher, Work};
+use super::work::{Earlier, Finished, RunEnd, Saving, Stop, Tally, Watcher, Work};
 
 /// Longest time between two looks at clock and user.
 const TICK: Duration = Duration::from_millis(50);
@@ -159,7 +159,7 @@ impl<'a, W: Work> Session<'a, W> {
             return Err(RunError::another_result(&path, &work.called(unit)));
         }
         let journal = Journal::open(&path, read.valid_bytes)?;
-        watcher.taken_up(&TakenUp {
+        watcher.earlier(&Earlier {
             finished: read.facts.finished,
             sessions: read.facts.sessions,
             seconds: read.facts.seconds,

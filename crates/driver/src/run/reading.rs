@@ -35,9 +35,9 @@ pub struct JournalFacts {
     /// Whether the last session ended with nothing left to do.
     pub complete: bool,
     /// When the first session began, in seconds since 1970.
-    pub began_unix_seconds: Option<u64>,
+    pub(crate) began_unix_seconds: Option<u64>,
     /// Bytes of a torn last line.
-    pub torn_bytes: u64,
+    pub(crate) torn_bytes: u64,
 }
 
 /// A journal that has been read.

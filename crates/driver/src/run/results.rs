@@ -33,7 +33,7 @@ impl ResultFile {
 
     /// The points of a sweep as a table: `points.csv`.
     #[must_use]
-    pub fn points_table(contents: impl Into<Vec<u8>>) -> Self {
+    pub(crate) fn points_table(contents: impl Into<Vec<u8>>) -> Self {
         Self { name: "points.csv".into(), contents: contents.into() }
     }
 
@@ -45,7 +45,7 @@ impl ResultFile {
 
     /// The list itself: `ranking.json`.
     #[must_use]
-    pub fn ranking(contents: impl Into<Vec<u8>>) -> Self {
+    pub(crate) fn ranking(contents: impl Into<Vec<u8>>) -> Self {
         Self { name: "ranking.json".into(), contents: contents.into() }
     }
 }

@@ -39,7 +39,7 @@ impl Share {
     pub const WHOLE: Self = Self { of: NonZeroU64::MIN, index: NonZeroU64::MIN };
 
     /// Most parts a run can be split into.
-    pub const MOST: u64 = 100_000;
+    pub(crate) const MOST: u64 = 100_000;
 
     /// Part `index` of `of`, counted from one.
     ///
@@ -54,7 +54,7 @@ impl Share {
 
     /// Which part, from one.
     #[must_use]
-    pub fn index(self) -> u64 {
+    pub(crate) fn index(self) -> u64 {
         self.index.get()
     }
 
@@ -71,19 +71,19 @@ impl Share {
     }
 
     /// All parts of a run split like this one.
-    pub fn all(of: u64) -> impl Iterator<Item = Self> {
+    pub(crate) fn all(of: u64) -> impl Iterator<Item = Self> {
         (1..=of).filter_map(move |index| Self::new(index, of).ok())
     }
 
     /// Whether a unit belongs to it.
     #[must_use]
-    pub fn holds(self, number: u64) -> bool {
+    pub(crate) fn holds(self, number: u64) -> bool {
         number % self.of == self.index() - 1
     }
 
     /// How many of the first `total` units belong to it.
     #[must_use]
-    pub fn count(self, total: u64) -> u64 {
+    pub(crate) fn count(self, total: u64) -> u64 {
         total.saturating_add(self.of() - self.index()) / self.of
     }
 

@@ -35,7 +35,7 @@ pub struct PartSurvey {
     /// Where its files are.
     pub place: PathBuf,
     /// The process that works on it at this moment.
-    pub holder: Option<String>,
+    pub(crate) holder: Option<String>,
     identity: String,
 }
 

@@ -50,9 +50,9 @@ pub struct Finished<D> {
     pub done: D,
 }
 
-/// What a session found in the folder.
+/// What earlier sessions have left in the folder.
 #[derive(Debug, Clone, Copy, PartialEq)]
-pub struct TakenUp {
+pub struct Earlier {
     /// Units finished before.
     pub finished: u64,
     /// Sessions before this one.
@@ -90,7 +90,7 @@ pub enum Saving<'a> {
 /// Watches a run.
 pub trait Watcher<D> {
     /// The folder has been read.
-    fn taken_up(&mut self, taken_up: &TakenUp);
+    fn earlier(&mut self, earlier: &Earlier);
     /// A unit is finished, in an earlier session or now, in no particular order.
     fn found(&mut self, finished: Finished<D>);
     /// Called several times a second.
@@ -125,15 +125,7 @@ pub struct RunEnd {
     pub tally: Tally,
     /// The journal could not be written to the end: why.
     pub unsaved: Option<io::Error>,
-    /// Units from this number on do not count.
+    /// Units from this number on do not count: they ran ahead while an earlier one was good enough,
+    /// or lie beyond the units wanted.
     pub counted_below: Option<u64>,
-}
-
-impl RunEnd {
-    /// Whether a unit counts: the ones that ran ahead while an earlier one was good enough, or
-    /// that lie beyond the units wanted, do not.
-    #[must_use]
-    pub fn counts(&self, number: u64) -> bool {
-        self.counted_below.is_none_or(|below| number < below)
-    }
 }

@@ -5,7 +5,7 @@
 //! (`new-joe-kuo-6.21201`), published under the BSD licence.
 
 /// Most coordinates a Sobol point can have.
-pub const MOST_DIMENSIONS: usize = POLYNOMIALS.len() + 1;
+pub(crate) const MOST_DIMENSIONS: usize = POLYNOMIALS.len() + 1;
 
 /// The primitive polynomial of a coordinate and its first direction numbers.
 pub(super) struct Polynomial {

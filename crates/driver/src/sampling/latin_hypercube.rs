@@ -11,7 +11,7 @@ use super::stream;
 
 /// A Latin hypercube of a fixed number of points.
 #[derive(Debug, Clone, PartialEq)]
-pub struct LatinHypercube {
+pub(crate) struct LatinHypercube {
     points: Vec<Vec<f64>>,
 }
 
@@ -19,7 +19,7 @@ impl LatinHypercube {
     /// `count` points of `dimensions` coordinates. A coordinate depends on the seed, the count and
     /// its own place alone: more dimensions leave the first ones as they are.
     #[must_use]
-    pub fn new(count: usize, dimensions: usize, seed: u64) -> Self {
+    pub(crate) fn new(count: usize, dimensions: usize, seed: u64) -> Self {
         let mut points = vec![Vec::with_capacity(dimensions); count];
         for dimension in 0..dimensions {
             let mut random = stream(seed, dimension as u64);
@@ -37,7 +37,7 @@ impl LatinHypercube {
 
     /// The points, every coordinate from 0 to below 1.
     #[must_use]
-    pub fn points(&self) -> &[Vec<f64>] {
+    pub(crate) fn points(&self) -> &[Vec<f64>] {
         &self.points
     }
 }

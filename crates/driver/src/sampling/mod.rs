@@ -12,7 +12,6 @@ mod latin_hypercube;
 mod sobol;
 mod stream;
 
-pub use direction_numbers::MOST_DIMENSIONS;
-pub use latin_hypercube::LatinHypercube;
-pub use sobol::{Sobol, TooManyDimensions};
-pub use stream::{RandomStream, stream};
+pub(crate) use latin_hypercube::LatinHypercube;
+pub use sobol::Sobol;
+pub(crate) use stream::{RandomStream, stream};

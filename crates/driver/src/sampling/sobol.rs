@@ -31,9 +31,9 @@ pub struct Sobol {
 /// More coordinates wanted than there are direction numbers for.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, thiserror::Error)]
 #[error("{asked} numbers are to be sampled together where {MOST_DIMENSIONS} are the most")]
-pub struct TooManyDimensions {
+pub(crate) struct TooManyDimensions {
     /// How many.
-    pub asked: usize,
+    pub(crate) asked: usize,
 }
 
 impl Sobol {
@@ -41,7 +41,7 @@ impl Sobol {
     ///
     /// # Errors
     /// There are more than [`MOST_DIMENSIONS`] coordinates.
-    pub fn new(dimensions: usize) -> Result<Self, TooManyDimensions> {
+    pub(crate) fn new(dimensions: usize) -> Result<Self, TooManyDimensions> {
         if dimensions > MOST_DIMENSIONS {
             return Err(TooManyDimensions { asked: dimensions });
         }
@@ -58,19 +58,13 @@ impl Sobol {
     /// fill the cube as evenly, and another seed gives others. Of more than [`MOST_DIMENSIONS`]
     /// coordinates the rest is left out.
     #[must_use]
-    pub fn shifted(dimensions: usize, seed: u64) -> Self {
+    pub(crate) fn shifted(dimensions: usize, seed: u64) -> Self {
         let mut sobol = Self::of(dimensions);
         let mut random = stream(seed, u64::MAX);
         for shift in &mut sobol.shift {
             *shift = random.next_u64() >> (u64::BITS as usize - BITS);
         }
         sobol
-    }
-
-    /// Coordinates of a point.
-    #[must_use]
-    pub fn dimensions(&self) -> usize {
-        self.directions.len()
     }
 
     /// Point `number`, every coordinate from 0 to below 1. Only the first 2⁵³ differ.

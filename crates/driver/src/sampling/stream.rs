@@ -5,14 +5,14 @@ use rand_chacha::ChaCha12Rng;
 
 /// A stream of random numbers: ChaCha with twelve rounds (D. J. Bernstein, *ChaCha, a variant of
 /// Salsa20* (2008)), a counter-based generator whose bits are the same on every machine.
-pub type RandomStream = ChaCha12Rng;
+pub(crate) type RandomStream = ChaCha12Rng;
 
 /// The random numbers of job `number` (a start, a trial, a point) under `seed`. Streams of
 /// different numbers share a key and differ in the nonce, so none overlaps another.
 ///
 /// The key is the seed in the first eight bytes, little end first, and zeros.
 #[must_use]
-pub fn stream(seed: u64, number: u64) -> RandomStream {
+pub(crate) fn stream(seed: u64, number: u64) -> RandomStream {
     let mut key = [0; 32];
     key[..8].copy_from_slice(&seed.to_le_bytes());
     let mut stream = ChaCha12Rng::from_seed(key);

@@ -3,7 +3,8 @@
 use rand::RngExt;
 
 use super::candidate::Candidate;
-use super::workbench::{Effort, Interrupted, Workbench};
+use super::workbench::{Effort, Workbench};
+use crate::run::Interrupted;
 use crate::sampling::RandomStream;
 
 /// Hops of a start.

@@ -12,9 +12,10 @@ use surface_model::place::Place;
 
 use super::candidate::Candidate;
 use super::ground::Ground;
-use super::workbench::{Interrupted, Workbench};
+use super::workbench::Workbench;
 use crate::design_file::DesignFile;
 use crate::optimise::{OptimiseError, require_goal};
+use crate::run::Interrupted;
 use crate::start::{Begun, Starts};
 
 /// What is free in the designs of a brief, in the words of a design file.

@@ -9,9 +9,10 @@ use surface_model::place::Place;
 
 use super::candidate::Candidate;
 use super::ground::{Ground, likely_range};
-use super::workbench::{Interrupted, Workbench, short};
+use super::workbench::{Workbench, short};
 use crate::design_file::DesignFile;
 use crate::optimise::{OptimiseError, merit_of};
+use crate::run::Interrupted;
 use crate::sampling::RandomStream;
 
 /// Points crowd towards flat surfaces: a curvature is its bound times this power of the distance

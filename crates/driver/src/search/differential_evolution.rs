@@ -9,7 +9,8 @@ use rand::RngExt;
 
 use super::candidate::{Candidate, keep_best};
 use super::source::Quarry;
-use super::workbench::{Effort, Interrupted, Workbench};
+use super::workbench::{Effort, Workbench};
+use crate::run::Interrupted;
 use crate::sampling::RandomStream;
 
 /// Members of the population.

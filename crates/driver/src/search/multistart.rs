@@ -2,7 +2,8 @@
 
 use super::candidate::Candidate;
 use super::source::Quarry;
-use super::workbench::{Effort, Interrupted, Workbench};
+use super::workbench::{Effort, Workbench};
+use crate::run::Interrupted;
 use crate::sampling::RandomStream;
 
 /// Candidates that enter the halvings.

@@ -11,21 +11,21 @@ use super::multistart;
 use super::settings::{SearchSettings, Strategy};
 use super::source::{Quarry, Source};
 use super::start_result::{Found, StartResult};
-use super::workbench::{Interrupted, Workbench};
+use super::workbench::Workbench;
 use crate::brief::BriefFile;
 use crate::design_file::DesignFile;
 use crate::optimise::OptimiseError;
+use crate::run::Interrupted;
 use crate::sampling::{RandomStream, stream};
 use crate::start::{Refusals, StartError, Starts};
 
-/// Why there is nothing to search.
+/// Why there is nothing to search for a brief.
 #[derive(Debug, thiserror::Error)]
-#[non_exhaustive]
 pub enum SearchError {
-    /// A design that cannot be optimised, or a brief without goals.
+    /// It has no goals.
     #[error(transparent)]
     Optimise(#[from] OptimiseError),
-    /// A brief that no layout can answer.
+    /// No layout can answer it.
     #[error(transparent)]
     Start(#[from] StartError),
 }
@@ -72,7 +72,7 @@ impl SearchProblem {
     ///
     /// # Errors
     /// The file has no goals or nothing to change, or its ranges contradict each other.
-    pub fn of_design(file: &DesignFile, settings: SearchSettings) -> Result<Self, SearchError> {
+    pub fn of_design(file: &DesignFile, settings: SearchSettings) -> Result<Self, OptimiseError> {
         let source = Source::Design(Box::new(DesignSource::new(file.clone())?));
         Ok(Self { source, settings })
     }

@@ -43,18 +43,6 @@ impl Ranking {
         self.results.insert(rank, found.shape.clone());
     }
 
-    /// How many designs there are.
-    #[must_use]
-    pub fn len(&self) -> usize {
-        self.results.len()
-    }
-
-    /// Whether nothing has been found yet.
-    #[must_use]
-    pub fn is_empty(&self) -> bool {
-        self.results.is_empty()
-    }
-
     /// Numbers of the starts with the best `count` designs, best first, each really different from
     /// all before it: the best, then the best of those unlike it, and so on.
     #[must_use]
@@ -64,7 +52,7 @@ impl Ranking {
 
     /// As [`Self::best`], of the starts with numbers below `below` alone.
     #[must_use]
-    pub fn best_below(&self, count: usize, below: Option<u64>) -> Vec<u64> {
+    pub(crate) fn best_below(&self, count: usize, below: Option<u64>) -> Vec<u64> {
         let mut kept: Vec<(&Rank, &Shape)> = Vec::with_capacity(count);
         for (rank, shape) in self.counted(below) {
             if kept.len() == count {
@@ -77,15 +65,10 @@ impl Ranking {
         kept.into_iter().map(|(rank, _)| rank.number).collect()
     }
 
-    /// How many starts ended in the design of rank 1 or one that does not really differ from it.
+    /// How many starts with numbers below `below` ended in the design of rank 1 or one that does not
+    /// really differ from it.
     #[must_use]
-    pub fn times_best_found(&self) -> usize {
-        self.times_best_found_below(None)
-    }
-
-    /// As [`Self::times_best_found`], of the starts with numbers below `below` alone.
-    #[must_use]
-    pub fn times_best_found_below(&self, below: Option<u64>) -> usize {
+    pub(crate) fn times_best_found(&self, below: Option<u64>) -> usize {
         let Some((_, best)) = self.counted(below).next() else { return 0 };
         self.counted(below).filter(|(_, shape)| shape.distance(best) < DIFFERENT).count()
     }

@@ -64,7 +64,7 @@ impl Shape {
     /// How far apart two shapes are: the largest difference of any number, in its unit; infinite
     /// where the elements are not the same. From 1 on, designs are really different.
     #[must_use]
-    pub fn distance(&self, other: &Self) -> f64 {
+    pub(crate) fn distance(&self, other: &Self) -> f64 {
         if self.elements != other.elements || self.numbers.len() != other.numbers.len() {
             return f64::INFINITY;
         }

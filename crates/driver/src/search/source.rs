@@ -6,9 +6,10 @@ use surface_model::design::Design;
 use super::brief_source::{BriefSource, Layouts};
 use super::candidate::{Candidate, keep_best};
 use super::design_source::{DesignBench, DesignSource};
-use super::workbench::{Effort, Interrupted, Workbench};
+use super::workbench::{Effort, Workbench};
 use crate::design_file::DesignFile;
 use crate::optimise::OptimiseError;
+use crate::run::Interrupted;
 use crate::sampling::{RandomStream, Sobol};
 use crate::start::{Layout, NoLayout, Refusals};
 

@@ -6,15 +6,12 @@ use merit_function::problem::MeritFunction;
 
 use super::candidate::{Candidate, keep_best};
 use super::ground::Ground;
+use crate::run::Interrupted;
 use crate::sampling::RandomStream;
 use crate::solve::{self, Interruptible, Outcome, Settings, Stopped, Unwatched};
 
 /// A merit at which nothing is left to gain: every goal met more than ten thousand times over.
 const NOTHING_LEFT: f64 = 1e-9;
-
-/// The user wants to stop; what is under way is worth nothing.
-#[derive(Debug, Clone, Copy, PartialEq, Eq)]
-pub(super) struct Interrupted;
 
 /// How much work a local optimisation may be.
 #[derive(Debug, Clone, Copy, PartialEq)]

@@ -4,6 +4,12 @@
 use super::outcome::Stopped;
 use super::settings::Settings;
 
+/// Moré's second test, `|D p| ≤ SHORT · |D x|` (Lecture Notes in Mathematics 630, 105 (1978)).
+const SHORT: f64 = 1e-12;
+
+/// So many small steps in a row are the end: optical merit functions creep along flat valleys.
+const IN_A_ROW: u32 = 3;
+
 /// What one tried step promised and brought.
 #[derive(Debug, Clone, Copy, PartialEq)]
 pub(crate) struct Reduction {
@@ -50,10 +56,10 @@ impl Convergence {
         point: f64,
     ) -> Option<Stopped> {
         self.quiet = if reduction.is_quiet(settings.reduction()) { self.quiet + 1 } else { 0 };
-        self.short = if step <= settings.step() * point { self.short + 1 } else { 0 };
-        if self.quiet >= settings.quiet_steps() {
+        self.short = if step <= SHORT * point { self.short + 1 } else { 0 };
+        if self.quiet >= IN_A_ROW {
             Some(Stopped::MeritSettled)
-        } else if self.short >= settings.quiet_steps() {
+        } else if self.short >= IN_A_ROW {
             Some(Stopped::StepSmall)
         } else {
             None

@@ -18,6 +18,10 @@ use super::step::{Rejected, Stepper, Trial};
 /// argmin's state for these solvers: a point and its cost, nothing else.
 pub(crate) type SolverState = IterState<Vec<f64>, (), (), (), (), f64>;
 
+/// Damping `λ` of the first step, as a share of the squared column lengths; Marquardt's 1e-2 is for
+/// poorer starts.
+const INITIAL_DAMPING: f64 = 1e-3;
+
 /// The solver.
 pub(crate) struct DampedLeastSquares<'a> {
     settings: &'a Settings,
@@ -40,8 +44,8 @@ impl<'a> DampedLeastSquares<'a> {
         Self {
             settings,
             observer,
-            damping: Damping::new(settings.initial_damping()),
-            damping_at_best: Damping::new(settings.initial_damping()),
+            damping: Damping::new(INITIAL_DAMPING),
+            damping_at_best: Damping::new(INITIAL_DAMPING),
             convergence: Convergence::default(),
             stepper,
             stopped: None,

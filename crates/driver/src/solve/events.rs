@@ -52,11 +52,11 @@ impl Observer for Unwatched {
 
 /// Adds a stop flag, set from a signal handler or another thread, to an observer.
 #[derive(Debug)]
-pub struct Interruptible<'a, O> {
+pub(crate) struct Interruptible<'a, O> {
     /// Raised by whoever wants the solver to stop.
-    pub stop: &'a AtomicBool,
+    pub(crate) stop: &'a AtomicBool,
     /// Watches.
-    pub observer: O,
+    pub(crate) observer: O,
 }
 
 impl<O: Observer> Observer for Interruptible<'_, O> {

@@ -41,7 +41,8 @@ use damped_least_squares::DampedLeastSquares;
 use evaluation::Evaluator;
 use step::Stepper;
 
-pub use events::{Interruptible, Observer, Progress, Unwatched};
+pub(crate) use events::Interruptible;
+pub use events::{Observer, Progress, Unwatched};
 pub use outcome::{Outcome, SolveError, Stopped};
 pub use settings::{Method, Settings, SettingsError};
 

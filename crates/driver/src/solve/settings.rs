@@ -38,10 +38,7 @@ pub struct Settings {
     max_iterations: u64,
     target: f64,
     reduction: f64,
-    step: f64,
     gradient: f64,
-    quiet_steps: u32,
-    initial_damping: f64,
     acceleration: Option<f64>,
 }
 
@@ -63,10 +60,7 @@ impl Settings {
             },
             target: 1e-20,
             reduction: 1e-10,
-            step: 1e-12,
             gradient: 1e-10,
-            quiet_steps: 3,
-            initial_damping: 1e-3,
             acceleration: Some(0.75),
         }
     }
@@ -107,17 +101,6 @@ impl Settings {
         Ok(self)
     }
 
-    /// Stops when `|D p| ≤ step · |D x|` for several steps in a row (Moré's second test).
-    /// Default 1e-12. From 0 to below 1.
-    ///
-    /// # Errors
-    /// The value is out of range.
-    pub fn with_step(mut self, step: f64) -> Result<Self, SettingsError> {
-        check("the step", step, (0.0..1.0).contains(&step), "from 0 to below 1")?;
-        self.step = step;
-        Ok(self)
-    }
-
     /// Stops when the residuals are all but orthogonal to every column of the Jacobian, what the
     /// active bounds and limits take up put aside:
     /// `|(Jᵀr − N u)ⱼ| ≤ gradient · |Jⱼ| |r|` for every variable (Moré's fourth test, with
@@ -128,18 +111,6 @@ impl Settings {
     pub fn with_gradient(mut self, gradient: f64) -> Result<Self, SettingsError> {
         check("the gradient", gradient, (0.0..1.0).contains(&gradient), "from 0 to below 1")?;
         self.gradient = gradient;
-        Ok(self)
-    }
-
-    /// Damping `λ` of the first step, as a share of the squared column lengths. Default 1e-3
-    /// (Marquardt's 1e-2 is for poorer starts). Positive.
-    ///
-    /// # Errors
-    /// The value is not positive or not finite.
-    pub fn with_initial_damping(mut self, damping: f64) -> Result<Self, SettingsError> {
-        let sound = damping > 0.0 && damping < f64::MAX;
-        check("the initial damping", damping, sound, "positive")?;
-        self.initial_damping = damping;
         Ok(self)
     }
 
@@ -160,7 +131,7 @@ impl Settings {
 
     /// Which method solves.
     #[must_use]
-    pub fn method(&self) -> Method {
+    pub(crate) fn method(&self) -> Method {
         self.method
     }
 
@@ -176,21 +147,8 @@ impl Settings {
         self.reduction
     }
 
-    pub(crate) fn step(&self) -> f64 {
-        self.step
-    }
-
     pub(crate) fn gradient(&self) -> f64 {
         self.gradient
-    }
-
-    /// How many small steps in a row count as the end.
-    pub(crate) fn quiet_steps(&self) -> u32 {
-        self.quiet_steps
-    }
-
-    pub(crate) fn initial_damping(&self) -> f64 {
-        self.initial_damping
     }
 
     pub(crate) fn acceleration(&self) -> Option<f64> {
@@ -217,20 +175,16 @@ mod tests {
         let messages = [
             settings().with_max_iterations(0),
             settings().with_target(-1.0),
-            settings().with_reduction(1.0),
-            settings().with_step(f64::NAN),
+            settings().with_reduction(f64::NAN),
             settings().with_gradient(-1e-3),
-            settings().with_initial_damping(0.0),
             settings().with_acceleration(Some(f64::INFINITY)),
         ]
         .map(|result| result.map_err(|error| error.to_string()).unwrap_err());
         insta::assert_snapshot!(messages.join("\n"), @r"
         the iteration limit is 0, but must be at least 1
         the target is -1, but must be zero or positive
-        the reduction is 1, but must be from 0 to below 1
-        the step is NaN, but must be from 0 to below 1
+        the reduction is NaN, but must be from 0 to below 1
         the gradient is -0.001, but must be from 0 to below 1
-        the initial damping is 0, but must be positive
         the acceleration ratio is inf, but must be positive
         ");
     }

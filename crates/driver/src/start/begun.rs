@@ -4,7 +4,7 @@ use serde_json::Value;
 use surface_model::design::{Design, ZoomState};
 
 use super::layout::Layout;
-use super::plan::{Kind, Plan};
+use super::scheme::{Kind, Scheme};
 use super::space::Space;
 use crate::design_file::DesignFile;
 
@@ -28,7 +28,7 @@ impl Begun {
     /// The lenses of a design of another brief, in this one's beam, tube and ratios.
     pub(super) fn of_another(space: &Space, file: &DesignFile) -> Option<Self> {
         let brief = &space.brief;
-        let plan = space.plans.iter().find(|plan| is_set_up_as(plan, &file.design))?;
+        let scheme = space.schemes.iter().find(|scheme| is_set_up_as(scheme, &file.design))?;
         let glasses = glasses(space, file)?;
         if file.design.states.len() != brief.ratios.len() {
             return None;
@@ -36,7 +36,7 @@ impl Begun {
         let mut design = file.design.clone();
         design.title.clone_from(&brief.written().title);
         design.beam = brief.beam.clone();
-        design.housing = space.housing(plan);
+        design.housing = space.housing(scheme);
         let state = |(ratio, state): (&crate::brief::RatioBrief, ZoomState)| ZoomState {
             name: ratio.name.clone(),
             ratio: ratio.ratio,
@@ -54,13 +54,13 @@ impl Begun {
     }
 }
 
-/// Whether a design has the groups and elements of a plan.
-fn is_set_up_as(plan: &Plan, design: &Design) -> bool {
+/// Whether a design has the groups and elements of a scheme.
+fn is_set_up_as(scheme: &Scheme, design: &Design) -> bool {
     let kind = |glasses: usize| if glasses == 2 { Kind::Pair } else { Kind::Singlet };
-    plan.groups.len() == design.groups.len()
-        && plan.groups.iter().zip(&design.groups).all(|(plan, group)| {
+    scheme.groups.len() == design.groups.len()
+        && scheme.groups.iter().zip(&design.groups).all(|(scheme, group)| {
             let elements = group.elements.iter().map(|element| kind(element.glasses.len()));
-            plan.name == group.name && plan.elements.iter().copied().eq(elements)
+            scheme.name == group.name && scheme.elements.iter().copied().eq(elements)
         })
 }
 

@@ -20,7 +20,7 @@ use merit_function::limits::Range;
 
 use super::family::Sign;
 use super::no_layout::NoLayout;
-use super::plan::Plan;
+use super::scheme::Scheme;
 use super::space::Point;
 use super::spacings::MOST;
 use super::thin::{NO_FOCUS, ends_of};
@@ -31,7 +31,7 @@ const WIDEST: f64 = 2.0;
 /// Powers of the family a point names, the second focal length ±1 mm. `None` where all ratios are
 /// the same, or one is inverted: heights say too little, or too much, there.
 pub(super) fn by_heights(
-    plan: &Plan,
+    scheme: &Scheme,
     ratios: &[f64],
     point: Point<'_>,
 ) -> Result<Option<[f64; MOST]>, NoLayout> {
@@ -39,7 +39,7 @@ pub(super) fn by_heights(
     if lowest <= 0.0 || highest - lowest < 1e-6 * highest {
         return Ok(None);
     }
-    let family = plan.families.get(point.family(plan.families.len()));
+    let family = scheme.families.get(point.family(scheme.families.len()));
     let Some([first, second, third]) = family.map(|family| family.0.as_slice()) else {
         return Err(NoLayout::Passing);
     };

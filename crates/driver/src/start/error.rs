@@ -78,8 +78,7 @@ impl StartError {
     }
 
     /// What to do about it.
-    #[must_use]
-    pub fn advice(&self) -> String {
+    pub(super) fn advice(&self) -> String {
         match self {
             Self::Inverted => {
                 "ask for a positive ratio, or take \"internal_focus\" out of \"limits\"".into()

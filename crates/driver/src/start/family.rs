@@ -15,7 +15,7 @@ pub enum Sign {
 impl Sign {
     /// +1 or −1.
     #[must_use]
-    pub fn factor(self) -> f64 {
+    pub(crate) fn factor(self) -> f64 {
         match self {
             Self::Positive => 1.0,
             Self::Negative => -1.0,

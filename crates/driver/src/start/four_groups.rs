@@ -5,7 +5,7 @@
 //! over its height. So every point leaves room between the groups at that ratio; only the others
 //! have still to.
 
-use super::plan::{Movement, Plan};
+use super::scheme::{Movement, Scheme};
 use super::space::{Point, Space};
 use super::spacings::{MOST, Tie, four};
 use super::thin::{NO_FOCUS, TIES, Tied};
@@ -21,7 +21,7 @@ const WIDEST_CHANGE: f64 = 30.0;
 /// `None` where a ratio is inverted, or a group would have no power.
 pub(super) fn four_groups(
     space: &Space,
-    plan: &Plan,
+    scheme: &Scheme,
     ratios: &[f64],
     point: Point<'_>,
 ) -> Option<([f64; MOST], Tied)> {
@@ -36,7 +36,7 @@ pub(super) fn four_groups(
     let places = point.spacings();
     let spacings = [1.0, spread((places.0, WIDEST_SPACINGS)), spread((places.1, WIDEST_SPACINGS))];
     let powers_per_mm = powers(heights, spacings)?;
-    let (tie, factor) = match plan.movement {
+    let (tie, factor) = match scheme.movement {
         Movement::Held(tie) => (tie, 1.0),
         Movement::Chosen => {
             (TIES[point.tie(TIES.len())], spread((point.tie_change(), WIDEST_CHANGE)))

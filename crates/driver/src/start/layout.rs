@@ -103,8 +103,8 @@ fn ends(numbers: impl Iterator<Item = f64>) -> (f64, f64) {
 
 fn design(space: &Space, thin: &Thin<'_>, thick: &Thick) -> Design {
     let brief = &space.brief;
-    let group = |(plan, group): (&super::plan::GroupPlan, &super::lens::ThickGroup)| Group {
-        name: plan.name.clone(),
+    let group = |(scheme, group): (&super::scheme::GroupScheme, &super::lens::ThickGroup)| Group {
+        name: scheme.name.clone(),
         elements: group.elements.iter().map(|part| element(space, part)).collect(),
         airs_mm: group.airs_mm.clone(),
         mount_expansion_per_k: None,
@@ -118,8 +118,8 @@ fn design(space: &Space, thin: &Thin<'_>, thick: &Thick) -> Design {
     Design {
         title: brief.written().title.clone(),
         beam: brief.beam.clone(),
-        groups: thin.plan.groups.iter().zip(&thick.groups).map(group).collect(),
-        housing: space.housing(thin.plan),
+        groups: thin.scheme.groups.iter().zip(&thick.groups).map(group).collect(),
+        housing: space.housing(thin.scheme),
         states: brief.ratios.iter().zip(&thick.spacings_mm).map(state).collect(),
     }
 }

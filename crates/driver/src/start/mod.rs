@@ -1,17 +1,17 @@
 //! First-order starts: from a brief to designs worth optimising.
 //!
-//! A brief spans a space of layouts. A point of it is a list of [`Starts::dimensions`] numbers
-//! from 0 to 1, and stands for everything a layout has to choose: the plan (number of groups),
-//! the signs of their powers, the focal lengths, the size in the tube, what is tied where four
-//! groups leave a freedom, and for every element its bending and its glass, or its pair of glasses
-//! in their order. Any list of numbers is a point.
+//! A brief spans a space of layouts. A point of it is a list of numbers from 0 to 1, and stands for
+//! everything a layout has to choose: the scheme (how many groups, and how they move), the signs of their powers, the
+//! focal lengths, the size in the tube, what is tied where four groups leave a freedom, and for
+//! every element its bending and its glass, or its pair of glasses in their order. Any list of
+//! numbers is a point.
 //!
 //! The way of a point:
 //!
 //! | step | where |
 //! |---|---|
 //! | number and seed → point | [`Sobol`] |
-//! | fixed groups and counts → how spacings follow | `plan`, `family` |
+//! | fixed groups and counts → how spacings follow | `scheme`, `family` |
 //! | point → powers, spacings of thin groups in closed form, screened | `thin` (`by_heights`, `four_groups`), `spacings` |
 //! | powers → glasses, bendings of least spherical aberration | `shape`, `glasses`, `bending` |
 //! | thin → thick, exact by principal planes | `thick`, `lens` |
@@ -37,9 +37,9 @@ mod glasses;
 mod layout;
 mod lens;
 mod no_layout;
-mod plan;
 mod ranking;
 mod relaxation;
+mod scheme;
 mod score;
 mod shape;
 mod space;
@@ -58,8 +58,8 @@ use surface_model::place::Place;
 use crate::brief::BriefFile;
 use crate::design_file::DesignFile;
 use crate::optimise::OptimiseError;
-use crate::sampling::Sobol;
 
+pub use crate::sampling::Sobol;
 pub(crate) use begun::{Begun, GlassesOfGroups};
 pub use error::StartError;
 pub use family::{Family, Sign};
@@ -97,7 +97,7 @@ impl Starts {
 
     /// How many numbers a point has.
     #[must_use]
-    pub fn dimensions(&self) -> usize {
+    pub(crate) fn dimensions(&self) -> usize {
         self.space.dimensions
     }
 
@@ -119,7 +119,7 @@ impl Starts {
     /// What an optimiser may change of a layout's design: radii and spacings, as the `free` of its
     /// design file says.
     #[must_use]
-    pub fn free(&self, design: &Design) -> Vec<FreePlace> {
+    pub(crate) fn free(&self, design: &Design) -> Vec<FreePlace> {
         let places = Place::all(design).into_iter();
         places
             .filter(|place| matches!(place, Place::Radius(_) | Place::Spacing { .. }))

@@ -52,7 +52,7 @@ pub struct Relaxed {
 impl Relaxed {
     /// How far it goes: the larger value over the smaller, less 1.
     #[must_use]
-    pub fn change(&self) -> f64 {
+    pub(crate) fn change(&self) -> f64 {
         (self.to / self.from).max(self.from / self.to) - 1.0
     }
 }

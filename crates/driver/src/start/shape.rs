@@ -4,7 +4,7 @@ use merit_function::limits::LimitKind;
 
 use super::bending::{ThinElement, ThinLens, bend, curvature_steps};
 use super::no_layout::NoLayout;
-use super::plan::Kind;
+use super::scheme::Kind;
 use super::space::{Point, Space};
 use super::thin::Thin;
 
@@ -42,7 +42,7 @@ pub(super) fn shapes(
     point: Point<'_>,
 ) -> Result<Vec<Vec<ElementShape>>, NoLayout> {
     let mut raw = Vec::new();
-    for (g, group) in thin.plan.groups.iter().enumerate() {
+    for (g, group) in thin.scheme.groups.iter().enumerate() {
         for (e, &kind) in group.elements.iter().enumerate() {
             let share = 1.0 / group.elements.len() as f64;
             let power = thin.powers_per_mm[g] * share;
@@ -61,7 +61,7 @@ pub(super) fn shapes(
             diameter_mm: raw.diameter_mm,
         }
     });
-    let counts = thin.plan.groups.iter().map(|group| group.elements.len());
+    let counts = thin.scheme.groups.iter().map(|group| group.elements.len());
     Ok(counts.map(|count| bent.by_ref().take(count).collect()).collect())
 }
 
@@ -73,7 +73,7 @@ pub(super) fn least_size(
     point: Point<'_>,
 ) -> Result<f64, NoLayout> {
     let (mut least, mut number) = (0.0_f64, 0);
-    for (g, group) in thin.plan.groups.iter().enumerate() {
+    for (g, group) in thin.scheme.groups.iter().enumerate() {
         let power_per_mm = thin.powers_per_mm[g] / group.elements.len() as f64;
         let strongest = strongest_curvature(space, diameter_mm(space, thin, g));
         for &kind in &group.elements {

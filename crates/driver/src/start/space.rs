@@ -7,7 +7,7 @@ use crate::brief::BriefFile;
 
 use super::error::StartError;
 use super::glasses::Glasses;
-use super::plan::{Kind, Plan, plans};
+use super::scheme::{Kind, Scheme, schemes};
 use super::spacings::MOST;
 
 /// Coordinates of a point in front of those of the elements.
@@ -19,7 +19,7 @@ const OF_ELEMENT: usize = 2;
 #[derive(Debug, Clone)]
 pub(super) struct Space {
     pub(super) brief: BriefFile,
-    pub(super) plans: Vec<Plan>,
+    pub(super) schemes: Vec<Scheme>,
     pub(super) glasses: Glasses,
     /// How many numbers a point has.
     pub(super) dimensions: usize,
@@ -30,15 +30,16 @@ pub(super) struct Space {
 impl Space {
     pub(super) fn of(brief: &BriefFile) -> Result<Self, StartError> {
         let glasses = Glasses::of(brief);
-        let plans = plans(brief, glasses.has_pairs())?;
-        let elements = |plan: &Plan| plan.groups.iter().map(|group| group.elements.len()).sum();
-        let most: usize = plans.iter().map(elements).max().unwrap_or(0);
+        let schemes = schemes(brief, glasses.has_pairs())?;
+        let elements =
+            |scheme: &Scheme| scheme.groups.iter().map(|group| group.elements.len()).sum();
+        let most: usize = schemes.iter().map(elements).max().unwrap_or(0);
         let logs = brief.ratios.iter().map(|ratio| ratio.ratio.abs().ln());
         let log_ratios = logs.fold((f64::INFINITY, f64::NEG_INFINITY), |(low, high), log| {
             (low.min(log), high.max(log))
         });
         let dimensions = FRONT + OF_ELEMENT * most;
-        Ok(Self { brief: brief.clone(), plans, glasses, dimensions, log_ratios })
+        Ok(Self { brief: brief.clone(), schemes, glasses, dimensions, log_ratios })
     }
 
     /// The range of a limit, or everything.
@@ -47,11 +48,11 @@ impl Space {
         self.brief.wishes.limits.range(kind).unwrap_or(all)
     }
 
-    /// The housing with the fixed groups of a plan.
-    pub(super) fn housing(&self, plan: &Plan) -> Housing {
+    /// The housing with the fixed groups of a scheme.
+    pub(super) fn housing(&self, scheme: &Scheme) -> Housing {
         let track_mm = self.brief.written().housing.track_mm;
         let expansion_per_k = self.brief.written().housing.expansion_per_k;
-        Housing { track_mm, fixed: plan.fixed.clone(), expansion_per_k }
+        Housing { track_mm, fixed: scheme.fixed.clone(), expansion_per_k }
     }
 
     /// How far a state's ratio lies on the way from the lowest to the highest, 0 to 1 on a
@@ -67,20 +68,20 @@ impl Space {
 
     /// Largest height a ray has at a group, over all ratios, for height 1 at entry, as far as the
     /// ends of the train tell: for rough allowances only.
-    pub(super) fn likely_height(&self, plan: &Plan, group: usize) -> f64 {
-        if group + 1 == plan.groups.len() { self.log_ratios.1.exp() } else { 1.0 }
+    pub(super) fn likely_height(&self, scheme: &Scheme, group: usize) -> f64 {
+        if group + 1 == scheme.groups.len() { self.log_ratios.1.exp() } else { 1.0 }
     }
 
     /// Length that the glass of a group will take up, mm, roughly.
-    pub(super) fn likely_length_mm(&self, plan: &Plan, group: usize) -> f64 {
-        let diameter_mm = 2.0 * self.brief.beam.edge_mm() * self.likely_height(plan, group);
+    pub(super) fn likely_length_mm(&self, scheme: &Scheme, group: usize) -> f64 {
+        let diameter_mm = 2.0 * self.brief.beam.edge_mm() * self.likely_height(scheme, group);
         let least = self.range(LimitKind::CentreThicknessMm).min.max(1.0);
         let air = self.range(LimitKind::AirMm).min.max(0.5);
         let length = |kind: &Kind| match kind {
             Kind::Singlet => least + 0.08 * diameter_mm,
             Kind::Pair => 2.0 * least + 0.12 * diameter_mm,
         };
-        let elements = &plan.groups[group].elements;
+        let elements = &scheme.groups[group].elements;
         elements.iter().map(length).sum::<f64>() + air * (elements.len() - 1) as f64
     }
 }
@@ -100,7 +101,7 @@ impl Point<'_> {
         ((self.at(place) * count as f64) as usize).min(count.saturating_sub(1))
     }
 
-    pub(super) fn plan(&self, count: usize) -> usize {
+    pub(super) fn scheme(&self, count: usize) -> usize {
         self.choice(0, count)
     }
 
@@ -175,7 +176,7 @@ mod tests {
     fn any_list_of_numbers_is_a_point() {
         for numbers in [&[][..], &[f64::NAN; 30], &[1e300; 30], &[-5.0; 30], &[1.0; 30]] {
             let point = Point(numbers);
-            assert!(point.plan(3) < 3 && point.glass(4, 7) < 7 && point.family(1) == 0);
+            assert!(point.scheme(3) < 3 && point.glass(4, 7) < 7 && point.family(1) == 0);
             assert!((0.0..1.0).contains(&point.scale()));
             assert!(point.focal_ratio(3).is_finite() && point.tied().1 <= MOST_TIED);
         }

@@ -6,7 +6,7 @@
 
 use super::lens::{Cardinal, Rules, ThickElement, ThickGroup};
 use super::no_layout::NoLayout;
-use super::plan::Movement;
+use super::scheme::Movement;
 use super::shape::ElementShape;
 use super::space::Space;
 use super::spacings::{MOST, Tie};
@@ -34,7 +34,7 @@ impl Thick {
         thin: &Thin<'_>,
         shapes: &[Vec<ElementShape>],
     ) -> Result<Self, NoLayout> {
-        if thin.plan.movement != Movement::Filling {
+        if thin.scheme.movement != Movement::Filling {
             return Self::scaled(space, thin, shapes, 1.0);
         }
         let track_mm = space.brief.written().housing.track_mm;
@@ -89,7 +89,7 @@ impl Thick {
             let own = cardinals(wavelength)?;
             let tied = thin.tied.as_ref().map(|tied| {
                 let between = match tied.tie {
-                    Tie::Whole if thin.plan.movement == Movement::Whole => track_mm - glass_mm,
+                    Tie::Whole if thin.scheme.movement == Movement::Whole => track_mm - glass_mm,
                     tie => tied.values_mm[state] * scale + between_planes(&reference, tie),
                 };
                 (tied.tie, between - between_planes(&own, tied.tie), tied.root)

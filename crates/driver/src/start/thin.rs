@@ -7,7 +7,7 @@ use super::by_heights::by_heights;
 use super::family::Family;
 use super::four_groups::four_groups;
 use super::no_layout::NoLayout;
-use super::plan::{Movement, Plan};
+use super::scheme::{Movement, Scheme};
 use super::shape::least_size;
 use super::space::{Point, Space};
 use super::spacings::{MOST, Passage, Tie, four, three, two};
@@ -15,7 +15,7 @@ use super::spacings::{MOST, Passage, Tie, four, three, two};
 /// A layout of thin groups.
 #[derive(Debug, Clone, PartialEq)]
 pub(super) struct Thin<'a> {
-    pub(super) plan: &'a Plan,
+    pub(super) scheme: &'a Scheme,
     pub(super) family: Family,
     pub(super) powers_per_mm: [f64; MOST],
     /// One entry a state.
@@ -42,20 +42,20 @@ pub(super) const TIES: [Tie; 6] =
 impl<'a> Thin<'a> {
     /// The layout at a point.
     pub(super) fn at(space: &'a Space, point: Point<'_>) -> Result<Self, NoLayout> {
-        let plan = &space.plans[point.plan(space.plans.len())];
-        let shape = Self::shape(space, plan, point)?;
+        let scheme = &space.schemes[point.scheme(space.schemes.len())];
+        let shape = Self::shape(space, scheme, point)?;
         for (passage, ratio) in shape.passages.iter().zip(&space.brief.ratios) {
-            no_focus(&passage.heights[..plan.groups.len()], ratio.ratio)?;
+            no_focus(&passage.heights[..scheme.groups.len()], ratio.ratio)?;
         }
         let scale = Sizes::of(space, &shape, point)?.pick(&shape, point.scale())?;
         Ok(shape.scaled(scale))
     }
 
     /// The layout at some size or other.
-    fn shape(space: &Space, plan: &'a Plan, point: Point<'_>) -> Result<Self, NoLayout> {
-        let count = plan.groups.len();
+    fn shape(space: &Space, scheme: &'a Scheme, point: Point<'_>) -> Result<Self, NoLayout> {
+        let count = scheme.groups.len();
         let ratios: Vec<f64> = space.brief.ratios.iter().map(|ratio| ratio.ratio).collect();
-        let (powers_per_mm, mut tied) = Self::powers(space, plan, &ratios, point)?;
+        let (powers_per_mm, mut tied) = Self::powers(space, scheme, &ratios, point)?;
         let passages = passages(&powers_per_mm, count, &ratios, tied.as_ref());
         let passages = match (passages, &mut tied) {
             (None, Some(tied)) => {
@@ -66,34 +66,34 @@ impl<'a> Thin<'a> {
         };
         let passages = passages.ok_or(NoLayout::Passing)?;
         let family = Family::of(&powers_per_mm[..count]);
-        Ok(Self { plan, family, powers_per_mm, passages, tied })
+        Ok(Self { scheme, family, powers_per_mm, passages, tied })
     }
 
     /// Powers, and what ties the spacings of four groups.
     fn powers(
         space: &Space,
-        plan: &Plan,
+        scheme: &Scheme,
         ratios: &[f64],
         point: Point<'_>,
     ) -> Result<([f64; MOST], Option<Tied>), NoLayout> {
-        let found = match (plan.groups.len(), &plan.movement) {
+        let found = match (scheme.groups.len(), &scheme.movement) {
             (3, Movement::Determined) => {
-                by_heights(plan, ratios, point)?.map(|found| (found, None))
+                by_heights(scheme, ratios, point)?.map(|found| (found, None))
             }
-            (MOST, _) => four_groups(space, plan, ratios, point)
+            (MOST, _) => four_groups(space, scheme, ratios, point)
                 .map(|(powers_per_mm, tied)| (powers_per_mm, Some(tied))),
             _ => None,
         };
         if let Some(found) = found {
             return Ok(found);
         }
-        let powers_per_mm = by_family(plan, ratios, point).ok_or(NoLayout::Passing)?;
-        Ok((powers_per_mm, Self::tied(space, plan, point)))
+        let powers_per_mm = by_family(scheme, ratios, point).ok_or(NoLayout::Passing)?;
+        Ok((powers_per_mm, Self::tied(space, scheme, point)))
     }
 
-    fn tied(space: &Space, plan: &Plan, point: Point<'_>) -> Option<Tied> {
+    fn tied(space: &Space, scheme: &Scheme, point: Point<'_>) -> Option<Tied> {
         let (from, to) = point.tied();
-        let (tie, to) = match plan.movement {
+        let (tie, to) = match scheme.movement {
             Movement::Determined | Movement::Filling => return None,
             Movement::Held(tie) => (tie, from),
             Movement::Whole => (Tie::Whole, from),
@@ -118,7 +118,7 @@ impl<'a> Thin<'a> {
 
     /// Where each group stands in a state, mm from whatever the housing keeps still.
     fn positions_mm(&self, passage: &Passage, anchor: Anchor) -> [f64; MOST] {
-        let count = self.plan.groups.len();
+        let count = self.scheme.groups.len();
         let mut positions = [0.0; MOST];
         for g in 1..count {
             positions[g] = positions[g - 1] + passage.spacings_mm[g - 1];
@@ -133,13 +133,13 @@ impl<'a> Thin<'a> {
 }
 
 /// Powers of the family a point names, the first focal length ±1 mm; `None` without a family.
-fn by_family(plan: &Plan, ratios: &[f64], point: Point<'_>) -> Option<[f64; MOST]> {
-    let family = plan.families.get(point.family(plan.families.len()))?;
+fn by_family(scheme: &Scheme, ratios: &[f64], point: Point<'_>) -> Option<[f64; MOST]> {
+    let family = scheme.families.get(point.family(scheme.families.len()))?;
     let mut powers_per_mm = [0.0; MOST];
     for (g, sign) in family.0.iter().enumerate() {
         powers_per_mm[g] = sign.factor() / if g == 0 { 1.0 } else { point.focal_ratio(g) };
     }
-    match (family.0.len(), &plan.movement, ratios) {
+    match (family.0.len(), &scheme.movement, ratios) {
         (2, _, [ratio, ..]) => powers_per_mm[1] = -powers_per_mm[0] / ratio,
         (3, Movement::Filling, [one, other]) => {
             powers_per_mm[2] = family.0[2].factor() / (one * other).sqrt();
@@ -205,12 +205,12 @@ struct Sizes {
 
 impl Sizes {
     fn of(space: &Space, shape: &Thin<'_>, point: Point<'_>) -> Result<Self, NoLayout> {
-        let (plan, count) = (shape.plan, shape.plan.groups.len());
-        let glass: Vec<f64> = (0..count).map(|g| space.likely_length_mm(plan, g)).collect();
+        let (scheme, count) = (shape.scheme, shape.scheme.groups.len());
+        let glass: Vec<f64> = (0..count).map(|g| space.likely_length_mm(scheme, g)).collect();
         let spacing = space.range(LimitKind::SpacingMm);
         let length = space.range(LimitKind::TrackMm);
         let travel = space.range(LimitKind::TravelMm);
-        let anchor = space.housing(plan).anchor();
+        let anchor = space.housing(scheme).anchor();
         let ends = 0.5 * (glass[0] + glass[count - 1]);
         let track_mm = space.brief.written().housing.track_mm.min(length.max) - ends;
         let lengths = shape.passages.iter().map(Passage::length_mm);
@@ -237,7 +237,7 @@ impl Sizes {
                 ahead + ends_of(positions.iter().map(|p| p[count - 1])).max
             }
         };
-        let filling = matches!(plan.movement, Movement::Filling | Movement::Whole);
+        let filling = matches!(scheme.movement, Movement::Filling | Movement::Whole);
         Ok(Self {
             least,
             by_curves: least_size(space, shape, point)?,
@@ -268,7 +268,7 @@ impl Sizes {
         if self.filling.is_some() && size > self.by_travel {
             return Err(NoLayout::Travel);
         }
-        if size < self.shortest && shape.plan.movement != Movement::Whole {
+        if size < self.shortest && shape.scheme.movement != Movement::Whole {
             return Err(NoLayout::Short);
         }
         Ok(size)

@@ -36,9 +36,9 @@ use point::{Neighbour, Outcome};
 
 pub use document::plan_schema;
 pub use gathering::SweepGathering;
-pub use plan::{MOST_POINTS, Plan, PlanFile};
+pub use plan::{Plan, PlanFile};
 pub use point::{PointResult, Reached};
-pub use results::{Quantity, SweepResults};
+pub use results::{Figure, SweepResults};
 pub use subject::Subject;
 
 /// What a run folder calls this sort of work.

@@ -8,7 +8,7 @@ use super::axis::{Axis, axis, complaint};
 use super::document::{PlanDocument, SampleDocument, SampleKind, plan_schema};
 use super::order::{Order, unfold};
 use super::point::PointResult;
-use super::results::Quantity;
+use super::results::Figure;
 use super::subject::{BRIEF_KEY, DESIGN_KEY, Subject};
 use crate::brief::BriefFile;
 use crate::design_file::DesignFile;
@@ -16,7 +16,7 @@ use crate::document_kind::PLAN;
 use crate::sampling::{LatinHypercube, Sobol};
 
 /// Most points of a sweep.
-pub const MOST_POINTS: usize = 100_000;
+pub(super) const MOST_POINTS: usize = 100_000;
 
 /// Most values of all axes in all points: some hundred megabytes.
 const MOST_VALUES: usize = 1_000_000;
@@ -129,12 +129,12 @@ impl PlanFile {
         Ok(Plan { title, axes: addresses, points, order, starts, seed, front })
     }
 
-    fn front(&self, subject: &Subject, wrong: &mut Vec<Complaint>) -> Option<[Quantity; 2]> {
+    fn front(&self, subject: &Subject, wrong: &mut Vec<Complaint>) -> Option<[Figure; 2]> {
         let words = self.written.front.as_ref()?;
         let axes: Vec<&str> = self.written.axes.iter().map(|axis| axis.at.as_str()).collect();
         let at = |number: usize| Address::root().key("front").index(number);
         let mut read = |number: usize| {
-            let found = Quantity::read(&words[number], subject, &axes);
+            let found = Figure::read(&words[number], subject, &axes);
             found
                 .map_err(|error| wrong.push(Complaint { place: Place::Value(at(number)), ..error }))
                 .ok()
@@ -227,7 +227,7 @@ pub struct Plan {
     pub(super) starts: u32,
     pub(super) seed: u64,
     /// Two results to weigh against each other.
-    pub front: Option<[Quantity; 2]>,
+    pub(crate) front: Option<[Figure; 2]>,
 }
 
 impl Plan {

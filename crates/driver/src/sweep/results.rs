@@ -31,9 +31,9 @@ const NAMED: [Named; 5] = [
 
 /// A number of a point: a result, the value of an axis, or what stands at an address of its design.
 #[derive(Debug, Clone)]
-pub struct Quantity {
+pub struct Figure {
     /// Its word, or its address.
-    pub word: String,
+    pub(crate) word: String,
     what: What,
 }
 
@@ -45,7 +45,7 @@ enum What {
     Number(Address),
 }
 
-impl Quantity {
+impl Figure {
     /// The merit.
     #[must_use]
     pub fn merit() -> Self {
@@ -111,8 +111,8 @@ impl Quantity {
     }
 }
 
-/// Both quantities of every point that has them, by its number.
-fn weighed(points: &[PointResult], by: &[Quantity; 2]) -> Vec<(u64, [f64; 2])> {
+/// Both figures of every point that has them, by its number.
+fn weighed(points: &[PointResult], by: &[Figure; 2]) -> Vec<(u64, [f64; 2])> {
     let both = |point| Some([by[0].of(point)?, by[1].of(point)?]);
     points.iter().filter_map(|point| Some((point.number, both(point)?))).collect()
 }

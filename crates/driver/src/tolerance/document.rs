@@ -131,9 +131,9 @@ pub struct Tolerances {
     /// The named set.
     pub grade: Grade,
     /// Whether the file names one.
-    pub graded: bool,
+    pub(crate) graded: bool,
     /// How errors are spread.
-    pub spread: Spread,
+    pub(crate) spread: Spread,
     /// Own tolerances in the order of the file: what they are about, and the tolerance.
     pub(crate) own: Vec<(Kind, Target, f64)>,
     /// What drawings say besides, in the order of the file, and what each entry is about.

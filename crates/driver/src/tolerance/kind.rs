@@ -194,7 +194,7 @@ impl Spread {
 
     /// Mean square of a single number, in units of the tolerance squared.
     #[must_use]
-    pub fn mean_square(self) -> f64 {
+    pub(crate) fn mean_square(self) -> f64 {
         match self {
             // σ²(1 − 2kφ(k)/(2Φ(k) − 1)) at k = 2, σ = ½ (N. L. Johnson, S. Kotz, N. Balakrishnan,
             // Continuous Univariate Distributions 1, 2nd ed., §10.1).
@@ -208,7 +208,7 @@ impl Spread {
 
     /// Mean square length of a vector across the axis, in units of the tolerance squared.
     #[must_use]
-    pub fn mean_square_across(self) -> f64 {
+    pub(crate) fn mean_square_across(self) -> f64 {
         match self {
             // The squared length of a plane normal vector is exponential, here cut at 2 (in units
             // of 2σ²): ∫₀² x e⁻ˣ dx / (1 − e⁻²), and 2σ² is a half.

@@ -56,7 +56,7 @@ impl Requirement {
 
     /// What is allowed of a quantity.
     #[must_use]
-    pub fn within(&self, quantity: Quantity) -> Option<f64> {
+    pub(crate) fn within(&self, quantity: Quantity) -> Option<f64> {
         match quantity {
             Quantity::WavefrontRmsWaves => self.wavefront_rms_waves,
             Quantity::RatioPercent => self.ratio_percent,

@@ -49,7 +49,7 @@ pub struct Held {
     /// Paraxial ratio.
     pub ratio: f64,
     /// Its derivative by every spacing, 1/mm.
-    pub ratio_by_spacing: Vec<f64>,
+    pub(crate) ratio_by_spacing: Vec<f64>,
     /// Collimation, rad.
     pub collimation_rad: f64,
     /// Its derivative by every spacing, rad/mm.
@@ -90,6 +90,9 @@ pub struct Gauge {
 }
 
 impl Gauge {
+    /// Measures a zoom state of a design, its spacings aside, at a wavelength in air; as if it were to
+    /// leave collimated.
+    ///
     /// # Errors
     /// A glass is not known at the wavelength.
     pub fn new(design: &Design, state: &ZoomState, wavelength_nm: f64) -> Result<Self, GlassError> {

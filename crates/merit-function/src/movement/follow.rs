@@ -48,7 +48,7 @@ pub struct Point {
     /// What was held, and its derivatives.
     pub held: Held,
     /// Sign of the determinant of J: it changes where the curve turns back.
-    pub sense: f64,
+    pub(crate) sense: f64,
 }
 
 /// Why there is no point, or no further one.
@@ -68,7 +68,7 @@ pub struct Equations {
     /// How the groups slide.
     pub slide: Slide,
     /// What measures ratio and collimation.
-    pub gauge: Gauge,
+    pub(crate) gauge: Gauge,
     /// Whether collimation is among them: not with one moving group.
     pub hold_collimation: bool,
     /// Among the moving groups, those that follow a guide.

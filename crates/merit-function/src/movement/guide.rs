@@ -15,7 +15,7 @@ pub struct MonotoneCubic {
 
 impl MonotoneCubic {
     /// Through at least two points whose abscissae ascend.
-    pub fn through(at: &[f64], values: &[f64]) -> Self {
+    pub(crate) fn through(at: &[f64], values: &[f64]) -> Self {
         let steps: Vec<f64> = at.windows(2).map(|pair| pair[1] - pair[0]).collect();
         let rises = values.windows(2).zip(&steps).map(|(pair, step)| (pair[1] - pair[0]) / step);
         let rises: Vec<f64> = rises.collect();

@@ -16,7 +16,7 @@ const HALVINGS: usize = 48;
 
 /// Chebyshev points between two ratios, and the sums over them that a polynomial is told by.
 #[derive(Debug, Clone, PartialEq)]
-pub struct Interpolant {
+pub(crate) struct Interpolant {
     /// t at both ends.
     ends: [f64; 2],
     /// −1 where ratios are negative.
@@ -28,11 +28,11 @@ pub struct Interpolant {
 
 /// A polynomial by its Chebyshev coefficients.
 #[derive(Debug, Clone, PartialEq)]
-pub struct Polynomial(Vec<f64>);
+pub(crate) struct Polynomial(Vec<f64>);
 
 /// What is told of a position: it, or its slope by the ratio.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
-pub enum Aspect {
+pub(crate) enum Aspect {
     /// The value itself.
     Value,
     /// Its derivative by the ratio.
@@ -41,17 +41,17 @@ pub enum Aspect {
 
 /// The lowest value in a panel.
 #[derive(Debug, Clone, Copy, PartialEq)]
-pub struct Lowest {
+pub(crate) struct Lowest {
     /// The value.
-    pub value: f64,
+    pub(crate) value: f64,
     /// Where it is, as t.
-    pub at: f64,
+    pub(crate) at: f64,
 }
 
 impl Interpolant {
     /// `count` points, at least three, from one ratio to a greater one of the same sign.
     #[must_use]
-    pub fn over(low: f64, high: f64, count: usize) -> Self {
+    pub(crate) fn over(low: f64, high: f64, count: usize) -> Self {
         let sign = if low < 0.0 { -1.0 } else { 1.0 };
         let t = |ratio: f64| sign * ratio.abs().ln();
         let ends = [t(low), t(high)];
@@ -77,25 +77,25 @@ impl Interpolant {
 
     /// t at every point.
     #[must_use]
-    pub fn points(&self) -> &[f64] {
+    pub(crate) fn points(&self) -> &[f64] {
         &self.points
     }
 
     /// t of a ratio.
     #[must_use]
-    pub fn place(&self, ratio: f64) -> f64 {
+    pub(crate) fn place(&self, ratio: f64) -> f64 {
         self.sign * ratio.abs().ln()
     }
 
     /// The ratio at t.
     #[must_use]
-    pub fn ratio(&self, t: f64) -> f64 {
+    pub(crate) fn ratio(&self, t: f64) -> f64 {
         self.sign * (self.sign * t).exp()
     }
 
     /// The polynomial through these values at the points.
     #[must_use]
-    pub fn through(&self, values: &[f64]) -> Polynomial {
+    pub(crate) fn through(&self, values: &[f64]) -> Polynomial {
         let rows = self.transform.chunks(self.points.len());
         let dot = |row: &[f64]| row.iter().zip(values).map(|(count, value)| count * value).sum();
         Polynomial(rows.map(dot).collect())
@@ -103,7 +103,7 @@ impl Interpolant {
 
     /// What each value counts in the aspect of the polynomial at t.
     #[must_use]
-    pub fn counts(&self, aspect: Aspect, t: f64) -> Vec<f64> {
+    pub(crate) fn counts(&self, aspect: Aspect, t: f64) -> Vec<f64> {
         let mut counts = vec![0.0; self.points.len()];
         for (basis, row) in self.basis(t).zip(self.transform.chunks(self.points.len())) {
             let basis = match aspect {
@@ -148,7 +148,7 @@ impl Interpolant {
 
     /// An aspect of a polynomial at t: dm/dt = |m|.
     #[must_use]
-    pub fn aspect(&self, polynomial: &Polynomial, aspect: Aspect, t: f64) -> f64 {
+    pub(crate) fn aspect(&self, polynomial: &Polynomial, aspect: Aspect, t: f64) -> f64 {
         let [value, slope, _] = self.at(polynomial, t);
         match aspect {
             Aspect::Value => value,
@@ -167,7 +167,7 @@ impl Interpolant {
 
     /// The lowest value of `sign` times an aspect between two t.
     #[must_use]
-    pub fn lowest(
+    pub(crate) fn lowest(
         &self,
         polynomial: &Polynomial,
         aspect: Aspect,
@@ -203,7 +203,7 @@ impl Interpolant {
 impl Polynomial {
     /// Size of the last two coefficients: about what is missing of the function it stands for.
     #[must_use]
-    pub fn tail(&self) -> f64 {
+    pub(crate) fn tail(&self) -> f64 {
         self.0.iter().rev().take(2).map(|coefficient| coefficient.abs()).sum()
     }
 }

@@ -19,7 +19,8 @@ mod way;
 pub use collimation::{Gauge, Held, HeldFault};
 pub use follow::{Equations, FROM_A_STATE, Point, Stop};
 pub use guide::MonotoneCubic;
-pub use interpolant::{Aspect, Interpolant, Lowest, Polynomial};
+#[cfg(test)]
+pub(crate) use interpolant::Aspect;
 pub use knots::{NoWay, SAME, knots, knots_of};
 pub(crate) use measure::WayMeasure;
 pub use set_up::wavelengths_nm;

@@ -44,8 +44,7 @@ impl MeritFunction {
         direction: &impl Fn(usize, f64) -> Vec<(usize, f64)>,
     ) -> Result<(Vec<f64>, Vec<f64>), EvaluationFault> {
         let rows = self.shape().rows[k];
-        let wavefronts = self.states[k].bundled.len() + self.states[k].focused.len();
-        let traced = wavefronts * self.beam.rays;
+        let traced = self.states[k].wavefronts() * self.beam.rays;
         let mut slopes = vec![0.0; rows];
         let mut residuals = vec![0.0; rows];
         for (w, nm) in self.states[k].wavelengths_nm.clone().into_iter().enumerate() {

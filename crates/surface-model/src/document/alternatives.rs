@@ -2,8 +2,10 @@
 
 use serde_json::{Map, Value};
 
+use super::problems::Problems;
 use super::shape::{KeyShape, Shape};
-use super::structure::{Problems, Trail, check_choice, check_node, wrong_type};
+use super::structure::{check_choice, check_node, wrong_type};
+use super::trail::Trail;
 
 /// Checks a value against the alternatives of a schema, if it has any: it has to fulfil one of
 /// them. If it does not, the complaint is about the alternative that it comes nearest to.

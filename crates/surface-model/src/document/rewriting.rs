@@ -3,8 +3,10 @@
 
 use serde_json::{Number, Value, json};
 
+use super::problems::Problems;
 use super::shape::Shape;
-use super::structure::{Problems, Trail, check_node};
+use super::structure::check_node;
+use super::trail::Trail;
 
 /// How to write the value so that it is allowed there, if that is easily told.
 pub(super) fn differently_written(value: &Value, shape: Shape, at: Trail) -> Option<String> {

@@ -3,7 +3,7 @@
 use std::sync::atomic::{AtomicBool, Ordering};
 
 use driver::overnight::Finds;
-use driver::run::{Finished, Saving, TakenUp, Tally, Watcher};
+use driver::run::{Earlier, Finished, Saving, Tally, Watcher};
 use driver::search::StartResult;
 
 use super::request::Request;
@@ -40,8 +40,8 @@ impl<'a> NightWatch<'a> {
 }
 
 impl Watcher<StartResult> for NightWatch<'_> {
-    fn taken_up(&mut self, taken_up: &TakenUp) {
-        self.teller.taken_up(&self.run, taken_up, self.quiet);
+    fn earlier(&mut self, earlier: &Earlier) {
+        self.teller.earlier(&self.run, earlier, self.quiet);
     }
 
     fn found(&mut self, finished: Finished<StartResult>) {

@@ -4,7 +4,7 @@ use std::collections::BTreeMap;
 use std::path::Path;
 use std::sync::atomic::{AtomicBool, Ordering};
 
-use driver::run::{Finished, Saving, TakenUp, Tally, Watcher};
+use driver::run::{Earlier, Finished, Saving, Tally, Watcher};
 use driver::sweep::{PointResult, Sweep};
 
 use super::request::Request;
@@ -48,8 +48,8 @@ impl<'a> SweepWatch<'a> {
 }
 
 impl Watcher<PointResult> for SweepWatch<'_> {
-    fn taken_up(&mut self, taken_up: &TakenUp) {
-        self.teller.taken_up(&self.run, taken_up, self.quiet);
+    fn earlier(&mut self, earlier: &Earlier) {
+        self.teller.earlier(&self.run, earlier, self.quiet);
     }
 
     fn found(&mut self, finished: Finished<PointResult>) {

@@ -39,7 +39,7 @@ fn a_panic_is_an_error_that_names_its_unit_and_loses_nothing() {
         let mended = Digits::default();
         let (end, keeper) =
             session(folder.path(), Share::WHOLE, &mended, &units(40), threads, None).unwrap();
-        let before = keeper.taken_up.unwrap().finished;
+        let before = keeper.earlier.unwrap().finished;
         assert!(before < 40 && (threads > 1 || before == 17), "{before}");
         assert_eq!(mended.performed.into_inner(), 40 - before);
         assert_eq!((end.stop, keeper.result(&end)), (Stop::Complete, expected.clone()));

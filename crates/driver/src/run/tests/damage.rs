@@ -20,12 +20,12 @@ fn scene() -> Scene {
 
 impl Scene {
     /// Puts a journal in place of the whole one and goes on.
-    fn go_on(&self, journal: &[u8]) -> Result<(String, TakenUp), RunError> {
+    fn go_on(&self, journal: &[u8]) -> Result<(String, Earlier), RunError> {
         self.put("journal.jsonl", journal);
         let work = Digits::default();
         let (end, keeper) =
             session(self.folder.path(), Share::WHOLE, &work, &units(UNITS), 2, None)?;
-        Ok((keeper.result(&end), keeper.taken_up.unwrap()))
+        Ok((keeper.result(&end), keeper.earlier.unwrap()))
     }
 
     fn put(&self, name: &str, text: &[u8]) {
@@ -43,13 +43,13 @@ fn a_journal_cut_anywhere_goes_on_to_the_same_end() {
     let mut whole_lines = 0;
     for cut in 0..=scene.journal.len() {
         let kept = &scene.journal[..cut];
-        let (result, taken_up) = scene.go_on(kept).unwrap();
+        let (result, earlier) = scene.go_on(kept).unwrap();
         assert_eq!(result, scene.expected, "cut at {cut}");
         let end_of_lines = kept.iter().rposition(|&byte| byte == b'\n').map_or(0, |at| at + 1);
-        assert_eq!(taken_up.dropped_bytes, (cut - end_of_lines) as u64);
+        assert_eq!(earlier.dropped_bytes, (cut - end_of_lines) as u64);
         let lines = kept.iter().filter(|&&byte| byte == b'\n').count() as u64;
         // The first line begins the session and the last ends it.
-        assert_eq!(taken_up.finished, lines.saturating_sub(1).min(UNITS));
+        assert_eq!(earlier.finished, lines.saturating_sub(1).min(UNITS));
         whole_lines = whole_lines.max(lines);
         assert_eq!(scene.go_on_again().1.dropped_bytes, 0, "what was torn is gone for good");
     }
@@ -57,7 +57,7 @@ fn a_journal_cut_anywhere_goes_on_to_the_same_end() {
 }
 
 impl Scene {
-    fn go_on_again(&self) -> (String, TakenUp) {
+    fn go_on_again(&self) -> (String, Earlier) {
         let journal = std::fs::read(self.folder.path().join("journal.jsonl")).unwrap();
         self.go_on(&journal).unwrap()
     }
@@ -79,15 +79,15 @@ fn zeros_garbage_and_spoilt_bytes_at_the_end_are_dropped() {
                 assert!(matches!(scene.go_on(&journal), Err(RunError::Damaged { .. })));
                 continue;
             }
-            let (result, taken_up) = scene.go_on(&journal).unwrap();
-            assert_eq!((result, taken_up.finished), (scene.expected.clone(), 3), "byte {at}");
+            let (result, earlier) = scene.go_on(&journal).unwrap();
+            assert_eq!((result, earlier.finished), (scene.expected.clone(), 3), "byte {at}");
         }
     }
     for tail in [&[0; 4096][..], b"garbage", b"{}", b"\n", b"null\n", &[0xff; 100]] {
         let journal = [&scene.journal[..valid], tail].concat();
-        let (result, taken_up) = scene.go_on(&journal).unwrap();
-        assert_eq!((result, taken_up.finished), (scene.expected.clone(), 3));
-        assert_eq!(taken_up.dropped_bytes, tail.len() as u64);
+        let (result, earlier) = scene.go_on(&journal).unwrap();
+        assert_eq!((result, earlier.finished), (scene.expected.clone(), 3));
+        assert_eq!(earlier.dropped_bytes, tail.len() as u64);
     }
 }
 

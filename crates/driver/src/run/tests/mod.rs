@@ -49,14 +49,14 @@ impl Work for Digits {
 #[derive(Default)]
 pub(super) struct Keeper {
     units: Vec<Finished<Yield>>,
-    taken_up: Option<TakenUp>,
+    earlier: Option<Earlier>,
     stop_after: Option<usize>,
     savings: usize,
 }
 
 impl Watcher<Yield> for Keeper {
-    fn taken_up(&mut self, taken_up: &TakenUp) {
-        self.taken_up = Some(*taken_up);
+    fn earlier(&mut self, earlier: &Earlier) {
+        self.earlier = Some(*earlier);
     }
     fn found(&mut self, finished: Finished<Yield>) {
         self.units.push(finished);
@@ -66,7 +66,7 @@ impl Watcher<Yield> for Keeper {
         self.savings += 1;
     }
     fn interrupted(&self) -> bool {
-        let before = self.taken_up.map_or(0, |taken_up| taken_up.finished as usize);
+        let before = self.earlier.map_or(0, |earlier| earlier.finished as usize);
         self.stop_after.is_some_and(|after| self.units.len() - before >= after)
     }
 }
@@ -77,7 +77,7 @@ impl Keeper {
         let mut counted: Vec<(u64, String)> = self
             .units
             .iter()
-            .filter(|unit| end.counts(unit.number))
+            .filter(|unit| end.counted_below.is_none_or(|below| unit.number < below))
             .map(|unit| (unit.number, serde_json::to_string(&unit.done).unwrap()))
             .collect();
         counted.sort();

@@ -1,8 +1,10 @@
 //! Values and gradients of the limit rows at a point.
 
 use nalgebra::DVector;
+use surface_model::design::Design;
 use surface_model::gaussian::{GaussianPath, GaussianWeights, peak_per_cm2};
 use surface_model::ghost::GhostWay;
+use surface_model::glass::GlassError;
 use surface_model::paraxial::{ParaxialRay, ParaxialWeights};
 use surface_model::quantities::Quantities;
 use surface_model::skew::{RayPath, RayStart, trace_ray};
@@ -12,13 +14,14 @@ use crate::block::LimitRow;
 use crate::edge::{edge_gradient, edge_mm};
 use crate::fault::EvaluationFault;
 use crate::limit_rows::{Measured, RowRule};
-use crate::problem::StateOptics;
+use crate::limits::Limits;
+use crate::state_optics::StateOptics;
 use crate::variables::Variables;
 use crate::way_rows::WayRows;
 
 /// Evaluates the limit rows of a problem. Buffers are kept from call to call.
 #[derive(Debug)]
-pub(crate) struct RowEvaluator {
+pub(crate) struct LimitEvaluator {
     rules: Vec<RowRule>,
     edge_mm: f64,
     pulse_energy_j: f64,
@@ -59,28 +62,32 @@ struct StateRays {
     edge: Option<RayPath>,
 }
 
-impl RowEvaluator {
-    /// Rows by these rules; the edge ray enters at `edge_mm`, a pulse has `pulse_energy_j`.
-    pub(crate) fn new(
-        rules: Vec<RowRule>,
-        way: Option<WayRows>,
-        edge_mm: f64,
-        pulse_energy_j: f64,
-    ) -> Self {
-        Self {
-            way,
+impl LimitEvaluator {
+    /// The rows of these limits on `design` over these variables.
+    ///
+    /// # Errors
+    /// A glass is not known at the wavelength of the way between the states.
+    pub(crate) fn of(
+        design: &Design,
+        limits: &Limits,
+        variables: &Variables,
+    ) -> Result<Self, GlassError> {
+        let rules = RowRule::all(design, limits, variables);
+        let on_the_way = rules.iter().any(|rule| matches!(rule.measured, Measured::OnTheWay(_)));
+        Ok(Self {
+            way: if on_the_way { WayRows::of(design, variables)? } else { None },
             places: vec![0.0; rules.len()],
             ways: vec![None; rules.len()],
             rules,
-            edge_mm,
-            pulse_energy_j,
+            edge_mm: design.beam.edge_mm(),
+            pulse_energy_j: 1e-3 * design.beam.laser.pulse_energy_mj.unwrap_or(0.0),
             focus_in_sight: FOCUS_IN_SIGHT,
             ghost_in_sight_mm: GHOST_IN_SIGHT_MM,
             ghosts_looked_at: true,
             rays: Vec::new(),
             gradient: Vec::new(),
             values: Vec::new(),
-        }
+        })
     }
 
     /// Height of the ray whose incidence is limited, mm.
@@ -256,38 +263,49 @@ impl RowEvaluator {
         variables: &Variables,
         row: &mut LimitRow,
     ) -> Result<(), EvaluationFault> {
-        let Self {
-            rules,
-            rays,
-            ways,
-            way,
-            gradient,
-            edge_mm,
-            focus_in_sight,
-            ghost_in_sight_mm,
-            ..
-        } = self;
-        let rule = &rules[i];
+        let rule = &self.rules[i];
         let k = rule.state.unwrap_or(0);
-        let state = &states[k];
-        let train = &state.train;
-        let own = rule.state.map_or(0, |k| variables.own(k).len());
         row.tolerance = rule.tolerance;
         row.state = rule.state;
         reset(&mut row.by_shared, variables.shared().len());
-        reset(&mut row.by_own, own);
-
-        if let Measured::OnTheWay(measured) = &rule.measured {
-            let at = self.places[i];
-            return match way {
-                Some(way) if at.is_finite() => {
-                    let place = (rule.sign, at);
-                    way.gradient(*measured, place, states, variables, &mut row.by_shared)
-                }
-                _ => Ok(()),
-            };
+        reset(&mut row.by_own, rule.state.map_or(0, |k| variables.own(k).len()));
+        let Measured::OnTheWay(measured) = &rule.measured else {
+            if row.value > self.in_sight(&rule.measured) {
+                return Ok(());
+            }
+            return self.gradient_in_a_state(i, k, &states[k], variables.quantities(), row);
+        };
+        let at = self.places[i];
+        match &mut self.way {
+            Some(way) if at.is_finite() => {
+                way.gradient(*measured, (rule.sign, at), states, variables, &mut row.by_shared)
+            }
+            _ => Ok(()),
         }
-        let quantities = variables.quantities();
+    }
+
+    /// Above this value a row is left alone: a beam far from a focus, a ghost far from glass.
+    fn in_sight(&self, measured: &Measured) -> f64 {
+        match measured {
+            Measured::MarginalHeight(_) | Measured::EdgeRayHeight(_) => self.focus_in_sight,
+            Measured::GhostClearance(_) => self.ghost_in_sight_mm,
+            _ => f64::INFINITY,
+        }
+    }
+
+    /// The gradient of a row that is measured in one state, number `k`.
+    fn gradient_in_a_state(
+        &mut self,
+        i: usize,
+        k: usize,
+        state: &StateOptics,
+        quantities: Quantities,
+        row: &mut LimitRow,
+    ) -> Result<(), EvaluationFault> {
+        let Self { rules, rays, ways, gradient, .. } = self;
+        let rule = &rules[i];
+        let train = &state.train;
+        let overflow = || EvaluationFault::overflow(&state.name);
         let StateRays { paraxial, gaussian, edge } = &mut rays[k];
         let LimitRow { by_shared, by_own, .. } = row;
         let mut put = |quantity: usize, by: f64| {
@@ -310,52 +328,48 @@ impl RowEvaluator {
                 incidence_gradient(edge.as_ref(), quantities, *surface, gradient);
                 gradient.iter().enumerate().for_each(|(quantity, &by)| put(quantity, by));
             }
-            // A beam far from a focus is left alone.
-            Measured::MarginalHeight(_) | Measured::EdgeRayHeight(_)
-                if row.value > *focus_in_sight => {}
             Measured::EdgeRayHeight(surface) => {
                 if let Some(ray) = edge {
                     let by_height = ray.differentiate_height(*surface, quantities);
-                    by_height.iter().enumerate().for_each(|(q, by)| put(q, by / *edge_mm));
+                    by_height.iter().enumerate().for_each(|(q, by)| put(q, by / self.edge_mm));
                 }
             }
             Measured::MarginalHeight(surface) => {
                 let weights = ParaxialWeights { heights: &[(*surface, 1.0)], exit_slope: 0.0 };
                 gradient.resize(quantities.count(), 0.0);
-                paraxial
-                    .differentiate(train, weights, quantities, gradient)
-                    .map_err(|_| EvaluationFault::overflow(&state.name))?;
+                let done = paraxial.differentiate(train, weights, quantities, gradient);
+                done.map_err(|_| overflow())?;
                 gradient.iter().enumerate().for_each(|(quantity, &by)| put(quantity, by));
             }
-            // F = 2E/(πw²) with w² = a² + b²
             Measured::Fluence(surface) => {
-                let [a, b] = gaussian.heights(*surface);
-                let radius_squared = a * a + b * b;
-                let fluence = peak_per_cm2(self.pulse_energy_j, radius_squared.sqrt());
-                let factor = -2.0 * fluence / radius_squared;
-                let heights = Some((*surface, [factor * a, factor * b]));
-                let weights = GaussianWeights { heights, exit_slopes: [0.0; 2] };
+                let weights = fluence_weights(gaussian, *surface, self.pulse_energy_j);
                 gradient.resize(quantities.count(), 0.0);
-                gaussian
-                    .differentiate(train, weights, quantities, gradient)
-                    .map_err(|_| EvaluationFault::overflow(&state.name))?;
+                let done = gaussian.differentiate(train, weights, quantities, gradient);
+                done.map_err(|_| overflow())?;
                 gradient.iter().enumerate().for_each(|(quantity, &by)| put(quantity, by));
             }
-            // Done above.
-            Measured::OnTheWay(_) => {}
-            // A ghost far from glass is left alone.
-            Measured::GhostClearance(_) if row.value > *ghost_in_sight_mm => {}
             Measured::GhostClearance(_) => {
                 if let Some(way) = &mut ways[i]
                     && let Some(focus) = way.closest()
                 {
-                    way.differentiate(&focus, quantities, put)
-                        .map_err(|_| EvaluationFault::overflow(&state.name))?;
+                    way.differentiate(&focus, quantities, put).map_err(|_| overflow())?;
                 }
             }
+            // Of no one state.
+            Measured::OnTheWay(_) => {}
         }
         Ok(())
     }
+}
+
+/// How much each of the two rays counts in the derivative of F = 2E/(πw²), with w² = a² + b².
+fn fluence_weights(path: &GaussianPath, surface: usize, pulse_energy_j: f64) -> GaussianWeights {
+    let [a, b] = path.heights(surface);
+    let radius_squared = a * a + b * b;
+    let fluence = peak_per_cm2(pulse_energy_j, radius_squared.sqrt());
+    let factor = -2.0 * fluence / radius_squared;
+    let heights = Some((surface, [factor * a, factor * b]));
+    GaussianWeights { heights, exit_slopes: [0.0; 2] }
 }
 
 fn reset(vector: &mut DVector<f64>, length: usize) {

@@ -19,7 +19,7 @@ pub(super) enum Kind {
 
 /// A group before it has lenses.
 #[derive(Debug, Clone, PartialEq, Eq)]
-pub(super) struct GroupPlan {
+pub(super) struct GroupScheme {
     pub(super) name: String,
     pub(super) elements: Vec<Kind>,
 }
@@ -45,8 +45,8 @@ pub(super) enum Movement {
 
 /// One way to set the job up.
 #[derive(Debug, Clone, PartialEq, Eq)]
-pub(super) struct Plan {
-    pub(super) groups: Vec<GroupPlan>,
+pub(super) struct Scheme {
+    pub(super) groups: Vec<GroupScheme>,
     pub(super) fixed: Vec<bool>,
     pub(super) movement: Movement,
     pub(super) families: Vec<Family>,
@@ -65,7 +65,7 @@ fn names(groups: usize) -> &'static [&'static str] {
 ///
 /// # Errors
 /// None of them can do the job, whatever the powers.
-pub(super) fn plans(brief: &BriefFile, pairs_possible: bool) -> Result<Vec<Plan>, StartError> {
+pub(super) fn schemes(brief: &BriefFile, pairs_possible: bool) -> Result<Vec<Scheme>, StartError> {
     let inverted = brief.ratios.iter().any(|ratio| ratio.ratio < 0.0);
     if inverted && brief.wishes.limits.forbid_internal_focus {
         return Err(StartError::Inverted);
@@ -73,21 +73,21 @@ pub(super) fn plans(brief: &BriefFile, pairs_possible: bool) -> Result<Vec<Plan>
     entrance(brief)?;
     let by_colour = brief.ratios.iter().any(|ratio| ratio.wavelengths_nm.len() > 1);
     let standard = if by_colour && pairs_possible { Kind::Pair } else { Kind::Singlet };
-    let mut plans = Vec::new();
+    let mut schemes = Vec::new();
     let mut refused = None;
-    for groups in group_plans(brief, standard) {
-        match plan(brief, groups, inverted) {
-            Ok(plan) => plans.push(plan),
+    for groups in group_schemes(brief, standard) {
+        match scheme(brief, groups, inverted) {
+            Ok(scheme) => schemes.push(scheme),
             Err(error) => refused = refused.or(Some(error)),
         }
     }
-    let asked = plans.iter().flat_map(|plan| &plan.groups).flat_map(|group| &group.elements);
+    let asked = schemes.iter().flat_map(|scheme| &scheme.groups).flat_map(|group| &group.elements);
     if !pairs_possible && asked.clone().any(|&kind| kind == Kind::Pair) {
         return Err(StartError::NoPair);
     }
     match refused {
-        Some(error) if plans.is_empty() => Err(error),
-        _ => Ok(plans),
+        Some(error) if schemes.is_empty() => Err(error),
+        _ => Ok(schemes),
     }
 }
 
@@ -105,23 +105,27 @@ fn entrance(brief: &BriefFile) -> Result<(), StartError> {
 }
 
 /// The groups that are asked for, or those the program would try.
-fn group_plans(brief: &BriefFile, standard: Kind) -> Vec<Vec<GroupPlan>> {
+fn group_schemes(brief: &BriefFile, standard: Kind) -> Vec<Vec<GroupScheme>> {
     if let Some(groups) = &brief.written().groups {
         let group = |group: &crate::brief::GroupBriefDocument| {
             let count = group.elements.or(group.pairs).unwrap_or(1).max(1);
             let all = if standard == Kind::Pair { count } else { 0 };
             let pairs = group.pairs.unwrap_or(all);
             let kind = |e: usize| if e < pairs { Kind::Pair } else { Kind::Singlet };
-            GroupPlan { name: group.name.clone(), elements: (0..count).map(kind).collect() }
+            GroupScheme { name: group.name.clone(), elements: (0..count).map(kind).collect() }
         };
         return vec![groups.iter().map(group).collect()];
     }
     let counts = if brief.ratios.len() == 1 { [2, 3] } else { [3, 4] };
-    let group = |name: &&str| GroupPlan { name: (*name).to_owned(), elements: vec![standard] };
+    let group = |name: &&str| GroupScheme { name: (*name).to_owned(), elements: vec![standard] };
     counts.map(|count| names(count).iter().map(group).collect()).into()
 }
 
-fn plan(brief: &BriefFile, groups: Vec<GroupPlan>, inverted: bool) -> Result<Plan, StartError> {
+fn scheme(
+    brief: &BriefFile,
+    groups: Vec<GroupScheme>,
+    inverted: bool,
+) -> Result<Scheme, StartError> {
     let names = brief.written().housing.fixed.as_slice();
     let fixed: Vec<bool> = groups.iter().map(|group| names.contains(&group.name)).collect();
     let movement = movement(&fixed, brief.ratios.len())?;
@@ -138,7 +142,7 @@ fn plan(brief: &BriefFile, groups: Vec<GroupPlan>, inverted: bool) -> Result<Pla
     if groups.len() == 3 && movement == Movement::Filling && !one_way {
         return Err(StartError::TooFewMovers { groups: 3, fixed: 2, ratios: ratios.len() });
     }
-    Ok(Plan { groups, fixed, movement, families })
+    Ok(Scheme { groups, fixed, movement, families })
 }
 
 /// Whether two groups of these signs, a positive distance apart, give this ratio: f₂ = −Mf₁ and
