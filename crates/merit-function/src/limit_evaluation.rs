@@ -25,8 +25,7 @@ pub(crate) struct LimitEvaluator {
     rules: Vec<RowRule>,
     edge_mm: f64,
     pulse_energy_j: f64,
-    focus_in_sight: f64,
-    ghost_in_sight_mm: f64,
+    sight: Sight,
     ghosts_looked_at: bool,
     rays: Vec<StateRays>,
     /// Per rule, the way of its ghost, once it has been looked at.
@@ -39,14 +38,35 @@ pub(crate) struct LimitEvaluator {
     values: Vec<f64>,
 }
 
-/// Heights above the limit, over the height at entry, from which on a marginal ray counts as far
-/// from a focus: its limit then has no gradient and cannot hold up a step. A step that jumps the
-/// whole way is seen by the limit's value, and rejected.
-const FOCUS_IN_SIGHT: f64 = 0.3;
+/// How far rows see: one that is kept by more has no gradient, costs none, and cannot hold up a
+/// step. A step that jumps the whole way is seen by the row's value, and rejected.
+#[derive(Debug)]
+struct Sight {
+    /// Height of a marginal ray above its limit, over the height at entry.
+    focus: f64,
+    /// Distance of a ghost's focus beyond its limit, mm.
+    ghost_mm: f64,
+    /// Angle of incidence below its limit, degrees.
+    incidence_deg: f64,
+    /// Fluence below its limit, as a part of it.
+    fluence: f64,
+}
 
-/// Distance of a ghost's focus beyond its limit, mm, from on which it counts as far: the same, for
-/// ghosts.
-const GHOST_IN_SIGHT_MM: f64 = 20.0;
+const SIGHT: Sight = Sight { focus: 0.3, ghost_mm: 20.0, incidence_deg: 10.0, fluence: 0.5 };
+
+impl Sight {
+    /// How far a row with this rule sees, in its unit.
+    fn of(&self, rule: &RowRule) -> f64 {
+        match rule.measured {
+            Measured::MarginalHeight(_) | Measured::EdgeRayHeight(_) => self.focus,
+            Measured::GhostClearance(_) => self.ghost_mm,
+            Measured::Incidence(_) => self.incidence_deg,
+            // The constant of such a row is the limit itself.
+            Measured::Fluence(_) => self.fluence * rule.constant.abs(),
+            Measured::Sum { .. } | Measured::Edge(_) | Measured::OnTheWay(_) => f64::INFINITY,
+        }
+    }
+}
 
 /// What stands for the distance of a focus that there is not, mm.
 const NO_FOCUS_MM: f64 = 1e6;
@@ -81,8 +101,7 @@ impl LimitEvaluator {
             rules,
             edge_mm: design.beam.edge_mm(),
             pulse_energy_j: 1e-3 * design.beam.laser.pulse_energy_mj.unwrap_or(0.0),
-            focus_in_sight: FOCUS_IN_SIGHT,
-            ghost_in_sight_mm: GHOST_IN_SIGHT_MM,
+            sight: SIGHT,
             ghosts_looked_at: true,
             rays: Vec::new(),
             gradient: Vec::new(),
@@ -138,9 +157,9 @@ impl LimitEvaluator {
 
     /// Gives every row its gradient, however far from its limit.
     #[cfg(test)]
-    pub(crate) fn see_every_focus(&mut self) {
-        self.focus_in_sight = f64::INFINITY;
-        self.ghost_in_sight_mm = f64::INFINITY;
+    pub(crate) fn see_everything(&mut self) {
+        let far = f64::INFINITY;
+        self.sight = Sight { focus: far, ghost_mm: far, incidence_deg: far, fluence: far };
     }
 
     /// Values of all rows.
@@ -270,7 +289,7 @@ impl LimitEvaluator {
         reset(&mut row.by_shared, variables.shared().len());
         reset(&mut row.by_own, rule.state.map_or(0, |k| variables.own(k).len()));
         let Measured::OnTheWay(measured) = &rule.measured else {
-            if row.value > self.in_sight(&rule.measured) {
+            if row.value > self.sight.of(rule) {
                 return Ok(());
             }
             return self.gradient_in_a_state(i, k, &states[k], variables.quantities(), row);
@@ -281,15 +300,6 @@ impl LimitEvaluator {
                 way.gradient(*measured, (rule.sign, at), states, variables, &mut row.by_shared)
             }
             _ => Ok(()),
-        }
-    }
-
-    /// Above this value a row is left alone: a beam far from a focus, a ghost far from glass.
-    fn in_sight(&self, measured: &Measured) -> f64 {
-        match measured {
-            Measured::MarginalHeight(_) | Measured::EdgeRayHeight(_) => self.focus_in_sight,
-            Measured::GhostClearance(_) => self.ghost_in_sight_mm,
-            _ => f64::INFINITY,
         }
     }
 

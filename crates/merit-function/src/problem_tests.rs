@@ -118,7 +118,7 @@ fn check(fixed: &str, track: f64, last: [f64; 2]) {
     let variables = Variables::new(&design, &wishes.limits, &everything(&design)).unwrap();
     let start = variables.start().to_vec();
     let mut merit = MeritFunction::new(&design, &wishes, variables, 6).unwrap();
-    merit.limit_rows.see_every_focus();
+    merit.limit_rows.see_everything();
     let mut exact = Linearisation::zeros(merit.shape());
     merit.linearise(&start, &mut exact).unwrap();
     let shape = merit.shape().clone();
