@@ -124,11 +124,26 @@ fn crossing(kind: LimitKind, place: &str, stretch: &Stretch, wanted: &str) -> Fi
         ratios: [stretch.from, stretch.to],
         what: format!("{word} {place}"),
         worst: Some(stretch.worst),
-        told: format!(
-            "{} the limit {word} of {place} is crossed: {:.4} at {:.4}x where {wanted} is allowed",
-            stretch.between(),
-            stretch.worst,
-            stretch.worst_at
+        told: told(kind, place, stretch, wanted),
+    }
+}
+
+/// The finding as a sentence; no file asks for the ends of the tube by a key.
+fn told(kind: LimitKind, place: &str, stretch: &Stretch, wanted: &str) -> String {
+    let between = stretch.between();
+    let at = if stretch.from == stretch.to {
+        String::new()
+    } else {
+        format!(" at {:.4}x", stretch.worst_at)
+    };
+    let (word, worst) = (kind.word(), stretch.worst);
+    match kind {
+        LimitKind::HousingMm if worst < 0.0 => {
+            format!("{between} a group reaches beyond an end of the tube, by {:.4} mm{at}", -worst)
+        }
+        _ => format!(
+            "{between} the limit {word} of {place} is crossed: {worst:.4}{at} where {wanted} is \
+             allowed"
         ),
     }
 }

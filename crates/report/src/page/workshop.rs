@@ -1,5 +1,5 @@
 //! What the workshop and the weather do to a design: sections of the page, with the tables of
-//! `tolerance` and of `assess --temperature`.
+//! `tolerance` and of `assess --temperatures-c`.
 
 use driver::design_file::DesignFile;
 use driver::temperature::TemperatureReport;
