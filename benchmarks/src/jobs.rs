@@ -9,7 +9,7 @@ use merit_function::problem::MeritFunction;
 use crate::design::{self, DESIGNS};
 use crate::page::{Section, Verdict};
 use crate::peers::{Program, Reached};
-use crate::spread::{Spread, ratios};
+use crate::spread::{Spread, meanwhile, ratios};
 use crate::{Failure, minpack};
 
 /// A peer has arrived when its merit is within this of the higher of the two minima.
@@ -106,7 +106,7 @@ what it ends at is not allowed, and its times count only as a curiosity.
 
 const TIMES: &str = "The second is the time to a merit both reach: 1.01 times the higher of the two
 minima, or 1e-4 where that is higher. Timed inside each program around the solver alone, in turn in
-the same run: median (min … max). A ratio above 1 is how much longer the peer takes.
+the same run, ours before and after each of the peer's: median (min … max). A ratio above 1 is how much longer the peer takes.
 ";
 
 impl Match {
@@ -185,21 +185,21 @@ impl Job {
             let target = self.target(merit);
             let known = survey.iter().find(|run| run.options == options);
             let slow = known.and_then(|run| run.seconds.first()).is_some_and(|&time| time > SLOW);
-            let (rounds, repeats) = if slow { (3, 1) } else { (9, PEERS_A_ROUND) };
-            let (mut ours, mut theirs) = (Vec::new(), Vec::new());
+            let (rounds, repeats) = if slow { (3, 1) } else { (25, PEERS_A_ROUND) };
+            let (mut ours, mut theirs) = (vec![self.ours(target)?], Vec::new());
             for _ in 0..rounds {
-                ours.push(self.ours(target)?);
                 let options = std::slice::from_ref(&options);
                 let runs = program.run(&input, target, repeats, options)?;
                 let seconds = runs.into_iter().flat_map(|run| run.seconds).collect();
                 theirs.push(Spread::of(seconds).median);
+                ours.push(self.ours(target)?);
             }
             matches.push(Match {
                 peer: program.name.into(),
                 options,
                 merit,
                 target,
-                ratio: ratios(&theirs, &ours),
+                ratio: ratios(&theirs, &meanwhile(&ours)),
                 ours: Spread::of(ours),
                 theirs: Spread::of(theirs),
             });
@@ -223,19 +223,19 @@ impl Job {
             .filter_map(|&(step, time)| Some((time?, step)))
             .min_by(|a, b| a.0.cmp(&b.0));
         let step = best.map_or(STEP_BOUNDS[0], |(_, step)| step);
-        let (mut ours, mut theirs) = (Vec::new(), Vec::new());
-        for _ in 0..21 {
-            ours.extend(self.ours(target));
+        let (mut ours, mut theirs) = (Vec::from_iter(self.ours(target)), Vec::new());
+        for _ in 0..25 {
             let times = (0..PEERS_A_ROUND)
                 .map(|_| minpack::run(&mut self.merit, &start, target, step).time.as_secs_f64());
             theirs.push(Spread::of(times.collect()).median);
+            ours.extend(self.ours(target));
         }
         Match {
             peer: "crate".into(),
             options: format!("step bound {step}"),
             merit,
             target,
-            ratio: ratios(&theirs, &ours),
+            ratio: ratios(&theirs, &meanwhile(&ours)),
             ours: Spread::of(ours),
             theirs: Spread::of(theirs),
         }

@@ -11,7 +11,7 @@ use rayon::prelude::*;
 use surface_model::document::Document;
 
 use crate::page::{Section, Verdict};
-use crate::spread::{Spread, ratios};
+use crate::spread::{Spread, meanwhile, ratios};
 use crate::{Failure, design};
 
 /// What is searched: the shipped briefs, and a design with several valleys.
@@ -167,15 +167,15 @@ fn rates(page: &mut Section) -> Result<Spread, Failure> {
         std::hint::black_box(found);
         began.elapsed().as_secs_f64()
     };
-    let (mut alone, mut shared) = (Vec::new(), Vec::new());
+    let (mut alone, mut shared) = (vec![one.install(search)], Vec::new());
     for _ in 0..ROUNDS {
-        alone.push(one.install(search));
         shared.push(two.install(search));
+        alone.push(one.install(search));
     }
     let rate = |seconds: &[f64]| {
         Spread::of(seconds.iter().map(|seconds| STARTS as f64 / seconds).collect())
     };
-    let ratio = ratios(&alone, &shared);
+    let ratio = ratios(&meanwhile(&alone), &shared);
     writeln!(
         page.text,
         "\nStarts a second of {} on one thread: {}, on two: {}; two over one: **{ratio}**.",

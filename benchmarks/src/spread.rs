@@ -44,6 +44,12 @@ pub(crate) fn ratios(above: &[f64], below: &[f64]) -> Spread {
     Spread::of(above.iter().zip(below).map(|(a, b)| a / b).collect())
 }
 
+/// Of timings that were taken before and after each of some others, what they were meanwhile: a
+/// drift of the machine's speed cancels.
+pub(crate) fn meanwhile(around: &[f64]) -> Vec<f64> {
+    around.windows(2).map(|pair| 0.5 * (pair[0] + pair[1])).collect()
+}
+
 /// Times several jobs in turn, `rounds` times over; seconds per call of each, one a round. Each
 /// job is called often enough to fill `share`.
 pub(crate) fn interleaved(

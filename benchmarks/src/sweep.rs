@@ -9,7 +9,7 @@ use driver::sweep::{PlanFile, PointResult, Subject, Sweep, ask};
 use surface_model::document::Document;
 
 use crate::page::{Section, Verdict};
-use crate::spread::{Spread, ratios};
+use crate::spread::{Spread, meanwhile, ratios};
 use crate::{Failure, design};
 
 const ROUNDS: usize = 5;
@@ -26,16 +26,14 @@ least 1.9 times the points a second of one.
 
 /// The section of the page.
 pub(crate) fn section() -> Result<Section, Failure> {
-    let (mut alone, mut shared) = (Vec::new(), Vec::new());
-    let mut points = 0;
+    let (seconds, points) = run(1)?;
+    let (mut alone, mut shared) = (vec![seconds], Vec::new());
     for _ in 0..ROUNDS {
-        let (seconds, count) = run(1)?;
-        alone.push(seconds);
-        points = count;
         shared.push(run(2)?.0);
+        alone.push(run(1)?.0);
     }
     let rate = Spread::of(shared.iter().map(|seconds| points as f64 / seconds).collect());
-    let ratio = ratios(&alone, &shared);
+    let ratio = ratios(&meanwhile(&alone), &shared);
     let took = Spread::of(shared.clone());
     let mut page = Section::new(INTRODUCTION);
     page.verdicts.push(Verdict::at_most(

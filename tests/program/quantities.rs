@@ -9,7 +9,7 @@ use crate::program::{program, root};
 
 /// Command lines whose documents show all there is between them; `*` is a folder of its own.
 const SHOWN: &[&str] = &[
-    "start configs/river-brief.json --count 2 --json",
+    "start configs/river-brief.json --most 2 --json",
     "assess configs/gorge-lidar-pulsed.json --ranges-m 100 --json",
     "assess configs/survey-lidar-to-build.json --temperatures-c 0,40 --json",
     "optimise configs/river-lidar-2x-6x.json --json",

@@ -68,7 +68,7 @@ fn every_file_that_is_shown_works() {
         .collect();
     assert!(!shown.is_empty());
     for file in shown {
-        let ended = run_on("start - --count 1", file);
+        let ended = run_on("start - --most 1", file);
         assert_eq!(ended.status, 0, "{}", ended.err);
     }
 }

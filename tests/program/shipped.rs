@@ -28,7 +28,7 @@ fn lines(path: &Path, scratch: &Path) -> Vec<String> {
             }
             lines
         }
-        Some("json") if is("drawtube-brief/1") => vec![format!("start {name} --count 1")],
+        Some("json") if is("drawtube-brief/1") => vec![format!("start {name} --most 1")],
         Some("json") if is("drawtube-plan/1") => {
             let stem = path.file_stem().unwrap().to_string_lossy().into_owned();
             vec![format!("sweep {name} --run {}", scratch.join(stem).display())]

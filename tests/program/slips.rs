@@ -100,6 +100,16 @@ fn ratios_that_narrow_or_invert() {
 }
 
 #[test]
+fn a_tube_in_metres() {
+    let told = on_brief(|v| v["housing"]["track_mm"] = json!(0.15));
+    says(
+        &told,
+        1,
+        &["A tube of 0.15 mm is shorter than the beam is wide", "lengths are mm, 150 for"],
+    );
+}
+
+#[test]
 fn numbers_in_messages_have_no_endless_digits() {
     let told = on_design(|v| {
         v["beam"]["m_squared"] = json!(1.1);

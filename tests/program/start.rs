@@ -16,7 +16,7 @@ fn on_changed(arguments: &str, change: impl FnOnce(&mut Value)) -> Ended {
 
 #[test]
 fn a_table_of_layouts() {
-    insta::assert_snapshot!(run(&format!("start {BRIEF} --count 3")).told());
+    insta::assert_snapshot!(run(&format!("start {BRIEF} --most 3")).told());
 }
 
 #[test]
@@ -55,7 +55,7 @@ fn the_layout_that_is_written_is_collimated_and_can_be_optimised() {
 
 #[test]
 fn a_design_on_standard_output_leaves_the_table_to_standard_error() {
-    let ended = on_changed("-o - --count 2", |brief| {
+    let ended = on_changed("-o - --most 2", |brief| {
         brief["ratios"][4] = json!({ "ratio": 5.5, "weight": 2.0 })
     });
     assert_eq!(ended.status, 0, "{}", ended.err);

@@ -19,7 +19,7 @@ fn a_finished_run_is_shown_and_left_alone() {
     assert_eq!(state["format"], "drawtube-overnight/1");
     assert_eq!((&state["status"], &state["starts_wanted"]), (&"complete".into(), &STARTS.into()));
     let best = &state["ranking"]["best"][0];
-    for key in ["merit", "worst_wavefront_waves", "track_mm", "elements"] {
+    for key in ["merit", "worst_rms_waves", "track_mm", "elements"] {
         assert!(best[key].is_number(), "{key}: {best}");
     }
     let falls = state["merit_falls"].as_array().unwrap();

@@ -130,7 +130,7 @@ pub fn impossible(starts: &Starts, ranking: &Ranking, tried: &Relaxations) -> Im
     if let Some((reason, points)) = reasons.next() {
         message.push_str(&format!(", then ({} %) because {reason}", share(*points)));
     }
-    let mut lines = admitting(tried);
+    let mut lines: Vec<String> = short_tube(starts).into_iter().chain(admitting(tried)).collect();
     let in_vain: Vec<String> = tried.in_vain.iter().map(in_vain).collect();
     if !in_vain.is_empty() {
         lines.push(format!("not enough by itself: {}", in_vain.join("; ")));
@@ -173,6 +173,20 @@ fn in_vain(in_vain: &InVain) -> String {
         Some((what, unit)) => format!("{what}, even at {furthest} {unit}"),
         None => format!("{}, even at {furthest}", in_vain.relaxation.what),
     }
+}
+
+/// A tube shorter than the beam is wide: metres, most likely.
+fn short_tube(starts: &Starts) -> Option<String> {
+    let written = starts.brief().written();
+    let (track_mm, beam_mm) = (written.housing.track_mm, written.beam.diameter_mm);
+    (track_mm < beam_mm).then(|| {
+        format!(
+            "A tube of {} mm is shorter than the beam is wide: lengths are mm, {} for {} m.",
+            as_written(track_mm),
+            as_written(1e3 * track_mm),
+            as_written(track_mm)
+        )
+    })
 }
 
 /// A ratio below 1 is allowed, and seldom meant.

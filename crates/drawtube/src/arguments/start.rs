@@ -30,7 +30,7 @@ pub(crate) struct StartArguments {
     /// How many layouts are told
     #[arg(long, value_name = "N", default_value_t = 5,
         value_parser = RangedU64ValueParser::<usize>::new().range(1..=1000))]
-    pub(crate) count: usize,
+    pub(crate) most: usize,
     /// Where in the space of layouts to look: another number, other layouts
     #[arg(long, value_name = "N", default_value_t = 0)]
     pub(crate) seed: u64,

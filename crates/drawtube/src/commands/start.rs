@@ -18,7 +18,7 @@ struct Request {
     destination: Destination,
     /// Which layout is written, counted from 0.
     place: usize,
-    count: usize,
+    most: usize,
     seed: u64,
     json: bool,
 }
@@ -30,7 +30,7 @@ impl Request {
             destination: Destination::of(arguments.output, arguments.force),
             place: arguments.rank - 1,
             // The one that is written is told as well.
-            count: arguments.count.max(arguments.rank),
+            most: arguments.most.max(arguments.rank),
             seed: arguments.seed,
             json: arguments.json,
         })
@@ -42,8 +42,7 @@ pub(crate) fn run(arguments: StartArguments, console: &Console) -> Result<ExitSt
     request.destination.check()?;
     let refused = |error: StartError| Failure::Input(error.in_brief(&request.brief));
     let starts = Starts::of(&request.brief).map_err(refused)?;
-    let most = request.count;
-    let ranking = starts.ranked(LOOKED_AT, request.seed, most);
+    let ranking = starts.ranked(LOOKED_AT, request.seed, request.most);
     if ranking.best.is_empty() {
         let relaxed = starts.relaxations(LOOKED_AT, request.seed);
         return Err(Failure::Impossible(impossible(&starts, &ranking, &relaxed)));

@@ -40,7 +40,7 @@ pub struct Ranked {
     /// Whether every limit is kept.
     pub limits_kept: bool,
     /// Largest RMS wavefront error of any state and wavelength, waves.
-    pub worst_wavefront_waves: Option<f64>,
+    pub worst_rms_waves: Option<f64>,
     /// Longest track of any state, mm.
     pub track_mm: f64,
     /// Number of elements.
@@ -61,7 +61,7 @@ impl Ranked {
             merit: found.merit,
             meets: found.meets,
             limits_kept: found.limits_kept,
-            worst_wavefront_waves: found.worst_wavefront_waves,
+            worst_rms_waves: found.worst_rms_waves,
             track_mm: found.track_mm,
             elements: found.elements,
             glasses: found.glasses.clone(),

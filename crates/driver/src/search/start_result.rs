@@ -29,7 +29,7 @@ pub struct Found {
     /// Whether every goal and limit is met.
     pub meets: bool,
     /// Largest RMS wavefront error of any state and wavelength, waves.
-    pub worst_wavefront_waves: Option<f64>,
+    pub worst_rms_waves: Option<f64>,
     /// Longest track of any state, first vertex to last vertex, mm.
     pub track_mm: f64,
     /// Number of elements.
@@ -54,9 +54,7 @@ impl Found {
             merit: assessment.merit.total.filter(|merit| merit.is_finite())?,
             limits_kept: assessment.limits.iter().all(|limit| limit.met),
             meets: assessment.meets,
-            worst_wavefront_waves: waves
-                .filter_map(|wavefront| wavefront.rms_waves)
-                .reduce(f64::max),
+            worst_rms_waves: waves.filter_map(|wavefront| wavefront.rms_waves).reduce(f64::max),
             track_mm: lengths.fold(0.0, f64::max),
             elements: elements().count(),
             glasses: elements()

@@ -246,7 +246,7 @@ fn result(number: u64, merit: f64, limits_kept: bool, numbers: [f64; 2]) -> Star
         merit,
         limits_kept,
         meets: false,
-        worst_wavefront_waves: None,
+        worst_rms_waves: None,
         track_mm: 1.0,
         elements: 1,
         glasses: Vec::new(),

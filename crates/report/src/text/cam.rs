@@ -1,9 +1,11 @@
 //! What `cam` prints for people.
 
-use driver::cam::{CurvePoint, Finding, Hold, MovementCurve, Part};
+use driver::cam::{CurvePoint, Finding, FindingKind, Hold, MovementCurve, Part};
 use driver::design_file::DesignFile;
 
-use super::number::{NONE, as_written, counted, fixed, fixed_or_dash, significant_or_dash};
+use super::number::{
+    NONE, as_written, counted, fixed, fixed_or_dash, significant, significant_or_dash,
+};
 use super::table::{Column, Table};
 use super::{WIDTH, paragraph, sections};
 
@@ -237,5 +239,27 @@ fn closing(curve: &MovementCurve) -> String {
             }
         )
     };
+    let told = [Some(told), remedy(curve)].into_iter().flatten().collect::<Vec<_>>().join(" ");
     paragraph(&told, WIDTH, "")
+}
+
+/// Limits that `between_states` keeps along the curve, by their words.
+const KEPT: [&str; 5] = ["housing_mm", "spacing_mm", "edge_gap_mm", "travel_mm", "track_mm"];
+
+/// What can be done about limits crossed between the states.
+fn remedy(curve: &MovementCurve) -> Option<String> {
+    let wrong = |kind| curve.findings.iter().find(move |one| one.wrong && one.kind == kind);
+    let collision = wrong(FindingKind::Collision);
+    let crossed = collision.or_else(|| wrong(FindingKind::Limit))?;
+    let limit = crossed.what.split(' ').next().unwrap_or_default();
+    let guided = curve.groups.iter().any(|group| group.part == Part::Guided);
+    if !guided && (collision.is_some() || KEPT.contains(&limit)) {
+        return Some(
+            "With \"between_states\": \"keep\" among the limits, optimise keeps to the tube, \
+             spacings and travel along the curve."
+                .to_owned(),
+        );
+    }
+    let ratio = significant(0.5 * (crossed.ratios[0] + crossed.ratios[1]), 3);
+    Some(format!("A further state, at {ratio}x or so, would hold optimise to its limits there."))
 }

@@ -38,7 +38,7 @@ fn table(list: &RankedList) -> String {
         table.row([
             best.rank.to_string(),
             format!("{}{sign}", significant(best.merit, 4)),
-            significant_or_dash(best.worst_wavefront_waves, 3),
+            significant_or_dash(best.worst_rms_waves, 3),
             fixed(best.track_mm, 2),
             best.elements.to_string(),
             glasses(&best.glasses),
