@@ -106,7 +106,10 @@ what it ends at is not allowed, and its times count only as a curiosity.
 
 const TIMES: &str = "The second is the time to a merit both reach: 1.01 times the higher of the two
 minima, or 1e-4 where that is higher. Timed inside each program around the solver alone, in turn in
-the same run, ours before and after each of the peer's: median (min … max). A ratio above 1 is how much longer the peer takes.
+the same run, ours before and after each of the peer's: median (min … max). A ratio above 1 is how
+much longer the peer takes. `trf-differences` is SciPy's `least_squares` as one calls it, with the
+residuals alone; its other options are given the whole Jacobian too, exact to rounding, by our NumPy
+program, which is a stronger peer than NumPy with SciPy is by itself.
 ";
 
 impl Match {
