@@ -41,6 +41,7 @@ pub mod problem;
 #[cfg(test)]
 mod problem_tests;
 mod ray_weights;
+mod sight;
 mod state_optics;
 pub mod variables;
 mod way_rows;

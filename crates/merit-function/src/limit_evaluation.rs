@@ -15,6 +15,7 @@ use crate::edge::{edge_gradient, edge_mm};
 use crate::fault::EvaluationFault;
 use crate::limit_rows::{Measured, RowRule};
 use crate::limits::Limits;
+use crate::sight::Sight;
 use crate::state_optics::StateOptics;
 use crate::variables::Variables;
 use crate::way_rows::WayRows;
@@ -36,36 +37,6 @@ pub(crate) struct LimitEvaluator {
     places: Vec<f64>,
     gradient: Vec<f64>,
     values: Vec<f64>,
-}
-
-/// How far rows see: one that is kept by more has no gradient, costs none, and cannot hold up a
-/// step. A step that jumps the whole way is seen by the row's value, and rejected.
-#[derive(Debug)]
-struct Sight {
-    /// Height of a marginal ray above its limit, over the height at entry.
-    focus: f64,
-    /// Distance of a ghost's focus beyond its limit, mm.
-    ghost_mm: f64,
-    /// Angle of incidence below its limit, degrees.
-    incidence_deg: f64,
-    /// Fluence below its limit, as a part of it.
-    fluence: f64,
-}
-
-const SIGHT: Sight = Sight { focus: 0.3, ghost_mm: 20.0, incidence_deg: 10.0, fluence: 0.5 };
-
-impl Sight {
-    /// How far a row with this rule sees, in its unit.
-    fn of(&self, rule: &RowRule) -> f64 {
-        match rule.measured {
-            Measured::MarginalHeight(_) | Measured::EdgeRayHeight(_) => self.focus,
-            Measured::GhostClearance(_) => self.ghost_mm,
-            Measured::Incidence(_) => self.incidence_deg,
-            // The constant of such a row is the limit itself.
-            Measured::Fluence(_) => self.fluence * rule.constant.abs(),
-            Measured::Sum { .. } | Measured::Edge(_) | Measured::OnTheWay(_) => f64::INFINITY,
-        }
-    }
 }
 
 /// What stands for the distance of a focus that there is not, mm.
@@ -101,7 +72,7 @@ impl LimitEvaluator {
             rules,
             edge_mm: design.beam.edge_mm(),
             pulse_energy_j: 1e-3 * design.beam.laser.pulse_energy_mj.unwrap_or(0.0),
-            sight: SIGHT,
+            sight: Sight::USUAL,
             ghosts_looked_at: true,
             rays: Vec::new(),
             gradient: Vec::new(),
@@ -158,8 +129,7 @@ impl LimitEvaluator {
     /// Gives every row its gradient, however far from its limit.
     #[cfg(test)]
     pub(crate) fn see_everything(&mut self) {
-        let far = f64::INFINITY;
-        self.sight = Sight { focus: far, ghost_mm: far, incidence_deg: far, fluence: far };
+        self.sight = Sight::EVERYTHING;
     }
 
     /// Values of all rows.
