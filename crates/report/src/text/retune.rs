@@ -210,16 +210,9 @@ fn moved(retuning: &Retuning) -> Vec<String> {
     }
     if let Some(stage) = retuning.stage(Moving::Unmade) {
         let found = differences(changed.file.document().value(), stage.file.document().value());
-        let told: Vec<&Difference> = found.iter().filter(|one| !is_noise(one)).collect();
-        parts.push(table_of("moved with what is not made", &told));
+        parts.push(table_of("moved with what is not made", &found.iter().collect::<Vec<_>>()));
     }
     parts
-}
-
-/// Whether a number has moved by no more than rounding.
-fn is_noise(difference: &Difference) -> bool {
-    const ROUNDING_PERCENT: f64 = 1e-9;
-    difference.by_percent.is_some_and(|percent| percent.abs() < ROUNDING_PERCENT)
 }
 
 /// Most spacings that stand beside each other.
