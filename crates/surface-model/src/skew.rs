@@ -195,6 +195,26 @@ mod tests {
                 .sum::<f64>()
     }
 
+    /// Holds derivatives of a value by every quantity against differences.
+    fn agree(exact: &[f64], train: &Train, about: &str, value: impl Fn(&Train) -> f64) {
+        let quantities = Quantities::new(train.len(), Shapes::ALL);
+        for (place, &derivative) in exact.iter().enumerate() {
+            // A step that moves the sag by about a micrometre.
+            let h = match quantities.at(place) {
+                Quantity::Asphere(_, term) => 1e-3 / 6_f64.powi(asphere_power(term) as i32),
+                _ => 1e-5,
+            };
+            let at = |by| value(&nudged(train, quantities, place, by));
+            // Fourth-order central difference.
+            let difference = (8.0 * (at(h) - at(-h)) - (at(2.0 * h) - at(-2.0 * h))) / (12.0 * h);
+            let scale = 1e-9 / h * 1e-3 + 1e-7 * difference.abs();
+            assert!(
+                (derivative - difference).abs() < scale,
+                "{about}, place {place}: {derivative} {difference}"
+            );
+        }
+    }
+
     #[test]
     fn the_reverse_sweep_agrees_with_central_differences_by_every_quantity() {
         let start = RayStart { position_mm: [2.0, 5.0], direction: [0.04, -0.07] };
@@ -206,28 +226,11 @@ mod tests {
         ];
         for conics in [false, true] {
             let train = train(conics);
-            let quantities = Quantities::new(train.len(), Shapes::ALL);
             for weights in all {
                 let exact = trace_ray(&train, start).unwrap().differentiate(&weights, Shapes::ALL);
-                for (place, &derivative) in exact.iter().enumerate() {
-                    // A step that moves the sag by about a micrometre.
-                    let h = match quantities.at(place) {
-                        Quantity::Asphere(_, term) => 1e-3 / 6_f64.powi(asphere_power(term) as i32),
-                        _ => 1e-5,
-                    };
-                    let at = |by| {
-                        let moved = nudged(&train, quantities, place, by);
-                        sum(&trace_ray(&moved, start).unwrap().exit(), &weights)
-                    };
-                    // Fourth-order central difference.
-                    let difference =
-                        (8.0 * (at(h) - at(-h)) - (at(2.0 * h) - at(-2.0 * h))) / (12.0 * h);
-                    let scale = 1e-9 / h * 1e-3 + 1e-7 * difference.abs();
-                    assert!(
-                        (derivative - difference).abs() < scale,
-                        "conics {conics}, {weights:?}, place {place}: {derivative} {difference}"
-                    );
-                }
+                agree(&exact, &train, &format!("conics {conics}, {weights:?}"), |moved| {
+                    sum(&trace_ray(moved, start).unwrap().exit(), &weights)
+                });
             }
         }
     }
@@ -239,25 +242,9 @@ mod tests {
         let quantities = Quantities::new(train.len(), Shapes::ALL);
         for surface in 0..train.len() {
             let exact = trace_ray(&train, start).unwrap().differentiate_height(surface, quantities);
-            for (place, &derivative) in exact.iter().enumerate() {
-                let h = match quantities.at(place) {
-                    Quantity::Asphere(_, term) => 1e-3 / 6_f64.powi(asphere_power(term) as i32),
-                    _ => 1e-5,
-                };
-                let at = |by| {
-                    let moved = nudged(&train, quantities, place, by);
-                    let ray = trace_ray(&moved, start).unwrap();
-                    ray.heights_mm().nth(surface).unwrap()
-                };
-                // Fourth-order central difference.
-                let difference =
-                    (8.0 * (at(h) - at(-h)) - (at(2.0 * h) - at(-2.0 * h))) / (12.0 * h);
-                let scale = 1e-9 / h * 1e-3 + 1e-7 * difference.abs();
-                assert!(
-                    (derivative - difference).abs() < scale,
-                    "surface {surface}, place {place}: {derivative} {difference}"
-                );
-            }
+            agree(&exact, &train, &format!("surface {surface}"), |moved| {
+                trace_ray(moved, start).unwrap().heights_mm().nth(surface).unwrap()
+            });
         }
     }
 
